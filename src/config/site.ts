@@ -1,0 +1,225 @@
+/**
+ * The frozen Site: what a site file means, in SI units, with ids as written. Everything else reads this.
+ * Levels and limits are r.m.s. in the SI unit of their quantity (m/s², m/s, m); times are milliseconds;
+ * display units stand beside them.
+ */
+
+/** Quantities that the integration chain knows, and others that are trended as they are. */
+export type Quantity =
+  | 'acceleration'
+  | 'velocity'
+  | 'displacement'
+  | 'sound-pressure'
+  | 'voltage'
+  | 'current'
+  | 'other';
+
+/** r.m.s.; derived peak = sqrt 2 r.m.s.; derived peak to peak = 2 sqrt 2 r.m.s. */
+export type Detector = 'rms' | 'peak' | 'peak-to-peak';
+
+/** A unit as people read it, of one quantity, and its size in the SI unit of that quantity. */
+export interface SampleUnit {
+  readonly text: string;
+  readonly quantity: Quantity;
+  readonly inSi: number;
+}
+
+/** A unit with the detector in which a band is shown: `text` is e.g. 'mm/s' or 'mil peak to peak (derived)'. */
+export interface DisplayUnit extends SampleUnit {
+  readonly detector: Detector;
+}
+
+export type WindowName = 'rectangular' | 'hann' | 'hamming' | 'blackman' | 'blackman-harris' | 'flat-top';
+
+export interface Site {
+  readonly name: string;
+  /** IANA name. */
+  readonly timeZone: string;
+  /** Absolute path of the site file, and the SHA-256 of its text: the config version of every decision. */
+  readonly file: string;
+  readonly configVersion: string;
+  readonly folders: {
+    readonly drop: string;
+    readonly data: string;
+    readonly afterReading: 'archive' | 'keep' | 'delete';
+  };
+  readonly machines: readonly Machine[];
+  readonly mail: MailSettings | null;
+  readonly summary: { readonly at: TimeOfDay; readonly to: readonly Recipient[] } | null;
+  readonly page: { readonly host: string; readonly port: number } | null;
+  readonly timings: IntakeTimings;
+  /** Largest file that intake accepts. */
+  readonly largestFileBytes: number;
+  /** Problems that do not stop the service (an overlap above 75 %, a band above the mounting's range). */
+  readonly warnings: readonly SiteRemark[];
+}
+
+export interface SiteRemark {
+  readonly line: number;
+  readonly column: number;
+  readonly text: string;
+}
+
+export interface TimeOfDay {
+  readonly hour: number;
+  readonly minute: number;
+}
+
+/** Waits of intake; all on the monotonic clock. */
+export interface IntakeTimings {
+  readonly incompleteAfterMs: number;
+  readonly unassignedAfterMs: number;
+  readonly clockToleranceMs: number;
+  readonly backlogQuietMs: number;
+  readonly backlogWaitMs: number;
+  readonly sweepEveryMs: number;
+  /** Look for files by polling (network shares) instead of by the system's events. */
+  readonly polling: boolean;
+}
+
+export interface Machine {
+  readonly id: string;
+  readonly name: string;
+  readonly area: string | null;
+  readonly type: string | null;
+  readonly formerly: readonly string[];
+  readonly runningSpeedHz: number | null;
+  readonly running: RunningRule | null;
+  readonly afterStartMs: number;
+  readonly stoppedExpectedMs: number;
+  readonly criticality: 'A' | 'B' | 'C';
+  readonly like: readonly string[];
+  readonly points: readonly Point[];
+}
+
+/** When a machine counts as running. `level`: two points must agree; threshold in SI r.m.s. */
+export type RunningRule =
+  | { readonly by: 'speed'; readonly aboveRpm: number }
+  | { readonly by: 'sidecar' }
+  | { readonly by: 'level'; readonly bandId: string; readonly above: number };
+
+export interface Point {
+  readonly machineId: string;
+  readonly id: string;
+  readonly name: string;
+  readonly formerly: readonly string[];
+  readonly direction: string | null;
+  readonly mounting: 'stud' | 'glue' | 'magnet' | 'hand' | null;
+  /** A number from 1, or a column name. */
+  readonly channel: number | string;
+  readonly quantity: Quantity;
+  readonly signal: SignalSettings;
+  readonly recordings: RecordingSettings;
+  readonly analysis: AnalysisSettings;
+  readonly bands: readonly Band[];
+  readonly limits: readonly Limit[];
+}
+
+export interface SignalSettings {
+  readonly samplesIn: SampleUnit;
+  /** Value, in `samplesIn`, of the largest integer sample; null: samples are taken as they stand. */
+  readonly fullScale: number | null;
+  /** Volts (SI of samplesIn) per SI unit of the point's quantity; null: samples are the quantity itself. */
+  readonly sensitivity: number | null;
+  readonly sensitivityText: string | null;
+}
+
+export interface RecordingSettings {
+  /** File pattern as written: `<any>`, `<machine>`, `<point>`, `/`; or a regular expression in RE2 syntax. */
+  readonly files: string | null;
+  readonly filesRegex: string | null;
+  /** `<year><month><day>T<hour><minute><second>Z`-like pattern found anywhere in the name; null: not in the name. */
+  readonly startInName: string | null;
+  /** What the logger's clock shows. `offset`: minutes east of UTC. */
+  readonly clock:
+    | { readonly kind: 'utc' }
+    | { readonly kind: 'site' }
+    | { readonly kind: 'offset'; readonly minutes: number };
+  readonly ignore: readonly string[];
+  readonly sampleRateHz: number | null;
+  readonly durationS: number | null;
+  readonly expectedEveryMs: number;
+  readonly overdueAfterMs: number;
+  readonly settleMs: number;
+  readonly sidecar: 'none' | 'optional' | 'expected';
+}
+
+export interface AnalysisSettings {
+  readonly window: WindowName;
+  readonly overlapPercent: number;
+  readonly lineSpacingHz: number;
+  /** Set instead of the line spacing for one-off analysis. */
+  readonly segmentSamples: number | null;
+  readonly skipStartS: number;
+  readonly confidencePercent: number;
+  readonly falsePeaksPerSpectrum: number;
+}
+
+export interface Band {
+  readonly id: string;
+  readonly formerly: readonly string[];
+  readonly quantity: Quantity;
+  /** Hz, or orders of the running speed where `inOrders`. */
+  readonly from: number;
+  readonly to: number;
+  readonly inOrders: boolean;
+  readonly display: DisplayUnit;
+}
+
+export type LimitKind = 'fixed';
+
+export interface Limit {
+  /** As written, or `band-kind-side`. Unique within its point. */
+  readonly id: string;
+  readonly formerly: readonly string[];
+  readonly bandId: string;
+  readonly kind: LimitKind;
+  readonly side: 'upper' | 'lower';
+  /** SI r.m.s.; at least one of the two is set. */
+  readonly alert: number | null;
+  readonly danger: number | null;
+  readonly onDelay: Delay;
+  readonly offDelay: Delay;
+  readonly deadbandPercent: number;
+  readonly latching: boolean;
+  /** Told again when an acknowledged alarm's level has risen by this much since it was last told; null: never. */
+  readonly sayAgainPercent: number | null;
+  readonly action: string | null;
+  readonly respondWithinMs: number | null;
+}
+
+export type Delay = { readonly recordings: number } | { readonly ms: number };
+
+export interface MailSettings {
+  readonly from: string;
+  readonly server: MailServer;
+  readonly secondServer: MailServer | null;
+  readonly gatherMs: number;
+  readonly gatherDangerMs: number;
+  readonly catchUpAfterMs: number;
+  readonly to: readonly Recipient[];
+}
+
+export interface MailServer {
+  readonly host: string;
+  readonly port: number;
+  readonly security: 'starttls' | 'tls' | 'none';
+  readonly user: string | null;
+  /** Absolute path; read at each attempt, refused when others can read it. */
+  readonly passwordFile: string | null;
+}
+
+/** null in a field: no restriction. */
+export interface Recipient {
+  readonly address: string;
+  readonly machines: readonly string[] | null;
+  readonly areas: readonly string[] | null;
+  readonly severities: readonly Severity[] | null;
+}
+
+export type Severity = 'trouble' | 'alert' | 'danger';
+
+/** `machine/point`, the way people name a point on the command line and in mails. */
+export function pointPath(point: { readonly machineId: string; readonly id: string }): string {
+  return `${point.machineId}/${point.id}`;
+}
