@@ -1,0 +1,91 @@
+import type { QualityFinding } from '../acquisition/recording.ts';
+import type { Quantity } from '../config/site.ts';
+
+/**
+ * What one recording says of one measuring point. Levels are r.m.s. in the SI unit of their quantity
+ * (m/s², m/s, m, ...); peaks are the r.m.s. of their sinusoid in the SI unit of the point's quantity.
+ * Plain data: it travels between threads and is what the ledger keeps.
+ */
+export interface Measurement {
+  readonly machineId: string;
+  readonly pointId: string;
+  /** Channel as the file names it. */
+  readonly channel: string;
+  readonly quantity: Quantity;
+  readonly unit: string;
+  readonly sampleRateHz: number;
+  /** Length of the stretch that was analysed, in seconds. */
+  readonly durationS: number;
+  readonly speed: RunningSpeed | null;
+  readonly loadPercent: number | null;
+  /** The sidecar's own word; null where it has none. */
+  readonly runningSaid: boolean | null;
+  readonly waveform: WaveformValues | null;
+  /** Null where not even one segment fits. */
+  readonly averaging: Averaging | null;
+  readonly levels: readonly BandLevel[];
+  readonly peaks: readonly SpectralPeak[];
+  readonly spectrum: Spectrum | null;
+  readonly quality: readonly QualityFinding[];
+  /** Hash of everything that moves any number of this measurement (settings of the whole point). */
+  readonly settingsFingerprint: string;
+}
+
+export interface RunningSpeed {
+  readonly rpm: number;
+  readonly origin: 'sidecar' | 'nominal';
+  readonly uncertaintyRpm: number;
+}
+
+export interface WaveformValues {
+  readonly mean: number;
+  readonly rms: number;
+  readonly peak: number;
+  readonly crestFactor: number;
+  readonly kurtosis: number;
+  readonly skewness: number;
+}
+
+export interface Averaging {
+  readonly window: string;
+  readonly overlapPercent: number;
+  readonly segmentSamples: number;
+  readonly lineSpacingHz: number;
+  readonly averages: number;
+  readonly effectiveAverages: number;
+  readonly usedPercent: number;
+  /** Larger of the two steadiness figures as a ratio to its flag's threshold; null below four averages. */
+  readonly segmentSpread: number | null;
+}
+
+export interface BandLevel {
+  readonly bandId: string;
+  /** Identity of the series: hash of what moves this number, and nothing else. */
+  readonly fingerprint: string;
+  readonly fromHz: number;
+  readonly toHz: number;
+  readonly quantity: Quantity;
+  readonly level: number;
+  readonly intervalLow: number;
+  readonly intervalHigh: number;
+  readonly confidencePercent: number;
+  /** Level that 80 % of the segments exceed on their own; null below five averages. Confirms a danger at once. */
+  readonly exceededBy80Percent: number | null;
+  /** True where clipping or a saturated sensor means that the true level is at least this. */
+  readonly atLeast: boolean;
+}
+
+export interface SpectralPeak {
+  readonly frequencyHz: number;
+  readonly level: number;
+  readonly aboveFloorDb: number;
+  readonly kind: 'tone' | 'hump';
+  /** Multiple of the running speed; null without a speed. */
+  readonly order: number | null;
+}
+
+/** One-sided density, (SI unit)²/Hz, in single precision: it is kept for people to look at, levels are not made from it. */
+export interface Spectrum {
+  readonly lineSpacingHz: number;
+  readonly density: Float32Array;
+}
