@@ -10,5 +10,6 @@ export default defineConfig({
     maxWorkers: 2,
     testTimeout: long ? 3_600_000 : 60_000,
     hookTimeout: 60_000,
+    reporters: ['default', ['json', { outputFile: 'node_modules/.vitest/results.json' }]],
   },
 });
