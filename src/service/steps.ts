@@ -1,0 +1,26 @@
+/**
+ * Names of the places between two outside effects. The service calls `step(name)` at each; in normal running it does
+ * nothing, tests throw there or end the process there.
+ */
+export const stepNames = [
+  'intake: attempt noted',
+  'intake: recording read',
+  'intake: decision begun',
+  'intake: decision committed',
+  'filing: set aside under its own name',
+  'filing: copied',
+  'filing: in place',
+  'filing: sidecar in place',
+  'intake: filing committed',
+  'delivery: message stored',
+  'delivery: attempt begun',
+  'delivery: answer received',
+  'delivery: answer stored',
+  'summary: stored',
+] as const;
+
+export type StepName = (typeof stepNames)[number];
+
+export type Step = (name: StepName) => void;
+
+export const noStep: Step = () => {};
