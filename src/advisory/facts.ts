@@ -1,0 +1,198 @@
+import type { QualityFinding } from '../acquisition/recording.ts';
+import type { DisplayUnit, Machine, Severity } from '../config/site.ts';
+import type { AlarmStanding, JournalEventName, TroubleKind } from '../detection/alarm.ts';
+import type { Averaging, RunningSpeed } from '../manipulation/measurement.ts';
+import type { Change } from './ranking.ts';
+
+/**
+ * What messages are made from: plain data, read from the ledger by the service and turned into words here.
+ * Levels are r.m.s. in the SI unit of their quantity and are shown in the display unit beside them; times are
+ * milliseconds since 1970 UTC and are shown in the site's zone. Names come as the site file has them: they are
+ * made harmless when they are written, never before. null always means 'there is none'.
+ */
+
+export interface SiteFacts {
+  readonly name: string;
+  /** IANA name. */
+  readonly timeZone: string;
+}
+
+export interface MachineFacts {
+  readonly id: string;
+  readonly name: string;
+  readonly criticality: Machine['criticality'];
+}
+
+export interface PointFacts {
+  readonly id: string;
+  readonly name: string;
+  /** As in the site file; takes part in putting several directions of one bearing into one line. */
+  readonly direction: string | null;
+}
+
+export interface BandFacts {
+  readonly id: string;
+  /** Edges in Hz as evaluated (orders already multiplied by the speed). */
+  readonly fromHz: number;
+  readonly toHz: number;
+  readonly display: DisplayUnit;
+}
+
+export interface LimitFacts {
+  readonly id: string;
+  readonly side: 'upper' | 'lower';
+  /** SI r.m.s.; at least one of the two is set. */
+  readonly alert: number | null;
+  readonly danger: number | null;
+}
+
+/** A level with what stands behind it. SI r.m.s. */
+export interface LevelFacts {
+  readonly usedMs: number;
+  readonly level: number;
+  readonly intervalLow: number;
+  readonly intervalHigh: number;
+  readonly confidencePercent: number;
+  /** Clipped or saturated: the true level is at least this. */
+  readonly atLeast: boolean;
+}
+
+/** A level of the past, without its interval. SI r.m.s. */
+export interface PastLevel {
+  readonly usedMs: number;
+  readonly level: number;
+}
+
+/** What alarms and troubles share. */
+export interface StandingFacts {
+  readonly number: number;
+  readonly standing: AlarmStanding;
+  /** Used time of the first recording over the limit, or when the trouble began. */
+  readonly sinceMs: number;
+  /** Recordings over the limit, or files concerned, in this life; 0 where nothing is counted. */
+  readonly recordings: number;
+  /** The wall time by which the site wants somebody to have responded: first told + respond_within. */
+  readonly respondByMs: number | null;
+  readonly acknowledgedBy: string | null;
+  readonly acknowledgedMs: number | null;
+  /** Shelved or out of service until. */
+  readonly suppressedUntilMs: number | null;
+}
+
+/** An alarm as every list of alarms shows it. */
+export interface StandingAlarm extends StandingFacts {
+  readonly kind: 'alarm';
+  readonly severity: Exclude<Severity, 'trouble'>;
+  readonly machine: MachineFacts;
+  readonly point: PointFacts;
+  readonly band: BandFacts;
+  readonly limit: LimitFacts;
+  /** In the summary the newest level, null when there is none; in an alarm mail the one that caused it. */
+  readonly level: LevelFacts | null;
+  /** Over the danger limit in the newest recording, on-delay still running. */
+  readonly dangerUnconfirmed: boolean;
+  readonly change: Change | null;
+  /** The site's own words of what to do. */
+  readonly action: string | null;
+}
+
+/** A trouble: of a point, of a machine, of a logger (source), or of the site (all three null). */
+export interface TroubleFacts extends StandingFacts {
+  readonly kind: 'trouble';
+  readonly trouble: TroubleKind;
+  readonly machine: MachineFacts | null;
+  readonly point: PointFacts | null;
+  /** The logger's series of files. */
+  readonly source: string | null;
+  /** One line of what was found (a refusal's reason, a file name, the mail server's answer). */
+  readonly detail: string | null;
+  /** When something usable last came from there. */
+  readonly lastGoodMs: number | null;
+  /** Overdue only: how often a recording is expected. */
+  readonly expectedEveryMs: number | null;
+  /** 'returned' where the mail tells that it is over. */
+  readonly event: JournalEventName;
+}
+
+/** Everything the alarm mail says of one alarm. */
+export interface AlarmFacts extends StandingAlarm {
+  readonly level: LevelFacts;
+  /** What this mail tells: raised, rose, said-again, exceeded-came-late, limit-removed, ... */
+  readonly event: JournalEventName;
+  /** Evaluation zone, A to D, where the machine has a zone table. */
+  readonly zone: string | null;
+  readonly before: {
+    /** Up to four, newest first, without the present one. */
+    readonly last: readonly PastLevel[];
+    readonly dayBefore: PastLevel | null;
+    readonly weekBefore: PastLevel | null;
+    /** SI r.m.s. */
+    readonly baseline: number | null;
+  };
+  /** A sentence of the prognosis, already worded; never a promise. */
+  readonly trend: string | null;
+  readonly lines: LinesFacts | null;
+  readonly otherPoints: readonly OtherPointFacts[];
+  readonly recording: RecordingFacts;
+}
+
+/** Spectral lines now against about a week ago; made by `compareLines`. */
+export interface LinesFacts {
+  /** Unit in which a line's level is shown; of the point's quantity. */
+  readonly display: DisplayUnit;
+  /** Used time of the earlier spectrum; null: there is none to compare with. */
+  readonly comparedWithMs: number | null;
+  readonly lines: readonly LineFacts[];
+}
+
+export interface LineFacts {
+  readonly frequencyHz: number;
+  readonly order: number | null;
+  /** SI r.m.s. of the line; null: it no longer stands out. */
+  readonly level: number | null;
+  /** The same then; null: it did not stand out. */
+  readonly levelBefore: number | null;
+}
+
+/** Another point of the machine: its band that uses most of its alert limit. */
+export interface OtherPointFacts {
+  readonly point: PointFacts;
+  readonly band: BandFacts | null;
+  readonly level: LevelFacts | null;
+  /** Share of the alert limit, 1 = at the limit; see `shareOfAlert`. */
+  readonly share: number | null;
+}
+
+export interface RecordingFacts {
+  readonly fileName: string | null;
+  readonly startMs: number;
+  readonly arrivedMs: number;
+  /** `backlog`: one of several that came together after a pause; `late`: starts before a newer evaluated one. */
+  readonly arrival: 'in-time' | 'backlog' | 'late';
+  readonly durationS: number;
+  readonly speed: RunningSpeed | null;
+  readonly loadPercent: number | null;
+  readonly averaging: Averaging | null;
+  readonly quality: readonly QualityFinding[];
+}
+
+/** One gathered mail of one machine; machine null: troubles of the logger, the files or the service. */
+export interface AlarmMailFacts {
+  readonly site: SiteFacts;
+  readonly machine: MachineFacts | null;
+  readonly writtenMs: number;
+  readonly alarms: readonly AlarmFacts[];
+  readonly troubles: readonly TroubleFacts[];
+  /** Subject of the thread that runs; null in its first mail and when the severity has risen since. */
+  readonly threadSubject: string | null;
+  /** Made by `check --mail --as-alarm`: marked TEST, nothing to acknowledge. */
+  readonly test: boolean;
+}
+
+/** What leaves: the same content twice, for programs that show HTML and for those that do not. */
+export interface Mail {
+  /** One line, at most 150 characters, no control characters. */
+  readonly subject: string;
+  readonly text: string;
+  readonly html: string;
+}

@@ -1,0 +1,124 @@
+import { madToDeviation, median, medianAbsoluteDeviation } from '../signal/statistics.ts';
+import type { LimitFacts, MachineFacts, PastLevel, PointFacts } from './facts.ts';
+
+/**
+ * Pure rules of order: what has changed, what comes first, what makes one line.
+ */
+
+/** Change of a band: the last 24 h against the 7 days before them. */
+export interface Change {
+  /** Median of the last 24 h over median of the 7 days before; 1.2 is a fifth more. */
+  readonly ratio: number;
+  /** Ratio above which a change exceeds the series' own spread: exp(3 x 1.4826 MAD of the log levels of the 7 days). */
+  readonly ordinaryRatio: number;
+  /** Changed by more than the spread, towards the worse: up, or down where only a lower limit guards the band. */
+  readonly worse: boolean;
+}
+
+const dayMs = 86_400_000;
+/** With fewer levels in the week a median absolute deviation says nothing of the spread. */
+const fewestBefore = 5;
+/** A series that does not vary at all (a test signal) has no spread; less than this would not show in three figures. */
+const leastRatio = 1.01;
+
+/**
+ * Change of one series in one operating condition. `levels`: SI r.m.s. with used times, in any order; those at or
+ * before `nowMs - 8 d`, after `nowMs`, or not above zero take no part. Null where the last 24 h hold none or the 7 days
+ * before fewer than five. Checked: week 1, 1.1, 0.9, 1, 1, day 2: ratio 2, worse.
+ */
+export function changeOf(
+  levels: readonly PastLevel[],
+  nowMs: number,
+  guarded: 'upper' | 'lower' = 'upper',
+): Change | null {
+  const day: number[] = [];
+  const week: number[] = [];
+  for (const { usedMs, level } of levels) {
+    const age = nowMs - usedMs;
+    if (!(level > 0) || age < 0 || age >= 8 * dayMs) continue;
+    (age < dayMs ? day : week).push(level);
+  }
+  if (day.length === 0 || week.length < fewestBefore) return null;
+  const ratio = median(day) / median(week);
+  const spread = medianAbsoluteDeviation(week.map(Math.log));
+  const ordinaryRatio = Math.max(leastRatio, Math.exp(3 * madToDeviation * spread));
+  const towardsWorse = guarded === 'upper' ? ratio : 1 / ratio;
+  return { ratio, ordinaryRatio, worse: towardsWorse > ordinaryRatio };
+}
+
+/** The limit that speaks first on a side: alert, or danger where there is no alert. SI r.m.s. */
+export function firstLimit(limit: LimitFacts): number | null {
+  return limit.alert ?? limit.danger;
+}
+
+/**
+ * Share of the alert limit that a level uses up: 1 at the limit, more beyond it, for upper and lower limits alike.
+ * Infinity for nothing against a lower limit; null without a limit to measure by.
+ */
+export function shareOfAlert(level: number, limit: LimitFacts): number | null {
+  const at = firstLimit(limit);
+  if (at === null) return null;
+  return limit.side === 'upper' ? level / at : at / level;
+}
+
+/** The largest share over several limits of one band; null where none applies. */
+export function largestShare(level: number, limits: readonly LimitFacts[]): number | null {
+  const shares = limits.map((limit) => shareOfAlert(level, limit)).filter((share) => share !== null);
+  return shares.length === 0 ? null : Math.max(...shares);
+}
+
+/** What the order of findings looks at. `share`: of the alert limit; null for troubles. */
+export interface Ranked {
+  readonly machine: MachineFacts | null;
+  readonly severity: 'danger' | 'alert' | 'trouble' | null;
+  readonly share: number | null;
+}
+
+const criticalityRank = { A: 0, B: 1, C: 2 } as const;
+const severityRank = { danger: 0, alert: 1, trouble: 2 } as const;
+
+/**
+ * Criticality first (what concerns no machine of its own may blind every one and ranks with A), then severity, then the share of the
+ * alert limit. For sorting; 0 where neither comes first.
+ */
+export function byUrgency(a: Ranked, b: Ranked): number {
+  return (
+    criticalityRank[a.machine?.criticality ?? 'A'] - criticalityRank[b.machine?.criticality ?? 'A'] ||
+    (a.severity === null ? 3 : severityRank[a.severity]) -
+      (b.severity === null ? 3 : severityRank[b.severity]) ||
+    compareShares(a.share, b.share)
+  );
+}
+
+function compareShares(a: number | null, b: number | null): number {
+  const left = a ?? 0;
+  const right = b ?? 0;
+  return left === right ? 0 : right - left;
+}
+
+/**
+ * The bearing (or other place) that several directions share: the point's name without its direction, e.g. 'drive
+ * end' for 'drive end, horizontal'. The name itself where it does not contain its direction as a word of its own.
+ */
+export function bearingOf(point: PointFacts): string {
+  const direction = point.direction?.trim().toLowerCase() ?? '';
+  if (direction === '') return point.name;
+  const words = point.name.split(/([\s,;:/()-]+)/);
+  const at = words.findIndex((word) => word.toLowerCase() === direction);
+  if (at === -1) return point.name;
+  words.splice(at, 1);
+  const rest = words.join('').replace(/^[\s,;:/()-]+|[\s,;:/()-]+$/g, '');
+  return rest === '' ? point.name : rest;
+}
+
+/** Puts what shares a key together; groups stand in the order of their first member, members keep their order. */
+export function gather<T>(items: readonly T[], keyOf: (item: T) => string): T[][] {
+  const groups = new Map<string, T[]>();
+  for (const item of items) {
+    const key = keyOf(item);
+    const group = groups.get(key);
+    if (group === undefined) groups.set(key, [item]);
+    else group.push(item);
+  }
+  return [...groups.values()];
+}
