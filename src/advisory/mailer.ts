@@ -1,0 +1,115 @@
+import { readFile, stat } from 'node:fs/promises';
+import { createTransport } from 'nodemailer';
+import type { MailServer } from '../config/site.ts';
+import type { AttemptAnswer } from './outbox.ts';
+
+/**
+ * One attempt to hand one stored mail to one server for one recipient. It never throws: every outcome is an answer.
+ *   accepted: the server took it (2xx after the data).
+ *   later:    no connection, no usable TLS, a timeout, 4xx, or a password file that cannot be used yet.
+ *   never:    5xx.
+ * The password is read at each attempt and goes nowhere else.
+ */
+export interface Mailer {
+  send(mail: {
+    readonly from: string;
+    readonly recipient: string;
+    readonly bytes: Uint8Array;
+  }): Promise<AttemptAnswer>;
+}
+
+export interface MailerOptions {
+  /** Certificates to trust beside the system's. */
+  readonly extraCertificates?: readonly string[];
+  readonly connectTimeoutMs?: number;
+  readonly idleTimeoutMs?: number;
+}
+
+const connectTimeoutMs = 20_000;
+const idleTimeoutMs = 60_000;
+
+export function createMailer(server: MailServer, options: MailerOptions = {}): Mailer {
+  return {
+    async send({ from, recipient, bytes }) {
+      const login = await loginFor(server);
+      if ('answer' in login) return { kind: 'later', answer: login.answer };
+      const transport = createTransport({
+        host: server.host,
+        port: server.port,
+        secure: server.security === 'tls',
+        requireTLS: server.security === 'starttls',
+        ignoreTLS: server.security === 'none',
+        connectionTimeout: options.connectTimeoutMs ?? connectTimeoutMs,
+        greetingTimeout: options.connectTimeoutMs ?? connectTimeoutMs,
+        socketTimeout: options.idleTimeoutMs ?? idleTimeoutMs,
+        dnsTimeout: options.connectTimeoutMs ?? connectTimeoutMs,
+        disableFileAccess: true,
+        disableUrlAccess: true,
+        logger: false,
+        ...(options.extraCertificates ? { tls: { ca: [...options.extraCertificates] } } : {}),
+        ...(login.user !== null ? { auth: { user: login.user, pass: login.password } } : {}),
+      });
+      try {
+        const done = await transport.sendMail({
+          envelope: { from: addressOf(from), to: [recipient] },
+          raw: Buffer.from(bytes),
+        });
+        return { kind: 'accepted', answer: oneLine(done.response) };
+      } catch (error) {
+        return answerOf(error as SmtpError, login.user === null ? null : login.password);
+      } finally {
+        transport.close();
+      }
+    },
+  };
+}
+
+interface SmtpError extends Error {
+  readonly code?: string;
+  readonly responseCode?: number;
+  readonly response?: string;
+}
+
+/** 5xx to the message or its recipient is final; a refused login or TLS is the site's to mend, so it is tried again. */
+function answerOf(error: SmtpError, secret: string | null): AttemptAnswer {
+  const said = oneLine(error.response ?? error.message);
+  const answer = secret === null || secret === '' ? said : said.replaceAll(secret, '(password)');
+  const mendable =
+    error.code === 'EAUTH' ||
+    error.code === 'ETLS' ||
+    error.code === 'ESOCKET' ||
+    error.code === 'ECONNECTION';
+  const final = !mendable && error.responseCode !== undefined && error.responseCode >= 500;
+  return { kind: final ? 'never' : 'later', answer: error.code ? `${answer} (${error.code})` : answer };
+}
+
+type Login =
+  | { readonly user: string; readonly password: string }
+  | { readonly user: null }
+  | { readonly answer: string };
+
+async function loginFor(server: MailServer): Promise<Login> {
+  if (server.user === null || server.passwordFile === null) return { user: null };
+  if (server.security === 'none')
+    return { answer: 'no password is sent without TLS: set security to starttls or tls' };
+  const file = server.passwordFile;
+  try {
+    const { mode } = await stat(file);
+    if (process.platform !== 'win32' && (mode & 0o077) !== 0) {
+      return { answer: `password file ${file} can be read by others: chmod 600 it` };
+    }
+    return { user: server.user, password: (await readFile(file, 'utf8')).trimEnd() };
+  } catch (error) {
+    return {
+      answer: `password file ${file} cannot be read: ${(error as NodeJS.ErrnoException).code ?? 'unknown error'}`,
+    };
+  }
+}
+
+function addressOf(from: string): string {
+  return /<([^<>]+)>\s*$/.exec(from)?.[1] ?? from.trim();
+}
+
+function oneLine(text: string): string {
+  return text.replace(/\s+/g, ' ').trim().slice(0, 500);
+}
