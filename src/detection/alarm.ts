@@ -16,7 +16,13 @@ export interface AlarmState {
   /** The limit latches and its value has returned: held until reset. */
   readonly latched: boolean;
   readonly suppressions: readonly Suppression[];
-  /** Level (SI) when last told, for telling again when it worsens. */
+  /** Highest severity in this life of the alarm. Null exactly when there is no life: nothing stands, nothing is owed. */
+  readonly highest: Severity | null;
+  /** Highest severity that people were told of in this life; null when it came under a suppression. */
+  readonly told: Severity | null;
+  /** A telling was held back by a suppression, and is made up for when the last one goes. */
+  readonly heldBack: boolean;
+  /** Level (SI) when last told (or held back, or fallen to), from which worsening is reckoned. */
   readonly toldLevel: number | null;
   /** Used time of the first recording over the limit in this life of the alarm; null when normal. */
   readonly sinceMs: number | null;
@@ -28,10 +34,16 @@ export interface AlarmState {
   readonly version: number;
 }
 
-export interface Pending {
+/** Where a delay has got to: recordings in a row and the used time of the first. */
+export interface PendingStep {
   readonly to: Condition;
   readonly sinceMs: number;
   readonly recordings: number;
+}
+
+/** The farthest step that is being counted; `beside` is the nearer one where two are (alert beside danger). */
+export interface Pending extends PendingStep {
+  readonly beside: PendingStep | null;
 }
 
 export const normalState: AlarmState = {
@@ -40,6 +52,9 @@ export const normalState: AlarmState = {
   acknowledged: false,
   latched: false,
   suppressions: [],
+  highest: null,
+  told: null,
+  heldBack: false,
   toldLevel: null,
   sinceMs: null,
   count: 0,
