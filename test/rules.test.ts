@@ -37,6 +37,7 @@ const touchesOutside: Record<string, string> = {
   'config/write-schema.ts': 'writes the JSON Schema, by hand',
   'acquisition/drop-folder.ts': 'looks at the drop folder',
   'acquisition/filing.ts': 'moves recordings',
+  'acquisition/filing-disk.ts': 'copies recordings across file systems',
   'manipulation/pool.ts': 'runs worker threads',
   'advisory/mailer.ts': 'talks to the mail server',
 };

@@ -59,6 +59,11 @@ export function madeUpName(bytes: Uint8Array, sha256: string): string {
   return `unnamed-${sha256.slice(0, 8)}${ending}`;
 }
 
+/** What stands behind the last / of a path. */
+export function nameOf(path: string): string {
+  return path.slice(path.lastIndexOf('/') + 1);
+}
+
 /** Splits a name before its last dot; a leading dot is no ending. */
 export function splitEnding(name: string): { readonly stem: string; readonly ending: string } {
   const dot = name.lastIndexOf('.');
@@ -78,6 +83,15 @@ export function fitName(name: string, bytes: number = longestFiledNameBytes): st
 /** Name for a second file of one name: the mark is the beginning of its content's hash, behind the whole name. */
 export function markedName(name: string, sha256: string): string {
   return `${name}~${sha256.slice(0, 8)}`;
+}
+
+/**
+ * Name of the sidecar that belongs to a recording's name: its ending gives way to `.json`; a mark of `markedName`
+ * is kept (`a.wav~1a2b3c4d` has `a~1a2b3c4d.json`).
+ */
+export function sidecarNameOf(name: string): string {
+  const mark = /~[0-9a-f]{8}(~[2-9])?$/.exec(name)?.[0] ?? '';
+  return `${splitEnding(name.slice(0, name.length - mark.length)).stem}${mark}.json`;
 }
 
 function decode(bytes: Uint8Array): string | null {
