@@ -1,0 +1,57 @@
+import FFT from 'fft.js';
+
+/**
+ * Power spectra of two real sequences from one complex transform: the first travels in the real parts, the second
+ * in the imaginary parts, and the symmetry of real spectra takes them apart again.
+ *
+ * One object is the plan for one length and owns every array; nothing is allocated by `run`.
+ */
+export class PairTransform {
+  readonly length: number;
+  /** Input: `packed[2n]` is sample n of the first sequence, `packed[2n + 1]` of the second. Kept by `run`. */
+  readonly packed: Float64Array;
+  /** |X[k]|² of the first sequence, k = 0 .. length / 2, after `run`. */
+  readonly firstPower: Float64Array;
+  /** |X[k]|² of the second sequence, k = 0 .. length / 2, after `run`. */
+  readonly secondPower: Float64Array;
+  private readonly fft: FFT;
+  private readonly spectrum: Float64Array;
+
+  /** Throws a RangeError unless `length` is a power of two and at least 2. */
+  constructor(length: number) {
+    if (!isPowerOfTwo(length) || length < 2) {
+      throw new RangeError(`length = ${length}: a transform needs a power of two, at least 2`);
+    }
+    this.length = length;
+    this.fft = new FFT(length);
+    this.packed = new Float64Array(2 * length);
+    this.spectrum = new Float64Array(2 * length);
+    this.firstPower = new Float64Array(length / 2 + 1);
+    this.secondPower = new Float64Array(length / 2 + 1);
+  }
+
+  /** Transforms `packed` and leaves the two power spectra in `firstPower` and `secondPower`. */
+  run(): void {
+    const { length, spectrum: z, firstPower, secondPower } = this;
+    this.fft.transform(z, this.packed);
+    firstPower[0] = z[0] * z[0];
+    secondPower[0] = z[1] * z[1];
+    for (let k = 1; k <= length / 2; k++) {
+      const real = z[2 * k];
+      const imaginary = z[2 * k + 1];
+      const mirrorReal = z[2 * (length - k)];
+      const mirrorImaginary = z[2 * (length - k) + 1];
+      const firstReal = 0.5 * (real + mirrorReal);
+      const firstImaginary = 0.5 * (imaginary - mirrorImaginary);
+      const secondReal = 0.5 * (imaginary + mirrorImaginary);
+      const secondImaginary = 0.5 * (mirrorReal - real);
+      firstPower[k] = firstReal * firstReal + firstImaginary * firstImaginary;
+      secondPower[k] = secondReal * secondReal + secondImaginary * secondImaginary;
+    }
+  }
+}
+
+/** Whether `value` is 1, 2, 4, 8, ... up to 2^30. */
+export function isPowerOfTwo(value: number): boolean {
+  return Number.isInteger(value) && value > 0 && value <= 2 ** 30 && (value & (value - 1)) === 0;
+}
