@@ -36,6 +36,7 @@ const touchesOutside: Record<string, string> = {
   'config/load.ts': 'reads the site file',
   'config/write-schema.ts': 'writes the JSON Schema, by hand',
   'acquisition/drop-folder.ts': 'looks at the drop folder',
+  'acquisition/sweep.ts': 'walks through the drop folder',
   'acquisition/filing.ts': 'moves recordings',
   'acquisition/filing-disk.ts': 'copies recordings across file systems',
   'manipulation/pool.ts': 'runs worker threads',
