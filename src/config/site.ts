@@ -1,3 +1,5 @@
+import type { WindowName } from '../signal/window.ts';
+
 /**
  * The frozen Site: what a site file means, in SI units, with ids as written. Everything else reads this.
  * Levels and limits are r.m.s. in the SI unit of their quantity (m/s², m/s, m); times are milliseconds;
@@ -29,7 +31,7 @@ export interface DisplayUnit extends SampleUnit {
   readonly detector: Detector;
 }
 
-export type WindowName = 'rectangular' | 'hann' | 'hamming' | 'blackman' | 'blackman-harris' | 'flat-top';
+export type { WindowName };
 
 export interface Site {
   readonly name: string;
@@ -89,7 +91,17 @@ export interface Machine {
   readonly stoppedExpectedMs: number;
   readonly criticality: 'A' | 'B' | 'C';
   readonly like: readonly string[];
+  readonly zones?: ZoneChoice | null;
   readonly points: readonly Point[];
+}
+
+/** Which evaluation zones hold for a machine, as chosen in the site file; the zone tables judge it. */
+export interface ZoneChoice {
+  readonly standard: 'iso-20816-3' | 'iso-10816-7' | 'iso-10816-1';
+  readonly powerW: number | null;
+  readonly support: 'rigid' | 'flexible' | null;
+  readonly category: 'I' | 'II' | null;
+  readonly class: 'I' | 'II' | 'III' | 'IV' | null;
 }
 
 /** When a machine counts as running. `level`: two points must agree; threshold in SI r.m.s. */

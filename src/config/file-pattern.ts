@@ -1,0 +1,115 @@
+import { RE2JS } from 're2js';
+import { nearest } from './nearest.ts';
+import { type Parsed, refused, shorten, understood } from './quantity.ts';
+
+const filePlaces = ['any', 'machine', 'point'];
+const startPlaces = ['year', 'month', 'day', 'hour', 'minute', 'second', 'millisecond'];
+const neededStartPlaces = ['year', 'month', 'day', 'hour', 'minute'];
+
+/** `<machine>_<any>.wav`: <any> any text without a /, / a subfolder of the drop folder, <machine> <point> their ids. */
+export function parseFilePattern(text: string): Parsed<string> {
+  const pattern = text.trim();
+  if (pattern.includes('\\')) return refused('folders are parted by /', pattern.replaceAll('\\', '/'));
+  if (/^\/|^[A-Za-z]:/.test(pattern)) {
+    return refused(
+      `'${shorten(pattern)}' is a path, a pattern is seen from the drop folder`,
+      pattern.replace(/^([A-Za-z]:)?\/+/, ''),
+    );
+  }
+  if (pattern.split('/').some((part) => part === '' || part === '.' || part === '..')) {
+    return refused(`'${shorten(pattern)}' has an empty part, '.' or '..'`);
+  }
+  if (/[*?]/.test(pattern))
+    return refused(`'${shorten(pattern)}': * and ? have no meaning here`, pattern.replace(/[*?]+/g, '<any>'));
+  return withPlaces(pattern, filePlaces);
+}
+
+/** `<year><month><day>T<hour><minute><second>Z`, found anywhere in the name. */
+export function parseStartPattern(text: string): Parsed<string> {
+  const pattern = withPlaces(text.trim(), startPlaces);
+  if (!pattern.ok) return pattern;
+  const missing = neededStartPlaces.find((place) => !pattern.value.includes(`<${place}>`));
+  if (missing !== undefined) return refused(`'${shorten(text)}' has no <${missing}>, so it gives no start`);
+  const twice = startPlaces.find((place) => pattern.value.split(`<${place}>`).length > 2);
+  return twice === undefined ? pattern : refused(`'${shorten(text)}' has <${twice}> twice`);
+}
+
+function withPlaces(pattern: string, known: readonly string[]): Parsed<string> {
+  for (const [written, name] of pattern.matchAll(/<([^<>]*)>/g)) {
+    if (known.includes(name)) continue;
+    const meant = nearest(name, known);
+    const what = `${written} is none of ${known.map((place) => `<${place}>`).join(' ')}`;
+    return refused(what, meant === null ? null : pattern.replace(written, `<${meant}>`));
+  }
+  const left = pattern.replace(/<[^<>]*>/g, '');
+  return /[<>]/.test(left)
+    ? refused(`'${shorten(pattern)}' has a < or > that is not closed`)
+    : understood(pattern);
+}
+
+/**
+ * A regular expression in RE2 syntax, which runs in linear time. Look-around and back-references are refused: no
+ * linear engine has them.
+ */
+export function parseFilesRegex(text: string): Parsed<string> {
+  const look = /\(\?(<?[=!])/.exec(text);
+  if (look !== null)
+    return refused(`look-around such as (?${look[1]} is not available, since it can take unbounded time`);
+  if (/(^|[^\\])(\\\\)*\\[1-9]/.test(text)) {
+    return refused('a back-reference is not available, since it can take unbounded time');
+  }
+  try {
+    RE2JS.compile(text);
+    return understood(text);
+  } catch (error) {
+    const why =
+      error instanceof Error ? error.message.replace(/^error parsing regexp: /, '') : 'not understood';
+    return refused(`no regular expression in RE2 syntax: ${shorten(why)}`);
+  }
+}
+
+/** The pattern of one point: ids in place, <any> as null between literal texts. */
+export type ExpandedPattern = readonly (string | null)[];
+
+export function expandPattern(pattern: string, machineId: string, pointId: string): ExpandedPattern {
+  const parts: (string | null)[] = [];
+  for (const part of pattern.split(/(<any>)/)) {
+    if (part === '<any>') parts.push(null);
+    else if (part !== '') parts.push(part.replaceAll('<machine>', machineId).replaceAll('<point>', pointId));
+  }
+  return parts;
+}
+
+/**
+ * A file name that both patterns take, or null where there is none; <any> takes any text without a /, the empty one
+ * too. Walks pairs of positions once each: at most the product of the two lengths.
+ */
+export function commonName(a: ExpandedPattern, b: ExpandedPattern): string | null {
+  const left = symbols(a);
+  const right = symbols(b);
+  const seen = new Set<number>();
+  const width = right.length + 1;
+  const open: { readonly i: number; readonly j: number; readonly name: string }[] = [
+    { i: 0, j: 0, name: '' },
+  ];
+  for (let state = open.pop(); state !== undefined; state = open.pop()) {
+    const { i, j, name } = state;
+    if (i === left.length && j === right.length) return name;
+    if (seen.has(i * width + j)) continue;
+    seen.add(i * width + j);
+    const one = left[i];
+    const other = right[j];
+    if (one === null) open.push({ i: i + 1, j, name });
+    if (other === null) open.push({ i, j: j + 1, name });
+    if (one === null && typeof other === 'string' && other !== '/')
+      open.push({ i, j: j + 1, name: name + other });
+    if (other === null && typeof one === 'string' && one !== '/')
+      open.push({ i: i + 1, j, name: name + one });
+    if (typeof one === 'string' && one === other) open.push({ i: i + 1, j: j + 1, name: name + one });
+  }
+  return null;
+}
+
+function symbols(pattern: ExpandedPattern): (string | null)[] {
+  return pattern.flatMap((part) => (part === null ? [null] : [...part]));
+}

@@ -1,0 +1,60 @@
+import type { DisplayUnit } from './site.ts';
+import { detectorFactor } from './units.ts';
+
+/**
+ * A number for people, with so many significant figures (three unless asked otherwise), never with an exponent
+ * between 1e-6 and 1e9; trailing zeros behind the point are dropped.
+ * Checked: 0.0028349 -> '0.00283', 12345.6 -> '12300', 2.8 -> '2.8'.
+ */
+export function printNumber(value: number, figures = 3): string {
+  if (!Number.isFinite(value)) return String(value);
+  if (value === 0) return '0';
+  const rounded = Number(value.toPrecision(figures));
+  const size = Math.abs(rounded);
+  if (size >= 1e9 || size < 1e-6) return rounded.toExponential(figures - 1).replace(/\.?0+e/, 'e');
+  const decimals = Math.max(0, figures - 1 - Math.floor(Math.log10(size)));
+  const text = rounded.toFixed(decimals);
+  return text.includes('.') ? text.replace(/\.?0+$/, '') : text;
+}
+
+/** The number that stands before a display unit: SI r.m.s. to the unit and its detector. */
+export function inDisplayUnit(siRms: number, display: DisplayUnit): number {
+  return (siRms / display.inSi) * detectorFactor[display.detector];
+}
+
+/** 0.0028 m/s in mm/s -> '2.8 mm/s'; 0.005388154 m/s in in/s peak -> '0.3 in/s peak (derived)'. */
+export function printLevel(siRms: number, display: DisplayUnit, figures = 3): string {
+  return `${printNumber(inDisplayUnit(siRms, display), figures)} ${display.text}`.trimEnd();
+}
+
+/** '950 Hz', '2 kHz', '25.6 kHz'. */
+export function printFrequency(hz: number, figures = 4): string {
+  return Math.abs(hz) >= 2000 ? `${printNumber(hz / 1000, figures)} kHz` : `${printNumber(hz, figures)} Hz`;
+}
+
+/** Hz as people state a shaft: '2970 rpm'. */
+export function printSpeed(hz: number, figures = 4): string {
+  return `${printNumber(hz * 60, figures)} rpm`;
+}
+
+const times: readonly (readonly [string, number])[] = [
+  ['d', 86_400_000],
+  ['h', 3_600_000],
+  ['min', 60_000],
+  ['s', 1000],
+];
+
+/** The largest unit that a time fills a whole number of times, so that nothing is lost: '90 min', '2 h', '250 ms'. */
+export function printDuration(ms: number): string {
+  const fitting = times.find(([, size]) => ms !== 0 && ms % size === 0);
+  return fitting === undefined ? `${ms} ms` : `${ms / fitting[1]} ${fitting[0]}`;
+}
+
+/** Seconds for people, three figures: '0.64 s', '10.2 s'. */
+export function printSeconds(seconds: number): string {
+  return `${printNumber(seconds)} s`;
+}
+
+export function printPercent(percent: number): string {
+  return `${printNumber(percent)} %`;
+}

@@ -1,0 +1,81 @@
+import { printDuration, printFrequency } from './print-value.ts';
+import { parseDuration, parseFrequency, parsePercent, refused, shorten, understood } from './quantity.ts';
+import { choice, list, ruled, type Shape, scalar, words } from './shape.ts';
+import { key, map } from './shape-map.ts';
+import type { Severity } from './site.ts';
+
+const numberPattern = '^[+-]?[0-9.]+\\s*';
+
+/** An id as written, never as a number: letters, digits, '-', '_', '.', so that it fits file names and commands. */
+export function id(example: string): Shape<string> {
+  return scalar(
+    (text) => {
+      const written = text.trim();
+      if (/^[\p{L}\p{N}][\p{L}\p{N}._-]{0,59}$/u.test(written)) return understood(written);
+      const plain = written
+        .replace(/[^\p{L}\p{N}._-]+/gu, '-')
+        .replace(/^[^\p{L}\p{N}]+|-+$/gu, '')
+        .slice(0, 60);
+      const what = `'${shorten(text)}' is no id (letters, digits, '-', '_', '.', at most 60)`;
+      return refused(what, plain === '' ? null : plain);
+    },
+    { example, free: true },
+  );
+}
+
+export const formerIds = list(id('old-id'), 20);
+
+export function duration(leastMs: number, mostMs: number, example: string): Shape<number> {
+  const unit = example.split(' ')[1];
+  const parse = ruled(
+    (text: string) => parseDuration(text, unit),
+    (ms) =>
+      ms >= leastMs && ms <= mostMs
+        ? null
+        : { what: `is not from ${printDuration(leastMs)} to ${printDuration(mostMs)}`, instead: null },
+  );
+  return scalar(parse, { example, pattern: `${numberPattern}(ms|s|min|h|d|days?)$` });
+}
+
+export function frequency(leastHz: number, mostHz: number, example: string): Shape<number> {
+  const unit = example.split(' ')[1];
+  const parse = ruled(
+    (text: string) => parseFrequency(text, unit),
+    (hz) =>
+      hz >= leastHz && hz <= mostHz
+        ? null
+        : { what: `is not from ${printFrequency(leastHz)} to ${printFrequency(mostHz)}`, instead: null },
+  );
+  return scalar(parse, { example, pattern: `${numberPattern}(Hz|kHz|rpm|r/min|1/min)$` });
+}
+
+export function percent(least: number, most: number, example: string): Shape<number> {
+  const parse = ruled(parsePercent, (value) =>
+    value >= least && value <= most ? null : { what: `is not from ${least} to ${most} %`, instead: null },
+  );
+  return scalar(parse, { example, pattern: `${numberPattern}%$` });
+}
+
+/** Of the mail standards only what a typing error breaks: one @, no spaces, no brackets. */
+const address = scalar<string>(
+  (text) => {
+    const written = text.trim();
+    if (/^[^\s@<>,;:"()[\]\\]+@[^\s@<>,;:"()[\]\\]+$/.test(written) && written.length <= 254)
+      return understood(written);
+    const inside = /<([^<>\s]+@[^<>\s]+)>/.exec(written)?.[1] ?? null;
+    return refused(`'${shorten(text)}' is no mail address`, inside);
+  },
+  { example: 'maintenance@larkfen.example', free: true },
+);
+
+const severities = ['trouble', 'alert', 'danger'] as const satisfies readonly Severity[];
+
+export const recipientKeys = {
+  address: key(address, 'One mail address.', { required: true }),
+  machines: key(list(id('blower-1'), 2000), 'Only what concerns these machines.'),
+  areas: key(list(words(80, 'aeration'), 200), 'Only what concerns machines of these areas.'),
+  severities: key(list(choice(severities), 3), 'Only these: trouble, alert, danger.'),
+};
+
+export const recipients = list(map(recipientKeys), 200);
+export const mailAddress = address;

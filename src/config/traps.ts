@@ -1,0 +1,216 @@
+import { type Document, isMap, isPair, isScalar, type Pair, visit } from 'yaml';
+import { asYaml, type SiteText, type Span } from './site-text.ts';
+
+/**
+ * Traps of the notation itself: lines that YAML refuses, or reads as something else than a technician means. Each
+ * finding carries the corrected line, and reading goes on with the corrected text, so that one mistake of this kind
+ * does not hide the others. Corrections stay within their line.
+ */
+export interface Repair extends Span {
+  readonly replacement: string;
+  readonly what: string;
+  /** Where the corrected line alone would not show it. */
+  readonly right?: string;
+}
+
+/** Keys whose values are paths or patterns: a backslash in double quotes there is never meant as an escape. */
+const pathKeys = new Set([
+  'drop',
+  'data',
+  'password_file',
+  'files',
+  'files_regex',
+  'ignore',
+  'start_in_name',
+]);
+
+/** Repairs that need no parse: tabs in the indentation, and a closing quote eaten by a backslash ("C:\data\"). */
+export function lineRepairs(source: SiteText): Repair[] {
+  const repairs: Repair[] = [];
+  const step = ' '.repeat(indentationStep(source.text));
+  for (let number = 1; number <= source.lines; number++) {
+    const line = source.line(number);
+    const start = source.lineStart(number);
+    const indent = /^[ \t]*/.exec(line)?.[0] ?? '';
+    if (indent.includes('\t') && !/^\s*(#|$)/.test(line)) {
+      repairs.push({
+        from: start,
+        to: start + indent.length,
+        replacement: indent.replaceAll('\t', step),
+        what: 'the line is indented by a tab, which YAML does not allow',
+        right: `write with spaces: '${indent.replaceAll('\t', step)}${line.slice(indent.length).trimEnd()}'`,
+      });
+    }
+    const quoted = /^(\s*(?:- +)*[\w-]+:\s+)("(?:[^"\\]|\\[^"])*\\")\s*(?:#.*)?$/.exec(line);
+    if (quoted !== null && !indent.includes('\t')) {
+      const from = start + quoted[1].length;
+      repairs.push(unescaped(source.text, { from, to: from + quoted[2].length }));
+    }
+  }
+  return repairs;
+}
+
+/** Least indentation in use, 2 where none is. */
+function indentationStep(text: string): number {
+  let least = Number.POSITIVE_INFINITY;
+  for (const match of text.matchAll(/^( {1,8})[^\s#]/gm)) least = Math.min(least, match[1].length);
+  return Number.isFinite(least) ? least : 2;
+}
+
+/** Repairs of what the parser saw: backslashes in double quotes, colons inside a value. */
+export function parsedRepairs(source: SiteText, document: Document): Repair[] {
+  const repairs: Repair[] = [];
+  const badEscapes = document.errors.filter(({ code }) => code === 'BAD_DQ_ESCAPE').map(({ pos }) => pos[0]);
+  visit(document, {
+    Pair: (_, pair) => {
+      const span = doubleQuoted(pair, source.text);
+      if (span === null) return;
+      const written = source.text.slice(span.from, span.to);
+      const bad = badEscapes.length > 0 && someWithin(badEscapes, span);
+      if (!written.includes('\n') && (bad || meansPath(pair, written)))
+        repairs.push(unescaped(source.text, span));
+    },
+  });
+  for (const { code, pos } of document.errors) {
+    const repair =
+      code === 'BLOCK_AS_IMPLICIT_KEY'
+        ? colonInValue(source, pos[0])
+        : code === 'BLOCK_IN_FLOW'
+          ? colonInBraces(source, pos)
+          : null;
+    if (repair !== null) repairs.push(repair);
+  }
+  return withoutOverlaps(repairs);
+}
+
+/** `sorted` ascending: is one of them inside the span? */
+function someWithin(sorted: readonly number[], { from, to }: Span): boolean {
+  let low = 0;
+  let high = sorted.length;
+  while (low < high) {
+    const middle = (low + high) >> 1;
+    if (sorted[middle] < from) low = middle + 1;
+    else high = middle;
+  }
+  return low < sorted.length && sorted[low] < to;
+}
+
+function doubleQuoted({ value }: Pair<unknown, unknown>, text: string): Span | null {
+  if (!isScalar(value) || value.type !== 'QUOTE_DOUBLE' || !value.range) return null;
+  const [from, to] = value.range;
+  return /(^|[^\\])(\\\\)*\\[^\\"]/.test(text.slice(from, to)) ? { from, to } : null;
+}
+
+function meansPath({ key }: Pair<unknown, unknown>, written: string): boolean {
+  const name = isScalar(key) ? String(key.value) : '';
+  return pathKeys.has(name) || /^"([A-Za-z]:\\|\.{1,2}\\|\\\\)/.test(written);
+}
+
+function unescaped(text: string, { from, to }: Span): Repair {
+  const inside = text.slice(from + 1, to - 1).replaceAll('\\\\', '\\');
+  return {
+    from,
+    to,
+    replacement: `'${inside.replaceAll("'", "''")}'`,
+    what: 'in double quotes a backslash begins an escape (\\n is a new line), so this is not the text that it seems',
+  };
+}
+
+/** `name: Pump: north` at the offset of 'Pump'. */
+function colonInValue(source: SiteText, offset: number): Repair | null {
+  const { line, column } = source.place(offset);
+  const text = source.line(line);
+  const before = text.slice(0, column - 1);
+  const value = text
+    .slice(column - 1)
+    .replace(/\s+#.*$/, '')
+    .trimEnd();
+  if (!/^\s*(?:- +)*[\w-]+:\s+$/.test(before) || !/:(\s|$)/.test(value)) return null;
+  return { from: offset, to: offset + value.length, replacement: quoted(value), what: colonWhat(value) };
+}
+
+function colonInBraces(source: SiteText, [from, to]: readonly [number, number]): Repair | null {
+  const value = source.text.slice(from, to).trimEnd();
+  if (value.includes('\n') || !/:(\s|$)/.test(value)) return null;
+  return { from, to: from + value.length, replacement: quoted(value), what: colonWhat(value) };
+}
+
+function quoted(value: string): string {
+  return `'${value.replaceAll("'", "''")}'`;
+}
+
+function colonWhat(value: string): string {
+  return `the colon in '${value.slice(0, 60)}' begins a new key`;
+}
+
+function withoutOverlaps(repairs: Repair[]): Repair[] {
+  const kept: Repair[] = [];
+  for (const repair of repairs.toSorted((a, b) => a.from - b.from || b.to - a.to)) {
+    if (kept.length === 0 || repair.from >= kept[kept.length - 1].to) kept.push(repair);
+  }
+  return kept;
+}
+
+export function applyRepairs(text: string, repairs: readonly Repair[]): string {
+  const parts: string[] = [];
+  let at = 0;
+  for (const { from, to, replacement } of repairs) {
+    parts.push(text.slice(at, from), replacement);
+    at = to;
+  }
+  parts.push(text.slice(at));
+  return parts.join('');
+}
+
+/**
+ * Inside braces a comma ends a value: `{ alert: 2,8 mm/s }` is a key `alert` of '2' and a key '8 mm/s' without value.
+ * Where pair `index` of a map was cut like that, the whole text as it was meant, and its span.
+ */
+export function splitAtComma(
+  map: unknown,
+  index: number,
+  text: string,
+): { readonly span: Span; readonly whole: string; readonly pieces: number } | null {
+  if (!isMap(map) || map.flow !== true) return null;
+  const value = map.items[index].value;
+  if (!isScalar(value) || value.type !== 'PLAIN' || !value.range) return null;
+  let end = value.range[1];
+  let pieces = 0;
+  for (let next = index + 1; next < map.items.length; next++) {
+    const pair: unknown = map.items[next];
+    if (!isPair(pair) || pair.value !== null || !isScalar(pair.key) || !pair.key.range) break;
+    end = pair.key.range[1];
+    pieces++;
+  }
+  if (pieces === 0) return null;
+  const span = { from: value.range[0], to: end };
+  return { span, whole: text.slice(span.from, span.to).replace(/\s+/g, ' '), pieces };
+}
+
+/** What the cut text should have been: a decimal comma becomes a point, any other text is quoted. */
+export function remedyForComma(whole: string): { readonly what: string; readonly replacement: string } {
+  const decimal = /^([+-]?\d+),(\d+)(?!.*,)(.*)$/s.exec(whole);
+  if (decimal !== null) {
+    return {
+      what: `the comma ends the value inside braces; '${whole}' has a decimal comma, numbers take a point`,
+      replacement: `${decimal[1]}.${decimal[2]}${decimal[3]}`,
+    };
+  }
+  return {
+    what: 'the comma ends the value inside braces, the rest becomes a key',
+    replacement: asYaml(whole, true),
+  };
+}
+
+/** `name: Pump #2`: what a comment took from a plain text, or null. A '# ' with a space after it is meant as a comment. */
+export function eatenByComment(
+  node: unknown,
+  text: string,
+): { readonly span: Span; readonly whole: string } | null {
+  if (!isScalar(node) || !node.range || (node.type !== 'PLAIN' && node.value !== '')) return null;
+  const [from, end] = node.range;
+  const eaten = /^ ?#[^\s#][^\n\r]*/.exec(text.slice(end, end + 300))?.[0];
+  if (eaten === undefined || (eaten[0] === '#' && text[end - 1] !== ' ')) return null;
+  const to = end + eaten.trimEnd().length;
+  return { span: { from, to }, whole: text.slice(from, to).trim() };
+}
