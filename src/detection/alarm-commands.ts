@@ -30,9 +30,11 @@ export const acknowledge: Act = (state, command) =>
 export const acknowledgeAndEnd: Act = (state, command) =>
   changed(state, lifeOver, [journalled('acknowledged', state, command)]);
 
-/** E -> D. */
-export const release: Act = (state, command) =>
-  changed(state, { latched: false, heldBack: false }, [journalled('reset', state, command)]);
+/** E -> D; -> A where nobody was told, so that nobody owes an acknowledgement. */
+export const release: Act = (state, command) => {
+  const fields = state.told === null ? lifeOver : { latched: false, heldBack: false };
+  return changed(state, fields, [journalled('reset', state, command)]);
+};
 
 /** F -> A. */
 export const releaseAndEnd: Act = (state, command) =>

@@ -31,7 +31,7 @@ export function countRecording(
   rule: Pick<AlarmRule, 'onDelay' | 'offDelay'>,
 ): Counted {
   const { condition, pending } = state;
-  const rises = stepsAbove(condition, judged.severity).map((to) => {
+  const rises = stepsAbove(condition, judged.severity, pending).map((to) => {
     if (rank(judged.severity) >= rank(to)) return grown(runTo(pending, to), to, judged.usedMs);
     return judged.flagged ? runTo(pending, to) : null;
   });
@@ -60,10 +60,12 @@ export function countRecording(
   return { condition, pending: pack(pending, [...rises, ...falls]), begun: null };
 }
 
-/** Severities that could be risen to, nearest first. */
-function stepsAbove(condition: Condition, severity: Condition): readonly Severity[] {
-  if (condition === 'trouble' || severity === 'trouble') return condition === 'normal' ? ['trouble'] : [];
-  return (['alert', 'danger'] as const).filter((s) => rank(s) > rank(condition));
+/** Severities that could be risen to, nearest first: those of limits, or the one of trouble. */
+function stepsAbove(condition: Condition, severity: Condition, pending: Pending | null): readonly Severity[] {
+  const steps: readonly Severity[] = [condition, severity, pending?.to].includes('trouble')
+    ? ['trouble']
+    : ['alert', 'danger'];
+  return steps.filter((s) => rank(s) > rank(condition));
 }
 
 /** Steps down, nearest first. */
