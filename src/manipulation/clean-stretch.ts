@@ -1,0 +1,67 @@
+import { type AveragedDensity, Averager, type AveragingSettings } from '../signal/averaging.ts';
+import { bandPower } from '../signal/band-level.ts';
+import { Waveform, type WaveformValues } from '../signal/waveform.ts';
+import type { LaidBand } from './point-bands.ts';
+
+/** What one unbroken stretch of samples gave. */
+export interface StretchResult {
+  readonly samples: number;
+  readonly waveform: WaveformValues;
+  /** Null where not one segment fits. */
+  readonly density: AveragedDensity | null;
+  /** Mean square of each segment by itself, one list a band, in the order of the bands. */
+  readonly segmentPowers: readonly (readonly number[])[];
+}
+
+/**
+ * Waveform values and averaged density of a stretch without gaps, fed in blocks of any size. Holds samples only
+ * until the first segment is full, so that a file which claims more than it has costs no memory.
+ */
+export class CleanStretch {
+  readonly #settings: AveragingSettings | null;
+  readonly #bands: readonly LaidBand[];
+  readonly #waveform = new Waveform();
+  readonly #segmentPowers: number[][];
+  #waiting: Float64Array[] = [];
+  #averager: Averager | null = null;
+  samples = 0;
+
+  /** `settings` null: waveform values only. */
+  constructor(settings: AveragingSettings | null, bands: readonly LaidBand[]) {
+    this.#settings = settings;
+    this.#bands = bands;
+    this.#segmentPowers = bands.map(() => []);
+  }
+
+  /** The array may be used again by the caller. */
+  add(samples: Float64Array): void {
+    if (samples.length === 0) return;
+    this.samples += samples.length;
+    this.#waveform.add(samples);
+    if (this.#settings === null) return;
+    if (this.#averager !== null) {
+      this.#averager.add(samples);
+      return;
+    }
+    this.#waiting.push(samples.slice());
+    if (this.samples < this.#settings.segmentSamples) return;
+    this.#averager = new Averager(this.#settings, (density) => this.#visit(density));
+    for (const block of this.#waiting) this.#averager.add(block);
+    this.#waiting = [];
+  }
+
+  finish(): StretchResult {
+    return {
+      samples: this.samples,
+      waveform: this.#waveform.finish(),
+      density: this.#averager?.finish() ?? null,
+      segmentPowers: this.#segmentPowers,
+    };
+  }
+
+  #visit(density: Float64Array): void {
+    for (const [n, { weights }] of this.#bands.entries()) {
+      this.#segmentPowers[n].push(bandPower(density, weights));
+    }
+  }
+}

@@ -1,0 +1,75 @@
+import { createHash } from 'node:crypto';
+import type { AnalysisSettings, Band, Point, SignalSettings } from '../config/site.ts';
+
+/** Raised whenever the same recording under the same settings would give another number than before. */
+export const algorithmVersion = 1;
+
+/** Everything that moves a number made from a recording, but for the recording itself. */
+export interface FingerprintSettings {
+  readonly point: Pick<Point, 'quantity' | 'analysis' | 'recordings'>;
+  /** As it was applied: the site file's, or the sidecar's where that overrides it. */
+  readonly signal: SignalSettings;
+  readonly sampleRateHz: number;
+  readonly segmentSamples: number;
+}
+
+/**
+ * Identity of a band's series: equal as long as its numbers may be compared. Moved by window, segment, overlap, the
+ * band's edges as configured, integration, the way from sample to SI, skipped start, sample rate and algorithm; not by
+ * the recording's length, other bands, limits, names, speed or the unit in which people see it.
+ */
+export function seriesFingerprint(settings: FingerprintSettings, band: Band): string {
+  return hash([...common(settings), 'band', band.quantity, band.from, band.to, band.inOrders]);
+}
+
+/** As `seriesFingerprint` for everything that is measured on a point: all its bands and what its peaks depend on. */
+export function settingsFingerprint(settings: FingerprintSettings, bands: readonly Band[]): string {
+  const { analysis } = settings.point;
+  return hash([
+    ...common(settings),
+    'point',
+    analysis.confidencePercent,
+    analysis.falsePeaksPerSpectrum,
+    ...bands.flatMap((band) => [band.quantity, band.from, band.to, band.inOrders]),
+  ]);
+}
+
+function common({ point, signal, sampleRateHz, segmentSamples }: FingerprintSettings): unknown[] {
+  const analysis: AnalysisSettings = point.analysis;
+  return [
+    'algorithm',
+    algorithmVersion,
+    'detrending',
+    'mean of each segment',
+    'averaging',
+    'power',
+    analysis.window,
+    segmentSamples,
+    analysis.overlapPercent,
+    analysis.skipStartS,
+    point.quantity,
+    signal.samplesIn.quantity,
+    signal.samplesIn.inSi,
+    signal.fullScale,
+    signal.sensitivity,
+    seriesRate(sampleRateHz, point.recordings.sampleRateHz),
+  ];
+}
+
+/** Largest part by which a recording's sample rate may differ from the configured one. */
+export const rateTolerance = 0.001;
+
+/** Whether the rate is not the configured one; a point without one takes any. */
+export function isWrongRate(sampleRateHz: number, configuredHz: number | null): boolean {
+  return configuredHz !== null && Math.abs(sampleRateHz / configuredHz - 1) > rateTolerance;
+}
+
+/** The configured rate where the recording has it, else the recording's in four figures (steps of at most 0.1 %). */
+export function seriesRate(sampleRateHz: number, configuredHz: number | null): number {
+  if (configuredHz !== null && !isWrongRate(sampleRateHz, configuredHz)) return configuredHz;
+  return Number(sampleRateHz.toPrecision(4));
+}
+
+function hash(parts: readonly unknown[]): string {
+  return createHash('sha256').update(JSON.stringify(parts)).digest('hex').slice(0, 32);
+}
