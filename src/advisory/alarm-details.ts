@@ -1,0 +1,140 @@
+import { printFrequency, printNumber } from '../config/print-value.ts';
+import type { AlarmFacts, LineFacts, LinesFacts, OtherPointFacts, RecordingFacts } from './facts.ts';
+import {
+  bareLevel,
+  counted,
+  distanceText,
+  intervalText,
+  levelText,
+  measuredText,
+  percentText,
+  unitText,
+} from './level-words.ts';
+import { lineCourse } from './line-changes.ts';
+import { durationText, momentText } from './time-words.ts';
+import { foreign, nameOf, speedOrigin, standingText } from './wording.ts';
+
+/** What an alarm mail says below the first lines, in the order in which one asks: a name and what is said of it. */
+export type Detail = readonly [name: string, said: string];
+
+const mostLines = 4;
+const mostPoints = 6;
+
+export function alarmDetails(alarm: AlarmFacts, timeZone: string, writtenMs: number): Detail[] {
+  const level = `${measuredText(alarm.level, alarm.band.display)}, ${intervalText(alarm.level, alarm.band.display)}`;
+  return [
+    ['Level', `${level}; ${bandText(alarm)}`],
+    ['Limit', limitDetail(alarm)],
+    [
+      'Since',
+      `${momentText(alarm.sinceMs, timeZone)} (${durationText(writtenMs - alarm.sinceMs)}), ${counted(alarm.recordings, 'recording')} beyond the limit`,
+    ],
+    ['Before', beforeDetail(alarm)],
+    ...(alarm.trend === null ? [] : [['Trend', foreign(alarm.trend)] as const]),
+    ...(alarm.lines === null ? [] : linesDetails(alarm.lines, timeZone)),
+    ...otherPointsDetail(alarm.otherPoints),
+    ['Recording', recordingDetail(alarm.recording, timeZone)],
+    ...flagsDetail(alarm.recording),
+    ['State', standingText(alarm, timeZone)],
+  ];
+}
+
+function bandText({ band }: AlarmFacts): string {
+  return `band ${foreign(band.id)}, ${printFrequency(band.fromHz)} to ${printFrequency(band.toHz)}`;
+}
+
+function limitDetail(alarm: AlarmFacts): string {
+  const { limit, band, level } = alarm;
+  const other = alarm.severity === 'danger' ? 'alert' : 'danger';
+  const said = ([alarm.severity, other] as const).map((severity) => {
+    const at = limit[severity];
+    if (at === null) return `no ${severity} limit`;
+    return `${severity} ${levelText(at, band.display)}: ${distanceText(level.level, at)}`;
+  });
+  const side = limit.side === 'lower' ? 'lower limit, ' : '';
+  return `${side}${said.join('; ')}${alarm.zone === null ? '' : `; zone ${foreign(alarm.zone)}`}`;
+}
+
+function beforeDetail({ before, band }: AlarmFacts): string {
+  const said: string[] = [];
+  if (before.last.length > 0) {
+    const levels = before.last.map(({ level }) => bareLevel(level, band.display)).join(', ');
+    said.push(`${levels} ${unitText(band.display)} (the last ${before.last.length}, newest first)`);
+  }
+  if (before.dayBefore !== null) said.push(`a day ago ${bareLevel(before.dayBefore.level, band.display)}`);
+  if (before.weekBefore !== null) said.push(`a week ago ${bareLevel(before.weekBefore.level, band.display)}`);
+  if (before.baseline !== null) said.push(`baseline ${bareLevel(before.baseline, band.display)}`);
+  return said.length === 0 ? 'no earlier level under these settings' : said.join('; ');
+}
+
+function linesDetails(facts: LinesFacts, timeZone: string): Detail[] {
+  if (facts.lines.length === 0) return [['Lines', 'none stands out of the noise floor']];
+  const unit = unitText(facts.display);
+  const list = (lines: readonly LineFacts[]): string => {
+    const rest = lines.length - mostLines;
+    const said = lines.slice(0, mostLines).map((line) => lineText(line, facts));
+    return `${said.join('; ')}${rest > 0 ? `; and ${rest} more` : ''}`;
+  };
+  if (facts.comparedWithMs === null)
+    return [['Lines', `in ${unit}: ${list(facts.lines)}; no earlier spectrum to compare with`]];
+  const of = (...courses: string[]) => facts.lines.filter((line) => courses.includes(lineCourse(line)));
+  const rose = of('rose', 'new');
+  const steady = of('same', 'fell', 'gone');
+  const compared = `since ${momentText(facts.comparedWithMs, timeZone)}, in ${unit}`;
+  return [
+    ['Lines up', `${compared}: ${rose.length === 0 ? 'none rose by 3 dB or more' : list(rose)}`],
+    ['Lines not up', steady.length === 0 ? 'every line rose' : list(steady)],
+  ];
+}
+
+function lineText(line: LineFacts, { display, comparedWithMs }: LinesFacts): string {
+  const order = line.order === null ? '' : ` (${printNumber(line.order)}x)`;
+  const now = line.level === null ? 'gone' : bareLevel(line.level, display);
+  const name = `${printFrequency(line.frequencyHz)}${order} ${now}`;
+  if (comparedWithMs === null) return name;
+  return `${name} (${line.levelBefore === null ? 'new' : `was ${bareLevel(line.levelBefore, display)}`})`;
+}
+
+function otherPointsDetail(points: readonly OtherPointFacts[]): Detail[] {
+  if (points.length === 0) return [];
+  const ranked = [...points].sort((a, b) => (b.share ?? -1) - (a.share ?? -1));
+  const said = ranked.slice(0, mostPoints).map(({ point, band, level, share }) => {
+    if (band === null || level === null) return `${nameOf(point)}: no level`;
+    const used = share === null ? 'no limit' : `${percentText(share)} of alert`;
+    return `${nameOf(point)}: ${foreign(band.id)} ${measuredText(level, band.display)}, ${used}`;
+  });
+  const rest = points.length - mostPoints;
+  return [['Other points', `${said.join('; ')}${rest > 0 ? `; and ${rest} more` : ''}`]];
+}
+
+function recordingDetail(recording: RecordingFacts, timeZone: string): string {
+  const { speed, averaging } = recording;
+  const said = [`${momentText(recording.startMs, timeZone)}, ${printNumber(recording.durationS)} s long`];
+  if (recording.arrival !== 'in-time') {
+    const how =
+      recording.arrival === 'late' ? 'late, after newer ones' : 'together with others after a pause';
+    said.push(`it came ${how}, ${momentText(recording.arrivedMs, timeZone)}`);
+  }
+  if (speed === null) said.push('speed not known');
+  else {
+    const uncertain = speed.uncertaintyRpm > 0 ? `, ± ${printNumber(speed.uncertaintyRpm)} rpm` : '';
+    said.push(`speed ${printNumber(speed.rpm, 4)} rpm (${speedOrigin[speed.origin]}${uncertain})`);
+  }
+  if (recording.loadPercent !== null) said.push(`load ${printNumber(recording.loadPercent)} %`);
+  if (averaging === null) said.push('too short for one segment');
+  else {
+    said.push(
+      `${counted(averaging.averages, 'average')}, worth ${printNumber(averaging.effectiveAverages)} independent (${averaging.window}, ` +
+        `overlap ${printNumber(averaging.overlapPercent)} %, lines ${printNumber(averaging.lineSpacingHz)} Hz apart)`,
+    );
+  }
+  if (recording.quality.length === 0) said.push('no quality flags');
+  if (recording.fileName !== null) said.push(`file ${foreign(recording.fileName)}`);
+  return said.join('; ');
+}
+
+function flagsDetail({ quality }: RecordingFacts): Detail[] {
+  if (quality.length === 0) return [];
+  const said = quality.map(({ flag, detail }) => (detail === '' ? flag : `${flag}: ${foreign(detail)}`));
+  return [['Flags', `${said.join('; ')}. A flagged recording can raise or hold an alarm, never clear one.`]];
+}

@@ -1,0 +1,114 @@
+import type { Severity } from '../config/site.ts';
+import { actionText, respondByText, whereText } from './alarm-mail.ts';
+import { clip } from './escape.ts';
+import type { StandingAlarm } from './facts.ts';
+import { markWord } from './letter.ts';
+import { changeText, distanceText, levelText, measuredText, percentText } from './level-words.ts';
+import { bearingOf, firstLimit, largestShare } from './ranking.ts';
+import type { Standing, Worse } from './summary.ts';
+import type { SummaryFacts } from './summary-facts.ts';
+import { durationText, shortMomentText } from './time-words.ts';
+import { foreign, isReturned, nameOf, placeText, shortAdvice, standingText, troubleName } from './wording.ts';
+
+/** One line of the summary: a bearing (or other place) with all that is to say of it. */
+export interface Finding {
+  readonly mark: Severity | null;
+  readonly number: number | null;
+  readonly text: string;
+  readonly more: readonly string[];
+}
+
+/** Directions of one bearing, the most urgent first: it leads, the others follow with their numbers. */
+export function needFinding(group: readonly Standing[], facts: SummaryFacts): Finding {
+  const first = group[0] as Standing;
+  const { timeZone } = facts.site;
+  const more = alsoLines(group);
+  const since = `${sinceText(first, facts)}, ${standingText(first, timeZone)}`;
+  const respond =
+    first.respondByMs === null ? '' : ` ${respondByText(first.respondByMs, facts.writtenMs, timeZone)}`;
+  more.push(`${since}.${respond}`, todoText(first));
+  return { mark: severityOf(first), number: first.number, text: findingText(first), more };
+}
+
+/** What somebody has already taken in hand: one line each. */
+export function knownFinding(group: readonly Standing[], timeZone: string): Finding {
+  const first = group[0] as Standing;
+  return {
+    mark: severityOf(first),
+    number: first.number,
+    text: `${findingText(first)}; ${standingText(first, timeZone)}`,
+    more: alsoLines(group),
+  };
+}
+
+export function worseFinding(group: readonly Worse[]): Finding {
+  const first = group[0] as Worse;
+  const others = group.slice(1).map((worse) => `${directionOf(worse)} ${worseText(worse)}`);
+  return {
+    mark: null,
+    number: null,
+    text: `${placeText(first.machine, first.point)}: ${worseText(first)}`,
+    more: others.length === 0 ? [] : [`Also ${others.join('; ')}`],
+  };
+}
+
+function worseText({ now }: Worse): string {
+  const change = now.change === null ? 'changed' : changeText(now.change.ratio);
+  const usual = now.change === null ? '' : ` (ordinary spread ${percentText(now.change.ordinaryRatio - 1)})`;
+  if (now.level === null) return `${foreign(now.band.id)} ${change}${usual}`;
+  const share = largestShare(now.level.level, now.limits);
+  const used = share === null ? 'no limit' : `${percentText(share)} of the alert limit`;
+  return `${foreign(now.band.id)} ${change} on the week${usual}, now ${measuredText(now.level, now.band.display)}, ${used}`;
+}
+
+/** The direction where the bearing has been named, else the point. */
+function directionOf({ point }: Pick<Worse, 'point'>): string {
+  return bearingOf(point) === point.name || point.direction === null
+    ? nameOf(point)
+    : clip(point.direction, 24);
+}
+
+function severityOf(item: Standing): Severity {
+  return item.kind === 'alarm' ? item.severity : 'trouble';
+}
+
+function findingText(item: Standing): string {
+  if (item.kind === 'trouble') return `${whereText(item)}: ${whatText(item)}`;
+  return `${placeText(item.machine, item.point)}: ${whatText(item)}`;
+}
+
+function whatText(item: Standing): string {
+  if (item.kind === 'trouble') {
+    return item.detail === null
+      ? troubleName[item.trouble]
+      : `${troubleName[item.trouble]} (${clip(item.detail, 120)})`;
+  }
+  return alarmText(item);
+}
+
+function alarmText({ band, level, limit, severity, change, dangerUnconfirmed }: StandingAlarm): string {
+  if (level === null) return `${foreign(band.id)}, no level now`;
+  const at = limit[severity] ?? firstLimit(limit);
+  const distance =
+    at === null ? '' : `, ${distanceText(level.level, at)} ${severity} (${levelText(at, band.display)})`;
+  const trend = change === null ? '' : `, ${changeText(change.ratio)} on the week`;
+  const unconfirmed = dangerUnconfirmed ? ', over danger in the newest recording, not yet confirmed' : '';
+  return `${foreign(band.id)} ${measuredText(level, band.display)}${distance}${trend}${unconfirmed}`;
+}
+
+/** 'Also ALERT 18 vertical: ...': every further number of the group, so that none is hidden. */
+function alsoLines(group: readonly Standing[]): string[] {
+  return group.slice(1).map((item) => {
+    const where = item.point === null ? 'the same' : directionOf({ point: item.point });
+    return `Also ${markWord[severityOf(item)]} ${item.number}, ${where}: ${whatText(item)}`;
+  });
+}
+
+function sinceText(item: Standing, { site, writtenMs }: SummaryFacts): string {
+  return `Since ${shortMomentText(item.sinceMs, site.timeZone)} (${durationText(writtenMs - item.sinceMs)})`;
+}
+
+function todoText(item: Standing): string {
+  if (isReturned(item)) return 'The level is back within its limit; find out why it rose, then acknowledge.';
+  return item.kind === 'alarm' ? actionText(item.action, item.machine) : shortAdvice(item.trouble);
+}

@@ -1,0 +1,136 @@
+import { subjectLine } from './alarm-mail.ts';
+import type { MachineFacts, Mail } from './facts.ts';
+import type { Block, Letter } from './letter.ts';
+import { letterHtml } from './letter-html.ts';
+import { letterText } from './letter-text.ts';
+import { bareLevel, changeText, counted, percentText, unitText } from './level-words.ts';
+import { gather, shareOfAlert } from './ranking.ts';
+import { type Morning, morningOf, mostShown, type Section } from './summary.ts';
+import type { BandNow, PointNow, SummaryFacts } from './summary-facts.ts';
+import { dateText, momentText, shortMomentText } from './time-words.ts';
+import { acknowledgeCommand, caution, foreign, nameOf, zoneText } from './wording.ts';
+
+/** Rows of the full table that a mail carries: keeps the HTML under 300 kB; the file has them all. */
+export const mostTableRows = 800;
+
+/** The morning's mail. `html` of `summaryFile` is the same with every row of the tables. */
+export function summaryMail(facts: SummaryFacts): Mail {
+  const letter = summaryLetter(facts, morningOf(facts), mostTableRows);
+  return { subject: summarySubject(facts), text: letterText(letter), html: letterHtml(letter) };
+}
+
+/** What is written to `data/summary/latest.html`. */
+export function summaryFile(facts: SummaryFacts): string {
+  return letterHtml(summaryLetter(facts, morningOf(facts), Number.POSITIVE_INFINITY));
+}
+
+/** 'Larkfen Waterworks, Tue 1 Dec 2026: 2 machines need a person today'. */
+export function summarySubject(facts: SummaryFacts): string {
+  const [first] = morningOf(facts).first.split(';');
+  return subjectLine(`${nameOf(facts.site)}, ${dateText(facts.writtenMs, facts.site.timeZone)}: ${first}`);
+}
+
+export function summaryLetter(facts: SummaryFacts, morning: Morning, mostRows: number): Letter {
+  const { timeZone } = facts.site;
+  const blocks: Block[] = [
+    ...morning.sections.flatMap(screenBlocks),
+    { kind: 'closing', text: `${zoneText(timeZone)} Change: the last 24 hours against the 7 days before.` },
+    { kind: 'closing', text: caution },
+    ...morning.sections.flatMap(restBlocks),
+    ...tableBlocks(facts, mostRows),
+  ];
+  return {
+    lead: morning.first,
+    head: `${nameOf(facts.site)}, ${momentText(facts.writtenMs, timeZone)}`,
+    test: false,
+    blocks,
+  };
+}
+
+/** A section as the first screen shows it: five findings, then how many more. */
+function screenBlocks(section: Section): Block[] {
+  const shown = section.findings.slice(0, mostShown);
+  const rest = section.findings.length - shown.length;
+  const blocks: Block[] = [
+    { kind: 'heading', text: section.title },
+    ...shown.map((finding): Block => ({ kind: 'finding', ...finding })),
+    ...(section.lines.length === 0 ? [] : [{ kind: 'paragraph' as const, text: section.lines.join(' ') }]),
+  ];
+  if (rest > 0) blocks.push({ kind: 'paragraph', text: `And ${rest} more, listed below.` });
+  if (section.name === 'needs' && shown.some(({ number }) => number !== null)) {
+    blocks.push({ kind: 'command', text: acknowledgeCommand('NUMBER') });
+  }
+  return blocks;
+}
+
+/** The findings that the first screen had no room for. */
+function restBlocks(section: Section): Block[] {
+  const rest = section.findings.slice(mostShown);
+  if (rest.length === 0) return [];
+  return [
+    { kind: 'heading', text: `${section.title}, the others` },
+    ...rest.map((finding): Block => ({ kind: 'finding', ...finding })),
+  ];
+}
+
+const judgingWord: Readonly<Record<PointNow['judging'], string>> = {
+  judged: '',
+  stopped: 'stopped',
+  blind: 'blind',
+  'not-judged': 'not judged',
+  'no-limit': 'no limit',
+  'out-of-service': 'out of service',
+};
+
+function tableBlocks(facts: SummaryFacts, mostRows: number): Block[] {
+  const blocks: Block[] = [];
+  let left = mostRows;
+  let hidden = 0;
+  for (const points of gather(facts.points, ({ machine }) => machine.id)) {
+    const rows = points.flatMap((point) => pointRows(point, facts.site.timeZone));
+    const shown = rows.slice(0, Math.max(0, left));
+    left -= shown.length;
+    hidden += rows.length - shown.length;
+    if (shown.length === 0) continue;
+    const machine = (points[0] as PointNow).machine;
+    blocks.push({ kind: 'heading', text: machineHeading(machine) });
+    blocks.push({ kind: 'table', heads: tableHeads, rows: shown });
+  }
+  if (hidden > 0) {
+    blocks.push({
+      kind: 'paragraph',
+      text: `And ${counted(hidden, 'row')} more in data/summary/latest.html.`,
+    });
+  }
+  return blocks;
+}
+
+function machineHeading(machine: MachineFacts): string {
+  return `${nameOf(machine)} (criticality ${machine.criticality})`;
+}
+
+const tableHeads = ['Point, band', 'Level (interval)', 'Of alert', 'Of danger', 'Change', 'Last'];
+
+function pointRows({ point, judging, lastMs, bands }: PointNow, timeZone: string): string[][] {
+  const last = lastMs === null ? 'never' : shortMomentText(lastMs, timeZone);
+  const word = judgingWord[judging];
+  const note = word === '' ? '' : ` (${word})`;
+  if (bands.length === 0) return [[`${nameOf(point)}${note}`, 'no band', '', '', '', last]];
+  return bands.map((now) => [`${nameOf(point)}${note}, ${foreign(now.band.id)}`, ...bandCells(now), last]);
+}
+
+function bandCells({ band, level, limits, change, zone }: BandNow): string[] {
+  if (level === null) return ['no level', '', '', ''];
+  const { display } = band;
+  const interval = `(${bareLevel(level.intervalLow, display)} to ${bareLevel(level.intervalHigh, display)})`;
+  const inZone = zone === null ? '' : `, zone ${foreign(zone)}`;
+  const value = `${level.atLeast ? 'at least ' : ''}${bareLevel(level.level, display)} ${unitText(display)}`;
+  const shares = (['alert', 'danger'] as const).map((severity) => {
+    const used = limits
+      .filter((limit) => limit[severity] !== null)
+      .map((limit) => shareOfAlert(level.level, { ...limit, alert: limit[severity] }) ?? 0);
+    return used.length === 0 ? 'none' : percentText(Math.max(...used));
+  });
+  const changed = change === null ? '' : `${changeText(change.ratio)}${change.worse ? ', worse' : ''}`;
+  return [`${value} ${interval}${inZone}`, ...shares, changed];
+}

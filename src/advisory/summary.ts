@@ -1,0 +1,183 @@
+import type { Severity } from '../config/site.ts';
+import { needsAcknowledging } from './alarm-mail.ts';
+import type { MachineFacts, PointFacts, StandingAlarm, TroubleFacts } from './facts.ts';
+import { counted } from './level-words.ts';
+import { bearingOf, byUrgency, gather, largestShare, shareOfAlert } from './ranking.ts';
+import { historyLines, recordingLines, serviceLines } from './summary-counts.ts';
+import type { BandNow, PointNow, SummaryFacts } from './summary-facts.ts';
+import { type Finding, knownFinding, needFinding, worseFinding } from './summary-findings.ts';
+import { placeText, troubleName } from './wording.ts';
+
+/** The morning as data: what needs a person first, in ordered sections, before it becomes text or HTML. */
+export interface Morning {
+  /** '2 machines need a person today; 58 of 60 points judged, 1 stopped, 1 blind: ...'. */
+  readonly first: string;
+  readonly sections: readonly Section[];
+}
+
+export interface Section {
+  readonly name: 'needs' | 'worse' | 'known' | 'steady' | 'recordings' | 'history' | 'service';
+  readonly title: string;
+  /** Every finding, the most urgent first; a screen shows `mostShown` of them, then 'and n more'. */
+  readonly findings: readonly Finding[];
+  /** Plain lines of counts; or what is said where there is no finding. */
+  readonly lines: readonly string[];
+}
+
+export const mostShown = 5;
+
+export type Standing = StandingAlarm | TroubleFacts;
+
+/** A band that got worse without passing a limit. */
+export interface Worse {
+  readonly machine: MachineFacts;
+  readonly point: PointFacts;
+  readonly now: BandNow;
+}
+
+/**
+ * Whether a standing alarm or trouble needs somebody today: not acknowledged, or the time to respond has passed, or
+ * worse in spite of the acknowledgement, or over the danger limit and not yet confirmed. What a person has shelved or
+ * taken out of service does not.
+ */
+export function needsPerson(standing: Standing, nowMs: number): boolean {
+  if (['shelved', 'suppressed', 'out-of-service', 'normal'].includes(standing.standing)) return false;
+  if (needsAcknowledging(standing)) return true;
+  if (standing.standing === 'latched-acknowledged') return false;
+  if (standing.respondByMs !== null && standing.respondByMs < nowMs) return true;
+  return standing.kind === 'alarm' && (standing.change?.worse === true || standing.dangerUnconfirmed);
+}
+
+export function morningOf(facts: SummaryFacts): Morning {
+  const standing = facts.standing.filter((item) => item.standing !== 'normal');
+  const needs = inGroups(standing.filter((item) => needsPerson(item, facts.writtenMs)));
+  const known = inGroups(standing.filter((item) => !needsPerson(item, facts.writtenMs)));
+  const worse = worseOf(facts, standing);
+  const worseGroups = gather(worse, ({ machine, point }) => `${machine.id}\n${bearingOf(point)}`);
+  const sections: Section[] = [
+    {
+      name: 'needs',
+      title: 'Needs a person today',
+      findings: needs.map((group) => needFinding(group, facts)),
+      lines: needs.length === 0 ? ['Nothing.'] : [],
+    },
+    {
+      name: 'worse',
+      title: 'Worse, no limit passed',
+      findings: worseGroups.map((group) => worseFinding(group)),
+      lines: worse.length === 0 ? ['Nothing rose by more than its ordinary spread.'] : [],
+    },
+    {
+      name: 'known',
+      title: 'Already known',
+      findings: known.map((group) => knownFinding(group, facts.site.timeZone)),
+      lines: known.length === 0 ? ['Nothing.'] : [],
+    },
+    {
+      name: 'steady',
+      title: 'Steady or better',
+      findings: [],
+      lines: [`${steadyCount(facts, standing, worse)} of ${counted(facts.points.length, 'point')}.`],
+    },
+    { name: 'recordings', title: 'Recordings', findings: [], lines: recordingLines(facts) },
+    { name: 'history', title: 'Alarms', findings: [], lines: historyLines(facts) },
+    { name: 'service', title: 'The service', findings: [], lines: serviceLines(facts) },
+  ];
+  return { first: firstLine(facts, needs.flat()), sections };
+}
+
+/** Alarms and troubles of one bearing make one finding; the most urgent first, in and between the groups. */
+function inGroups(items: readonly Standing[]): Standing[][] {
+  const ordered = [...items].sort((a, b) => byUrgency(rankOf(a), rankOf(b)) || a.number - b.number);
+  return gather(ordered, (item) => {
+    if (item.machine === null || item.point === null) return `number ${item.number}`;
+    return `${item.machine.id}\n${bearingOf(item.point)}`;
+  });
+}
+
+function rankOf(item: Standing): { machine: MachineFacts | null; severity: Severity; share: number | null } {
+  if (item.kind === 'trouble') return { machine: item.machine, severity: 'trouble', share: null };
+  const share = item.level === null ? null : shareOfAlert(item.level.level, item.limit);
+  return { machine: item.machine, severity: item.severity, share };
+}
+
+/** Bands whose change is for the worse and that no limit speaks of; by criticality, then share of the alert limit. */
+function worseOf(facts: SummaryFacts, standing: readonly Standing[]): Worse[] {
+  const told = new Set(
+    standing
+      .filter((item) => item.kind === 'alarm')
+      .map((item) => bandKey(item.machine, item.point, item.band)),
+  );
+  const found: Worse[] = facts.points
+    .filter(({ judging }) => judging === 'judged' || judging === 'no-limit')
+    .flatMap(({ machine, point, bands }) => bands.map((now) => ({ machine, point, now })))
+    .filter(
+      ({ machine, point, now }) => now.change?.worse === true && !told.has(bandKey(machine, point, now.band)),
+    );
+  const rank = ({ machine, now }: Worse) => ({
+    machine,
+    severity: null,
+    share: now.level === null ? null : largestShare(now.level.level, now.limits),
+  });
+  return found.sort(
+    (a, b) => byUrgency(rank(a), rank(b)) || (b.now.change?.ratio ?? 0) - (a.now.change?.ratio ?? 0),
+  );
+}
+
+function bandKey(machine: MachineFacts, point: PointFacts, band: { readonly id: string }): string {
+  return `${machine.id}\n${point.id}\n${band.id}`;
+}
+
+function pointKey(machine: MachineFacts | null, point: PointFacts | null): string {
+  return `${machine?.id}\n${point?.id}`;
+}
+
+/** Judged points of which nothing stands and nothing got worse. */
+function steadyCount(facts: SummaryFacts, standing: readonly Standing[], worse: readonly Worse[]): number {
+  const spokenOf = new Set([...standing, ...worse].map(({ machine, point }) => pointKey(machine, point)));
+  return facts.points.filter(
+    ({ machine, point, judging }) => judging === 'judged' && !spokenOf.has(pointKey(machine, point)),
+  ).length;
+}
+
+function firstLine(facts: SummaryFacts, needs: readonly Standing[]): string {
+  const machines = new Set(needs.flatMap(({ machine }) => (machine === null ? [] : [machine.id]))).size;
+  const elsewhere = needs.filter(({ machine }) => machine === null).length;
+  const who: string[] = [];
+  if (machines > 0) who.push(counted(machines, 'machine'));
+  if (elsewhere > 0)
+    who.push(
+      counted(elsewhere, 'trouble of logger, files or service', 'troubles of logger, files or service'),
+    );
+  const verb = machines + elsewhere === 1 ? 'needs' : 'need';
+  const needed =
+    who.length === 0 ? 'No machine needs a person today' : `${who.join(' and ')} ${verb} a person today`;
+  return `${needed}; ${judgingText(facts)}`;
+}
+
+/** '58 of 60 points judged, 1 stopped, 1 blind: Sludge pump 2, drive end (dead sensor).' */
+function judgingText({ points, standing }: SummaryFacts): string {
+  const of = (judging: PointNow['judging']) => points.filter((point) => point.judging === judging);
+  const counts = [`${of('judged').length} of ${counted(points.length, 'point')} judged`];
+  const others = [
+    ['stopped', 'stopped'],
+    ['not-judged', 'outside every operating condition'],
+    ['no-limit', 'without a limit'],
+    ['out-of-service', 'out of service'],
+  ] as const;
+  for (const [judging, words] of others) {
+    const count = of(judging).length;
+    if (count > 0) counts.push(`${count} ${words}`);
+  }
+  const blind = of('blind');
+  if (blind.length === 0) return `${counts.join(', ')}.`;
+  const named = blind.slice(0, 3).map(({ machine, point }) => {
+    const trouble = standing.find(
+      (item) => item.kind === 'trouble' && pointKey(item.machine, item.point) === pointKey(machine, point),
+    );
+    const why = trouble?.kind === 'trouble' ? ` (${troubleName[trouble.trouble]})` : '';
+    return `${placeText(machine, point)}${why}`;
+  });
+  const rest = blind.length > named.length ? `; and ${blind.length - named.length} more` : '';
+  return `${counts.join(', ')}, ${blind.length} blind: ${named.join('; ')}${rest}.`;
+}
