@@ -1,14 +1,7 @@
 import { RE2JS } from 're2js';
 import { type Point, pointPath, type Site } from '../config/site.ts';
 import { printableName } from './file-name.ts';
-import {
-  fillPattern,
-  isPatternProblem,
-  type PatternProblem,
-  parsePattern,
-  pathTest,
-  patternDistance,
-} from './path-pattern.ts';
+import { fillPattern, pathTest, patternDistance } from './path-pattern.ts';
 
 /**
  * Which points a file in the drop folder belongs to. A point's `files` must fit the whole path below the drop
@@ -47,22 +40,9 @@ export interface Mismatch {
 }
 
 /**
- * What `files_regex` may say: RE2 syntax, compared with the whole path; groups named `machine` and `point` must
- * hold the point's ids. Linear in time, so a pattern cannot stop the service. Null where it is right.
+ * Reads the patterns of a site. `files_regex` is compared with the whole path too, in linear time (RE2); groups named
+ * `machine` and `point` in it must hold the point's ids.
  */
-export function filesRegexProblem(regex: string): PatternProblem | null {
-  try {
-    RE2JS.compile(regex);
-    return null;
-  } catch (error) {
-    return {
-      wrong: `the regular expression cannot be used: ${error instanceof Error ? error.message : String(error)}`,
-      remedy: 'write it in RE2 syntax, without look-around and back-references',
-    };
-  }
-}
-
-/** Reads the patterns of a site. Throws on a pattern that the check of the site file must have refused. */
 export function siteFiles(site: Site): SiteFiles {
   const sources = sourcesOf(site);
   const ignores = ignoreTests(site);
@@ -100,9 +80,7 @@ function sourcesOf(site: Site): SourcePattern[] {
 function sourceOfPoint(point: Point): Omit<SourcePattern, 'points'> {
   const { files, filesRegex } = point.recordings;
   if (filesRegex !== null && files === null) return regexSource(filesRegex, point);
-  const parts = parsePattern(files ?? '<any>');
-  if (isPatternProblem(parts)) throw new Error(`files: ${parts.wrong}; ${parts.remedy}`);
-  const filled = fillPattern(parts, point.machineId, point.id);
+  const filled = fillPattern(files ?? '<any>', point.machineId, point.id);
   return { source: filled, filled, fits: pathTest(filled) };
 }
 
@@ -127,8 +105,6 @@ function ignoreTests(site: Site) {
   for (const point of site.machines.flatMap((machine) => machine.points)) {
     for (const pattern of point.recordings.ignore) {
       if (tests.has(pattern)) continue;
-      const parts = parsePattern(pattern);
-      if (isPatternProblem(parts)) throw new Error(`ignore: ${parts.wrong}; ${parts.remedy}`);
       const fits = pathTest(pattern);
       const whole = pattern.includes('/');
       tests.set(pattern, (path) => fits(whole ? path : path.slice(path.lastIndexOf('/') + 1)));

@@ -1,91 +1,11 @@
 /**
- * Patterns for relative paths: text taken letter by letter, `<any>` for any text within one name (none too), `/`
- * between a subfolder and what lies in it. `<machine>` and `<point>` are filled with ids before a path is compared.
- * A path fits only as a whole.
+ * Patterns for relative paths, as the site file's check has accepted them: text taken letter by letter, `<any>` for
+ * any text within one name (none too), `/` between a subfolder and what lies in it. A path fits only as a whole.
  */
-export type PatternPart = { readonly kind: 'text'; readonly text: string } | { readonly kind: Placeholder };
 
-export type Placeholder = 'any' | 'machine' | 'point';
-
-/** What is wrong with a pattern and what would be right. */
-export interface PatternProblem {
-  readonly wrong: string;
-  readonly remedy: string;
-}
-
-const placeholders: readonly string[] = ['any', 'machine', 'point'];
-const longestPattern = 1000;
-
-/** Parts of a pattern as written, or why it is none. */
-export function parsePattern(pattern: string): readonly PatternPart[] | PatternProblem {
-  const problem = wholeProblem(pattern);
-  if (problem !== null) return problem;
-  const parts: PatternPart[] = [];
-  for (const piece of pattern.split(/(<[^<>]*>)/)) {
-    if (piece === '') continue;
-    if (!piece.startsWith('<') || !piece.endsWith('>')) {
-      if (/[<>]/.test(piece)) {
-        return {
-          wrong: `"${piece}" holds a < or > that belongs to no placeholder`,
-          remedy: 'write <any>, <machine> or <point>; a file name with < or > needs files_regex',
-        };
-      }
-      parts.push({ kind: 'text', text: piece });
-      continue;
-    }
-    const name = piece.slice(1, -1);
-    if (!placeholders.includes(name)) return unknownPlaceholder(name);
-    parts.push({ kind: name as Placeholder });
-  }
-  return parts;
-}
-
-export function isPatternProblem(answer: object): answer is PatternProblem {
-  return 'wrong' in answer;
-}
-
-function wholeProblem(pattern: string): PatternProblem | null {
-  if (pattern === '')
-    return { wrong: 'the pattern is empty', remedy: 'write for example <machine>_<any>.wav' };
-  if (pattern.length > longestPattern) {
-    return { wrong: `the pattern has ${pattern.length} characters`, remedy: `at most ${longestPattern}` };
-  }
-  if (pattern.includes('\\')) {
-    return { wrong: 'the pattern holds a \\', remedy: 'write / between folders, on every system' };
-  }
-  if (/\p{Cc}/u.test(pattern)) {
-    return { wrong: 'the pattern holds a control character', remedy: 'take it out' };
-  }
-  const names = pattern.split('/');
-  if (names[0] === '') {
-    return {
-      wrong: 'the pattern begins with /',
-      remedy: 'write it relative to the drop folder, without the first /',
-    };
-  }
-  if (names.includes('') || names.includes('.') || names.includes('..')) {
-    return { wrong: 'the pattern holds an empty name, . or ..', remedy: 'name each folder between two /' };
-  }
-  return null;
-}
-
-function unknownPlaceholder(name: string): PatternProblem {
-  const wrong = `<${name}> is no placeholder here`;
-  if (['year', 'month', 'day', 'hour', 'minute', 'second'].includes(name)) {
-    return { wrong, remedy: 'write <any> here and the date in start_in_name' };
-  }
-  return { wrong, remedy: 'the placeholders are <any>, <machine> and <point>' };
-}
-
-/** The pattern as written with the two ids in place of their placeholders; `<any>` stays. */
-export function fillPattern(parts: readonly PatternPart[], machineId: string, pointId: string): string {
-  return parts
-    .map((part) => {
-      if (part.kind === 'text') return part.text;
-      if (part.kind === 'any') return '<any>';
-      return part.kind === 'machine' ? machineId : pointId;
-    })
-    .join('');
+/** The pattern with the two ids in place of `<machine>` and `<point>`; `<any>` stays. */
+export function fillPattern(pattern: string, machineId: string, pointId: string): string {
+  return pattern.replaceAll('<machine>', () => machineId).replaceAll('<point>', () => pointId);
 }
 
 /**

@@ -23,36 +23,27 @@ const digitsOf: Readonly<Record<Field, number>> = {
   minute: 2,
   second: 2,
 };
-const neededFields: readonly Field[] = ['year', 'month', 'day', 'hour', 'minute'];
-
 /** A bound on the places that are tried in one name. */
 const mostCandidates = 300;
 
-/** Reads the pattern; a string says what is wrong with it and what would be right. Seconds may be missing. */
-export function parseNamePattern(pattern: string): NamePattern | string {
+/** Reads a pattern that the site file's check has accepted; throws on any other. Seconds may be missing. */
+export function namePattern(pattern: string): NamePattern {
   const fields: Field[] = [];
   let regex = '';
   for (const piece of pattern.split(/(<[^<>]*>)/)) {
-    if (!piece.startsWith('<')) {
-      regex += RE2JS.quote(piece);
-      continue;
-    }
     const name = piece.slice(1, -1);
-    if (name === 'any') {
-      regex += '[^/]*?';
-    } else if (name in digitsOf && Object.hasOwn(digitsOf, name)) {
-      if (fields.includes(name as Field)) return `${piece} stands twice; write <any> for the second`;
-      fields.push(name as Field);
-      regex += `([0-9]{${digitsOf[name as Field]}})`;
-    } else {
-      return `${piece} is no part of a date; those are <year> <month> <day> <hour> <minute> <second>, and <any>`;
-    }
-  }
-  const missing = neededFields.filter((field) => !fields.includes(field));
-  if (missing.length > 0) {
-    return `${missing.map((field) => `<${field}>`).join(' ')} missing; a start needs a whole date, hour and minute`;
+    if (!piece.startsWith('<')) regex += RE2JS.quote(piece);
+    else if (name === 'any') regex += '[^/]*?';
+    else if (isField(name) && !fields.includes(name)) {
+      fields.push(name);
+      regex += `([0-9]{${digitsOf[name]}})`;
+    } else throw new Error(`start_in_name: ${piece} was not refused`);
   }
   return { regex: RE2JS.compile(regex), fields, wholePath: pattern.includes('/') };
+}
+
+function isField(name: string): name is Field {
+  return Object.hasOwn(digitsOf, name);
 }
 
 /**
@@ -79,14 +70,8 @@ export function startInName(pattern: NamePattern, path: string): StatedStart | n
   return second === null ? null : { ms: second, zoned: false, origin: 'file-name' };
 }
 
-function dateMs({
-  year = 0,
-  month = 0,
-  day = 0,
-  hour = 0,
-  minute = 0,
-  second = 0,
-}: Partial<Record<Field, number>>) {
+function dateMs(fields: Partial<Record<Field, number>>): number | null {
+  const { year = 0, month = 0, day = 0, hour = 0, minute = 0, second = 0 } = fields;
   return realDateMs(year, month, day, hour, minute, second);
 }
 

@@ -40,8 +40,11 @@ const sidecarSpeedUncertainty = 0.005;
 /** Uncertainty of a nominal speed: induction motors slip by up to about 3 % between no and full load. */
 const nominalSpeedUncertainty = 0.03;
 
-/** A time step that differs from the mean one by more makes a spectrum wrong; rounded time stamps stay below. */
-export const unevenStepRatio = 0.2;
+/**
+ * A time step that differs from the mean one by more makes a spectrum wrong: a tone at a quarter of the rate then lies
+ * a twelfth of a radian off. What comes from the rounding of written times is not counted by the reader.
+ */
+export const unevenStepRatio = 0.05;
 
 /**
  * Makes a `Measurement` from the samples of one channel, fed in blocks of any size; the result does not depend on
