@@ -8,7 +8,6 @@ export interface BandCase {
   readonly analysis: AnalysisSettings;
   /** Null: the recording says it, and what depends on it is judged by the asked line spacing alone. */
   readonly sampleRateHz: number | null;
-  readonly durationS: number | null;
   readonly runningSpeedHz: number | null;
   readonly mounting: Point['mounting'];
   readonly shown: string;

@@ -3,7 +3,7 @@ import { nearest } from './nearest.ts';
 import { type Parsed, refused, shorten, understood } from './quantity.ts';
 
 const filePlaces = ['any', 'machine', 'point'];
-const startPlaces = ['year', 'month', 'day', 'hour', 'minute', 'second', 'millisecond'];
+const startPlaces = ['year', 'month', 'day', 'hour', 'minute', 'second', 'any'];
 const neededStartPlaces = ['year', 'month', 'day', 'hour', 'minute'];
 
 /** `<machine>_<any>.wav`: <any> any text without a /, / a subfolder of the drop folder, <machine> <point> their ids. */
@@ -30,7 +30,7 @@ export function parseStartPattern(text: string): Parsed<string> {
   if (!pattern.ok) return pattern;
   const missing = neededStartPlaces.find((place) => !pattern.value.includes(`<${place}>`));
   if (missing !== undefined) return refused(`'${shorten(text)}' has no <${missing}>, so it gives no start`);
-  const twice = startPlaces.find((place) => pattern.value.split(`<${place}>`).length > 2);
+  const twice = startPlaces.find((place) => place !== 'any' && pattern.value.split(`<${place}>`).length > 2);
   return twice === undefined ? pattern : refused(`'${shorten(text)}' has <${twice}> twice`);
 }
 
@@ -41,6 +41,7 @@ function withPlaces(pattern: string, known: readonly string[]): Parsed<string> {
     const what = `${written} is none of ${known.map((place) => `<${place}>`).join(' ')}`;
     return refused(what, meant === null ? null : pattern.replace(written, `<${meant}>`));
   }
+  if (pattern === '') return refused('the pattern is empty');
   const left = pattern.replace(/<[^<>]*>/g, '');
   return /[<>]/.test(left)
     ? refused(`'${shorten(pattern)}' has a < or > that is not closed`)

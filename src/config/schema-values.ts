@@ -1,5 +1,13 @@
 import { printDuration, printFrequency } from './print-value.ts';
-import { parseDuration, parseFrequency, parsePercent, refused, shorten, understood } from './quantity.ts';
+import {
+  type Parsed,
+  parseDuration,
+  parseFrequency,
+  parsePercent,
+  refused,
+  shorten,
+  understood,
+} from './quantity.ts';
 import { choice, list, ruled, type Shape, scalar, words } from './shape.ts';
 import { key, map } from './shape-map.ts';
 import type { Severity } from './site.ts';
@@ -57,15 +65,24 @@ export function percent(least: number, most: number, example: string): Shape<num
 }
 
 /** Of the mail standards only what a typing error breaks: one @, no spaces, no brackets. */
-const address = scalar<string>(
+function parseAddress(text: string): Parsed<string> {
+  const written = text.trim();
+  if (/^[^\s@<>,;:"()[\]\\]+@[^\s@<>,;:"()[\]\\]+$/.test(written) && written.length <= 254)
+    return understood(written);
+  const inside = /<([^<>\s]+@[^<>\s]+)>/.exec(written)?.[1] ?? null;
+  return refused(`'${shorten(text)}' is no mail address`, inside);
+}
+
+const address = scalar(parseAddress, { example: 'maintenance@larkfen.example', free: true });
+
+/** The sender may have a name before its address: `Humledger <humledger@larkfen.example>`. */
+export const senderAddress = scalar<string>(
   (text) => {
-    const written = text.trim();
-    if (/^[^\s@<>,;:"()[\]\\]+@[^\s@<>,;:"()[\]\\]+$/.test(written) && written.length <= 254)
-      return understood(written);
-    const inside = /<([^<>\s]+@[^<>\s]+)>/.exec(written)?.[1] ?? null;
-    return refused(`'${shorten(text)}' is no mail address`, inside);
+    const bare = /^[^<>@,;"\\]*<([^<>]+)>$/.exec(text.trim())?.[1] ?? text.trim();
+    const parsed = parseAddress(bare);
+    return parsed.ok ? understood(text.trim()) : refused(`'${shorten(text)}' is no mail address`);
   },
-  { example: 'maintenance@larkfen.example', free: true },
+  { example: 'humledger@larkfen.example', free: true },
 );
 
 const severities = ['trouble', 'alert', 'danger'] as const satisfies readonly Severity[];
@@ -78,4 +95,3 @@ export const recipientKeys = {
 };
 
 export const recipients = list(map(recipientKeys), 200);
-export const mailAddress = address;

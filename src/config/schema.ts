@@ -1,7 +1,7 @@
 import { type Parsed, parsePhysical, refused, shorten, understood } from './quantity.ts';
 import { machines, machineTypes } from './schema-machines.ts';
 import { analysis, siteRecordings } from './schema-recordings.ts';
-import { duration, mailAddress, recipients } from './schema-values.ts';
+import { duration, recipients, senderAddress } from './schema-values.ts';
 import { choice, type JsonSchema, plainNumber, scalar, trueOrFalse, words } from './shape.ts';
 import { key, keyHomes, map, type ReadMap, type ReadOf } from './shape-map.ts';
 import { parseTimeOfDay, parseTimeZone } from './time-zone.ts';
@@ -64,7 +64,7 @@ export const serverKeys = {
 };
 
 export const mailKeys = {
-  from: key(mailAddress, "The sender's address.", { required: true }),
+  from: key(senderAddress, "The sender's address.", { required: true }),
   server: key(map(serverKeys), 'Where mails are handed over.', { required: true }),
   second_server: key(map(serverKeys), 'Used for what the first refuses for good.'),
   gather_for: key(

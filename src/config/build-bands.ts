@@ -1,0 +1,158 @@
+import { integrationsBetween } from '../signal/integration.ts';
+import { type BandCase, judgeBand } from './bands.ts';
+import { type Build, tellDoubledIds, valueOr, valuesOf } from './layers.ts';
+import type { bandKeys } from './schema-machines.ts';
+import type { Written } from './shape.ts';
+import type { ReadMap } from './shape-map.ts';
+import type { Band, Quantity, SignalSettings } from './site.ts';
+import { asYaml } from './site-text.ts';
+import { displayUnit, usualDisplayUnit } from './units.ts';
+
+export type WrittenBand = Written<ReadMap<typeof bandKeys>>;
+/** Lists of the machine type, the machine, the point: outermost first. */
+export type ListLayers<T> = readonly (Written<readonly T[]> | null)[];
+
+export interface BuiltBand {
+  readonly band: Band;
+  readonly written: WrittenBand;
+}
+
+export interface BuiltBands {
+  readonly bands: readonly BuiltBand[];
+  /** Ids that are known but give no level here: refused, or left out since the point cannot give them. */
+  readonly absent: ReadonlySet<string>;
+}
+
+/** The bands of one point: a band of an inner list replaces the outer one of the same id. */
+export function buildBands(
+  build: Build,
+  layers: ListLayers<WrittenBand>,
+  point: {
+    readonly quantity: Quantity;
+    readonly signal: SignalSettings | null;
+    readonly sidecar: boolean;
+    readonly situation: BandCase;
+  },
+): BuiltBands {
+  const chosen = new Map<string, { readonly written: WrittenBand; readonly own: boolean }>();
+  layers.forEach((layer, index) => {
+    for (const written of layer?.value ?? []) {
+      const id = written.value.keys.id;
+      if (id !== null) chosen.set(id.value, { written, own: index === layers.length - 1 });
+    }
+  });
+  const bands: BuiltBand[] = [];
+  const absent = new Set<string>();
+  for (const [id, { written, own }] of chosen) {
+    const band = buildBand(build, written, own, point);
+    if (band === null) absent.add(id);
+    else {
+      bands.push({ band, written });
+      tellFindings(build, { band, written }, point.situation);
+    }
+  }
+  return { bands, absent };
+}
+
+export function tellDoubledBands({ reading }: Build, list: Written<readonly WrittenBand[]> | null): void {
+  const ids = (list?.value ?? []).flatMap(({ value: { keys } }) =>
+    keys.id === null ? [] : [{ id: keys.id.value, at: keys.id.at }],
+  );
+  tellDoubledIds(
+    reading,
+    ids,
+    (id, line) => `band '${id}' stands twice, first in line ${line}`,
+    'give each band of a list its own id',
+  );
+}
+
+function buildBand(
+  { reading }: Build,
+  written: WrittenBand,
+  own: boolean,
+  { quantity: measured, signal, sidecar, situation }: Parameters<typeof buildBands>[2],
+): Band | null {
+  const { id, from, to, unit, quantity: asked, formerly } = written.value.keys;
+  if (
+    id === null ||
+    from === null ||
+    to === null ||
+    refusedKey(written, 'unit') ||
+    refusedKey(written, 'quantity')
+  )
+    return null;
+  const quantity = asked?.value ?? unit?.value.quantity ?? measured;
+  if (unit !== null && unit.value.quantity !== quantity) {
+    const what = `band '${id.value}' is ${quantity}, its unit ${unit.value.text} is ${unit.value.quantity}`;
+    reading.problem(unit.at, what, reading.write(unit.at, usualDisplayUnit(quantity).text), 'unit');
+    return null;
+  }
+  if (from.value.inOrders !== to.value.inOrders) {
+    reading.problem(
+      to.at,
+      `band '${id.value}' begins and ends in different units`,
+      'give both in Hz, or both in orders (0.5x)',
+      'orders',
+    );
+    return null;
+  }
+  if (from.value.value >= to.value.value) {
+    reading.problem(
+      to.at,
+      `band '${id.value}' does not end above its begin`,
+      'compare from and to',
+      'order of edges',
+    );
+    return null;
+  }
+  const derived = integrationsBetween(measured, quantity);
+  if (typeof derived === 'object') {
+    if (own)
+      reading.problem(
+        written.at,
+        `band '${id.value}': ${derived.reason}`,
+        'write another quantity',
+        'derived',
+      );
+    else reading.warn(written.at, `band '${id.value}' is left out at ${situation.shown}: ${derived.reason}`);
+    return null;
+  }
+  if (from.value.inOrders && situation.runningSpeedHz === null && !sidecar) {
+    const what = `band '${id.value}' is in orders, and nothing says the speed of ${situation.shown}`;
+    reading.problem(
+      from.at,
+      what,
+      'add to the machine: running_speed: 2970 rpm, or sidecar: expected under recordings',
+      'speed',
+    );
+    return null;
+  }
+  const samplesText = signal?.samplesIn.text ?? '';
+  return {
+    id: id.value,
+    formerly: valuesOf(formerly),
+    quantity,
+    from: from.value.value,
+    to: to.value.value,
+    inOrders: from.value.inOrders,
+    display: valueOr(
+      unit,
+      quantity === 'other'
+        ? displayUnit({ text: samplesText, quantity, inSi: 1 }, 'rms')
+        : usualDisplayUnit(quantity),
+    ),
+  };
+}
+
+function refusedKey({ value: { has, keys } }: WrittenBand, name: keyof typeof bandKeys): boolean {
+  return has.has(name) && keys[name] === null;
+}
+
+function tellFindings({ reading }: Build, { band, written }: BuiltBand, situation: BandCase): void {
+  for (const { refused, edge, rule, what, right, instead } of judgeBand(band, situation)) {
+    const at = written.value.keys[edge]?.at ?? written.at;
+    if (refused)
+      reading.problem(at, what, instead === null ? right : reading.write(at, asYaml(instead)), rule);
+    else reading.warn(at, what, rule);
+  }
+}

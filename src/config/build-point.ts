@@ -1,0 +1,101 @@
+import {
+  type BuiltBands,
+  buildBands,
+  type ListLayers,
+  tellDoubledBands,
+  type WrittenBand,
+} from './build-bands.ts';
+import { buildLimits, tellDoubledLimits, type WrittenLimit } from './build-limits.ts';
+import {
+  type AnalysisLayers,
+  buildAnalysis,
+  buildRecordings,
+  type RecordingLayers,
+  warnOfAnalysis,
+} from './build-settings.ts';
+import { buildSignal } from './build-signal.ts';
+import { type Build, valueOr, valuesOf } from './layers.ts';
+import { averagingMeaning } from './meaning.ts';
+import type { pointKeys } from './schema-machines.ts';
+import type { Written } from './shape.ts';
+import type { ReadMap } from './shape-map.ts';
+import type { Point } from './site.ts';
+import type { Span } from './site-text.ts';
+
+export type WrittenPoint = Written<ReadMap<typeof pointKeys>>;
+
+/** What a point takes over from its machine, the machine's type and the site; outermost first. */
+export interface PointSurroundings {
+  readonly machineId: string;
+  readonly runningSpeedHz: number | null;
+  readonly recordings: RecordingLayers;
+  readonly analysis: AnalysisLayers;
+  readonly bands: ListLayers<WrittenBand>;
+  readonly limits: ListLayers<WrittenLimit>;
+}
+
+/** A point with the places that later checks of the whole site point at. */
+export interface BuiltPoint {
+  readonly point: Point;
+  readonly at: Span;
+  readonly channelAt: Span;
+  readonly bands: BuiltBands;
+}
+
+/** One measuring point in SI; null where something without which it means nothing was refused. */
+export function buildPoint(
+  build: Build,
+  written: WrittenPoint,
+  around: PointSurroundings,
+): BuiltPoint | null {
+  const { keys, has } = written.value;
+  tellDoubledBands(build, keys.bands);
+  tellDoubledLimits(build, keys.limits);
+  if (keys.id === null || keys.quantity === null) return null;
+  const { runningSpeedHz, machineId } = around;
+  const shown = `${machineId}/${keys.id.value}`;
+  const at = keys.id.at;
+  const quantity = keys.quantity.value;
+  const recordingLayers = [...around.recordings, keys.recordings === null ? null : keys.recordings.value];
+  const analysisLayers = [...around.analysis, keys.analysis === null ? null : keys.analysis.value];
+  const recordings = buildRecordings(build, recordingLayers, at, shown);
+  const { sampleRateHz, durationS } = recordings;
+  const analysis = buildAnalysis(build, analysisLayers, recordings, runningSpeedHz, { at, shown });
+  const signal = buildSignal(build, recordingLayers, {
+    quantity,
+    sensitivity: keys.sensitivity,
+    sensitivityRefused: has.has('sensitivity') && keys.sensitivity === null,
+    at,
+    shown,
+  });
+  const meaning =
+    sampleRateHz === null || durationS === null ? null : averagingMeaning(analysis, sampleRateHz, durationS);
+  const averages =
+    meaning === null ? null : { nominal: meaning.averages, effective: meaning.effectiveAverages };
+  warnOfAnalysis(build, analysisLayers, analysis, { sampleRateHz, runningSpeedHz, averages, at, shown });
+  const mounting = valueOr(keys.mounting, null);
+  const bands = buildBands(build, [...around.bands, keys.bands], {
+    quantity,
+    signal,
+    sidecar: recordings.sidecar === 'expected',
+    situation: { analysis, sampleRateHz, runningSpeedHz, mounting, shown },
+  });
+  const limits = buildLimits(build, [...around.limits, keys.limits], bands, shown);
+  if (signal === null) return null;
+  const point: Point = {
+    machineId,
+    id: keys.id.value,
+    name: valueOr(keys.name, keys.id.value),
+    formerly: valuesOf(keys.formerly),
+    direction: valueOr(keys.direction, null),
+    mounting,
+    channel: valueOr(keys.channel, 1),
+    quantity,
+    signal,
+    recordings,
+    analysis,
+    bands: bands.bands.map(({ band }) => band),
+    limits,
+  };
+  return { point, at: written.at, channelAt: keys.channel?.at ?? at, bands };
+}
