@@ -109,6 +109,7 @@ function hold(
       pending,
       count: state.count + (counts ? 1 : 0),
       usedMs: newest(state, judged),
+      toldLevel: counts && isToldOnLifting(state) ? (judged.level ?? state.toldLevel) : state.toldLevel,
       ...again?.fields,
     },
     [...unconfirmed, ...(again?.journal ?? [])],
@@ -123,6 +124,11 @@ function hasWorsened(state: AlarmState, judged: Judged, rule: AlarmRule): boolea
   if (rule.sayAgainPercent === null || toldLevel === null || judged.level === null) return false;
   const by = rule.sayAgainPercent / 100;
   return rule.side === 'upper' ? judged.level >= toldLevel * (1 + by) : judged.level <= toldLevel * (1 - by);
+}
+
+/** What will be told when the suppression goes is the newest level, and worsening is reckoned from that. */
+function isToldOnLifting(state: AlarmState): boolean {
+  return state.heldBack || state.suppressions.some((one) => one !== 'by-design');
 }
 
 function sayAgain(state: AlarmState, judged: Judged) {
