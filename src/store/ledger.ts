@@ -98,7 +98,8 @@ export class Ledger {
     const { connection } = this.#writer();
     return this.#writeQueue.run(() =>
       retryWhileBusy(this.#tools, async () => {
-        connection.exec(`pragma incremental_vacuum(${Math.trunc(pages)})`);
+        // To SQLite 0 would mean all of them at once.
+        if (pages >= 1) connection.exec(`pragma incremental_vacuum(${Math.trunc(pages)})`);
         return connection.pragma('freelist_count', { simple: true }) as number;
       }),
     );

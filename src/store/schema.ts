@@ -129,12 +129,17 @@ export interface MeasurementsTable {
   is_current: number;
   used_ms: number;
   channel: string;
+  quantity: string;
+  /** SI unit of the quantity. */
+  unit: string;
   sample_rate_hz: number;
   duration_s: number;
   speed_rpm: number | null;
   speed_origin: string | null;
   speed_uncertainty_rpm: number | null;
   load_percent: number | null;
+  /** The sidecar's own word. */
+  running_said: number | null;
   /** running | stopped | transient */
   machine_state: string;
   evaluated: number;
@@ -152,6 +157,8 @@ export interface MeasurementsTable {
   effective_averages: number | null;
   used_percent: number | null;
   segment_spread: number | null;
+  /** Of the intervals of its levels. */
+  confidence_percent: number | null;
   /** JSON list of {flag, detail}. */
   quality: string;
 }

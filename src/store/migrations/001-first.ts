@@ -74,11 +74,11 @@ function trends(): string {
       id integer primary key, recording_id integer not null references recordings,
       point_id integer not null references points, settings_fingerprint text not null,
       is_current integer not null check (is_current in (0, 1)), used_ms integer not null, channel text not null,
-      sample_rate_hz real not null, duration_s real not null, speed_rpm real, speed_origin text,
-      speed_uncertainty_rpm real, load_percent real, machine_state text not null,
+      quantity text not null, unit text not null, sample_rate_hz real not null, duration_s real not null, speed_rpm real, speed_origin text,
+      speed_uncertainty_rpm real, load_percent real, running_said integer check (running_said in (0, 1)), machine_state text not null,
       evaluated integer not null check (evaluated in (0, 1)), mean real, rms real, peak real, crest_factor real,
       kurtosis real, skewness real, window text, overlap_percent real, segment_samples integer,
-      line_spacing_hz real, averages integer, effective_averages real, used_percent real, segment_spread real,
+      line_spacing_hz real, averages integer, effective_averages real, used_percent real, segment_spread real, confidence_percent real,
       quality text not null, unique (recording_id, point_id, settings_fingerprint)) strict;
     create index measurement_by_point on measurements (point_id, used_ms);
     create table series (
@@ -144,6 +144,8 @@ function outbox(): string {
       due_ms integer not null, tries integer not null, last_try_ms integer, last_answer text,
       state text not null check (state in ('waiting', 'accepted', 'failed', 'superseded')),
       bytes blob not null, unique (message_id, recipient)) strict;
+    create index delivery_by_state on deliveries (state);
+    create index delivery_by_try on deliveries (last_try_ms, mail_id) where last_try_ms is not null;
     create index delivery_waiting on deliveries (due_ms) where state = 'waiting';
     create table to_tell (
       id integer primary key, journal_sequence integer not null references journal, key text,
