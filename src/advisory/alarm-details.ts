@@ -12,7 +12,7 @@ import {
 } from './level-words.ts';
 import { lineCourse } from './line-changes.ts';
 import { durationText, momentText } from './time-words.ts';
-import { foreign, nameOf, speedOrigin, standingText } from './wording.ts';
+import { foreign, idText, nameOf, speedOrigin, standingText } from './wording.ts';
 
 /** What an alarm mail says below the first lines, in the order in which one asks: a name and what is said of it. */
 export type Detail = readonly [name: string, said: string];
@@ -40,7 +40,7 @@ export function alarmDetails(alarm: AlarmFacts, timeZone: string, writtenMs: num
 }
 
 function bandText({ band }: AlarmFacts): string {
-  return `band ${foreign(band.id)}, ${printFrequency(band.fromHz)} to ${printFrequency(band.toHz)}`;
+  return `band ${idText(band.id)}, ${printFrequency(band.fromHz)} to ${printFrequency(band.toHz)}`;
 }
 
 function limitDetail(alarm: AlarmFacts): string {
@@ -101,7 +101,7 @@ function otherPointsDetail(points: readonly OtherPointFacts[]): Detail[] {
   const said = ranked.slice(0, mostPoints).map(({ point, band, level, share }) => {
     if (band === null || level === null) return `${nameOf(point)}: no level`;
     const used = share === null ? 'no limit' : `${percentText(share)} of alert`;
-    return `${nameOf(point)}: ${foreign(band.id)} ${measuredText(level, band.display)}, ${used}`;
+    return `${nameOf(point)}: ${idText(band.id)} ${measuredText(level, band.display)}, ${used}`;
   });
   const rest = points.length - mostPoints;
   return [['Other points', `${said.join('; ')}${rest > 0 ? `; and ${rest} more` : ''}`]];

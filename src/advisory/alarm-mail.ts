@@ -14,6 +14,7 @@ import {
   caution,
   eventText,
   foreign,
+  idText,
   isReturned,
   nameOf,
   placeText,
@@ -110,7 +111,8 @@ export function alarmLetter(facts: AlarmMailFacts): Letter {
         ? alarmDetails(item, timeZone, facts.writtenMs)
         : troubleDetails(item, timeZone, facts.writtenMs);
     const todo: Detail[] = index === 0 ? [] : [['To do', `${whatToDo(item)}${respondText(item, facts)}`]];
-    blocks.push({ kind: 'pairs', rows: [...todo, ...details] });
+    const rows = [...todo, ...details].filter(([name]) => !(facts.test && name === 'State'));
+    blocks.push({ kind: 'pairs', rows });
     if (!facts.test && needsAcknowledging(item)) {
       blocks.push({ kind: 'command', text: acknowledgeCommand(item.number) });
     }
@@ -135,7 +137,7 @@ function findingOf(item: Item, test: boolean): Block {
     number: test ? null : item.number,
     text:
       item.kind === 'alarm'
-        ? `${placeText(item.machine, item.point)}: ${foreign(item.band.id)} ${measuredText(item.level, item.band.display)}`
+        ? `${placeText(item.machine, item.point)}: ${idText(item.band.id)} ${measuredText(item.level, item.band.display)}`
         : `${whereText(item)}: ${troubleName[item.trouble]}`,
     more: happened === null ? [] : [happened],
   };

@@ -9,7 +9,7 @@ import { markWord } from './letter.ts';
  * print. The squares are made of borders, which print where backgrounds do not.
  */
 const font = "font-family:Georgia,'Times New Roman',serif";
-const plainFont = "font-family:Verdana,'DejaVu Sans',sans-serif";
+const plainFont = "font-family:Arial,'Liberation Sans',sans-serif";
 const monoFont = "font-family:Consolas,'DejaVu Sans Mono',monospace";
 
 const darkAndPrint = `
@@ -54,7 +54,7 @@ function testNotice(): Markup {
 function blockHtml(block: Block): Markup {
   switch (block.kind) {
     case 'heading':
-      return html`<h2 class="rule" style="margin:22px 0 8px;padding:0 0 2px;border-bottom:1px solid #8b9096;font-size:16px">${block.text}</h2>
+      return html`<h2 class="rule" style="margin:16px 0 6px;padding:0 0 1px;border-bottom:1px solid #8b9096;font-size:16px">${block.text}</h2>
 `;
     case 'paragraph':
       return html`<p style="margin:0 0 10px">${block.text}</p>
@@ -90,7 +90,7 @@ function findingHtml(block: Block & { kind: 'finding' }): Markup {
   const more = block.more.map((line) => html`<br>${line}`);
   const below =
     more.length === 0 ? null : html`<span class="soft" style="color:#4c5157;font-size:15px">${more}</span>`;
-  return html`<p style="margin:0 0 12px">${mark}${block.text}${below}</p>
+  return html`<p style="margin:0 0 9px">${mark}${block.text}${below}</p>
 `;
 }
 
@@ -110,8 +110,13 @@ function tableHtml(heads: readonly string[], rows: readonly (readonly string[])[
   return html`<table cellspacing="0" cellpadding="4" style="width:100%;margin:0 0 12px;border-collapse:collapse;${plainFont};font-size:12px;line-height:1.35">
 <tr>${heads.map((cell) => html`<th class="rule" align="left" valign="bottom" style="border-bottom:1px solid #8b9096">${cell}</th>`)}</tr>
 ${rows.map(
-  (row) => html`<tr>${row.map((cell) => html`<td valign="top">${cell}</td>`)}</tr>
+  (row) => html`<tr>${row.map(cellHtml)}</tr>
 `,
 )}</table>
 `;
+}
+
+/** Short figures ('116 %') stay on one line where a phone makes the columns narrow. */
+function cellHtml(cell: string): Markup {
+  return cell.length <= 8 ? html`<td valign="top" nowrap>${cell}</td>` : html`<td valign="top">${cell}</td>`;
 }

@@ -13,7 +13,7 @@ import type {
   TestFacts,
 } from './notice-facts.ts';
 import { durationText, momentText } from './time-words.ts';
-import { caution, foreign, nameOf, placeText, troubleName, zoneText } from './wording.ts';
+import { caution, foreign, idText, nameOf, placeText, troubleName, zoneText } from './wording.ts';
 
 /** The rarer mails: what was missed meanwhile, word from the service itself, a test. */
 
@@ -44,7 +44,7 @@ function passedFinding(passed: PassedAlarm, timeZone: string): Block {
   if (passed.band !== null) {
     const highest =
       passed.highest === null ? '' : `, highest ${levelText(passed.highest, passed.band.display)}`;
-    what.push(`${foreign(passed.band.id)}${highest}`);
+    what.push(`${idText(passed.band.id)}${highest}`);
   }
   const ended =
     passed.endedMs === null

@@ -8,26 +8,35 @@ import { bearingOf, firstLimit, largestShare } from './ranking.ts';
 import type { Standing, Worse } from './summary.ts';
 import type { SummaryFacts } from './summary-facts.ts';
 import { durationText, shortMomentText } from './time-words.ts';
-import { foreign, isReturned, nameOf, placeText, shortAdvice, standingText, troubleName } from './wording.ts';
+import { idText, isReturned, nameOf, placeText, shortAdvice, standingText, troubleName } from './wording.ts';
 
 /** One line of the summary: a bearing (or other place) with all that is to say of it. */
 export interface Finding {
   readonly mark: Severity | null;
   readonly number: number | null;
   readonly text: string;
-  readonly more: readonly string[];
+  /** What to do, by when; null where nobody need do anything today. */
+  readonly todo: string | null;
+  /** Further numbers or directions of the same bearing. */
+  readonly also: readonly string[];
+  /** Since when, and its state; null where the text says it. */
+  readonly since: string | null;
 }
 
 /** Directions of one bearing, the most urgent first: it leads, the others follow with their numbers. */
 export function needFinding(group: readonly Standing[], facts: SummaryFacts): Finding {
   const first = group[0] as Standing;
   const { timeZone } = facts.site;
-  const more = alsoLines(group);
-  const since = `${sinceText(first, facts)}, ${standingText(first, timeZone)}`;
   const respond =
     first.respondByMs === null ? '' : ` ${respondByText(first.respondByMs, facts.writtenMs, timeZone)}`;
-  more.push(`${since}.${respond}`, todoText(first));
-  return { mark: severityOf(first), number: first.number, text: findingText(first), more };
+  return {
+    mark: severityOf(first),
+    number: first.number,
+    text: findingText(first),
+    todo: `${todoText(first)}${respond}`,
+    also: alsoLines(group),
+    since: `${sinceText(first, facts)}, ${standingText(first, timeZone)}.`,
+  };
 }
 
 /** What somebody has already taken in hand: one line each. */
@@ -37,7 +46,9 @@ export function knownFinding(group: readonly Standing[], timeZone: string): Find
     mark: severityOf(first),
     number: first.number,
     text: `${findingText(first)}; ${standingText(first, timeZone)}`,
-    more: alsoLines(group),
+    todo: null,
+    also: alsoLines(group),
+    since: null,
   };
 }
 
@@ -48,17 +59,19 @@ export function worseFinding(group: readonly Worse[]): Finding {
     mark: null,
     number: null,
     text: `${placeText(first.machine, first.point)}: ${worseText(first)}`,
-    more: others.length === 0 ? [] : [`Also ${others.join('; ')}`],
+    todo: null,
+    also: others.length === 0 ? [] : [`Also ${others.join('; ')}`],
+    since: null,
   };
 }
 
 function worseText({ now }: Worse): string {
   const change = now.change === null ? 'changed' : changeText(now.change.ratio);
   const usual = now.change === null ? '' : ` (ordinary spread ${percentText(now.change.ordinaryRatio - 1)})`;
-  if (now.level === null) return `${foreign(now.band.id)} ${change}${usual}`;
+  if (now.level === null) return `${idText(now.band.id)} ${change}${usual}`;
   const share = largestShare(now.level.level, now.limits);
   const used = share === null ? 'no limit' : `${percentText(share)} of the alert limit`;
-  return `${foreign(now.band.id)} ${change} on the week${usual}, now ${measuredText(now.level, now.band.display)}, ${used}`;
+  return `${idText(now.band.id)} ${change} on the week${usual}, now ${measuredText(now.level, now.band.display)}, ${used}`;
 }
 
 /** The direction where the bearing has been named, else the point. */
@@ -87,13 +100,13 @@ function whatText(item: Standing): string {
 }
 
 function alarmText({ band, level, limit, severity, change, dangerUnconfirmed }: StandingAlarm): string {
-  if (level === null) return `${foreign(band.id)}, no level now`;
+  if (level === null) return `${idText(band.id)}, no level now`;
   const at = limit[severity] ?? firstLimit(limit);
   const distance =
     at === null ? '' : `, ${distanceText(level.level, at)} ${severity} (${levelText(at, band.display)})`;
   const trend = change === null ? '' : `, ${changeText(change.ratio)} on the week`;
   const unconfirmed = dangerUnconfirmed ? ', over danger in the newest recording, not yet confirmed' : '';
-  return `${foreign(band.id)} ${measuredText(level, band.display)}${distance}${trend}${unconfirmed}`;
+  return `${idText(band.id)} ${measuredText(level, band.display)}${distance}${trend}${unconfirmed}`;
 }
 
 /** 'Also ALERT 18 vertical: ...': every further number of the group, so that none is hidden. */

@@ -8,25 +8,35 @@ import { gather, shareOfAlert } from './ranking.ts';
 import { type Morning, morningOf, mostShown, type Section } from './summary.ts';
 import type { BandNow, PointNow, SummaryFacts } from './summary-facts.ts';
 import { dateText, momentText, shortMomentText } from './time-words.ts';
-import { acknowledgeCommand, caution, foreign, nameOf, zoneText } from './wording.ts';
+import { acknowledgeCommand, caution, foreign, idText, nameOf, zoneText } from './wording.ts';
 
-/** Rows of the full table that a mail carries: keeps the HTML under 300 kB; the file has them all. */
-export const mostTableRows = 800;
+/** Rows of the full tables that a mail carries at most; the file has them all. */
+const mostTableRows = 800;
+/** Bytes of HTML that mail programs still show without cutting or complaint. */
+const mostHtmlBytes = 300_000;
 
-/** The morning's mail. `html` of `summaryFile` is the same with every row of the tables. */
+/** The morning's mail; a large site's tables are cut short until the mail is small enough. */
 export function summaryMail(facts: SummaryFacts): Mail {
-  const letter = summaryLetter(facts, morningOf(facts), mostTableRows);
-  return { subject: summarySubject(facts), text: letterText(letter), html: letterHtml(letter) };
+  const morning = morningOf(facts);
+  let rows = mostTableRows;
+  for (;;) {
+    const letter = summaryLetter(facts, morning, rows);
+    const html = letterHtml(letter);
+    if (rows === 0 || new TextEncoder().encode(html).length < mostHtmlBytes) {
+      return { subject: summarySubject(facts, morning), text: letterText(letter), html };
+    }
+    rows = Math.floor(rows / 2);
+  }
 }
 
-/** What is written to `data/summary/latest.html`. */
+/** What is written to `data/summary/latest.html`: the mail's HTML with every row of its tables. */
 export function summaryFile(facts: SummaryFacts): string {
   return letterHtml(summaryLetter(facts, morningOf(facts), Number.POSITIVE_INFINITY));
 }
 
 /** 'Larkfen Waterworks, Tue 1 Dec 2026: 2 machines need a person today'. */
-export function summarySubject(facts: SummaryFacts): string {
-  const [first] = morningOf(facts).first.split(';');
+export function summarySubject(facts: SummaryFacts, morning = morningOf(facts)): string {
+  const [first] = morning.first.split(';');
   return subjectLine(`${nameOf(facts.site)}, ${dateText(facts.writtenMs, facts.site.timeZone)}: ${first}`);
 }
 
@@ -53,7 +63,15 @@ function screenBlocks(section: Section): Block[] {
   const rest = section.findings.length - shown.length;
   const blocks: Block[] = [
     { kind: 'heading', text: section.title },
-    ...shown.map((finding): Block => ({ kind: 'finding', ...finding })),
+    ...shown.map(({ mark, number, text, todo, also, since }): Block => {
+      return {
+        kind: 'finding',
+        mark,
+        number,
+        text,
+        more: [todo, ...also, since].filter((line) => line !== null),
+      };
+    }),
     ...(section.lines.length === 0 ? [] : [{ kind: 'paragraph' as const, text: section.lines.join(' ') }]),
   ];
   if (rest > 0) blocks.push({ kind: 'paragraph', text: `And ${rest} more, listed below.` });
@@ -63,13 +81,15 @@ function screenBlocks(section: Section): Block[] {
   return blocks;
 }
 
-/** The findings that the first screen had no room for. */
+/** The findings that the first screen had no room for, without what to do: there may be hundreds when a network fails. */
 function restBlocks(section: Section): Block[] {
   const rest = section.findings.slice(mostShown);
   if (rest.length === 0) return [];
   return [
     { kind: 'heading', text: `${section.title}, the others` },
-    ...rest.map((finding): Block => ({ kind: 'finding', ...finding })),
+    ...rest.map(({ mark, number, text, also, since }): Block => {
+      return { kind: 'finding', mark, number, text, more: [...also, since].filter((line) => line !== null) };
+    }),
   ];
 }
 
@@ -116,7 +136,7 @@ function pointRows({ point, judging, lastMs, bands }: PointNow, timeZone: string
   const word = judgingWord[judging];
   const note = word === '' ? '' : ` (${word})`;
   if (bands.length === 0) return [[`${nameOf(point)}${note}`, 'no band', '', '', '', last]];
-  return bands.map((now) => [`${nameOf(point)}${note}, ${foreign(now.band.id)}`, ...bandCells(now), last]);
+  return bands.map((now) => [`${nameOf(point)}${note}, ${idText(now.band.id)}`, ...bandCells(now), last]);
 }
 
 function bandCells({ band, level, limits, change, zone }: BandNow): string[] {

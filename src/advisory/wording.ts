@@ -25,6 +25,11 @@ export function placeText(machine: MachineFacts, point: PointFacts | null): stri
   return point === null ? nameOf(machine) : `${nameOf(machine)}, ${nameOf(point)}`;
 }
 
+/** An id of the site file, a band's for example. */
+export function idText(id: string): string {
+  return clip(id, longestName);
+}
+
 /** A text from outside (a reason, an answer, a comment) that may be long. */
 export function foreign(text: string): string {
   return clip(text, 300);
