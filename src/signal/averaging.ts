@@ -47,7 +47,7 @@ export function segmentsThatFit(samples: number, segmentSamples: number, hop: nu
  * Each segment has its mean removed, is windowed and transformed; its one-sided density is c |X[k]|² / (fs sum w²),
  * c = 2, but 1 at lines 0 and N / 2, which have no mirror image. Two segments share one complex transform.
  *
- * The samples are finite numbers: a NaN would spread over every line of the segments it lies in.
+ * The samples are finite numbers: a NaN would spread over every line of the average.
  */
 export class Averager {
   readonly settings: AveragingSettings;
@@ -102,7 +102,7 @@ export class Averager {
     if (this.finished) throw new Error('an average can be finished only once');
     this.finished = true;
     if (this.segments % 2 === 1) {
-      // The last segment has no partner.
+      // The last segment has no partner; what the one before left would move its last bits.
       const { packed } = this.transform;
       for (let n = 1; n < packed.length; n += 2) packed[n] = 0;
       this.transform.run();

@@ -160,6 +160,13 @@ describe('which samples are used', () => {
     }
   });
 
+  test('an odd last segment is bit for bit what it is alone, however loud those before were', () => {
+    const samples = gaussianNoise(seededRandom(12), 24).map((x, n) => (n < 16 ? 1e9 * x : x));
+    const seen: Float64Array[] = [];
+    averageDensity(samples, { ...hann8, overlapPercent: 0 }, (density) => seen.push(density.slice()));
+    expect(seen[2]).toEqual(averageDensity(samples.subarray(16), hann8).density);
+  });
+
   test('what no segment reaches at the end shows in the used share', () => {
     const result = averageDensity(new Float64Array(8 + 4 + 3), hann8);
     expect(result).toMatchObject({ averages: 2, samples: 15, hopSamples: 4 });
