@@ -151,7 +151,11 @@ export function whereText(trouble: TroubleFacts): string {
 
 /** The sentence that a mail begins with. */
 export function whatToDo(item: Item): string {
-  if (isOver(item)) return 'Nothing to do: this is over.';
+  if (isOver(item)) {
+    return needsAcknowledging(item)
+      ? 'This is over: find out what it was, then acknowledge.'
+      : 'Nothing to do: this is over.';
+  }
   if (item.kind === 'trouble') return troubleAdvice[item.trouble];
   if (item.event === 'limit-removed')
     return 'Look at this machine before the alarm is forgotten: its limit is gone.';

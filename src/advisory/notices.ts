@@ -28,7 +28,7 @@ export function catchUpMail(facts: CatchUpFacts): Mail {
     facts.reason === 'backlog'
       ? `${counted(facts.recordings, 'recording')} came together after a pause and were judged in their order.`
       : 'The mail server took nothing for a long time; what it missed is gathered here.';
-  const still = standing === 0 ? '' : ` ${counted(standing, 'alarm')} still standing: mailed separately.`;
+  const still = standing === 0 ? '' : ` What still stands (${standing}) is mailed by itself.`;
   const lead = over === 0 ? `Nothing to do: ${what}.` : `Look at what happened meanwhile: ${what}.`;
   const blocks: Block[] = [
     { kind: 'paragraph', text: `${span} (${durationText(facts.toMs - facts.fromMs)}). ${why}${still}` },

@@ -21,7 +21,7 @@ import {
   summaryFacts,
 } from './sample-facts.ts';
 
-const runs = { seed: 20261201, numRuns: 150 };
+const runs = { seed: 20261201, numRuns: 80 };
 const acting =
   /[\u0000-\u0009\u000b-\u001f\u007f-\u009f\u200b\u200e\u200f\u2028-\u202e\u2066-\u2069\ufeff]|\p{Surrogate}/u;
 const tagsOfOurs =

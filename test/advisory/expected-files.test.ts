@@ -17,6 +17,7 @@ import {
   deadSensor,
   driveH,
   hour,
+  levelOf,
   mailFacts,
   morning,
   overall,
@@ -58,7 +59,13 @@ const mails: Record<string, () => Mail> = {
   'alarm-gathered': () => alarmMail(mailFacts({ alarms: [alert, danger], troubles: [deadSensor] })),
   'alarm-test': () => alarmMail(mailFacts({ alarms: [{ ...danger, event: 'raised' }], test: true })),
   'alarm-returned': () =>
-    alarmMail(mailFacts({ alarms: [{ ...danger, standing: 'returned-unacknowledged', event: 'returned' }] })),
+    alarmMail(
+      mailFacts({
+        alarms: [
+          { ...danger, level: levelOf(2.31e-3), standing: 'returned-unacknowledged', event: 'returned' },
+        ],
+      }),
+    ),
   'trouble-overdue': () => alarmMail(mailFacts({ machine: null, troubles: [overdue] })),
   'trouble-unreadable': () => alarmMail(mailFacts({ machine: null, troubles: [unreadable] })),
   summary: () => summaryMail(summaryFacts),
