@@ -2,7 +2,7 @@ import type { QualityFinding, SamplesEnd, Sidecar } from '../acquisition/recordi
 import { longestSegmentSamples, segmentOf } from '../config/meaning.ts';
 import type { Point, SignalSettings } from '../config/site.ts';
 import { siUnit } from '../config/units.ts';
-import type { AveragingSettings } from '../signal/averaging.ts';
+import type { AveragedDensity, AveragingSettings } from '../signal/averaging.ts';
 import { CleanStretch, type StretchResult } from './clean-stretch.ts';
 import { isWrongRate, settingsFingerprint } from './fingerprint.ts';
 import { levelsOf, type MeasuredLevels } from './measure-levels.ts';
@@ -15,7 +15,7 @@ export interface SampleCheck {
   add(samples: Float64Array): void;
   /** Its findings. `density`: one-sided, (SI unit of the point)²/Hz; null where not one segment fitted. */
   finish(
-    spectrum: { readonly density: Float64Array; readonly lineSpacingHz: number } | null,
+    spectrum: Pick<AveragedDensity, 'density' | 'lineSpacingHz' | 'averages'> | null,
   ): readonly QualityFinding[];
 }
 
