@@ -23,13 +23,13 @@ export interface OpenFile {
  * operation of the process). Answers in words when it is not a regular file with one link and a size in bounds.
  */
 export function openRegularFile(
-  path: string,
+  path: string | Uint8Array,
   largestBytes: number,
 ): OpenFile | { readonly reason: string; readonly gone: boolean } {
   let descriptor: number;
   try {
     descriptor = openSync(
-      path,
+      typeof path === 'string' ? path : Buffer.from(path),
       constants.O_RDONLY | (constants.O_NOFOLLOW ?? 0) | (constants.O_NONBLOCK ?? 0),
     );
   } catch (error) {

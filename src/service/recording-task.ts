@@ -1,10 +1,10 @@
-import type { QualityFinding, RecordingHeader, Refusal, Sidecar } from '../acquisition/recording.ts';
-import type { Point } from '../config/site.ts';
-import type { Measurement } from '../manipulation/measurement.ts';
+import type { RecordingHeader, Refusal, Sidecar } from '../acquisition/recording.ts';
 import type { FileLook } from './file-source.ts';
+import type { PointTask, RecordingRead } from './read-recording.ts';
 
 /** What the service asks of a worker thread, and what it answers: plain data that can be sent between threads. */
-export type RecordingTask = HeaderTask | MeasureTask;
+export type RecordingTask = HeaderTask | MeasureTask | HashTask;
+export type RecordingAnswer = HeaderAnswer | MeasureAnswer | HashAnswer;
 
 /** Read the header and the sidecar, no samples. */
 export interface HeaderTask {
@@ -18,22 +18,23 @@ export interface HeaderTask {
 export interface MeasureTask {
   readonly task: 'measure';
   readonly path: string;
-  readonly sidecarPath: string | null;
   readonly largestBytes: number;
   /** What the header pass saw; anything else means that the file has changed since. */
   readonly seen: FileLook;
-  readonly seenSidecarSha256: string | null;
+  readonly sidecar: SidecarRead | null;
   readonly points: readonly PointTask[];
 }
 
-export interface PointTask {
-  readonly point: Point;
-  /** Nominal running speed of its machine; null where the site file has none. */
-  readonly nominalHz: number | null;
+/** Only the hash, of a file that cannot be used. A name that is no text comes as its bytes. */
+export interface HashTask {
+  readonly task: 'hash';
+  readonly path: string | Uint8Array;
+  readonly largestBytes: number;
 }
 
 export interface SidecarRead {
   readonly sha256: string;
+  readonly look: FileLook;
   readonly content: Sidecar;
 }
 
@@ -50,27 +51,24 @@ export type HeaderAnswer =
     }
   | {
       readonly kind: 'refused';
-      readonly look: FileLook;
       readonly refusal: Refusal;
-      readonly sidecarSha256: string | null;
+      readonly headIsZeros: boolean;
     }
   | { readonly kind: 'left-alone'; readonly reason: string }
   | { readonly kind: 'gone' };
 
 export type MeasureAnswer =
-  | {
+  | (RecordingRead & {
       readonly kind: 'measured';
       readonly look: FileLook;
       readonly sha256: string;
       readonly header: RecordingHeader;
-      readonly frames: number;
-      readonly sampleRateHz: number | null;
-      readonly measurements: readonly Measurement[];
-      /** Points whose channel the file does not have, in words. */
-      readonly missing: readonly string[];
-      /** Findings on the recording as a whole. */
-      readonly quality: readonly QualityFinding[];
-    }
+    })
   | { readonly kind: 'refused'; readonly look: FileLook; readonly sha256: string; readonly refusal: Refusal }
   | { readonly kind: 'changed' }
+  | { readonly kind: 'gone' };
+
+export type HashAnswer =
+  | { readonly kind: 'hashed'; readonly look: FileLook; readonly sha256: string }
+  | { readonly kind: 'left-alone' }
   | { readonly kind: 'gone' };

@@ -1,3 +1,5 @@
+import { filingSteps } from '../acquisition/filing.ts';
+
 /**
  * Names of the places between two outside effects. The service calls `step(name)` at each; in normal running it does
  * nothing, tests throw there or end the process there.
@@ -7,10 +9,7 @@ export const stepNames = [
   'intake: recording read',
   'intake: decision begun',
   'intake: decision committed',
-  'filing: set aside under its own name',
-  'filing: copied',
-  'filing: in place',
-  'filing: sidecar in place',
+  ...filingSteps,
   'intake: filing committed',
   'delivery: message stored',
   'delivery: attempt begun',

@@ -11,6 +11,8 @@ export interface Source {
   readonly newestStatedMs: number | null;
   readonly newestUsedMs: number | null;
   readonly lastArrivedMs: number | null;
+  /** Arrival of the newest recording that was evaluated. */
+  readonly lastEvaluatedArrivedMs: number | null;
   readonly repeatsInARow: number;
 }
 
@@ -31,6 +33,7 @@ export async function getSource(writer: Writer, name: string): Promise<Source> {
       newest_stated_ms: null,
       newest_used_ms: null,
       last_arrived_ms: null,
+      last_evaluated_arrived_ms: null,
       repeats_in_a_row: 0,
     })
     .returningAll()
@@ -51,6 +54,7 @@ export async function saveSource(writer: Writer, changed: Source): Promise<void>
       newest_stated_ms: changed.newestStatedMs,
       newest_used_ms: changed.newestUsedMs,
       last_arrived_ms: changed.lastArrivedMs,
+      last_evaluated_arrived_ms: changed.lastEvaluatedArrivedMs,
       repeats_in_a_row: changed.repeatsInARow,
     })
     .where('id', '=', changed.id)
@@ -159,6 +163,7 @@ function source(row: Selectable<SourcesTable>): Source {
     newestStatedMs: row.newest_stated_ms,
     newestUsedMs: row.newest_used_ms,
     lastArrivedMs: row.last_arrived_ms,
+    lastEvaluatedArrivedMs: row.last_evaluated_arrived_ms,
     repeatsInARow: row.repeats_in_a_row,
   };
 }

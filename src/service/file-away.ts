@@ -1,0 +1,103 @@
+import { nameOf, sidecarNameOf } from '../acquisition/file-name.ts';
+import { completeFiling, type FilingOrder } from '../acquisition/filing.ts';
+import type { Ledger } from '../store/ledger.ts';
+import { markFiled, pendingFilings, type StoredRecording } from '../store/recordings.ts';
+import type { FileLook } from './file-source.ts';
+import type { Complaints, Logger } from './log.ts';
+import type { SiteView } from './site-view.ts';
+import type { Step } from './steps.ts';
+
+/**
+ * Takes decided files out of the drop folder. Each order stands in the ledger as 'pending' until it is carried out, so
+ * what was interrupted is found again here, at start and in every round.
+ */
+export interface FileAwayTools {
+  readonly ledger: Ledger;
+  readonly view: () => SiteView;
+  readonly log: Logger;
+  readonly complaints: Complaints;
+  readonly step: Step;
+  /** Another file came under the name: it settles as a new arrival. */
+  readonly replaced: (path: string) => void;
+}
+
+/** What this run knows of a file beyond the ledger: then it need not be hashed again. */
+export interface KnownLooks {
+  readonly file: FileLook;
+  readonly sidecar: { readonly path: string; readonly sha256: string; readonly look: FileLook } | null;
+}
+
+export class FileAway {
+  readonly #tools: FileAwayTools;
+  readonly #known = new Map<number, KnownLooks>();
+
+  constructor(tools: FileAwayTools) {
+    this.#tools = tools;
+  }
+
+  /** Remembers what was seen of the file of a recording decided in this run. */
+  know(recordingId: number, looks: KnownLooks): void {
+    this.#known.set(recordingId, looks);
+  }
+
+  /** Carries out every standing order; returns how many are left, because something stands in the way. */
+  async all(): Promise<number> {
+    let left = 0;
+    for (;;) {
+      const orders = await this.#tools.ledger.read((reader) => pendingFilings(reader, 200));
+      let done = 0;
+      left = 0;
+      for (const order of orders) {
+        if (await this.#one(order)) done++;
+        else left++;
+      }
+      if (done === 0 || orders.length === left) return left;
+    }
+  }
+
+  async #one(recording: StoredRecording): Promise<boolean> {
+    const { ledger, log, complaints, step, replaced } = this.#tools;
+    const outcome = await completeFiling(this.#order(recording), { step });
+    if (outcome.outcome === 'cannot') {
+      complaints.say('filing', outcome.reason);
+      return false;
+    }
+    complaints.over('filing');
+    const to = outcome.outcome === 'filed' ? outcome.to : null;
+    if (outcome.outcome === 'replaced') replaced(recording.filingFrom);
+    if (outcome.outcome === 'gone')
+      log.warn({ file: recording.filingFrom }, 'taken, but gone before it could be filed');
+    await ledger.transact((writer) => markFiled(writer, recording.id, to ?? undefined));
+    this.#known.delete(recording.id);
+    step('intake: filing committed');
+    return true;
+  }
+
+  #order(recording: StoredRecording): FilingOrder {
+    const { folders } = this.#tools.view().site;
+    const known = this.#known.get(recording.id);
+    return {
+      from: recording.filingFrom,
+      sha256: recording.contentSha256,
+      look: known?.file ?? null,
+      dropFolder: folders.drop,
+      dataFolder: folders.data,
+      to: recording.filingTo,
+      reason:
+        recording.outcome === 'quarantined' || recording.outcome === 'unassigned' ? recording.reason : null,
+      sidecar: sidecarOf(recording, known),
+    };
+  }
+}
+
+function sidecarOf(recording: StoredRecording, known: KnownLooks | undefined): FilingOrder['sidecar'] {
+  if (known !== undefined) {
+    return known.sidecar === null
+      ? null
+      : { from: known.sidecar.path, sha256: known.sidecar.sha256, look: known.sidecar.look };
+  }
+  if (recording.sidecarSha256 === null) return null;
+  const { filingFrom } = recording;
+  const folder = filingFrom.slice(0, filingFrom.length - nameOf(filingFrom).length);
+  return { from: folder + sidecarNameOf(nameOf(filingFrom)), sha256: recording.sidecarSha256, look: null };
+}

@@ -1,0 +1,188 @@
+import type { DropFolder } from '../acquisition/drop-folder.ts';
+import { printableName } from '../acquisition/file-name.ts';
+import type { Sweep } from '../acquisition/sweep.ts';
+import type { WorkerPool } from '../manipulation/pool.ts';
+import { tellOnce } from '../store/intake-marks.ts';
+import type { Ledger } from '../store/ledger.ts';
+import { LedgerError } from '../store/ledger-error.ts';
+import { Arrivals, type ReadyRecording, type Unassigned } from './arrivals.ts';
+import { Backlog } from './backlog.ts';
+import type { Clock } from './clock.ts';
+import { FileAway } from './file-away.ts';
+import type { Complaints, Logger } from './log.ts';
+import type { HeaderAnswer, HeaderTask, RecordingAnswer, RecordingTask } from './recording-task.ts';
+import { spansOf, statedStart } from './recording-time.ts';
+import { namePattern } from './set-aside.ts';
+import type { SiteView } from './site-view.ts';
+import type { Step } from './steps.ts';
+import { TakeFiles } from './take-files.ts';
+
+/**
+ * Theory of operation of intake. One round:
+ *
+ *     finish pending filings -> sweep -> settle, look into headers -> hold a backlog -> order by start
+ *        -> analyse in parallel, decide one after another (take-files.ts) -> file away
+ *
+ * 1. The sweep is the truth; the watcher only hints that a round is worth it.
+ * 2. Nothing leaves the drop folder before its decision, and where it goes, is committed.
+ * 3. Decisions are made in the order (start, source, hash), one transaction each; analysis runs ahead by a bounded
+ *    number of files.
+ * 4. A file whose attempt was noted and not ended is analysed alone at the next start; the second time it is
+ *    quarantined.
+ * 5. When the ledger cannot be written, files stay where they are, and the round says so and ends.
+ */
+export interface IntakeTools {
+  readonly ledger: Ledger;
+  readonly clock: Clock;
+  readonly view: () => SiteView;
+  readonly dropFolder: DropFolder;
+  readonly pool: WorkerPool<RecordingTask, RecordingAnswer>;
+  readonly log: Logger;
+  readonly complaints: Complaints;
+  readonly step: Step;
+}
+
+export interface Round {
+  readonly dropFolder: 'read' | 'missing' | 'unreadable';
+  readonly taken: number;
+  readonly setAside: number;
+  /** Files that settle, wait for their backlog, or are to be tried again. */
+  readonly waiting: number;
+  readonly unassigned: readonly Unassigned[];
+  /** Orders of filing that something stands in the way of. */
+  readonly unfiled: number;
+  /** When the next round is worth it; null: when something arrives. */
+  readonly againInMs: number | null;
+}
+
+/** How long until files that could not be taken for the ledger's sake are tried again. */
+const retryMs = 5_000;
+
+export class Intake {
+  readonly #tools: IntakeTools;
+  readonly #arrivals: Arrivals;
+  readonly #backlog: Backlog;
+  readonly #fileAway: FileAway;
+  readonly #take: TakeFiles;
+
+  constructor(tools: IntakeTools, isKept: ConstructorParameters<typeof Arrivals>[0]['isKept']) {
+    this.#tools = tools;
+    const { clock, view } = tools;
+    const replaced = (path: string) => this.#arrivals.forget(path);
+    this.#arrivals = new Arrivals({
+      view,
+      wallMs: () => clock.wallMs(),
+      monotonicMs: () => clock.monotonicMs(),
+      header: (task) => this.#header(task),
+      isKept,
+    });
+    this.#backlog = new Backlog(() => clock.monotonicMs());
+    this.#fileAway = new FileAway({ ...tools, replaced });
+    this.#take = new TakeFiles({ ...tools, fileAway: this.#fileAway, forget: replaced });
+  }
+
+  /** `holdBacklog` false: what lies there is all there is (`run --once`). */
+  async round(holdBacklog: boolean): Promise<Round> {
+    const nothing = { taken: 0, setAside: 0, waiting: 0, unassigned: [], unfiled: 0 };
+    try {
+      const unfiled = await this.#fileAway.all();
+      const sweep = await this.#tools.dropFolder.sweep();
+      if (sweep.state !== 'read') {
+        this.#tools.complaints.say('drop folder', sweep.reason);
+        return { ...nothing, unfiled, dropFolder: sweep.state, againInMs: retryMs };
+      }
+      this.#tools.complaints.over('drop folder');
+      return await this.#roundOf(sweep, unfiled, holdBacklog);
+    } catch (error) {
+      if (!(error instanceof LedgerError)) throw error;
+      this.#tools.complaints.say('ledger', `${error.message}; recordings stay in the drop folder`);
+      return { ...nothing, waiting: 1, dropFolder: 'read', againInMs: retryMs };
+    }
+  }
+
+  async #roundOf(
+    sweep: Extract<Sweep, { state: 'read' }>,
+    unfiledBefore: number,
+    holdBacklog: boolean,
+  ): Promise<Round> {
+    for (const { path, reason } of sweep.leftAlone) {
+      this.#tools.log.warn({ file: printableName(path) }, `left alone: ${reason}`);
+    }
+    const look = await this.#arrivals.look(sweep.files);
+    const view = this.#tools.view();
+    const starts = new Map(look.ready.map((ready) => [ready.path, statedStart(view, ready, null).startMs]));
+    const startOf = (ready: ReadyRecording) => starts.get(ready.path) as number;
+    const { now, held, againInMs } = this.#backlog.split(
+      look.ready,
+      holdBacklog ? (ready) => isOld(ready, startOf(ready)) : () => false,
+      view.site.timings,
+    );
+    const taken = await this.#take.recordings(inOrder(now, startOf), startOf);
+    const setAside = await this.#take.givenUp(look.givenUp);
+    const moved = await this.#unassigned(look.unassigned, view);
+    const unfiled = taken.decided + setAside + moved > 0 ? await this.#fileAway.all() : unfiledBefore;
+    return {
+      dropFolder: 'read',
+      taken: taken.decided,
+      setAside: setAside + moved,
+      waiting: look.waiting + held.length + taken.left,
+      unassigned: look.unassigned,
+      unfiled,
+      againInMs: soonest([look.againInMs, againInMs, taken.left + unfiled > 0 ? retryMs : null]),
+    };
+  }
+
+  async #header(task: HeaderTask): Promise<HeaderAnswer> {
+    const answer = await this.#tools.pool.run(task);
+    if (answer.outcome === 'answer') return answer.answer as HeaderAnswer;
+    // A header that stops a worker twice would stop it again with its samples.
+    if (answer.outcome === 'refused') {
+      const reason = `reading its header stopped a worker: ${answer.reason}`;
+      return { kind: 'refused', refusal: { refused: 'damaged', reason }, headIsZeros: false };
+    }
+    throw new Error(answer.reason);
+  }
+
+  /** Says each new kind of name once, and moves what lay there too long. */
+  async #unassigned(files: readonly Unassigned[], view: SiteView): Promise<number> {
+    const { ledger, clock, log } = this.#tools;
+    for (const { path } of files) {
+      const wallMs = clock.wallMs();
+      const isNews = await ledger.transact((writer) =>
+        tellOnce(writer, `unassigned ${namePattern(path)}`, wallMs),
+      );
+      if (isNews)
+        log.warn(
+          { file: printableName(path) },
+          'no point of the site file takes this file; see the command files',
+        );
+    }
+    const tooOld = files.filter(({ arrivedMs, look }) => {
+      const sinceMs = Math.min(arrivedMs, Math.max(look.mtimeMs, look.ctimeMs));
+      return clock.wallMs() - sinceMs > view.site.timings.unassignedAfterMs;
+    });
+    return this.#take.unassigned(tooOld);
+  }
+}
+
+function isOld(ready: ReadyRecording, startMs: number): boolean {
+  return ready.arrivedMs - startMs > 2 * spansOf(ready.points).intervalMs;
+}
+
+function inOrder(
+  ready: readonly ReadyRecording[],
+  startOf: (ready: ReadyRecording) => number,
+): ReadyRecording[] {
+  return [...ready].sort(
+    (a, b) => startOf(a) - startOf(b) || compare(a.source, b.source) || compare(a.path, b.path),
+  );
+}
+
+function compare(a: string, b: string): number {
+  return a < b ? -1 : a > b ? 1 : 0;
+}
+
+function soonest(times: readonly (number | null)[]): number | null {
+  const known = times.filter((time) => time !== null);
+  return known.length === 0 ? null : Math.min(...known);
+}

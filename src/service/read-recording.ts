@@ -1,0 +1,124 @@
+import { sampleCheck } from '../acquisition/quality.ts';
+import {
+  type ByteSource,
+  isRefusal,
+  type QualityFinding,
+  type RecordingHeader,
+  type RecordingReader,
+  type Refusal,
+  type SamplesEnd,
+  type Sidecar,
+} from '../acquisition/recording.ts';
+import { appliedSignal, scalingOf } from '../acquisition/scaling.ts';
+import { type Point, pointPath } from '../config/site.ts';
+import { Measurer } from '../manipulation/measure.ts';
+import type { Measurement } from '../manipulation/measurement.ts';
+
+/** A point that takes part in a recording, with what its machine adds. */
+export interface PointTask {
+  readonly point: Point;
+  /** Nominal running speed of its machine; null where the site file has none. */
+  readonly nominalHz: number | null;
+}
+
+export interface RecordingRead {
+  readonly measurements: readonly Measurement[];
+  /** Points that got nothing from this file, in words. */
+  readonly missing: readonly string[];
+  /** Findings on the recording as a whole. */
+  readonly quality: readonly QualityFinding[];
+  readonly frames: number;
+  readonly sampleRateHz: number | null;
+}
+
+/**
+ * One pass over a recording: samples in blocks of bounded size to the measurer of each point. Bad input is an answer.
+ */
+export function readRecording(
+  source: ByteSource,
+  reader: RecordingReader,
+  header: RecordingHeader,
+  sidecar: Sidecar | null,
+  points: readonly PointTask[],
+): RecordingRead | Refusal {
+  const { fed, missing } = measurers(header, sidecar, points);
+  const end = feed(source, reader, header, fed);
+  if (isRefusal(end)) return end;
+  const quality: QualityFinding[] =
+    end.truncated === null ? [] : [{ flag: 'too-short', detail: `the file is cut short: ${end.truncated}` }];
+  return {
+    measurements: fed.map(({ measurer }) => measurer.finish(end)),
+    missing,
+    quality,
+    frames: end.frames,
+    sampleRateHz: header.sampleRateHz ?? fed[0]?.rateHz ?? null,
+  };
+}
+
+interface Fed {
+  readonly index: number;
+  readonly measurer: Measurer;
+  readonly rateHz: number | null;
+}
+
+function measurers(
+  header: RecordingHeader,
+  sidecar: Sidecar | null,
+  points: readonly PointTask[],
+): { readonly fed: readonly Fed[]; readonly missing: readonly string[] } {
+  const fed: Fed[] = [];
+  const missing: string[] = [];
+  for (const { point, nominalHz } of points) {
+    const index = channelIndex(header, point.channel);
+    if (index === null) {
+      missing.push(`${pointPath(point)}: ${noSuchChannel(header, point.channel)}`);
+      continue;
+    }
+    const channel = header.channelNames[index] as string;
+    const said = sidecar?.channels[channel] ?? sidecar?.channels[String(index + 1)];
+    const scaling = scalingOf(header.samples, point.quantity, appliedSignal(point.signal, said));
+    if ('reason' in scaling) {
+      missing.push(`${pointPath(point)}: ${scaling.reason}`);
+      continue;
+    }
+    const rateHz = header.sampleRateHz ?? point.recordings.sampleRateHz;
+    const measurer = new Measurer({
+      point,
+      nominalHz,
+      channel,
+      sampleRateHz: rateHz,
+      siPerSample: scaling.siPerSample,
+      signal: scaling.signal,
+      sidecar,
+      check: sampleCheck({ header, point, scaling, sampleRateHz: rateHz }),
+    });
+    fed.push({ index, measurer, rateHz });
+  }
+  return { fed, missing };
+}
+
+function feed(
+  source: ByteSource,
+  reader: RecordingReader,
+  header: RecordingHeader,
+  fed: readonly Fed[],
+): SamplesEnd | Refusal {
+  const blocks = reader.samples(source, header);
+  for (;;) {
+    const next = blocks.next();
+    if (next.done) return next.value;
+    for (const { index, measurer } of fed) measurer.add(next.value.channels[index] as Float64Array);
+  }
+}
+
+function channelIndex(header: RecordingHeader, channel: number | string): number | null {
+  const index = typeof channel === 'number' ? channel - 1 : header.channelNames.indexOf(channel);
+  return index >= 0 && index < header.channelNames.length ? index : null;
+}
+
+function noSuchChannel(header: RecordingHeader, channel: number | string): string {
+  const names = header.channelNames.slice(0, 8).join(', ');
+  return typeof channel === 'number'
+    ? `the file has ${header.channelNames.length} channels, none number ${channel}`
+    : `the file has no column "${channel}"; it has ${names}`;
+}

@@ -1,0 +1,147 @@
+import { type ClockAnswer, readLoggerClock } from '../acquisition/logger-clock.ts';
+import type { QualityFinding } from '../acquisition/recording.ts';
+import { type RecordingStart, recordingStart } from '../acquisition/start-time.ts';
+import type { Point } from '../config/site.ts';
+import type { Reader } from '../store/lent-connection.ts';
+import { findTakenByContent, type StoredRecording, takenBetween } from '../store/recordings.ts';
+import type { Source } from '../store/sources.ts';
+import type { ReadyRecording } from './arrivals.ts';
+import type { SiteView } from './site-view.ts';
+
+/** When a recording counts, and whether it takes part in detection. */
+export interface RecordingTime {
+  readonly start: RecordingStart;
+  readonly usedMs: number;
+  readonly clock: ClockAnswer;
+  /** Earlier than the newest: kept, but it changes no state. */
+  readonly late: boolean;
+  /** Seen before under another name, without a start of its own. */
+  readonly repeated: boolean;
+  /** Another version of a recording that is there already and was whole. */
+  readonly secondVersion: boolean;
+  readonly findings: readonly QualityFinding[];
+}
+
+/** What the file says of its own start, in the clock of its logger. */
+export function statedStart(
+  view: SiteView,
+  ready: ReadyRecording,
+  previousMs: number | null,
+): RecordingStart {
+  const { header, look, sidecar } = ready.header;
+  const [first] = ready.points as readonly [Point, ...Point[]];
+  return recordingStart({
+    sidecar: sidecar?.content.start ?? null,
+    fileName: view.startInName(ready.path, ready.points),
+    header: header.start,
+    modifiedMs: look.mtimeMs,
+    clock: first.recordings.clock,
+    siteZone: view.site.timeZone,
+    previousMs,
+  });
+}
+
+/** Shortest expected interval, and shortest overdue span, of the points of a recording. */
+export function spansOf(points: readonly Point[]): {
+  readonly intervalMs: number;
+  readonly overdueAfterMs: number;
+} {
+  return {
+    intervalMs: Math.min(...points.map(({ recordings }) => recordings.expectedEveryMs)),
+    overdueAfterMs: Math.min(...points.map(({ recordings }) => recordings.overdueAfterMs)),
+  };
+}
+
+export interface TimeQuestion {
+  readonly view: SiteView;
+  readonly ready: ReadyRecording;
+  readonly source: Source;
+  readonly sha256: string;
+  readonly start: RecordingStart;
+  readonly batchNewestStatedMs: number;
+}
+
+export async function timeOf(reader: Reader, question: TimeQuestion): Promise<RecordingTime> {
+  const { view, ready, source, start, sha256 } = question;
+  const { intervalMs, overdueAfterMs } = spansOf(ready.points);
+  const wantedMs = start.startMs + source.clockOffsetMs;
+  const near = await takenBetween(reader, source.id, {
+    fromMs: wantedMs - Math.floor(intervalMs / 2),
+    toMs: wantedMs + Math.floor(intervalMs / 2),
+    limit: 100,
+  });
+  const before = start.statedMs === null ? await findTakenByContent(reader, sha256) : null;
+  const repeated = before !== null && before.sourceId === source.id;
+  const first = repeated ? undefined : versionBefore(near, start, ready.arrivedMs, intervalMs);
+  if (first !== undefined && first.usedMs !== null) {
+    const clock: ClockAnswer = {
+      usedMs: first.usedMs,
+      offsetMs: source.clockOffsetMs,
+      late: false,
+      trouble: 'none',
+      flag: null,
+    };
+    const whole = !first.quality.some(({ flag }) => flag === 'too-short');
+    return { start, usedMs: first.usedMs, clock, late: false, repeated, secondVersion: whole, findings: [] };
+  }
+  const clock = readLoggerClock(
+    { ...source, offsetMs: source.clockOffsetMs },
+    {
+      statedMs: start.startMs,
+      arrivedMs: ready.arrivedMs,
+      batchNewestStatedMs: question.batchNewestStatedMs,
+      intervalMs,
+      overdueAfterMs,
+      toleranceMs: view.site.timings.clockToleranceMs,
+      nearestUsedMs: nearestUsed(near, wantedMs),
+    },
+  );
+  const late = clock.late;
+  const findings = findingsOf(clock, { late, repeated, start, source });
+  return { start, usedMs: clock.usedMs, clock, late, repeated, secondVersion: false, findings };
+}
+
+/** The recording of the same start that came at most half an interval before; the file is a second version of it. */
+function versionBefore(
+  near: readonly StoredRecording[],
+  start: RecordingStart,
+  arrivedMs: number,
+  intervalMs: number,
+): StoredRecording | undefined {
+  if (start.statedMs === null) return undefined;
+  return near.find(
+    (other) => other.statedMs === start.statedMs && arrivedMs - other.arrivedMs <= intervalMs / 2,
+  );
+}
+
+function nearestUsed(near: readonly StoredRecording[], wantedMs: number): number | null {
+  const times = near.flatMap(({ usedMs }) => (usedMs === null ? [] : [usedMs]));
+  if (times.length === 0) return null;
+  return times.reduce((a, b) => (Math.abs(b - wantedMs) < Math.abs(a - wantedMs) ? b : a));
+}
+
+function findingsOf(
+  clock: ClockAnswer,
+  about: {
+    readonly late: boolean;
+    readonly repeated: boolean;
+    readonly start: RecordingStart;
+    readonly source: Source;
+  },
+): QualityFinding[] {
+  const findings: QualityFinding[] = [];
+  if (clock.flag !== null) {
+    const minutes = Math.round(Math.abs(clock.offsetMs) / 60_000);
+    const detail = `the logger's clock is ${minutes} min ${clock.offsetMs < 0 ? 'ahead' : 'behind'}; the recording counts from its arrival`;
+    findings.push({ flag: clock.flag, detail });
+  }
+  if (about.late)
+    findings.push({ flag: 'late', detail: 'it begins before the newest recording that was evaluated' });
+  if (about.repeated) {
+    findings.push({
+      flag: 'repeated-content',
+      detail: 'the same content came before under another name or time',
+    });
+  }
+  return findings;
+}
