@@ -34,16 +34,17 @@ export async function keepSpectrum(writer: Writer, measurementId: number): Promi
     .execute();
 }
 
+const littleEndianHere = new Uint8Array(Uint16Array.of(1).buffer)[0] === 1;
+
 /** Float32, little-endian, whatever machine writes it. */
 export function densityBytes(density: Float32Array): Uint8Array {
-  const bytes = new Uint8Array(density.length * 4);
-  const view = new DataView(bytes.buffer);
-  for (const [index, value] of density.entries()) {
+  for (let line = 0; line < density.length; line++) {
+    const value = density[line];
     if (!Number.isFinite(value))
-      throw new Error(`density at line ${index} is ${value}, which is never stored`);
-    view.setFloat32(index * 4, value, true);
+      throw new Error(`density at line ${line} is ${value}, which is never stored`);
   }
-  return bytes;
+  const bytes = new Uint8Array(density.buffer, density.byteOffset, density.byteLength).slice();
+  return littleEndianHere ? bytes : swapped(bytes);
 }
 
 export interface StoredSpectrum extends Spectrum {
@@ -73,6 +74,12 @@ export async function newestSpectra(
 }
 
 export function densityOf(bytes: Uint8Array): Float32Array {
-  const view = new DataView(bytes.buffer, bytes.byteOffset, bytes.byteLength);
-  return Float32Array.from({ length: bytes.byteLength / 4 }, (_, index) => view.getFloat32(index * 4, true));
+  const own = new Uint8Array(bytes);
+  return new Float32Array((littleEndianHere ? own : swapped(own)).buffer);
+}
+
+/** Each group of four bytes turned round, in place. */
+function swapped(bytes: Uint8Array<ArrayBuffer>): Uint8Array<ArrayBuffer> {
+  for (let at = 0; at < bytes.length; at += 4) bytes.subarray(at, at + 4).reverse();
+  return bytes;
 }

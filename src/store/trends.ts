@@ -2,7 +2,8 @@ import type { Insertable } from 'kysely';
 import type { Measurement, SpectralPeak } from '../manipulation/measurement.ts';
 import { jsonOfFinite } from './journal.ts';
 import type { Writer } from './lent-connection.ts';
-import type { LevelsTable, MeasurementsTable } from './schema.ts';
+import { insertRows } from './many-rows.ts';
+import type { LevelsTable, MeasurementsTable, PeaksTable } from './schema.ts';
 import type { SiteIds } from './site-ids.ts';
 import { insertSpectrum, type Place } from './spectra.ts';
 
@@ -21,9 +22,6 @@ export interface NewMeasurement {
   /** An alarm of the point changed with it: its spectrum is never thinned. */
   readonly atAlarm: boolean;
 }
-
-/** Rows of one insert; 40 rows of the widest table stay far below SQLite's 32,766 variables. */
-const rowsAtOnce = 64;
 
 /**
  * Stores a measurement with its levels, peaks and spectrum; earlier ones of the same recording and point are no longer
@@ -83,33 +81,30 @@ async function insertLevels(
       in_trend: entry.inTrend ? 1 : 0,
     };
   });
-  for (const chunk of chunks(rows)) {
-    await writer
-      .insertInto('levels')
-      .values(chunk)
-      .onConflict((conflict) =>
-        conflict
-          .columns(['point_id', 'used_ms', 'band_id', 'series_id'])
-          .doUpdateSet((to) => ({
-            measurement_id: to.ref('excluded.measurement_id'),
-            level: to.ref('excluded.level'),
-            interval_low: to.ref('excluded.interval_low'),
-            interval_high: to.ref('excluded.interval_high'),
-            exceeded_by_80_percent: to.ref('excluded.exceeded_by_80_percent'),
-            at_least: to.ref('excluded.at_least'),
-            in_trend: to.ref('excluded.in_trend'),
-          }))
-          // Of two recordings at one time, one that is out of the trend never displaces one that is in it.
-          .where((where) =>
-            where.or([
-              where('excluded.in_trend', '>=', where.ref('levels.in_trend')),
-              where('excluded.measurement_id', '=', where.ref('levels.measurement_id')),
-            ]),
-          ),
-      )
-      .execute();
-  }
+  await insertRows(writer, 'levels', levelColumns, rows, levelConflict);
 }
+
+const levelColumns = [
+  'point_id',
+  'used_ms',
+  'band_id',
+  'series_id',
+  'measurement_id',
+  'level',
+  'interval_low',
+  'interval_high',
+  'exceeded_by_80_percent',
+  'at_least',
+  'in_trend',
+] as const satisfies readonly (keyof LevelsTable)[];
+
+/** Of two recordings at one time, one that is out of the trend never displaces one that is in it. */
+const levelConflict = `
+  on conflict (point_id, used_ms, band_id, series_id) do update set
+    measurement_id = excluded.measurement_id, level = excluded.level, interval_low = excluded.interval_low,
+    interval_high = excluded.interval_high, exceeded_by_80_percent = excluded.exceeded_by_80_percent,
+    at_least = excluded.at_least, in_trend = excluded.in_trend
+  where excluded.in_trend >= levels.in_trend or excluded.measurement_id = levels.measurement_id`;
 
 /** Ids of the series of all levels of a measurement, by `seriesName`; new settings begin a new series. */
 async function getSeries(
@@ -154,26 +149,34 @@ function seriesName(bandId: number, fingerprint: string): string {
   return `${bandId} ${fingerprint}`;
 }
 
+const peakColumns = [
+  'measurement_id',
+  'rank',
+  'frequency_hz',
+  'level',
+  'above_floor_db',
+  'kind',
+  'order_of_speed',
+] as const satisfies readonly (keyof PeaksTable)[];
+
 async function insertPeaks(
   writer: Writer,
   measurementId: number,
   peaks: readonly SpectralPeak[],
 ): Promise<void> {
   await writer.deleteFrom('peaks').where('measurement_id', '=', measurementId).execute();
-  const rows = peaks.map((peak, index) => ({
-    measurement_id: measurementId,
-    rank: index + 1,
-    frequency_hz: peak.frequencyHz,
-    level: peak.level,
-    above_floor_db: peak.aboveFloorDb,
-    kind: peak.kind,
-    order_of_speed: peak.order,
-  }));
-  for (const chunk of chunks(rows)) await writer.insertInto('peaks').values(chunk).execute();
-}
-
-function* chunks<T>(rows: readonly T[]): Generator<readonly T[]> {
-  for (let from = 0; from < rows.length; from += rowsAtOnce) yield rows.slice(from, from + rowsAtOnce);
+  const rows = peaks.map(
+    (peak, index): PeaksTable => ({
+      measurement_id: measurementId,
+      rank: index + 1,
+      frequency_hz: peak.frequencyHz,
+      level: peak.level,
+      above_floor_db: peak.aboveFloorDb,
+      kind: peak.kind,
+      order_of_speed: peak.order,
+    }),
+  );
+  await insertRows(writer, 'peaks', peakColumns, rows);
 }
 
 function measurementRow(entry: NewMeasurement, pointId: number): Insertable<MeasurementsTable> {

@@ -1,0 +1,99 @@
+import { existsSync, readdirSync, readFileSync, statSync, writeFileSync } from 'node:fs';
+import { join } from 'node:path';
+import Database from 'better-sqlite3';
+import { expect, test } from 'vitest';
+import { backupLedger, quickCheck } from '../../src/store/backup.ts';
+import { ledgerPath } from '../../src/store/open-ledger.ts';
+import { opened, temporaryFolder } from './temporary-ledger.ts';
+
+test('a backup taken while the service writes is whole, consistent, and opens as a ledger', async () => {
+  const folder = temporaryFolder();
+  const ledger = await opened(folder);
+  let written = 0;
+  const writePair = () =>
+    ledger.transact(async (writer) => {
+      for (const half of ['a', 'b']) {
+        await writer
+          .insertInto('told_once')
+          .values({ key: `${half}${written} ${'x'.repeat(2000)}`, wall_ms: written })
+          .execute();
+      }
+      written++;
+    });
+  for (let row = 0; row < 200; row++) await writePair();
+  const target = temporaryFolder();
+  let ended = false;
+  const backup = backupLedger(ledger.path, join(target, 'ledger.sqlite')).finally(() => {
+    ended = true;
+  });
+  const before = written;
+  while (!ended) {
+    await writePair();
+    await new Promise((resolve) => setImmediate(resolve));
+  }
+  expect(written).toBeGreaterThan(before);
+  const done = await backup;
+  expect(done).toMatchObject({
+    file: join(target, 'ledger.sqlite'),
+    bytes: statSync(join(target, 'ledger.sqlite')).size,
+  });
+  expect(readdirSync(target)).toEqual(['ledger.sqlite']);
+  expect(await quickCheck(ledgerPath(target))).toEqual([]);
+  const restored = await opened(target);
+  expect(restored.id).toBe(ledger.id);
+  const halves = await restored.read((reader) =>
+    reader.selectFrom('told_once').select('wall_ms').orderBy('key').execute(),
+  );
+  // Each transaction wrote two rows: never one without the other.
+  expect(halves.length % 2).toBe(0);
+  expect(halves.length).toBeGreaterThanOrEqual(2 * before);
+});
+
+test('a backup never overwrites, and one that stops half-way leaves no file of that name', async () => {
+  const ledger = await opened(temporaryFolder());
+  const target = temporaryFolder();
+  const file = join(target, 'copy.sqlite');
+  writeFileSync(file, 'precious');
+  expect(await backupLedger(ledger.path, file)).toMatchObject({ refused: 'exists' });
+  expect(readFileSync(file, 'utf8')).toBe('precious');
+  for (const stop of ['backup copied', 'backup checked']) {
+    const other = join(target, 'other.sqlite');
+    const stopped = backupLedger(ledger.path, other, (name) => {
+      if (name === stop) throw new Error(`stopped at ${name}`);
+    });
+    await expect(stopped).rejects.toThrow(`stopped at ${stop}`);
+    expect(existsSync(other)).toBe(false);
+  }
+  expect(await backupLedger(ledger.path, join(target, 'no', 'such', 'copy.sqlite'))).toMatchObject({
+    refused: 'read-only',
+  });
+  expect(await backupLedger(join(target, 'none.sqlite'), join(target, 'copy2.sqlite'))).toMatchObject({
+    refused: 'read-only',
+  });
+});
+
+test('the quick check finds a damaged page', async () => {
+  const folder = temporaryFolder();
+  const ledger = await opened(folder);
+  await ledger.transact(async (writer) => {
+    for (let row = 0; row < 300; row++) {
+      await writer
+        .insertInto('told_once')
+        .values({ key: `${row} ${'x'.repeat(500)}`, wall_ms: row })
+        .execute();
+    }
+  });
+  await ledger.close();
+  expect(await quickCheck(ledgerPath(folder))).toEqual([]);
+  const bytes = readFileSync(ledgerPath(folder));
+  const connection = new Database(ledgerPath(folder), { readonly: true });
+  const root = connection
+    .prepare(`select rootpage from sqlite_master where name = 'told_once'`)
+    .pluck()
+    .get() as number;
+  connection.close();
+  bytes.fill(0x5a, (root - 1) * 4096, root * 4096);
+  writeFileSync(ledgerPath(folder), bytes);
+  const findings = await quickCheck(ledgerPath(folder));
+  expect(Array.isArray(findings) && findings.length > 0).toBe(true);
+});
