@@ -62,10 +62,7 @@ export function lift(suppression: Suppression, event: JournalEventName): Act {
     const severity = state.condition === 'normal' ? state.highest : state.condition;
     const journal = [journalled(event, state, command)];
     if (!owed || severity === null) return changed(state, { suppressions }, journal);
-    if (suppressions.length > 0) {
-      const acknowledged = state.acknowledged && !anew;
-      return changed(state, { suppressions, heldBack: true, acknowledged }, journal);
-    }
+    if (suppressions.length > 0) return changed(state, { suppressions, heldBack: true }, journal);
     const told = higher(state.told, severity);
     const tell: Telling = { severity, event, level: state.toldLevel };
     return changed(state, { suppressions, heldBack: false, acknowledged: false, told }, journal, tell);

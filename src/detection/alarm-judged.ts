@@ -28,7 +28,7 @@ export function judge(state: AlarmState, judged: Judged, rule: AlarmRule): Alarm
 /** A danger that the on-delay holds back is journalled when its run begins, so that page and summary show it. */
 function dangerUnconfirmed(state: AlarmState, counted: Counted, judged: Judged): readonly JournalEvent[] {
   const begins = counted.pending?.to === 'danger' && state.pending?.to !== 'danger';
-  return begins ? [entry('danger-unconfirmed', state.condition, counted.condition, judged)] : [];
+  return begins ? [entry('danger-unconfirmed', counted.condition, counted.condition, judged)] : [];
 }
 
 /** A -> B, D -> B, E -> B, F -> B, or a rise in severity within B or C (-> B). */

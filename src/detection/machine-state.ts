@@ -101,16 +101,11 @@ export function machineStep(
     runningSinceMs,
     readings: Object.fromEntries(known.map(({ point, reading }) => [point.id, reading])),
   };
-  const points = [...readings].map(([id, own]): [string, PointMachineState] => {
-    const reading = machine.running === null ? null : own;
-    const otherRuns = fresh.some(({ point, reading }) => point.id !== id && reading.running);
-    return [
-      id,
-      {
-        state: reading === false ? 'stopped' : state,
-        readsStopped: reading === null || !(reading || otherRuns) ? null : !reading,
-      },
-    ];
+  const anyRuns = fresh.some(({ reading }) => reading.running);
+  const points = [...readings].map(([id, heard]): [string, PointMachineState] => {
+    const own = machine.running === null ? null : heard;
+    const readsStopped = own === null || !anyRuns ? null : !own;
+    return [id, { state: own === false ? 'stopped' : state, readsStopped }];
   });
   return { memory, points: Object.fromEntries(points) };
 }

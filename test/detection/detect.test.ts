@@ -89,6 +89,11 @@ describe('one measurement of one point', () => {
     },
   );
 
+  it("reads 'at least' where it is clipped: it clears nothing, even if no flag says so", () => {
+    const measurement = measurementWith({ levels: [levelOf(0, { atLeast: true })] });
+    expect(detect(inputWith({ measurement, earlier: standingBook().states }))).toEqual([]);
+  });
+
   it.each(['stopped', 'transient'] as const)('of a %s machine is not held against limits', (machineState) => {
     expect(detect(inputWith({ level: 99, machineState }))).toEqual([]);
     const { states } = standingBook();
