@@ -23,7 +23,7 @@ export function broadcastStart(payload: Uint8Array): StatedStart | null | string
   const [hour, minute, second] = clock.slice(1).map(Number);
   const ms = Date.UTC(year, month - 1, dayOfMonth, hour, minute, second);
   const read = new Date(ms);
-  const possible = read.getUTCMonth() === month - 1 && read.getUTCDate() === dayOfMonth && hour < 24;
+  const possible = read.getUTCMonth() === month - 1 && read.getUTCDate() === dayOfMonth;
   if (!possible || minute > 59 || second > 59 || year < 1970) {
     return `there is no date ${date} ${time}, start not taken from it`;
   }
