@@ -89,12 +89,13 @@ function tooNarrow(facts: Facts): BandFinding | null {
   const least = leastBandLines(situation.analysis.window);
   const lines = (toHz - fromHz) / spacingHz;
   if (lines >= least * (1 - 1e-9)) return null;
+  const widened = inBandUnit(band, fromHz + least * spacingHz, situation.runningSpeedHz, Math.ceil);
   return {
     refused: true,
     edge: 'to',
     rule: 'too narrow',
     what: `band '${band.id}' of ${situation.shown} is ${printNumber(lines)} lines of ${printFrequency(spacingHz)} wide, ${situation.analysis.window} needs ${least}`,
-    right: `${finer(facts, (toHz - fromHz) / least)}, or widen the band`,
+    right: `${finer(facts, (toHz - fromHz) / least)}, or write: to: ${widened}`,
     instead: null,
   };
 }
@@ -112,7 +113,7 @@ function tooLow(facts: Facts): BandFinding | null {
     edge: 'from',
     rule: 'too low',
     what: `${band.quantity} band '${band.id}' of ${situation.shown} begins ${printNumber(fromHz / spacingHz)} lines of ${printFrequency(spacingHz)} above 0, ${situation.analysis.window} needs ${least}`,
-    right: `${spacing}begin at ${lowest}`,
+    right: `${spacing}write: from: ${lowest}`,
     instead: null,
   };
 }

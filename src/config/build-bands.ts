@@ -34,16 +34,18 @@ export function buildBands(
     readonly situation: BandCase;
   },
 ): BuiltBands {
-  const chosen = new Map<string, { readonly written: WrittenBand; readonly own: boolean }>();
+  const chosen = new Map<string, { readonly written: WrittenBand; readonly layer: number }>();
   layers.forEach((layer, index) => {
     for (const written of layer?.value ?? []) {
       const id = written.value.keys.id;
-      if (id !== null) chosen.set(id.value, { written, own: index === layers.length - 1 });
+      if (id !== null && chosen.get(id.value)?.layer !== index)
+        chosen.set(id.value, { written, layer: index });
     }
   });
   const bands: BuiltBand[] = [];
   const absent = new Set<string>();
-  for (const [id, { written, own }] of chosen) {
+  for (const [id, { written, layer }] of chosen) {
+    const own = layer === layers.length - 1;
     const band = buildBand(build, written, own, point);
     if (band === null) absent.add(id);
     else {
@@ -58,12 +60,7 @@ export function tellDoubledBands({ reading }: Build, list: Written<readonly Writ
   const ids = (list?.value ?? []).flatMap(({ value: { keys } }) =>
     keys.id === null ? [] : [{ id: keys.id.value, at: keys.id.at }],
   );
-  tellDoubledIds(
-    reading,
-    ids,
-    (id, line) => `band '${id}' stands twice, first in line ${line}`,
-    'give each band of a list its own id',
-  );
+  tellDoubledIds(reading, ids, (id, line) => `band '${id}' stands twice, first in line ${line}`);
 }
 
 function buildBand(

@@ -28,15 +28,15 @@ export function buildLimits(
   bands: BuiltBands,
   shown: string,
 ): readonly Limit[] {
-  const chosen = new Map<string, WrittenLimit>();
-  for (const layer of layers) {
-    for (const written of layer?.value ?? []) {
+  const chosen = new Map<string, { readonly written: WrittenLimit; readonly layer: number }>();
+  layers.forEach((list, layer) => {
+    for (const written of list?.value ?? []) {
       const id = limitId(written);
-      if (id !== null) chosen.set(id, written);
+      if (id !== null && chosen.get(id)?.layer !== layer) chosen.set(id, { written, layer });
     }
-  }
+  });
   const limits: Limit[] = [];
-  for (const [id, written] of chosen) {
+  for (const [id, { written }] of chosen) {
     const limit = buildLimit(build, id, written, bands, shown);
     if (limit !== null) limits.push(limit);
   }
@@ -50,7 +50,7 @@ export function tellDoubledLimits({ reading }: Build, list: Written<readonly Wri
     return id === null ? [] : [{ id, at }];
   });
   const what = (id: string, line: number) => `limit '${id}' stands twice, first in line ${line}`;
-  tellDoubledIds(reading, ids, what, 'give each limit of a list its own id');
+  tellDoubledIds(reading, ids, what);
 }
 
 function limitId({ value: { keys, has } }: WrittenLimit): string | null {

@@ -33,12 +33,7 @@ export function buildMachines(build: Build, site: WrittenSite): readonly BuiltMa
       ...(keys.formerly?.value ?? []).map(({ value, at }) => ({ id: value, at })),
     ];
   });
-  tellDoubledIds(
-    build.reading,
-    ids,
-    (id, line) => `machine id '${id}' stands twice, first in line ${line}`,
-    'give each machine its own id',
-  );
+  tellDoubledIds(build.reading, ids, (id, line) => `machine id '${id}' stands twice, first in line ${line}`);
   const used = new Set<string>();
   const known = new Set(ids.map(({ id }) => id));
   const machines = written.flatMap((one) => {
@@ -140,7 +135,7 @@ function tellDoubledPoints({ reading }: Build, keys: MachineRead, machineId: str
   });
   const what = (id: string, line: number) =>
     `point id '${id}' stands twice in ${machineId}, first in line ${line}`;
-  tellDoubledIds(reading, ids, what, 'give each point of a machine its own id');
+  tellDoubledIds(reading, ids, what);
 }
 
 function tellUnknownSisters(

@@ -37,7 +37,8 @@ export interface PointSurroundings {
 /** A point with the places that later checks of the whole site point at. */
 export interface BuiltPoint {
   readonly point: Point;
-  readonly at: Span;
+  readonly idAt: Span;
+  /** The id where no channel is written. */
   readonly channelAt: Span;
   readonly bands: BuiltBands;
 }
@@ -97,5 +98,5 @@ export function buildPoint(
     bands: bands.bands.map(({ band }) => band),
     limits,
   };
-  return { point, at: written.at, channelAt: keys.channel?.at ?? at, bands };
+  return { point, idAt: at, channelAt: keys.channel?.at ?? at, bands };
 }

@@ -9,10 +9,11 @@ interface Claim {
   readonly pattern: ExpandedPattern;
   /** Literal text before the first <any>. */
   readonly head: string;
+  readonly length: number;
 }
 
-/** Pairs of patterns compared letter by letter in one file; beyond, only equal patterns are told. */
-const mostComparisons = 20_000;
+/** Steps of comparing patterns in one file: some seconds. A site of 2000 points needs a hundredth. */
+const mostSteps = 2e8;
 
 /**
  * Two points that may take the same channel of the same file: the pattern of one file name that both take is the
@@ -27,7 +28,7 @@ export function tellDoubleClaims(build: Build, points: readonly BuiltPoint[]): v
     if (group === undefined) byChannel.set(channel, [built]);
     else group.push(built);
   }
-  let left = mostComparisons;
+  let left = mostSteps;
   for (const group of byChannel.values()) {
     tellEqualRegexes(build, group);
     const claims = group.flatMap(claimOf).sort((a, b) => (a.head < b.head ? -1 : a.head > b.head ? 1 : 0));
@@ -36,8 +37,10 @@ export function tellDoubleClaims(build: Build, points: readonly BuiltPoint[]): v
     for (const claim of claims) {
       open = open.filter(({ head }) => claim.head.startsWith(head));
       for (const earlier of open) {
+        // Doubled ids are told already.
+        if (pointPath(earlier.built.point) === pointPath(claim.built.point)) continue;
         if (left <= 0) break;
-        left--;
+        left -= earlier.length * claim.length;
         const name = commonName(earlier.pattern, claim.pattern);
         if (name !== null) {
           tell(build, earlier.built, claim.built, `'${shorten(name)}'`);
@@ -47,6 +50,10 @@ export function tellDoubleClaims(build: Build, points: readonly BuiltPoint[]): v
       open.push(claim);
     }
   }
+  if (left <= 0) {
+    const text = 'too many file patterns to compare each with each: some doubled channels may not be told';
+    build.reading.warn({ from: 0, to: 0 }, text);
+  }
 }
 
 function claimOf(built: BuiltPoint): Claim[] {
@@ -55,7 +62,8 @@ function claimOf(built: BuiltPoint): Claim[] {
   const pattern = expandPattern(point.recordings.files, point.machineId, point.id);
   const first = pattern.indexOf(null);
   const head = pattern.slice(0, first < 0 ? pattern.length : first).join('');
-  return [{ built, pattern, head }];
+  const length = pattern.reduce((sum, part) => sum + (part?.length ?? 1), 1);
+  return [{ built, pattern, head, length }];
 }
 
 function tellEqualRegexes(build: Build, group: readonly BuiltPoint[]): void {
@@ -73,9 +81,12 @@ function tell({ reading }: Build, one: BuiltPoint, other: BuiltPoint, file: stri
   const [first, second] = one.channelAt.from <= other.channelAt.from ? [one, other] : [other, one];
   const { channel } = second.point;
   const what = `${pointPath(second.point)} and ${pointPath(first.point)} (line ${reading.lineOf(first.channelAt)}) claim channel ${channel} of the same file, such as ${file}`;
+  const another = typeof channel === 'number' ? String(channel + 1) : 'the name of another column';
+  const written =
+    second.channelAt === second.idAt ? `add: channel: ${another}` : reading.write(second.channelAt, another);
   reading.problem(
     second.channelAt,
     what,
-    'give one of them another channel, or <machine> and <point> in files: with a separator behind each',
+    `${written}, or tell the files apart by <machine>_ and <point>_ in files:`,
   );
 }

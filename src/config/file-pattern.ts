@@ -13,7 +13,7 @@ export function parseFilePattern(text: string): Parsed<string> {
   if (/^\/|^[A-Za-z]:/.test(pattern)) {
     return refused(
       `'${shorten(pattern)}' is a path, a pattern is seen from the drop folder`,
-      pattern.replace(/^([A-Za-z]:)?\/+/, ''),
+      pattern.slice(pattern.lastIndexOf('/') + 1),
     );
   }
   if (pattern.split('/').some((part) => part === '' || part === '.' || part === '..')) {
@@ -83,32 +83,51 @@ export function expandPattern(pattern: string, machineId: string, pointId: strin
 
 /**
  * A file name that both patterns take, or null where there is none; <any> takes any text without a /, the empty one
- * too. Walks pairs of positions once each: at most the product of the two lengths.
+ * too. Looks at each pair of positions once: work in proportion to the product of the two lengths.
  */
 export function commonName(a: ExpandedPattern, b: ExpandedPattern): string | null {
   const left = symbols(a);
   const right = symbols(b);
-  const seen = new Set<number>();
   const width = right.length + 1;
-  const open: { readonly i: number; readonly j: number; readonly name: string }[] = [
-    { i: 0, j: 0, name: '' },
-  ];
-  for (let state = open.pop(); state !== undefined; state = open.pop()) {
-    const { i, j, name } = state;
-    if (i === left.length && j === right.length) return name;
-    if (seen.has(i * width + j)) continue;
-    seen.add(i * width + j);
-    const one = left[i];
-    const other = right[j];
-    if (one === null) open.push({ i: i + 1, j, name });
-    if (other === null) open.push({ i, j: j + 1, name });
-    if (one === null && typeof other === 'string' && other !== '/')
-      open.push({ i, j: j + 1, name: name + other });
-    if (other === null && typeof one === 'string' && one !== '/')
-      open.push({ i: i + 1, j, name: name + one });
-    if (typeof one === 'string' && one === other) open.push({ i: i + 1, j: j + 1, name: name + one });
+  /** From which pair of positions this one was reached, and -1 where it was not. */
+  const before = new Int32Array((left.length + 1) * width).fill(-1);
+  before[0] = 0;
+  for (let i = 0; i <= left.length; i++) {
+    for (let j = 0; j <= right.length; j++) {
+      const here = i * width + j;
+      if (before[here] < 0) continue;
+      const one = left[i];
+      const other = right[j];
+      const letters = typeof one === 'string' && one === other;
+      if (letters && before[here + width + 1] < 0) before[here + width + 1] = here;
+      if ((one === null || takes(other, one)) && before[here + width] < 0) before[here + width] = here;
+      if ((other === null || takes(one, other)) && before[here + 1] < 0) before[here + 1] = here;
+    }
   }
-  return null;
+  const end = left.length * width + right.length;
+  return before[end] < 0 ? null : nameAlong(before, end, left, right, width);
+}
+
+/** Does <any> (null) swallow this letter? */
+function takes(symbol: string | null | undefined, letter: string | null | undefined): boolean {
+  return symbol === null && typeof letter === 'string' && letter !== '/';
+}
+
+function nameAlong(
+  before: Int32Array,
+  end: number,
+  left: readonly (string | null)[],
+  right: readonly (string | null)[],
+  width: number,
+): string {
+  let name = '';
+  for (let at = end; at > 0; at = before[at]) {
+    const from = before[at];
+    const movedLeft = Math.floor(at / width) > Math.floor(from / width);
+    const letter = movedLeft ? left[Math.floor(from / width)] : right[from % width];
+    name = `${letter ?? ''}${name}`;
+  }
+  return name;
 }
 
 function symbols(pattern: ExpandedPattern): (string | null)[] {

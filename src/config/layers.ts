@@ -40,12 +40,11 @@ export function tellDoubledIds(
   reading: Reading,
   ids: readonly { readonly id: string; readonly at: Span }[],
   what: (id: string, line: number) => string,
-  right: string,
 ): void {
   const lines = new Map<string, number>();
   for (const { id, at } of ids) {
     const first = lines.get(id);
     if (first === undefined) lines.set(id, reading.lineOf(at));
-    else reading.problem(at, what(id, first), right);
+    else reading.problem(at, what(id, first), `${reading.write(at, `${id}-2`)}, or another id of its own`);
   }
 }

@@ -99,7 +99,10 @@ export const limitKeys = {
       fallback: '+25 %',
     },
   ),
-  action: key(words(1000, 'Check base bolts and coupling'), 'What to do first, in the words of the site.'),
+  action: key(
+    words(1000, 'Check base bolts and coupling', { lines: true }),
+    'What to do first, in the words of the site.',
+  ),
   respond_within: key(duration(60_000, 365 * day, '2 d'), 'Time within which a person should have looked.'),
 };
 

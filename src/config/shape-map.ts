@@ -47,14 +47,7 @@ export function map<K extends Keys>(keys: K): Shape<ReadMap<K>> {
     const node = reading.resolve(written);
     const at = spanOf(written);
     if (!isMap(node)) {
-      const right = isEmptyValue(node)
-        ? 'write its keys indented below it, or remove the line'
-        : `with the keys ${names.join(', ')}`;
-      reading.problem(
-        at,
-        `${name} is a group of keys${isEmptyValue(node) ? ', and none stands here' : ''}`,
-        right,
-      );
+      reading.problem(at, ...noGroup(node, name, names, (text) => reading.write(at, text)));
       return null;
     }
     const found: Record<string, Written<unknown> | null> = Object.fromEntries(
@@ -62,7 +55,11 @@ export function map<K extends Keys>(keys: K): Shape<ReadMap<K>> {
     );
     const has = new Set<string>();
     eachPair(node, name, reading, (label, value, keyNode) => {
-      if (!Object.hasOwn(keys, label)) return unknownKey(reading, keyNode, label, name, names);
+      if (!Object.hasOwn(keys, label)) {
+        const meant = unknownKey(reading, keyNode, label, name, names);
+        if (meant !== null) has.add(meant);
+        return;
+      }
       has.add(label);
       if (value !== null) found[label] = keys[label].shape.read(value, label, reading);
     });
@@ -70,12 +67,34 @@ export function map<K extends Keys>(keys: K): Shape<ReadMap<K>> {
       if (!keys[known].required || has.has(known)) continue;
       const id = found.id?.value;
       const which = typeof id === 'string' ? ` '${shorten(id)}'` : '';
-      reading.problem(at, `${name}${which} has no ${known}`, `add: ${known}: ${keys[known].shape.example}`);
+      const { example, below } = keys[known].shape;
+      const right =
+        below === undefined ? `add: ${known}: ${example}` : `add ${known}: with its keys indented below`;
+      reading.problem(at, `${name}${which} has no ${known}`, right);
     }
     return { value: { keys: found as ReadOf<K>, has }, at };
   };
   const below = names.map((known) => [known, keys[known].shape] as const);
   return { read, jsonSchema: mapSchema(keys, names), below, example: '...' };
+}
+
+function noGroup(
+  node: Node,
+  name: string,
+  names: readonly string[],
+  write: (text: string) => string,
+): readonly [string, string] {
+  if (isEmptyValue(node)) {
+    return [
+      `${name} is a group of keys, and none stands here`,
+      'write its keys indented below it, or remove the line',
+    ];
+  }
+  const glued = isScalar(node) ? /^([a-z_]+):(\S.*)$/s.exec(String(node.value)) : null;
+  if (glued !== null && names.includes(glued[1])) {
+    return [`the colon after ${glued[1]} lacks its space`, write(`${glued[1]}: ${glued[2]}`)];
+  }
+  return [`${name} is a group of keys`, `its keys are ${names.join(', ')}`];
 }
 
 /** A group whose keys are ids of people's own. */
@@ -150,13 +169,14 @@ function eachPair(node: YAMLMap, name: string, reading: Reading, visitPair: Visi
   }
 }
 
+/** Tells it; returns the key of this group that was meant, so that it is not told as missing too. */
 function unknownKey(
   reading: Reading,
   node: Node,
   label: string,
   name: string,
   names: readonly string[],
-): void {
+): string | null {
   const at = spanOf(node);
   const meant = nearest(label, names);
   const homes = meant === null || !sameWord(meant, label) ? reading.homes.get(label) : undefined;
@@ -164,6 +184,7 @@ function unknownKey(
   if (homes !== undefined) reading.problem(at, what, `it belongs under ${homes.join(' or ')}`);
   else if (meant !== null) reading.problem(at, what, reading.write(at, meant));
   else reading.problem(at, what, `known here are ${names.join(', ')}`);
+  return homes === undefined ? meant : null;
 }
 
 function sameWord(a: string, b: string): boolean {

@@ -57,8 +57,8 @@ export function scalar<T>(parse: (text: string) => Parsed<T>, facts: ScalarFacts
     }
     const eaten = free ? eatenByComment(node, reading.text) : null;
     if (eaten !== null) {
-      const kept = String(node.value) === '' ? 'nothing' : `'${shorten(String(node.value))}'`;
-      const what = `'#' begins a comment, so ${name} is only ${kept}`;
+      const kept = String(node.value) === '' ? 'empty' : `only '${shorten(String(node.value))}'`;
+      const what = `'#' begins a comment, so ${name} is ${kept}`;
       reading.problem(at, what, reading.write(eaten.span, asYaml(eaten.whole)));
       return null;
     }
@@ -152,9 +152,21 @@ export const trueOrFalse: Shape<boolean> = {
   jsonSchema: { type: 'boolean' },
 };
 
-/** Text of people's own, one line or several. Control characters never get here. */
-export function words(most: number, example: string): Shape<string> {
-  return scalar((text) => ({ ok: true, value: text.trim() }), { example, free: true, most });
+/**
+ * Text of people's own, on one line unless `lines`. Escapes in double quotes can make control characters, which
+ * would end up in mail headers and terminals, so they are refused here too.
+ */
+export function words(most: number, example: string, { lines = false } = {}): Shape<string> {
+  const refusedCharacters = lines ? /[^\P{Cc}\n\t]/u : /\p{Cc}/u;
+  return scalar<string>(
+    (text) => {
+      const value = text.trim();
+      if (!refusedCharacters.test(value)) return { ok: true, value };
+      const instead = value.replace(/\p{Cc}+/gu, ' ');
+      return { ok: false, what: 'the text holds a line break or control character', instead };
+    },
+    { example, free: true, most },
+  );
 }
 
 /** A number without a unit (a port, a count, a share). */

@@ -4,8 +4,14 @@ import { applyRepairs, lineRepairs, parsedRepairs, type Repair } from './traps.t
 
 /** Bounds of a site file; a real one of 500 points stays below a tenth of each. */
 export const mostCharacters = 1_048_576;
+const mostLines = 50_000;
+const longestLine = 4000;
+/** Opened one in the other, on one line that is no comment; the parser's work grows with their square. */
+const nestedDeeply = /^[^#]*?(?:[[{]\s*|[-?:]\s){31}/;
 const mostAliases = 100;
+/** Repairs are tried so often, and only while a file has no more errors than a person makes. */
 const mostRounds = 5;
+const mostErrors = 500;
 
 /** The parsed file: `source` is the text after repairs (same lines), `target` resolves aliases. */
 export interface SiteYaml {
@@ -28,7 +34,8 @@ export function readYaml(original: SiteText): SiteYaml {
       source = new SiteText(applyRepairs(source.text, repairs));
     }
     const document = parse(source.text);
-    repairs = round < mostRounds ? parsedRepairs(source, document) : [];
+    repairs =
+      round < mostRounds && document.errors.length <= mostErrors ? parsedRepairs(source, document) : [];
     if (repairs.length > 0) continue;
     const sound = tellSyntax(original, source, document);
     const target = aliasTargets(original, source, document);
@@ -45,15 +52,34 @@ function parse(text: string): Document {
     merge: false,
     strict: true,
     prettyErrors: false,
-    logLevel: 'silent',
+    logLevel: 'error',
   });
 }
 
 function tooLarge(original: SiteText): boolean {
-  if (original.text.length <= mostCharacters) return false;
-  const here = { from: 0, to: 0 };
-  original.problem(here, 'the site file is larger than 1 MB', 'share bands and limits by machine_types');
-  return true;
+  const top = { from: 0, to: 0 };
+  const share = 'share bands and limits by machine_types';
+  if (original.text.length > mostCharacters)
+    original.problem(top, 'the site file is larger than 1 MB', share);
+  else if (original.lines > mostLines)
+    original.problem(top, `the site file has more than ${mostLines} lines`, share);
+  else {
+    for (let number = 1; number <= original.lines; number++) {
+      const at = original.lineStart(number);
+      const line = original.line(number);
+      const here = { from: at, to: at };
+      if (line.length > longestLine) {
+        original.problem(here, `the line has more than ${longestLine} characters`, 'break it into several');
+      } else if (nestedDeeply.test(line)) {
+        original.problem(
+          here,
+          'the line opens more than 30 lists or groups',
+          'a site has five levels at most',
+        );
+      }
+    }
+  }
+  return original.problems().length > 0;
 }
 
 function controlCharacters(original: SiteText): boolean {

@@ -74,10 +74,10 @@ export function parsedRepairs(source: SiteText, document: Document): Repair[] {
   for (const { code, pos } of document.errors) {
     const repair =
       code === 'BLOCK_AS_IMPLICIT_KEY'
-        ? colonInValue(source, pos[0])
+        ? (colonInValue(source, pos[0]) ?? gluedColon(source, pos[0]))
         : code === 'BLOCK_IN_FLOW'
           ? colonInBraces(source, pos)
-          : null;
+          : gluedColon(source, pos[0]);
     if (repair !== null) repairs.push(repair);
   }
   return withoutOverlaps(repairs);
@@ -127,6 +127,15 @@ function colonInValue(source: SiteText, offset: number): Repair | null {
     .trimEnd();
   if (!/^\s*(?:- +)*[\w-]+:\s+$/.test(before) || !/:(\s|$)/.test(value)) return null;
   return { from: offset, to: offset + value.length, replacement: quoted(value), what: colonWhat(value) };
+}
+
+/** `window:hann`: without the space YAML sees no key at all. */
+function gluedColon(source: SiteText, offset: number): Repair | null {
+  const { line } = source.place(offset);
+  const glued = /^(\s*(?:- +)*[a-z_]+:)(?=[^\s:])/.exec(source.line(line));
+  if (glued === null) return null;
+  const at = source.lineStart(line) + glued[1].length;
+  return { from: at, to: at, replacement: ' ', what: 'the colon lacks its space, so this is no key' };
 }
 
 function colonInBraces(source: SiteText, [from, to]: readonly [number, number]): Repair | null {
