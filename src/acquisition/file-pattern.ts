@@ -150,6 +150,11 @@ function difference(path: string, filled: string, fitsUpTo: number, rest: string
   const folders = path.split('/').length - filled.split('/').length;
   if (folders > 0) return 'the file lies in a subfolder that the pattern does not name';
   if (folders < 0) return 'the pattern names a subfolder in which the file does not lie';
+  // <any> takes everything up to the end; then it is the end that is missing.
+  const ending = filled.slice(filled.lastIndexOf('<any>') + '<any>'.length);
+  if (fitsUpTo === path.length && filled.includes('<any>') && !path.endsWith(ending)) {
+    return `does not end in "${ending}"`;
+  }
   return `differs from character ${fitsUpTo + 1} on, at "${rest}"`;
 }
 

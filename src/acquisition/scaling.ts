@@ -30,7 +30,8 @@ export function appliedSignal(signal: SignalSettings, sidecar: SidecarChannel | 
       : samplesIn.quantity === signal.samplesIn.quantity
         ? signal.sensitivity
         : null;
-  return { ...signal, samplesIn, fullScale, sensitivity };
+  const sensitivityText = sensitivity === signal.sensitivity ? signal.sensitivityText : null;
+  return { ...signal, samplesIn, fullScale, sensitivity, sensitivityText };
 }
 
 function rescaled(fullScale: number | null, from: SampleUnit, to: SampleUnit): number | null {
