@@ -131,8 +131,8 @@ function couplingReach(coupling: Float64Array): number {
  *
  * `density` is the averaged one-sided density that `band`'s weights belong to; `tones` are the peaks found in it, in
  * any order. The interval of 95 % holds the true level of noise, and of a steady tone in noise, in 92.5 to 97.5 % of
- * recordings (simulated: 93.6 to 96.6 % for 1 to 31 averages, bands of 3 to 180 lines, overlaps 0 to 75 %). Of a
- * single segment it holds a velocity or displacement whose lowest lines weigh most in 91 to 95 %, and with the
+ * recordings (simulated: 93.6 to 96.6 % for 1 to 31 averages, bands of 3 to 180 lines, overlaps 0 to 75 %). Of one
+ * or two segments it holds a velocity or displacement whose lowest lines weigh most in 91 to 95 %, and with the
  * rectangular window it is too wide about a tone between two lines, whose side lobes count as noise.
  * A band without any power gives the interval 0 to 0.
  */
