@@ -6,7 +6,7 @@ import type { Written } from './shape.ts';
 import type { ReadMap } from './shape-map.ts';
 import type { Band, Quantity, SignalSettings } from './site.ts';
 import { asYaml } from './site-text.ts';
-import { displayUnit, usualDisplayUnit } from './units.ts';
+import { usualDisplayUnit } from './units.ts';
 
 export type WrittenBand = Written<ReadMap<typeof bandKeys>>;
 /** Lists of the machine type, the machine, the point: outermost first. */
@@ -64,67 +64,29 @@ export function tellDoubledBands({ reading }: Build, list: Written<readonly Writ
 }
 
 function buildBand(
-  { reading }: Build,
+  build: Build,
   written: WrittenBand,
   own: boolean,
-  { quantity: measured, signal, sidecar, situation }: Parameters<typeof buildBands>[2],
+  point: Parameters<typeof buildBands>[2],
 ): Band | null {
   const { id, from, to, unit, quantity: asked, formerly } = written.value.keys;
-  if (
-    id === null ||
-    from === null ||
-    to === null ||
-    refusedKey(written, 'unit') ||
-    refusedKey(written, 'quantity')
-  )
-    return null;
-  const quantity = asked?.value ?? unit?.value.quantity ?? measured;
+  if (id === null || from === null || to === null) return null;
+  if (refusedKey(written, 'unit') || refusedKey(written, 'quantity')) return null;
+  const quantity = asked?.value ?? unit?.value.quantity ?? point.quantity;
   if (unit !== null && unit.value.quantity !== quantity) {
     const what = `band '${id.value}' is ${quantity}, its unit ${unit.value.text} is ${unit.value.quantity}`;
-    reading.problem(unit.at, what, reading.write(unit.at, usualDisplayUnit(quantity).text), 'unit');
-    return null;
-  }
-  if (from.value.inOrders !== to.value.inOrders) {
-    reading.problem(
-      to.at,
-      `band '${id.value}' begins and ends in different units`,
-      'give both in Hz, or both in orders (0.5x)',
-      'orders',
-    );
-    return null;
-  }
-  if (from.value.value >= to.value.value) {
-    reading.problem(
-      to.at,
-      `band '${id.value}' does not end above its begin`,
-      'compare from and to',
-      'order of edges',
-    );
-    return null;
-  }
-  const derived = integrationsBetween(measured, quantity);
-  if (typeof derived === 'object') {
-    if (own)
-      reading.problem(
-        written.at,
-        `band '${id.value}': ${derived.reason}`,
-        'write another quantity',
-        'derived',
-      );
-    else reading.warn(written.at, `band '${id.value}' is left out at ${situation.shown}: ${derived.reason}`);
-    return null;
-  }
-  if (from.value.inOrders && situation.runningSpeedHz === null && !sidecar) {
-    const what = `band '${id.value}' is in orders, and nothing says the speed of ${situation.shown}`;
-    reading.problem(
-      from.at,
+    build.reading.problem(
+      unit.at,
       what,
-      'add to the machine: running_speed: 2970 rpm, or sidecar: expected under recordings',
-      'speed',
+      build.reading.write(unit.at, usualDisplayUnit(quantity).text),
+      'unit',
     );
     return null;
   }
-  const samplesText = signal?.samplesIn.text ?? '';
+  if (!edgesAgree(build, id.value, from, to)) return null;
+  if (!canBeGiven(build, written, { id: id.value, quantity, inOrders: from.value.inOrders, own }, point))
+    return null;
+  const usual = usualDisplayUnit(quantity, point.signal?.samplesIn.text);
   return {
     id: id.value,
     formerly: valuesOf(formerly),
@@ -132,13 +94,57 @@ function buildBand(
     from: from.value.value,
     to: to.value.value,
     inOrders: from.value.inOrders,
-    display: valueOr(
-      unit,
-      quantity === 'other'
-        ? displayUnit({ text: samplesText, quantity, inSi: 1 }, 'rms')
-        : usualDisplayUnit(quantity),
-    ),
+    display: valueOr(unit, usual),
   };
+}
+
+type WrittenEdge = Written<{ readonly value: number; readonly inOrders: boolean }>;
+
+function edgesAgree({ reading }: Build, id: string, from: WrittenEdge, to: WrittenEdge): boolean {
+  if (from.value.inOrders !== to.value.inOrders) {
+    const right = 'give both in Hz, or both in orders (0.5x)';
+    reading.problem(to.at, `band '${id}' begins and ends in different units`, right, 'orders');
+    return false;
+  }
+  if (from.value.value < to.value.value) return true;
+  reading.problem(
+    to.at,
+    `band '${id}' does not end above its begin`,
+    'compare from and to',
+    'order of edges',
+  );
+  return false;
+}
+
+/** Can this point give the band at all? A shared band that it cannot give is left out with a warning. */
+function canBeGiven(
+  { reading }: Build,
+  written: WrittenBand,
+  band: {
+    readonly id: string;
+    readonly quantity: Quantity;
+    readonly inOrders: boolean;
+    readonly own: boolean;
+  },
+  { quantity: measured, sidecar, situation }: Parameters<typeof buildBands>[2],
+): boolean {
+  const derived = integrationsBetween(measured, band.quantity);
+  if (typeof derived === 'object') {
+    if (band.own)
+      reading.problem(
+        written.at,
+        `band '${band.id}': ${derived.reason}`,
+        'write another quantity',
+        'derived',
+      );
+    else reading.warn(written.at, `band '${band.id}' is left out at ${situation.shown}: ${derived.reason}`);
+    return false;
+  }
+  if (!band.inOrders || situation.runningSpeedHz !== null || sidecar) return true;
+  const what = `band '${band.id}' is in orders, and nothing says the speed of ${situation.shown}`;
+  const right = 'add to the machine: running_speed: 2970 rpm, or sidecar: expected under recordings';
+  reading.problem(written.value.keys.from?.at ?? written.at, what, right, 'speed');
+  return false;
 }
 
 function refusedKey({ value: { has, keys } }: WrittenBand, name: keyof typeof bandKeys): boolean {

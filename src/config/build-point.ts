@@ -15,7 +15,6 @@ import {
 } from './build-settings.ts';
 import { buildSignal } from './build-signal.ts';
 import { type Build, valueOr, valuesOf } from './layers.ts';
-import { averagingMeaning } from './meaning.ts';
 import type { pointKeys } from './schema-machines.ts';
 import type { Written } from './shape.ts';
 import type { ReadMap } from './shape-map.ts';
@@ -69,11 +68,7 @@ export function buildPoint(
     at,
     shown,
   });
-  const meaning =
-    sampleRateHz === null || durationS === null ? null : averagingMeaning(analysis, sampleRateHz, durationS);
-  const averages =
-    meaning === null ? null : { nominal: meaning.averages, effective: meaning.effectiveAverages };
-  warnOfAnalysis(build, analysisLayers, analysis, { sampleRateHz, runningSpeedHz, averages, at, shown });
+  warnOfAnalysis(build, analysisLayers, analysis, { sampleRateHz, runningSpeedHz, durationS, at, shown });
   const mounting = valueOr(keys.mounting, null);
   const bands = buildBands(build, [...around.bands, keys.bands], {
     quantity,

@@ -1,6 +1,6 @@
 import { finerSpacing } from './bands.ts';
 import { type Build, innermost, type Layers, valueOr } from './layers.ts';
-import { longestSegmentSamples, segmentSamplesFor, usualLineSpacingHz } from './meaning.ts';
+import { averagingMeaning, longestSegmentSamples, segmentSamplesFor, usualLineSpacingHz } from './meaning.ts';
 import { printNumber, printSeconds } from './print-value.ts';
 import type { analysisKeys, recordingKeys } from './schema-recordings.ts';
 import type { AnalysisSettings, RecordingSettings } from './site.ts';
@@ -148,18 +148,20 @@ export function warnOfAnalysis(
   facts: {
     readonly sampleRateHz: number | null;
     readonly runningSpeedHz: number | null;
-    readonly averages: { readonly nominal: number; readonly effective: number } | null;
+    readonly durationS: number | null;
     readonly at: Span;
     readonly shown: string;
   },
 ): void {
-  const { sampleRateHz, runningSpeedHz, averages, at, shown } = facts;
+  const { sampleRateHz, runningSpeedHz, durationS, at, shown } = facts;
   const overlap = innermost(layers, 'overlap');
   if (overlap !== null && overlap.value > 75) {
+    const known = sampleRateHz !== null && durationS !== null;
+    const meaning = known ? averagingMeaning(analysis, sampleRateHz, durationS) : null;
     const worth =
-      averages === null
+      meaning === null
         ? ''
-        : `: ${averages.nominal} averages of ${shown} are worth ${printNumber(averages.effective)} independent ones`;
+        : `: ${meaning.averages} averages of ${shown} are worth ${printNumber(meaning.effectiveAverages)} independent ones`;
     reading.warn(overlap.at, `above 75 % the added segments mostly repeat data${worth}`, 'overlap');
   }
   const window = innermost(layers, 'window');
