@@ -3,7 +3,7 @@ import { recordingIdentity } from '../acquisition/identity.ts';
 import type { AlarmChange } from '../detection/alarm.ts';
 import { pointTrouble } from '../detection/detect.ts';
 import { overdueSubject } from '../detection/overdue.ts';
-import { endAttempt } from '../store/intake-marks.ts';
+import { endAttempt, noteSeen } from '../store/intake-marks.ts';
 import type { Writer } from '../store/lent-connection.ts';
 import { findTaken, insertRecording, type NewRecording } from '../store/recordings.ts';
 import { type ChangeContext, saveAlarmChange } from '../store/save-alarm.ts';
@@ -62,6 +62,7 @@ export async function decide(
       reason,
       evaluated: false,
     });
+    await keepInPlace(writer, view, taken, recordingId);
     return { recordingId, outcome: 'repeat', usedMs };
   }
   const { batchNewestStatedMs } = taken;
@@ -110,7 +111,20 @@ export async function decide(
     await saveAlarmChange(writer, change, context);
   await noteArrivals(writer, view, taken, time, judged);
   await saveSource(writer, sourceAfter(source, taken, time, judged));
+  await keepInPlace(writer, view, taken, recordingId);
   return { recordingId, outcome: 'taken', usedMs: time.usedMs };
+}
+
+/** With `after_reading: keep` the ledger remembers what the file looked like, so that it is read once. */
+async function keepInPlace(
+  writer: Writer,
+  view: SiteView,
+  { ready, answer }: TakenFile,
+  recordingId: number,
+): Promise<void> {
+  if (view.site.folders.afterReading !== 'keep') return;
+  const { size, mtimeMs, ctimeMs } = answer.look;
+  await noteSeen(writer, { path: ready.path, sizeBytes: size, mtimeMs, ctimeMs, recordingId });
 }
 
 /** Older than two expected intervals when it arrived. */

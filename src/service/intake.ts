@@ -9,6 +9,7 @@ import { Arrivals, type ReadyRecording, type Unassigned } from './arrivals.ts';
 import { Backlog } from './backlog.ts';
 import type { Clock } from './clock.ts';
 import { FileAway } from './file-away.ts';
+import type { KeptFiles } from './kept-files.ts';
 import type { Complaints, Logger } from './log.ts';
 import type { HeaderAnswer, HeaderTask, RecordingAnswer, RecordingTask } from './recording-task.ts';
 import { spansOf, statedStart } from './recording-time.ts';
@@ -40,6 +41,7 @@ export interface IntakeTools {
   readonly log: Logger;
   readonly complaints: Complaints;
   readonly step: Step;
+  readonly kept: KeptFiles;
 }
 
 export interface Round {
@@ -65,7 +67,7 @@ export class Intake {
   readonly #fileAway: FileAway;
   readonly #take: TakeFiles;
 
-  constructor(tools: IntakeTools, isKept: ConstructorParameters<typeof Arrivals>[0]['isKept']) {
+  constructor(tools: IntakeTools) {
     this.#tools = tools;
     const { clock, view } = tools;
     const replaced = (path: string) => this.#arrivals.forget(path);
@@ -74,7 +76,7 @@ export class Intake {
       wallMs: () => clock.wallMs(),
       monotonicMs: () => clock.monotonicMs(),
       header: (task) => this.#header(task),
-      isKept,
+      isKept: (file) => view().site.folders.afterReading === 'keep' && tools.kept.has(file),
     });
     this.#backlog = new Backlog(() => clock.monotonicMs());
     this.#fileAway = new FileAway({ ...tools, replaced });

@@ -1,4 +1,3 @@
-import { sampleCheck } from '../acquisition/quality.ts';
 import {
   type ByteSource,
   isRefusal,
@@ -9,6 +8,7 @@ import {
   type SamplesEnd,
   type Sidecar,
 } from '../acquisition/recording.ts';
+import { SampleQuality } from '../acquisition/sample-quality.ts';
 import { appliedSignal, scalingOf } from '../acquisition/scaling.ts';
 import { type Point, pointPath } from '../config/site.ts';
 import { Measurer } from '../manipulation/measure.ts';
@@ -82,6 +82,7 @@ function measurers(
       continue;
     }
     const rateHz = header.sampleRateHz ?? point.recordings.sampleRateHz;
+    const speedHz = sidecar?.speedRpm == null ? nominalHz : sidecar.speedRpm / 60;
     const measurer = new Measurer({
       point,
       nominalHz,
@@ -90,11 +91,25 @@ function measurers(
       siPerSample: scaling.siPerSample,
       signal: scaling.signal,
       sidecar,
-      check: sampleCheck({ header, point, scaling, sampleRateHz: rateHz }),
+      check: new SampleQuality({
+        samples: header.samples,
+        sampleRateHz: rateHz,
+        quantity: point.quantity,
+        voltsPerSample: scaling.voltsPerSample,
+        lowestVelocityHz: lowestVelocityHz(point, speedHz),
+        speedHz,
+      }),
     });
     fed.push({ index, measurer, rateHz });
   }
   return { fed, missing };
+}
+
+function lowestVelocityHz(point: Point, speedHz: number | null): number | null {
+  const edges = point.bands
+    .filter(({ quantity }) => quantity === 'velocity')
+    .flatMap(({ from, inOrders }) => (inOrders ? (speedHz === null ? [] : [from * speedHz]) : [from]));
+  return edges.length === 0 ? null : Math.min(...edges);
 }
 
 function feed(

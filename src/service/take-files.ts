@@ -9,6 +9,7 @@ import type { Clock } from './clock.ts';
 import { decide } from './decide.ts';
 import type { FileAway } from './file-away.ts';
 import type { FileLook } from './file-source.ts';
+import type { KeptFiles } from './kept-files.ts';
 import type { Complaints, Logger } from './log.ts';
 import type { HashAnswer, MeasureAnswer, RecordingAnswer, RecordingTask } from './recording-task.ts';
 import { type AsideFile, decideAside } from './set-aside.ts';
@@ -26,6 +27,7 @@ export interface TakeTools {
   readonly log: Logger;
   readonly complaints: Complaints;
   readonly step: Step;
+  readonly kept: KeptFiles;
 }
 
 /** Files of a batch, a worker; two batches are under way at a time. */
@@ -196,6 +198,7 @@ export class TakeFiles {
       const decided = await ledger.transact((writer) =>
         decide(writer, now, { ready, answer, fileKey, batchNewestStatedMs }, wallMs),
       );
+      if (now.site.folders.afterReading === 'keep') this.#tools.kept.add({ path, ...answer.look });
       const { sidecar } = ready.header;
       fileAway.know(decided.recordingId, {
         file: answer.look,

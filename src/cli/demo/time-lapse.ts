@@ -1,0 +1,61 @@
+import { writeFileSync } from 'node:fs';
+import { join } from 'node:path';
+import type { SteppedClock } from '../../service/clock.ts';
+import type { Service } from '../../service/service.ts';
+import { days, filesOfStep, stepMs, steps } from './scenario.ts';
+
+/** The story begins on a Monday. */
+export const beginMs = Date.UTC(2026, 2, 2);
+const seed = 20260302;
+const minuteMs = 60_000;
+
+/**
+ * Moments after each recording at which the service is given a round: it notices the files, they have settled, a
+ * danger and then the rest have been gathered, an incomplete file is given up, and the half hours between, so that the
+ * morning comes when it would have come.
+ */
+const momentsMs: readonly number[] = [
+  0,
+  6_000,
+  20_000,
+  6 * minuteMs,
+  11 * minuteMs,
+  ...[30, 60, 90, 120, 150].map((minutes) => minutes * minuteMs),
+];
+
+/** What a person of the site does on a day of the story. */
+export interface PersonsPart {
+  readonly day: number;
+  act(service: Service): Promise<void>;
+}
+
+/** Runs the real service through the story; its clock steps from moment to moment. `told`: after each day. */
+export async function timeLapse(
+  service: Service,
+  clock: SteppedClock,
+  dropFolder: string,
+  parts: readonly PersonsPart[],
+  told: (day: number) => void,
+  storyDays: number = days,
+): Promise<void> {
+  const stepsADay = steps / days;
+  for (let step = 0; step < storyDays * stepsADay; step++) {
+    const startMs = beginMs + step * stepMs;
+    for (const { name, bytes } of filesOfStep(step, startMs, seed))
+      writeFileSync(join(dropFolder, name), bytes);
+    for (const moment of momentsMs) {
+      const atMs = startMs + recordedAfterMs + moment;
+      clock.advance(Math.max(0, atMs - clock.wallMs()));
+      await service.intakeRound();
+      await service.morning();
+      await service.mailRound();
+    }
+    if ((step + 1) % stepsADay !== 0) continue;
+    const day = (step + 1) / stepsADay;
+    for (const part of parts) if (part.day === day) await part.act(service);
+    told(day);
+  }
+}
+
+/** A recording lies in the folder ten seconds after it began. */
+const recordedAfterMs = 10_000;

@@ -1,0 +1,32 @@
+import { Command, CommanderError } from 'commander';
+import type { AddCommand, CommandIo, ExitStatus } from './command.ts';
+import { addDemo } from './commands/demo.ts';
+import { addRun } from './commands/run.ts';
+
+/** The commands, in the order in which help names them. */
+const commands: readonly AddCommand[] = [addRun, addDemo];
+
+const processIo: CommandIo = { out: process.stdout, err: process.stderr, workingFolder: process.cwd() };
+
+/** Runs one command line (without the program's name); the answer is the exit status. */
+export async function main(args: readonly string[], io: CommandIo = processIo): Promise<ExitStatus> {
+  let status: ExitStatus = 0;
+  const done = (answer: ExitStatus) => {
+    status = answer;
+  };
+  const program = new Command('humledger')
+    .description(
+      'Turns recordings of rotating machines into band levels, trends, alarms and a morning summary.',
+    )
+    .configureOutput({ writeOut: (text) => io.out.write(text), writeErr: (text) => io.err.write(text) })
+    .exitOverride()
+    .showHelpAfterError('(--help shows what would be right)');
+  for (const add of commands) add(program, io, done);
+  try {
+    await program.parseAsync([...args], { from: 'user' });
+    return status;
+  } catch (error) {
+    if (!(error instanceof CommanderError)) throw error;
+    return error.exitCode === 0 ? 0 : 2;
+  }
+}

@@ -1,0 +1,241 @@
+import { availableParallelism } from 'node:os';
+import { DropFolder } from '../acquisition/drop-folder.ts';
+import { WorkerPool } from '../manipulation/pool.ts';
+import { readMark, writeMark } from '../store/intake-marks.ts';
+import { appendJournal } from '../store/journal.ts';
+import type { Ledger } from '../store/ledger.ts';
+import { isLedgerRefusal } from '../store/ledger-error.ts';
+import { openLedger } from '../store/open-ledger.ts';
+import type { Clock } from './clock.ts';
+import { writeHealth } from './health.ts';
+import { Housekeeping } from './housekeeping.ts';
+import { Intake, type Round } from './intake.ts';
+import { KeptFiles } from './kept-files.ts';
+import { Complaints, type Logger } from './log.ts';
+import { type MailerFor, MailRounds } from './mail-rounds.ts';
+import type { RecordingAnswer, RecordingTask } from './recording-task.ts';
+import { needsRestart, putInForce, readSiteFile, type SiteFile, tellWrongSiteFile } from './site-in-force.ts';
+import type { SiteView } from './site-view.ts';
+import { noStep, type Step } from './steps.ts';
+import { watchSilence } from './watch-silence.ts';
+
+/**
+ * The service: the only place that wires the blocks together. It does everything in rounds, so that the daemon
+ * (run.ts: rounds on ticks), `run --once` (rounds until nothing is left) and the demo (rounds between steps of a
+ * clock) are one and the same way.
+ */
+export interface ServiceOptions {
+  readonly siteFile: SiteFile;
+  readonly clock: Clock;
+  readonly log: Logger;
+  readonly step?: Step;
+  /** Something may have come into the drop folder. */
+  readonly hint?: () => void;
+  readonly mailerFor?: MailerFor;
+  readonly threads?: number;
+  /** Called when no worker thread is left: the process should end and be started again. */
+  readonly onLost?: (reason: string) => void;
+}
+
+/** How the last run ended, as the ledger remembers it. */
+const runMark = 'run';
+
+export class Service {
+  readonly ledger: Ledger;
+  readonly startedMs: number;
+  readonly #options: ServiceOptions;
+  readonly #complaints: Complaints;
+  readonly #dropFolder: DropFolder;
+  readonly #pool: WorkerPool<RecordingTask, RecordingAnswer>;
+  readonly #intake: Intake;
+  readonly #mail: MailRounds;
+  readonly #housekeeping: Housekeeping;
+  #view: SiteView;
+
+  /** Opens the ledger as its owner and puts the site file in force; in words why not. */
+  static async start(options: ServiceOptions): Promise<Service | { readonly refused: string }> {
+    const { clock, siteFile, step = noStep } = options;
+    const ledger = await openLedger({
+      folder: siteFile.site.folders.data,
+      mode: 'owner',
+      wallMs: () => Math.round(clock.wallMs()),
+      monotonicMs: () => clock.monotonicMs(),
+    });
+    if (isLedgerRefusal(ledger)) return { refused: ledger.reason };
+    const wallMs = Math.round(clock.wallMs());
+    const view = await putInForce(ledger, siteFile, wallMs);
+    const last = await ledger.read((reader) => readMark(reader, runMark));
+    await ledger.transact(async (writer) => {
+      await writeMark(writer, runMark, 'begun');
+      await appendJournal(writer, serviceEntry('started', view, wallMs, { after: last ?? 'first start' }));
+    });
+    const kept = await KeptFiles.load(ledger);
+    const service = new Service(options, {
+      ledger,
+      view,
+      kept,
+      unclean: last === 'begun',
+      startedMs: wallMs,
+      step,
+    });
+    await service.#mail.announce(last === null ? 'first' : last === 'begun' ? 'unclean' : 'clean');
+    return service;
+  }
+
+  private constructor(
+    options: ServiceOptions,
+    parts: {
+      ledger: Ledger;
+      view: SiteView;
+      kept: KeptFiles;
+      unclean: boolean;
+      startedMs: number;
+      step: Step;
+    },
+  ) {
+    const { clock, log } = options;
+    const { ledger, step } = parts;
+    const monotonicMs = () => clock.monotonicMs();
+    const view = () => this.#view;
+    this.#options = options;
+    this.#view = parts.view;
+    this.ledger = ledger;
+    this.startedMs = parts.startedMs;
+    this.#complaints = new Complaints(log, monotonicMs);
+    const { site } = parts.view;
+    this.#dropFolder = new DropFolder({
+      folder: site.folders.drop,
+      except: [site.folders.data],
+      polling: site.timings.polling,
+      hint: options.hint ?? (() => {}),
+    });
+    this.#pool = new WorkerPool({
+      worker: workerUrl(),
+      threads: options.threads ?? Math.max(1, Math.min(4, availableParallelism())),
+      deadlineMs: 300_000,
+      onAllLost: (reason) => options.onLost?.(reason),
+    });
+    const tools = { ledger, clock, view, log, complaints: this.#complaints, step };
+    this.#intake = new Intake({ ...tools, dropFolder: this.#dropFolder, pool: this.#pool, kept: parts.kept });
+    this.#mail = new MailRounds({
+      ...tools,
+      startedMs: parts.startedMs,
+      ...(options.mailerFor ? { mailerFor: options.mailerFor } : {}),
+    });
+    this.#housekeeping = new Housekeeping({ ledger, view, log, monotonicMs }, parts.unclean);
+  }
+
+  get view(): SiteView {
+    return this.#view;
+  }
+
+  /** Takes what is ready, looks for silence, keeps house. `holdBacklog` false: what lies there is all there is. */
+  async intakeRound(holdBacklog = true): Promise<Round> {
+    const round = await this.#intake.round(holdBacklog);
+    const { clock } = this.#options;
+    await watchSilence(this.ledger, this.#view, {
+      wallMs: Math.round(clock.wallMs()),
+      startedMs: this.startedMs,
+      queueEmpty: round.waiting === 0,
+      dropFolderReadable: round.dropFolder === 'read',
+    });
+    this.#writeHealth(round);
+    if (round.waiting === 0) await this.#housekeeping.whenIdle();
+    return round;
+  }
+
+  /** Composes and delivers what is due. `flush`: gathering is over, everything decided on leaves now. */
+  mailRound(flush = false): ReturnType<MailRounds['round']> {
+    return this.#mail.round(flush);
+  }
+
+  /** The morning summary, if it is due; its local date, or null. */
+  morning(): Promise<string | null> {
+    return this.#mail.morning();
+  }
+
+  /** Re-reads the site file: all of it or none. Returns what is wrong, or null. */
+  async reload(): Promise<string | null> {
+    const { clock, log } = this.#options;
+    const read = readSiteFile(this.#view.site.file);
+    const wallMs = Math.round(clock.wallMs());
+    const problem =
+      'problems' in read
+        ? `${read.problems.length} problems, the first: ${read.problems[0]}`
+        : needsRestart(this.#view.site, read.site);
+    if (problem !== null || 'problems' in read) {
+      log.error({ problem }, 'the site file stays as it was');
+      await tellWrongSiteFile(this.ledger, this.#view, problem ?? '', wallMs);
+      return problem;
+    }
+    this.#view = await putInForce(this.ledger, read, wallMs);
+    log.info({ config_version: read.site.configVersion }, 'site file in force');
+    return null;
+  }
+
+  /** Ends in the reverse order of the start; what is under way is finished. */
+  async stop(): Promise<void> {
+    await this.#dropFolder.close();
+    await this.#pool.close();
+    await this.#housekeeping.end();
+    const wallMs = Math.round(this.#options.clock.wallMs());
+    await this.ledger.transact(async (writer) => {
+      await writeMark(writer, runMark, 'ended');
+      await appendJournal(writer, serviceEntry('stopped', this.#view, wallMs, {}));
+    });
+    await this.ledger.close();
+  }
+
+  #writeHealth(round: Round): void {
+    const { site } = this.#view;
+    try {
+      writeHealth(site.folders.data, {
+        pid: process.pid,
+        startedMs: this.startedMs,
+        roundMs: Math.round(this.#options.clock.wallMs()),
+        configVersion: site.configVersion,
+        dropFolder: round.dropFolder,
+        filesWaiting: round.waiting,
+        filesUnfiled: round.unfiled,
+        unassigned: round.unassigned.slice(0, 20).map(({ path }) => path),
+        unassignedCount: round.unassigned.length,
+        workers: this.#pool.threads,
+        walBytes: this.ledger.walBytes(),
+        ledgerDamage: this.#housekeeping.damage,
+      });
+    } catch (error) {
+      this.#complaints.say('health', `the service's state cannot be written: ${(error as Error).message}`);
+    }
+  }
+}
+
+/** The worker beside this file, in the form in which this file runs (source or built). */
+function workerUrl(): URL {
+  return new URL(
+    import.meta.url.endsWith('.ts') ? './recording-worker.ts' : './recording-worker.js',
+    import.meta.url,
+  );
+}
+
+function serviceEntry(
+  event: 'started' | 'stopped',
+  view: SiteView,
+  wallMs: number,
+  reason: Record<string, unknown>,
+) {
+  return {
+    event,
+    key: null,
+    number: null,
+    before: null,
+    after: null,
+    usedMs: null,
+    wallMs,
+    recordingId: null,
+    configVersionId: view.ids.configVersionId,
+    actor: 'service',
+    via: 'service',
+    comment: null,
+    reason,
+  } as const;
+}
