@@ -30,11 +30,14 @@ export async function backupLedger(
   step: (name: string) => void = () => {},
 ): Promise<BackupDone | LedgerRefusal> {
   if (existsSync(file)) return existing(file);
+  if (!existsSync(path)) return { refused: 'missing', reason: `there is no ledger ${path} to copy` };
+  if (!existsSync(dirname(file))) return noFolder(file);
   const part = `${file}.part`;
   try {
     rmSync(part, { force: true });
     const copied = await inThread({ task: 'copy', path, to: part });
-    if ('failed' in copied) return refusalOf(copied, path);
+    if ('failed' in copied)
+      return refusalOf(copied, /CORRUPT|NOTADB/.test(copied.code) ? path : `copy ${file}`);
     step('backup copied');
     const findings = await quickCheck(part);
     if ('refused' in findings) return findings;
@@ -84,9 +87,13 @@ function systemRefusal(error: unknown, file: string): LedgerRefusal {
     return { refused: 'read-only', reason: `no right to write ${file}` };
   }
   if (code === 'ENOENT' || code === 'ENOTDIR') {
-    return { refused: 'missing', reason: `the folder of ${file} does not exist; make it first` };
+    return noFolder(file);
   }
   throw error;
+}
+
+function noFolder(file: string): LedgerRefusal {
+  return { refused: 'missing', reason: `the folder of ${file} does not exist; make it first` };
 }
 
 function inThread(task: CopyTask): Promise<CopyAnswer> {

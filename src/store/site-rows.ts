@@ -1,10 +1,11 @@
 import type { Band, Limit, Machine, Point } from '../config/site.ts';
-import type { Writer } from './lent-connection.ts';
+import type { Reader, Writer } from './lent-connection.ts';
 import { type KnownId, matchIds, type WantedId } from './match-ids.ts';
 
-type SiteTable = 'machines' | 'points' | 'bands' | 'limits';
+export type SiteTable = 'machines' | 'points' | 'bands' | 'limits';
 
-interface Row extends KnownId {
+/** `parent`: machine of a point, point of a band, band of a limit; 0 for machines. */
+export interface SiteRow extends KnownId {
   readonly parent: number;
 }
 
@@ -21,7 +22,7 @@ export class SiteRows {
 
   /** Ids by `key(...)` of what is in the site file. */
   async keep(machines: readonly Machine[]): Promise<ReadonlyMap<string, number>> {
-    const known = await this.#known();
+    const known = await knownRows(this.#writer);
     await this.#level(
       'machines',
       known.machines,
@@ -73,31 +74,10 @@ export class SiteRows {
     return id;
   }
 
-  async #known(): Promise<Record<SiteTable, readonly Row[]>> {
-    const columns = ['id', 'id_in_site as idInSite', 'retired_ms as retiredMs'] as const;
-    const machines = await this.#writer.selectFrom('machines').select(columns).orderBy('id').execute();
-    const points = await this.#writer
-      .selectFrom('points')
-      .select([...columns, 'machine_id as parent'])
-      .orderBy('id')
-      .execute();
-    const bands = await this.#writer
-      .selectFrom('bands')
-      .select([...columns, 'point_id as parent'])
-      .orderBy('id')
-      .execute();
-    const limits = await this.#writer
-      .selectFrom('limits')
-      .select([...columns, 'band_id as parent'])
-      .orderBy('id')
-      .execute();
-    return { machines: machines.map((row) => ({ ...row, parent: 0 })), points, bands, limits };
-  }
-
   /** Matches one level of the tree below each parent, then writes: retire, rename, make new. */
   async #level<Item extends WantedId>(
     table: SiteTable,
-    known: readonly Row[],
+    known: readonly SiteRow[],
     groups: readonly { readonly parent: number; readonly items: readonly Item[]; path(item: Item): string }[],
     columns: (parent: number) => object,
   ): Promise<void> {
@@ -159,6 +139,28 @@ export class SiteRows {
     }
     return row.id;
   }
+}
+
+/** All that is or was in the site file, by id. */
+export async function knownRows(reader: Reader): Promise<Record<SiteTable, readonly SiteRow[]>> {
+  const columns = ['id', 'id_in_site as idInSite', 'retired_ms as retiredMs'] as const;
+  const machines = await reader.selectFrom('machines').select(columns).orderBy('id').execute();
+  const points = await reader
+    .selectFrom('points')
+    .select([...columns, 'machine_id as parent'])
+    .orderBy('id')
+    .execute();
+  const bands = await reader
+    .selectFrom('bands')
+    .select([...columns, 'point_id as parent'])
+    .orderBy('id')
+    .execute();
+  const limits = await reader
+    .selectFrom('limits')
+    .select([...columns, 'band_id as parent'])
+    .orderBy('id')
+    .execute();
+  return { machines: machines.map((row) => ({ ...row, parent: 0 })), points, bands, limits };
 }
 
 /** Ids may hold any character but NUL. */

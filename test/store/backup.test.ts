@@ -1,4 +1,4 @@
-import { existsSync, readdirSync, readFileSync, statSync, writeFileSync } from 'node:fs';
+import { readdirSync, readFileSync, statSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 import Database from 'better-sqlite3';
 import { expect, test } from 'vitest';
@@ -54,7 +54,11 @@ test('a backup never overwrites, and one that stops half-way leaves no file of t
   const target = temporaryFolder();
   const file = join(target, 'copy.sqlite');
   writeFileSync(file, 'precious');
-  expect(await backupLedger(ledger.path, file)).toMatchObject({ refused: 'exists' });
+  const steps: string[] = [];
+  expect(await backupLedger(ledger.path, file, (name) => steps.push(name))).toMatchObject({
+    refused: 'exists',
+  });
+  expect(steps).toEqual([]);
   expect(readFileSync(file, 'utf8')).toBe('precious');
   for (const stop of ['backup copied', 'backup checked']) {
     const other = join(target, 'other.sqlite');
@@ -62,14 +66,20 @@ test('a backup never overwrites, and one that stops half-way leaves no file of t
       if (name === stop) throw new Error(`stopped at ${name}`);
     });
     await expect(stopped).rejects.toThrow(`stopped at ${stop}`);
-    expect(existsSync(other)).toBe(false);
+    expect(readdirSync(target)).toEqual(['copy.sqlite']);
   }
-  expect(await backupLedger(ledger.path, join(target, 'no', 'such', 'copy.sqlite'))).toMatchObject({
-    refused: 'read-only',
-  });
-  expect(await backupLedger(join(target, 'none.sqlite'), join(target, 'copy2.sqlite'))).toMatchObject({
-    refused: 'read-only',
-  });
+  const refused = async (from: string, to: string) => {
+    const answer = await backupLedger(from, to);
+    if (!('refused' in answer)) throw new Error('a backup was made');
+    return `${answer.refused}: ${answer.reason}`;
+  };
+  const nowhere = join(target, 'no', 'copy.sqlite');
+  expect(await refused(ledger.path, nowhere)).toBe(
+    `missing: the folder of ${nowhere} does not exist; make it first`,
+  );
+  const none = join(target, 'none.sqlite');
+  expect(await refused(none, join(target, 'new.sqlite'))).toBe(`missing: there is no ledger ${none} to copy`);
+  expect(await refused(ledger.path, '/proc/copy.sqlite')).toContain('/proc/copy.sqlite');
 });
 
 test('the quick check finds a damaged page', async () => {

@@ -7,7 +7,13 @@ import { matchIds } from '../../src/store/match-ids.ts';
 import { readLevels } from '../../src/store/read-trends.ts';
 import { insertRecording } from '../../src/store/recordings.ts';
 import { saveAlarmChange } from '../../src/store/save-alarm.ts';
-import { type SiteSynced, syncSite } from '../../src/store/site-ids.ts';
+import {
+  plannedRetirements,
+  readSiteIds,
+  readSiteNames,
+  type SiteSynced,
+  syncSite,
+} from '../../src/store/site-ids.ts';
 import { insertMeasurement } from '../../src/store/trends.ts';
 import { recordingOf } from './new-recording.ts';
 import { measurementOf, smallSite, type Tree } from './small-site.ts';
@@ -203,6 +209,40 @@ test('a name that is given on in the same edit goes to the new owner, and the ol
   ]);
   const third = await sync(ledger, edit, 3);
   expect(third.ids.pointId('pump', 'b')).toBe(second.ids.pointId('pump', 'b'));
+});
+
+test('whoever only reads finds the ids of what is in use, and the names of all there ever was', async () => {
+  const ledger = await opened(temporaryFolder());
+  expect(await ledger.read(readSiteIds)).toBeNull();
+  const first = await sync(ledger, { pump: { de: ['low', 'high'] }, fan: { de: ['low'] } });
+  const second = await sync(ledger, { 'pump-1<pump': { de: ['low'] } }, 2);
+  const ids = await ledger.read(readSiteIds);
+  expect(ids?.configVersionId).toBe(second.ids.configVersionId);
+  expect(ids?.bandId('pump-1', 'de', 'low')).toBe(first.ids.bandId('pump', 'de', 'low'));
+  expect(ids?.limitId('pump-1', 'de', 'low-upper')).toBe(first.ids.limitId('pump', 'de', 'low-upper'));
+  expect(() => ids?.machineId('fan')).toThrow('not in the site file: fan');
+  expect(() => ids?.bandId('pump-1', 'de', 'high')).toThrow();
+  const names = await ledger.read(readSiteNames);
+  expect(names.machine(first.ids.machineId('fan'))).toEqual(['fan']);
+  expect(names.point(first.ids.pointId('pump', 'de'))).toEqual(['pump-1', 'de']);
+  expect(names.band(first.ids.bandId('pump', 'de', 'high'))).toEqual(['pump-1', 'de', 'high']);
+  expect(names.limit(first.ids.limitId('fan', 'de', 'low-upper'))).toEqual(['fan', 'de', 'low-upper']);
+});
+
+test('what a site file would retire can be asked before it is taken over, and nothing changes by asking', async () => {
+  const ledger = await opened(temporaryFolder());
+  await sync(ledger, { pump: { de: ['low', 'high'] }, fan: { de: ['low'] } });
+  const { site, text } = smallSite({ 'pump-1<pump': { de: ['low'], nde: ['low'] } });
+  const planned = await plannedRetirements(ledger, site, { text, wallMs: 5 });
+  expect(planned).toEqual({
+    machines: ['fan'],
+    points: ['fan/de'],
+    bands: ['pump/de/high', 'fan/de/low'],
+    limits: ['pump/de/high-upper', 'fan/de/low-upper'],
+  });
+  const ids = await ledger.read(readSiteIds);
+  expect(ids?.pointId('fan', 'de')).toBeGreaterThan(0);
+  expect(() => ids?.machineId('pump-1')).toThrow();
 });
 
 test('matching rows to the site file: own name, former name, retired rows, in this order', () => {
