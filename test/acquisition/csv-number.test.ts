@@ -61,6 +61,13 @@ test('texts that lie exactly, or almost, in the middle of two doubles go to the 
   readsAsWritten('9007199254740993');
   readsAsWritten('9007199254740993.001');
   readsAsWritten('0.9007199254740993');
+  // As near to a middle as 19 digits can come: solutions of m 2^s - M 5^k = +-1 or 3 with M odd, of 54 bits.
+  readsAsWritten('0.0019501378702487317');
+  readsAsWritten('0.0011435816121731433');
+  readsAsWritten('0.001593200273735477881');
+  readsAsWritten('0.0235956995763234572');
+  readsAsWritten('0.0002453642445960202');
+  readsAsWritten('0.00048171469000870282');
   fc.assert(
     fc.property(fc.integer({ min: 2 ** 40, max: 2 ** 52 }), fc.integer({ min: 0, max: 12 }), (odd, shift) => {
       // Two neighbouring doubles above 2^53 and the whole number between them, moved behind the point.

@@ -63,6 +63,7 @@ describe('one table, however it is written', () => {
   test('one column: a point, a comma under one heading, a comma with a zero behind it', () => {
     expect(channels('1.5\n2.5\n-3\n')).toEqual([[1.5, 2.5, -3]]);
     expect(channels('acc\n1,5\n2,25\n-3,5\n')).toEqual([[1.5, 2.25, -3.5]]);
+    expect(channels('"1,5"\n"2,25"\n"-3,5"\n')).toEqual([[1.5, 2.25, -3.5]]);
     expect(channels('1,05\n2,25\n-3,5\n')).toEqual([[1.05, 2.25, -3.5]]);
     expect(channels('a,b\n1,5\n2,25\n')).toEqual([
       [1, 2],
