@@ -27,6 +27,8 @@ export interface KnownLooks {
   readonly sidecar: { readonly path: string; readonly sha256: string; readonly look: FileLook } | null;
 }
 
+const ordersAtOnce = 50;
+
 export class FileAway {
   readonly #tools: FileAwayTools;
   readonly #known = new Map<number, KnownLooks>();
@@ -42,35 +44,42 @@ export class FileAway {
 
   /** Carries out every standing order; returns how many are left, because something stands in the way. */
   async all(): Promise<number> {
-    let left = 0;
     for (;;) {
-      const orders = await this.#tools.ledger.read((reader) => pendingFilings(reader, 200));
-      let done = 0;
-      left = 0;
+      const orders = await this.#tools.ledger.read((reader) => pendingFilings(reader, ordersAtOnce));
+      if (orders.length === 0) return 0;
+      const filed: { readonly id: number; readonly to: string | null }[] = [];
       for (const order of orders) {
-        if (await this.#one(order)) done++;
-        else left++;
+        const to = await this.#one(order);
+        if (to !== false) filed.push({ id: order.id, to });
       }
-      if (done === 0 || orders.length === left) return left;
+      if (filed.length > 0) await this.#commit(filed);
+      const left = orders.length - filed.length;
+      if (filed.length === 0 || orders.length < ordersAtOnce) return left;
     }
   }
 
-  async #one(recording: StoredRecording): Promise<boolean> {
-    const { ledger, log, complaints, step, replaced } = this.#tools;
+  /** Where the file went (null: nowhere, deleted or gone); false: it could not be moved. */
+  async #one(recording: StoredRecording): Promise<string | null | false> {
+    const { log, complaints, step, replaced } = this.#tools;
     const outcome = await completeFiling(this.#order(recording), { step });
     if (outcome.outcome === 'cannot') {
       complaints.say('filing', outcome.reason);
       return false;
     }
     complaints.over('filing');
-    const to = outcome.outcome === 'filed' ? outcome.to : null;
     if (outcome.outcome === 'replaced') replaced(recording.filingFrom);
     if (outcome.outcome === 'gone')
       log.warn({ file: recording.filingFrom }, 'taken, but gone before it could be filed');
-    await ledger.transact((writer) => markFiled(writer, recording.id, to ?? undefined));
-    this.#known.delete(recording.id);
-    step('intake: filing committed');
-    return true;
+    return outcome.outcome === 'filed' ? outcome.to : null;
+  }
+
+  /** One transaction for several files: an order that is carried out twice ends the same. */
+  async #commit(filed: readonly { readonly id: number; readonly to: string | null }[]): Promise<void> {
+    await this.#tools.ledger.transact(async (writer) => {
+      for (const { id, to } of filed) await markFiled(writer, id, to ?? undefined);
+    });
+    for (const { id } of filed) this.#known.delete(id);
+    this.#tools.step('intake: filing committed');
   }
 
   #order(recording: StoredRecording): FilingOrder {
