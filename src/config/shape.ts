@@ -59,7 +59,9 @@ export function scalar<T>(parse: (text: string) => Parsed<T>, facts: ScalarFacts
     if (eaten !== null) {
       const kept = String(node.value) === '' ? 'empty' : `only '${shorten(String(node.value))}'`;
       const what = `'#' begins a comment, so ${name} is ${kept}`;
-      reading.problem(at, what, reading.write(eaten.span, asYaml(eaten.whole)));
+      const meant = parse(eaten.whole);
+      const text = meant.ok ? eaten.whole : (meant.instead ?? eaten.whole);
+      reading.problem(at, what, reading.write(eaten.span, asYaml(text)));
       return null;
     }
     const text = String(node.value);

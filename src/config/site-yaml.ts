@@ -1,6 +1,6 @@
 import { type Document, isAlias, isNode, type Node, parseDocument, visit } from 'yaml';
+import { applyRepairs, lineRepairs, parsedRepairs, type Repair } from './repairs.ts';
 import { SiteText, type Span } from './site-text.ts';
-import { applyRepairs, lineRepairs, parsedRepairs, type Repair } from './traps.ts';
 
 /** Bounds of a site file; a real one of 500 points stays below a tenth of each. */
 export const mostCharacters = 1_048_576;
@@ -131,8 +131,14 @@ const plainWords: Readonly<Record<string, readonly [string, string]>> = {
 
 /** False where something is left that no repair covers. */
 function tellSyntax(original: SiteText, source: SiteText, document: Document): boolean {
+  const lastLines = new Map<string, number>();
   for (const { code, pos, message } of document.errors) {
     const from = inOriginal(original, source, pos[0]);
+    // One wrong column makes the lines that follow it wrong too: of such a run the first is told.
+    const { line } = source.place(pos[0]);
+    const last = lastLines.get(code);
+    lastLines.set(code, line);
+    if (last !== undefined && line - last <= 4) continue;
     const [what, right] = plainWords[code] ?? [
       lowerFirst(message.replace(/\s+/g, ' ').replace(/ at line \d+.*$/, '')),
       'compare with config/site.example.yaml',
@@ -153,6 +159,11 @@ function missingChar(message: string): readonly [string, string] {
 
 function lowerFirst(text: string): string {
   return text.charAt(0).toLowerCase() + text.slice(1);
+}
+
+function aliasRemedy(source: SiteText, node: Node): string {
+  const [from, to] = node.range ?? [0, 0];
+  return `write: ${source.corrected({ from, to }, `'${source.text.slice(from, to)}'`)}`;
 }
 
 function tellTag(original: SiteText, source: SiteText, offset: number): void {
@@ -187,7 +198,7 @@ function aliasTargets(
       if (isAlias(node)) {
         const known = anchors.get(node.source);
         if (known === undefined)
-          refuse(node, `'*${node.source}' stands for nothing above it`, 'put the text in quotes');
+          refuse(node, `'*${node.source}' stands for nothing above it`, aliasRemedy(source, node));
         else if (target.size < mostAliases) target.set(node, known);
         else {
           refuse(node, `more than ${mostAliases} aliases`, 'share bands and limits by machine_types');

@@ -210,6 +210,18 @@ describe('the site file', () => {
     expect(siteOf(text).machines[0].running).toEqual({ by: 'level', bandId: 'overall', above: 0.0005 });
   });
 
+  it('trends a quantity of its own in the unit of its samples', () => {
+    const text = readList('shortest.yaml')
+      .replace('samples_in: g', 'samples_in: kg/h')
+      .replace('quantity: velocity', 'quantity: other')
+      .replace('quantity: acceleration', 'quantity: other')
+      .replace('4.5 mm/s', '80 kg/h');
+    const [point] = siteOf(text).machines[0].points;
+    expect(point.bands[0].display).toEqual({ text: 'kg/h', quantity: 'other', inSi: 1, detector: 'rms' });
+    expect(point.limits[0].alert).toBe(80);
+    expect(complaints(text.replace('80 kg/h', '80 kg'))[0]).toContain('write: alert: 80 kg/h');
+  });
+
   it('is frozen all the way down', () => {
     const open: string[] = [];
     const walk = (value: unknown, path: string) => {
