@@ -86,6 +86,11 @@ const entries = [
   /^cli\/commands\//,
 ];
 
+/** Single functions that may be taken where otherwise only types may, with the reason. */
+const singleExceptions: Record<string, string> = {
+  'store -> detection/alarm.ts': 'subjectKey is the name under which a row is kept',
+};
+
 interface SourceFile {
   readonly path: string;
   readonly folder: string;
@@ -175,6 +180,8 @@ describe('the rules of the house', () => {
         if (target === source.folder) continue;
         const use = row[target];
         if (use === 'all' || (use === 'types' && typeOnly)) continue;
+        const file = relative(sourceRoot, resolve(sourceRoot, source.path, '..', from));
+        if (`${source.folder} -> ${file}` in singleExceptions) continue;
         wrong.push(
           `src/${source.path} imports ${from}: ${source.folder} may ${use === 'types' ? 'take only types from' : 'not import'} ${target}`,
         );
