@@ -82,7 +82,8 @@ function skiSlope(look: SpectrumLook, { quantity, lowestVelocityHz }: SpectrumQu
   if (lowestVelocityHz === null || averages < rules.skiSlopeLeastAverages) return null;
   if (quantity !== 'acceleration' && quantity !== 'velocity') return null;
   const first = Math.max(lowestLine, Math.ceil(lowestVelocityHz / lineSpacingHz));
-  if (16 * first >= density.length) return null;
+  // With fewer lines below the edge a tone on it cannot be told from a slope.
+  if (first < lowestLine + 2 || 16 * first >= density.length) return null;
   const velocity = (line: number) =>
     quantity === 'velocity' ? density[line] : density[line] / (2 * Math.PI * line * lineSpacingHz) ** 2;
   if (!risesToTheEdge(velocity, first)) return null;
@@ -108,7 +109,7 @@ function skiSlope(look: SpectrumLook, { quantity, lowestVelocityHz }: SpectrumQu
 function risesToTheEdge(velocity: (line: number) => number, first: number): boolean {
   const edge = Math.max(velocity(first), velocity(first + 1));
   for (let line = first + 2; line < 4 * first; line++) if (velocity(line) > edge) return false;
-  return velocity(Math.max(lowestLine, first - 2)) >= rules.skiSlopeBelow * edge;
+  return velocity(first - 2) >= rules.skiSlopeBelow * edge;
 }
 
 function straightLine(points: readonly { readonly x: number; readonly y: number }[]) {

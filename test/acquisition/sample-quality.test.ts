@@ -61,6 +61,19 @@ describe('the sample quality of a healthy recording', () => {
     }
   });
 
+  it('raises nothing where slow tones without noise turn, at the extremes and below them', () => {
+    expect(flags(quantised(sum(sine(5, 0.06), sine(6, 0.05))))).toEqual([]);
+  });
+
+  it('raises nothing where the shaft turns at the very edge of the band', () => {
+    for (let seed = 1001; seed <= 1200; seed++) {
+      for (const lowestVelocityHz of [10, 15.6]) {
+        const { samples, speedHz } = healthySignal(seed, 1, lowestVelocityHz * (0.9 + 0.001 * (seed - 1000)));
+        expect(flags(samples, { speedHz, lowestVelocityHz }), `seed ${seed}`).toEqual([]);
+      }
+    }
+  });
+
   it('raises nothing on numbers with few digits, as CSV files have them', () => {
     const samples = sum(sine(25, 3), gaussianNoise(seededRandom(7), 2 * sampleRateHz, 0.3));
     expect(
@@ -102,6 +115,13 @@ describe('the sample quality of a bad recording', () => {
     for (const at of [3000, 9000, 15_000]) zeroed.fill(0, at, at + 20);
     const [found] = findings(zeroed);
     expect(found).toMatchObject({ flag: 'dropouts', detail: expect.stringMatching(/^3 rows .* 60 in all/) });
+  });
+
+  it('tells no dropout where two short rows have a gap between them', () => {
+    const broken = noise(15);
+    broken.fill(broken[5000], 5000, 5024);
+    broken[5012] = Number.NaN;
+    expect(flags(broken)).toEqual(['not-a-number']);
   });
 
   it('tells samples that are no numbers, and how long a stretch is left', () => {

@@ -58,6 +58,14 @@ describe('a file in the drop folder', () => {
     expect(observe(5000, { header: whole, sizeBytes: 2000 }).verdict).toBe('wait');
   });
 
+  it('is not ready by an old header even where no settling time is asked for', () => {
+    const first = { sizeBytes: 1, modifiedMs: 1, changedMs: 1, inode: '1:1', monotonicMs: 0, header: null };
+    const none = { settleMs: 0, incompleteAfterMs: 1000 };
+    const { state } = settle(null, first, none);
+    const changed = { ...first, sizeBytes: 2, monotonicMs: 1, header: whole };
+    expect(settle(state, changed, none).verdict).toEqual({ verdict: 'look' });
+  });
+
   it('waits while it is shorter than its header says, and is given up with the reason', () => {
     const observe = watching();
     observe(0);

@@ -13,10 +13,10 @@ export interface HealthySignal {
  * A healthy machine seen by an accelerometer: the shaft's multiples, one higher tone, noise; speed, levels and how far
  * the recorder is driven by chance.
  */
-export function healthySignal(seed: number, seconds = 1): HealthySignal {
+export function healthySignal(seed: number, seconds = 1, shaftHz: number | null = null): HealthySignal {
   const random = seededRandom(seed);
   const count = Math.round(seconds * sampleRateHz);
-  const speedHz = 8 + 42 * random.uniform();
+  const speedHz = shaftHz ?? 8 + 42 * random.uniform();
   const samples = gaussianNoise(random, count, 10 ** (-0.5 - 1.2 * random.uniform()));
   const tones = [
     { hz: speedHz, size: 0.1 + 0.9 * random.uniform() },
