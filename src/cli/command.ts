@@ -1,11 +1,14 @@
 import type { Writable } from 'node:stream';
 import type { Command } from 'commander';
+import type { Clock } from '../service/clock.ts';
 
 /** What a command may touch of the outside; tests hand in their own. */
 export interface CommandIo {
   readonly out: Writable;
   readonly err: Writable;
   readonly workingFolder: string;
+  /** The system's where it is not given. */
+  readonly clock?: Clock;
 }
 
 /** 0 done; 1 something could not be done; 2 usage or site file wrong. */
