@@ -49,6 +49,6 @@ export const qualityRules = {
   skiSlopeExponent: -1.8,
   skiSlopePart: 0.5,
   skiSlopeLeastAverages: 4,
-  /** Going on downwards past the band's edge, a slope stays at least this high; a tone there falls. */
-  skiSlopeBelow: 0.5,
+  /** Lines of the lowest octave. */
+  skiSlopeLeastLines: 5,
 } as const;

@@ -74,19 +74,17 @@ function peakLine(density: Float64Array, line: number): number {
 
 /**
  * Judged from the lower edge of the lowest velocity band on, over four octaves: the lower quartile of the lines in
- * each octave (tones fill less than that) against its frequency. The lowest lines must be the highest of two octaves
- * and not fall again below the edge, which a tone near the edge does.
+ * each octave (tones fill less than that) against its frequency.
  */
 function skiSlope(look: SpectrumLook, { quantity, lowestVelocityHz }: SpectrumQuestion): string | null {
   const { density, lineSpacingHz, averages } = look;
   if (lowestVelocityHz === null || averages < rules.skiSlopeLeastAverages) return null;
   if (quantity !== 'acceleration' && quantity !== 'velocity') return null;
   const first = Math.max(lowestLine, Math.ceil(lowestVelocityHz / lineSpacingHz));
-  // With fewer lines below the edge a tone on it cannot be told from a slope.
-  if (first < lowestLine + 2 || 16 * first >= density.length) return null;
+  // In an octave of fewer lines a tone fills the lower quartile too.
+  if (first < rules.skiSlopeLeastLines || 16 * first >= density.length) return null;
   const velocity = (line: number) =>
     quantity === 'velocity' ? density[line] : density[line] / (2 * Math.PI * line * lineSpacingHz) ** 2;
-  if (!risesToTheEdge(velocity, first)) return null;
   const octaves = [1, 2, 4, 8].map((octave) => {
     const lines = Array.from({ length: octave * first }, (_, n) => octave * first + n);
     return { x: Math.log(octave * first * Math.SQRT2), y: Math.log(quantile(lines.map(velocity), 0.25)) };
@@ -104,12 +102,6 @@ function skiSlope(look: SpectrumLook, { quantity, lowestVelocityHz }: SpectrumQu
   if (floor < rules.skiSlopePart * all) return null;
   const share = Math.round((100 * floor) / all);
   return `the velocity rises towards its lowest lines like f^${(slope / 2).toFixed(1)} and this slope is ${share} % of its power: sensor noise or an overdriven input, integrated`;
-}
-
-function risesToTheEdge(velocity: (line: number) => number, first: number): boolean {
-  const edge = Math.max(velocity(first), velocity(first + 1));
-  for (let line = first + 2; line < 4 * first; line++) if (velocity(line) > edge) return false;
-  return velocity(first - 2) >= rules.skiSlopeBelow * edge;
 }
 
 function straightLine(points: readonly { readonly x: number; readonly y: number }[]) {

@@ -74,6 +74,15 @@ describe('the sample quality of a healthy recording', () => {
     }
   });
 
+  it('raises nothing on a slow shaft whose multiples crowd the lowest lines', () => {
+    for (let seed = 1; seed <= 100; seed++) {
+      const speedHz = 5 + 0.05 * seed;
+      const multiples = [1, 2, 3, 4, 5, 6].map((k) => sine(k * speedHz, 0.08 / k, seed * k));
+      const samples = quantised(sum(gaussianNoise(seededRandom(seed), 2 * sampleRateHz, 0.01), ...multiples));
+      expect(flags(samples, { speedHz, lowestVelocityHz: 20 }), `seed ${seed}`).toEqual([]);
+    }
+  });
+
   it('raises nothing on numbers with few digits, as CSV files have them', () => {
     const samples = sum(sine(25, 3), gaussianNoise(seededRandom(7), 2 * sampleRateHz, 0.3));
     expect(
