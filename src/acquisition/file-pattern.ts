@@ -66,13 +66,22 @@ export function isNoRecording(path: string): boolean {
   return path.split('/').some((name) => name.startsWith('.')) || /\.(part|json)$/i.test(path);
 }
 
-function sourcesOf(site: Site): SourcePattern[] {
+/** A site is frozen, so its patterns are read once. */
+const known = new WeakMap<Site, readonly SourcePattern[]>();
+
+function sourcesOf(site: Site): readonly SourcePattern[] {
+  const sources = known.get(site) ?? readSources(site);
+  known.set(site, sources);
+  return sources;
+}
+
+function readSources(site: Site): SourcePattern[] {
   const byName = new Map<string, SourcePattern & { points: Point[] }>();
   for (const point of site.machines.flatMap((machine) => machine.points)) {
     const found = sourceOfPoint(point);
-    const known = byName.get(found.source);
-    if (known === undefined) byName.set(found.source, { ...found, points: [point] });
-    else known.points.push(point);
+    const earlier = byName.get(found.source);
+    if (earlier === undefined) byName.set(found.source, { ...found, points: [point] });
+    else earlier.points.push(point);
   }
   return [...byName.values()];
 }
