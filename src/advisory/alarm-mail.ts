@@ -44,7 +44,7 @@ export function alarmSubject(facts: AlarmMailFacts): string {
   if (first === undefined)
     return subjectLine(`${facts.test ? 'TEST: ' : ''}${nameOf(facts.site)}: nothing to tell`);
   const word = markWord[severityOf(first)];
-  const mark = facts.test ? `TEST: ${word}` : `${word} ${first.number}`;
+  const mark = facts.test ? `TEST: ${word}` : first.number === 0 ? word : `${word} ${first.number}`;
   const others = items.length > 1 ? ` (and ${items.length - 1} more)` : '';
   // The names give way, so that what stands behind them stays: level and number of others.
   const names = [first.machine, first.point].filter((named) => named !== null);
@@ -87,8 +87,9 @@ function inOrder(facts: AlarmMailFacts): Item[] {
   );
 }
 
-/** What is over needs nobody and stands last. */
+/** What is over needs nobody and stands last. A level that came late, and a removed limit, never stand and are news. */
 function isOver(item: Item): boolean {
+  if (item.event === 'exceeded-came-late' || item.event === 'limit-removed') return false;
   return item.event === 'returned' || item.standing === 'normal';
 }
 
@@ -134,7 +135,7 @@ function findingOf(item: Item, test: boolean): Block {
   return {
     kind: 'finding',
     mark: severityOf(item),
-    number: test ? null : item.number,
+    number: test || item.number === 0 ? null : item.number,
     text:
       item.kind === 'alarm'
         ? `${placeText(item.machine, item.point)}: ${idText(item.band.id)} ${measuredText(item.level, item.band.display)}`

@@ -65,6 +65,7 @@ export interface PastLevel {
 
 /** What alarms and troubles share. */
 export interface StandingFacts {
+  /** 0: it has none, because its alarm never stood (a level over its limit in a recording that came late). */
   readonly number: number;
   readonly standing: AlarmStanding;
   /** Used time of the first recording over the limit, or when the trouble began. */

@@ -32,7 +32,7 @@ export function createMailer(server: MailServer, options: MailerOptions = {}): M
   return {
     async send({ from, recipient, bytes }) {
       const login = await loginFor(server);
-      if ('answer' in login) return { kind: 'later', answer: login.answer };
+      if ('answer' in login) return { kind: 'later', answer: login.answer, server: 'out' };
       const transport = createTransport({
         host: server.host,
         port: server.port,
@@ -66,6 +66,9 @@ export function createMailer(server: MailServer, options: MailerOptions = {}): M
 
 interface SmtpError extends Error {
   readonly code?: string;
+  /** The system's own code, such as ECONNREFUSED. */
+  readonly originalCode?: string;
+  readonly timeoutType?: string;
   readonly responseCode?: number;
   readonly response?: string;
 }
@@ -79,8 +82,24 @@ function answerOf(error: SmtpError, secret: string | null): AttemptAnswer {
     error.code === 'ETLS' ||
     error.code === 'ESOCKET' ||
     error.code === 'ECONNECTION';
-  const final = !mendable && error.responseCode !== undefined && error.responseCode >= 500;
-  return { kind: final ? 'never' : 'later', answer: error.code ? `${answer} (${error.code})` : answer };
+  // An address that cannot even be offered to a server never will be.
+  const unusable = error.code === 'EENVELOPE' && error.responseCode === undefined;
+  const final = unusable || (!mendable && error.responseCode !== undefined && error.responseCode >= 500);
+  const server = final ? undefined : serverOf(error);
+  return {
+    kind: final ? 'never' : 'later',
+    answer: error.code ? `${answer} (${error.code})` : answer,
+    ...(server === undefined ? {} : { server }),
+  };
+}
+
+/** A server that spoke and then closed or fell silent may have stumbled over this very mail; any other failure is its own. */
+function serverOf(error: SmtpError): AttemptAnswer['server'] {
+  if (error.code === 'EAUTH' || error.code === 'ETLS' || error.responseCode === 421) return 'out';
+  if (error.responseCode !== undefined) return undefined;
+  const closed = error.code === 'ECONNECTION' && error.message.startsWith('Connection closed');
+  const reset = error.originalCode === 'ECONNRESET' || error.originalCode === 'EPIPE';
+  return closed || reset || error.timeoutType === 'SOCKET_TIMEOUT' ? 'gone' : 'out';
 }
 
 type Login =

@@ -84,6 +84,16 @@ export function groupsDue<E extends EventDue>(
     );
 }
 
+/** Wall time at which the next group will be due; null without events. */
+export function nextGroupDueMs(events: readonly EventDue[], times: GatherTimes): number | null {
+  const waits = events.map(
+    (event) =>
+      event.wallMs +
+      Math.min(times.gatherMs, event.severity === 'danger' ? times.gatherDangerMs : times.gatherMs),
+  );
+  return waits.length === 0 ? null : Math.min(...waits);
+}
+
 /** Whom a group of events concerns. Site-wide events (machine null) go to everyone who takes their severity. */
 export function recipientsFor(
   recipients: readonly Recipient[],
@@ -121,6 +131,11 @@ export function mailId(identity: string, recipient: string, fromAddress: string)
 export interface AttemptAnswer {
   readonly kind: 'accepted' | 'later' | 'never';
   readonly answer: string;
+  /**
+   * out: the server takes no mail at all now (no connection, TLS, login; 421), so no other would fare better.
+   * gone: it went away in the middle of this mail. Absent: it answered to this mail.
+   */
+  readonly server?: 'out' | 'gone';
 }
 
 export interface Delivery {
@@ -136,9 +151,12 @@ export interface DeliveryStep {
   readonly lastAnswer: string;
 }
 
+/** The longest pause of all; a mail that waits beyond it waits for a clock that was set back. */
+export const greatestPauseMs = 3_600_000;
+
 const pauses = {
   danger: { leastMs: 15_000, greatestMs: 300_000 },
-  other: { leastMs: 60_000, greatestMs: 3_600_000 },
+  other: { leastMs: 60_000, greatestMs: greatestPauseMs },
 };
 
 /** The state after an attempt; total over every answer. */

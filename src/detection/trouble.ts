@@ -53,6 +53,11 @@ const natures: Readonly<Record<TroubleKind, TroubleNature>> = {
   'site-file': { looks: 1, counts: false },
 };
 
+/** Whether its count is one of files; otherwise it only stands. */
+export function countsFiles(kind: TroubleKind): boolean {
+  return natures[kind].counts;
+}
+
 export function troubleRule(kind: TroubleKind): AlarmRule {
   return {
     side: 'upper',

@@ -1,15 +1,147 @@
-import type { Mailer } from '../advisory/mailer.ts';
-import type { MailServer } from '../config/site.ts';
+import { greatestPauseMs } from '../advisory/outbox.ts';
+import type { MailSettings } from '../config/site.ts';
+import { type DueDelivery, dueDeliveries } from '../store/deliveries.ts';
+import { hastenWaiting, waitingMail, waitsBeyond } from '../store/waiting-mail.ts';
+import { announceStart, type StartKind } from './announce.ts';
+import { type Composed, closeThreads, composeDue } from './compose.ts';
+import { attempt } from './delivery.ts';
+import { type MailerFor, type MailTools, wallMsOf } from './mail-tools.ts';
+import { morning } from './morning.ts';
+import { longestOutMs, ServerWatch } from './server-watch.ts';
 
-export type MailerFor = (server: MailServer) => Mailer;
+export type { MailerFor };
 
+export interface MailRound {
+  readonly composed: number;
+  readonly delivered: number;
+  readonly failed: number;
+  /** Deliveries that no server has taken yet. */
+  readonly waiting: number;
+  /** When the next round is worth it; null: when something new happens. */
+  readonly againInMs: number | null;
+}
+
+/** A round ends after so many attempts, so that a stop or a reload is not held up for long. */
+const mostAttempts = 100;
+const leastAgainMs = 250;
+/** Beyond every due time. */
+const whenever = Number.MAX_SAFE_INTEGER;
+
+/**
+ * Mail in rounds: compose what is due, then one delivery after the other, the most urgent first; before each one it is
+ * looked again for what has become due meanwhile, so that a danger never waits behind a slow server's other mails.
+ * One round at a time.
+ */
 export class MailRounds {
-  constructor(_tools: object) {}
-  async announce(_how: 'first' | 'unclean' | 'clean'): Promise<void> {}
-  async round(_flush: boolean): Promise<{ againInMs: number | null; waiting: number }> {
-    return { againInMs: null, waiting: 0 };
+  readonly #tools: MailTools;
+  readonly #watch: ServerWatch;
+  #running: Promise<MailRound> | null = null;
+  #morning: Promise<string | null> | null = null;
+
+  constructor(tools: MailTools) {
+    this.#tools = tools;
+    this.#watch = new ServerWatch(() => tools.clock.monotonicMs());
   }
-  async morning(): Promise<string | null> {
-    return null;
+
+  /** At the start of a run; a clean start is no news. */
+  async announce(how: StartKind): Promise<void> {
+    await announceStart(this.#tools, how);
   }
+
+  /** The morning summary, where it is due: its local date, else null. */
+  morning(): Promise<string | null> {
+    this.#morning ??= morning(this.#tools).finally(() => {
+      this.#morning = null;
+    });
+    return this.#morning;
+  }
+
+  /** `flush`: gathering is over, everything decided on leaves now. A round under way is waited for, not doubled. */
+  async round(flush = false): Promise<MailRound> {
+    if (this.#running !== null) {
+      const running = await this.#running;
+      if (!flush) return running;
+    }
+    this.#running = this.#round(flush).finally(() => {
+      this.#running = null;
+    });
+    return this.#running;
+  }
+
+  async #round(flush: boolean): Promise<MailRound> {
+    const counts = { composed: 0, delivered: 0, failed: 0 };
+    const { mail } = this.#tools.view().site;
+    await closeThreads(this.#tools);
+    let composed: Composed | null = null;
+    if (mail !== null) {
+      await this.#bringForward(flush);
+      let attempts = 0;
+      for (; attempts < mostAttempts; attempts++) {
+        const onlyDanger = this.#watch.isOut && (await countWaiting(this.#tools)) > 0;
+        composed = await composeDue(this.#tools, mail, { flush, onlyDanger });
+        counts.composed += composed.messages;
+        const due = await this.#next(composed.heldBack, flush && attempts === 0);
+        if (due === null) break;
+        const outcome = await this.#attempt(mail, due);
+        if (outcome.state === 'accepted') counts.delivered++;
+        if (outcome.state === 'failed') counts.failed++;
+        if (outcome.stop) break;
+      }
+    }
+    const { count, nextDueMs } = await this.#tools.ledger.read(waitingMail);
+    return { ...counts, waiting: count, againInMs: this.#againInMs(composed, nextDueMs) };
+  }
+
+  async #attempt(mail: MailSettings, due: DueDelivery) {
+    const attempted = await attempt(this.#tools, mail, due);
+    if (this.#watch.note(attempted)) {
+      const nowMs = wallMsOf(this.#tools.clock);
+      await this.#tools.ledger.transact((writer) =>
+        hastenWaiting(writer, { laterThanMs: nowMs, dueMs: nowMs }),
+      );
+    }
+    return { state: attempted.state, stop: this.#watch.isOut };
+  }
+
+  /** What is to be tried now; null: nothing, or the server is out and its pause is not over. */
+  async #next(somethingHeldBack: boolean, flush: boolean): Promise<DueDelivery | null> {
+    const { ledger, clock } = this.#tools;
+    const due = (dueBy: number, limit: number) =>
+      ledger.read((reader) => dueDeliveries(reader, dueBy, limit));
+    const nowMs = wallMsOf(clock);
+    if (!this.#watch.isOut || this.#watch.waitMs === 0 || flush) {
+      const [first] = await due(nowMs, 1);
+      if (first !== undefined) return first;
+    } else if (this.#watch.freshDangerMayTry) {
+      const danger = (await due(nowMs, 10)).find(
+        ({ message, delivery }) => message.priority === 0 && delivery.tries === 0,
+      );
+      if (danger !== undefined) return danger;
+    }
+    if (!somethingHeldBack || !this.#watch.mayProbe) return null;
+    return (await due(whenever, 1))[0] ?? null;
+  }
+
+  /** No mail waits for a wall clock that was set back; and when everything is to leave now, none waits at all. */
+  async #bringForward(all: boolean): Promise<void> {
+    const { ledger, clock } = this.#tools;
+    const nowMs = wallMsOf(clock);
+    const laterThanMs = all ? nowMs : nowMs + greatestPauseMs;
+    if (!(await ledger.read((reader) => waitsBeyond(reader, laterThanMs)))) return;
+    await ledger.transact((writer) => hastenWaiting(writer, { laterThanMs, dueMs: nowMs }));
+  }
+
+  #againInMs(composed: Composed | null, nextDeliveryMs: number | null): number | null {
+    if (composed === null) return null;
+    const nowMs = wallMsOf(this.#tools.clock);
+    const times: number[] = [];
+    if (composed.heldBack) times.push(longestOutMs);
+    else if (composed.nextDueMs !== null) times.push(composed.nextDueMs - nowMs);
+    if (nextDeliveryMs !== null) times.push(Math.max(nextDeliveryMs - nowMs, this.#watch.waitMs));
+    return times.length === 0 ? null : Math.max(leastAgainMs, Math.min(...times));
+  }
+}
+
+async function countWaiting(tools: MailTools): Promise<number> {
+  return (await tools.ledger.read(waitingMail)).count;
 }

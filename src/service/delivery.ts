@@ -1,0 +1,82 @@
+import type { Mailer } from '../advisory/mailer.ts';
+import { type AttemptAnswer, afterAttempt, type DeliveryStep, pauseMs } from '../advisory/outbox.ts';
+import type { MailSettings } from '../config/site.ts';
+import { type DueDelivery, storeAnswer } from '../store/deliveries.ts';
+import { noteAccepted, noteRefused } from './mail-refused.ts';
+import { type MailTools, mailerOf, wallMsOf } from './mail-tools.ts';
+
+/**
+ * One attempt at one delivery, and its answer in the ledger. A kill between the server's answer and its storing means
+ * that the mail goes out again, with the same bytes and the same Message-ID.
+ */
+export interface Attempted {
+  readonly state: DeliveryStep['state'];
+  /** As in AttemptAnswer, of the servers taken together. */
+  readonly server: AttemptAnswer['server'];
+  /** Until the same delivery is tried again; for those that wait. */
+  readonly pauseMs: number;
+}
+
+/** In `AttemptAnswer.server`, a server that was spoken to is worth more than one that was not. */
+export async function attempt(tools: MailTools, mail: MailSettings, due: DueDelivery): Promise<Attempted> {
+  const { message, delivery } = due;
+  tools.step('delivery: attempt begun');
+  const answer = await sendTo(tools, mail, { ...delivery, from: mail.from });
+  tools.step('delivery: answer received');
+  const nowMs = wallMsOf(tools.clock);
+  const before = { createdMs: message.createdMs, danger: message.priority === 0, tries: delivery.tries };
+  const next = afterAttempt(before, answer, nowMs);
+  await tools.ledger.transact(async (writer) => {
+    const stored = await storeAnswer(writer, delivery.mailId, { ...next, triedMs: nowMs });
+    if (!stored) return;
+    if (next.state === 'failed') await noteRefused(writer, tools.view(), due, answer.answer, nowMs);
+    if (next.state === 'accepted') await noteAccepted(writer, tools.view(), nowMs);
+  });
+  tools.step('delivery: answer stored');
+  logAnswer(tools, due, answer, next);
+  return { state: next.state, server: answer.server, pauseMs: pauseMs(before, nowMs) };
+}
+
+interface Sending {
+  readonly from: string;
+  readonly recipient: string;
+  readonly bytes: Uint8Array;
+}
+
+/** The first server, and where it does not take the mail the second one, with the same bytes. */
+async function sendTo(tools: MailTools, mail: MailSettings, sending: Sending): Promise<AttemptAnswer> {
+  const first = await mailerOf(tools, mail.server).send(sending);
+  if (first.kind === 'accepted' || mail.secondServer === null) return first;
+  return eitherAnswer(first, await secondAnswer(mailerOf(tools, mail.secondServer), sending));
+}
+
+function secondAnswer(mailer: Mailer, sending: Sending): Promise<AttemptAnswer> {
+  return mailer.send(sending);
+}
+
+/** Refused for good only by both; a server out of reach may still take it later. */
+export function eitherAnswer(first: AttemptAnswer, second: AttemptAnswer): AttemptAnswer {
+  const answer = `${first.answer}; second server: ${second.answer}`;
+  if (second.kind === 'accepted') return { kind: 'accepted', answer };
+  const kind = first.kind === 'never' && second.kind === 'never' ? 'never' : 'later';
+  // Where one of the two still speaks, other mails are worth a try.
+  const server = first.server === undefined || second.server === undefined ? undefined : second.server;
+  return server === undefined ? { kind, answer } : { kind, answer, server };
+}
+
+function logAnswer(tools: MailTools, due: DueDelivery, answer: AttemptAnswer, next: DeliveryStep): void {
+  const { message, delivery } = due;
+  const about = {
+    kind: message.kind,
+    recipient: delivery.recipient,
+    mail_id: delivery.mailId,
+    tries: next.tries,
+    answer: answer.answer,
+  };
+  if (next.state === 'accepted') {
+    tools.log.info(about, 'mail accepted');
+    tools.complaints.over('mail');
+  } else if (next.state === 'failed') tools.log.error(about, 'mail refused for good');
+  else if (next.tries === 1) tools.log.warn(about, 'mail not accepted yet; it is kept and tried again');
+  else tools.complaints.say('mail', `mail to ${delivery.recipient} still waits: ${answer.answer}`);
+}

@@ -1,0 +1,52 @@
+import type { StandingFacts } from '../advisory/facts.ts';
+import { type AlarmStanding, normalState } from '../detection/alarm.ts';
+import { standing } from '../detection/alarm-state.ts';
+import type { StandingLife } from '../store/alarms.ts';
+import { readJournal } from '../store/journal.ts';
+import type { Reader } from '../store/lent-connection.ts';
+
+/** What alarms and troubles share: number, state, since when, who took it in hand, by when somebody should respond. */
+
+/** The state of a life; what has ended is normal, whatever a later life of the same alarm does. */
+export function standingOfLife({ alarm, life }: StandingLife): AlarmStanding {
+  return life.endedWallMs !== null || alarm.number !== life.number ? 'normal' : standing(alarm.state);
+}
+
+/** Its condition stands, or it is latched: it is not over. */
+export function stillStands(of: StandingLife): boolean {
+  if (standingOfLife(of) === 'normal') return false;
+  return of.alarm.state.condition !== 'normal' || of.alarm.state.latched;
+}
+
+export async function standingFacts(
+  reader: Reader,
+  of: StandingLife,
+  told: { readonly firstMs: number | null; readonly respondWithinMs: number | null },
+): Promise<StandingFacts> {
+  const { alarm, life } = of;
+  const state = alarm.number === life.number ? alarm.state : normalState;
+  const now = standingOfLife(of);
+  const suppressed = now === 'shelved' || now === 'out-of-service';
+  return {
+    number: life.number,
+    standing: now,
+    sinceMs: state.sinceMs ?? life.raisedUsedMs ?? life.raisedWallMs,
+    recordings: state.count,
+    respondByMs:
+      told.firstMs === null || told.respondWithinMs === null ? null : told.firstMs + told.respondWithinMs,
+    acknowledgedBy: life.acknowledgedBy,
+    acknowledgedMs: life.acknowledgedWallMs,
+    suppressedUntilMs: suppressed ? await suppressedUntil(reader, alarm.key, now) : null,
+  };
+}
+
+/** The newest journal entry that shelved it or took it out of service says until when: `untilMs` of its reason. */
+async function suppressedUntil(
+  reader: Reader,
+  key: string,
+  event: 'shelved' | 'out-of-service',
+): Promise<number | null> {
+  const rows = await readJournal(reader, { key, limit: 50 });
+  const until = rows.find((row) => row.event === event)?.reason.untilMs;
+  return typeof until === 'number' ? until : null;
+}

@@ -1,0 +1,111 @@
+import { changeOf } from '../advisory/ranking.ts';
+import type { BandNow, Judging, PointNow } from '../advisory/summary-facts.ts';
+import { type Machine, type Point, pointPath } from '../config/site.ts';
+import type { TroubleKind } from '../detection/alarm.ts';
+import type { MachineMemory } from '../detection/machine-state.ts';
+import type { StoredAlarm } from '../store/alarms.ts';
+import type { Reader } from '../store/lent-connection.ts';
+import { type BareLevel, bareLevels, newestInTrend } from '../store/past-levels.ts';
+import { measurementById, newestMeasurement } from '../store/read-measurements.ts';
+import { seriesOfPoint } from '../store/read-trends.ts';
+import type { PointArrivals } from '../store/sources.ts';
+import { bandFacts, limitFacts, machineFacts, pointFacts } from './fact-names.ts';
+import { levelFacts } from './level-facts.ts';
+import type { SiteView } from './site-view.ts';
+
+/** One point as the summary sees it: can it be judged, and what do its bands say. */
+export interface PointKnown {
+  readonly view: SiteView;
+  readonly machine: Machine;
+  readonly point: Point;
+  /** Alarm records of the point, limits and troubles. */
+  readonly alarms: readonly StoredAlarm[];
+  readonly arrivals: PointArrivals | undefined;
+  readonly memory: MachineMemory | null;
+  readonly nowMs: number;
+}
+
+const dayMs = 86_400_000;
+/** A machine that has not run for longer shows no level. */
+const oldestLevelMs = 60 * dayMs;
+/** Levels a band from which a change is reckoned, at most: hourly ones over eight days are 192. */
+const mostLevels = 400;
+
+export async function pointNow(reader: Reader, known: PointKnown): Promise<PointNow> {
+  const { view, machine, point, arrivals } = known;
+  return {
+    machine: machineFacts(view, machine.id),
+    point: pointFacts(view, machine.id, point.id),
+    judging: await judgingOf(reader, known),
+    lastMs: arrivals?.newestUsedMs ?? null,
+    bands: await bandsNow(reader, known),
+  };
+}
+
+/** Troubles of a point while which nothing usable comes from it. A wrong rate is analysed at the file's own rate. */
+const blinding: readonly TroubleKind[] = [
+  'overdue',
+  'dead-sensor',
+  'reads-stopped',
+  'unreadable',
+  'uneven-time',
+  'repeats-itself',
+];
+
+async function judgingOf(reader: Reader, known: PointKnown): Promise<Judging> {
+  const { view, point, alarms, arrivals, nowMs } = known;
+  if (alarms.some(({ state }) => state.suppressions.includes('out-of-service'))) return 'out-of-service';
+  const isBlind = alarms.some(
+    ({ subject, state }) =>
+      subject.kind === 'trouble' && state.condition === 'trouble' && blinding.includes(subject.trouble),
+  );
+  const { overdueAfterMs, settleMs } = point.recordings;
+  const evaluatedMs = arrivals?.newestEvaluatedUsedMs ?? null;
+  if (isBlind || evaluatedMs === null || nowMs - evaluatedMs > overdueAfterMs + settleMs) return 'blind';
+  const pointId = view.ids.pointId(point.machineId, point.id);
+  const newest = await newestMeasurement(reader, pointId, { evaluated: true });
+  if (newest?.machineState === 'stopped') return 'stopped';
+  return point.limits.length === 0 ? 'no-limit' : 'judged';
+}
+
+async function bandsNow(reader: Reader, { view, machine, point, nowMs }: PointKnown): Promise<BandNow[]> {
+  const pointId = view.ids.pointId(machine.id, point.id);
+  const measurementId = await newestInTrend(reader, pointId, nowMs - oldestLevelMs);
+  const measurement = measurementId === null ? null : await measurementById(reader, measurementId);
+  const series = new Map((await seriesOfPoint(reader, pointId)).map((one) => [one.id, one]));
+  const { expectedEveryMs } = point.recordings;
+  const range = { pointId, fromMs: nowMs - 8 * dayMs, toMs: nowMs + 1 };
+  const past = await bareLevels(reader, { ...range, everyMs: expectedEveryMs, mostTimes: mostLevels });
+  const bySeries = new Map<number, BareLevel[]>();
+  for (const level of past) {
+    const levels = bySeries.get(level.seriesId);
+    if (levels === undefined) bySeries.set(level.seriesId, [level]);
+    else levels.push(level);
+  }
+  return point.bands.map((band): BandNow => {
+    const bandId = view.ids.bandId(machine.id, point.id, band.id);
+    const level = measurement?.levels.find((one) => one.bandId === bandId);
+    const limits = point.limits.filter((limit) => limit.bandId === band.id);
+    const onlyLower = limits.length > 0 && limits.every(({ side }) => side === 'lower');
+    const levels = level === undefined ? [] : (bySeries.get(level.seriesId) ?? []);
+    return {
+      band: bandFacts(band.id, band, level === undefined ? undefined : series.get(level.seriesId), machine),
+      level: level === undefined || measurement === null ? null : levelFacts(measurement, level),
+      limits: limits.map(limitFacts),
+      change: changeOf(levels, nowMs, onlyLower ? 'lower' : 'upper'),
+      zone: null,
+    };
+  });
+}
+
+/** Alarm records by the point they are about. */
+export function alarmsByPoint(alarms: readonly StoredAlarm[]): Map<string, StoredAlarm[]> {
+  const byPoint = new Map<string, StoredAlarm[]>();
+  for (const alarm of alarms) {
+    const { machineId, pointId } = alarm.subject;
+    if (machineId === null || pointId === null) continue;
+    const path = pointPath({ machineId, id: pointId });
+    byPoint.set(path, [...(byPoint.get(path) ?? []), alarm]);
+  }
+  return byPoint;
+}
