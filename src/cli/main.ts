@@ -1,10 +1,11 @@
 import { Command, CommanderError } from 'commander';
 import type { AddCommand, CommandIo, ExitStatus } from './command.ts';
+import { addAnalyse } from './commands/analyse.ts';
 import { addDemo } from './commands/demo.ts';
 import { addRun } from './commands/run.ts';
 
 /** The commands, in the order in which help names them. */
-const commands: readonly AddCommand[] = [addRun, addDemo];
+const commands: readonly AddCommand[] = [addRun, addAnalyse, addDemo];
 
 const processIo: CommandIo = { out: process.stdout, err: process.stderr, workingFolder: process.cwd() };
 

@@ -102,8 +102,14 @@ export class Measurer {
     this.#stretch.add(scaled.subarray(from));
   }
 
-  /** The measurement. `end`: how the samples ended; nothing can be added afterwards. */
-  finish(end: Pick<SamplesEnd, 'timeStepDeviation'>): Measurement {
+  /**
+   * The measurement. `end`: how the samples ended; nothing can be added afterwards. `onDensity` is shown the density,
+   * (SI unit)²/Hz, as the levels were made from it; a measurement keeps it in single precision.
+   */
+  finish(
+    end: Pick<SamplesEnd, 'timeStepDeviation'>,
+    onDensity: (density: Float64Array) => void = () => {},
+  ): Measurement {
     this.#endStretch();
     const { point, sampleRateHz, channel, sidecar, check } = this.#settings;
     const result = this.#longest;
@@ -111,6 +117,7 @@ export class Measurer {
     const spectrum = uneven || this.#averaging === null ? null : (result?.density ?? null);
     const found = check?.finish(spectrum) ?? [];
     const levels = this.#levels(spectrum === null ? null : result, found);
+    if (spectrum !== null) onDensity(spectrum.density);
     return {
       machineId: point.machineId,
       pointId: point.id,

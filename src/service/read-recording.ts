@@ -33,6 +33,7 @@ export interface RecordingRead {
 
 /**
  * One pass over a recording: samples in blocks of bounded size to the measurer of each point. Bad input is an answer.
+ * `onDensity` is shown the density behind each measurement, by its index, in full precision.
  */
 export function readRecording(
   source: ByteSource,
@@ -40,6 +41,7 @@ export function readRecording(
   header: RecordingHeader,
   sidecar: Sidecar | null,
   points: readonly PointTask[],
+  onDensity: (index: number, density: Float64Array) => void = () => {},
 ): RecordingRead | Refusal {
   const { fed, missing } = measurers(header, sidecar, points);
   const end = feed(source, reader, header, fed);
@@ -47,7 +49,9 @@ export function readRecording(
   const quality: QualityFinding[] =
     end.truncated === null ? [] : [{ flag: 'too-short', detail: `the file is cut short: ${end.truncated}` }];
   return {
-    measurements: fed.map(({ measurer }) => measurer.finish(end)),
+    measurements: fed.map(({ measurer }, index) =>
+      measurer.finish(end, (density) => onDensity(index, density)),
+    ),
     missing,
     quality,
     frames: end.frames,

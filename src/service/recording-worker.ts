@@ -98,7 +98,8 @@ function sidecarOf(task: MeasureTask) {
   return task.sidecar?.content ?? null;
 }
 
-function readSidecar(path: string): SidecarRead | { readonly reason: string } | null {
+/** Null where there is none. */
+export function readSidecar(path: string): SidecarRead | { readonly reason: string } | null {
   const file = openRegularFile(path, largestSidecarBytes);
   if ('reason' in file) return file.gone ? null : { reason: `sidecar ${file.reason}` };
   try {

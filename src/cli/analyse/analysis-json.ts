@@ -1,0 +1,125 @@
+import { inDisplayUnit } from '../../config/print-value.ts';
+import type { Band, DisplayUnit } from '../../config/site.ts';
+import { units, usualDisplayUnit } from '../../config/units.ts';
+import type { BandLevel, Measurement, SpectralPeak } from '../../manipulation/measurement.ts';
+import type { FileAnalysis } from '../../service/analyse-file.ts';
+import { noMachine } from './points-of-channels.ts';
+
+/** An analysed file with what its points were to give: what is written as JSON and as text. */
+export interface AnalysedFile {
+  /** As it was named. */
+  readonly file: string;
+  readonly analysis: FileAnalysis;
+  /** Bands of each measurement. */
+  readonly bands: readonly (readonly Band[])[];
+}
+
+/** One object a file; names are spelled as the README lists them. Levels in the unit that stands beside them. */
+export function analysisJson(
+  { file, analysis, bands }: AnalysedFile,
+  spectrum: boolean,
+): Record<string, unknown> {
+  const { start, sampleRateHz, frames, measurements, densities } = analysis;
+  return {
+    file,
+    sha256: analysis.sha256,
+    start: new Date(start.startMs).toISOString(),
+    start_origin: start.origin,
+    sample_rate_hz: sampleRateHz,
+    duration_s: sampleRateHz === null ? null : frames / sampleRateHz,
+    channels: measurements.map((measurement, n) => ({
+      ...channelJson(measurement, bands[n] ?? [], analysis),
+      ...(spectrum ? { spectrum: spectrumJson(measurement, densities[n] ?? null) } : {}),
+    })),
+  };
+}
+
+function channelJson(measurement: Measurement, bands: readonly Band[], { quality }: FileAnalysis) {
+  const { speed, waveform, averaging } = measurement;
+  const inSite = measurement.machineId !== noMachine;
+  return {
+    channel: measurement.channel,
+    machine: inSite ? measurement.machineId : null,
+    point: inSite ? measurement.pointId : null,
+    quantity: measurement.quantity,
+    unit: measurement.unit,
+    speed: speed && { rpm: speed.rpm, origin: speed.origin, uncertainty_rpm: speed.uncertaintyRpm },
+    waveform: waveform && {
+      mean: waveform.mean,
+      rms: waveform.rms,
+      peak: waveform.peak,
+      crest_factor: waveform.crestFactor,
+      kurtosis: waveform.kurtosis,
+      skewness: waveform.skewness,
+    },
+    averaging: averaging && {
+      window: averaging.window,
+      overlap_percent: averaging.overlapPercent,
+      segment_samples: averaging.segmentSamples,
+      line_spacing_hz: averaging.lineSpacingHz,
+      averages: averaging.averages,
+      effective_averages: averaging.effectiveAverages,
+      used_percent: averaging.usedPercent,
+      segment_spread: averaging.segmentSpread,
+    },
+    bands: measurement.levels.map((level) => bandJson(level, displayOf(level, bands))),
+    peaks: measurement.peaks.map((peak) => peakJson(peak, measurement.unit)),
+    envelope: null,
+    quality: [...quality, ...measurement.quality].map(({ flag, detail }) => ({ flag, detail })),
+  };
+}
+
+function bandJson(level: BandLevel, display: DisplayUnit) {
+  return {
+    band: level.bandId,
+    from_hz: level.fromHz,
+    to_hz: level.toHz,
+    quantity: level.quantity,
+    ...levelJson(level, display),
+    confidence_percent: level.confidencePercent,
+  };
+}
+
+/** A level with its unit and detector, in full precision. */
+export function levelJson(
+  level: { readonly level: number; readonly intervalLow: number; readonly intervalHigh: number },
+  display: DisplayUnit,
+) {
+  return {
+    unit: bareUnit(display),
+    detector: display.detector,
+    level: inDisplayUnit(level.level, display),
+    interval_low: inDisplayUnit(level.intervalLow, display),
+    interval_high: inDisplayUnit(level.intervalHigh, display),
+  };
+}
+
+/** 'in/s' of 'in/s peak (derived)': the detector stands beside it. */
+export function bareUnit({ text, quantity, inSi }: DisplayUnit): string {
+  return units.find((unit) => unit.dimension === quantity && unit.inSi === inSi)?.text ?? text;
+}
+
+/** How a level is shown: as its band says. */
+export function displayOf({ bandId, quantity }: BandLevel, bands: readonly Band[]): DisplayUnit {
+  return bands.find(({ id }) => id === bandId)?.display ?? usualDisplayUnit(quantity);
+}
+
+function peakJson(peak: SpectralPeak, unit: string) {
+  return {
+    frequency_hz: peak.frequencyHz,
+    level: peak.level,
+    unit,
+    order: peak.order,
+    above_floor_db: peak.aboveFloorDb,
+    names: [],
+  };
+}
+
+function spectrumJson(measurement: Measurement, density: Float64Array | null) {
+  if (density === null || measurement.averaging === null) return null;
+  return {
+    line_spacing_hz: measurement.averaging.lineSpacingHz,
+    unit: `(${measurement.unit})²/Hz`,
+    density: Array.from(density),
+  };
+}

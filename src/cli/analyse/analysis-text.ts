@@ -1,0 +1,159 @@
+import { plain } from '../../advisory/escape.ts';
+import { bareLevel, unitText } from '../../advisory/level-words.ts';
+import { printFrequency, printNumber, printSeconds } from '../../config/print-value.ts';
+import type { Band } from '../../config/site.ts';
+import type { Averaging, Measurement, SpectralPeak, WaveformValues } from '../../manipulation/measurement.ts';
+import { listing, table, wrapText } from '../output.ts';
+import { type AnalysedFile, displayOf } from './analysis-json.ts';
+import { noMachine } from './points-of-channels.ts';
+
+/** Peaks that a table shows. */
+const mostPeaks = 12;
+
+/** What an analysis gave, for people: three or four significant figures. */
+export function analysisText({ file, analysis, bands }: AnalysedFile): string {
+  const { start, sampleRateHz, frames, header } = analysis;
+  const startText = new Date(start.startMs).toISOString().slice(0, 19).replace('T', ' ');
+  const length =
+    sampleRateHz === null
+      ? `${frames} samples`
+      : `${printSeconds(frames / sampleRateHz)} at ${printFrequency(sampleRateHz, 6)}`;
+  const channels = header.channelNames.length;
+  return [
+    `${wrapText(plain(file), 80).join('\n')}\n`,
+    listing(
+      [
+        [
+          'start',
+          `${startText} UTC, ${originWords[start.origin]}${start.remark === null ? '' : `; ${start.remark}`}`,
+        ],
+        ['length', `${length}, ${channels} ${channels === 1 ? 'channel' : 'channels'}, ${header.format}`],
+        ['sha256', analysis.sha256],
+      ],
+      '  ',
+    ),
+    ...analysis.measurements.map((measurement, n) =>
+      channelText(measurement, bands[n] ?? [], analysis.quality),
+    ),
+  ].join('');
+}
+
+const originWords = {
+  sidecar: 'from its sidecar',
+  'file-name': 'from its name',
+  header: 'from its header',
+  'time-column': 'from its time column',
+  'modification-time': 'the time of its last change, for want of a better one',
+} as const;
+
+const speedWords = { sidecar: 'from the sidecar', nominal: 'nominal, not measured' } as const;
+
+function channelText(
+  measurement: Measurement,
+  bands: readonly Band[],
+  recordingQuality: Measurement['quality'],
+): string {
+  const { speed, waveform, averaging } = measurement;
+  const inSite = measurement.machineId !== noMachine;
+  const quality = [...recordingQuality, ...measurement.quality];
+  const head = `\nChannel ${plain(measurement.channel)}${inSite ? `: ${measurement.machineId}/${measurement.pointId}` : ''}, ${measurement.quantity} in ${measurement.unit}\n`;
+  const facts: [string, string][] = [];
+  if (speed !== null) {
+    facts.push([
+      'speed',
+      `${printNumber(speed.rpm, 4)} rpm ± ${printNumber(speed.uncertaintyRpm, 2)}, ${speedWords[speed.origin]}`,
+    ]);
+  }
+  facts.push([
+    'averaging',
+    averaging === null ? 'none: not even one segment fits' : averagingText(averaging),
+  ]);
+  facts.push(['waveform', waveform === null ? 'none' : waveformText(waveform)]);
+  if (quality.length === 0) facts.push(['quality', 'nothing to remark']);
+  for (const [n, { flag, detail }] of quality.entries())
+    facts.push([n === 0 ? 'quality' : '', `${flag}: ${detail}`]);
+  return `${head}${listing(facts, '  ')}${bandTable(measurement, bands)}${peakTable(measurement.peaks, measurement)}`;
+}
+
+function averagingText(averaging: Averaging): string {
+  const { window, overlapPercent, segmentSamples, lineSpacingHz, averages, effectiveAverages } = averaging;
+  const seconds = printSeconds(1 / lineSpacingHz);
+  return [
+    `${window}, overlap ${printNumber(overlapPercent)} %, segment ${segmentSamples} samples (${seconds})`,
+    `a line every ${printFrequency(lineSpacingHz)}`,
+    `${averages} ${averages === 1 ? 'average' : 'averages'}, worth ${printNumber(effectiveAverages)} independent`,
+    `${printNumber(averaging.usedPercent)} % of the recording used`,
+  ].join('; ');
+}
+
+function waveformText(waveform: WaveformValues): string {
+  return [
+    `mean ${printNumber(waveform.mean)}`,
+    `r.m.s. ${printNumber(waveform.rms, 4)}`,
+    `peak ${printNumber(waveform.peak, 4)}`,
+    `crest factor ${printNumber(waveform.crestFactor)}`,
+    `kurtosis ${printNumber(waveform.kurtosis)}`,
+    `skewness ${printNumber(waveform.skewness)}`,
+  ].join(', ');
+}
+
+function bandTable(measurement: Measurement, bands: readonly Band[]): string {
+  if (measurement.levels.length === 0) return '';
+  const [first] = measurement.levels;
+  const rows = measurement.levels.map((level) => {
+    const display = displayOf(level, bands);
+    return [
+      level.bandId,
+      `${printFrequency(level.fromHz)} to ${printFrequency(level.toHz)}`,
+      `${level.atLeast ? 'at least ' : ''}${bareLevel(level.level, display)}`,
+      `${bareLevel(level.intervalLow, display)} to ${bareLevel(level.intervalHigh, display)}`,
+      unitText(display),
+    ];
+  });
+  const interval = `interval (${printNumber(first?.confidencePercent ?? 95)} %)`;
+  return `\n${indented(
+    table(
+      [
+        { title: 'band', wraps: true },
+        { title: 'from, to' },
+        { title: 'level', right: true },
+        { title: interval },
+        { title: 'unit' },
+      ],
+      rows,
+      78,
+    ),
+  )}`;
+}
+
+function peakTable(peaks: readonly SpectralPeak[], { unit, averaging }: Measurement): string {
+  if (averaging === null) return '';
+  if (peaks.length === 0) return '\n  no peak stands out of the noise floor\n';
+  const rows = peaks
+    .slice(0, mostPeaks)
+    .map((peak) => [
+      printNumber(peak.frequencyHz, 6),
+      peak.order === null ? '' : `${printNumber(peak.order, 4)}x`,
+      printNumber(peak.level, 4),
+      printNumber(peak.aboveFloorDb),
+      peak.kind === 'hump' ? 'wider than a tone' : '',
+    ]);
+  const more = peaks.length > mostPeaks ? `  and ${peaks.length - mostPeaks} weaker peaks\n` : '';
+  return `\n${indented(
+    table(
+      [
+        { title: 'peak, Hz', right: true },
+        { title: 'order', right: true },
+        { title: `level, ${unit} r.m.s.`, right: true },
+        { title: 'dB over the floor', right: true },
+        { title: '' },
+      ],
+      rows,
+      78,
+    ),
+  )}${more}`;
+}
+
+function indented(text: string): string {
+  return text.replace(/^(?=.)/gm, '  ');
+}
