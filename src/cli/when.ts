@@ -1,0 +1,20 @@
+import { instantOfReading, parseIsoStart } from '../acquisition/start-time.ts';
+import { type Parsed, parseDuration, refused, shorten, understood } from '../config/quantity.ts';
+
+/**
+ * A moment as people write it on the command line: `2026-03-02`, `2026-03-02T06:30` (a clock of the site), with a zone
+ * (`2026-03-02T06:30Z`, `...+01:00`), or how long ago (`7 d`, `36 h`). Of an hour that comes twice, the first.
+ */
+export function parseWhen(text: string, nowMs: number, siteZone: string): Parsed<number> {
+  const written = text.trim();
+  const iso = parseIsoStart(/^\d{4}-\d\d-\d\d$/.test(written) ? `${written}T00:00` : written, 'header');
+  if (iso !== null) {
+    if (iso.zoned) return understood(Math.round(iso.ms));
+    return understood(Math.round(instantOfReading(iso.ms, { kind: 'site' }, siteZone, null).ms));
+  }
+  const ago = /^\d/.test(written) ? parseDuration(written) : null;
+  if (ago?.ok) return understood(nowMs - ago.value);
+  return refused(
+    `'${shorten(text)}' is neither a date or time (2026-03-02, 2026-03-02T06:30) nor a time back (7 d)`,
+  );
+}
