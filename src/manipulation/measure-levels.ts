@@ -1,6 +1,7 @@
 import type { Point } from '../config/site.ts';
 import type { AveragedDensity, AveragingSettings } from '../signal/averaging.ts';
 import { bandInterval, type IntervalKernel, makeIntervalKernel } from '../signal/band-interval.ts';
+import { Kept } from '../signal/kept.ts';
 import { effectiveAverages } from '../signal/overlap.ts';
 import { findPeaks, type Peak } from '../signal/peaks.ts';
 import { type FingerprintSettings, seriesFingerprint } from './fingerprint.ts';
@@ -108,24 +109,19 @@ interface KnownAverages {
 }
 
 /** Both depend on the settings alone and cost more than a recording's levels; a site has a handful of settings. */
-const mostKept = 32;
-const kept = new Map<string, KnownAverages>();
+const kept = new Kept<string, KnownAverages>(32);
 
 /** The window's correlation depends on the hop as a share of the segment; a long segment is stood for by this one. */
 const standInSamples = 4096;
 
 function averagesOf(settings: AveragingSettings, hopSamples: number, averages: number): KnownAverages {
   const { window, segmentSamples } = settings;
-  const key = `${window} ${segmentSamples} ${hopSamples} ${averages}`;
-  const known = kept.get(key);
-  if (known !== undefined) return known;
-  const scale = Math.max(1, segmentSamples / standInSamples);
-  const shortHop = Math.max(1, Math.round(hopSamples / scale));
-  const made = {
-    kernel: makeIntervalKernel(window, segmentSamples, hopSamples, averages),
-    effective: effectiveAverages(window, segmentSamples / scale, shortHop, averages),
-  };
-  if (kept.size >= mostKept) kept.delete(kept.keys().next().value as string);
-  kept.set(key, made);
-  return made;
+  return kept.get(`${window} ${segmentSamples} ${hopSamples} ${averages}`, () => {
+    const scale = Math.max(1, segmentSamples / standInSamples);
+    const shortHop = Math.max(1, Math.round(hopSamples / scale));
+    return {
+      kernel: makeIntervalKernel(window, segmentSamples, hopSamples, averages),
+      effective: effectiveAverages(window, segmentSamples / scale, shortHop, averages),
+    };
+  });
 }

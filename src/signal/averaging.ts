@@ -1,5 +1,5 @@
 import { isPowerOfTwo, PairTransform } from './transform.ts';
-import { makeWindow, type WindowName } from './window.ts';
+import { type SharedWindow, sharedWindow, type WindowName } from './window.ts';
 
 export interface AveragingSettings {
   readonly window: WindowName;
@@ -41,7 +41,7 @@ export function segmentsThatFit(samples: number, segmentSamples: number, hop: nu
 }
 
 /**
- * Overlap-averaged density (Welch 1967) of a recording that is fed in blocks of any size; keeps one segment, never
+ * Overlap-averaged density (Welch 1967) of a recording that is fed in blocks of any size; keeps two segments, never
  * the recording, and gives bit for bit the same whatever the size of the blocks.
  *
  * Each segment has its mean removed, is windowed and transformed; its one-sided density is c |X[k]|² / (fs sum w²),
@@ -53,13 +53,13 @@ export class Averager {
   readonly settings: AveragingSettings;
   readonly hopSamples: number;
   private readonly visitor: SegmentVisitor | undefined;
-  private readonly window: Float64Array;
+  private readonly window: SharedWindow;
   private readonly transform: PairTransform;
   /** Factor from |X|² to the one-sided density of an inner line. */
   private readonly scale: number;
   private readonly sum: Float64Array;
-  /** The newest samples, `filled` of them: the beginning of the next segment. */
-  private readonly segment: Float64Array;
+  /** The newest samples, `filled` of them: the beginning of the next two segments, the second one hop on. */
+  private readonly pair: Float64Array;
   private filled = 0;
   private segments = 0;
   private samples = 0;
@@ -72,27 +72,27 @@ export class Averager {
     this.settings = settings;
     this.visitor = visitor;
     this.hopSamples = hopSamples(segmentSamples, overlapPercent);
-    this.window = makeWindow(settings.window, segmentSamples);
+    this.window = sharedWindow(settings.window, segmentSamples);
     this.transform = new PairTransform(segmentSamples);
-    this.scale = 2 / (sampleRateHz * this.window.reduce((sum, w) => sum + w * w, 0));
+    this.scale = 2 / (sampleRateHz * this.window.power);
     this.sum = new Float64Array(segmentSamples / 2 + 1);
-    this.segment = new Float64Array(segmentSamples);
+    this.pair = new Float64Array(segmentSamples + this.hopSamples);
   }
 
   /** Takes the next samples of the recording; the block may be reused by the caller afterwards. */
   add(block: Float64Array): void {
     if (this.finished) throw new Error('samples added to an average that is finished');
-    const { segment, hopSamples: hop } = this;
+    const { pair, hopSamples: hop } = this;
     let taken = 0;
     while (taken < block.length) {
-      const part = Math.min(block.length - taken, segment.length - this.filled);
-      segment.set(block.subarray(taken, taken + part), this.filled);
+      const part = Math.min(block.length - taken, pair.length - this.filled);
+      pair.set(block.subarray(taken, taken + part), this.filled);
       this.filled += part;
       taken += part;
-      if (this.filled < segment.length) break;
-      this.takeSegment();
-      segment.copyWithin(0, hop);
-      this.filled -= hop;
+      if (this.filled < pair.length) break;
+      this.takePair();
+      pair.copyWithin(0, 2 * hop);
+      this.filled -= 2 * hop;
     }
     this.samples += block.length;
   }
@@ -101,15 +101,9 @@ export class Averager {
   finish(): AveragedDensity {
     if (this.finished) throw new Error('an average can be finished only once');
     this.finished = true;
-    if (this.segments % 2 === 1) {
-      // The last segment has no partner; what the one before left would move its last bits.
-      const { packed } = this.transform;
-      for (let n = 1; n < packed.length; n += 2) packed[n] = 0;
-      this.transform.run();
-      this.include(this.transform.firstPower, this.segments - 1);
-    }
-    const { segments, samples, sum } = this;
     const { segmentSamples, sampleRateHz } = this.settings;
+    if (this.filled >= segmentSamples) this.takeLast();
+    const { segments, samples, sum } = this;
     const reached = segments === 0 ? 0 : segmentSamples + (segments - 1) * this.hopSamples;
     return {
       density: sum.map((total) => (segments === 0 ? Number.NaN : total / segments)),
@@ -121,32 +115,48 @@ export class Averager {
     };
   }
 
-  /** Packs the full segment beside its neighbour; every second one sends the pair through the transform. */
-  private takeSegment(): void {
-    const { segment, window } = this;
-    const { packed } = this.transform;
-    const length = segment.length;
-    const side = this.segments % 2;
-    let sum = 0;
-    for (let n = 0; n < length; n++) sum += segment[n];
-    const mean = sum / length;
-    for (let n = 0; n < length; n++) packed[2 * n + side] = (segment[n] - mean) * window[n];
-    this.segments++;
-    if (side === 0) return;
+  /** Sends two full segments through one transform. */
+  private takePair(): void {
+    const { pair, hopSamples: hop } = this;
+    const { values: window } = this.window;
+    const { packed, firstPower, secondPower } = this.transform;
+    const length = window.length;
+    const firstMean = meanOf(pair, 0, length);
+    const secondMean = meanOf(pair, hop, length);
+    for (let n = 0; n < length; n++) {
+      packed[2 * n] = (pair[n] - firstMean) * window[n];
+      packed[2 * n + 1] = (pair[n + hop] - secondMean) * window[n];
+    }
     this.transform.run();
-    this.include(this.transform.firstPower, this.segments - 2);
-    this.include(this.transform.secondPower, this.segments - 1);
+    this.include(firstPower);
+    this.include(secondPower);
+  }
+
+  /** The last segment has no partner. */
+  private takeLast(): void {
+    const { pair } = this;
+    const { values: window } = this.window;
+    const { packed, firstPower } = this.transform;
+    const mean = meanOf(pair, 0, window.length);
+    packed.fill(0);
+    for (let n = 0; n < window.length; n++) packed[2 * n] = (pair[n] - mean) * window[n];
+    this.transform.run();
+    this.include(firstPower);
   }
 
   /** Turns |X|² into the one-sided density in place, adds it to the sum and shows it to the visitor. */
-  private include(power: Float64Array, segmentIndex: number): void {
+  private include(power: Float64Array): void {
     const { sum, scale } = this;
     const last = power.length - 1;
-    for (let k = 1; k < last; k++) power[k] *= scale;
-    power[0] *= 0.5 * scale;
-    power[last] *= 0.5 * scale;
-    for (let k = 0; k <= last; k++) sum[k] += power[k];
-    this.visitor?.(power, segmentIndex);
+    power[0] *= 0.5;
+    power[last] *= 0.5;
+    for (let k = 0; k <= last; k++) {
+      const density = power[k] * scale;
+      power[k] = density;
+      sum[k] += density;
+    }
+    this.visitor?.(power, this.segments);
+    this.segments++;
   }
 }
 
@@ -159,6 +169,21 @@ export function averageDensity(
   const averager = new Averager(settings, visitor);
   averager.add(samples);
   return averager.finish();
+}
+
+/** In four sums side by side: one addition need not wait for the one before. `length` is a multiple of four. */
+function meanOf(samples: Float64Array, from: number, length: number): number {
+  let a = 0;
+  let b = 0;
+  let c = 0;
+  let d = 0;
+  for (let n = from; n < from + length; n += 4) {
+    a += samples[n];
+    b += samples[n + 1];
+    c += samples[n + 2];
+    d += samples[n + 3];
+  }
+  return (a + b + (c + d)) / length;
 }
 
 function checkSettings({ segmentSamples, overlapPercent, sampleRateHz }: AveragingSettings): void {

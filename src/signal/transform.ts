@@ -1,10 +1,27 @@
 import FFT from 'fft.js';
+import { Kept } from './kept.ts';
+
+/** What a transform of one length needs beside its input: the library's tables, and room for its result. */
+interface Plan {
+  readonly fft: FFT;
+  readonly spectrum: Float64Array;
+}
+
+/** Plans are used one at a time and leave nothing behind, so all transforms of a length share one. */
+const plans = new Kept<number, Plan>(8);
+/** The plan of a longer transform takes more than 12 MB; it is made anew, which its own length dwarfs. */
+const longestKept = 2 ** 18;
+
+function planOf(length: number): Plan {
+  const make = () => ({ fft: new FFT(length), spectrum: new Float64Array(2 * length) });
+  return length > longestKept ? make() : plans.get(length, make);
+}
 
 /**
  * Power spectra of two real sequences from one complex transform: the first travels in the real parts, the second
  * in the imaginary parts, and the symmetry of real spectra takes them apart again.
  *
- * One object is the plan for one length and owns every array; nothing is allocated by `run`.
+ * One object owns its input and its results; nothing is allocated by `run`.
  */
 export class PairTransform {
   readonly length: number;
@@ -14,8 +31,7 @@ export class PairTransform {
   readonly firstPower: Float64Array;
   /** |X[k]|² of the second sequence, k = 0 .. length / 2, after `run`. */
   readonly secondPower: Float64Array;
-  private readonly fft: FFT;
-  private readonly spectrum: Float64Array;
+  private readonly plan: Plan;
 
   /** Throws a RangeError unless `length` is a power of two and at least 2. */
   constructor(length: number) {
@@ -23,17 +39,17 @@ export class PairTransform {
       throw new RangeError(`length = ${length}: a transform needs a power of two, at least 2`);
     }
     this.length = length;
-    this.fft = new FFT(length);
+    this.plan = planOf(length);
     this.packed = new Float64Array(2 * length);
-    this.spectrum = new Float64Array(2 * length);
     this.firstPower = new Float64Array(length / 2 + 1);
     this.secondPower = new Float64Array(length / 2 + 1);
   }
 
   /** Transforms `packed` and leaves the two power spectra in `firstPower` and `secondPower`. */
   run(): void {
-    const { length, spectrum: z, firstPower, secondPower } = this;
-    this.fft.transform(z, this.packed);
+    const { length, firstPower, secondPower } = this;
+    const { fft, spectrum: z } = this.plan;
+    fft.transform(z, this.packed);
     firstPower[0] = z[0] * z[0];
     secondPower[0] = z[1] * z[1];
     for (let k = 1; k <= length / 2; k++) {

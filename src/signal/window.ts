@@ -1,3 +1,5 @@
+import { Kept } from './kept.ts';
+
 /**
  * Windows of the averaging and their figures of merit.
  *
@@ -84,6 +86,26 @@ export function makeWindow(name: WindowName, length: number): Float64Array {
     window[n] = value;
   }
   return window;
+}
+
+/** A window that everybody uses together: not to be written to. */
+export interface SharedWindow {
+  readonly values: Float64Array;
+  /** sum w². */
+  readonly power: number;
+}
+
+const sharedWindows = new Kept<string, SharedWindow>(8);
+/** Longer windows (2 MiB) are made anew. */
+const longestShared = 2 ** 18;
+
+/** As `makeWindow`, with what is made of it, remembered for a few names and lengths. */
+export function sharedWindow(name: WindowName, length: number): SharedWindow {
+  const make = () => {
+    const values = makeWindow(name, length);
+    return { values, power: values.reduce((sum, w) => sum + w * w, 0) };
+  };
+  return length > longestShared ? make() : sharedWindows.get(`${name} ${length}`, make);
 }
 
 /** a0, a1, ... of the window's cosine sum. Hann 0.5, 0.5. */

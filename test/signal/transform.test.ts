@@ -82,6 +82,20 @@ test('a plan may be run again and again', () => {
   expect([transform.firstPower, transform.secondPower]).toEqual(once);
 });
 
+test('two transforms of one length, filled and run in turn, do not disturb each other', () => {
+  const signals = [1, 2, 3, 4].map((seed) => gaussianNoise(seededRandom(seed), 64));
+  const one = new PairTransform(64);
+  const two = new PairTransform(64);
+  pack(one, signals[0], signals[1]);
+  pack(two, signals[2], signals[3]);
+  one.run();
+  two.run();
+  expectClose(one.firstPower, powerByDefinition(signals[0]));
+  expectClose(one.secondPower, powerByDefinition(signals[1]));
+  expectClose(two.firstPower, powerByDefinition(signals[2]));
+  expectClose(two.secondPower, powerByDefinition(signals[3]));
+});
+
 test('a length that is no power of two is refused with its value', () => {
   for (const length of [0, 1, 3, 1000, -8, 8.5, Number.NaN, 2 ** 31]) {
     expect(() => new PairTransform(length)).toThrow(`length = ${length}: a transform needs a power of two`);
