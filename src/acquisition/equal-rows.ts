@@ -31,40 +31,65 @@ export class EqualRows {
   #length = 0;
   #entry = Number.NaN;
 
-  add(value: number): void {
-    if (value === this.#value) {
-      this.#length++;
-      this.#steps++;
-      return;
+  /** Finite samples, from `from` up to, not including, `to`. */
+  add(samples: Float64Array, from: number, to: number): void {
+    if (from === to) return;
+    let first = from;
+    if (this.#length === 0) this.#begin(samples[first++]);
+    this.#steps += to - first;
+    // Every sample passes here: what changes with it is held in variables.
+    let { lowest, highest, step } = this;
+    let stepSum = this.#stepSum;
+    let row = this.#value;
+    let length = this.#length;
+    let entry = this.#entry;
+    for (let n = first; n < to; n++) {
+      const value = samples[n];
+      if (value === row) {
+        length++;
+        continue;
+      }
+      if (value < lowest) lowest = value;
+      if (value > highest) highest = value;
+      const jump = Math.abs(value - row);
+      if (jump < step) step = jump;
+      stepSum += jump;
+      if (length >= rules.clippedRow) this.#close(row, length, entry, jump);
+      entry = jump;
+      row = value;
+      length = 1;
     }
+    this.lowest = lowest;
+    this.highest = highest;
+    this.step = step;
+    this.#stepSum = stepSum;
+    this.#value = row;
+    this.#length = length;
+    this.#entry = entry;
+  }
+
+  #begin(value: number): void {
     if (value < this.lowest) this.lowest = value;
     if (value > this.highest) this.highest = value;
-    const jump = Math.abs(value - this.#value);
-    if (this.#length > 0) {
-      if (jump < this.step) this.step = jump;
-      this.#stepSum += jump;
-      this.#steps++;
-      this.#close(jump);
-    }
-    this.#entry = this.#length > 0 ? jump : Number.NaN;
     this.#value = value;
     this.#length = 1;
+    this.#entry = Number.NaN;
   }
 
   /** Ends a stretch: what follows is no neighbour of what came before. */
   end(): void {
-    if (this.#length > 0) this.#close(Number.NaN);
+    if (this.#length >= rules.clippedRow) this.#close(this.#value, this.#length, this.#entry, Number.NaN);
     this.#value = Number.NaN;
     this.#length = 0;
     this.#entry = Number.NaN;
   }
 
-  #close(exit: number): void {
-    if (this.#length < rules.clippedRow) return;
+  /** Remembers a row of at least `clippedRow` samples. `enter`, `exit`: the steps into and out of it, or NaN. */
+  #close(value: number, length: number, enter: number, exit: number): void {
     if (this.#passed++ % this.#weight !== 0) return;
-    const entry = Number.isNaN(this.#entry) ? exit : this.#entry;
+    const entry = Number.isNaN(enter) ? exit : enter;
     const jump = Math.max(entry, Number.isNaN(exit) ? entry : exit);
-    this.#rows.push({ value: this.#value, length: this.#length, jump, entry });
+    this.#rows.push({ value, length, jump, entry });
     if (this.#rows.length < mostRows) return;
     this.#rows = this.#rows.filter((_, n) => n % 2 === 0);
     this.#weight *= 2;

@@ -36,21 +36,29 @@ export class SampleQuality {
   }
 
   add(samples: Float64Array): void {
+    let from = 0;
     for (let n = 0; n < samples.length; n++) {
-      const value = samples[n];
-      this.#samples++;
-      if (!Number.isFinite(value)) {
-        this.#notFinite++;
-        this.#stretch = 0;
-        this.#rows.end();
-        continue;
-      }
-      this.#stretch++;
-      if (this.#stretch > this.#longestStretch) this.#longestStretch = this.#stretch;
-      this.#sum += value;
-      this.#rows.add(value);
-      this.#start.add(value);
+      if (Number.isFinite(samples[n])) continue;
+      this.#addFinite(samples, from, n);
+      this.#notFinite++;
+      this.#stretch = 0;
+      this.#rows.end();
+      from = n + 1;
     }
+    this.#addFinite(samples, from, samples.length);
+    this.#samples += samples.length;
+  }
+
+  /** The samples from `from` up to, not including, `to`. */
+  #addFinite(samples: Float64Array, from: number, to: number): void {
+    if (from === to) return;
+    this.#stretch += to - from;
+    if (this.#stretch > this.#longestStretch) this.#longestStretch = this.#stretch;
+    let sum = this.#sum;
+    for (let n = from; n < to; n++) sum += samples[n];
+    this.#sum = sum;
+    this.#rows.add(samples, from, to);
+    this.#start.add(samples, from, to);
   }
 
   /** Everything found. `spectrum`: one-sided density in the SI unit of the point; null where there is none. */

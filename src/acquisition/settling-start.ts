@@ -24,19 +24,39 @@ export class SettlingStart {
       sampleRateHz === null ? null : Math.max(1, Math.round(rules.settlingBlockS * sampleRateHz));
   }
 
-  add(value: number): void {
-    if (this.#blockSamples === null || this.#means.length >= mostMeans) return;
+  /** Finite samples, from `from` up to, not including, `to`. */
+  add(samples: Float64Array, from: number, to: number): void {
+    const blockSamples = this.#blockSamples;
+    if (blockSamples === null || from === to) return;
     // Counted from the first sample, so that a large offset costs no digits.
-    if (Number.isNaN(this.#shift)) this.#shift = value;
-    const from = value - this.#shift;
-    this.#total += from;
-    this.#squares += from * from;
-    this.#samples++;
-    this.#sum += from;
-    if (++this.#filled < this.#blockSamples) return;
-    this.#means.push(this.#sum / this.#blockSamples);
-    this.#sum = 0;
-    this.#filled = 0;
+    if (Number.isNaN(this.#shift)) this.#shift = samples[from];
+    for (let n = from; n < to && this.#means.length < mostMeans; ) {
+      const end = Math.min(to, n + blockSamples - this.#filled);
+      this.#addPart(samples, n, end);
+      n = end;
+      if (this.#filled < blockSamples) return;
+      this.#means.push(this.#sum / blockSamples);
+      this.#sum = 0;
+      this.#filled = 0;
+    }
+  }
+
+  #addPart(samples: Float64Array, from: number, to: number): void {
+    const shift = this.#shift;
+    let sum = this.#sum;
+    let total = this.#total;
+    let squares = this.#squares;
+    for (let n = from; n < to; n++) {
+      const off = samples[n] - shift;
+      sum += off;
+      total += off;
+      squares += off * off;
+    }
+    this.#sum = sum;
+    this.#total = total;
+    this.#squares = squares;
+    this.#samples += to - from;
+    this.#filled += to - from;
   }
 
   /** What was found, for people, or null. */
