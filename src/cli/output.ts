@@ -17,36 +17,52 @@ export interface Column {
 const gap = '  ';
 const leastWrapped = 16;
 
+/** Cells of the columns; or a text that runs beneath the row before it, over all columns but the first. */
+export type Row = readonly string[] | { readonly beneath: string };
+
 /**
  * Rows under their titles, columns aligned, in lines of at most `width` as far as the columns that do not wrap allow.
  * Texts come from files and people: whatever would act on a terminal is made visible.
  */
-export function table(
-  columns: readonly Column[],
-  rows: readonly (readonly string[])[],
-  width = lineWidth,
-): string {
-  const cells = rows.map((row) => columns.map((_, n) => plain(row[n] ?? '')));
-  const widths = columns.map(({ title }, n) =>
-    Math.max(title.length, ...cells.map((row) => textWidth(row[n] ?? ''))),
+export function table(columns: readonly Column[], rows: readonly Row[], width = lineWidth): string {
+  const cellsOf = (row: readonly string[]) => columns.map((_, n) => plain(row[n] ?? ''));
+  const cells = rows.map((row) => ('beneath' in row ? row : cellsOf(row)));
+  const widths = columnWidths(
+    columns,
+    cells.filter((row): row is string[] => !('beneath' in row)),
+    width,
   );
   const wrapped = columns.findIndex(({ wraps }) => wraps === true);
-  if (wrapped !== -1) {
-    const others = widths.reduce((sum, one, n) => sum + gap.length + (n === wrapped ? 0 : one), -gap.length);
-    widths[wrapped] = Math.min(widths[wrapped] ?? 0, Math.max(leastWrapped, width - others));
-  }
   const line = (row: readonly string[]) =>
     row
       .map((cell, n) => pad(cell, widths[n] ?? 0, columns[n]?.right === true))
       .join(gap)
       .trimEnd();
+  const indent = ' '.repeat((widths[0] ?? 0) + gap.length);
   const body = cells.flatMap((row) => {
+    if ('beneath' in row)
+      return wrapText(plain(row.beneath), width - indent.length).map((part) => indent + part);
     const parts = wrapped === -1 ? [''] : wrapText(row[wrapped] ?? '', widths[wrapped] ?? 0);
     return parts.map((part, n) =>
       line(row.map((cell, column) => (column === wrapped ? part : n === 0 ? cell : ''))),
     );
   });
   return `${[line(columns.map(({ title }) => title)), ...body].join('\n')}\n`;
+}
+
+function columnWidths(
+  columns: readonly Column[],
+  rows: readonly (readonly string[])[],
+  width: number,
+): number[] {
+  const widths = columns.map(({ title }, n) =>
+    Math.max(title.length, ...rows.map((row) => textWidth(row[n] ?? ''))),
+  );
+  const wrapped = columns.findIndex(({ wraps }) => wraps === true);
+  if (wrapped === -1) return widths;
+  const others = widths.reduce((sum, one, n) => sum + gap.length + (n === wrapped ? 0 : one), -gap.length);
+  widths[wrapped] = Math.min(widths[wrapped] ?? 0, Math.max(leastWrapped, width - others));
+  return widths;
 }
 
 /** Text in lines of at most `width`, broken at spaces, else behind / or -, else where the width ends. */

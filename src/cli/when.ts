@@ -1,4 +1,5 @@
 import { instantOfReading, parseIsoStart } from '../acquisition/start-time.ts';
+import { localTime } from '../config/local-time.ts';
 import { type Parsed, parseDuration, refused, shorten, understood } from '../config/quantity.ts';
 
 /**
@@ -17,4 +18,11 @@ export function parseWhen(text: string, nowMs: number, siteZone: string): Parsed
   return refused(
     `'${shorten(text)}' is neither a date or time (2026-03-02, 2026-03-02T06:30) nor a time back (7 d)`,
   );
+}
+
+/** '2026-03-02 06:30' in the zone, for tables; what `parseWhen` understands but for its space. */
+export function timeText(ms: number, timeZone: string): string {
+  const { year, month, day, hour, minute } = localTime(ms, timeZone);
+  const two = (value: number) => String(value).padStart(2, '0');
+  return `${year}-${two(month)}-${two(day)} ${two(hour)}:${two(minute)}`;
 }

@@ -1,8 +1,8 @@
-import { inDisplayUnit } from '../../config/print-value.ts';
 import type { Band, DisplayUnit } from '../../config/site.ts';
-import { units, usualDisplayUnit } from '../../config/units.ts';
+import { usualDisplayUnit } from '../../config/units.ts';
 import type { BandLevel, Measurement, SpectralPeak } from '../../manipulation/measurement.ts';
 import type { FileAnalysis } from '../../service/analyse-file.ts';
+import { levelJson } from '../level-json.ts';
 import { noMachine } from './points-of-channels.ts';
 
 /** An analysed file with what its points were to give: what is written as JSON and as text. */
@@ -78,25 +78,6 @@ function bandJson(level: BandLevel, display: DisplayUnit) {
     ...levelJson(level, display),
     confidence_percent: level.confidencePercent,
   };
-}
-
-/** A level with its unit and detector, in full precision. */
-export function levelJson(
-  level: { readonly level: number; readonly intervalLow: number; readonly intervalHigh: number },
-  display: DisplayUnit,
-) {
-  return {
-    unit: bareUnit(display),
-    detector: display.detector,
-    level: inDisplayUnit(level.level, display),
-    interval_low: inDisplayUnit(level.intervalLow, display),
-    interval_high: inDisplayUnit(level.intervalHigh, display),
-  };
-}
-
-/** 'in/s' of 'in/s peak (derived)': the detector stands beside it. */
-export function bareUnit({ text, quantity, inSi }: DisplayUnit): string {
-  return units.find((unit) => unit.dimension === quantity && unit.inSi === inSi)?.text ?? text;
 }
 
 /** How a level is shown: as its band says. */

@@ -1,17 +1,15 @@
 import type { Writable } from 'node:stream';
 import { plain } from '../../advisory/escape.ts';
 import { bareLevel, distanceText, levelText, unitText } from '../../advisory/level-words.ts';
-import { shortMomentText } from '../../advisory/time-words.ts';
-import { localTime } from '../../config/local-time.ts';
-import { inDisplayUnit, printFrequency, printNumber } from '../../config/print-value.ts';
+import { printFrequency, printNumber } from '../../config/print-value.ts';
 import { type Band, type Limit, type Point, pointPath, type Site } from '../../config/site.ts';
 import { type BandTrend, type TrendRow, trendOfBand } from '../../service/trend-of-band.ts';
-import { bareUnit, levelJson } from '../analyse/analysis-json.ts';
 import type { AddCommand, CommandIo, ExitStatus } from '../command.ts';
+import { bareUnit, levelJson, limitJson } from '../level-json.ts';
 import { fail, misused, wallMs, withLedger, withSite } from '../open.ts';
 import { csvLine, table, writeJson } from '../output.ts';
 import { findBand, findPoint } from '../site-names.ts';
-import { parseWhen } from '../when.ts';
+import { parseWhen, timeText } from '../when.ts';
 
 interface TrendOptions {
   readonly site: string;
@@ -90,7 +88,6 @@ function limitsOf({ point, band }: Shown): readonly Limit[] {
 
 function trendJson(shown: Shown): Record<string, unknown> {
   const { point, band, trend } = shown;
-  const inUnit = (level: number | null) => (level === null ? null : inDisplayUnit(level, band.display));
   return {
     machine: point.machineId,
     point: point.id,
@@ -102,8 +99,8 @@ function trendJson(shown: Shown): Record<string, unknown> {
       limit: id,
       kind,
       side,
-      alert: inUnit(alert),
-      danger: inUnit(danger),
+      alert: limitJson(alert, band.display),
+      danger: limitJson(danger, band.display),
     })),
     series: trend.series.map(({ id, fromHz, toHz, beganMs, fingerprint }) => ({
       series: id,
@@ -216,20 +213,16 @@ function limitLine(limit: Limit, band: Band): string {
 function rowsOf(shown: Shown): string[][] {
   const { site, band, trend } = shown;
   const limits = limitsOf(shown);
-  let year = 0;
   return trend.rows.flatMap((row) => {
-    const time = localTime(row.usedMs, site.timeZone);
-    const newYear = time.year !== year ? [[String(time.year)]] : [];
-    year = time.year;
     const series = row.seriesBreak ? [['', '', '', '', seriesText(row, trend)]] : [];
     const cells = [
-      shortMomentText(row.usedMs, site.timeZone).padStart(12),
+      timeText(row.usedMs, site.timeZone),
       `${row.atLeast ? '>= ' : ''}${bareLevel(row.level, band.display)}`,
       `${bareLevel(row.intervalLow, band.display)} to ${bareLevel(row.intervalHigh, band.display)}`,
       passedText(row, limits),
       remarksOf(row),
     ];
-    return [...newYear, ...series, cells];
+    return [...series, cells];
   });
 }
 

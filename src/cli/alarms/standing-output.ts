@@ -1,0 +1,121 @@
+import { bareLevel, distanceText, levelText } from '../../advisory/level-words.ts';
+import { acknowledgeCommand, shortAdvice, troubleName } from '../../advisory/wording.ts';
+import { inDisplayUnit } from '../../config/print-value.ts';
+import type { Severity } from '../../config/site.ts';
+import type { AlarmSubject } from '../../detection/alarm.ts';
+import type { StandingNow } from '../../service/standing-now.ts';
+import { bareUnit, limitJson } from '../level-json.ts';
+import { type Row, table } from '../output.ts';
+import { timeText } from '../when.ts';
+
+/** What stands, as JSON and as a table. */
+export function standingJson(now: StandingNow): Record<string, unknown> {
+  const { alarm, life, limit, band, newest } = now;
+  const { subject, state } = alarm;
+  const inUnit = (level: number | null | undefined) =>
+    level == null || band === null ? null : inDisplayUnit(level, band.display);
+  const limitOf = (value: number | null | undefined) =>
+    band === null ? null : limitJson(value ?? null, band.display);
+  return {
+    number: life.number,
+    kind: subject.kind === 'limit' ? 'alarm' : 'trouble',
+    severity: shownSeverity(now),
+    condition: state.condition,
+    standing: now.standing,
+    suppressions: state.suppressions,
+    machine: subject.machineId,
+    point: subject.pointId,
+    band: subject.kind === 'limit' ? subject.bandId : null,
+    limit: subject.kind === 'limit' ? subject.limitId : null,
+    trouble: subject.kind === 'trouble' ? subject.trouble : null,
+    source: subject.kind === 'trouble' ? subject.source : null,
+    detail: now.detail,
+    unit: band === null ? null : bareUnit(band.display),
+    detector: band?.display.detector ?? null,
+    level: inUnit(newest?.level),
+    level_time: newest === null ? null : new Date(newest.usedMs).toISOString(),
+    at_least: newest?.atLeast ?? null,
+    side: limit?.side ?? null,
+    alert: limitOf(limit?.alert),
+    danger: limitOf(limit?.danger),
+    since: isoOrNull(state.sinceMs ?? life.raisedUsedMs),
+    raised: isoOrNull(life.raisedWallMs),
+    recordings: state.count,
+    acknowledged_by: life.acknowledgedBy,
+    acknowledged_at: isoOrNull(life.acknowledgedWallMs),
+  };
+}
+
+/** Danger first, then alert, then trouble, each by number. */
+export function standingText(all: readonly StandingNow[], timeZone: string): string {
+  if (all.length === 0) return 'nothing stands\n';
+  const order: readonly Severity[] = ['danger', 'alert', 'trouble'];
+  const sorted = [...all].sort(
+    (a, b) =>
+      order.indexOf(shownSeverity(a)) - order.indexOf(shownSeverity(b)) || a.life.number - b.life.number,
+  );
+  const rows = sorted.flatMap((now): Row[] => [
+    [
+      String(now.life.number),
+      shownSeverity(now),
+      whereText(now.alarm.subject),
+      timeText(now.alarm.state.sinceMs ?? now.life.raisedWallMs, timeZone),
+      now.standing,
+    ],
+    ...beneath(now, timeZone).map((text) => ({ beneath: text })),
+  ]);
+  const columns = [
+    { title: 'no', right: true },
+    { title: 'severity' },
+    { title: 'machine/point band', wraps: true },
+    { title: 'since' },
+    { title: 'standing' },
+  ];
+  const first = sorted.find(({ standing }) => standing.endsWith('unacknowledged'));
+  const hint = first === undefined ? '' : `\n${acknowledgeCommand(first.life.number)}\n`;
+  return `${table(columns, rows)}\ntimes of ${timeZone}${hint}`.trimEnd().concat('\n');
+}
+
+/** `machine/point band`, a logger's series of names, or the site. */
+export function whereText(subject: AlarmSubject): string {
+  if (subject.kind === 'limit') return `${subject.machineId}/${subject.pointId} ${subject.bandId}`;
+  if (subject.machineId === null) return subject.source ?? 'the site';
+  return subject.pointId === null ? subject.machineId : `${subject.machineId}/${subject.pointId}`;
+}
+
+/** The condition now; of what has returned, the highest it had. */
+function shownSeverity({ alarm, life }: StandingNow): Severity {
+  const { condition } = alarm.state;
+  return condition === 'normal' ? life.severity : condition;
+}
+
+function beneath(now: StandingNow, timeZone: string): string[] {
+  const { alarm, life } = now;
+  const acknowledged =
+    life.acknowledgedBy === null
+      ? []
+      : [`acknowledged by ${life.acknowledgedBy}, ${timeText(life.acknowledgedWallMs ?? 0, timeZone)}`];
+  if (alarm.subject.kind === 'trouble') {
+    const { trouble } = alarm.subject;
+    const name = troubleName[trouble];
+    return [now.detail === null ? name : `${name}: ${now.detail}`, shortAdvice(trouble), ...acknowledged];
+  }
+  return [levelLine(now, timeZone), ...acknowledged];
+}
+
+function levelLine(now: StandingNow, timeZone: string): string {
+  const { band, limit, newest, alarm } = now;
+  if (band === null || limit === null) return 'its limit is not in the site file any more';
+  if (newest === null) return 'no level is kept';
+  const level = `${newest.atLeast ? 'at least ' : ''}${levelText(newest.level, band.display)}`;
+  const severity = alarm.state.condition === 'danger' ? 'danger' : 'alert';
+  const value = limit[severity] ?? limit.alert ?? limit.danger;
+  const against =
+    value === null ? '' : `, limit ${bareLevel(value, band.display)} (${distanceText(newest.level, value)})`;
+  const count = alarm.state.count;
+  return `${level} on ${timeText(newest.usedMs, timeZone)}${against}; ${count} ${count === 1 ? 'recording' : 'recordings'}`;
+}
+
+function isoOrNull(ms: number | null): string | null {
+  return ms === null ? null : new Date(ms).toISOString();
+}

@@ -1,0 +1,61 @@
+import type { Band, Limit, Site } from '../config/site.ts';
+import type { AlarmStanding } from '../detection/alarm.ts';
+import { standing } from '../detection/alarm-state.ts';
+import { type StandingLife, standingAlarms } from '../store/alarms.ts';
+import { readJournal } from '../store/journal.ts';
+import type { Reader } from '../store/lent-connection.ts';
+import { readLevels, type TrendPoint } from '../store/read-trends.ts';
+
+/** One alarm or trouble that stands, is latched or waits to be acknowledged, with what the site file says of it. */
+export interface StandingNow extends StandingLife {
+  readonly standing: AlarmStanding;
+  /** Null where the limit or its band has left the site file, and for trouble. */
+  readonly limit: Limit | null;
+  readonly band: Band | null;
+  /** Newest level of the band that belongs to the trend. */
+  readonly newest: TrendPoint | null;
+  /** What was found, of a trouble that says it. */
+  readonly detail: string | null;
+}
+
+/** Everything that stands, by number. */
+export async function standingNow(reader: Reader, site: Site): Promise<StandingNow[]> {
+  const found: StandingNow[] = [];
+  for (const { alarm, life } of await standingAlarms(reader)) {
+    const { subject } = alarm;
+    const point = site.machines
+      .find(({ id }) => id === subject.machineId)
+      ?.points.find(({ id }) => id === subject.pointId);
+    const ofLimit = subject.kind === 'limit' ? subject : null;
+    found.push({
+      alarm,
+      life,
+      standing: standing(alarm.state),
+      limit: point?.limits.find(({ id }) => id === ofLimit?.limitId) ?? null,
+      band: point?.bands.find(({ id }) => id === ofLimit?.bandId) ?? null,
+      newest: await newestLevel(reader, alarm),
+      detail: ofLimit === null ? await detailOf(reader, life.number) : null,
+    });
+  }
+  return found;
+}
+
+async function newestLevel(reader: Reader, alarm: StandingLife['alarm']): Promise<TrendPoint | null> {
+  const { pointId, limitId } = alarm;
+  if (pointId === null || limitId === null) return null;
+  const limit = await reader
+    .selectFrom('limits')
+    .select('band_id')
+    .where('id', '=', limitId)
+    .executeTakeFirst();
+  if (limit === undefined) return null;
+  const all = { fromMs: Number.MIN_SAFE_INTEGER, toMs: Number.MAX_SAFE_INTEGER, limit: 1 };
+  return (await readLevels(reader, { pointId, bandId: limit.band_id, ...all }))[0] ?? null;
+}
+
+/** The newest journal row of the life that says what was found. */
+async function detailOf(reader: Reader, number: number): Promise<string | null> {
+  const rows = await readJournal(reader, { number, limit: 20 });
+  const details = rows.map(({ reason }) => reason.detail ?? reason.file);
+  return details.find((detail): detail is string => typeof detail === 'string') ?? null;
+}
