@@ -1,5 +1,6 @@
 import { type AveragedDensity, Averager, type AveragingSettings } from '../signal/averaging.ts';
 import { bandPower } from '../signal/band-level.ts';
+import { SegmentSpectra } from '../signal/segment-spectra.ts';
 import { Waveform, type WaveformValues } from '../signal/waveform.ts';
 import type { LaidBand } from './point-bands.ts';
 
@@ -11,7 +12,14 @@ export interface StretchResult {
   readonly density: AveragedDensity | null;
   /** Mean square of each segment by itself, one list a band, in the order of the bands. */
   readonly segmentPowers: readonly (readonly number[])[];
+  /** Densities of segments or groups of them; null where there is no density. */
+  readonly segments: SegmentSpectra | null;
 }
+
+/** Memory for single segments' densities; long segments are grouped sooner. */
+const segmentsBytes = 2 ** 25;
+const mostGroups = 128;
+const leastGroups = 8;
 
 /**
  * Waveform values and averaged density of a stretch without gaps, fed in blocks of any size. Holds samples only
@@ -24,6 +32,7 @@ export class CleanStretch {
   readonly #segmentPowers: number[][];
   #waiting: Float64Array[] = [];
   #averager: Averager | null = null;
+  #segments: SegmentSpectra | null = null;
   samples = 0;
 
   /** `settings` null: waveform values only. */
@@ -45,6 +54,7 @@ export class CleanStretch {
     }
     this.#waiting.push(samples.slice());
     if (this.samples < this.#settings.segmentSamples) return;
+    this.#segments = segmentSpectra(this.#settings.segmentSamples / 2 + 1);
     this.#averager = new Averager(this.#settings, (density) => this.#visit(density));
     for (const block of this.#waiting) this.#averager.add(block);
     this.#waiting = [];
@@ -56,12 +66,19 @@ export class CleanStretch {
       waveform: this.#waveform.finish(),
       density: this.#averager?.finish() ?? null,
       segmentPowers: this.#segmentPowers,
+      segments: this.#segments,
     };
   }
 
   #visit(density: Float64Array): void {
+    this.#segments?.add(density);
     for (const [n, { weights }] of this.#bands.entries()) {
       this.#segmentPowers[n].push(bandPower(density, weights));
     }
   }
+}
+
+function segmentSpectra(lines: number): SegmentSpectra {
+  const groups = 2 * Math.floor(segmentsBytes / (8 * lines));
+  return new SegmentSpectra(lines, Math.max(leastGroups, Math.min(mostGroups, groups)));
 }

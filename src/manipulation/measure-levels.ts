@@ -4,6 +4,8 @@ import { bandInterval, type IntervalKernel, makeIntervalKernel } from '../signal
 import { Kept } from '../signal/kept.ts';
 import { effectiveAverages } from '../signal/overlap.ts';
 import { findPeaks, type Peak } from '../signal/peaks.ts';
+import type { SegmentSpectra } from '../signal/segment-spectra.ts';
+import { steadiness } from '../signal/steadiness.ts';
 import { type FingerprintSettings, seriesFingerprint } from './fingerprint.ts';
 import type { Averaging, BandLevel, SpectralPeak } from './measurement.ts';
 import type { LaidBand } from './point-bands.ts';
@@ -13,6 +15,7 @@ export interface LevelQuestion {
   readonly averaging: AveragingSettings;
   readonly density: AveragedDensity;
   readonly segmentPowers: readonly (readonly number[])[];
+  readonly segments: SegmentSpectra | null;
   readonly bands: readonly LaidBand[];
   readonly speedHz: number | null;
   /** The true levels are at least these: the recording is clipped or the sensor saturated. */
@@ -24,6 +27,8 @@ export interface MeasuredLevels {
   readonly averaging: Averaging;
   readonly levels: readonly BandLevel[];
   readonly peaks: readonly SpectralPeak[];
+  /** What varied from segment to segment, in words; null: steady, or too few averages to say. */
+  readonly unsteady: string | null;
 }
 
 /** Band levels with their intervals, peaks with their orders, and how they were averaged. */
@@ -32,14 +37,11 @@ export function levelsOf(question: LevelQuestion): MeasuredLevels {
   const { window, segmentSamples, overlapPercent, sampleRateHz } = averaging;
   const { averages, hopSamples } = density;
   const { kernel, effective } = averagesOf(averaging, hopSamples, averages);
-  const { peaks } = findPeaks(density.density, {
-    window,
-    segmentSamples,
-    hopSamples,
-    averages,
-    sampleRateHz,
-    falsePeaksPerSpectrum: point.analysis.falsePeaksPerSpectrum,
-  });
+  const { falsePeaksPerSpectrum } = point.analysis;
+  const settings = { window, segmentSamples, hopSamples, averages, sampleRateHz, falsePeaksPerSpectrum };
+  const search = findPeaks(density.density, settings);
+  const { peaks } = search;
+  const steady = question.segments && steadiness(question.segments, search, settings);
   const tones = peaks.filter((peak) => peak.kind === 'tone');
   return {
     averaging: {
@@ -50,12 +52,13 @@ export function levelsOf(question: LevelQuestion): MeasuredLevels {
       averages,
       effectiveAverages: effective,
       usedPercent: density.usedPercent,
-      segmentSpread: null,
+      segmentSpread: steady?.segmentSpread ?? null,
     },
     levels: question.bands.map((laid, n) =>
       levelOf(question, laid, question.segmentPowers[n], kernel, tones),
     ),
     peaks: peaks.map((peak) => spectralPeak(peak, question.speedHz)),
+    unsteady: steady?.unsteady === true ? steady.detail : null,
   };
 }
 

@@ -150,6 +150,7 @@ export class Measurer {
       averaging: this.#averaging,
       density: result.density,
       segmentPowers: result.segmentPowers,
+      segments: result.segments,
       bands: this.#laid,
       speedHz: this.#speed && this.#speed.rpm / 60,
       atLeast: found.some(({ flag }) => flag === 'clipped' || flag === 'saturated'),
@@ -194,13 +195,7 @@ export class Measurer {
     }
     if (!measured) return [...found, this.#tooShort(sampleRateHz)];
     for (const { flag, reason } of this.#unlaid) found.push({ flag, detail: reason });
-    if (levels !== null && (levels.averaging.segmentSpread ?? 0) > 1) {
-      const ratio = (levels.averaging.segmentSpread as number).toFixed(1);
-      found.push({
-        flag: 'unsteady',
-        detail: `spread between segments is ${ratio} times what a steady signal shows`,
-      });
-    }
+    if (levels?.unsteady != null) found.push({ flag: 'unsteady', detail: levels.unsteady });
     return found;
   }
 

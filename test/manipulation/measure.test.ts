@@ -161,6 +161,38 @@ describe('the level that 80 % of the segments exceed', () => {
   });
 });
 
+describe('the steadiness of a measurement', () => {
+  const noisy = (change: (n: number) => number) => {
+    const tone = sines(40, fs, [[1, 100, 0]]);
+    const noise = gaussianNoise(seededRandom(21), tone.length, 0.1);
+    return tone.map((value, n) => value * change(n) + noise[n]);
+  };
+
+  it('is a ratio below 1 for a steady machine, and null below four averages', () => {
+    const steady = measure(
+      noisy(() => 1),
+      testPoint(),
+    );
+    expect(steady.averaging?.segmentSpread).toBeGreaterThan(0);
+    expect(steady.averaging?.segmentSpread).toBeLessThan(1);
+    expect(flags(steady)).toEqual([]);
+    expect(measure(sines(1.5, fs, [[1, 100, 0]]), testPoint()).averaging).toMatchObject({
+      averages: 2,
+      segmentSpread: null,
+    });
+  });
+
+  it('is flagged, with what varied, where the shaft’s level doubles within the recording', () => {
+    const doubling = measure(
+      noisy((n) => 2 ** (n / (40 * fs))),
+      testPoint(),
+    );
+    expect(doubling.averaging?.segmentSpread).toBeGreaterThan(1);
+    expect(doubling.quality).toEqual([{ flag: 'unsteady', detail: expect.stringContaining('100.0 Hz') }]);
+    expect(doubling.levels).toHaveLength(2);
+  });
+});
+
 describe('a recording that cannot be measured whole', () => {
   it('gives waveform values only, and says so, when it is shorter than a segment', () => {
     const measurement = measure(sines(0.5, fs, [[1, 100, 0]]), testPoint());
