@@ -9,7 +9,8 @@ export const longestNameBytes = 255;
 /** Longest name under which a file is filed: leaves room for `~` and 8 digits, `.reason.txt` or `.part`. */
 export const longestFiledNameBytes = 232;
 
-const codedPrefix = 'bytes:';
+/** How the stored spelling of a path begins that is no clean text. */
+export const codedPrefix = 'bytes:';
 
 /** What is wrong with one name (not a path), or null. */
 export function nameProblem(bytes: Uint8Array): string | null {

@@ -45,7 +45,7 @@ function header(source: ByteSource): RecordingHeader | Refusal {
   const remarks = [...layout.remarks];
   if (layout.missing !== null) remarks.push(layout.missing);
   const channels = format?.channels ?? 0;
-  const complete = format !== null && data !== null && isComplete(source, format, data, remarks);
+  const fill = format === null || data === null ? 'short' : fillOf(source, format, data, remarks);
   const claimed = data?.claimedBytes ?? null;
   return {
     format: wavReader.format,
@@ -54,31 +54,37 @@ function header(source: ByteSource): RecordingHeader | Refusal {
     channelUnits: Array.from({ length: channels }, () => null),
     samples: format?.encoding === 'float' ? 'number' : 'integer',
     framesClaimed: format === null || claimed === null ? null : Math.floor(claimed / format.frameBytes),
-    complete,
+    complete: fill === 'whole',
+    ...(fill === 'zero tail' ? { zeroTail: true } : {}),
     start,
     remarks,
   };
 }
 
-/** All promised bytes are there, and the last of them are not the zeros of a copy still under way. */
-function isComplete(source: ByteSource, format: WavFormat, data: WavData, remarks: string[]): boolean {
+/** Whole: all promised bytes are there, and the last of them are not the zeros of a copy still under way. */
+function fillOf(
+  source: ByteSource,
+  format: WavFormat,
+  data: WavData,
+  remarks: string[],
+): 'whole' | 'short' | 'zero tail' {
   const held = Math.max(0, source.size - data.offset);
   const bytes = data.claimedBytes ?? held;
   if (bytes > held) {
     remarks.push(`the header promises ${bytes} bytes of samples, ${held} are there`);
-    return false;
+    return 'short';
   }
   if (bytes < format.frameBytes) {
     remarks.push('no samples yet');
-    return false;
+    return 'short';
   }
-  if (bytes < leastZeroTailBytes) return true;
+  if (bytes < leastZeroTailBytes) return 'whole';
   const tail = new Uint8Array(Math.min(zeroTailBytes, bytes));
   const count = readFully(source, data.offset + bytes - tail.length, tail);
-  if (count < tail.length) return false;
-  if (!tail.every((byte) => byte === 0)) return true;
+  if (count < tail.length) return 'short';
+  if (!tail.every((byte) => byte === 0)) return 'whole';
   remarks.push(`the last ${tail.length} bytes of samples are zero: perhaps not copied yet`);
-  return false;
+  return 'zero tail';
 }
 
 function* samples(source: ByteSource): Generator<SampleBlock, SamplesEnd | Refusal> {

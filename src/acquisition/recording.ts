@@ -17,6 +17,8 @@ export interface RecordingHeader {
   readonly framesClaimed: number | null;
   /** False while the file is shorter than its own header promises, or the header is not all there yet. */
   readonly complete: boolean;
+  /** Set where it is incomplete only because the last of its samples are all zeros, as of a copy still under way. */
+  readonly zeroTail?: boolean;
   /** Start that the file states itself; a date without zone is given by its parts and read in the logger's clock. */
   readonly start: StatedStart | null;
   /** What was odd but harmless, for people ("2 unknown chunks skipped"). */

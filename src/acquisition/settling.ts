@@ -122,7 +122,8 @@ export function headerLook(
   if ('refused' in answer) {
     return { complete: sizeBytes > 0 && !headIsZeros, zeroTail, refused: answer.reason };
   }
-  return { complete: answer.complete, zeroTail, refused: null };
+  const reserved = answer.zeroTail === true;
+  return { complete: answer.complete || reserved, zeroTail: zeroTail || reserved, refused: null };
 }
 
 /** Bytes at the end of a file that are looked at for zeros. */

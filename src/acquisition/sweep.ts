@@ -4,7 +4,7 @@
  */
 import type { Dirent, Stats } from 'node:fs';
 import { lstat, readdir } from 'node:fs/promises';
-import { nameProblem, pathText } from './file-name.ts';
+import { codedPrefix, nameProblem, pathText } from './file-name.ts';
 import { setAsidePrefix } from './filing-place.ts';
 
 /** A regular file with one name, as it was seen. */
@@ -157,7 +157,10 @@ function note(path: Buffer, entry: Dirent<Buffer>, stat: Stats, found: Found): v
   // Hidden and unfinished files are somebody's work in progress.
   if (name.startsWith('.') || name.endsWith('.part')) return;
   const { dev, ino, size, mtimeMs, ctimeMs } = stat;
-  found.files.push({ path: text, dev, ino, size, mtimeMs, ctimeMs, nameProblem: nameProblem(entry.name) });
+  // The spelling of names that are no text must not be mistaken for a name.
+  const problem =
+    nameProblem(entry.name) ?? (text.startsWith(codedPrefix) ? `its path begins with ${codedPrefix}` : null);
+  found.files.push({ path: text, dev, ino, size, mtimeMs, ctimeMs, nameProblem: problem });
 }
 
 function kindProblem(stat: Stats): string | null {

@@ -1,4 +1,4 @@
-import { nameOf, pathBytes, printableName, sidecarNameOf } from '../acquisition/file-name.ts';
+import { codedPrefix, pathBytes } from '../acquisition/file-name.ts';
 import {
   type FileObservation,
   type HeaderLook,
@@ -8,9 +8,10 @@ import {
 } from '../acquisition/settling.ts';
 import type { SeenFile } from '../acquisition/sweep.ts';
 import type { Point } from '../config/site.ts';
-import type { FileLook } from './file-source.ts';
 import type { HeaderAnswer, HeaderTask } from './recording-task.ts';
+import { isSidecarName, sidecarPairs, waitForSidecarMs } from './sidecar-pairs.ts';
 import type { SiteView } from './site-view.ts';
+import { type Arrival, collect, givenUp, type Look, notRead, ready, type Verdict } from './verdicts.ts';
 
 /**
  * What lies in the drop folder, and how far each file is: settling, looked into, ready, given up. Kept in memory only:
@@ -18,45 +19,9 @@ import type { SiteView } from './site-view.ts';
  *
  * A recording and its sidecar settle together: a change of either begins the wait anew.
  */
-export interface ReadyRecording {
-  readonly path: string;
-  readonly sidecarPath: string | null;
-  readonly header: Extract<HeaderAnswer, { kind: 'header' }>;
-  readonly points: readonly Point[];
-  readonly source: string;
-  /** Wall time at which the file was first noticed. */
-  readonly arrivedMs: number;
-  /** Taken although its tail is all zeros, after waiting. */
-  readonly zeroTail: boolean;
-}
-
-/** A file that cannot become a recording. */
-export interface GivenUp {
-  readonly path: string;
-  readonly sidecarPath: string | null;
-  readonly reason: string;
-  readonly source: string | null;
-  readonly points: readonly Point[];
-  readonly arrivedMs: number;
-  readonly kind: 'unreadable' | 'late-sidecar' | 'bad-name';
-}
-
-export interface Unassigned {
-  readonly path: string;
-  readonly look: FileLook;
-  readonly arrivedMs: number;
-}
-
-export interface Look {
-  readonly ready: readonly ReadyRecording[];
-  readonly givenUp: readonly GivenUp[];
-  readonly unassigned: readonly Unassigned[];
-  /** Files still settling, and when the first of them is worth another look. */
-  readonly waiting: number;
-  readonly againInMs: number | null;
-}
-
 interface Watched {
+  /** Which file it is, of those that came under the name. */
+  readonly inode: string;
   readonly arrivedMs: number;
   settling: Settling | null;
   looked: HeaderAnswer | null;
@@ -71,13 +36,6 @@ export interface ArrivalsTools {
   readonly isKept: (file: SeenFile) => boolean;
 }
 
-type Verdict =
-  | { readonly at: 'waiting'; readonly againInMs: number }
-  | { readonly at: 'ready'; readonly recording: ReadyRecording }
-  | { readonly at: 'given-up'; readonly file: GivenUp }
-  | { readonly at: 'unassigned'; readonly file: Unassigned }
-  | { readonly at: 'ignored' };
-
 /** Files that are looked into at a time; the worker pool bounds what runs at once. */
 const lookedAtOnce = 64;
 
@@ -89,19 +47,18 @@ export class Arrivals {
     this.#tools = tools;
   }
 
-  /** The file changed under the reader, or was replaced: it settles anew. */
+  /** The file was decided on, changed under the reader, or was replaced: what comes under its name settles anew. */
   forget(path: string): void {
     this.#watched.delete(path);
   }
 
   async look(files: readonly SeenFile[]): Promise<Look> {
     const view = this.#tools.view();
-    const byPath = new Map(files.map((file) => [file.path, file]));
-    const sidecarOf = sidecars(files, byPath);
-    const taken = new Set([...sidecarOf.values()].map(({ path }) => path));
-    this.#forgetVanished(byPath);
+    const sidecarOf = sidecarPairs(files);
+    const paired = new Set([...sidecarOf.values()].map(({ path }) => path));
+    this.#forgetVanished(new Set(files.map(({ path }) => path)));
     const verdicts: Verdict[] = [];
-    const mains = files.filter((file) => !taken.has(file.path) && !this.#tools.isKept(file));
+    const mains = files.filter((file) => !paired.has(file.path) && !this.#tools.isKept(file));
     for (let n = 0; n < mains.length; n += lookedAtOnce) {
       const part = mains.slice(n, n + lookedAtOnce);
       verdicts.push(
@@ -111,51 +68,46 @@ export class Arrivals {
     return collect(verdicts);
   }
 
-  #forgetVanished(byPath: ReadonlyMap<string, SeenFile>): void {
-    for (const path of this.#watched.keys()) if (!byPath.has(path)) this.#watched.delete(path);
+  #forgetVanished(there: ReadonlySet<string>): void {
+    for (const path of this.#watched.keys()) if (!there.has(path)) this.#watched.delete(path);
   }
 
   async #one(view: SiteView, file: SeenFile, sidecar: SeenFile | null): Promise<Verdict> {
     if (file.nameProblem === null && isSidecarName(file.path)) return this.#orphan(view, file);
     if (file.nameProblem === null && view.files.isIgnored(file.path)) return { at: 'ignored' };
     const points = file.nameProblem === null ? view.files.pointsFor(file.path) : [];
-    const watched = this.#watch(file.path);
+    const watched = this.#watch(file);
     const waits = waitsFor(view, points);
     for (;;) {
       const { verdict, state } = settle(watched.settling, this.#observe(file, sidecar, watched), waits);
       if (state.stillSinceMs !== watched.settling?.stillSinceMs) watched.looked = null;
       watched.settling = state;
       if (verdict.verdict === 'wait') return { at: 'waiting', againInMs: verdict.againInMs };
-      if (file.nameProblem !== null)
-        return givenUp(file, sidecar, watched, view, file.nameProblem, 'bad-name');
-      if (points.length === 0)
-        return { at: 'unassigned', file: { path: file.path, look: file, arrivedMs: watched.arrivedMs } };
-      if (verdict.verdict === 'give-up')
-        return givenUp(file, sidecar, watched, view, verdict.reason, 'unreadable');
+      const { arrivedMs, looked } = watched;
+      const arrival: Arrival = { file, sidecar, arrivedMs, looked };
+      if (file.nameProblem !== null) return givenUp(view, arrival, file.nameProblem, 'bad-name');
+      if (points.length === 0) return { at: 'unassigned', file: { path: file.path, look: file, arrivedMs } };
+      if (verdict.verdict === 'give-up') return givenUp(view, arrival, verdict.reason, 'unreadable');
       if (verdict.verdict === 'look') {
         const answer = await this.#tools.header(this.#headerTask(view, file, sidecar));
-        if (answer.kind === 'gone' || answer.kind === 'left-alone') return { at: 'ignored' };
+        if (answer.kind === 'gone') return { at: 'ignored' };
+        if (answer.kind === 'left-alone') return notRead(view, arrival, answer.reason);
         watched.looked = answer;
         continue;
       }
-      const waitMs = waitForSidecarMs(
-        points,
-        sidecar,
-        state,
-        this.#tools.monotonicMs(),
-        waits.incompleteAfterMs,
-      );
+      const waitMs = this.#sidecarWaitMs(points, sidecar, state, waits.incompleteAfterMs);
       if (waitMs > 0) return { at: 'waiting', againInMs: waitMs };
-      return ready(file, sidecar, watched, view, verdict.zeroTail, points);
+      return ready(view, arrival, points, verdict.zeroTail);
     }
   }
 
-  #watch(path: string): Watched {
-    let watched = this.#watched.get(path);
-    if (watched === undefined) {
-      watched = { arrivedMs: this.#tools.wallMs(), settling: null, looked: null };
-      this.#watched.set(path, watched);
-    }
+  /** Another file under the name is another arrival. */
+  #watch(file: SeenFile): Watched {
+    const inode = `${file.dev}:${file.ino}`;
+    const known = this.#watched.get(file.path);
+    if (known?.inode === inode) return known;
+    const watched = { inode, arrivedMs: this.#tools.wallMs(), settling: null, looked: null };
+    this.#watched.set(file.path, watched);
     return watched;
   }
 
@@ -164,7 +116,7 @@ export class Arrivals {
       sizeBytes: file.size,
       modifiedMs: Math.max(file.mtimeMs, sidecar?.mtimeMs ?? 0),
       changedMs: Math.max(file.ctimeMs, sidecar?.ctimeMs ?? 0),
-      inode: `${file.dev}:${file.ino}${sidecar === null ? '' : `+${sidecar.ino}:${sidecar.size}`}`,
+      inode: `${watched.inode}${sidecar === null ? '' : `+${sidecar.ino}:${sidecar.size}`}`,
       monotonicMs: this.#tools.monotonicMs(),
       header: watched.looked === null ? null : lookOf(watched.looked, file.size),
     };
@@ -179,39 +131,33 @@ export class Arrivals {
     };
   }
 
+  #sidecarWaitMs(
+    points: readonly Point[],
+    sidecar: SeenFile | null,
+    { firstSeenMs }: Settling,
+    incompleteAfterMs: number,
+  ): number {
+    return waitForSidecarMs(points, sidecar, firstSeenMs, this.#tools.monotonicMs(), incompleteAfterMs);
+  }
+
   /** A sidecar without its recording: it may come before it, and is given up when none comes. */
   #orphan(view: SiteView, file: SeenFile): Verdict {
-    const watched = this.#watch(file.path);
+    const watched = this.#watch(file);
     watched.settling ??= settle(null, this.#observe(file, null, watched), waitsFor(view, [])).state;
     const leftMs =
       watched.settling.firstSeenMs + view.site.timings.incompleteAfterMs - this.#tools.monotonicMs();
     if (leftMs > 0) return { at: 'waiting', againInMs: leftMs };
     const reason = 'no recording came with this sidecar, or it came after its recording had been read';
-    return givenUp(file, null, watched, view, reason, 'late-sidecar');
+    const { arrivedMs } = watched;
+    return givenUp(view, { file, sidecar: null, arrivedMs, looked: null }, reason, 'late-sidecar');
   }
 }
 
 /** Absolute path of a file in the drop folder; a name that is no text keeps its bytes. */
 export function absolutePath(folder: string, path: string): string | Uint8Array {
-  return path.startsWith('bytes:')
+  return path.startsWith(codedPrefix)
     ? Buffer.concat([Buffer.from(`${folder}/`), pathBytes(path)])
     : `${folder}/${path}`;
-}
-
-function sidecars(files: readonly SeenFile[], byPath: ReadonlyMap<string, SeenFile>): Map<string, SeenFile> {
-  const found = new Map<string, SeenFile>();
-  for (const file of files) {
-    if (isSidecarName(file.path)) continue;
-    const sidecar = byPath.get(
-      file.path.slice(0, file.path.length - nameOf(file.path).length) + sidecarNameOf(nameOf(file.path)),
-    );
-    if (sidecar !== undefined && sidecar.nameProblem === null) found.set(file.path, sidecar);
-  }
-  return found;
-}
-
-function isSidecarName(path: string): boolean {
-  return /\.json$/i.test(path);
 }
 
 function waitsFor(view: SiteView, points: readonly Point[]) {
@@ -224,74 +170,4 @@ function lookOf(answer: HeaderAnswer, size: number): HeaderLook {
   if (answer.kind === 'header') return headerLook(answer.header, size, false, answer.zeroTail);
   if (answer.kind === 'refused') return headerLook(answer.refusal, size, answer.headIsZeros, false);
   return { complete: false, zeroTail: false, refused: null };
-}
-
-function waitForSidecarMs(
-  points: readonly Point[],
-  sidecar: SeenFile | null,
-  state: Settling,
-  monotonicMs: number,
-  incompleteAfterMs: number,
-): number {
-  if (sidecar !== null || !points.some(({ recordings }) => recordings.sidecar === 'expected')) return 0;
-  return state.firstSeenMs + incompleteAfterMs - monotonicMs;
-}
-
-function ready(
-  file: SeenFile,
-  sidecar: SeenFile | null,
-  watched: Watched,
-  view: SiteView,
-  zeroTail: boolean,
-  points: readonly Point[],
-): Verdict {
-  const header = watched.looked;
-  if (header?.kind !== 'header') throw new Error(`${file.path} is ready without a header`);
-  const source = view.files.sourceOf(file.path) ?? file.path;
-  return {
-    at: 'ready',
-    recording: {
-      path: file.path,
-      sidecarPath: sidecar?.path ?? null,
-      header,
-      points,
-      source,
-      arrivedMs: watched.arrivedMs,
-      zeroTail,
-    },
-  };
-}
-
-function givenUp(
-  file: SeenFile,
-  sidecar: SeenFile | null,
-  watched: Watched,
-  view: SiteView,
-  reason: string,
-  kind: GivenUp['kind'],
-): Verdict {
-  const named = file.nameProblem === null;
-  return {
-    at: 'given-up',
-    file: {
-      path: file.path,
-      sidecarPath: sidecar?.path ?? null,
-      reason: `${printableName(nameOf(file.path))}: ${reason}`,
-      source: named ? view.files.sourceOf(file.path) : null,
-      points: named ? view.files.pointsFor(file.path) : [],
-      arrivedMs: watched.arrivedMs,
-      kind,
-    },
-  };
-}
-
-function collect(verdicts: readonly Verdict[]): Look {
-  const waits = verdicts.flatMap((verdict) => (verdict.at === 'waiting' ? [verdict.againInMs] : []));
-  return {
-    ready: verdicts.flatMap((verdict) => (verdict.at === 'ready' ? [verdict.recording] : [])),
-    givenUp: verdicts.flatMap((verdict) => (verdict.at === 'given-up' ? [verdict.file] : [])),
-    unassigned: verdicts.flatMap((verdict) => (verdict.at === 'unassigned' ? [verdict.file] : [])),
-    waiting: waits.length,
-    againInMs: waits.length === 0 ? null : Math.min(...waits),
-  };
 }

@@ -1,5 +1,5 @@
 import { type IntakeTimings, pointPath } from '../config/site.ts';
-import type { ReadyRecording } from './arrivals.ts';
+import type { ReadyRecording } from './verdicts.ts';
 
 /**
  * Holds old files back until their batch is complete: a logger that was cut off sends days at once, in any order, and

@@ -1,33 +1,21 @@
-import { archivePlace } from '../acquisition/filing-place.ts';
-import { recordingIdentity } from '../acquisition/identity.ts';
-import type { AlarmChange } from '../detection/alarm.ts';
-import { pointTrouble } from '../detection/detect.ts';
-import { overdueSubject } from '../detection/overdue.ts';
 import { endAttempt, noteSeen } from '../store/intake-marks.ts';
 import type { Writer } from '../store/lent-connection.ts';
-import { findTaken, insertRecording, type NewRecording } from '../store/recordings.ts';
+import { findTaken, insertRecording } from '../store/recordings.ts';
 import { type ChangeContext, saveAlarmChange } from '../store/save-alarm.ts';
 import { getSource, noteArrival, type Source, saveSource } from '../store/sources.ts';
 import { insertMeasurement } from '../store/trends.ts';
-import type { ReadyRecording } from './arrivals.ts';
-import { type Evaluated, evaluate, lookAtTrouble, sourceTrouble } from './evaluate.ts';
-import type { MeasureAnswer } from './recording-task.ts';
+import { type Evaluated, evaluate } from './evaluate.ts';
 import type { RecordingTime } from './recording-time.ts';
 import { spansOf, statedStart, timeOf } from './recording-time.ts';
+import { troublesOf } from './recording-troubles.ts';
 import type { SiteView } from './site-view.ts';
+import { identityOf, otherReading, recordingRow, remarkOf, type TakenFile } from './taken-file.ts';
+import type { ReadyRecording } from './verdicts.ts';
 
 /**
  * The one transaction of a recording: what it is (identity, version, repeat), when it counts (the logger's clock),
  * what it says (measurements), what that does (alarms, troubles), who is to be told, and where the file goes.
  */
-export interface TakenFile {
-  readonly ready: ReadyRecording;
-  readonly answer: Extract<MeasureAnswer, { kind: 'measured' }>;
-  readonly fileKey: string;
-  /** Newest start among the files of this source that wait together. */
-  readonly batchNewestStatedMs: number;
-}
-
 export interface Decided {
   readonly recordingId: number;
   readonly outcome: 'taken' | 'repeat';
@@ -132,71 +120,6 @@ export function isBacklog(ready: ReadyRecording, startMs: number): boolean {
   return ready.arrivedMs - startMs > 2 * spansOf(ready.points).intervalMs;
 }
 
-function identityOf({ ready, answer }: TakenFile, statedMs: number | null): string {
-  return recordingIdentity({
-    contentSha256: answer.sha256,
-    sidecarSha256: ready.header.sidecar?.sha256 ?? null,
-    source: ready.source,
-    statedMs,
-    path: ready.path,
-    modifiedMs: answer.look.mtimeMs,
-  });
-}
-
-/** In the hour that comes twice the same file may have been kept under the other reading. */
-async function otherReading(writer: Writer, taken: TakenFile, otherMs: number | null) {
-  return otherMs === null ? null : findTaken(writer, identityOf(taken, otherMs));
-}
-
-interface RowFacts {
-  readonly identity: string;
-  readonly source: Source;
-  readonly usedMs: number;
-  readonly statedMs: number | null;
-  readonly origin: NewRecording['startOrigin'];
-}
-
-function recordingRow(
-  view: SiteView,
-  { ready, answer }: TakenFile,
-  facts: RowFacts,
-): Omit<NewRecording, 'outcome' | 'reason' | 'evaluated'> {
-  const after = view.site.folders.afterReading;
-  const usedMs = Math.round(facts.usedMs);
-  return {
-    identity: facts.identity,
-    sourceId: facts.source.id,
-    contentSha256: answer.sha256,
-    sidecarSha256: ready.header.sidecar?.sha256 ?? null,
-    statedMs: facts.statedMs,
-    startOrigin: facts.origin,
-    arrivedMs: Math.round(ready.arrivedMs),
-    usedMs,
-    fileName: ready.path,
-    sizeBytes: answer.look.size,
-    durationS: answer.sampleRateHz === null ? null : answer.frames / answer.sampleRateHz,
-    sampleRateHz: answer.sampleRateHz,
-    channelCount: answer.header.channelNames.length,
-    configVersionId: view.ids.configVersionId,
-    quality: answer.quality,
-    filingFrom: ready.path,
-    filingTo: after === 'archive' ? archivePlace(ready.path, usedMs, answer.sha256) : null,
-    filingState: after === 'keep' ? 'filed' : 'pending',
-  };
-}
-
-function remarkOf({ ready, answer }: TakenFile, time: RecordingTime): string | null {
-  const remarks = [
-    ready.header.sidecarRefused,
-    time.start.remark,
-    ready.zeroTail ? 'its tail is all zeros' : null,
-    time.secondVersion ? 'a second version of a recording that was whole: kept, not evaluated' : null,
-    ...answer.missing,
-    ...answer.header.remarks,
-  ].filter((remark) => remark !== null);
-  return remarks.length === 0 ? null : remarks.join('; ');
-}
-
 async function storeEvaluated(
   writer: Writer,
   view: SiteView,
@@ -219,50 +142,6 @@ async function storeEvaluated(
     atAlarm: one.changes.some(({ journal }) => journal.length > 0),
   });
   for (const change of one.changes) await saveAlarmChange(writer, change, context);
-}
-
-/** Troubles that a file's coming says something about: of its source, and of each point that takes it. */
-async function troublesOf(
-  writer: Writer,
-  { ready, answer }: TakenFile,
-  time: RecordingTime,
-  source: Source,
-): Promise<AlarmChange[]> {
-  const usedMs = Math.round(time.usedMs);
-  const measured = new Set(answer.measurements.map(({ machineId, pointId }) => `${machineId}/${pointId}`));
-  const changes = [
-    await lookAtTrouble(writer, sourceTrouble('unreadable', ready.source), {
-      present: false,
-      usedMs,
-      reason: {},
-    }),
-    await lookAtTrouble(writer, sourceTrouble('clock', ready.source), {
-      present: time.clock.offsetMs !== 0,
-      usedMs,
-      reason: { offsetMs: time.clock.offsetMs, statedMs: time.start.startMs, arrivedMs: ready.arrivedMs },
-    }),
-    await lookAtTrouble(writer, sourceTrouble('repeats-itself', ready.source), {
-      present: time.repeated && source.repeatsInARow >= 1,
-      usedMs,
-      reason: { file: ready.path },
-    }),
-  ];
-  for (const point of ready.points) {
-    const here = measured.has(`${point.machineId}/${point.id}`);
-    const missing = answer.missing.find((text) => text.startsWith(`${point.machineId}/${point.id}:`));
-    const reason = { file: ready.path, detail: missing ?? null };
-    changes.push(
-      await lookAtTrouble(writer, pointTrouble(point, 'unreadable'), { present: !here, usedMs, reason }),
-      here
-        ? await lookAtTrouble(writer, overdueSubject(point), {
-            present: false,
-            usedMs: ready.arrivedMs,
-            reason: {},
-          })
-        : null,
-    );
-  }
-  return changes.filter((change) => change !== null);
 }
 
 async function noteArrivals(

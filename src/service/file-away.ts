@@ -1,5 +1,6 @@
 import { nameOf, sidecarNameOf } from '../acquisition/file-name.ts';
 import { completeFiling, type FilingOrder } from '../acquisition/filing.ts';
+import type { SeenFile } from '../acquisition/sweep.ts';
 import type { Ledger } from '../store/ledger.ts';
 import { markFiled, pendingFilings, type StoredRecording } from '../store/recordings.ts';
 import type { FileLook } from './file-source.ts';
@@ -32,6 +33,8 @@ const ordersAtOnce = 50;
 export class FileAway {
   readonly #tools: FileAwayTools;
   readonly #known = new Map<number, KnownLooks>();
+  /** Files whose order something stands in the way of, by path; with the inode that was read, where this run read it. */
+  readonly #stuck = new Map<string, string | null>();
 
   constructor(tools: FileAwayTools) {
     this.#tools = tools;
@@ -42,19 +45,28 @@ export class FileAway {
     this.#known.set(recordingId, looks);
   }
 
+  /** True for a file that is decided on and only could not be moved yet: it is no new arrival. */
+  holds({ path, dev, ino }: Pick<SeenFile, 'path' | 'dev' | 'ino'>): boolean {
+    const inode = this.#stuck.get(path);
+    return inode === null || inode === `${dev}:${ino}`;
+  }
+
   /** Carries out every standing order; returns how many are left, because something stands in the way. */
   async all(): Promise<number> {
-    for (;;) {
-      const orders = await this.#tools.ledger.read((reader) => pendingFilings(reader, ordersAtOnce));
-      if (orders.length === 0) return 0;
+    this.#stuck.clear();
+    let left = 0;
+    for (let afterId = 0; ; ) {
+      const orders = await this.#tools.ledger.read((reader) => pendingFilings(reader, ordersAtOnce, afterId));
+      const last = orders.at(-1);
+      if (last === undefined) return left;
+      afterId = last.id;
       const filed: { readonly id: number; readonly to: string | null }[] = [];
       for (const order of orders) {
         const to = await this.#one(order);
         if (to !== false) filed.push({ id: order.id, to });
       }
       if (filed.length > 0) await this.#commit(filed);
-      const left = orders.length - filed.length;
-      if (filed.length === 0 || orders.length < ordersAtOnce) return left;
+      left += orders.length - filed.length;
     }
   }
 
@@ -64,6 +76,7 @@ export class FileAway {
     const outcome = await completeFiling(this.#order(recording), { step });
     if (outcome.outcome === 'cannot') {
       complaints.say('filing', outcome.reason);
+      this.#holdBack(recording);
       return false;
     }
     complaints.over('filing');
@@ -76,10 +89,19 @@ export class FileAway {
   /** One transaction for several files: an order that is carried out twice ends the same. */
   async #commit(filed: readonly { readonly id: number; readonly to: string | null }[]): Promise<void> {
     await this.#tools.ledger.transact(async (writer) => {
-      for (const { id, to } of filed) await markFiled(writer, id, to ?? undefined);
+      for (const { id, to } of filed) await markFiled(writer, id, to);
     });
     for (const { id } of filed) this.#known.delete(id);
     this.#tools.step('intake: filing committed');
+  }
+
+  #holdBack(recording: StoredRecording): void {
+    const known = this.#known.get(recording.id);
+    const inode = ({ dev, ino }: FileLook) => `${dev}:${ino}`;
+    this.#stuck.set(recording.filingFrom, known === undefined ? null : inode(known.file));
+    const sidecar = sidecarOf(recording, known);
+    if (sidecar !== null)
+      this.#stuck.set(sidecar.from, known?.sidecar == null ? null : inode(known.sidecar.look));
   }
 
   #order(recording: StoredRecording): FilingOrder {

@@ -2,21 +2,22 @@ import type { DropFolder } from '../acquisition/drop-folder.ts';
 import { printableName } from '../acquisition/file-name.ts';
 import type { Sweep } from '../acquisition/sweep.ts';
 import type { WorkerPool } from '../manipulation/pool.ts';
-import { tellOnce } from '../store/intake-marks.ts';
 import type { Ledger } from '../store/ledger.ts';
 import { LedgerError } from '../store/ledger-error.ts';
-import { Arrivals, type ReadyRecording, type Unassigned } from './arrivals.ts';
+import { Arrivals } from './arrivals.ts';
 import { Backlog } from './backlog.ts';
 import type { Clock } from './clock.ts';
 import { FileAway } from './file-away.ts';
 import type { KeptFiles } from './kept-files.ts';
 import type { Complaints, Logger } from './log.ts';
+import { PutAside } from './put-aside.ts';
 import type { HeaderAnswer, HeaderTask, RecordingAnswer, RecordingTask } from './recording-task.ts';
 import { spansOf, statedStart } from './recording-time.ts';
-import { namePattern } from './set-aside.ts';
 import type { SiteView } from './site-view.ts';
 import type { Step } from './steps.ts';
+import { Strangers } from './strangers.ts';
 import { TakeFiles } from './take-files.ts';
+import type { ReadyRecording, Unassigned } from './verdicts.ts';
 
 /**
  * Theory of operation of intake. One round:
@@ -65,12 +66,14 @@ export class Intake {
   readonly #arrivals: Arrivals;
   readonly #backlog: Backlog;
   readonly #fileAway: FileAway;
+  readonly #putAside: PutAside;
   readonly #take: TakeFiles;
+  readonly #strangers: Strangers;
 
   constructor(tools: IntakeTools) {
     this.#tools = tools;
     const { clock, view } = tools;
-    const replaced = (path: string) => this.#arrivals.forget(path);
+    const forget = (path: string) => this.#arrivals.forget(path);
     this.#arrivals = new Arrivals({
       view,
       wallMs: () => clock.wallMs(),
@@ -79,8 +82,15 @@ export class Intake {
       isKept: (file) => view().site.folders.afterReading === 'keep' && tools.kept.has(file),
     });
     this.#backlog = new Backlog(() => clock.monotonicMs());
-    this.#fileAway = new FileAway({ ...tools, replaced });
-    this.#take = new TakeFiles({ ...tools, fileAway: this.#fileAway, forget: replaced });
+    this.#fileAway = new FileAway({ ...tools, replaced: forget });
+    this.#putAside = new PutAside({ ...tools, fileAway: this.#fileAway, forget });
+    this.#take = new TakeFiles({ ...tools, fileAway: this.#fileAway, putAside: this.#putAside, forget });
+    this.#strangers = new Strangers(tools);
+  }
+
+  /** Before an orderly stop, between two rounds. */
+  end(): Promise<void> {
+    return this.#take.end();
   }
 
   /** `holdBacklog` false: what lies there is all there is (`run --once`). */
@@ -110,8 +120,9 @@ export class Intake {
     for (const { path, reason } of sweep.leftAlone) {
       this.#tools.log.warn({ file: printableName(path) }, `left alone: ${reason}`);
     }
-    const look = await this.#arrivals.look(sweep.files);
-    const view = this.#tools.view();
+    const look = await this.#arrivals.look(sweep.files.filter((file) => !this.#fileAway.holds(file)));
+    const { view: viewOf, clock } = this.#tools;
+    const view = viewOf();
     const starts = new Map(look.ready.map((ready) => [ready.path, statedStart(view, ready, null).startMs]));
     const startOf = (ready: ReadyRecording) => starts.get(ready.path) as number;
     const { now, held, againInMs } = this.#backlog.split(
@@ -120,7 +131,9 @@ export class Intake {
       view.site.timings,
     );
     const taken = await this.#take.recordings(inOrder(now, startOf), startOf);
-    const setAside = await this.#take.givenUp(look.givenUp);
+    const setAside = await this.#putAside.givenUp(look.givenUp);
+    const wallMs = clock.wallMs();
+    await this.#strangers.look(view, { wallMs, unassigned: look.unassigned, notRead: look.notRead });
     const moved = await this.#unassigned(look.unassigned, view);
     const unfiled = taken.decided + setAside + moved > 0 ? await this.#fileAway.all() : unfiledBefore;
     return {
@@ -145,25 +158,14 @@ export class Intake {
     throw new Error(answer.reason);
   }
 
-  /** Says each new kind of name once, and moves what lay there too long. */
-  async #unassigned(files: readonly Unassigned[], view: SiteView): Promise<number> {
-    const { ledger, clock, log } = this.#tools;
-    for (const { path } of files) {
-      const wallMs = clock.wallMs();
-      const isNews = await ledger.transact((writer) =>
-        tellOnce(writer, `unassigned ${namePattern(path)}`, wallMs),
-      );
-      if (isNews)
-        log.warn(
-          { file: printableName(path) },
-          'no point of the site file takes this file; see the command files',
-        );
-    }
+  /** Moves what lay there too long. */
+  #unassigned(files: readonly Unassigned[], view: SiteView): Promise<number> {
+    const { clock } = this.#tools;
     const tooOld = files.filter(({ arrivedMs, look }) => {
       const sinceMs = Math.min(arrivedMs, Math.max(look.mtimeMs, look.ctimeMs));
       return clock.wallMs() - sinceMs > view.site.timings.unassignedAfterMs;
     });
-    return this.#take.unassigned(tooOld);
+    return this.#putAside.unassigned(tooOld);
   }
 }
 

@@ -5,8 +5,8 @@ import type { Point } from '../config/site.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { findTakenByContent, type StoredRecording, takenBetween } from '../store/recordings.ts';
 import type { Source } from '../store/sources.ts';
-import type { ReadyRecording } from './arrivals.ts';
 import type { SiteView } from './site-view.ts';
+import type { ReadyRecording } from './verdicts.ts';
 
 /** When a recording counts, and whether it takes part in detection. */
 export interface RecordingTime {

@@ -1,10 +1,8 @@
 import { availableParallelism } from 'node:os';
 import { DropFolder } from '../acquisition/drop-folder.ts';
 import { WorkerPool } from '../manipulation/pool.ts';
-import { readMark, writeMark } from '../store/intake-marks.ts';
-import { appendJournal } from '../store/journal.ts';
 import type { Ledger } from '../store/ledger.ts';
-import { isLedgerRefusal } from '../store/ledger-error.ts';
+import { isLedgerRefusal, LedgerError } from '../store/ledger-error.ts';
 import { openLedger } from '../store/open-ledger.ts';
 import type { Clock } from './clock.ts';
 import { writeHealth } from './health.ts';
@@ -14,6 +12,7 @@ import { KeptFiles } from './kept-files.ts';
 import { Complaints, type Logger } from './log.ts';
 import { type MailerFor, MailRounds } from './mail-rounds.ts';
 import type { RecordingAnswer, RecordingTask } from './recording-task.ts';
+import { noteStarted, noteStopped } from './run-marks.ts';
 import { needsRestart, putInForce, readSiteFile, type SiteFile, tellWrongSiteFile } from './site-in-force.ts';
 import type { SiteView } from './site-view.ts';
 import { noStep, type Step } from './steps.ts';
@@ -33,12 +32,17 @@ export interface ServiceOptions {
   readonly hint?: () => void;
   readonly mailerFor?: MailerFor;
   readonly threads?: number;
+  /** Module of the worker threads, and how long one task may take there. */
+  readonly worker?: URL;
+  readonly deadlineMs?: number;
+  /** The ledger refuses to grow beyond this many pages of 4 KiB, as if the disk were full. */
+  readonly largestPages?: number;
   /** Called when no worker thread is left: the process should end and be started again. */
   readonly onLost?: (reason: string) => void;
 }
 
-/** How the last run ended, as the ledger remembers it. */
-const runMark = 'run';
+/** The longest recordings are read in well under a minute; what takes longer hangs. */
+const longestTaskMs = 300_000;
 
 export class Service {
   readonly ledger: Ledger;
@@ -54,31 +58,39 @@ export class Service {
 
   /** Opens the ledger as its owner and puts the site file in force; in words why not. */
   static async start(options: ServiceOptions): Promise<Service | { readonly refused: string }> {
-    const { clock, siteFile, step = noStep } = options;
-    const ledger = await openLedger({
+    const { clock, siteFile } = options;
+    const opened = await openLedger({
       folder: siteFile.site.folders.data,
       mode: 'owner',
       wallMs: () => Math.round(clock.wallMs()),
       monotonicMs: () => clock.monotonicMs(),
+      ...(options.largestPages === undefined ? {} : { largestPages: options.largestPages }),
     });
-    if (isLedgerRefusal(ledger)) return { refused: ledger.reason };
+    if (isLedgerRefusal(opened)) return { refused: opened.reason };
+    try {
+      return await Service.#on(opened, options);
+    } catch (error) {
+      await opened.close();
+      if (error instanceof LedgerError) return { refused: error.message };
+      throw error;
+    }
+  }
+
+  static async #on(ledger: Ledger, options: ServiceOptions): Promise<Service> {
+    const { clock, siteFile, step = noStep } = options;
     const wallMs = Math.round(clock.wallMs());
     const view = await putInForce(ledger, siteFile, wallMs);
-    const last = await ledger.read((reader) => readMark(reader, runMark));
-    await ledger.transact(async (writer) => {
-      await writeMark(writer, runMark, 'begun');
-      await appendJournal(writer, serviceEntry('started', view, wallMs, { after: last ?? 'first start' }));
-    });
+    const last = await noteStarted(ledger, view, wallMs);
     const kept = await KeptFiles.load(ledger);
     const service = new Service(options, {
       ledger,
       view,
       kept,
-      unclean: last === 'begun',
+      unclean: last === 'unclean',
       startedMs: wallMs,
       step,
     });
-    await service.#mail.announce(last === null ? 'first' : last === 'begun' ? 'unclean' : 'clean');
+    await service.#mail.announce(last === 'none' ? 'first' : last);
     return service;
   }
 
@@ -110,9 +122,9 @@ export class Service {
       hint: options.hint ?? (() => {}),
     });
     this.#pool = new WorkerPool({
-      worker: workerUrl(),
+      worker: options.worker ?? workerUrl(),
       threads: options.threads ?? Math.max(1, Math.min(4, availableParallelism())),
-      deadlineMs: 300_000,
+      deadlineMs: options.deadlineMs ?? longestTaskMs,
       onAllLost: (reason) => options.onLost?.(reason),
     });
     const tools = { ledger, clock, view, log, complaints: this.#complaints, step };
@@ -132,15 +144,19 @@ export class Service {
   /** Takes what is ready, looks for silence, keeps house. `holdBacklog` false: what lies there is all there is. */
   async intakeRound(holdBacklog = true): Promise<Round> {
     const round = await this.#intake.round(holdBacklog);
-    const { clock } = this.#options;
-    await watchSilence(this.ledger, this.#view, {
-      wallMs: Math.round(clock.wallMs()),
-      startedMs: this.startedMs,
-      queueEmpty: round.waiting === 0,
-      dropFolderReadable: round.dropFolder === 'read',
-    });
     this.#writeHealth(round);
-    if (round.waiting === 0) await this.#housekeeping.whenIdle();
+    try {
+      await watchSilence(this.ledger, this.#view, {
+        wallMs: Math.round(this.#options.clock.wallMs()),
+        startedMs: this.startedMs,
+        queueEmpty: round.waiting === 0,
+        dropFolderReadable: round.dropFolder === 'read',
+      });
+      if (round.waiting === 0) await this.#housekeeping.whenIdle();
+    } catch (error) {
+      if (!(error instanceof LedgerError)) throw error;
+      this.#complaints.say('ledger', error.message);
+    }
     return round;
   }
 
@@ -179,11 +195,16 @@ export class Service {
     await this.#pool.close();
     await this.#housekeeping.end();
     const wallMs = Math.round(this.#options.clock.wallMs());
-    await this.ledger.transact(async (writer) => {
-      await writeMark(writer, runMark, 'ended');
-      await appendJournal(writer, serviceEntry('stopped', this.#view, wallMs, {}));
-    });
-    await this.ledger.close();
+    try {
+      await this.#intake.end();
+      await noteStopped(this.ledger, this.#view, wallMs);
+    } catch (error) {
+      // The next start takes it for an unclean stop, which does no harm.
+      if (!(error instanceof LedgerError)) throw error;
+      this.#complaints.say('ledger', error.message);
+    } finally {
+      await this.ledger.close();
+    }
   }
 
   #writeHealth(round: Round): void {
@@ -215,27 +236,4 @@ function workerUrl(): URL {
     import.meta.url.endsWith('.ts') ? './recording-worker.ts' : './recording-worker.js',
     import.meta.url,
   );
-}
-
-function serviceEntry(
-  event: 'started' | 'stopped',
-  view: SiteView,
-  wallMs: number,
-  reason: Record<string, unknown>,
-) {
-  return {
-    event,
-    key: null,
-    number: null,
-    before: null,
-    after: null,
-    usedMs: null,
-    wallMs,
-    recordingId: null,
-    configVersionId: view.ids.configVersionId,
-    actor: 'service',
-    via: 'service',
-    comment: null,
-    reason,
-  } as const;
 }

@@ -21,7 +21,8 @@ export interface AsideFile {
   readonly source: string | null;
   readonly arrivedMs: number;
   readonly outcome: 'quarantined' | 'unassigned';
-  readonly trouble: 'unreadable' | 'late-sidecar' | 'unassigned';
+  /** What tells of it; null: its kind of name was told already. */
+  readonly trouble: 'unreadable' | 'late-sidecar' | null;
   readonly reason: string;
   readonly fileKey: string;
 }
@@ -65,7 +66,7 @@ export async function decideAside(
     filingTo: quarantined ? quarantinePlace(file.path, file.sha256) : unassignedPlace(file.path, file.sha256),
     filingState: 'pending',
   });
-  const change = quarantined ? await troubleOf(writer, file, wallMs) : null;
+  const change = file.trouble === null ? null : await troubleOf(writer, file, file.trouble, wallMs);
   if (change !== null) {
     await saveAlarmChange(writer, change, {
       ids: view.ids,
@@ -80,8 +81,14 @@ export async function decideAside(
 }
 
 /** One trouble a source, however many of its files cannot be read; a good one ends it. */
-function troubleOf(writer: Writer, file: AsideFile, wallMs: number): Promise<AlarmChange | null> {
-  const subject: TroubleSubject = sourceTrouble(file.trouble, file.source ?? 'files with unusable names');
+function troubleOf(
+  writer: Writer,
+  file: AsideFile,
+  trouble: 'unreadable' | 'late-sidecar',
+  wallMs: number,
+): Promise<AlarmChange | null> {
+  const nobodys = trouble === 'unreadable' ? 'files with unusable names' : 'sidecars of no recording';
+  const subject: TroubleSubject = sourceTrouble(trouble, file.source ?? nobodys);
   return lookAtTrouble(writer, subject, {
     present: true,
     usedMs: Math.round(wallMs),

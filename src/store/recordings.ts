@@ -110,20 +110,24 @@ export async function recordingById(reader: Reader, id: number): Promise<StoredR
   return row === undefined ? null : storedRecording(row);
 }
 
-/** Files that are decided on and still to be moved, in the order of the decisions. */
-export async function pendingFilings(reader: Reader, limit: number): Promise<StoredRecording[]> {
+/** Files that are decided on and still to be moved, in the order of the decisions, from behind `afterId` on. */
+export async function pendingFilings(reader: Reader, limit: number, afterId = 0): Promise<StoredRecording[]> {
   const rows = await reader
     .selectFrom('recordings')
     .selectAll()
     .where('filing_state', '=', 'pending')
+    .where('id', '>', afterId)
     .orderBy('id')
     .limit(limit)
     .execute();
   return rows.map(storedRecording);
 }
 
-/** `filingTo`: where it went in the end, when a name was taken there. Filing twice changes nothing. */
-export async function markFiled(writer: Writer, id: number, filingTo?: string): Promise<void> {
+/**
+ * `filingTo`: where it went in the end, when a name was taken there; null: it lies nowhere (deleted, gone, replaced
+ * before it could be moved). Filing twice changes nothing.
+ */
+export async function markFiled(writer: Writer, id: number, filingTo?: string | null): Promise<void> {
   await writer
     .updateTable('recordings')
     .set({ filing_state: 'filed', ...(filingTo === undefined ? {} : { filing_to: filingTo }) })
