@@ -20,6 +20,8 @@ export interface PoolSettings {
   readonly threads: number;
   /** Longest time for one try. */
   readonly deadlineMs: number;
+  /** So much more for a thread that has not answered yet: it may still be loading. Default 10 s. */
+  readonly startMs?: number;
   /** Default 5 s. */
   readonly lostAfterMs?: number;
   readonly resourceLimits?: ResourceLimits;
@@ -49,6 +51,7 @@ const usualLimits: ResourceLimits = {
   stackSizeMb: 4,
 };
 const usualLostAfterMs = 5000;
+const usualStartMs = 10_000;
 
 export class WorkerPool<Task, Answer> {
   readonly #settings: PoolSettings;
@@ -140,6 +143,8 @@ export class WorkerPool<Task, Answer> {
 class Slot {
   readonly #settings: PoolSettings;
   readonly #pool: Piscina;
+  /** The thread has not answered yet since it was made, or may have been made anew. */
+  #fresh = true;
   /** Resolves to whether the worker that was told to end did. */
   #ending: Promise<boolean> | null = null;
 
@@ -157,14 +162,21 @@ class Slot {
 
   async run<Task, Answer>(task: Task): Promise<Try<Answer>> {
     const abort = new AbortController();
-    const { deadlineMs } = this.#settings;
+    const { deadlineMs, startMs = usualStartMs } = this.#settings;
+    const longestMs = deadlineMs + (this.#fresh ? startMs : 0);
     const deadline = setTimeout(() => {
-      this.#ending = this.#ended(this.#pool.threads);
+      const threads = [...this.#pool.threads];
+      this.#ending = this.#ended(threads);
       abort.abort();
-    }, deadlineMs);
+      // A thread that is still loading has not taken the task, so the abort alone would not end it.
+      for (const thread of threads) void thread.terminate();
+    }, longestMs);
     try {
-      return { answer: (await this.#pool.run(task, { signal: abort.signal })) as Answer };
+      const answer = (await this.#pool.run(task, { signal: abort.signal })) as Answer;
+      this.#fresh = false;
+      return { answer };
     } catch (error) {
+      this.#fresh = true;
       const reason = error instanceof Error ? error.message : String(error);
       return { failed: abort.signal.aborted ? `it did not end within ${deadlineMs / 1000} s` : reason };
     } finally {
@@ -186,17 +198,20 @@ class Slot {
     await this.#pool.destroy();
   }
 
+  /** Whether all of these end in time. A thread that has ended already shows -1 as its number. */
   #ended(workers: readonly Worker[]): Promise<boolean> {
     const { lostAfterMs = usualLostAfterMs } = this.#settings;
+    const alive = workers.filter((worker) => worker.threadId !== -1);
+    if (alive.length === 0) return Promise.resolve(true);
     return new Promise((resolve) => {
       const lost = setTimeout(() => resolve(false), lostAfterMs);
-      let left = workers.length;
+      let left = alive.length;
       const gone = () => {
         if (--left > 0) return;
         clearTimeout(lost);
         resolve(true);
       };
-      for (const worker of workers) worker.once('exit', gone);
+      for (const worker of alive) worker.once('exit', gone);
     });
   }
 }

@@ -35,7 +35,7 @@ describe('the worker pool', () => {
   ] as const)(
     'refuses a task that %s, after one more try, and goes on with the others',
     async (_, task, reason) => {
-      const pool = poolOf({ deadlineMs: 500 });
+      const pool = poolOf(task.do === 'loop' ? { deadlineMs: 500, startMs: 4000 } : {});
       await pool.run({ do: 'double', value: 1 });
       const refused = await pool.run(task);
       expect(refused).toMatchObject({ outcome: 'refused', reason: expect.stringMatching(reason) });
@@ -67,6 +67,8 @@ describe('the worker pool', () => {
   it('counts a worker off that cannot be ended, and says so when the last is lost', async () => {
     const told: string[] = [];
     const pool = poolOf({ deadlineMs: 300, lostAfterMs: 100, onAllLost: (reason) => told.push(reason) });
+    // Both threads have loaded.
+    await Promise.all([pool.run({ do: 'double', value: 1 }), pool.run({ do: 'double', value: 2 })]);
     const answers = await Promise.all([
       pool.run({ do: 'hang-in-the-system' }),
       pool.run({ do: 'hang-in-the-system' }),
@@ -75,6 +77,12 @@ describe('the worker pool', () => {
     expect(pool.threads).toBe(0);
     expect(told).toEqual(['all 2 worker threads hang and could not be ended; restart the service']);
     expect(await pool.run({ do: 'double', value: 1 })).toMatchObject({ outcome: 'no-worker' });
+  });
+
+  it('does not lose a thread that was still loading at its deadline', async () => {
+    const pool = poolOf({ deadlineMs: 1, startMs: 0, lostAfterMs: 60_000 });
+    expect(await pool.run({ do: 'loop' })).toMatchObject({ outcome: 'refused' });
+    expect(pool.threads).toBe(2);
   });
 
   it('answers what is left when it is closed', async () => {
