@@ -17,14 +17,20 @@ export interface Column {
 const gap = '  ';
 const leastWrapped = 16;
 
-/** Cells of the columns; or a text that runs beneath the row before it, over all columns but the first. */
+/** Cells of the columns; or a text that runs beneath the row before it. */
 export type Row = readonly string[] | { readonly beneath: string };
 
 /**
  * Rows under their titles, columns aligned, in lines of at most `width` as far as the columns that do not wrap allow.
- * Texts come from files and people: whatever would act on a terminal is made visible.
+ * Texts come from files and people: whatever would act on a terminal is made visible. `indent`: of texts beneath;
+ * without it they begin at the second column.
  */
-export function table(columns: readonly Column[], rows: readonly Row[], width = lineWidth): string {
+export function table(
+  columns: readonly Column[],
+  rows: readonly Row[],
+  width: number = lineWidth,
+  indent?: number,
+): string {
   const cellsOf = (row: readonly string[]) => columns.map((_, n) => plain(row[n] ?? ''));
   const cells = rows.map((row) => ('beneath' in row ? row : cellsOf(row)));
   const widths = columnWidths(
@@ -38,10 +44,10 @@ export function table(columns: readonly Column[], rows: readonly Row[], width = 
       .map((cell, n) => pad(cell, widths[n] ?? 0, columns[n]?.right === true))
       .join(gap)
       .trimEnd();
-  const indent = ' '.repeat((widths[0] ?? 0) + gap.length);
+  const margin = ' '.repeat(indent ?? (widths[0] ?? 0) + gap.length);
   const body = cells.flatMap((row) => {
     if ('beneath' in row)
-      return wrapText(plain(row.beneath), width - indent.length).map((part) => indent + part);
+      return wrapText(plain(row.beneath), width - margin.length).map((part) => margin + part);
     const parts = wrapped === -1 ? [''] : wrapText(row[wrapped] ?? '', widths[wrapped] ?? 0);
     return parts.map((part, n) =>
       line(row.map((cell, column) => (column === wrapped ? part : n === 0 ? cell : ''))),

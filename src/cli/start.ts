@@ -11,6 +11,11 @@ if (major < 22 || (major === 22 && minor < 12)) {
   );
   process.exitCode = 1;
 } else {
+  // Whoever reads the output may have seen enough ('... | head').
+  process.stdout.on('error', (error: NodeJS.ErrnoException) => {
+    if (error.code !== 'EPIPE') throw error;
+    process.exit(0);
+  });
   const { main } = await import('./main.ts');
   process.exitCode = await main(process.argv.slice(2));
 }

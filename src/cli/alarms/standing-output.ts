@@ -3,7 +3,7 @@ import { acknowledgeCommand, shortAdvice, troubleName } from '../../advisory/wor
 import { inDisplayUnit } from '../../config/print-value.ts';
 import type { Severity } from '../../config/site.ts';
 import type { AlarmSubject } from '../../detection/alarm.ts';
-import type { StandingNow } from '../../service/standing-now.ts';
+import { type StandingNow, severityNow } from '../../service/standing-list.ts';
 import { bareUnit, limitJson } from '../level-json.ts';
 import { type Row, table } from '../output.ts';
 import { timeText } from '../when.ts';
@@ -19,7 +19,7 @@ export function standingJson(now: StandingNow): Record<string, unknown> {
   return {
     number: life.number,
     kind: subject.kind === 'limit' ? 'alarm' : 'trouble',
-    severity: shownSeverity(now),
+    severity: severityNow(now),
     condition: state.condition,
     standing: now.standing,
     suppressions: state.suppressions,
@@ -51,13 +51,12 @@ export function standingText(all: readonly StandingNow[], timeZone: string): str
   if (all.length === 0) return 'nothing stands\n';
   const order: readonly Severity[] = ['danger', 'alert', 'trouble'];
   const sorted = [...all].sort(
-    (a, b) =>
-      order.indexOf(shownSeverity(a)) - order.indexOf(shownSeverity(b)) || a.life.number - b.life.number,
+    (a, b) => order.indexOf(severityNow(a)) - order.indexOf(severityNow(b)) || a.life.number - b.life.number,
   );
   const rows = sorted.flatMap((now): Row[] => [
     [
       String(now.life.number),
-      shownSeverity(now),
+      severityNow(now),
       whereText(now.alarm.subject),
       timeText(now.alarm.state.sinceMs ?? now.life.raisedWallMs, timeZone),
       now.standing,
@@ -81,12 +80,6 @@ export function whereText(subject: AlarmSubject): string {
   if (subject.kind === 'limit') return `${subject.machineId}/${subject.pointId} ${subject.bandId}`;
   if (subject.machineId === null) return subject.source ?? 'the site';
   return subject.pointId === null ? subject.machineId : `${subject.machineId}/${subject.pointId}`;
-}
-
-/** The condition now; of what has returned, the highest it had. */
-function shownSeverity({ alarm, life }: StandingNow): Severity {
-  const { condition } = alarm.state;
-  return condition === 'normal' ? life.severity : condition;
 }
 
 function beneath(now: StandingNow, timeZone: string): string[] {

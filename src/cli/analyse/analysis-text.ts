@@ -11,7 +11,7 @@ import { noMachine } from './points-of-channels.ts';
 const mostPeaks = 12;
 
 /** What an analysis gave, for people: three or four significant figures. */
-export function analysisText({ file, analysis, bands }: AnalysedFile): string {
+export function analysisText({ file, analysis, bands }: AnalysedFile, spectrum: boolean): string {
   const { start, sampleRateHz, frames, header } = analysis;
   const startText = new Date(start.startMs).toISOString().slice(0, 19).replace('T', ' ');
   const length =
@@ -33,7 +33,10 @@ export function analysisText({ file, analysis, bands }: AnalysedFile): string {
       '  ',
     ),
     ...analysis.measurements.map((measurement, n) =>
-      channelText(measurement, bands[n] ?? [], analysis.quality),
+      [
+        channelText(measurement, bands[n] ?? [], analysis.quality),
+        spectrum ? spectrumText(measurement, analysis.densities[n] ?? null) : '',
+      ].join(''),
     ),
   ].join('');
 }
@@ -152,6 +155,19 @@ function peakTable(peaks: readonly SpectralPeak[], { unit, averaging }: Measurem
       78,
     ),
   )}${more}`;
+}
+
+function spectrumText({ averaging, unit }: Measurement, density: Float64Array | null): string {
+  if (density === null || averaging === null) return '\n  no spectrum\n';
+  const rows = Array.from(density, (value, line) => [
+    printNumber(line * averaging.lineSpacingHz, 7),
+    printNumber(value, 4),
+  ]);
+  const columns = [
+    { title: 'Hz', right: true },
+    { title: `density, (${unit})²/Hz`, right: true },
+  ];
+  return `\n${indented(table(columns, rows, 78))}`;
 }
 
 function indented(text: string): string {

@@ -1,7 +1,7 @@
 import type { Command } from 'commander';
 import { plain } from '../../advisory/escape.ts';
 import { commandAlarm } from '../../service/alarm-command.ts';
-import { standingNow } from '../../service/standing-now.ts';
+import { listStanding } from '../../service/standing-list.ts';
 import { readJournal } from '../../store/journal.ts';
 import { journalJson, journalText } from '../alarms/journal-output.ts';
 import { standingJson, standingText, whereText } from '../alarms/standing-output.ts';
@@ -83,7 +83,7 @@ function standing(options: AlarmsOptions, io: CommandIo): Promise<ExitStatus> {
   }
   return withSite(io, options.site, ({ site }) =>
     withLedger(io, site, 'reader', async (ledger) => {
-      const all = await ledger.read((reader) => standingNow(reader, site));
+      const all = await ledger.read((reader) => listStanding(reader, site));
       if (options.json === true) writeJson(io.out, all.map(standingJson));
       else io.out.write(standingText(all, site.timeZone));
       return 0;

@@ -38,7 +38,7 @@ export const addAnalyse: AddCommand = (program, io, done) => {
     .option('--overlap <percent>', '0 to 95 (default: 50)')
     .option('--segment <samples>', 'a power of two (default: as long as lines 1.6 Hz apart need)')
     .option('--band <from..to[:quantity]>', 'Hz; may be given several times', collect)
-    .option('--spectrum', 'the density too (with --json)')
+    .option('--spectrum', 'the density of every line too')
     .option('--json', 'one object a file; several files: an array')
     .addHelpText(
       'after',
@@ -58,8 +58,6 @@ type Planner = { readonly largestBytes: number; readonly planFor: (path: string)
 const usualLargestBytes = 4e9;
 
 function analyse(files: readonly string[], options: AnalyseOptions, io: CommandIo): ExitStatus {
-  if (options.spectrum === true && options.json !== true)
-    return misused(io, '--spectrum is for programs: give --json too');
   const planner = plannerOf(options, io);
   if ('problems' in planner) return misused(io, planner.problems.join('\n'));
   const objects: unknown[] = [];
@@ -75,7 +73,10 @@ function analyse(files: readonly string[], options: AnalyseOptions, io: CommandI
     }
     for (const note of notes(analysed)) io.err.write(`${printableName(file)}: note: ${note}\n`);
     if (options.json === true) objects.push(analysisJson(analysed, options.spectrum === true));
-    else io.out.write(`${objects.push(null) > 1 ? '\n' : ''}${analysisText(analysed)}`);
+    else
+      io.out.write(
+        `${objects.push(null) > 1 ? '\n' : ''}${analysisText(analysed, options.spectrum === true)}`,
+      );
   }
   if (options.json === true && (objects.length > 0 || files.length > 1))
     writeJson(io.out, files.length === 1 ? objects[0] : objects);

@@ -1,4 +1,4 @@
-import type { Band, Limit, Site } from '../config/site.ts';
+import type { Band, Limit, Severity, Site } from '../config/site.ts';
 import type { AlarmStanding } from '../detection/alarm.ts';
 import { standing } from '../detection/alarm-state.ts';
 import { type StandingLife, standingAlarms } from '../store/alarms.ts';
@@ -19,7 +19,7 @@ export interface StandingNow extends StandingLife {
 }
 
 /** Everything that stands, by number. */
-export async function standingNow(reader: Reader, site: Site): Promise<StandingNow[]> {
+export async function listStanding(reader: Reader, site: Site): Promise<StandingNow[]> {
   const found: StandingNow[] = [];
   for (const { alarm, life } of await standingAlarms(reader)) {
     const { subject } = alarm;
@@ -58,4 +58,10 @@ async function detailOf(reader: Reader, number: number): Promise<string | null> 
   const rows = await readJournal(reader, { number, limit: 20 });
   const details = rows.map(({ reason }) => reason.detail ?? reason.file);
   return details.find((detail): detail is string => typeof detail === 'string') ?? null;
+}
+
+/** The condition now; of what has returned or is latched, the highest it had. */
+export function severityNow({ alarm, life }: StandingLife): Severity {
+  const { condition } = alarm.state;
+  return condition === 'normal' ? life.severity : condition;
 }

@@ -1,0 +1,187 @@
+import type { Writable } from 'node:stream';
+import { plain } from '../../advisory/escape.ts';
+import { bareLevel, distanceText, levelText, unitText } from '../../advisory/level-words.ts';
+import { printFrequency, printNumber } from '../../config/print-value.ts';
+import { type Band, type Limit, type Point, pointPath, type Site } from '../../config/site.ts';
+import type { BandTrend, TrendRow } from '../../service/trend-of-band.ts';
+import { bareUnit, levelJson, limitJson } from '../level-json.ts';
+import { csvLine, table } from '../output.ts';
+import { timeText } from '../when.ts';
+
+/** A band's trend with what it belongs to. */
+export interface ShownTrend {
+  readonly site: Site;
+  readonly point: Point;
+  readonly band: Band;
+  readonly trend: BandTrend;
+}
+
+function limitsOf({ point, band }: ShownTrend): readonly Limit[] {
+  return point.limits.filter(({ bandId }) => bandId === band.id);
+}
+
+export function trendJson(shown: ShownTrend): Record<string, unknown> {
+  const { point, band, trend } = shown;
+  return {
+    machine: point.machineId,
+    point: point.id,
+    band: band.id,
+    quantity: band.quantity,
+    unit: bareUnit(band.display),
+    detector: band.display.detector,
+    limits: limitsOf(shown).map(({ id, kind, side, alert, danger }) => ({
+      limit: id,
+      kind,
+      side,
+      alert: limitJson(alert, band.display),
+      danger: limitJson(danger, band.display),
+    })),
+    series: trend.series.map(({ id, fromHz, toHz, beganMs, fingerprint }) => ({
+      series: id,
+      began: new Date(beganMs).toISOString(),
+      from_hz: fromHz,
+      to_hz: toHz,
+      fingerprint,
+    })),
+    levels: trend.rows.map((row) => {
+      const { level, interval_low, interval_high } = levelJson(row, band.display);
+      return {
+        time: new Date(row.usedMs).toISOString(),
+        level,
+        interval_low,
+        interval_high,
+        confidence_percent: row.confidencePercent,
+        at_least: row.atLeast,
+        in_trend: row.inTrend,
+        machine_state: row.machineState,
+        speed_rpm: row.speedRpm,
+        load_percent: row.loadPercent,
+        flags: row.flags,
+        series: row.seriesId,
+      };
+    }),
+  };
+}
+
+const csvHeading = [
+  ...['time', 'machine', 'point', 'band', 'level', 'interval_low', 'interval_high', 'confidence_percent'],
+  ...[
+    'unit',
+    'detector',
+    'at_least',
+    'in_trend',
+    'machine_state',
+    'speed_rpm',
+    'load_percent',
+    'flags',
+    'series',
+  ],
+];
+
+export function writeTrendCsv(out: Writable, { point, band, trend }: ShownTrend): void {
+  out.write(csvLine(csvHeading));
+  for (const row of trend.rows) {
+    const { level, interval_low, interval_high, unit, detector } = levelJson(row, band.display);
+    out.write(
+      csvLine([
+        new Date(row.usedMs).toISOString(),
+        point.machineId,
+        point.id,
+        band.id,
+        level,
+        interval_low,
+        interval_high,
+        row.confidencePercent,
+        unit,
+        detector,
+        row.atLeast,
+        row.inTrend,
+        row.machineState,
+        row.speedRpm,
+        row.loadPercent,
+        row.flags.join(' '),
+        row.seriesId,
+      ]),
+    );
+  }
+}
+
+export function trendText(shown: ShownTrend): string {
+  const { site, point, band, trend } = shown;
+  const { display } = band;
+  const limits = limitsOf(shown).map((limit) => limitLine(limit, band));
+  const head = [
+    `${pointPath(point)} ${band.id}, ${unitText(display)}; times of ${site.timeZone}`,
+    ...(limits.length === 0 ? ['no limit: this band can never alarm'] : limits),
+  ];
+  const lines = head.map((line) => `${plain(line)}\n`);
+  if (trend.rows.length === 0) return `${lines.join('')}no level in this time\n`;
+  const confidence = trend.rows.at(-1)?.confidencePercent;
+  const columns = [
+    { title: 'time' },
+    { title: 'level', right: true },
+    { title: `interval${confidence == null ? '' : ` (${printNumber(confidence)} %)`}` },
+    { title: 'limit' },
+    { title: 'remarks', wraps: true },
+  ];
+  return [
+    ...lines,
+    ...(trend.cut
+      ? [`the newest ${trend.rows.length}; --since shows older ones, --csv and --json all\n`]
+      : []),
+    '\n',
+    table(columns, rowsOf(shown)),
+  ].join('');
+}
+
+function limitLine(limit: Limit, band: Band): string {
+  const parts = (['alert', 'danger'] as const).flatMap((severity) => {
+    const value = limit[severity];
+    return value === null
+      ? []
+      : [`${severity} ${limit.side === 'upper' ? 'above' : 'below'} ${levelText(value, band.display)}`];
+  });
+  return `${parts.join(', ')} (${limit.id})`;
+}
+
+function rowsOf(shown: ShownTrend): string[][] {
+  const { site, band, trend } = shown;
+  const limits = limitsOf(shown);
+  return trend.rows.flatMap((row) => {
+    const series = row.seriesBreak ? [['', '', '', '', seriesText(row, trend)]] : [];
+    const cells = [
+      timeText(row.usedMs, site.timeZone),
+      `${row.atLeast ? '>= ' : ''}${bareLevel(row.level, band.display)}`,
+      `${bareLevel(row.intervalLow, band.display)} to ${bareLevel(row.intervalHigh, band.display)}`,
+      passedText(row, limits),
+      remarksOf(row),
+    ];
+    return [...series, cells];
+  });
+}
+
+function seriesText(row: TrendRow, { series }: BandTrend): string {
+  const own = series.find(({ id }) => id === row.seriesId);
+  const edges = own === undefined ? '' : `, ${printFrequency(own.fromHz)} to ${printFrequency(own.toHz)}`;
+  return `new series from here${edges}: its settings differ, so levels above and below must not be compared`;
+}
+
+/** The most severe limit that the level passes, whatever its delays. */
+function passedText(row: TrendRow, limits: readonly Limit[]): string {
+  for (const severity of ['danger', 'alert'] as const) {
+    for (const limit of limits) {
+      const value = limit[severity];
+      if (value === null) continue;
+      if (limit.side === 'upper' ? row.level > value : row.level < value)
+        return `${severity}, ${distanceText(row.level, value)}`;
+    }
+  }
+  return '';
+}
+
+function remarksOf(row: TrendRow): string {
+  const state = row.machineState === 'running' ? [] : [`${row.machineState}, not in the trend`];
+  const out = row.machineState === 'running' && !row.inTrend ? ['not in the trend'] : [];
+  const flags = row.flags.filter((flag) => flag !== 'not-running' && flag !== 'transient');
+  return [...state, ...out, ...flags].join(', ');
+}
