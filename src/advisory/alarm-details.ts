@@ -31,7 +31,7 @@ export function alarmDetails(alarm: AlarmFacts, timeZone: string, writtenMs: num
     ],
     ['Before', beforeDetail(alarm)],
     ...(alarm.trend === null ? [] : [['Trend', foreign(alarm.trend)] as const]),
-    ...(alarm.lines === null ? [] : linesDetails(alarm.lines, timeZone)),
+    ...(alarm.lines === null ? [] : linesDetails(withSureOrders(alarm.lines, alarm.recording), timeZone)),
     ...otherPointsDetail(alarm.otherPoints),
     ['Recording', recordingDetail(alarm.recording, timeZone)],
     ...flagsDetail(alarm.recording),
@@ -65,6 +65,18 @@ function beforeDetail({ before, band }: AlarmFacts): string {
   if (before.weekBefore !== null) said.push(`a week ago ${bareLevel(before.weekBefore.level, band.display)}`);
   if (before.baseline !== null) said.push(`baseline ${bareLevel(before.baseline, band.display)}`);
   return said.length === 0 ? 'no earlier level under these settings' : said.join('; ');
+}
+
+/** An order is named where the speed is known well enough to tell it from its neighbours: within a quarter order. */
+const sureOrder = 0.25;
+
+function withSureOrders(facts: LinesFacts, { speed }: RecordingFacts): LinesFacts {
+  if (speed === null) return facts;
+  const largest = (sureOrder * speed.rpm) / speed.uncertaintyRpm;
+  const lines = facts.lines.map((line) =>
+    line.order !== null && line.order > largest ? { ...line, order: null } : line,
+  );
+  return { ...facts, lines };
 }
 
 function linesDetails(facts: LinesFacts, timeZone: string): Detail[] {

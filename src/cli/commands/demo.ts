@@ -1,13 +1,16 @@
 import { existsSync, mkdirSync, readdirSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
 import { join, relative, resolve } from 'node:path';
+import { commandAlarm } from '../../service/alarm-command.ts';
 import { SteppedClock } from '../../service/clock.ts';
 import { noLog } from '../../service/log.ts';
+import { summaryNow } from '../../service/morning.ts';
 import { Service } from '../../service/service.ts';
 import { readSiteFile } from '../../service/site-in-force.ts';
+import { standingAlarms } from '../../store/alarms.ts';
 import type { AddCommand, CommandIo, ExitStatus } from '../command.ts';
 import { catchMails, type MailCatcher } from '../demo/mail-catcher.ts';
 import { days } from '../demo/scenario.ts';
-import { beginMs, timeLapse } from '../demo/time-lapse.ts';
+import { beginMs, type PersonsPart, timeLapse } from '../demo/time-lapse.ts';
 
 /** `demo`: the invented site, from generated recordings to summary and mails, in a folder of its own. */
 export const addDemo: AddCommand = (program, io, done) => {
@@ -66,7 +69,8 @@ async function tell(
   }
   const { drop } = siteFile.site.folders;
   try {
-    await timeLapse(service, clock, drop, [], progress(io, storyDays, catcher), storyDays);
+    await timeLapse(service, clock, drop, parts, progress(io, storyDays, catcher), storyDays);
+    io.out.write(`${await lastSummary(service, clock.wallMs())}`);
   } finally {
     await service.stop();
   }
@@ -94,15 +98,55 @@ function progress(io: CommandIo, storyDays: number, catcher: MailCatcher): (day:
   };
 }
 
+/** What the people of the site do in the story. */
+const parts: readonly PersonsPart[] = [
+  {
+    day: 8,
+    act: (service, nowMs) => acknowledgeAll(service, nowMs, 'M. Reilly', 'logger of the fan restarted'),
+  },
+  {
+    day: 35,
+    act: (service, nowMs) =>
+      acknowledgeAll(service, nowMs, 'M. Reilly', 'balancing ordered for the next stop'),
+  },
+];
+
+async function acknowledgeAll(service: Service, wallMs: number, by: string, comment: string): Promise<void> {
+  await service.ledger.transact(async (writer) => {
+    for (const { life } of await standingAlarms(writer)) {
+      await commandAlarm(
+        writer,
+        life.number,
+        { kind: 'acknowledge', comment },
+        { by, via: 'command', wallMs },
+      );
+    }
+  });
+}
+
+/** The story ends with a morning, so what the summary says now is the last one that was sent. */
+async function lastSummary(service: Service, nowMs: number): Promise<string> {
+  const { ledger, view, startedMs } = service;
+  return (await summaryNow({ ledger, view, nowMs, upSinceMs: startedMs })).mail.text;
+}
+
 function show(folder: string, catcher: MailCatcher, io: CommandIo): void {
   const here = (path: string) => relative(io.workingFolder, join(folder, path)) || '.';
-  const summaries = readdirSync(join(folder, 'data/summary')).filter((name) => /^\d/.test(name));
-  io.out.write(`\nMails (${catcher.mails.length}):     ${here('mails')}/*.eml\n`);
-  for (const name of catcher.mails.filter((one) => !/_Morning|summary/i.test(one)).slice(-12))
-    io.out.write(`             ${name}\n`);
+  const summaries = existsSync(join(folder, 'data/summary'))
+    ? readdirSync(join(folder, 'data/summary')).filter((name) => /^\d/.test(name))
+    : [];
+  const told = catcher.mails.filter((name) => !name.includes('_summary_'));
+  io.out.write(`\n${'-'.repeat(72)}\n`);
   io.out.write(
-    `Summaries (${summaries.length}): ${here('data/summary')}/*.html, the last one as latest.html\n`,
+    `Mails:      ${here('mails')}/, ${catcher.mails.length} files; alarms, troubles and the service among them:\n`,
   );
-  io.out.write(`Ledger:      ${here('data/ledger.sqlite')}\n`);
-  io.out.write(`Site file:   ${here('site.yaml')}\n`);
+  for (const name of told) io.out.write(`              ${name}\n`);
+  io.out.write(
+    `Summaries:  ${here('data/summary')}/, ${summaries.length} mornings; the last one is latest.html\n`,
+  );
+  io.out.write(`Ledger:     ${here('data/ledger.sqlite')}\n`);
+  io.out.write(`Site file:  ${here('site.yaml')}\n\n`);
+  io.out.write(`Look further, for example:\n`);
+  io.out.write(`  humledger alarms --site ${here('site.yaml')}\n`);
+  io.out.write(`  humledger trend pump-2/de-v overall --site ${here('site.yaml')}\n`);
 }

@@ -45,10 +45,16 @@ function stampOf(ms: number): string {
   return new Date(ms).toISOString().slice(0, 16).replace(':', '');
 }
 
-/** First words of the subject and the recipient, in letters that every file system takes. */
+/** What the mail is (ALERT-5, summary, ...) and to whom it goes, in letters that every file system takes. */
 function nameOfMail(bytes: Buffer, to: readonly { readonly address: string }[]): string {
   const head = bytes.subarray(0, 4096).toString('latin1').split('\r\n\r\n')[0] ?? '';
-  const subject = /^Subject: (.*)$/im.exec(head)?.[1] ?? 'no-subject';
-  const plain = (text: string) => text.replace(/[^A-Za-z0-9]+/g, '-').replace(/^-|-$/g, '');
-  return `${plain(subject.replace(/=\?[^?]*\?[^?]*\?/g, '')).slice(0, 40)}_${plain(to[0]?.address.split('@')[0] ?? '')}`;
+  const encoded = /^Subject: (.*(?:\r\n[ \t].*)*)$/im.exec(head)?.[1] ?? '';
+  // RFC 2047: Q-encoded words; enough is read of them for a file's name.
+  const subject = encoded
+    .replace(/=\?[^?]*\?Q\?/gi, '')
+    .replace(/=3A/g, ':')
+    .replace(/_/g, ' ');
+  const alarm = /^(ALERT|DANGER|TROUBLE) (\d+)/.exec(subject);
+  const kind = alarm !== null ? `${alarm[1]}-${alarm[2]}` : /service/.test(subject) ? 'service' : 'summary';
+  return `${kind}_${to[0]?.address.split('@')[0]?.replace(/[^A-Za-z0-9]+/g, '-') ?? ''}`;
 }

@@ -20,13 +20,13 @@ const momentsMs: readonly number[] = [
   20_000,
   6 * minuteMs,
   11 * minuteMs,
-  ...[30, 60, 90, 120, 150].map((minutes) => minutes * minuteMs),
+  ...[30, 60, 90, 120].map((minutes) => minutes * minuteMs),
 ];
 
 /** What a person of the site does on a day of the story. */
 export interface PersonsPart {
   readonly day: number;
-  act(service: Service): Promise<void>;
+  act(service: Service, nowMs: number): Promise<void>;
 }
 
 /** Runs the real service through the story; its clock steps from moment to moment. `told`: after each day. */
@@ -39,23 +39,29 @@ export async function timeLapse(
   storyDays: number = days,
 ): Promise<void> {
   const stepsADay = steps / days;
-  for (let step = 0; step < storyDays * stepsADay; step++) {
+  const round = async (atMs: number) => {
+    clock.advance(Math.max(0, atMs - clock.wallMs()));
+    await service.intakeRound();
+    const summary = await service.morning();
+    await service.mailRound();
+    return summary;
+  };
+  for (let step = 0; step < storyDays * stepsADay + lastNightSteps; step++) {
     const startMs = beginMs + step * stepMs;
     for (const { name, bytes } of filesOfStep(step, startMs, seed))
       writeFileSync(join(dropFolder, name), bytes);
-    for (const moment of momentsMs) {
-      const atMs = startMs + recordedAfterMs + moment;
-      clock.advance(Math.max(0, atMs - clock.wallMs()));
-      await service.intakeRound();
-      await service.morning();
-      await service.mailRound();
-    }
+    for (const moment of momentsMs) await round(startMs + recordedAfterMs + moment);
     if ((step + 1) % stepsADay !== 0) continue;
     const day = (step + 1) / stepsADay;
-    for (const part of parts) if (part.day === day) await part.act(service);
+    for (const part of parts) if (part.day === day) await part.act(service, clock.wallMs());
     told(day);
   }
+  // The story ends with a morning.
+  while ((await round(clock.wallMs() + 15 * minuteMs)) === null);
 }
+
+/** Recordings of the night before the last morning. */
+const lastNightSteps = 2;
 
 /** A recording lies in the folder ten seconds after it began. */
 const recordedAfterMs = 10_000;
