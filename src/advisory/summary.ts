@@ -6,7 +6,7 @@ import { bearingOf, byUrgency, gather, largestShare, shareOfAlert } from './rank
 import { historyLines, recordingLines, serviceLines } from './summary-counts.ts';
 import type { BandNow, PointNow, SummaryFacts } from './summary-facts.ts';
 import { type Finding, knownFinding, needFinding, worseFinding } from './summary-findings.ts';
-import { placeText, troubleName } from './wording.ts';
+import { isReturned, placeText, troubleName } from './wording.ts';
 
 /** The morning as data: what needs a person first, in ordered sections, before it becomes text or HTML. */
 export interface Morning {
@@ -42,6 +42,8 @@ export interface Worse {
  */
 export function needsPerson(standing: Standing, nowMs: number): boolean {
   if (['shelved', 'suppressed', 'out-of-service', 'normal'].includes(standing.standing)) return false;
+  // Nothing is left to do about a trouble that is over: being told here acknowledges it.
+  if (standing.kind === 'trouble' && isReturned(standing)) return false;
   if (needsAcknowledging(standing)) return true;
   if (standing.standing === 'latched-acknowledged') return false;
   if (standing.respondByMs !== null && standing.respondByMs < nowMs) return true;
