@@ -6,35 +6,41 @@ import { noteAccepted, noteRefused } from './mail-refused.ts';
 import { type MailTools, mailerOf, wallMsOf } from './mail-tools.ts';
 
 /**
- * One attempt at one delivery, and its answer in the ledger. A kill between the server's answer and its storing means
- * that the mail goes out again, with the same bytes and the same Message-ID.
+ * One attempt at one delivery, then its answer in the ledger. A kill between the two means that the mail goes out again,
+ * with the same bytes and the same Message-ID. A ledger that cannot be written between the two must not mean that: the
+ * rounds hold on to the answer and store it before anything else is sent.
  */
-export interface Attempted {
-  readonly state: DeliveryStep['state'];
-  /** As in AttemptAnswer, of the servers taken together. */
-  readonly server: AttemptAnswer['server'];
-  /** Until the same delivery is tried again; for those that wait. */
+/** What a server said to one attempt; to be kept in the ledger. */
+export interface Answered {
+  readonly due: DueDelivery;
+  readonly answer: AttemptAnswer;
+  readonly next: DeliveryStep;
+  readonly triedMs: number;
   readonly pauseMs: number;
 }
 
-/** In `AttemptAnswer.server`, a server that was spoken to is worth more than one that was not. */
-export async function attempt(tools: MailTools, mail: MailSettings, due: DueDelivery): Promise<Attempted> {
+export async function handOver(tools: MailTools, mail: MailSettings, due: DueDelivery): Promise<Answered> {
   const { message, delivery } = due;
   tools.step('delivery: attempt begun');
   const answer = await sendTo(tools, mail, { ...delivery, from: mail.from });
   tools.step('delivery: answer received');
-  const nowMs = wallMsOf(tools.clock);
+  const triedMs = wallMsOf(tools.clock);
   const before = { createdMs: message.createdMs, danger: message.priority === 0, tries: delivery.tries };
-  const next = afterAttempt(before, answer, nowMs);
+  const next = afterAttempt(before, answer, triedMs);
+  const answered = { due, answer, next, triedMs, pauseMs: pauseMs(before, triedMs) };
+  logAnswer(tools, answered);
+  return answered;
+}
+
+/** One transaction: the delivery's state, and what a refusal or an acceptance does to the trouble 'mail refused'. */
+export async function keepAnswer(tools: MailTools, { due, answer, next, triedMs }: Answered): Promise<void> {
   await tools.ledger.transact(async (writer) => {
-    const stored = await storeAnswer(writer, delivery.mailId, { ...next, triedMs: nowMs });
+    const stored = await storeAnswer(writer, due.delivery.mailId, { ...next, triedMs });
     if (!stored) return;
-    if (next.state === 'failed') await noteRefused(writer, tools.view(), due, answer.answer, nowMs);
-    if (next.state === 'accepted') await noteAccepted(writer, tools.view(), nowMs);
+    if (next.state === 'failed') await noteRefused(writer, tools.view(), due, answer.answer, triedMs);
+    if (next.state === 'accepted') await noteAccepted(writer, tools.view(), triedMs);
   });
   tools.step('delivery: answer stored');
-  logAnswer(tools, due, answer, next);
-  return { state: next.state, server: answer.server, pauseMs: pauseMs(before, nowMs) };
 }
 
 interface Sending {
@@ -64,7 +70,7 @@ export function eitherAnswer(first: AttemptAnswer, second: AttemptAnswer): Attem
   return server === undefined ? { kind, answer } : { kind, answer, server };
 }
 
-function logAnswer(tools: MailTools, due: DueDelivery, answer: AttemptAnswer, next: DeliveryStep): void {
+function logAnswer(tools: MailTools, { due, answer, next }: Answered): void {
   const { message, delivery } = due;
   const about = {
     kind: message.kind,

@@ -1,10 +1,11 @@
 import { greatestPauseMs } from '../advisory/outbox.ts';
 import type { MailSettings } from '../config/site.ts';
 import { type DueDelivery, dueDeliveries } from '../store/deliveries.ts';
+import { LedgerError } from '../store/ledger-error.ts';
 import { hastenWaiting, waitingMail, waitsBeyond } from '../store/waiting-mail.ts';
 import { announceStart, type StartKind } from './announce.ts';
 import { type Composed, closeThreads, composeDue } from './compose.ts';
-import { attempt } from './delivery.ts';
+import { type Answered, handOver, keepAnswer } from './delivery.ts';
 import { type MailerFor, type MailTools, wallMsOf } from './mail-tools.ts';
 import { morning } from './morning.ts';
 import { longestOutMs, ServerWatch } from './server-watch.ts';
@@ -24,6 +25,7 @@ export interface MailRound {
 /** A round ends after so many attempts, so that a stop or a reload is not held up for long. */
 const mostAttempts = 100;
 const leastAgainMs = 250;
+const ledgerAgainMs = 5_000;
 /** Beyond every due time. */
 const whenever = Number.MAX_SAFE_INTEGER;
 
@@ -36,6 +38,8 @@ export class MailRounds {
   readonly #tools: MailTools;
   readonly #watch: ServerWatch;
   #running: Promise<MailRound> | null = null;
+  /** An answer that the ledger could not take yet; nothing is sent before it has. */
+  #unstored: Answered | null = null;
   #morning: Promise<string | null> | null = null;
 
   constructor(tools: MailTools) {
@@ -45,12 +49,12 @@ export class MailRounds {
 
   /** At the start of a run; a clean start is no news. */
   async announce(how: StartKind): Promise<void> {
-    await announceStart(this.#tools, how);
+    await this.#unlessLedgerFails(() => announceStart(this.#tools, how), false);
   }
 
   /** The morning summary, where it is due: its local date, else null. */
   morning(): Promise<string | null> {
-    this.#morning ??= morning(this.#tools).finally(() => {
+    this.#morning ??= this.#unlessLedgerFails(() => morning(this.#tools), null).finally(() => {
       this.#morning = null;
     });
     return this.#morning;
@@ -62,15 +66,28 @@ export class MailRounds {
       const running = await this.#running;
       if (!flush) return running;
     }
-    this.#running = this.#round(flush).finally(() => {
+    const nothing = { composed: 0, delivered: 0, failed: 0, waiting: 1, againInMs: ledgerAgainMs };
+    this.#running = this.#unlessLedgerFails(() => this.#round(flush), nothing).finally(() => {
       this.#running = null;
     });
     return this.#running;
   }
 
+  /** A ledger that is full or held by somebody else is said, and everything is tried again later. */
+  async #unlessLedgerFails<T>(work: () => Promise<T>, otherwise: T): Promise<T> {
+    try {
+      return await work();
+    } catch (error) {
+      if (!(error instanceof LedgerError)) throw error;
+      this.#tools.complaints.say('ledger', `${error.message}; mails wait`);
+      return otherwise;
+    }
+  }
+
   async #round(flush: boolean): Promise<MailRound> {
     const counts = { composed: 0, delivered: 0, failed: 0 };
     const { mail } = this.#tools.view().site;
+    if (this.#unstored !== null) await this.#keep(this.#unstored);
     await closeThreads(this.#tools);
     let composed: Composed | null = null;
     if (mail !== null) {
@@ -93,14 +110,22 @@ export class MailRounds {
   }
 
   async #attempt(mail: MailSettings, due: DueDelivery) {
-    const attempted = await attempt(this.#tools, mail, due);
-    if (this.#watch.note(attempted)) {
+    const answered = await handOver(this.#tools, mail, due);
+    this.#unstored = answered;
+    const isBack = this.#watch.note(answered);
+    await this.#keep(answered);
+    if (isBack) {
       const nowMs = wallMsOf(this.#tools.clock);
       await this.#tools.ledger.transact((writer) =>
         hastenWaiting(writer, { laterThanMs: nowMs, dueMs: nowMs }),
       );
     }
-    return { state: attempted.state, stop: this.#watch.isOut };
+    return { state: answered.next.state, stop: this.#watch.isOut };
+  }
+
+  async #keep(answered: Answered): Promise<void> {
+    await keepAnswer(this.#tools, answered);
+    this.#unstored = null;
   }
 
   /** What is to be tried now; null: nothing, or the server is out and its pause is not over. */

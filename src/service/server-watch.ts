@@ -1,4 +1,4 @@
-import type { Attempted } from './delivery.ts';
+import type { Answered } from './delivery.ts';
 
 /**
  * What the rounds remember of the mail server, so that one failure is not repeated for every mail that waits. In
@@ -38,7 +38,7 @@ export class ServerWatch {
   }
 
   /** Takes note of an attempt; true where the server has just come back. */
-  note({ state, server, pauseMs }: Attempted): boolean {
+  note({ next, answer: { server }, pauseMs }: Answered): boolean {
     this.#lastTryMs = this.#monotonicMs();
     this.#goneInARow = server === 'gone' ? this.#goneInARow + 1 : 0;
     if (server === 'out' || this.#goneInARow >= 2) {
@@ -46,7 +46,7 @@ export class ServerWatch {
       return false;
     }
     if (server === 'gone') return false;
-    const back = this.#outUntilMs !== null && state === 'accepted';
+    const back = this.#outUntilMs !== null && next.state === 'accepted';
     this.#outUntilMs = null;
     return back;
   }

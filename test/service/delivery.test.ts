@@ -3,7 +3,8 @@
  */
 import { chmodSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
-import { describe, expect, it } from 'vitest';
+import Database from 'better-sqlite3';
+import { describe, expect, it, onTestFinished } from 'vitest';
 import type { MailServer } from '../../src/config/site.ts';
 import { type StepName, stepNames } from '../../src/service/steps.ts';
 import { deliveriesOf } from '../../src/store/deliveries.ts';
@@ -322,6 +323,32 @@ describe('a stop between any two steps', () => {
       expect(await counts(b)).toEqual({ waiting: 0, accepted: 4, failed: 0, superseded: 0 });
     },
   );
+});
+
+describe('a ledger that cannot be written', () => {
+  it('after the server has taken a mail does not send it again, and is said once', async () => {
+    const folder = temporaryFolder();
+    const server = await MailServerOnLoopback.start();
+    const b = await MailBench.start({ port: server.port, to: [{ address: ann }] }, folder);
+    await b.record('blower/de', { overall: 6 });
+    const other = new Database(b.ledger.path);
+    onTestFinished(() => {
+      other.close();
+    });
+    b.step = (name) => {
+      if (name === 'delivery: answer received') other.exec('begin immediate');
+    };
+    b.clock.advance(10_000);
+    expect(await b.rounds.round()).toMatchObject({ delivered: 0, waiting: 1, againInMs: 5_000 });
+    b.step = () => {};
+    expect(await b.rounds.round()).toMatchObject({ delivered: 0, waiting: 1 });
+    expect(server.got.length).toBe(1);
+    expect(b.logged.filter((line) => line.includes('locked by somebody else')).length).toBe(1);
+    other.exec('rollback');
+    expect(await b.rounds.round()).toMatchObject({ waiting: 0, againInMs: null });
+    expect(server.got.length).toBe(1);
+    expect(await counts(b)).toMatchObject({ accepted: 1, waiting: 0 });
+  });
 });
 
 it('rounds asked for at the same time are one', async () => {

@@ -55,7 +55,7 @@ export class MailBench {
 
   static async start(options: BenchOptions = {}, folder = temporaryFolder()): Promise<MailBench> {
     const clock = new SteppedClock(beginMs);
-    const ledger = await opened(folder, { wallMs: () => clock.wallMs() });
+    const ledger = await opened(folder, { wallMs: () => clock.wallMs(), wait: async () => {} });
     const site = benchSite(options, folder);
     const view = await ledger.transact(async (writer) => {
       const { ids } = await syncSite(writer, site, { text: 'site', wallMs: beginMs });
