@@ -1,11 +1,31 @@
 import { Command, CommanderError } from 'commander';
 import type { AddCommand, CommandIo, ExitStatus } from './command.ts';
+import { addAlarms } from './commands/alarms.ts';
 import { addAnalyse } from './commands/analyse.ts';
+import { addBackup } from './commands/backup.ts';
+import { addCheck } from './commands/check.ts';
 import { addDemo } from './commands/demo.ts';
+import { addDraft } from './commands/draft.ts';
+import { addFiles } from './commands/files.ts';
 import { addRun } from './commands/run.ts';
+import { addStatus } from './commands/status.ts';
+import { addSummary } from './commands/summary.ts';
+import { addTrend } from './commands/trend.ts';
 
 /** The commands, in the order in which help names them. */
-const commands: readonly AddCommand[] = [addRun, addAnalyse, addDemo];
+const commands: readonly AddCommand[] = [
+  addRun,
+  addDraft,
+  addCheck,
+  addAnalyse,
+  addStatus,
+  addFiles,
+  addSummary,
+  addTrend,
+  addAlarms,
+  addBackup,
+  addDemo,
+];
 
 const processIo: CommandIo = { out: process.stdout, err: process.stderr, workingFolder: process.cwd() };
 

@@ -1,0 +1,94 @@
+import { shareOfAlert } from '../../advisory/ranking.ts';
+import type { Limit } from '../../config/site.ts';
+import { limitFacts } from '../../service/fact-names.ts';
+import { levelJson, limitJson } from '../level-json.ts';
+import { type BandCheck, canAlarm, type LevelNow, type PointCheck } from './point-check.ts';
+import type { SiteCheck } from './site-check.ts';
+
+/** The same for programs: full precision, display units. */
+export function checkJson(check: SiteCheck): Record<string, unknown> {
+  const { site, retired, drop } = check;
+  return {
+    site: site.name,
+    file: site.file,
+    config_version: site.configVersion,
+    ready: check.hindrances.length === 0,
+    missing: [...check.hindrances, ...check.lacks],
+    counts: { points: check.points.length, limits: check.limits, recipients: check.recipients.length },
+    machines: site.machines.map((machine) => ({
+      machine: machine.id,
+      name: machine.name,
+      points: check.points.filter(({ point }) => point.machineId === machine.id).map(pointJson),
+    })),
+    warnings: [
+      ...check.remarks.map((text) => ({ line: null, column: null, text })),
+      ...site.warnings.map(({ line, column, text }) => ({ line, column, text })),
+    ],
+    unassigned: drop.unassigned.slice(0, 100),
+    unassigned_count: drop.unassigned.length,
+    would_retire: {
+      machines: retired.machines,
+      points: retired.points,
+      bands: retired.bands,
+      limits: retired.limits,
+      alarms_closed: retired.alarms,
+    },
+  };
+}
+
+function pointJson(check: PointCheck) {
+  const { point, waiting, ledger, averaging, usedMs } = check;
+  const iso = (ms: number | null) => (ms === null ? null : new Date(ms).toISOString());
+  return {
+    point: point.id,
+    name: point.name,
+    can_alarm: canAlarm(check),
+    files_in_drop: waiting?.files ?? 0,
+    files_in_archive: ledger?.archived.count ?? 0,
+    recordings_in_ledger: ledger?.recordings ?? 0,
+    newest_in_ledger: iso(ledger?.newestUsedMs ?? null),
+    levels_from: check.from,
+    recording_start: iso(usedMs),
+    remark: check.remark,
+    averaging: averaging && {
+      from: averaging.from === 'recording' ? 'recording' : 'site-file',
+      window: averaging.window,
+      overlap_percent: averaging.overlapPercent,
+      sample_rate_hz: averaging.sampleRateHz,
+      segment_samples: averaging.segmentSamples,
+      line_spacing_hz: averaging.lineSpacingHz,
+      averages: averaging.averages,
+      effective_averages: averaging.effectiveAverages,
+      used_percent: averaging.usedPercent,
+    },
+    bands: check.bands.map(bandJson),
+    quality: check.quality.map(({ flag, detail }) => ({ flag, detail })),
+  };
+}
+
+function bandJson({ band, now, limits }: BandCheck) {
+  return {
+    band: band.id,
+    quantity: band.quantity,
+    level: now && {
+      ...levelJson(now, band.display),
+      confidence_percent: now.confidencePercent,
+      at_least: now.atLeast,
+    },
+    limits: limits.map((limit) => ({
+      limit: limit.id,
+      side: limit.side,
+      alert: limitJson(limit.alert, band.display),
+      danger: limitJson(limit.danger, band.display),
+      share_of_alert: shareOf(limit, limit.alert, now),
+      share_of_danger: shareOf(limit, limit.danger, now),
+    })),
+  };
+}
+
+/** 1 at the limit; null without a level or a limit, or beyond all numbers. */
+function shareOf(limit: Limit, at: Limit['alert'], now: LevelNow | null): number | null {
+  if (at === null || now === null) return null;
+  const share = shareOfAlert(now.level, { ...limitFacts(limit), alert: at, danger: null });
+  return share === null || !Number.isFinite(share) ? null : share;
+}

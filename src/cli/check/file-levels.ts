@@ -1,0 +1,44 @@
+import { siteFiles } from '../../acquisition/file-pattern.ts';
+import { type Machine, type Point, pointPath, type Site } from '../../config/site.ts';
+import { analyseFile, type FileAnalysis } from '../../service/analyse-file.ts';
+
+/** Files that are analysed for want of a ledger; each takes up to a second or two. */
+const mostFiles = 200;
+
+export type FileAnswer = FileAnalysis | { readonly reason: string };
+
+/** Analyses recordings on the spot, each file once for all its points, in the way in which the service measures them. */
+export class FileLevels {
+  readonly #site: Site;
+  readonly #machines: ReadonlyMap<string, Machine>;
+  readonly #takes: (path: string) => readonly Point[];
+  readonly #done = new Map<string, FileAnswer>();
+
+  constructor(site: Site) {
+    this.#site = site;
+    this.#machines = new Map(site.machines.map((machine) => [machine.id, machine]));
+    this.#takes = siteFiles(site).pointsFor;
+  }
+
+  /** `path` is absolute; `asDropped` how it was called in the drop folder, which says whose it is. */
+  analyse(path: string, asDropped: string, point: Point): FileAnswer {
+    const known = this.#done.get(path);
+    if (known !== undefined) return known;
+    if (this.#done.size >= mostFiles)
+      return { reason: `not analysed: more than ${mostFiles} files would have to be` };
+    const taking = this.#takes(asDropped);
+    const points = taking.some((one) => pointPath(one) === pointPath(point)) ? taking : [point];
+    const answer = analyseFile(path, this.#site.largestFileBytes, (_, sidecar) => ({
+      points: points.map((one) => ({
+        point: one,
+        nominalHz: this.#machines.get(one.machineId)?.runningSpeedHz ?? null,
+      })),
+      sidecar,
+      clock: point.recordings.clock,
+      siteZone: this.#site.timeZone,
+      startInName: point.recordings.startInName,
+    }));
+    this.#done.set(path, answer);
+    return answer;
+  }
+}

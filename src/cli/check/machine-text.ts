@@ -1,0 +1,153 @@
+import { plain } from '../../advisory/escape.ts';
+import { bareLevel, counted, percentText } from '../../advisory/level-words.ts';
+import { gather, shareOfAlert } from '../../advisory/ranking.ts';
+import {
+  inDisplayUnit,
+  printFrequency,
+  printNumber,
+  printSeconds,
+  printSpeed,
+} from '../../config/print-value.ts';
+import type { Band, Limit, Machine } from '../../config/site.ts';
+import { limitFacts } from '../../service/fact-names.ts';
+import { lineWidth, listing, table } from '../output.ts';
+import { timeText } from '../when.ts';
+import { type BandCheck, canAlarm, type LevelNow, type PointCheck } from './point-check.ts';
+
+/**
+ * A machine's points with their levels, shares of the limits, files, and what is doubtful. `averagingElsewhere`: it is
+ * said once for the whole site.
+ */
+export function machineText(
+  machine: Machine,
+  points: readonly PointCheck[],
+  how: { readonly timeZone: string; readonly averagingElsewhere: boolean },
+): string {
+  const { id, name, area, runningSpeedHz, criticality } = machine;
+  const facts = [
+    ...(name === id ? [] : [name]),
+    ...(area === null ? [] : [area]),
+    ...(runningSpeedHz === null ? [] : [printSpeed(runningSpeedHz)]),
+    `criticality ${criticality}`,
+  ];
+  return [
+    `${plain(id)}: ${plain(facts.join(', '))}\n`,
+    indented(levelTable(points)),
+    indented(filesTable(points, how.timeZone)),
+    notes(points, how.averagingElsewhere),
+  ].join('');
+}
+
+function levelTable(points: readonly PointCheck[]): string {
+  const rows = points.flatMap((point) => {
+    if (point.bands.length === 0) return [[point.point.id, 'no bands', '', '', '', '']];
+    return point.bands.flatMap((band, n) => bandRows(band, n === 0 ? point.point.id : ''));
+  });
+  const confidence = points.flatMap(({ bands }) => bands).find(({ now }) => now !== null)
+    ?.now?.confidencePercent;
+  const interval = confidence === undefined ? 'interval' : `${printNumber(confidence)} % interval`;
+  const titles = ['point', 'band', 'level now', interval, 'alert', 'danger'];
+  return table(
+    titles.map((title) => ({ title })),
+    rows,
+    lineWidth - 2,
+  );
+}
+
+/** One row a limit; the level stands in the first. */
+function bandRows({ band, now, limits }: BandCheck, pointId: string): string[][] {
+  const level =
+    now === null ? 'none yet' : `${now.atLeast ? 'at least ' : ''}${levelWithUnit(now.level, band)}`;
+  const interval =
+    now === null
+      ? ''
+      : `${bareLevel(now.intervalLow, band.display)} to ${bareLevel(now.intervalHigh, band.display)}`;
+  if (limits.length === 0) return [[pointId, band.id, level, interval, 'no limit', '']];
+  return limits.map((limit, n) => {
+    const cells = [limitCell(limit, limit.alert, band, now), limitCell(limit, limit.danger, band, now)];
+    return n === 0 ? [pointId, band.id, level, interval, ...cells] : ['', '', '', '', ...cells];
+  });
+}
+
+function levelWithUnit(level: number, band: Band): string {
+  return `${bareLevel(level, band.display)} ${band.display.text}`.trimEnd();
+}
+
+/** '55 % of 2.8'; beyond it '116 % of 2.8 !'. */
+function limitCell(limit: Limit, at: number | null, band: Band, now: LevelNow | null): string {
+  if (at === null) return '-';
+  const value = `${limit.side === 'lower' ? 'least ' : ''}${printNumber(inDisplayUnit(at, band.display), 4)}`;
+  if (now === null) return value;
+  const share = shareOfAlert(now.level, { ...limitFacts(limit), alert: at, danger: null });
+  if (share === null) return value;
+  return `${percentText(share)} of ${value}${share > 1 ? ' !' : ''}`;
+}
+
+function filesTable(points: readonly PointCheck[], timeZone: string): string {
+  const rows = points.map(({ point, waiting, ledger, from, usedMs }) => [
+    point.id,
+    String(waiting?.files ?? 0),
+    String(ledger?.archived.count ?? 0),
+    String(ledger?.recordings ?? 0),
+    usedMs === null ? 'none' : `${timeText(usedMs, timeZone)}${from === 'file' ? ', analysed now' : ''}`,
+  ]);
+  return `\n${table(
+    [
+      { title: 'point' },
+      { title: 'in drop', right: true },
+      { title: 'in archive', right: true },
+      { title: 'in ledger', right: true },
+      { title: 'recording these levels are of' },
+    ],
+    rows,
+    lineWidth - 2,
+  )}`;
+}
+
+/** Averaging once for points that share it, then what is doubtful or missing, point by point. */
+function notes(points: readonly PointCheck[], averagingElsewhere: boolean): string {
+  const byText = new Map<string, string[]>();
+  for (const one of points) {
+    const text = averagingText(one);
+    byText.set(text, [...(byText.get(text) ?? []), one.point.id]);
+  }
+  const averaging = [...byText].map(([text, ids]): [string, string] => [
+    'averaging',
+    byText.size === 1 ? text : `${ids.join(', ')}: ${text}`,
+  ]);
+  const remarks = points.flatMap((one): Remark[] => {
+    const { id } = one.point;
+    return [
+      ...(one.remark === null ? [] : [{ id, title: 'levels', text: one.remark }]),
+      ...one.quality.map(({ flag, detail }) => ({ id, title: 'quality', text: `${flag}: ${detail}` })),
+      ...(canAlarm(one) ? [] : [{ id, title: 'limits', text: 'no limit: this point can never alarm' }]),
+    ];
+  });
+  const told = gather(remarks, ({ title, text }) => `${title} ${text}`).map((same): [string, string] => {
+    const [{ title, text }] = same as [Remark];
+    return [title, `${same.map(({ id }) => id).join(', ')}: ${text}`];
+  });
+  const entries = [...(averagingElsewhere ? [] : averaging), ...told];
+  return entries.length === 0 ? '' : `\n${listing(entries, '  ')}`;
+}
+
+interface Remark {
+  readonly id: string;
+  readonly title: string;
+  readonly text: string;
+}
+
+export function averagingText({ averaging }: PointCheck): string {
+  if (averaging === null) return 'not known: say sample_rate and duration, or let a recording come';
+  const { window, overlapPercent, segmentSamples, lineSpacingHz, averages, usedPercent } = averaging;
+  return [
+    `${window}, overlap ${printNumber(overlapPercent)} %, segment ${segmentSamples} samples (${printSeconds(1 / lineSpacingHz)})`,
+    `a line every ${printFrequency(lineSpacingHz)}`,
+    `${counted(averages, 'average')}, worth ${printNumber(averaging.effectiveAverages)} independent`,
+    `${printNumber(usedPercent)} % of the recording used`,
+  ].join('; ');
+}
+
+function indented(text: string): string {
+  return text.replace(/^(?=.)/gm, '  ');
+}
