@@ -21,7 +21,11 @@ export class Backlog {
   ): { readonly now: ReadyRecording[]; readonly held: ReadyRecording[]; readonly againInMs: number | null } {
     const nowMs = this.#monotonicMs();
     const bySource = new Map<string, ReadyRecording[]>();
-    for (const one of ready) bySource.set(keyOf(one), [...(bySource.get(keyOf(one)) ?? []), one]);
+    for (const one of ready) {
+      const files = bySource.get(keyOf(one));
+      if (files === undefined) bySource.set(keyOf(one), [one]);
+      else files.push(one);
+    }
     for (const key of this.#held.keys()) if (!bySource.has(key)) this.#held.delete(key);
     const now: ReadyRecording[] = [];
     const held: ReadyRecording[] = [];

@@ -69,6 +69,7 @@ export class Intake {
   readonly #putAside: PutAside;
   readonly #take: TakeFiles;
   readonly #strangers: Strangers;
+  #backlogRuns = false;
 
   constructor(tools: IntakeTools) {
     this.#tools = tools;
@@ -86,6 +87,11 @@ export class Intake {
     this.#putAside = new PutAside({ ...tools, fileAway: this.#fileAway, forget });
     this.#take = new TakeFiles({ ...tools, fileAway: this.#fileAway, putAside: this.#putAside, forget });
     this.#strangers = new Strangers(tools);
+  }
+
+  /** Old files are held back or being evaluated: what came and went among them is told when that is through. */
+  get backlogRuns(): boolean {
+    return this.#backlogRuns;
   }
 
   /** Before an orderly stop, between two rounds. */
@@ -130,10 +136,14 @@ export class Intake {
       holdBacklog ? (ready) => isOld(ready, startOf(ready)) : () => false,
       view.site.timings,
     );
+    this.#backlogRuns = held.length > 0 || now.some((ready) => isOld(ready, startOf(ready)));
     const taken = await this.#take.recordings(inOrder(now, startOf), startOf);
+    this.#backlogRuns = held.length > 0;
     const setAside = await this.#putAside.givenUp(look.givenUp);
     const wallMs = clock.wallMs();
-    await this.#strangers.look(view, { wallMs, unassigned: look.unassigned, notRead: look.notRead });
+    const { unassigned, notRead } = look;
+    const there = () => sweep.files.map(({ path }) => path);
+    await this.#strangers.look(view, { wallMs, there, unassigned, notRead });
     const moved = await this.#unassigned(look.unassigned, view);
     const unfiled = taken.decided + setAside + moved > 0 ? await this.#fileAway.all() : unfiledBefore;
     return {

@@ -132,6 +132,7 @@ export class Service {
     this.#mail = new MailRounds({
       ...tools,
       startedMs: parts.startedMs,
+      backlogRuns: () => this.#intake.backlogRuns,
       ...(options.mailerFor ? { mailerFor: options.mailerFor } : {}),
     });
     this.#housekeeping = new Housekeeping({ ledger, view, log, monotonicMs }, parts.unclean);

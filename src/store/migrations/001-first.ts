@@ -153,6 +153,7 @@ function outbox(): string {
       event text not null, level real, identity text not null unique, wall_ms integer not null,
       message_id integer references messages, from_backlog integer not null check (from_backlog in (0, 1))) strict;
     create index event_untold on to_tell (id) where message_id is null;
+    create index event_by_number on to_tell (number);
     create table summaries (
       local_date text primary key, created_ms integer not null, message_id integer references messages,
       html text not null, facts text not null) strict;`;
