@@ -5,7 +5,7 @@ import { printFrequency, printNumber } from '../../config/print-value.ts';
 import { type Band, type Limit, type Point, pointPath, type Site } from '../../config/site.ts';
 import type { BandTrend, TrendRow } from '../../service/trend-of-band.ts';
 import { bareUnit, levelJson, limitJson } from '../level-json.ts';
-import { csvLine, table } from '../output.ts';
+import { csvLine, lineWidth, type Row, table } from '../output.ts';
 import { timeText } from '../when.ts';
 
 /** A band's trend with what it belongs to. */
@@ -130,7 +130,7 @@ export function trendText(shown: ShownTrend): string {
       ? [`the newest ${trend.rows.length}; --since shows older ones, --csv and --json all\n`]
       : []),
     '\n',
-    table(columns, rowsOf(shown)),
+    table(columns, rowsOf(shown), lineWidth, 0),
   ].join('');
 }
 
@@ -144,11 +144,11 @@ function limitLine(limit: Limit, band: Band): string {
   return `${parts.join(', ')} (${limit.id})`;
 }
 
-function rowsOf(shown: ShownTrend): string[][] {
+function rowsOf(shown: ShownTrend): Row[] {
   const { site, band, trend } = shown;
   const limits = limitsOf(shown);
   return trend.rows.flatMap((row) => {
-    const series = row.seriesBreak ? [['', '', '', '', seriesText(row, trend)]] : [];
+    const series: Row[] = row.seriesBreak ? [{ beneath: seriesText(row, trend) }] : [];
     const cells = [
       timeText(row.usedMs, site.timeZone),
       `${row.atLeast ? '>= ' : ''}${bareLevel(row.level, band.display)}`,
@@ -163,7 +163,7 @@ function rowsOf(shown: ShownTrend): string[][] {
 function seriesText(row: TrendRow, { series }: BandTrend): string {
   const own = series.find(({ id }) => id === row.seriesId);
   const edges = own === undefined ? '' : `, ${printFrequency(own.fromHz)} to ${printFrequency(own.toHz)}`;
-  return `new series from here${edges}: its settings differ, so levels above and below must not be compared`;
+  return `--- new series${edges}: settings differ; do not compare with levels above`;
 }
 
 /** The most severe limit that the level passes, whatever its delays. */
