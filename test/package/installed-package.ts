@@ -30,8 +30,8 @@ export interface InstalledPackage {
   readonly files: readonly PackedFile[];
   /** Where it was installed into. */
   readonly folder: string;
-  /** The package itself, below that. */
-  readonly packageFolder: string;
+  /** The built program that was packed. */
+  readonly built: string;
   /** Why it could not be installed; null: it was. */
   readonly noRegistry: string | null;
   remove(): void;
@@ -45,11 +45,13 @@ export async function installPackage(): Promise<InstalledPackage> {
     const { filename, files } = await pack(scratch);
     const folder = join(scratch, 'installed');
     mkdirSync(folder);
-    const quiet = ['--prefer-offline', '--no-audit', '--no-fund'];
-    const installed = await run('npm', ['install', ...quiet, join(scratch, filename)], folder);
+    const flags = ['--prefer-offline', '--no-audit', '--no-fund'];
+    // npm's own patience with a registry that does not answer is several minutes.
+    const patience = ['--fetch-retries=1', '--fetch-retry-mintimeout=2000', '--fetch-timeout=60000'];
+    const installed = await run('npm', ['install', ...flags, ...patience, join(scratch, filename)], folder);
     const noRegistry = installed.status === 0 ? null : registrySilence(installed);
     if (installed.status !== 0 && noRegistry === null) throw new Error(`npm install: ${installed.err}`);
-    return { files, folder, packageFolder: join(folder, 'node_modules/humledger'), noRegistry, remove };
+    return { files, folder, built: join(scratch, 'copy/dist'), noRegistry, remove };
   } catch (error) {
     remove();
     throw error;

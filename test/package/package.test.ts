@@ -128,7 +128,7 @@ describe('the package, packed and installed into an empty folder', () => {
     // Alone in a folder: anything that it loaded beside would be missing.
     const alone = join(installed.folder, 'alone');
     mkdirSync(alone);
-    const start = join(installed.packageFolder, 'dist/cli/start.js');
+    const start = join(installed.built, 'cli/start.js');
     copyFileSync(start, join(alone, 'start.mjs'));
     const { path, version } = older as NonNullable<typeof older>;
     for (const file of [start, join(alone, 'start.mjs')]) {
