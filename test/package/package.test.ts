@@ -54,7 +54,7 @@ describe('the package, packed and installed into an empty folder', () => {
       (path) => !/^(dist\/.*\.js|config\/[^/]+|demo-data\/.+|package\.json|README\.md|LICENSE)$/.test(path),
     );
     expect(strange).toEqual([]);
-    expect(paths.filter((path) => /\.ts$|\.map$|test/.test(path))).toEqual([]);
+    expect(paths.filter((path) => /\.(ts|map)$|\.test\.|(^|\/)test\//.test(path))).toEqual([]);
     for (const needed of [
       'dist/cli/start.js',
       'dist/service/recording-worker.js',
