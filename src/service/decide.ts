@@ -1,6 +1,7 @@
+import type { RecordingStart } from '../acquisition/start-time.ts';
 import { endAttempt, noteSeen } from '../store/intake-marks.ts';
 import type { Writer } from '../store/lent-connection.ts';
-import { findTaken, insertRecording } from '../store/recordings.ts';
+import { findTaken, insertRecording, type StoredRecording } from '../store/recordings.ts';
 import { type ChangeContext, saveAlarmChange } from '../store/save-alarm.ts';
 import { getSource, noteArrival, type Source, saveSource } from '../store/sources.ts';
 import { insertMeasurement } from '../store/trends.ts';
@@ -34,25 +35,7 @@ export async function decide(
   const identity = identityOf(taken, start.statedMs);
   const twin = (await findTaken(writer, identity)) ?? (await otherReading(writer, taken, start.otherMs));
   await endAttempt(writer, taken.fileKey);
-  if (twin !== null) {
-    const usedMs = twin.usedMs ?? start.startMs;
-    const row = recordingRow(view, taken, {
-      identity,
-      source,
-      usedMs,
-      statedMs: start.statedMs,
-      origin: start.origin,
-    });
-    const reason = `the same recording was taken before as ${twin.fileName}`;
-    const recordingId = await insertRecording(writer, {
-      ...row,
-      outcome: 'repeat',
-      reason,
-      evaluated: false,
-    });
-    await keepInPlace(writer, view, taken, recordingId);
-    return { recordingId, outcome: 'repeat', usedMs };
-  }
+  if (twin !== null) return repeat(writer, view, taken, { identity, source, start, twin });
   const { batchNewestStatedMs } = taken;
   const time = await timeOf(writer, {
     view,
@@ -101,6 +84,31 @@ export async function decide(
   await saveSource(writer, sourceAfter(source, taken, time, judged));
   await keepInPlace(writer, view, taken, recordingId);
   return { recordingId, outcome: 'taken', usedMs: time.usedMs };
+}
+
+/** The same recording came before: counted and filed, nothing else. */
+async function repeat(
+  writer: Writer,
+  view: SiteView,
+  taken: TakenFile,
+  about: {
+    readonly identity: string;
+    readonly source: Source;
+    readonly start: RecordingStart;
+    readonly twin: StoredRecording;
+  },
+): Promise<Decided> {
+  const { identity, source, start, twin } = about;
+  const usedMs = twin.usedMs ?? start.startMs;
+  const { statedMs, origin } = start;
+  const recordingId = await insertRecording(writer, {
+    ...recordingRow(view, taken, { identity, source, usedMs, statedMs, origin }),
+    outcome: 'repeat',
+    reason: `the same recording was taken before as ${twin.fileName}`,
+    evaluated: false,
+  });
+  await keepInPlace(writer, view, taken, recordingId);
+  return { recordingId, outcome: 'repeat', usedMs };
 }
 
 /** With `after_reading: keep` the ledger remembers what the file looked like, so that it is read once. */

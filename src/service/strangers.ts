@@ -19,6 +19,8 @@ import type { NotRead, Unassigned } from './verdicts.ts';
  */
 export interface StrangersLook {
   readonly wallMs: number;
+  /** Paths of all files that lie there, those that still settle among them. */
+  readonly there: () => readonly string[];
   readonly unassigned: readonly Unassigned[];
   readonly notRead: readonly NotRead[];
 }
@@ -43,7 +45,7 @@ export class Strangers {
     const kinds = kindsOf(look.unassigned);
     for (const [kind, path] of kinds) await this.#tell(view, kind, path, look.wallMs);
     for (const file of look.notRead) await this.#tellNotRead(view, file, look.wallMs);
-    await this.#end(view, new Set(kinds.keys()), look);
+    await this.#end(view, look);
   }
 
   async #tell(view: SiteView, kind: string, path: string, wallMs: number): Promise<void> {
@@ -72,11 +74,12 @@ export class Strangers {
     this.#log.warn({ file: printableName(path) }, `not read: ${reason}`);
   }
 
-  async #end(view: SiteView, kinds: ReadonlySet<string>, { wallMs }: StrangersLook): Promise<void> {
-    const foreseen = await this.#ledger.read((reader) => endings(reader, view, kinds, wallMs));
+  async #end(view: SiteView, look: StrangersLook): Promise<void> {
+    const { wallMs } = look;
+    const foreseen = await this.#ledger.read((reader) => endings(reader, view, look));
     if (foreseen.length === 0) return;
     await this.#ledger.transact(async (writer) => {
-      for (const change of await endings(writer, view, kinds, wallMs))
+      for (const change of await endings(writer, view, look))
         await saveAlarmChange(writer, change, contextOf(view, wallMs));
     });
   }
@@ -93,20 +96,24 @@ function kindsOf(files: readonly Unassigned[]): Map<string, string> {
   return kinds;
 }
 
-async function endings(
-  reader: Reader,
-  view: SiteView,
-  kinds: ReadonlySet<string>,
-  wallMs: number,
-): Promise<AlarmChange[]> {
+function kindsThere(paths: readonly string[]): Set<string> {
+  const kinds = new Set(paths.map(namePattern));
+  if (kinds.size > mostKinds) kinds.add(manyKinds);
+  return kinds;
+}
+
+async function endings(reader: Reader, view: SiteView, look: StrangersLook): Promise<AlarmChange[]> {
+  const { wallMs, there } = look;
   const sources = new Set(view.files.sources.map(({ source }) => source));
+  let kinds: ReadonlySet<string> | null = null;
   const changes: AlarmChange[] = [];
   for (const { alarm } of await standingAlarms(reader)) {
     const { subject, state } = alarm;
     if (subject.kind !== 'trouble' || state.condition !== 'trouble') continue;
     const isOld = wallMs - (state.usedMs ?? 0) > overAfterMs;
+    if (subject.trouble === 'unassigned') kinds ??= kindsThere(there());
     const isOver =
-      (subject.trouble === 'unassigned' && !kinds.has(subject.source ?? '')) ||
+      (subject.trouble === 'unassigned' && kinds?.has(subject.source ?? '') === false) ||
       (subject.trouble === 'late-sidecar' && isOld) ||
       (subject.trouble === 'unreadable' && subject.source !== null && !sources.has(subject.source) && isOld);
     if (!isOver) continue;
