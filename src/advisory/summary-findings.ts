@@ -122,6 +122,10 @@ function sinceText(item: Standing, { site, writtenMs }: SummaryFacts): string {
 }
 
 function todoText(item: Standing): string {
-  if (isReturned(item)) return 'The level is back within its limit; find out why it rose, then acknowledge.';
+  if (isReturned(item)) {
+    return item.kind === 'trouble'
+      ? 'It is over; find out what it was, then acknowledge.'
+      : 'The level is back within its limit; find out why it rose, then acknowledge.';
+  }
   return item.kind === 'alarm' ? actionText(item.action, item.machine) : shortAdvice(item.trouble);
 }

@@ -224,7 +224,9 @@ function speedOf({ sidecar, nominalHz }: MeasureSettings): RunningSpeed | null {
     return { rpm, origin: 'sidecar', uncertaintyRpm: sidecarSpeedUncertainty * Math.abs(rpm) };
   }
   if (nominalHz === null) return null;
-  return { rpm: 60 * nominalHz, origin: 'nominal', uncertaintyRpm: nominalSpeedUncertainty * 60 * nominalHz };
+  // The site file says r/min; what the way through hertz adds in the last digits is taken off again.
+  const rpm = Number((60 * nominalHz).toPrecision(12));
+  return { rpm, origin: 'nominal', uncertaintyRpm: nominalSpeedUncertainty * rpm };
 }
 
 /** A flat signal has no shape: crest factor, kurtosis and skewness are given as 0, so that no NaN is stored. */

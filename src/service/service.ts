@@ -5,7 +5,7 @@ import type { Ledger } from '../store/ledger.ts';
 import { isLedgerRefusal, LedgerError } from '../store/ledger-error.ts';
 import { openLedger } from '../store/open-ledger.ts';
 import type { Clock } from './clock.ts';
-import { writeHealth } from './health.ts';
+import { HealthFile } from './health.ts';
 import { Housekeeping } from './housekeeping.ts';
 import { Intake, type Round } from './intake.ts';
 import { KeptFiles } from './kept-files.ts';
@@ -54,6 +54,7 @@ export class Service {
   readonly #intake: Intake;
   readonly #mail: MailRounds;
   readonly #housekeeping: Housekeeping;
+  readonly #health: HealthFile;
   #view: SiteView;
 
   /** Opens the ledger as its owner and puts the site file in force; in words why not. */
@@ -106,7 +107,7 @@ export class Service {
     },
   ) {
     const { clock, log } = options;
-    const { ledger, step } = parts;
+    const { ledger } = parts;
     const monotonicMs = () => clock.monotonicMs();
     const view = () => this.#view;
     this.#options = options;
@@ -127,6 +128,11 @@ export class Service {
       deadlineMs: options.deadlineMs ?? longestTaskMs,
       onAllLost: (reason) => options.onLost?.(reason),
     });
+    this.#health = new HealthFile(clock, this.#complaints);
+    const step: Step = (name) => {
+      parts.step(name);
+      this.#health.alive();
+    };
     const tools = { ledger, clock, view, log, complaints: this.#complaints, step };
     this.#intake = new Intake({ ...tools, dropFolder: this.#dropFolder, pool: this.#pool, kept: parts.kept });
     this.#mail = new MailRounds({
@@ -210,24 +216,19 @@ export class Service {
 
   #writeHealth(round: Round): void {
     const { site } = this.#view;
-    try {
-      writeHealth(site.folders.data, {
-        pid: process.pid,
-        startedMs: this.startedMs,
-        roundMs: Math.round(this.#options.clock.wallMs()),
-        configVersion: site.configVersion,
-        dropFolder: round.dropFolder,
-        filesWaiting: round.waiting,
-        filesUnfiled: round.unfiled,
-        unassigned: round.unassigned.slice(0, 20).map(({ path }) => path),
-        unassignedCount: round.unassigned.length,
-        workers: this.#pool.threads,
-        walBytes: this.ledger.walBytes(),
-        ledgerDamage: this.#housekeeping.damage,
-      });
-    } catch (error) {
-      this.#complaints.say('health', `the service's state cannot be written: ${(error as Error).message}`);
-    }
+    this.#health.write(site.folders.data, {
+      pid: process.pid,
+      startedMs: this.startedMs,
+      configVersion: site.configVersion,
+      dropFolder: round.dropFolder,
+      filesWaiting: round.waiting,
+      filesUnfiled: round.unfiled,
+      unassigned: round.unassigned.slice(0, 20).map(({ path }) => path),
+      unassignedCount: round.unassigned.length,
+      workers: this.#pool.threads,
+      walBytes: this.ledger.walBytes(),
+      ledgerDamage: this.#housekeeping.damage,
+    });
   }
 }
 

@@ -42,7 +42,12 @@ async function detailOf(reader: Reader, number: number): Promise<string | null> 
   const reason = rows.find(({ event }) => event === 'raised')?.reason ?? {};
   const texts = (value: unknown): string[] =>
     Array.isArray(value) ? value.flatMap(texts) : typeof value === 'string' && value !== '' ? [value] : [];
-  const said = [...texts(reason.file), ...texts(reason.detail), ...texts(reason.details)];
+  const found = [...texts(reason.detail), ...texts(reason.details)];
+  // A refusal names its file by itself.
+  const file = texts(reason.file).filter(
+    (path) => !found.some((text) => text.startsWith(path.slice(path.lastIndexOf('/') + 1))),
+  );
+  const said = [...file, ...found];
   if (said.length === 0) said.push(...texts(reason.flags));
   return said.length === 0 ? null : said.join(': ');
 }
