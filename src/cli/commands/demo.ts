@@ -106,8 +106,7 @@ const parts: readonly PersonsPart[] = [
   },
   {
     day: 35,
-    act: (service, nowMs) =>
-      acknowledgeAll(service, nowMs, 'M. Reilly', 'balancing ordered for the next stop'),
+    act: (service, nowMs) => acknowledgeAll(service, nowMs, 'M. Reilly', 'work order written'),
   },
 ];
 

@@ -55,6 +55,7 @@ function nameOfMail(bytes: Buffer, to: readonly { readonly address: string }[]):
     .replace(/=3A/g, ':')
     .replace(/_/g, ' ');
   const alarm = /^(ALERT|DANGER|TROUBLE) (\d+)/.exec(subject);
-  const kind = alarm !== null ? `${alarm[1]}-${alarm[2]}` : /service/.test(subject) ? 'service' : 'summary';
+  const kind =
+    alarm !== null ? `${alarm[1]}-${alarm[2]}` : /: service started/.test(subject) ? 'service' : 'summary';
   return `${kind}_${to[0]?.address.split('@')[0]?.replace(/[^A-Za-z0-9]+/g, '-') ?? ''}`;
 }

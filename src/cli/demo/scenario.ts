@@ -122,17 +122,21 @@ function mixerFiles(
   ];
 }
 
-/** From day 40 on the cable is broken: a weak mains hum is all that comes. */
+/** m/s² that the hum of a broken cable looks like, at 1, 2, 3 ... times the mains frequency. */
+const humMs2 = [0.6, 0.05, 0.18, 0.02, 0.09];
+
+/** From day 40 on the cable is broken: mains hum is all that comes. */
 function fan(day: number, load: number, noise: ReturnType<typeof seededNoise>): Float64Array {
   if (day >= 40) {
-    const dead = new Float64Array(frames);
-    for (let n = 0; n < frames; n++)
-      dead[n] = 0.6 * Math.sin((2 * Math.PI * 50 * n) / sampleRateHz) + 0.02 * noise.gaussian();
-    return dead;
+    return new Float64Array(frames).map((_, n) => {
+      const turn = (2 * Math.PI * 50 * n) / sampleRateHz;
+      const hum = humMs2.reduce((sum, height, k) => sum + height * Math.sin((k + 1) * turn + 0.7 * k), 0);
+      return hum + 0.02 * noise.gaussian();
+    });
   }
   return signal(
     {
-      shaftHz: (985 / 60) * (1 - 0.003 * (load - 1)),
+      shaftHz: (1120 / 60) * (1 - 0.003 * (load - 1)),
       harmonicsMmS: [1.5 * load, 0.4, 0.2, 0.1, 0.1, 0.1, 0.3],
       mesh: null,
       resonance: { hz: 1400, damping: 0.06 },

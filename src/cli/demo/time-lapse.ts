@@ -6,7 +6,7 @@ import { days, filesOfStep, stepMs, steps } from './scenario.ts';
 
 /** The story begins on a Monday. */
 export const beginMs = Date.UTC(2026, 2, 2);
-const seed = 20260302;
+export const seed = 20260302;
 const minuteMs = 60_000;
 
 /**
