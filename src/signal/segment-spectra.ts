@@ -25,7 +25,9 @@ export class SegmentSpectra {
     for (let k = 0; k < growing.length; k++) growing[k] += density[k];
     this.grown++;
     if (this.grown < this.groupSize) return;
-    groups.push(Float32Array.from(growing, (sum) => sum / this.groupSize));
+    const group = new Float32Array(growing.length);
+    for (let k = 0; k < group.length; k++) group[k] = growing[k] / this.groupSize;
+    groups.push(group);
     growing.fill(0);
     this.grown = 0;
     if (groups.length === this.capacity) this.pair();
