@@ -3,6 +3,7 @@ import fc from 'fast-check';
 import { RE2JS } from 're2js';
 import { describe, expect, it } from 'vitest';
 import { fillPattern, pathTest } from '../../src/acquisition/path-pattern.ts';
+import { namePattern, startInName } from '../../src/acquisition/start-in-name.ts';
 import type { NamedFile } from '../../src/cli/draft/name-parts.ts';
 import { nameSeries } from '../../src/cli/draft/name-series.ts';
 import { seriesIds } from '../../src/cli/draft/series-ids.ts';
@@ -168,6 +169,36 @@ describe('names of files', () => {
   });
 });
 
+describe('names that hold more than one date', () => {
+  it('give the start by the one that differs from recording to recording', () => {
+    const given = files([1, 2, 3].map((n) => `made-2019-12-31_2359_fan-1_2026030${n}T210000.wav`));
+    expect(nameSeries(given)[0]?.date?.pattern).toBe('<year><month><day>T<hour><minute><second>');
+  });
+});
+
+describe('a date that stands behind another of the same layout', () => {
+  it('is not taken for the start, since the service would read the first', () => {
+    const given = files([1, 2, 3].map((n) => `20191231T235900_fan-1_2026030${n}T210000.wav`));
+    const date = nameSeries(given)[0]?.date;
+    expect(date?.readings).not.toContain(Date.UTC(2026, 2, 2, 21));
+  });
+});
+
+describe('patterns that could meet in a file to come', () => {
+  it('are both held letter by letter', () => {
+    const names = [
+      'a_20260302T210000_x.wav',
+      'a_20260303T210000_x.wav',
+      'a_y_20260302T210000.wav',
+      'a_y_20260303T210000.wav',
+    ];
+    expect(describeSeries(files(names)).map(({ setting }) => setting.key)).toEqual([
+      'files_regex',
+      'files_regex',
+    ]);
+  });
+});
+
 describe('patterns from random names', () => {
   const word = fc.oneof(
     fc.constantFrom(
@@ -187,6 +218,8 @@ describe('patterns from random names', () => {
       "o'",
       '100%',
       '#3',
+      '20240229_101500',
+      '2019-12-31_2359',
     ),
     fc.stringMatching(/^[a-zA-Z0-9]{1,6}$/),
   );
@@ -227,6 +260,11 @@ describe('patterns from random names', () => {
           others,
         );
         expect(all.flatMap(({ series }) => series.files)).toHaveLength(given.length - others.length);
+        for (const { date, files: own } of all.map(({ series }) => series)) {
+          if (date === null) continue;
+          const pattern = namePattern(date.pattern);
+          expect(own.map(({ path }) => startInName(pattern, path)?.ms)).toEqual(date.readings);
+        }
         for (const [index, { setting, machineId, pointId }] of settings.entries()) {
           const regex = setting.key === 'files_regex' ? RE2JS.compile(setting.text) : null;
           const plain = pathTest(fillPattern(setting.text, machineId, pointId));

@@ -5,6 +5,7 @@ import { dirname, join } from 'node:path';
 import fc from 'fast-check';
 import { afterEach, describe, expect, it } from 'vitest';
 import { siteFiles } from '../../src/acquisition/file-pattern.ts';
+import { draftBands } from '../../src/cli/draft/draft-bands.ts';
 import { loadSite } from '../../src/config/load.ts';
 import { pointPath, type Site } from '../../src/config/site.ts';
 import { wavFile } from '../acquisition/wav-writer.ts';
@@ -135,7 +136,6 @@ describe('draft', () => {
       ['DE-vertical', 'DE vertical', 'velocity', 'mm/s'],
       ['shaft', 'shaft', 'displacement', 'µm'],
       ['bias', 'bias', 'acceleration', 'mV'],
-      ['oil', 'oil', 'other', 'bar'],
       ['temp', 'temp', 'acceleration', 'm/s²'],
     ]);
     expect(site.machines[0]?.points[0]).toMatchObject({
@@ -153,7 +153,7 @@ describe('draft', () => {
     );
     const { site, text } = await drafted(folder);
     expect(site.machines[0]?.points.map(({ recordings }) => recordings.sampleRateHz)).toEqual([null, null]);
-    expect(text).toMatch(/# sample_rate: .*please fill in/);
+    expect(text).toMatch(/# sample_rate: .*please confirm: the files do not say it/);
   });
 
   it('is still sound when its hints are taken as they stand', async () => {
@@ -226,6 +226,51 @@ describe('draft', () => {
     expect(loaded.ok && loaded.site.folders).toMatchObject({ drop: join(folder, 'drop') });
     expect(loaded.ok && loaded.site.folders.data.startsWith(join(folder, 'drop', ''))).toBe(
       loaded.ok && loaded.site.folders.data === join(folder, 'drop-data'),
+    );
+  });
+});
+
+describe('bands of a draft', () => {
+  it('are none that the site file refuses, at any sample rate and length', () => {
+    const quantities = [
+      'acceleration',
+      'velocity',
+      'displacement',
+      'sound-pressure',
+      'current',
+      'other',
+    ] as const;
+    const units = {
+      acceleration: 'g',
+      velocity: 'mm/s',
+      displacement: 'um',
+      'sound-pressure': 'Pa',
+      current: 'A',
+      other: 'bar',
+    };
+    const rates = fc.oneof(
+      fc.double({ min: 1, max: 200, noNaN: true }),
+      fc.double({ min: 200, max: 1e6, noNaN: true }),
+    );
+    fc.assert(
+      fc.property(
+        fc.constantFrom(...quantities),
+        rates,
+        fc.integer({ min: 1000, max: 100_000 }),
+        (quantity, rate, ms) => {
+          const rateHz = Number(rate.toPrecision(4));
+          const bands = draftBands(quantity, rateHz, ms / 1000);
+          const written = bands.map(
+            (band) =>
+              `          - id: ${band.id}\n            quantity: ${band.quantity}\n            from: ${band.from}\n            to: ${band.to}\n${band.unit === null ? '' : `            unit: ${band.unit}\n`}`,
+          );
+          const text = `site: a\ntime_zone: UTC\nfolders:\n  drop: ./drop\n  data: ./data\nrecordings:\n  files: <any>\n  samples_in: ${units[quantity]}\n  sample_rate: ${rateHz} Hz\n  duration: ${ms} ms\n  expected_every: 1 h\nmachines:\n  - id: m\n    points:\n      - id: p\n        quantity: ${quantity}\n${bands.length === 0 ? '' : `        bands:\n${written.join('')}`}`;
+          const loaded = loadSite(text, '/site.yaml');
+          if (!loaded.ok) throw new Error(`${JSON.stringify(loaded.problems)}\n${text}`);
+          if (rateHz > 2000 && quantity !== 'other') expect(bands.length).toBeGreaterThan(0);
+        },
+      ),
+      { seed: 20261201, numRuns: 300 },
     );
   });
 });

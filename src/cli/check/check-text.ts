@@ -92,7 +92,8 @@ function lastLine({ points, limits, recipients, hindrances, lacks }: SiteCheck):
   if (only === undefined) return `${counts}; ready to run\n`;
   const line = `${counts}; ${only}`;
   if (missing.length === 1 && line.length <= lineWidth) return `${plain(line)}\n`;
-  const verdict = hindrances.length > 0 ? 'not ready to run' : 'runs, but not to the purpose';
+  const short = lacks.map((text) => text.replace(/:.*/, '')).join(', ');
+  const verdict = hindrances.length > 0 ? 'not ready' : short;
   return `Missing\n${missing.map((text) => bullet(text)).join('')}\n${counts}; ${verdict}: see Missing\n`;
 }
 

@@ -143,14 +143,19 @@ function fromFile(
       remark: `${name}: ${why?.slice(pointPath(point).length + 2) ?? 'nothing for this point'}`,
     };
   }
+  const quality = [...answer.quality, ...measurement.quality];
   return {
     from: 'file',
     // Filed away, a recording has lost the subfolders that its name may need to tell its start.
     usedMs: waiting === null ? (ledger?.measurement?.usedMs ?? null) : answer.start.startMs,
     levels: new Map(measurement.levels.map((level) => [level.bandId, level])),
     averaging: ofRecording(measurement.averaging, measurement.sampleRateHz),
-    quality: [...answer.quality, ...measurement.quality],
-    remark: measurement.averaging === null ? `${name}: not even one segment fits into it` : null,
+    quality,
+    // A finding says more than this.
+    remark:
+      measurement.averaging === null && quality.length === 0
+        ? `${name}: not even one segment fits into it`
+        : null,
   };
 }
 

@@ -89,7 +89,7 @@ function usualBands(quantity: Quantity, highestHz: number, leastHz: number): Wan
   }
   if (quantity === 'velocity') return [highestHz < 40 ? { ...velocity, fromHz: whole.fromHz } : velocity];
   if (quantity === 'displacement') return [{ ...whole, unit: 'um pp', example: ['50 um pp', '80 um pp'] }];
-  return [whole];
+  return [{ ...whole, id: 'signal' }];
 }
 
 function usualAnalysis(sampleRateHz: number | null, durationS: number | null): AnalysisSettings {

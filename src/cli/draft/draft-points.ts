@@ -44,12 +44,19 @@ export function draftChannels({ header }: SeriesLook, placeId: string): DraftCha
     const words = usable && placeId === '' ? heading : id;
     return {
       id,
-      name: placeName(id) ?? (usable && plainId(heading) !== heading ? heading : null),
+      name: placeName(id) ?? (usable ? nameFrom(placeId, heading, id) : null),
       direction: directionOf(words),
       channel: usable ? heading : number,
       ...signalOf(header.channelUnits[index] ?? null, header.samples),
     };
   });
+}
+
+/** 'fan', 'DE H' -> 'fan, drive end, horizontal'; null where it says no more than the id. */
+function nameFrom(placeId: string, heading: string, id: string): string | null {
+  const place = placeId === '' ? [] : [placeName(placeId) ?? placeId];
+  const name = [...place, placeName(heading) ?? heading].join(', ');
+  return name === id ? null : name.slice(0, 80);
 }
 
 /** A heading that the site file takes for the same column again. */
@@ -67,6 +74,11 @@ export function free(wanted: string, taken: Set<string>): string {
 
 const known = (text: string, note: string | null = null): Written => ({ text, guess: false, note });
 const guessed = (text: string, note: string | null = null): Written => ({ text, guess: true, note });
+
+/** Trended as it is, but no measure of vibration: a temperature, a speed. */
+export function isOther({ quantity }: DraftChannel): boolean {
+  return quantity === 'other';
+}
 
 function signalOf(
   unit: string | null,

@@ -28,17 +28,24 @@ const widthOf: Readonly<Record<Field, number>> = { year: 4, month: 2, day: 2, ho
 /** Columns between a date and its time, such as those of `2026-03-02/blower-1_101500.wav`. */
 const mostBetween = 12;
 
-/** The date in the names of a table, or null: digits that form real dates in every file and read back as such. */
+/**
+ * The date in the names of a table, or null: digits that form real dates in every file and read back as such. Of several,
+ * one that agrees with the times of change and differs from recording to recording.
+ */
 export function nameDate(table: NameTable): NameDate | null {
-  const found: NameDate[] = [];
+  let best: NameDate | null = null;
   for (let column = 0; column < table.ending; column++) {
     for (const order of dateOrders) {
       const date = dateAt(table, column, order);
-      if (date !== null) found.push(date);
+      if (date !== null && (best === null || isBetter(date, best))) best = date;
     }
-    if (found.length > 0) break;
   }
-  return found.find(({ agrees }) => agrees) ?? found[0] ?? null;
+  return best;
+}
+
+function isBetter(one: NameDate, other: NameDate): boolean {
+  if (one.agrees !== other.agrees) return one.agrees;
+  return new Set(one.readings).size > new Set(other.readings).size;
 }
 
 /** Columns with the fields that each of them holds. */

@@ -1,6 +1,13 @@
 import { printDuration, printFrequency, printNumber } from '../../config/print-value.ts';
 import { type DraftBand, draftBands } from './draft-bands.ts';
-import { type DraftChannel, draftChannels, free, mostChannels, type Written } from './draft-points.ts';
+import {
+  type DraftChannel,
+  draftChannels,
+  free,
+  isOther,
+  mostChannels,
+  type Written,
+} from './draft-points.ts';
 import { clockOf, intervalMs } from './guess-times.ts';
 import type { SeriesLook } from './look.ts';
 import type { NameSeries } from './name-series.ts';
@@ -19,6 +26,8 @@ export interface DraftMachine {
   /** The id stands in the names; else it is made up. */
   readonly fromNames: boolean;
   readonly points: readonly DraftPoint[];
+  /** Columns that are no vibration, beside others that are: not drafted as points. */
+  readonly otherColumns: readonly string[];
 }
 
 /** Keys under `recordings`, in the order of the file. */
@@ -59,6 +68,7 @@ interface Named {
   readonly ids: SeriesIds;
   readonly machineId: string;
   readonly channels: readonly DraftChannel[];
+  readonly otherColumns: readonly string[];
 }
 
 /** From series and their headers to machines, points and settings. `others`: files that no point shall take. */
@@ -66,10 +76,15 @@ export function planSite(all: readonly ReadSeries[], others: readonly string[], 
   const { named, noRoom } = nameAll(all);
   const unwanted = [...others, ...noRoom.flatMap(({ series }) => series.files.map(({ path }) => path))];
   const files = filesSettings(named.map(idsInNames), unwanted);
-  const machines = new Map<string, { fromNames: boolean; points: DraftPoint[] }>();
-  named.forEach(({ read, ids, machineId, channels }, index) => {
-    const machine = machines.get(machineId) ?? { fromNames: ids.machineId !== '', points: [] };
+  const machines = new Map<string, { fromNames: boolean; points: DraftPoint[]; otherColumns: string[] }>();
+  named.forEach(({ read, ids, machineId, channels, otherColumns }, index) => {
+    const machine = machines.get(machineId) ?? {
+      fromNames: ids.machineId !== '',
+      points: [],
+      otherColumns: [],
+    };
     machines.set(machineId, machine);
+    machine.otherColumns.push(...otherColumns);
     const { settings, missing } = settingsOf(read, timeZone);
     const found = files[index] as FilesSetting;
     for (const channel of channels) machine.points.push(pointOf(read, channel, found, settings, missing));
@@ -86,13 +101,16 @@ function nameAll(all: readonly ReadSeries[]): { readonly named: Named[]; readonl
     const machineId = ids.machineId === '' ? 'machine-1' : ids.machineId;
     const inMachine = taken.get(machineId) ?? new Set<string>();
     taken.set(machineId, inMachine);
-    const channels = draftChannels(read.look, ids.pointId);
+    const drafted = draftChannels(read.look, ids.pointId);
+    const others = drafted.every(isOther) ? [] : drafted.filter(isOther);
+    const channels = drafted.filter((channel) => !others.includes(channel));
+    const otherColumns = others.map(({ channel, samplesIn }) => `${channel} [${samplesIn.text}]`);
     if (inMachine.size + channels.length > mostPoints) {
       noRoom.push(read);
       continue;
     }
     const own = channels.map((channel) => ({ ...channel, id: free(channel.id, inMachine) }));
-    named.push({ read, ids, machineId, channels: own });
+    named.push({ read, ids, machineId, channels: own, otherColumns });
   }
   return { named, noRoom };
 }
@@ -155,11 +173,11 @@ function settingsOf(
     const note = clock === null ? 'UTC, site (its local time), or +01:00' : null;
     settings.set('clock', { text: clock ?? 'site', guess: true, note });
   } else if (date !== null) {
-    missing.push(`start_in_name: ${date.pattern}   # dates in names and times of change disagree`);
+    missing.push(`start_in_name: ${date.pattern}  # please confirm: the files were changed in another order`);
   }
   const rateHz = usableRate(look.sampleRateHz);
   const durationS = usableDuration(look.durationS);
-  if (rateHz === null) missing.push('sample_rate: 25.6 kHz   # please fill in: the files do not say it');
+  if (rateHz === null) missing.push('sample_rate: 25.6 kHz  # please confirm: the files do not say it');
   else {
     const text = printFrequency(rateHz, 9);
     const note = look.ratesDiffer ? 'the files differ' : 'as the files say';

@@ -34,11 +34,12 @@ export function seriesIds(series: NameSeries): SeriesIds {
   const telling = others.filter((word) => word.varies || !isFiller(word.text));
   const named = telling.length > 0 ? telling : others.filter(({ text }) => /\p{L}/u.test(text));
   const [machine, point] = places.length > 0 ? [machineOf(named), places] : bothOf(named);
+  const [machineText, pointText] = [stretchOf(series, machine), stretchOf(series, point)];
   return {
-    machine: stretchOf(series, machine),
-    point: stretchOf(series, point),
-    machineId: idOf(machine),
-    pointId: idOf(point),
+    machine: machineText,
+    point: pointText,
+    machineId: machineText?.text ?? idOf(machine),
+    pointId: pointText?.text ?? idOf(point),
   };
 }
 
@@ -62,12 +63,12 @@ function bothOf(words: readonly Word[]): readonly [readonly Word[], readonly Wor
   return [words.slice(last, last + 1), words.slice(last + 1)];
 }
 
-/** Words between marks other than -, and where there is but one, its parts between - with their numbers. */
+/** Words between marks other than - and blanks; where there is but one, its parts between those, with their numbers. */
 function wordsOf(series: NameSeries): Word[] {
   const apart = (part: NamePart) => part.kind === 'mark';
   const words = joinNumbers(
     series,
-    splitAt(series, (part) => apart(part) && part.text !== '-'),
+    splitAt(series, (part) => apart(part) && part.text !== '-' && part.text !== ' '),
   );
   return words.length > 1 ? words : joinNumbers(series, splitAt(series, apart));
 }

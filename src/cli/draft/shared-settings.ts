@@ -10,9 +10,12 @@ export interface Shared {
 /** Keys that stand or fall together: whichever of the two is innermost holds. */
 const together: readonly SettingKey[] = ['files', 'files_regex'];
 
+/** Harmless to a point whose files have no dates in their names. */
+const mayBeMissing: readonly SettingKey[] = ['start_in_name', 'clock'];
+
 /**
- * What most of a group have goes to the group, provided that all have something there (a key cannot be unset further
- * in); what differs stays with its point. `outer`: settings that hold already.
+ * What more than half of a group have goes to the group, provided that all have something there (a key cannot be unset
+ * further in); what differs stays with its point. `outer`: settings that hold already.
  */
 export function shareSettings(settings: readonly Settings[], outer: Settings = new Map()): Shared {
   const common = new Map<SettingKey, Written>();
@@ -22,8 +25,8 @@ export function shareSettings(settings: readonly Settings[], outer: Settings = n
   ];
   for (const keys of groups) {
     const values = settings.map((one) => entryOf(one, keys));
-    if (values.length === 0 || values.some((value) => value === null)) continue;
-    const most = mostFrequent(values as readonly Entry[]);
+    const missing = values.includes(null) && !keys.some((key) => mayBeMissing.includes(key));
+    const most = missing ? null : mostFrequent(values);
     const held = entryOf(outer, keys);
     if (most !== null && (held === null || textOf(held) !== textOf(most))) common.set(most[0], most[1]);
   }
@@ -54,13 +57,16 @@ function textOf([key, { text }]: Entry): string {
   return `${key}: ${text}`;
 }
 
-/** The first of those that occur most often; null where nothing occurs twice among several. */
-function mostFrequent(entries: readonly Entry[]): Entry | null {
+/** What more than half of them are; null where nothing is. */
+function mostFrequent(entries: readonly (Entry | null)[]): Entry | null {
   const counts = new Map<string, number>();
-  for (const entry of entries) counts.set(textOf(entry), (counts.get(textOf(entry)) ?? 0) + 1);
-  const most = Math.max(...counts.values());
-  if (most === 1 && entries.length > 1) return null;
-  return entries.find((entry) => counts.get(textOf(entry)) === most) ?? null;
+  for (const entry of entries) {
+    if (entry === null) continue;
+    const count = (counts.get(textOf(entry)) ?? 0) + 1;
+    if (count > entries.length / 2) return entry;
+    counts.set(textOf(entry), count);
+  }
+  return null;
 }
 
 /** Settings of the site, of each machine, of each point, so that no key is written twice without need. */

@@ -47,7 +47,7 @@ export function writeSite(site: DraftSite, frame: DraftFrame): string {
 }
 
 function headLines({ files, drop, leftOut }: DraftFrame): YamlLine[] {
-  const comment = (text: string) => line(0, `# ${text}`);
+  const comment = (text: string) => line(0, `# ${text}`.trimEnd());
   return [
     comment(
       `A first draft, made by humledger from ${files} ${files === 1 ? 'file' : 'files'} in ${printable(drop)}.`,
@@ -94,7 +94,7 @@ function sharedMissing(machines: readonly DraftMachine[]): readonly string[] {
   return (first?.missing ?? []).filter((hint) => points.every(({ missing }) => missing.includes(hint)));
 }
 
-/** Machines whose points all have the same bands take them from a type; `null` key: bands differ within. */
+/** Machines whose points all have the same bands take them from a type. */
 interface BandType {
   readonly id: string;
   readonly bands: readonly DraftBand[];
@@ -106,7 +106,7 @@ function bandTypes(machines: readonly DraftMachine[]): ReadonlyMap<string, BandT
     const key = bandsKey(points);
     const [first] = points;
     if (key === null || first === undefined || first.bands.length === 0 || types.has(key)) continue;
-    types.set(key, { id: types.size === 0 ? 'usual' : `other-${types.size}`, bands: first.bands });
+    types.set(key, { id: types.size === 0 ? 'usual' : `usual-${types.size + 1}`, bands: first.bands });
   }
   return types;
 }
@@ -179,13 +179,24 @@ function machineLines(
     ...(type === undefined ? [] : [line(4, `type: ${type.id}`)]),
     ...recordingLines(common, left, 4),
     line(4, 'points:'),
-    ...machine.points.flatMap((point, index) =>
-      pointLines(point, own[index] as Settings, type === undefined),
+    ...machine.points.flatMap((point, index) => [
+      ...pointLines(point, own[index] as Settings),
+      ...(type === undefined && point.bands.length > 0 ? bandLines(point.bands, 8) : []),
+      // The hint once for equal bands of a machine; the other points get theirs in the same way.
+      ...(type === undefined && isFirstWithBands(machine.points, index) ? limitHint(point.bands, 8) : []),
+    ]),
+    ...[...new Set(machine.otherColumns)].map((column) =>
+      line(6, `# Column ${printable(column)} is no vibration: no point was made of it.`),
     ),
   ];
 }
 
-function pointLines(point: DraftPoint, settings: Settings, ownBands: boolean): YamlLine[] {
+function isFirstWithBands(points: readonly DraftPoint[], index: number): boolean {
+  const keys = points.map(({ bands }) => JSON.stringify(bands));
+  return keys.indexOf(keys[index] ?? '') === index;
+}
+
+function pointLines(point: DraftPoint, settings: Settings): YamlLine[] {
   const { quantityWritten, sensitivity, name, direction } = point;
   return [
     line(6, `- id: ${asYaml(point.id)}`, null, true),
@@ -197,9 +208,6 @@ function pointLines(point: DraftPoint, settings: Settings, ownBands: boolean): Y
       ? []
       : [line(8, `sensitivity: ${sensitivity.text}`, sensitivity.note, sensitivity.guess)]),
     ...recordingLines(settings, [], 8),
-    ...(ownBands && point.bands.length > 0
-      ? [...bandLines(point.bands, 8), ...limitHint(point.bands, 8)]
-      : []),
   ];
 }
 

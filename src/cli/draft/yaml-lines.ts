@@ -6,7 +6,7 @@ export interface YamlLine {
 }
 
 /** Comments of a paragraph stand under each other, unless a line is longer than this. */
-const furthestComment = 44;
+const furthestComment = 48;
 
 export const mark = 'please confirm';
 
