@@ -1,3 +1,4 @@
+import { readFileSync } from 'node:fs';
 import { Command, CommanderError } from 'commander';
 import type { AddCommand, CommandIo, ExitStatus } from './command.ts';
 import { addAlarms } from './commands/alarms.ts';
@@ -39,6 +40,7 @@ export async function main(args: readonly string[], io: CommandIo = processIo): 
     .description(
       'Turns recordings of rotating machines into band levels, trends, alarms and a morning summary.',
     )
+    .version(version(), '--version', 'which version this is')
     .configureOutput({ writeOut: (text) => io.out.write(text), writeErr: (text) => io.err.write(text) })
     .exitOverride()
     .showHelpAfterError('(--help shows what would be right)');
@@ -50,4 +52,9 @@ export async function main(args: readonly string[], io: CommandIo = processIo): 
     if (!(error instanceof CommanderError)) throw error;
     return error.exitCode === 0 ? 0 : 2;
   }
+}
+
+function version(): string {
+  const manifest = readFileSync(new URL('../../package.json', import.meta.url), 'utf8');
+  return (JSON.parse(manifest) as { readonly version: string }).version;
 }

@@ -102,6 +102,17 @@ describe('draft', () => {
     expect(out).toContain(`the ${text.split('# please confirm').length - 1} lines marked`);
   });
 
+  it('stays the same site when every mark is taken away by search and replace', async () => {
+    const folder = newFolder();
+    for (const hours of [0, 1]) drop(folder, `pump-2_de-v_${stamp(hours)}.wav`, wav(1));
+    const { site, text } = await drafted(folder);
+    expect(text).toMatch(/# please confirm # /);
+    const path = join(folder, 'site.yaml');
+    const loaded = loadSite(text.replaceAll('# please confirm', ''), path);
+    if (!loaded.ok) throw new Error(JSON.stringify(loaded.problems));
+    expect({ ...loaded.site, configVersion: null }).toEqual({ ...site, configVersion: null });
+  });
+
   it('keeps to one key a line, no braces, and lines of 88 characters', async () => {
     const folder = newFolder();
     for (const hours of [0, 1])
@@ -153,7 +164,7 @@ describe('draft', () => {
     );
     const { site, text } = await drafted(folder);
     expect(site.machines[0]?.points.map(({ recordings }) => recordings.sampleRateHz)).toEqual([null, null]);
-    expect(text).toMatch(/# sample_rate: .*please confirm: the files do not say it/);
+    expect(text).toMatch(/# sample_rate: .*please confirm # the files do not say it/);
   });
 
   it('is still sound when its hints are taken as they stand', async () => {

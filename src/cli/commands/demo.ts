@@ -145,7 +145,9 @@ function show(folder: string, catcher: MailCatcher, io: CommandIo): void {
   );
   io.out.write(`Ledger:     ${here('data/ledger.sqlite')}\n`);
   io.out.write(`Site file:  ${here('site.yaml')}\n\n`);
+  // `npm run demo` from a checkout: there is no `humledger` on the path yet.
+  const program = process.env.npm_lifecycle_event === 'demo' ? 'npm run -s humledger --' : 'humledger';
   io.out.write(`Look further, for example:\n`);
-  io.out.write(`  humledger alarms --site ${here('site.yaml')}\n`);
-  io.out.write(`  humledger trend pump-2/de-v overall --site ${here('site.yaml')}\n`);
+  io.out.write(`  ${program} alarms --site ${here('site.yaml')}\n`);
+  io.out.write(`  ${program} trend pump-2/de-v overall --since 2026-04-10 --site ${here('site.yaml')}\n`);
 }

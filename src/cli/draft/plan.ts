@@ -173,11 +173,13 @@ function settingsOf(
     const note = clock === null ? 'UTC, site (its local time), or +01:00' : null;
     settings.set('clock', { text: clock ?? 'site', guess: true, note });
   } else if (date !== null) {
-    missing.push(`start_in_name: ${date.pattern}  # please confirm: the files were changed in another order`);
+    missing.push(
+      `start_in_name: ${date.pattern}  # please confirm # the files were changed in another order`,
+    );
   }
   const rateHz = usableRate(look.sampleRateHz);
   const durationS = usableDuration(look.durationS);
-  if (rateHz === null) missing.push('sample_rate: 25.6 kHz  # please confirm: the files do not say it');
+  if (rateHz === null) missing.push('sample_rate: 25.6 kHz  # please confirm # the files do not say it');
   else {
     const text = printFrequency(rateHz, 9);
     const note = look.ratesDiffer ? 'the files differ' : 'as the files say';

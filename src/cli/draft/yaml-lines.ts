@@ -10,10 +10,13 @@ const furthestComment = 48;
 
 export const mark = 'please confirm';
 
-/** `note` null: nothing to say. `guess`: marked as one. */
+/**
+ * `note` null: nothing to say. `guess`: marked as one; the note is a comment of its own behind the mark, so that the
+ * file stays sound when all marks are taken away by search and replace.
+ */
 export function line(indent: number, text: string, note: string | null = null, guess = false): YamlLine {
   if (!guess) return { indent, text, note };
-  return { indent, text, note: note === null ? mark : `${mark}: ${note}` };
+  return { indent, text, note: note === null ? mark : `${mark} # ${note}` };
 }
 
 export const blank: YamlLine = { indent: 0, text: '', note: null };
