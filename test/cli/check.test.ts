@@ -119,6 +119,18 @@ describe('check', () => {
     );
   });
 
+  it('keeps to 80 columns with long ids and names', async () => {
+    const long = 'drive-end-vertical-of-the-raw-water-pump-in-the-old-hall-2';
+    const path = changed((text) =>
+      text
+        .replace('      - id: de-v\n', `      - id: ${long}\n        formerly: [de-v]\n`)
+        .replace('name: Raw water pump 2', `name: ${'Raw water pump of the old intake hall, '.repeat(2)}2`),
+    );
+    const { out } = await check(path);
+    for (const line of out.split('\n').slice(1)) expect(Array.from(line).length).toBeLessThanOrEqual(80);
+    expect(out.replace(/\s+/g, '')).toContain('drive-end-');
+  });
+
   it('says ready to run where nothing is missing', async () => {
     const path = changed(
       (text) =>
@@ -154,6 +166,8 @@ describe('check', () => {
     expect(out).toMatch(
       /would retire, with its series\n {2}- machine pump-2\n {2}- and would close what stands: \d+\n/,
     );
+    expect(out).toMatch(/the service runs with an earlier text of this file: send it SIGHUP/);
+    expect((await check(site.file)).out).not.toMatch(/earlier text/);
     const standing = await run(['alarms', '--site', site.file, '--json'], { clock: site.clock });
     expect(standing.out).toContain('pump-2');
     expect(JSON.parse((await check(site.file, '--json')).out).would_retire).toMatchObject({

@@ -10,7 +10,7 @@ import {
 } from '../../config/print-value.ts';
 import type { Band, Limit, Machine } from '../../config/site.ts';
 import { limitFacts } from '../../service/fact-names.ts';
-import { lineWidth, listing, table } from '../output.ts';
+import { lineWidth, listing, type Row, table, wrapText } from '../output.ts';
 import { timeText } from '../when.ts';
 import { type BandCheck, canAlarm, type LevelNow, type PointCheck } from './point-check.ts';
 
@@ -31,18 +31,26 @@ export function machineText(
     `criticality ${criticality}`,
   ];
   return [
-    `${plain(id)}: ${plain(facts.join(', '))}\n`,
+    `${wrapText(plain(`${id}: ${facts.join(', ')}`), lineWidth).join('\n')}\n`,
     indented(levelTable(points)),
     indented(filesTable(points, how.timeZone)),
     notes(points, how.averagingElsewhere),
   ].join('');
 }
 
+/** A longer id stands in a line of its own, so that the numbers keep their room. */
+const longestIdInRow = 14;
+
+function withId(id: string, rows: readonly (readonly string[])[]): Row[] {
+  const [first = [], ...more] = rows.map((cells) => ['', ...cells]);
+  if (id.length > longestIdInRow) return [{ beneath: id }, first, ...more];
+  return [[id, ...first.slice(1)], ...more];
+}
+
 function levelTable(points: readonly PointCheck[]): string {
-  const rows = points.flatMap((point) => {
-    if (point.bands.length === 0) return [[point.point.id, 'no bands', '', '', '', '']];
-    return point.bands.flatMap((band, n) => bandRows(band, n === 0 ? point.point.id : ''));
-  });
+  const rows = points.flatMap(({ point, bands }) =>
+    withId(point.id, bands.length === 0 ? [['no bands']] : bands.flatMap(bandRows)),
+  );
   const confidence = points.flatMap(({ bands }) => bands).find(({ now }) => now !== null)
     ?.now?.confidencePercent;
   const interval = confidence === undefined ? 'interval' : `${printNumber(confidence)} % interval`;
@@ -51,21 +59,22 @@ function levelTable(points: readonly PointCheck[]): string {
     titles.map((title) => ({ title })),
     rows,
     lineWidth - 2,
+    0,
   );
 }
 
 /** One row a limit; the level stands in the first. */
-function bandRows({ band, now, limits }: BandCheck, pointId: string): string[][] {
+function bandRows({ band, now, limits }: BandCheck): string[][] {
   const level =
     now === null ? 'none yet' : `${now.atLeast ? 'at least ' : ''}${levelWithUnit(now.level, band)}`;
   const interval =
     now === null
       ? ''
       : `${bareLevel(now.intervalLow, band.display)} to ${bareLevel(now.intervalHigh, band.display)}`;
-  if (limits.length === 0) return [[pointId, band.id, level, interval, 'no limit', '']];
+  if (limits.length === 0) return [[band.id, level, interval, 'no limit', '']];
   return limits.map((limit, n) => {
     const cells = [limitCell(limit, limit.alert, band, now), limitCell(limit, limit.danger, band, now)];
-    return n === 0 ? [pointId, band.id, level, interval, ...cells] : ['', '', '', '', ...cells];
+    return n === 0 ? [band.id, level, interval, ...cells] : ['', '', '', ...cells];
   });
 }
 
@@ -84,23 +93,27 @@ function limitCell(limit: Limit, at: number | null, band: Band, now: LevelNow | 
 }
 
 function filesTable(points: readonly PointCheck[], timeZone: string): string {
-  const rows = points.map(({ point, waiting, ledger, from, usedMs }) => [
-    point.id,
-    String(waiting?.files ?? 0),
-    String(ledger?.archived.count ?? 0),
-    String(ledger?.recordings ?? 0),
-    usedMs === null ? 'none' : `${timeText(usedMs, timeZone)}${from === 'file' ? ', analysed now' : ''}`,
-  ]);
+  const rows = points.flatMap(({ point, waiting, ledger, from, usedMs }) =>
+    withId(point.id, [
+      [
+        String(waiting?.files ?? 0),
+        String(ledger?.archived.count ?? 0),
+        String(ledger?.recordings ?? 0),
+        usedMs === null ? 'none' : `${timeText(usedMs, timeZone)}${from === 'file' ? ', analysed now' : ''}`,
+      ],
+    ]),
+  );
   return `\n${table(
     [
       { title: 'point' },
       { title: 'in drop', right: true },
       { title: 'in archive', right: true },
       { title: 'in ledger', right: true },
-      { title: 'recording these levels are of' },
+      { title: 'levels are of' },
     ],
     rows,
     lineWidth - 2,
+    0,
   )}`;
 }
 

@@ -1,10 +1,11 @@
 import { statSync } from 'node:fs';
 import type { MailServer, Site } from '../../config/site.ts';
-import { readHealth, stuckAfterMs } from '../../service/health.ts';
+import { readHealth } from '../../service/health.ts';
 import type { SiteFile } from '../../service/site-in-force.ts';
 import type { Ledger } from '../../store/ledger.ts';
 import { isLedgerRefusal, LedgerError } from '../../store/ledger-error.ts';
 import { openLedger } from '../../store/open-ledger.ts';
+import { isOwned } from '../../store/owner-lock.ts';
 import { readSiteIds } from '../../store/site-ids.ts';
 import { type DropLook, lookAtDrop } from './drop-look.ts';
 import { FileLevels } from './file-levels.ts';
@@ -57,7 +58,7 @@ export async function checkSite(
         ? ['no recipients: nobody will be told']
         : []),
   ];
-  const remarks = earlierTextRuns(site, nowMs)
+  const remarks = earlierTextRuns(site)
     ? ['the service runs with an earlier text of this file: send it SIGHUP, or restart it']
     : [];
   const { retired, firstTime } = read;
@@ -124,8 +125,7 @@ function passwordProblems({ mail }: Site): string[] {
   });
 }
 
-function earlierTextRuns(site: Site, nowMs: number): boolean {
-  const health = readHealth(site.folders.data);
-  if (health === null || nowMs - health.roundMs > site.timings.sweepEveryMs + stuckAfterMs) return false;
-  return health.configVersion !== site.configVersion;
+function earlierTextRuns(site: Site): boolean {
+  const health = isOwned(site.folders.data) ? readHealth(site.folders.data) : null;
+  return health !== null && health.configVersion !== site.configVersion;
 }

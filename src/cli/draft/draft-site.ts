@@ -14,7 +14,7 @@ export interface Drafted {
 }
 
 /** Series that are drafted, those with most files first. */
-const mostSeries = 300;
+const mostSeries = 1000;
 const mostLeftOut = 8;
 
 /** The text of a first site file for the recordings in a folder; in words why there can be none. */

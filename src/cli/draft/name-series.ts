@@ -18,7 +18,7 @@ export interface NameSeries {
 }
 
 /** Values of a machine's or point's id in one table of names; more are taken for something that differs every time. */
-const mostSeries = 200;
+const mostSeries = 1000;
 /** Runs of digits at least this long, with zeros ahead, are counters. */
 const counterWidth = 3;
 /** Files of several places that were written in one go. */

@@ -1,5 +1,10 @@
 import { pathTest } from '../../acquisition/path-pattern.ts';
-import { commonName, expandPattern, parseFilePattern } from '../../config/file-pattern.ts';
+import {
+  commonName,
+  type ExpandedPattern,
+  expandPattern,
+  parseFilePattern,
+} from '../../config/file-pattern.ts';
 import type { NameSeries } from './name-series.ts';
 import type { Stretch } from './series-ids.ts';
 
@@ -46,6 +51,7 @@ export function filesSettings(all: readonly NamedSeries[], others: readonly stri
   for (let one = 0; one < all.length; one++) {
     for (let other = one + 1; other < all.length; other++) {
       if (loose.has(one) && loose.has(other)) continue;
+      if (!mayMeet(expanded[one] ?? [], expanded[other] ?? [])) continue;
       if (commonName(expanded[one] ?? [], expanded[other] ?? []) === null) continue;
       loose.add(one);
       loose.add(other);
@@ -56,6 +62,16 @@ export function filesSettings(all: readonly NamedSeries[], others: readonly stri
       ? { key: 'files_regex', text: regexText(series) }
       : { key: 'files', text: patterns[index] as string },
   );
+}
+
+/** False where the letters ahead of the first <any> differ already. */
+function mayMeet(one: ExpandedPattern, other: ExpandedPattern): boolean {
+  const heads = [one, other].map((parts) => {
+    const first = parts.indexOf(null);
+    return parts.slice(0, first < 0 ? parts.length : first).join('');
+  });
+  const [a = '', b = ''] = heads;
+  return a.startsWith(b) || b.startsWith(a);
 }
 
 function patternText({ series, machine, point }: NamedSeries): string {
