@@ -54,6 +54,7 @@ export function noiseFloor(density: Float64Array, shape: AveragingShape, perLine
   const left = linesWithoutPeaks(density, result, statistics.thresholds(perLine), leakage);
   const enough = left.length > Math.max(2 * leastReach, 0.1 * lines.length);
   floorFromLines(density, enough ? left : lines, leastReach, statistics, result);
+  doubtOnSlopes(result);
   return result;
 }
 
@@ -104,6 +105,18 @@ function floorFromLines(
   if (previous < lastLine) {
     floor.fill(floor[previous], previous + 1, lastLine + 1);
     linesBehind.fill(linesBehind[previous], previous + 1, lastLine + 1);
+  }
+}
+
+/**
+ * Where the floor changes by half or more within the reach of the short median, its wide median stands for less: the
+ * bend of a filter's knee or of a resonance is followed only as well as by 31 lines.
+ */
+function doubtOnSlopes({ floor, linesBehind, firstLine, lastLine }: NoiseFloor): void {
+  for (let line = firstLine; line <= lastLine; line++) {
+    const before = floor[Math.max(firstLine, line - shortReach)];
+    const after = floor[Math.min(lastLine, line + shortReach)];
+    if (after > 2 * before || before > 2 * after) linesBehind[line] = Math.min(linesBehind[line], 31);
   }
 }
 

@@ -58,8 +58,8 @@ const roundingOfLargest = 1e-25;
  *
  * Measured limits of the rectangular window, whose side lobes fall so slowly that a tone's mirror image reaches
  * everywhere: a pure tone reads true to 0.04 line and 0.5 % from 30 lines off the ends, to 0.2 line and 3 % nearer; of
- * two tones six lines apart the second one's frequency is good to a line only, and 20 dB down it is found in 85 to 98
- * of 100 (1 to 31 averages). All other windows: 0.002 line, 0.03 % from 3 (Hann, Hamming), 4, 5 and 6 lines on.
+ * two tones six lines apart the second one's frequency is good to a line only; equal ones are told apart in 98 of 100,
+ * one 20 dB down is found in 84 to 98 of 100 (1 to 31 averages). All other windows: 0.002 line, 0.03 % from 3 (Hann, Hamming), 4, 5 and 6 lines on.
  */
 export function findPeaks(density: Float64Array, settings: PeakSettings): PeakSearch {
   const { segmentSamples, falsePeaksPerSpectrum = 0.1 } = settings;
