@@ -45,7 +45,7 @@ function text({ averaging, stagesMs, service, mostResidentBytes }: Bench): strin
   return [
     'Averaging, Hann, 50 %, 25.6 kHz',
     ...table([
-      ['segment', 'seconds of signal a second'],
+      ['segment', 'seconds of signal a second of CPU'],
       ...averaging.map(({ segmentSamples, secondsASecond }) => [
         `${segmentSamples}`,
         secondsASecond.toFixed(0),

@@ -10,9 +10,11 @@ import type { Point } from '../../src/config/site.ts';
 import { layBands } from '../../src/manipulation/point-bands.ts';
 import { openRegularFile } from '../../src/service/file-source.ts';
 import work from '../../src/service/recording-worker.ts';
-import { averageDensity } from '../../src/signal/averaging.ts';
+import { type AveragedDensity, averageDensity } from '../../src/signal/averaging.ts';
 import { bandInterval, makeIntervalKernel } from '../../src/signal/band-interval.ts';
-import { findPeaks } from '../../src/signal/peaks.ts';
+import { findPeaks, type PeakSearch } from '../../src/signal/peaks.ts';
+import { SegmentSpectra } from '../../src/signal/segment-spectra.ts';
+import { steadiness } from '../../src/signal/steadiness.ts';
 import { waveformValues } from '../../src/signal/waveform.ts';
 import { durationS, makeSite, sampleRateHz } from './bench-site.ts';
 
@@ -40,28 +42,57 @@ export function stageTimes(bytes: readonly Uint8Array[]): StageTimes {
   }
 }
 
+interface Prepared {
+  readonly path: string;
+  readonly samples: Float64Array;
+  readonly averaged: AveragedDensity;
+  readonly segments: SegmentSpectra;
+  readonly search: PeakSearch;
+}
+
 function measured(paths: readonly string[], point: Point): StageTimes {
-  const samples = paths.map(readSamples);
-  const averaged = samples.map((values) => averageDensity(values, averaging));
-  const { averages } = averaged[0] as (typeof averaged)[0];
-  const shape = { window: 'hann', segmentSamples, hopSamples: hop, averages, sampleRateHz } as const;
-  const found = averaged.map(({ density }) => findPeaks(density, shape).peaks);
+  const files = paths.map(prepared);
+  const { averages } = (files[0] as Prepared).averaged;
   const kernel = makeIntervalKernel('hann', segmentSamples, hop, averages);
   const grid = { lineSpacingHz: sampleRateHz / segmentSamples, lines: hop + 1 };
-  const each = (stage: (index: number) => unknown) => cpuMsEach(paths.length, stage);
+  const { laid } = layBands(point, grid, null);
+  const each = (stage: (file: Prepared) => unknown) => cpuMsEach(files, stage);
   return {
-    'read, hash, decode': each((index) => readSamples(paths[index] as string)),
-    'sample quality': each((index) => checkSamples(samples[index] as Float64Array)),
-    'waveform values': each((index) => waveformValues(samples[index] as Float64Array)),
-    averaging: each((index) => averageDensity(samples[index] as Float64Array, averaging)),
-    peaks: each((index) => findPeaks((averaged[index] as (typeof averaged)[0]).density, shape)),
-    'six bands with intervals': each((index) => {
-      const tones = (found[index] ?? []).filter(({ kind }) => kind === 'tone');
-      for (const { weights } of layBands(point, grid, null).laid)
-        bandInterval((averaged[index] as (typeof averaged)[0]).density, weights, kernel, tones);
+    'read, hash, decode': each(({ path }) => readSamples(path)),
+    'sample quality': each(({ samples }) => checkSamples(samples)),
+    'waveform values': each(({ samples }) => waveformValues(samples)),
+    averaging: each(({ samples }) => averageDensity(samples, averaging)),
+    'each segment kept':
+      each(({ samples }) => segmentsOf(samples)) - each(({ samples }) => averageDensity(samples, averaging)),
+    peaks: each(({ averaged }) => findPeaks(averaged.density, shapeOf(averages))),
+    steadiness: each(({ segments, search }) => steadiness(segments, search, shapeOf(averages))),
+    'six bands with intervals': each(({ averaged, search }) => {
+      const tones = search.peaks.filter(({ kind }) => kind === 'tone');
+      for (const { weights } of laid) bandInterval(averaged.density, weights, kernel, tones);
     }),
-    'whole task of the thread': each((index) => measureTask(paths[index] as string, point)),
+    'whole task of the thread': each(({ path }) => measureTask(path, point)),
   };
+}
+
+function prepared(path: string): Prepared {
+  const samples = readSamples(path);
+  const { averaged, segments } = segmentsOf(samples);
+  return {
+    path,
+    samples,
+    averaged,
+    segments,
+    search: findPeaks(averaged.density, shapeOf(averaged.averages)),
+  };
+}
+
+function shapeOf(averages: number) {
+  return { window: 'hann', segmentSamples, hopSamples: hop, averages, sampleRateHz } as const;
+}
+
+function segmentsOf(samples: Float64Array): { averaged: AveragedDensity; segments: SegmentSpectra } {
+  const segments = new SegmentSpectra(hop + 1);
+  return { averaged: averageDensity(samples, averaging, (density) => segments.add(density)), segments };
 }
 
 const averaging = { window: 'hann', segmentSamples, overlapPercent: 50, sampleRateHz } as const;
@@ -106,13 +137,13 @@ function measureTask(path: string, point: Point): void {
 }
 
 /** CPU time, in the best of several rounds over all files: both keep out what else the machine does meanwhile. */
-function cpuMsEach(files: number, stage: (index: number) => unknown): number {
+function cpuMsEach(files: readonly Prepared[], stage: (file: Prepared) => unknown): number {
   let best = Number.POSITIVE_INFINITY;
   for (let round = 0; round < 6; round++) {
     const before = process.cpuUsage();
-    for (let index = 0; index < files; index++) stage(index);
+    for (const file of files) stage(file);
     const { user, system } = process.cpuUsage(before);
-    best = Math.min(best, (user + system) / 1000 / files);
+    best = Math.min(best, (user + system) / 1000 / files.length);
   }
   return best;
 }
