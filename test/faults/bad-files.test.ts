@@ -209,6 +209,9 @@ describe('a file that no point takes', () => {
     await service.hour(1);
     expect(service.said('no point of the site file takes this file')).toHaveLength(1);
     expect(await service.standing()).toEqual(['unassigned chiller-#_#T#Z.wav trouble']);
+    expect(await service.rows('to_tell', 'event, severity')).toEqual([
+      { event: 'raised', severity: 'trouble' },
+    ]);
     expect(service.files('drop')).toEqual([...new Set(names)].sort());
     await service.hour(3);
     expect(service.files('drop')).toEqual([]);

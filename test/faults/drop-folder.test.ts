@@ -211,6 +211,19 @@ describe('a recording that comes again', () => {
     ]);
   });
 
+  it('as another file before the first has settled counts from its own arrival', async () => {
+    const service = await trial();
+    service.toHour(0);
+    service.drop(pump(0), wav([1], 5));
+    await service.after(0);
+    writeFileSync(join(service.site.folder, 'next.wav'), wav([1.5], 99));
+    renameSync(join(service.site.folder, 'next.wav'), join(service.site.drop, pump(0)));
+    expect(await service.after(4_000)).toMatchObject({ taken: 0 });
+    expect(await service.after(4_000)).toMatchObject({ taken: 0 });
+    expect(await service.after(2_000)).toMatchObject({ taken: 1 });
+    expect(await service.rows('recordings', 'arrived_ms')).toEqual([{ arrived_ms: beginMs + 14_000 }]);
+  });
+
   it('in quarantine is tried again when it is dropped again', async () => {
     const service = await trial();
     for (const n of [1, 2]) {
