@@ -14,6 +14,8 @@ export interface SampleQualitySettings {
   /** Lower edge of the lowest band in velocity, Hz; null: none is asked for. */
   readonly lowestVelocityHz: number | null;
   readonly speedHz: number | null;
+  /** A sample of more than this is a spoilt number; infinite where it is not given. */
+  readonly largest?: number;
 }
 
 /**
@@ -22,6 +24,7 @@ export interface SampleQualitySettings {
  */
 export class SampleQuality {
   readonly #settings: SampleQualitySettings;
+  readonly #largest: number;
   readonly #rows = new EqualRows();
   readonly #start: SettlingStart;
   #samples = 0;
@@ -32,13 +35,14 @@ export class SampleQuality {
 
   constructor(settings: SampleQualitySettings) {
     this.#settings = settings;
+    this.#largest = Math.min(settings.largest ?? Number.MAX_VALUE, Number.MAX_VALUE);
     this.#start = new SettlingStart(settings.sampleRateHz);
   }
 
   add(samples: Float64Array): void {
     let from = 0;
     for (let n = 0; n < samples.length; n++) {
-      if (Number.isFinite(samples[n])) continue;
+      if (Math.abs(samples[n]) <= this.#largest) continue;
       this.#addFinite(samples, from, n);
       this.#notFinite++;
       this.#stretch = 0;
@@ -75,7 +79,7 @@ export class SampleQuality {
     if (this.#notFinite > 0) {
       found.push({
         flag: 'not-a-number',
-        detail: `${this.#notFinite} of ${this.#samples} samples are no finite numbers; the longest stretch without one has ${this.#longestStretch}`,
+        detail: `${this.#notFinite} of ${this.#samples} samples are no usable numbers; the longest stretch without one has ${this.#longestStretch}`,
       });
     }
     if (finite === 0) return found;

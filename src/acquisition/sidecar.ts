@@ -19,6 +19,8 @@ export const largestSidecarBytes = 65_536;
 const deepest = 4;
 const mostChannels = 256;
 const fastestRpm = 1_000_000;
+/** What turns once in ten weeks stands: an order of it would be no number. */
+const slowestRpm = 1e-5;
 
 export interface SidecarRefusal {
   /** What is wrong, where, and what would be right. */
@@ -69,7 +71,7 @@ function sidecarOf(value: unknown): Sidecar {
   for (const name of names) channels[name] = channelOf(given[name], `channels.${printableName(name)}`);
   return {
     start: startOf(fields.start),
-    speedRpm: numberOf(fields.speed_rpm, 'speed_rpm', 0, fastestRpm),
+    speedRpm: speedOf(fields.speed_rpm),
     loadPercent: numberOf(fields.load_percent, 'load_percent', -1000, 1000),
     running: runningOf(fields.running),
     channels: { ...channels },
@@ -98,6 +100,11 @@ function startOf(value: unknown): StatedStart | null {
   const start = typeof value === 'string' ? parseIsoStart(value, 'sidecar') : null;
   if (start === null) throw new Wrong('start: no date and time; write it as "2026-11-03T09:30:00Z"');
   return start;
+}
+
+function speedOf(value: unknown): number | null {
+  const rpm = numberOf(value, 'speed_rpm', 0, fastestRpm);
+  return rpm === null || rpm >= slowestRpm ? rpm : 0;
 }
 
 function numberOf(value: unknown, key: string, least: number, most: number): number | null {

@@ -47,9 +47,16 @@ const nominalSpeedUncertainty = 0.03;
 export const unevenStepRatio = 0.05;
 
 /**
+ * No sensor gives more than this in the SI unit of its quantity, nor less and yet something: a sample beyond is a spoilt
+ * number and counts as not finite, one below as 0. In between, fourth powers and densities stay numbers that can be kept.
+ */
+export const largestSample = 1e12;
+const leastSample = 1e-60;
+
+/**
  * Makes a `Measurement` from the samples of one channel, fed in blocks of any size; the result does not depend on
- * the sizes. Holds a segment, never the recording. Samples that are not finite end a stretch: the longest is measured
- * and the sample check says so.
+ * the sizes. Holds a segment, never the recording. Samples that are not finite, or larger than any sensor gives, end a
+ * stretch: the longest is measured and the sample check says so.
  *
  * Throws where the point asks for what its check must have refused (velocity from displacement).
  */
@@ -93,8 +100,10 @@ export class Measurer {
     const { siPerSample } = this.#settings;
     let from = 0;
     for (let n = 0; n < raw.length; n++) {
-      scaled[n] = raw[n] * siPerSample;
-      if (Number.isFinite(raw[n])) continue;
+      const value = raw[n] * siPerSample;
+      const size = Math.abs(value);
+      scaled[n] = size < leastSample ? 0 : value;
+      if (size <= largestSample) continue;
       this.#stretch.add(scaled.subarray(from, n));
       this.#endStretch();
       from = n + 1;

@@ -11,7 +11,7 @@ import {
 import { SampleQuality } from '../acquisition/sample-quality.ts';
 import { appliedSignal, scalingOf } from '../acquisition/scaling.ts';
 import { type Point, pointPath } from '../config/site.ts';
-import { Measurer } from '../manipulation/measure.ts';
+import { largestSample, Measurer } from '../manipulation/measure.ts';
 import type { Measurement } from '../manipulation/measurement.ts';
 
 /** A point that takes part in a recording, with what its machine adds. */
@@ -102,6 +102,7 @@ function measurers(
         voltsPerSample: scaling.voltsPerSample,
         lowestVelocityHz: lowestVelocityHz(point, speedHz),
         speedHz,
+        largest: largestSample / scaling.siPerSample,
       }),
     });
     fed.push({ index, measurer, rateHz });

@@ -77,6 +77,8 @@ function floorSpread(segments: SegmentSpectra, search: PeakSearch, settings: Pea
     levels[g] = sum / lines;
     mean += levels[g] / groups;
   }
+  // Silent on every line outside the peaks: there is no floor to vary.
+  if (mean === 0) return null;
   let squares = 0;
   for (const level of levels) squares += (level / mean - 1) ** 2;
   const variance = squares / (groups - 1);

@@ -140,7 +140,7 @@ describe('the sample quality of a bad recording', () => {
     expect(findings(broken)).toEqual([
       {
         flag: 'not-a-number',
-        detail: '2 of 25600 samples are no finite numbers; the longest stretch without one has 19899',
+        detail: '2 of 25600 samples are no usable numbers; the longest stretch without one has 19899',
       },
     ]);
   });

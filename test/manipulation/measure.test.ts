@@ -226,6 +226,16 @@ describe('a recording that cannot be measured whole', () => {
     expect(flags(measurement)).toEqual(['not-a-number']);
   });
 
+  it('gives the longest stretch without a sample that no sensor gives, and finite numbers only', () => {
+    const samples = gaussianNoise(seededRandom(5), 20 * fs);
+    const clean = samples.slice(4 * fs + 1);
+    samples[4 * fs] = -1e30;
+    const measurement = measure(samples, testPoint());
+    expect(measurement).toEqual(measure(clean, testPoint()));
+    samples.fill(1e300);
+    expect(measure(samples, testPoint())).toMatchObject({ waveform: null, levels: [], durationS: 0 });
+  });
+
   it('gives nothing but its flags when no sample is a number', () => {
     const measurement = measure(new Float64Array(3 * fs).fill(Number.NaN), testPoint());
     expect(measurement).toMatchObject({ waveform: null, levels: [], durationS: 0 });
