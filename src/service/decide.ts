@@ -10,7 +10,14 @@ import type { RecordingTime } from './recording-time.ts';
 import { spansOf, statedStart, timeOf } from './recording-time.ts';
 import { troublesOf } from './recording-troubles.ts';
 import type { SiteView } from './site-view.ts';
-import { identityOf, otherReading, recordingRow, remarkOf, type TakenFile } from './taken-file.ts';
+import {
+  fileFindings,
+  identityOf,
+  otherReading,
+  recordingRow,
+  remarkOf,
+  type TakenFile,
+} from './taken-file.ts';
 import type { ReadyRecording } from './verdicts.ts';
 
 /**
@@ -52,7 +59,7 @@ export async function decide(
     usedMs: time.usedMs,
     late: time.late,
     judged,
-    recordingFlags: [...time.findings, ...answer.quality].map(({ flag }) => flag),
+    recordingFlags: [...time.findings, ...fileFindings(taken)].map(({ flag }) => flag),
   });
   const row = recordingRow(view, taken, {
     identity,
@@ -66,7 +73,7 @@ export async function decide(
     outcome: 'taken',
     reason: remarkOf(taken, time),
     evaluated: judged && !time.late,
-    quality: [...answer.quality, ...time.findings],
+    quality: [...row.quality, ...time.findings],
   });
   const context: ChangeContext = {
     ids: view.ids,

@@ -70,20 +70,9 @@ export async function timeOf(reader: Reader, question: TimeQuestion): Promise<Re
     toMs: wantedMs + Math.floor(intervalMs / 2),
     limit: 100,
   });
-  const before = start.statedMs === null ? await findTakenByContent(reader, sha256) : null;
-  const repeated = before !== null && before.sourceId === source.id;
+  const repeated = start.statedMs === null && (await findTakenByContent(reader, source.id, sha256)) !== null;
   const first = repeated ? undefined : versionBefore(near, start, ready.arrivedMs, intervalMs);
-  if (first !== undefined && first.usedMs !== null) {
-    const clock: ClockAnswer = {
-      usedMs: first.usedMs,
-      offsetMs: source.clockOffsetMs,
-      late: false,
-      trouble: 'none',
-      flag: null,
-    };
-    const whole = !first.quality.some(({ flag }) => flag === 'too-short');
-    return { start, usedMs: first.usedMs, clock, late: false, repeated, secondVersion: whole, findings: [] };
-  }
+  if (first !== undefined && first.usedMs !== null) return inPlaceOf(first, first.usedMs, start, source);
   const clock = readLoggerClock(
     { ...source, offsetMs: source.clockOffsetMs },
     {
@@ -101,7 +90,10 @@ export async function timeOf(reader: Reader, question: TimeQuestion): Promise<Re
   return { start, usedMs: clock.usedMs, clock, late, repeated, secondVersion: false, findings };
 }
 
-/** The recording of the same start that came at most half an interval before; the file is a second version of it. */
+/**
+ * The recording of the same start that came at most half an interval before; the file is a second version of it. What
+ * was a second version itself is nobody's first: a logger that states one start for ever would blind its point.
+ */
 function versionBefore(
   near: readonly StoredRecording[],
   start: RecordingStart,
@@ -109,9 +101,26 @@ function versionBefore(
   intervalMs: number,
 ): StoredRecording | undefined {
   if (start.statedMs === null) return undefined;
-  return near.find(
-    (other) => other.statedMs === start.statedMs && arrivedMs - other.arrivedMs <= intervalMs / 2,
-  );
+  const within = (a: number, b: number) => Math.abs(a - b) <= intervalMs / 2;
+  const same = near.filter(({ statedMs }) => statedMs === start.statedMs);
+  let first: StoredRecording | undefined;
+  for (const other of same.sort((a, b) => a.arrivedMs - b.arrivedMs))
+    if (first === undefined || !within(other.arrivedMs, first.arrivedMs)) first = other;
+  return first !== undefined && within(arrivedMs, first.arrivedMs) ? first : undefined;
+}
+
+/** A second version: evaluated only where the first was incomplete, and late where newer ones were evaluated since. */
+function inPlaceOf(
+  first: StoredRecording,
+  usedMs: number,
+  start: RecordingStart,
+  source: Source,
+): RecordingTime {
+  const secondVersion = !first.quality.some(({ flag }) => flag === 'too-short' || flag === 'dropouts');
+  const late = source.newestUsedMs !== null && usedMs < source.newestUsedMs;
+  const clock: ClockAnswer = { usedMs, offsetMs: source.clockOffsetMs, late, trouble: 'none', flag: null };
+  const findings = findingsOf(clock, { late, repeated: false, start, source });
+  return { start, usedMs, clock, late, repeated: false, secondVersion, findings };
 }
 
 function nearestUsed(near: readonly StoredRecording[], wantedMs: number): number | null {

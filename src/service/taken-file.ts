@@ -1,5 +1,6 @@
 import { archivePlace } from '../acquisition/filing-place.ts';
 import { recordingIdentity } from '../acquisition/identity.ts';
+import type { QualityFinding } from '../acquisition/recording.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { findTaken, type NewRecording, type StoredRecording } from '../store/recordings.ts';
 import type { Source } from '../store/sources.ts';
@@ -37,6 +38,13 @@ export async function otherReading(
   return otherMs === null ? null : findTaken(reader, identityOf(taken, otherMs));
 }
 
+/** What the file as a whole lacks. An incomplete one may be replaced by a second version. */
+export function fileFindings({ ready, answer }: TakenFile): QualityFinding[] {
+  if (!ready.zeroTail) return [...answer.quality];
+  const detail = 'its tail is all zeros: it may not have been written to its end';
+  return [...answer.quality, { flag: 'dropouts', detail }];
+}
+
 export interface RowFacts {
   readonly identity: string;
   readonly source: Source;
@@ -47,9 +55,10 @@ export interface RowFacts {
 
 export function recordingRow(
   view: SiteView,
-  { ready, answer }: TakenFile,
+  taken: TakenFile,
   facts: RowFacts,
 ): Omit<NewRecording, 'outcome' | 'reason' | 'evaluated'> {
+  const { ready, answer } = taken;
   const after = view.site.folders.afterReading;
   const usedMs = Math.round(facts.usedMs);
   return {
@@ -67,7 +76,7 @@ export function recordingRow(
     sampleRateHz: answer.sampleRateHz,
     channelCount: answer.header.channelNames.length,
     configVersionId: view.ids.configVersionId,
-    quality: answer.quality,
+    quality: fileFindings(taken),
     filingFrom: ready.path,
     filingTo: after === 'archive' ? archivePlace(ready.path, usedMs, answer.sha256) : null,
     filingState: after === 'keep' ? 'filed' : 'pending',

@@ -55,9 +55,10 @@ export async function findTaken(reader: Reader, identity: string): Promise<Store
   return row === undefined ? null : storedRecording(row);
 }
 
-/** The newest taken recording with this content, whatever its name and start. */
+/** The newest taken recording of a source with this content, whatever its name and start. */
 export async function findTakenByContent(
   reader: Reader,
+  sourceId: number,
   contentSha256: string,
 ): Promise<StoredRecording | null> {
   const row = await reader
@@ -65,6 +66,7 @@ export async function findTakenByContent(
     .selectAll()
     .where('outcome', '=', 'taken')
     .where('content_sha256', '=', contentSha256)
+    .where('source_id', '=', sourceId)
     .orderBy('id', 'desc')
     .limit(1)
     .executeTakeFirst();

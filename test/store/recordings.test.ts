@@ -50,15 +50,21 @@ const insert = (ledger: Ledger, more: Partial<NewRecording>) =>
 
 test('a recording is taken once; repeats and refused files of the same identity are kept beside it', async () => {
   const ledger = await withSite();
-  const id = await insert(ledger, {});
+  const sourceOf = (name: string) => ledger.transact(async (writer) => (await getSource(writer, name)).id);
+  const [sourceId, other] = [await sourceOf('pump_<any>'), await sourceOf('press_<any>')];
+  const id = await insert(ledger, { sourceId });
+  await insert(ledger, { sourceId: other, identity: 'identity-3' });
   await insert(ledger, { outcome: 'repeat' });
   await insert(ledger, { outcome: 'quarantined', reason: 'empty', identity: 'identity-2', arrivedMs: 900 });
   await expect(insert(ledger, {})).rejects.toThrow('UNIQUE');
-  expect(await ledger.read((reader) => findTaken(reader, 'identity-1'))).toEqual({ ...recordingOf(), id });
+  expect(await ledger.read((reader) => findTaken(reader, 'identity-1'))).toEqual({
+    ...recordingOf({ sourceId }),
+    id,
+  });
   expect(await ledger.read((reader) => findTaken(reader, 'identity-2'))).toBeNull();
-  expect((await ledger.read((reader) => findTakenByContent(reader, 'content-1')))?.id).toBe(id);
+  expect((await ledger.read((reader) => findTakenByContent(reader, sourceId, 'content-1')))?.id).toBe(id);
   expect(await ledger.read((reader) => countByOutcome(reader, 1000))).toEqual({
-    taken: 1,
+    taken: 2,
     repeat: 1,
     quarantined: 0,
     unassigned: 0,
