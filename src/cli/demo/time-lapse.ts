@@ -11,8 +11,8 @@ const minuteMs = 60_000;
 
 /**
  * Moments after each recording at which the service is given a round: it notices the files, they have settled, a
- * danger and then the rest have been gathered, an incomplete file is given up, and the half hours between, so that the
- * morning comes when it would have come.
+ * danger and then the rest have been gathered, an incomplete file is given up, and the
+ * half hours at which the morning comes, in winter and in summer time.
  */
 const momentsMs: readonly number[] = [
   0,
@@ -20,7 +20,8 @@ const momentsMs: readonly number[] = [
   20_000,
   6 * minuteMs,
   11 * minuteMs,
-  ...[30, 60, 90, 120].map((minutes) => minutes * minuteMs),
+  30 * minuteMs,
+  150 * minuteMs,
 ];
 
 /** What a person of the site does on a day of the story. */
