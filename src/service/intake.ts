@@ -12,7 +12,7 @@ import type { KeptFiles } from './kept-files.ts';
 import type { Complaints, Logger } from './log.ts';
 import { PutAside } from './put-aside.ts';
 import type { HeaderAnswer, HeaderTask, RecordingAnswer, RecordingTask } from './recording-task.ts';
-import { spansOf, statedStart } from './recording-time.ts';
+import { spansOf, startsOf } from './recording-time.ts';
 import type { SiteView } from './site-view.ts';
 import type { Step } from './steps.ts';
 import { Strangers } from './strangers.ts';
@@ -129,7 +129,7 @@ export class Intake {
     const look = await this.#arrivals.look(sweep.files.filter((file) => !this.#fileAway.holds(file)));
     const { view: viewOf, clock } = this.#tools;
     const view = viewOf();
-    const starts = new Map(look.ready.map((ready) => [ready.path, statedStart(view, ready, null).startMs]));
+    const starts = startsOf(view, look.ready);
     const startOf = (ready: ReadyRecording) => starts.get(ready.path) as number;
     const { now, held, againInMs } = this.#backlog.split(
       look.ready,

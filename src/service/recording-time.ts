@@ -41,6 +41,24 @@ export function statedStart(
   });
 }
 
+/**
+ * Starts of files that wait together, by path, for their order. In the hour that comes twice, of two files of a source
+ * with one reading the one that was changed later is the second.
+ */
+export function startsOf(view: SiteView, ready: readonly ReadyRecording[]): Map<string, number> {
+  const changed = ({ header }: ReadyRecording) => header.look.mtimeMs;
+  const inOrder = [...ready].sort((a, b) => changed(a) - changed(b) || (a.path < b.path ? -1 : 1));
+  const taken = new Set<string>();
+  const starts = new Map<string, number>();
+  for (const one of inOrder) {
+    const { startMs, otherMs } = statedStart(view, one, null);
+    const reading = `${one.source}\n${startMs}`;
+    starts.set(one.path, otherMs !== null && taken.has(reading) ? otherMs : startMs);
+    taken.add(reading);
+  }
+  return starts;
+}
+
 /** Shortest expected interval, and shortest overdue span, of the points of a recording. */
 export function spansOf(points: readonly Point[]): {
   readonly intervalMs: number;
