@@ -55,3 +55,18 @@ describe('a story that nobody interrupts', () => {
     },
   );
 });
+
+describe('a service that is killed', () => {
+  it.each(interruptions)('at "$title" ends where an undisturbed one ends', async ({ step, shelf }) => {
+    const whole = await undisturbedRun(shelf);
+    const total = whole.steps.get(step) ?? 0;
+    const run = await storyRun(shelf);
+    const ended = await playInChild(run.folder, step, Math.ceil(total / 2));
+    expect(ended).toMatchObject({ signal: 'SIGKILL' });
+    await playStory(run.folder, noStep);
+    expect(run.state()).toEqual(whole.state);
+    const received = run.received();
+    const twice = received.length - new Set(received).size;
+    expect(twice).toBe(mayRepeatMails.includes(step) ? 1 : 0);
+  });
+});
