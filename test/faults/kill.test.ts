@@ -62,7 +62,7 @@ describe('a service that is killed', () => {
     const total = whole.steps.get(step) ?? 0;
     const run = await storyRun(shelf);
     const ended = await playInChild(run.folder, step, Math.ceil(total / 2));
-    expect(ended).toMatchObject({ signal: 'SIGKILL' });
+    expect(ended).toMatchObject({ signal: 'SIGKILL', said: '' });
     await playStory(run.folder, noStep);
     expect(run.state()).toEqual(whole.state);
     const received = run.received();
