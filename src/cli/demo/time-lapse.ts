@@ -11,8 +11,8 @@ const minuteMs = 60_000;
 
 /**
  * Moments after each recording at which the service is given a round: it notices the files, they have settled, a
- * danger and then the rest have been gathered, an incomplete file is given up, and the
- * half hours at which the morning comes, in winter and in summer time.
+ * danger and then the rest have been gathered, an incomplete file is given up, and the half hours at which the morning
+ * comes, in winter and in summer time.
  */
 const momentsMs: readonly number[] = [
   0,
@@ -51,13 +51,16 @@ export async function timeLapse(
     const startMs = beginMs + step * stepMs;
     for (const { name, bytes } of filesOfStep(step, startMs, seed))
       writeFileSync(join(dropFolder, name), bytes);
-    for (const moment of momentsMs) await round(startMs + recordedAfterMs + moment);
+    for (const moment of momentsMs) {
+      const summary = await round(startMs + recordedAfterMs + moment);
+      if (summary !== null && step >= storyDays * stepsADay) return;
+    }
     if ((step + 1) % stepsADay !== 0) continue;
     const day = (step + 1) / stepsADay;
     for (const part of parts) if (part.day === day) await part.act(service, clock.wallMs());
     told(day);
   }
-  // The story ends with a morning.
+  // The story ends with a morning; in winter it comes after the night's last recording.
   while ((await round(clock.wallMs() + 15 * minuteMs)) === null);
 }
 
