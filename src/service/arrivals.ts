@@ -22,7 +22,8 @@ import { type Arrival, collect, givenUp, type Look, notRead, ready, type Verdict
 interface Watched {
   /** Which file it is, of those that came under the name. */
   readonly inode: string;
-  readonly arrivedMs: number;
+  /** Monotonic time at which it was first seen. */
+  readonly noticedMs: number;
   settling: Settling | null;
   looked: HeaderAnswer | null;
 }
@@ -83,7 +84,8 @@ export class Arrivals {
       if (state.stillSinceMs !== watched.settling?.stillSinceMs) watched.looked = null;
       watched.settling = state;
       if (verdict.verdict === 'wait') return { at: 'waiting', againInMs: verdict.againInMs };
-      const { arrivedMs, looked } = watched;
+      const arrivedMs = this.#arrivedMs(watched);
+      const { looked } = watched;
       const arrival: Arrival = { file, sidecar, arrivedMs, looked };
       if (file.nameProblem !== null) return givenUp(view, arrival, file.nameProblem, 'bad-name');
       if (points.length === 0) return { at: 'unassigned', file: { path: file.path, look: file, arrivedMs } };
@@ -106,9 +108,14 @@ export class Arrivals {
     const inode = `${file.dev}:${file.ino}`;
     const known = this.#watched.get(file.path);
     if (known?.inode === inode) return known;
-    const watched = { inode, arrivedMs: this.#tools.wallMs(), settling: null, looked: null };
+    const watched = { inode, noticedMs: this.#tools.monotonicMs(), settling: null, looked: null };
     this.#watched.set(file.path, watched);
     return watched;
+  }
+
+  /** By the clock as it shows now: somebody may have set it since. */
+  #arrivedMs({ noticedMs }: Watched): number {
+    return this.#tools.wallMs() - (this.#tools.monotonicMs() - noticedMs);
   }
 
   #observe(file: SeenFile, sidecar: SeenFile | null, watched: Watched): FileObservation {
@@ -148,7 +155,7 @@ export class Arrivals {
       watched.settling.firstSeenMs + view.site.timings.incompleteAfterMs - this.#tools.monotonicMs();
     if (leftMs > 0) return { at: 'waiting', againInMs: leftMs };
     const reason = 'no recording came with this sidecar, or it came after its recording had been read';
-    const { arrivedMs } = watched;
+    const arrivedMs = this.#arrivedMs(watched);
     return givenUp(view, { file, sidecar: null, arrivedMs, looked: null }, reason, 'late-sidecar');
   }
 }

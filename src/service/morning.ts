@@ -3,13 +3,14 @@ import { messageIdentity, priorityOf } from '../advisory/outbox.ts';
 import { morningOf } from '../advisory/summary.ts';
 import type { SummaryFacts } from '../advisory/summary-facts.ts';
 import { summaryFile, summaryMail } from '../advisory/summary-mail.ts';
+import { localDate } from '../config/local-time.ts';
 import { troubleToldInSummary } from '../detection/trouble.ts';
 import { alarmByNumber } from '../store/alarms.ts';
 import { readJournal } from '../store/journal.ts';
 import type { Writer } from '../store/lent-connection.ts';
 import { insertMessage, type NewDelivery, supersedeOlder } from '../store/messages.ts';
 import { saveAlarmChange } from '../store/save-alarm.ts';
-import { keepSummary, readSummary } from '../store/summaries.ts';
+import { keepSummary, lastSummary, readSummary } from '../store/summaries.ts';
 import { ledgerBytes, noteLedgerSize } from './disk-room.ts';
 import type { Draft } from './draft.ts';
 import { type MailTools, wallMsOf } from './mail-tools.ts';
@@ -43,7 +44,7 @@ export async function morning(tools: MailTools): Promise<string | null> {
   if (summary === null) return null;
   const nowMs = wallMsOf(clock);
   const { last, sinceMs } = await ledger.read(async (reader) => ({
-    last: await readSummary(reader),
+    last: await lastSummary(reader, localDate(nowMs, timeZone)),
     // The journal begins with the first start: what had passed by then is not made up for.
     sinceMs: (await readJournal(reader, { afterSequence: 0, limit: 1 }))[0]?.wallMs ?? nowMs,
   }));

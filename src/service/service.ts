@@ -16,6 +16,7 @@ import { noteStarted, noteStopped } from './run-marks.ts';
 import { needsRestart, putInForce, readSiteFile, type SiteFile, tellWrongSiteFile } from './site-in-force.ts';
 import type { SiteView } from './site-view.ts';
 import { noStep, type Step } from './steps.ts';
+import { WallSteps } from './wall-steps.ts';
 import { watchSilence } from './watch-silence.ts';
 
 /**
@@ -55,6 +56,7 @@ export class Service {
   readonly #mail: MailRounds;
   readonly #housekeeping: Housekeeping;
   readonly #health: HealthFile;
+  readonly #wallSteps: WallSteps;
   #view: SiteView;
 
   /** Opens the ledger as its owner and puts the site file in force; in words why not. */
@@ -134,6 +136,7 @@ export class Service {
       this.#health.alive();
     };
     const tools = { ledger, clock, view, log, complaints: this.#complaints, step };
+    this.#wallSteps = new WallSteps(tools);
     this.#intake = new Intake({ ...tools, dropFolder: this.#dropFolder, pool: this.#pool, kept: parts.kept });
     this.#mail = new MailRounds({
       ...tools,
@@ -150,12 +153,13 @@ export class Service {
 
   /** Takes what is ready, looks for silence, keeps house. `holdBacklog` false: what lies there is all there is. */
   async intakeRound(holdBacklog = true): Promise<Round> {
+    await this.#wallSteps.look();
     const round = await this.#intake.round(holdBacklog);
     this.#writeHealth(round);
     try {
       await watchSilence(this.ledger, this.#view, {
         wallMs: Math.round(this.#options.clock.wallMs()),
-        startedMs: this.startedMs,
+        startedMs: this.#wallSteps.startedMs,
         queueEmpty: round.waiting === 0,
         dropFolderReadable: round.dropFolder === 'read',
       });

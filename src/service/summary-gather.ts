@@ -1,4 +1,5 @@
 import type { SummaryFacts } from '../advisory/summary-facts.ts';
+import { localDate } from '../config/local-time.ts';
 import { pointPath } from '../config/site.ts';
 import type { MachineMemory } from '../detection/machine-state.ts';
 import { loadAllAlarms, standingAlarms } from '../store/alarms.ts';
@@ -6,7 +7,7 @@ import { readJournal } from '../store/journal.ts';
 import type { Ledger } from '../store/ledger.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { arrivalsOf, loadMachine } from '../store/sources.ts';
-import { readSummary } from '../store/summaries.ts';
+import { lastSummary } from '../store/summaries.ts';
 import { diskRoom, freeBytes, ledgerBytes } from './disk-room.ts';
 import { machineFacts, siteFacts } from './fact-names.ts';
 import { readHealth } from './health.ts';
@@ -39,7 +40,7 @@ const dayMs = 86_400_000;
 export async function gatherSummary(question: SummaryQuestion): Promise<SummaryFacts> {
   const { ledger, view, nowMs } = question;
   const { site } = view;
-  const known = await ledger.read((reader) => readKnown(reader, view));
+  const known = await ledger.read((reader) => readKnown(reader, view, nowMs));
   const day: Day = { view, nowMs, sinceMs: nowMs - dayMs, watchedFromMs: known.watchedFromMs ?? nowMs };
   const points = await gatherPoints(question, known);
   const disk = {
@@ -73,7 +74,7 @@ export async function gatherSummary(question: SummaryQuestion): Promise<SummaryF
 
 type Known = Awaited<ReturnType<typeof readKnown>>;
 
-async function readKnown(reader: Reader, view: SiteView) {
+async function readKnown(reader: Reader, view: SiteView, nowMs: number) {
   const memories = new Map<string, MachineMemory>();
   for (const { id } of view.site.machines) {
     const stored = await loadMachine(reader, view.ids.machineId(id));
@@ -86,7 +87,7 @@ async function readKnown(reader: Reader, view: SiteView) {
     memories,
     /** The journal begins with the first start. */
     watchedFromMs: first?.wallMs ?? null,
-    lastSummaryMs: (await readSummary(reader))?.createdMs ?? null,
+    lastSummaryMs: (await lastSummary(reader, localDate(nowMs, view.site.timeZone)))?.createdMs ?? null,
   };
 }
 

@@ -94,6 +94,36 @@ export async function noteArrival(
     .execute();
 }
 
+/** The wall clock was set by so much: every arrival is carried over to what it shows now. */
+export async function carryArrivals(writer: Writer, byMs: number): Promise<void> {
+  await writer
+    .updateTable('point_arrivals')
+    .set((to) => ({ last_arrived_ms: to('last_arrived_ms', '+', byMs) }))
+    .execute();
+  await writer
+    .updateTable('sources')
+    .set((to) => ({
+      last_arrived_ms: to('last_arrived_ms', '+', byMs),
+      last_evaluated_arrived_ms: to('last_evaluated_arrived_ms', '+', byMs),
+    }))
+    .execute();
+}
+
+/** Arrivals that are still to come by the wall clock count as of now. */
+export async function noArrivalAfter(writer: Writer, wallMs: number): Promise<void> {
+  await writer
+    .updateTable('point_arrivals')
+    .set({ last_arrived_ms: wallMs })
+    .where('last_arrived_ms', '>', wallMs)
+    .execute();
+  for (const column of ['last_arrived_ms', 'last_evaluated_arrived_ms'] as const)
+    await writer
+      .updateTable('sources')
+      .set({ [column]: wallMs })
+      .where(column, '>', wallMs)
+      .execute();
+}
+
 /** By point id; a point that never sent anything is not in the answer. Without ids: all points. */
 export async function arrivalsOf(
   reader: Reader,

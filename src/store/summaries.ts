@@ -1,4 +1,8 @@
+import type { Selectable, SelectQueryBuilder } from 'kysely';
 import type { Reader, Writer } from './lent-connection.ts';
+import type { LedgerTables } from './schema.ts';
+
+type Row = LedgerTables['summaries'];
 
 /** The summary of one local date. `facts`: JSON of what it said. */
 export interface StoredSummary {
@@ -31,6 +35,15 @@ export async function keepSummary(writer: Writer, summary: StoredSummary): Promi
 export async function readSummary(reader: Reader, localDate?: string): Promise<StoredSummary | null> {
   let query = reader.selectFrom('summaries').selectAll();
   if (localDate !== undefined) query = query.where('local_date', '=', localDate);
+  return newest(query);
+}
+
+/** The last summary up to a date; one of a day to come was made while the clock was wrong. */
+export function lastSummary(reader: Reader, upToLocalDate: string): Promise<StoredSummary | null> {
+  return newest(reader.selectFrom('summaries').selectAll().where('local_date', '<=', upToLocalDate));
+}
+
+async function newest(query: SelectQueryBuilder<LedgerTables, 'summaries', Selectable<Row>>) {
   const row = await query.orderBy('local_date', 'desc').limit(1).executeTakeFirst();
   if (row === undefined) return null;
   return {
