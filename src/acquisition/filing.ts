@@ -220,6 +220,17 @@ async function isTheFile(path: Buffer, { look, sha256 }: FiledFile): Promise<boo
   );
 }
 
+/** A file that an order had set aside and that the ledger no longer knows gets its name back; false where there is none. */
+export async function putBackHeld(
+  dropFolder: string,
+  file: Pick<FiledFile, 'from' | 'sha256'>,
+): Promise<boolean> {
+  const held = absolute(dropFolder, setAsidePath(file));
+  if (!(await exists(held))) return false;
+  await putBack(held, absolute(dropFolder, file.from));
+  return true;
+}
+
 /** Gives a new arrival its name back, or one beside it where yet another file has taken the name. */
 async function putBack(held: Buffer, from: Buffer): Promise<void> {
   if (!(await exists(from))) return rename(held, from);

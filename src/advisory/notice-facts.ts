@@ -37,7 +37,8 @@ export interface PassedAlarm {
 export type ServiceFacts = ServiceStartFacts | MessageFailedFacts;
 
 export interface ServiceStartFacts {
-  readonly kind: 'first-start' | 'start-after-unclean-stop';
+  /** older-ledger: what is beside the ledger knows more than it does, because a backup was put in its place. */
+  readonly kind: 'first-start' | 'start-after-unclean-stop' | 'start-with-older-ledger';
   readonly site: SiteFacts;
   readonly writtenMs: number;
   readonly machines: number;
@@ -51,6 +52,17 @@ export interface ServiceStartFacts {
   readonly dropFolder: string;
   /** Last sign of life before an unclean stop. */
   readonly lastSeenMs: number | null;
+  /** Recordings that an older ledger lacks. */
+  readonly takenAgain: number;
+  /** What people did to alarms that an older ledger lacks, oldest first. */
+  readonly lostActs: readonly LostAct[];
+}
+
+export interface LostAct {
+  readonly wallMs: number;
+  readonly by: string;
+  readonly command: 'acknowledge' | 'reset';
+  readonly number: number;
 }
 
 /** The mail server refused a message for good. */

@@ -65,10 +65,6 @@ export function serviceMail(facts: ServiceFacts): Mail {
 
 function startMail(facts: ServiceStartFacts): Mail {
   const { timeZone } = facts.site;
-  const first = facts.kind === 'first-start';
-  const lead = first
-    ? 'Nothing to do if these counts are what you expect: the service has started for the first time.'
-    : 'Find out why the service stopped: it has started again after an unclean stop.';
   const rows: [string, string][] = [
     ['Started', momentText(facts.writtenMs, timeZone)],
     ...lastSeenRow(facts),
@@ -87,7 +83,8 @@ function startMail(facts: ServiceStartFacts): Mail {
     rows.push(['No limit', `${counted(without.length, 'point')} can never alarm: ${named}${rest}`]);
   }
   const blocks: Block[] = [{ kind: 'pairs', rows }];
-  if (!first) {
+  blocks.push(...olderLedger(facts));
+  if (facts.kind === 'start-after-unclean-stop') {
     const text = 'Recordings that came meanwhile wait in the drop folder and are judged now, in their order.';
     blocks.push({ kind: 'paragraph', text });
   }
@@ -95,8 +92,42 @@ function startMail(facts: ServiceStartFacts): Mail {
     const text = 'A morning without a summary means that the service, or the way of its mail, is down.';
     blocks.push({ kind: 'paragraph', text });
   }
-  const subject = first ? 'service started for the first time' : 'service started after an unclean stop';
-  return mailOf(facts, subject, lead, blocks);
+  const [subject, lead] = startWords[facts.kind];
+  return mailOf(facts, subject, facts.lostActs.length > 0 ? doAgain : lead, blocks);
+}
+
+const startWords: Readonly<Record<ServiceStartFacts['kind'], readonly [subject: string, lead: string]>> = {
+  'first-start': [
+    'service started for the first time',
+    'Nothing to do if these counts are what you expect: the service has started for the first time.',
+  ],
+  'start-after-unclean-stop': [
+    'service started after an unclean stop',
+    'Find out why the service stopped: it has started again after an unclean stop.',
+  ],
+  'start-with-older-ledger': [
+    'service started with an older ledger',
+    'Nothing to do if you put a backup of the ledger back: the service has started with it.',
+  ],
+};
+const doAgain = 'Do again what is named below: the ledger was put back to a time before it.';
+const mostActs = 50;
+
+/** What the older ledger lacks. What people did is never done again for them. */
+function olderLedger({ takenAgain, lostActs, site }: ServiceStartFacts): Block[] {
+  const blocks: Block[] = [];
+  if (takenAgain > 0) {
+    const text = `${counted(takenAgain, 'recording')} of the archive came after this ledger was copied. They are taken again in their order: what came and went then is told in one mail, what still stands is mailed again.`;
+    blocks.push({ kind: 'paragraph', text });
+  }
+  if (lostActs.length === 0) return blocks;
+  const rows = lostActs.slice(0, mostActs).map(({ wallMs, by, command, number }): [string, string] => {
+    const what = command === 'acknowledge' ? `acknowledged number ${number}` : `reset number ${number}`;
+    return ['Do again', `${foreign(by)} ${what} (${momentText(wallMs, site.timeZone)})`];
+  });
+  const rest = lostActs.length - rows.length;
+  if (rest > 0) rows.push(['', `and ${rest} more, in acts.log of the data folder`]);
+  return [...blocks, { kind: 'pairs', rows }];
 }
 
 function lastSeenRow({ lastSeenMs, writtenMs, site }: ServiceStartFacts): [string, string][] {

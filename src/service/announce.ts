@@ -4,6 +4,7 @@ import { messageIdentity, priorityOf, recipientsFor } from '../advisory/outbox.t
 import { pointPath } from '../config/site.ts';
 import { readMark, writeMark } from '../store/intake-marks.ts';
 import { insertMessage } from '../store/messages.ts';
+import { type Beyond, isOlder } from './beyond-ledger.ts';
 import type { Draft } from './draft.ts';
 import { siteFacts } from './fact-names.ts';
 import { readHealth } from './health.ts';
@@ -14,7 +15,7 @@ import { deliveriesFor } from './store-draft.ts';
 /**
  * Word from the service itself when it starts for the first time or after an unclean stop: what it watches and whom it
  * tells, so that a wrong site file and a crashing service are noticed. A service that crashes again and again says so at
- * most once an hour.
+ * most once an hour; acts of people that an older ledger lacks are named whenever they are found.
  */
 export type StartKind = 'first' | 'unclean' | 'clean';
 
@@ -22,14 +23,21 @@ const announcedMark = 'start-announced-ms';
 const hourMs = 3_600_000;
 
 /** True where a message was put into the outbox. */
-export async function announceStart(tools: MailTools, how: StartKind): Promise<boolean> {
+export async function announceStart(tools: MailTools, how: StartKind, beyond: Beyond): Promise<boolean> {
   const { ledger, clock } = tools;
   const view = tools.view();
   const { mail } = view.site;
-  if (how === 'clean' || mail === null) return false;
+  const older = isOlder(beyond);
+  if ((how === 'clean' && !older) || mail === null) return false;
   const nowMs = wallMsOf(clock);
-  if (recent(await ledger.read((reader) => readMark(reader, announcedMark)), nowMs)) return false;
-  const facts = startFacts(view, how, nowMs);
+  const isRecent = (mark: string | null) => beyond.acts.length === 0 && recent(mark, nowMs);
+  if (isRecent(await ledger.read((reader) => readMark(reader, announcedMark)))) return false;
+  const start = older
+    ? 'start-with-older-ledger'
+    : how === 'first'
+      ? 'first-start'
+      : 'start-after-unclean-stop';
+  const facts = startFacts(view, start, beyond, nowMs);
   const words = serviceMail(facts);
   // A start has no other name than its time; it is in the ledger, so a repeat has the same.
   const identity = messageIdentity(ledger.id, 'service', [facts.kind, String(tools.startedMs)]);
@@ -48,7 +56,7 @@ export async function announceStart(tools: MailTools, how: StartKind): Promise<b
   const deliveries = await deliveriesFor(draft, mail.from, nowMs);
   const { kind, priority, groupKey, subject } = draft;
   const stored = await ledger.transact(async (writer) => {
-    if (recent(await readMark(writer, announcedMark), nowMs)) return false;
+    if (isRecent(await readMark(writer, announcedMark))) return false;
     await writeMark(writer, announcedMark, String(nowMs));
     const message = { kind, identity, priority, groupKey, subject, deliveries };
     await insertMessage(writer, {
@@ -70,13 +78,18 @@ function recent(mark: string | null, nowMs: number): boolean {
   return agoMs >= 0 && agoMs < hourMs;
 }
 
-function startFacts(view: SiteView, how: Exclude<StartKind, 'clean'>, nowMs: number): ServiceStartFacts {
+function startFacts(
+  view: SiteView,
+  kind: ServiceStartFacts['kind'],
+  { recordings, acts }: Beyond,
+  nowMs: number,
+): ServiceStartFacts {
   const { site, points } = view;
   const { summary, mail } = site;
   const two = (number: number) => String(number).padStart(2, '0');
   const recipients = [...(mail?.to ?? []), ...(summary?.to ?? [])].map(({ address }) => address);
   return {
-    kind: how === 'first' ? 'first-start' : 'start-after-unclean-stop',
+    kind,
     site: siteFacts(view),
     writtenMs: nowMs,
     machines: site.machines.length,
@@ -86,6 +99,8 @@ function startFacts(view: SiteView, how: Exclude<StartKind, 'clean'>, nowMs: num
     recipients: new Set(recipients).size,
     summaryAt: summary === null ? null : `${two(summary.at.hour)}:${two(summary.at.minute)}`,
     dropFolder: site.folders.drop,
-    lastSeenMs: how === 'first' ? null : (readHealth(site.folders.data)?.roundMs ?? null),
+    lastSeenMs: kind === 'first-start' ? null : (readHealth(site.folders.data)?.roundMs ?? null),
+    takenAgain: recordings.length,
+    lostActs: acts,
   };
 }

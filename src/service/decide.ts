@@ -125,14 +125,14 @@ async function keepInPlace(
   { ready, answer }: TakenFile,
   recordingId: number,
 ): Promise<void> {
-  if (view.site.folders.afterReading !== 'keep') return;
+  if (view.site.folders.afterReading !== 'keep' || ready.archived !== null) return;
   const { size, mtimeMs, ctimeMs } = answer.look;
   await noteSeen(writer, { path: ready.path, sizeBytes: size, mtimeMs, ctimeMs, recordingId });
 }
 
-/** Older than two expected intervals when it arrived. */
+/** Older than two expected intervals when it arrived, or taken again from the archive. */
 export function isBacklog(ready: ReadyRecording, startMs: number): boolean {
-  return ready.arrivedMs - startMs > 2 * spansOf(ready.points).intervalMs;
+  return ready.archived !== null || ready.arrivedMs - startMs > 2 * spansOf(ready.points).intervalMs;
 }
 
 async function storeEvaluated(

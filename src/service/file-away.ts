@@ -1,9 +1,12 @@
 import { nameOf, sidecarNameOf } from '../acquisition/file-name.ts';
 import { completeFiling, type FilingOrder } from '../acquisition/filing.ts';
 import type { SeenFile } from '../acquisition/sweep.ts';
+import { writeMark } from '../store/intake-marks.ts';
 import type { Ledger } from '../store/ledger.ts';
 import { markFiled, pendingFilings, type StoredRecording } from '../store/recordings.ts';
+import type { Clock } from './clock.ts';
 import type { FileLook } from './file-source.ts';
+import { type FilingLog, filingsMark } from './filing-log.ts';
 import type { Complaints, Logger } from './log.ts';
 import type { SiteView } from './site-view.ts';
 import type { Step } from './steps.ts';
@@ -14,6 +17,8 @@ import type { Step } from './steps.ts';
  */
 export interface FileAwayTools {
   readonly ledger: Ledger;
+  readonly clock: Clock;
+  readonly filingLog: FilingLog;
   readonly view: () => SiteView;
   readonly log: Logger;
   readonly complaints: Complaints;
@@ -60,6 +65,7 @@ export class FileAway {
       const last = orders.at(-1);
       if (last === undefined) return left;
       afterId = last.id;
+      this.#note(orders);
       const filed: { readonly id: number; readonly to: string | null }[] = [];
       for (const order of orders) {
         const to = await this.#one(order);
@@ -86,12 +92,29 @@ export class FileAway {
     return outcome.outcome === 'filed' ? outcome.to : null;
   }
 
+  /** Before a file is touched; a log that cannot be written holds nothing up. */
+  #note(orders: readonly StoredRecording[]): void {
+    try {
+      this.#tools.filingLog.note(orders, this.#tools.clock.wallMs());
+      this.#tools.complaints.over('filing log');
+    } catch (error) {
+      this.#tools.complaints.say(
+        'filing log',
+        `the log of filings cannot be written: ${(error as Error).message}`,
+      );
+    }
+    this.#tools.step('intake: filing noted');
+  }
+
   /** One transaction for several files: an order that is carried out twice ends the same. */
   async #commit(filed: readonly { readonly id: number; readonly to: string | null }[]): Promise<void> {
+    const { filingLog } = this.#tools;
     await this.#tools.ledger.transact(async (writer) => {
       for (const { id, to } of filed) await markFiled(writer, id, to);
+      if (filingLog.settled && filingLog.mark !== null) await writeMark(writer, filingsMark, filingLog.mark);
     });
     for (const { id } of filed) this.#known.delete(id);
+    filingLog.forget(filed.map(({ id }) => id));
     this.#tools.step('intake: filing committed');
   }
 

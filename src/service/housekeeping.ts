@@ -1,6 +1,7 @@
 import { localDate } from '../config/local-time.ts';
 import { quickCheck } from '../store/backup.ts';
 import type { Ledger } from '../store/ledger.ts';
+import { whatToDoWithDamage } from '../store/ledger-error.ts';
 import { newestSpectraKept } from '../store/retention.ts';
 import { giveBackPages, thinSpectraOfPoint } from '../store/thinning.ts';
 import type { Logger } from './log.ts';
@@ -71,7 +72,7 @@ export class Housekeeping {
       this.#checking = null;
       this.damage = 'refused' in found ? found.reason : (found[0] ?? null);
       if (this.damage !== null)
-        log.error({ found: this.damage }, 'the ledger fails its check: restore the newest backup');
+        log.error({ found: this.damage }, `the ledger fails its check; ${whatToDoWithDamage}`);
     });
   }
 }

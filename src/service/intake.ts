@@ -6,8 +6,10 @@ import type { Ledger } from '../store/ledger.ts';
 import { LedgerError } from '../store/ledger-error.ts';
 import { Arrivals } from './arrivals.ts';
 import { Backlog } from './backlog.ts';
+import type { BeyondLedger } from './beyond-ledger.ts';
 import type { Clock } from './clock.ts';
 import { FileAway } from './file-away.ts';
+import { FilingLog } from './filing-log.ts';
 import type { KeptFiles } from './kept-files.ts';
 import type { Complaints, Logger } from './log.ts';
 import { PutAside } from './put-aside.ts';
@@ -16,13 +18,14 @@ import { spansOf, startsOf } from './recording-time.ts';
 import type { SiteView } from './site-view.ts';
 import type { Step } from './steps.ts';
 import { Strangers } from './strangers.ts';
+import { TakeArchived } from './take-archived.ts';
 import { TakeFiles } from './take-files.ts';
 import type { ReadyRecording, Unassigned } from './verdicts.ts';
 
 /**
  * Theory of operation of intake. One round:
  *
- *     finish pending filings -> sweep -> settle, look into headers -> hold a backlog -> order by start
+ *     finish pending filings -> take again what the ledger lacks -> sweep -> settle, look into headers -> hold a backlog -> order by start
  *        -> analyse in parallel, decide one after another (take-files.ts) -> file away
  *
  * 1. The sweep is the truth; the watcher only hints that a round is worth it.
@@ -32,6 +35,9 @@ import type { ReadyRecording, Unassigned } from './verdicts.ts';
  * 4. A file whose attempt was noted and not ended is analysed alone at the next start; the second time it is
  *    quarantined.
  * 5. When the ledger cannot be written, files stay where they are, and the round says so and ends.
+ * 6. What leaves the drop folder is first noted beside the ledger (filing-log.ts). A ledger that was put back from a
+ *    backup lacks what was noted since: that is taken again from the archive, in the old order and with the old times of
+ *    arrival, before anything newer (take-archived.ts). What people did since is named, never done again (acts-log.ts).
  */
 export interface IntakeTools {
   readonly ledger: Ledger;
@@ -43,6 +49,8 @@ export interface IntakeTools {
   readonly complaints: Complaints;
   readonly step: Step;
   readonly kept: KeptFiles;
+  /** What the ledger lacks; absent: nothing. */
+  readonly beyond?: Pick<BeyondLedger, 'filingLog' | 'recordings'>;
 }
 
 export interface Round {
@@ -69,6 +77,7 @@ export class Intake {
   readonly #putAside: PutAside;
   readonly #take: TakeFiles;
   readonly #strangers: Strangers;
+  readonly #archived: TakeArchived;
   #backlogRuns = false;
 
   constructor(tools: IntakeTools) {
@@ -83,9 +92,15 @@ export class Intake {
       isKept: (file) => view().site.folders.afterReading === 'keep' && tools.kept.has(file),
     });
     this.#backlog = new Backlog(() => clock.monotonicMs());
-    this.#fileAway = new FileAway({ ...tools, replaced: forget });
+    const { filingLog, recordings: missing } = tools.beyond ?? {
+      filingLog: new FilingLog(tools.ledger.folder),
+      recordings: [],
+    };
+    this.#fileAway = new FileAway({ ...tools, filingLog, replaced: forget });
     this.#putAside = new PutAside({ ...tools, fileAway: this.#fileAway, forget });
     this.#take = new TakeFiles({ ...tools, fileAway: this.#fileAway, putAside: this.#putAside, forget });
+    this.#archived = new TakeArchived({ ...tools, take: this.#take, filingLog, missing });
+    this.#backlogRuns = this.#archived.isOpen;
     this.#strangers = new Strangers(tools);
   }
 
@@ -104,6 +119,11 @@ export class Intake {
     const nothing = { taken: 0, setAside: 0, waiting: 0, unassigned: [], unfiled: 0 };
     try {
       const unfiled = await this.#fileAway.all();
+      if (this.#archived.isOpen) {
+        await this.#archived.all();
+        if (this.#archived.isOpen)
+          return { ...nothing, unfiled, waiting: 1, dropFolder: 'read', againInMs: retryMs };
+      }
       const sweep = await this.#tools.dropFolder.sweep();
       if (sweep.state !== 'read') {
         this.#tools.complaints.say('drop folder', sweep.reason);

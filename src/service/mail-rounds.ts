@@ -4,6 +4,7 @@ import { type DueDelivery, dueDeliveries } from '../store/deliveries.ts';
 import { LedgerError } from '../store/ledger-error.ts';
 import { hastenWaiting, waitingMail, waitsBeyond } from '../store/waiting-mail.ts';
 import { announceStart, type StartKind } from './announce.ts';
+import type { Beyond } from './beyond-ledger.ts';
 import { type Composed, closeThreads, composeDue } from './compose.ts';
 import { type Answered, handOver, keepAnswer } from './delivery.ts';
 import { type MailerFor, type MailTools, wallMsOf } from './mail-tools.ts';
@@ -48,8 +49,8 @@ export class MailRounds {
   }
 
   /** At the start of a run; a clean start is no news. */
-  async announce(how: StartKind): Promise<void> {
-    await this.#unlessLedgerFails(() => announceStart(this.#tools, how), false);
+  async announce(how: StartKind, beyond: Beyond = { recordings: [], acts: [] }): Promise<void> {
+    await this.#unlessLedgerFails(() => announceStart(this.#tools, how, beyond), false);
   }
 
   /** The morning summary, where it is due: its local date, else null. */

@@ -4,6 +4,7 @@ import { WorkerPool } from '../manipulation/pool.ts';
 import type { Ledger } from '../store/ledger.ts';
 import { isLedgerRefusal, LedgerError } from '../store/ledger-error.ts';
 import { openLedger } from '../store/open-ledger.ts';
+import { type BeyondLedger, lookBeyond, noteBeyond } from './beyond-ledger.ts';
 import type { Clock } from './clock.ts';
 import { HealthFile } from './health.ts';
 import { Housekeeping } from './housekeeping.ts';
@@ -85,15 +86,18 @@ export class Service {
     const view = await putInForce(ledger, siteFile, wallMs);
     const last = await noteStarted(ledger, view, wallMs);
     const kept = await KeptFiles.load(ledger);
+    const beyond = await lookBeyond(ledger);
     const service = new Service(options, {
       ledger,
       view,
       kept,
+      beyond,
       unclean: last === 'unclean',
       startedMs: wallMs,
       step,
     });
-    await service.#mail.announce(last === 'none' ? 'first' : last);
+    await service.#mail.announce(last === 'none' ? 'first' : last, beyond);
+    await noteBeyond(ledger, options.log, beyond);
     return service;
   }
 
@@ -103,13 +107,14 @@ export class Service {
       ledger: Ledger;
       view: SiteView;
       kept: KeptFiles;
+      beyond: BeyondLedger;
       unclean: boolean;
       startedMs: number;
       step: Step;
     },
   ) {
     const { clock, log } = options;
-    const { ledger } = parts;
+    const { ledger, kept, beyond } = parts;
     const monotonicMs = () => clock.monotonicMs();
     const view = () => this.#view;
     this.#options = options;
@@ -137,7 +142,7 @@ export class Service {
     };
     const tools = { ledger, clock, view, log, complaints: this.#complaints, step };
     this.#wallSteps = new WallSteps(tools);
-    this.#intake = new Intake({ ...tools, dropFolder: this.#dropFolder, pool: this.#pool, kept: parts.kept });
+    this.#intake = new Intake({ ...tools, dropFolder: this.#dropFolder, pool: this.#pool, kept, beyond });
     this.#mail = new MailRounds({
       ...tools,
       startedMs: parts.startedMs,

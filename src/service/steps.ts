@@ -9,6 +9,7 @@ export const stepNames = [
   'intake: recording read',
   'intake: decision begun',
   'intake: decision committed',
+  'intake: filing noted',
   ...filingSteps,
   'intake: filing committed',
   'delivery: message stored',

@@ -8,6 +8,7 @@ import { attemptKey, batches, isSuspect, newestBySource, type StartOf, sameStart
 import type { Clock } from './clock.ts';
 import { decide } from './decide.ts';
 import type { FileAway } from './file-away.ts';
+import type { FileLook } from './file-source.ts';
 import type { KeptFiles } from './kept-files.ts';
 import type { Complaints, Logger } from './log.ts';
 import type { PutAside } from './put-aside.ts';
@@ -109,10 +110,10 @@ export class TakeFiles {
 
   /** Notes the attempts; a file that stopped the service twice is not tried a third time. */
   async #begin(files: readonly ReadyRecording[]): Promise<ReadyRecording[]> {
-    const { ledger, clock, putAside, step } = this.#tools;
+    const { ledger, clock, step } = this.#tools;
     const suspects = await this.#suspectsOf();
     const poison = files.filter((file) => (suspects.get(attemptKey(file.header.look)) ?? 0) >= 2);
-    for (const file of poison) await putAside.recording(file, 'stopped the service twice while it was read');
+    for (const file of poison) await this.#setAside(file, 'stopped the service twice while it was read');
     const good = files.filter((file) => !poison.includes(file));
     if (good.length === 0) return [];
     const begunMs = Math.round(clock.wallMs());
@@ -131,7 +132,10 @@ export class TakeFiles {
     const { view } = ready;
     const answer = await this.#tools.pool.run({
       task: 'measure',
-      path: `${view.site.folders.drop}/${ready.path}`,
+      path:
+        ready.archived === null
+          ? `${view.site.folders.drop}/${ready.path}`
+          : `${view.site.folders.data}/${ready.archived}`,
       largestBytes: view.site.largestFileBytes,
       seen: ready.header.look,
       sidecar: ready.header.sidecar,
@@ -164,16 +168,23 @@ export class TakeFiles {
   }
 
   async #conclude({ ready, answer }: Analysed, batchNewestStatedMs: number): Promise<boolean> {
-    const { putAside, view } = this.#tools;
+    const { view } = this.#tools;
     if (answer.kind === 'no-worker') throw new Error(answer.reason);
     if (answer.kind === 'changed' || answer.kind === 'gone') return await this.#lookAgain(ready);
-    if (answer.kind === 'refused') return await putAside.recording(ready, answer.refusal.reason);
+    if (answer.kind === 'refused') return await this.#setAside(ready, answer.refusal.reason);
     if (answer.kind === 'stopped')
-      return await putAside.recording(ready, `reading it stopped a worker: ${answer.reason}`);
+      return await this.#setAside(ready, `reading it stopped a worker: ${answer.reason}`);
     // Another site file came into force meanwhile: the points may be others.
     if (ready.view !== view()) return await this.#lookAgain(ready);
     await this.#take(ready, answer, batchNewestStatedMs);
     return true;
+  }
+
+  /** One that was filed before stays in the archive. */
+  async #setAside(ready: ReadyRecording, why: string): Promise<boolean> {
+    if (ready.archived === null) return this.#tools.putAside.recording(ready, why);
+    this.#tools.log.error({ file: ready.archived }, `not taken again: ${why}`);
+    return this.#lookAgain(ready);
   }
 
   /** The file settles and is looked into anew. */
@@ -188,27 +199,34 @@ export class TakeFiles {
     answer: Extract<MeasureAnswer, { kind: 'measured' }>,
     batchNewestStatedMs: number,
   ): Promise<void> {
-    const { ledger, clock, fileAway, forget, putAside, kept, step, log } = this.#tools;
+    const { ledger, clock, putAside, step, log } = this.#tools;
     step('intake: decision begun');
     const wallMs = Math.round(clock.wallMs());
     const fileKey = attemptKey(ready.header.look);
-    const { path, sidecarPath, view } = ready;
+    const { path, view, archived } = ready;
     const decided = await ledger.transact((writer) =>
       decide(writer, view, { ready, answer, fileKey, batchNewestStatedMs }, wallMs),
     );
-    if (view.site.folders.afterReading === 'keep') kept.add({ path, ...answer.look });
+    if (archived === null) this.#remember(ready, answer, decided.recordingId);
+    step('intake: decision committed');
+    log.debug({ file: path, outcome: decided.outcome }, 'recording in the ledger');
+    if (archived === null) await putAside.sidecar(ready);
+  }
+
+  /** What this run knows of a file that is to leave the drop folder, or to stay there. */
+  #remember(ready: ReadyRecording, { look }: { readonly look: FileLook }, recordingId: number): void {
+    const { fileAway, forget, kept } = this.#tools;
+    const { path, sidecarPath, view } = ready;
+    if (view.site.folders.afterReading === 'keep') kept.add({ path, ...look });
     const { sidecar } = ready.header;
-    fileAway.know(decided.recordingId, {
-      file: answer.look,
+    fileAway.know(recordingId, {
+      file: look,
       sidecar:
         sidecar === null || sidecarPath === null
           ? null
           : { path: sidecarPath, sha256: sidecar.sha256, look: sidecar.look },
     });
     forget(path);
-    step('intake: decision committed');
-    log.debug({ file: path, outcome: decided.outcome }, 'recording in the ledger');
-    await putAside.sidecar(ready);
   }
 }
 

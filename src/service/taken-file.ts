@@ -78,8 +78,9 @@ export function recordingRow(
     configVersionId: view.ids.configVersionId,
     quality: fileFindings(taken),
     filingFrom: ready.path,
-    filingTo: after === 'archive' ? archivePlace(ready.path, usedMs, answer.sha256) : null,
-    filingState: after === 'keep' ? 'filed' : 'pending',
+    filingTo:
+      ready.archived ?? (after === 'archive' ? archivePlace(ready.path, usedMs, answer.sha256) : null),
+    filingState: after === 'keep' || ready.archived !== null ? 'filed' : 'pending',
   };
 }
 

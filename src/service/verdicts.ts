@@ -27,6 +27,8 @@ export interface ReadyRecording {
   readonly zeroTail: boolean;
   /** The site file by which its points were found. */
   readonly view: SiteView;
+  /** Where it was filed before, below the data folder: it is taken again from there. Null: it lies in the drop folder. */
+  readonly archived: string | null;
 }
 
 /** A file that cannot become a recording. */
@@ -81,7 +83,17 @@ export function ready(
   const sidecarPath = sidecar?.path ?? null;
   return {
     at: 'ready',
-    recording: { path: file.path, sidecarPath, header: looked, points, source, arrivedMs, zeroTail, view },
+    recording: {
+      path: file.path,
+      sidecarPath,
+      header: looked,
+      points,
+      source,
+      arrivedMs,
+      zeroTail,
+      view,
+      archived: null,
+    },
   };
 }
 

@@ -36,6 +36,9 @@ export function isLedgerRefusal(answer: object): answer is LedgerRefusal {
   return 'refused' in answer;
 }
 
+export const whatToDoWithDamage =
+  'stop the service, put the newest backup in its place and start: what the backup lacks is taken again from the archive';
+
 const kindsByCode: readonly (readonly [prefix: string, kind: LedgerErrorKind, words: string])[] = [
   ['SQLITE_BUSY', 'busy', 'is locked by somebody else'],
   ['SQLITE_LOCKED', 'busy', 'is locked by somebody else'],
@@ -44,8 +47,8 @@ const kindsByCode: readonly (readonly [prefix: string, kind: LedgerErrorKind, wo
   ['SQLITE_CANTOPEN', 'read-only', 'cannot be opened: the folder is missing or gives no right'],
   ['SQLITE_PERM', 'read-only', 'cannot be opened: no right'],
   ['SQLITE_AUTH', 'read-only', 'cannot be opened: no right'],
-  ['SQLITE_CORRUPT', 'damaged', 'is damaged: restore the newest backup'],
-  ['SQLITE_NOTADB', 'damaged', 'is not a ledger: restore the newest backup'],
+  ['SQLITE_CORRUPT', 'damaged', `is damaged; ${whatToDoWithDamage}`],
+  ['SQLITE_NOTADB', 'damaged', `is not a ledger; ${whatToDoWithDamage}`],
   ['SQLITE_IOERR', 'other', 'could not be read or written: the disk reported an error'],
   ['SQLITE_NOMEM', 'other', 'could not be used: out of memory'],
   ['SQLITE_NOLFS', 'other', 'is too large for this disk'],

@@ -9,6 +9,7 @@ import { LedgerError, type LedgerRefusal, toRefusal } from './ledger-error.ts';
 import { ledgerVersion, type Migration, migrate, migrations } from './migrations/index.ts';
 import { fileSystemType, networkShareName } from './network-share.ts';
 import { type OwnerLock, takeOwnerLock } from './owner-lock.ts';
+import { setStaleLogAside } from './stale-log.ts';
 import { retryWhileBusy } from './transaction.ts';
 
 export interface OpenOptions {
@@ -74,6 +75,7 @@ function open(options: OpenOptions, path: string, opened: { close(): void }[]): 
     if (taken === null) return owned(folder);
     lock = taken;
     opened.push({ close: () => taken.release() });
+    setStaleLogAside(path);
   }
   const writing = mode === 'reader' ? null : openWriting(path, mode, options.largestPages);
   if (writing !== null) opened.unshift(writing);

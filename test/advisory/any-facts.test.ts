@@ -315,7 +315,7 @@ describe('the rarer mails', () => {
           }),
           serviceMail({
             ...base,
-            kind: 'first-start',
+            kind: 'start-with-older-ledger',
             machines: 1,
             points: 1,
             limits: 0,
@@ -324,6 +324,8 @@ describe('the rarer mails', () => {
             summaryAt: '06:30',
             dropFolder: two,
             lastSeenMs: null,
+            takenAgain: 3,
+            lostActs: [{ wallMs: morning, by: one, command: 'acknowledge', number: 3 }],
           }),
           testMail({ ...base, from: one, to: [two], server: one, points: 1, limits: 1 }),
         ];

@@ -52,6 +52,8 @@ const start = {
   summaryAt: '06:30',
   dropFolder: '/srv/humledger/drop',
   lastSeenMs: null,
+  takenAgain: 0,
+  lostActs: [],
 };
 
 const mails: Record<string, () => Mail> = {
@@ -106,6 +108,13 @@ const mails: Record<string, () => Mail> = {
   'service-first-start': () => serviceMail({ kind: 'first-start', ...start }),
   'service-unclean-stop': () =>
     serviceMail({ kind: 'start-after-unclean-stop', ...start, lastSeenMs: morning - 3.4 * hour }),
+  'service-older-ledger': () =>
+    serviceMail({
+      kind: 'start-with-older-ledger',
+      ...start,
+      takenAgain: 412,
+      lostActs: [{ wallMs: morning - 30 * hour, by: 'A. Fitter', command: 'acknowledge', number: 18 }],
+    }),
   'service-message-failed': () =>
     serviceMail({
       kind: 'message-failed',

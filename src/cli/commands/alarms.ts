@@ -1,6 +1,6 @@
 import type { Command } from 'commander';
 import { plain } from '../../advisory/escape.ts';
-import { commandAlarm } from '../../service/alarm-command.ts';
+import { actOnAlarm } from '../../service/acts-log.ts';
 import { listStanding } from '../../service/standing-list.ts';
 import { readJournal } from '../../store/journal.ts';
 import { journalJson, journalText } from '../alarms/journal-output.ts';
@@ -137,10 +137,9 @@ function act(
   return withSite(io, options.site, ({ site }) =>
     withLedger(io, site, 'guest', async (ledger) => {
       const person = { by, via: 'command', wallMs: wallMs(io) } as const;
-      const answer = await ledger.transact((writer) =>
-        commandAlarm(writer, number, { kind, comment }, person),
-      );
+      const answer = await actOnAlarm(ledger, number, { kind, comment }, person);
       if ('refused' in answer) return fail(io, answer.refused);
+      if (answer.note !== undefined) io.err.write(`note: ${answer.note}\n`);
       io.out.write(`number ${number}, ${whereText(answer.subject)}: ${answer.before}, now ${answer.after}\n`);
       return 0;
     }),
