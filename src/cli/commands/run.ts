@@ -1,10 +1,12 @@
 import { resolve } from 'node:path';
 import { systemClock } from '../../service/clock.ts';
+import { orDamage } from '../../service/damage.ts';
 import { createLog } from '../../service/log.ts';
 import { type OnceReport, runOnce, runUntil, Waker } from '../../service/run.ts';
 import { Service } from '../../service/service.ts';
-import { readSiteFile } from '../../service/site-in-force.ts';
+import { readSiteFile, type SiteFile } from '../../service/site-in-force.ts';
 import type { AddCommand, CommandIo, ExitStatus } from '../command.ts';
+import { fail } from '../open.ts';
 
 /** `run`: the service in the foreground; `run --once`: the same way, ended. */
 export const addRun: AddCommand = (program, io, done) => {
@@ -25,6 +27,11 @@ async function run(path: string, once: boolean, io: CommandIo): Promise<ExitStat
     io.err.write(`${siteFile.problems.join('\n')}\n`);
     return 2;
   }
+  const ended = await orDamage(siteFile.site.folders.data, () => runService(siteFile, once, io));
+  return typeof ended === 'number' ? ended : fail(io, ended.refused);
+}
+
+async function runService(siteFile: SiteFile, once: boolean, io: CommandIo): Promise<ExitStatus> {
   const stop = new AbortController();
   const drop = new Waker();
   let lost: string | null = null;
@@ -40,10 +47,7 @@ async function run(path: string, once: boolean, io: CommandIo): Promise<ExitStat
       stop.abort();
     },
   });
-  if ('refused' in service) {
-    io.err.write(`${service.refused}\n`);
-    return 1;
-  }
+  if ('refused' in service) return fail(io, service.refused);
   const forget = listen(service, stop, drop);
   try {
     if (once) return report(await runOnce(service, stop.signal), io);
