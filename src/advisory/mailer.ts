@@ -6,8 +6,9 @@ import type { AttemptAnswer } from './outbox.ts';
 /**
  * One attempt to hand one stored mail to one server for one recipient. It never throws: every outcome is an answer.
  *   accepted: the server took it (2xx after the data).
- *   later:    no connection, no usable TLS, a timeout, 4xx, or a password file that cannot be used yet.
- *   never:    5xx.
+ *   later:    no connection, no usable TLS, a timeout, 4xx, a password file that cannot be used yet, or a refusal before
+ *             the server has heard of recipient and mail: that is about the service, and the site's to mend.
+ *   never:    5xx to the recipient or the mail.
  * The password is read at each attempt and goes nowhere else.
  */
 export interface Mailer {
@@ -71,9 +72,14 @@ interface SmtpError extends Error {
   readonly timeoutType?: string;
   readonly responseCode?: number;
   readonly response?: string;
+  /** What the server answered to; CONN: its greeting. */
+  readonly command?: string;
 }
 
-/** 5xx to the message or its recipient is final; a refused login or TLS is the site's to mend, so it is tried again. */
+/**
+ * 5xx to the message or its recipient is final; a refused login, TLS or sender is the site's to mend, so it is tried
+ * again.
+ */
 function answerOf(error: SmtpError, secret: string | null): AttemptAnswer {
   const said = oneLine(error.response ?? error.message);
   const answer = secret === null || secret === '' ? said : said.replaceAll(secret, '(password)');
@@ -81,7 +87,8 @@ function answerOf(error: SmtpError, secret: string | null): AttemptAnswer {
     error.code === 'EAUTH' ||
     error.code === 'ETLS' ||
     error.code === 'ESOCKET' ||
-    error.code === 'ECONNECTION';
+    error.code === 'ECONNECTION' ||
+    refusesService(error);
   // An address that cannot even be offered to a server never will be.
   const unusable = error.code === 'EENVELOPE' && error.responseCode === undefined;
   const final = unusable || (!mendable && error.responseCode !== undefined && error.responseCode >= 500);
@@ -93,9 +100,21 @@ function answerOf(error: SmtpError, secret: string | null): AttemptAnswer {
   };
 }
 
+/**
+ * The server turns the service away, whatever the mail: at its greeting, at EHLO, at the sender's address, or because it
+ * wants a login (RFC 4954 section 6: 530, 534, 538). 552 to the sender's line is about the size of this mail.
+ */
+function refusesService({ command, responseCode }: SmtpError): boolean {
+  if (responseCode === undefined) return false;
+  if ([530, 534, 538].includes(responseCode)) return true;
+  if (command === 'MAIL FROM') return responseCode !== 552;
+  return command === 'CONN' || command === 'EHLO' || command === 'HELO';
+}
+
 /** A server that spoke and then closed or fell silent may have stumbled over this very mail; any other failure is its own. */
 function serverOf(error: SmtpError): AttemptAnswer['server'] {
   if (error.code === 'EAUTH' || error.code === 'ETLS' || error.responseCode === 421) return 'out';
+  if (refusesService(error)) return 'out';
   if (error.responseCode !== undefined) return undefined;
   const closed = error.code === 'ECONNECTION' && error.message.startsWith('Connection closed');
   const reset = error.originalCode === 'ECONNRESET' || error.originalCode === 'EPIPE';
