@@ -1,6 +1,8 @@
 import { createHash } from 'node:crypto';
 import { createReadStream } from 'node:fs';
-import { lstat, open, rm } from 'node:fs/promises';
+import { lstat, mkdir, open, rename, rm } from 'node:fs/promises';
+import { dirname } from 'node:path';
+import { splitEnding } from './file-name.ts';
 
 const partBytes = 1 << 20;
 
@@ -62,14 +64,38 @@ async function forEachPart(
   }
 }
 
-/** Forces a folder's entries to the disk. */
-export async function syncFolder(path: string): Promise<void> {
-  const folder = await open(path, 'r');
+/** Forces a folder's entries, or a file's content, to the disk. */
+export async function forceToDisk(path: string | Buffer): Promise<void> {
+  const opened = await open(path, 'r');
   try {
-    await folder.sync();
+    await opened.sync();
   } finally {
-    await folder.close();
+    await opened.close();
   }
+}
+
+/** Makes a folder with all above it; what was made is there after a power cut too. */
+export async function makeFolder(path: string): Promise<void> {
+  const first = await mkdir(path, { recursive: true });
+  if (first === undefined) return;
+  for (let made = path; made.length >= first.length; made = dirname(made)) await forceToDisk(dirname(made));
+}
+
+/** Renames in one file system; content and new name are on the disk when this returns, whatever the writer forced there. */
+export async function renameForGood(from: Buffer, to: string): Promise<void> {
+  await forceToDisk(from);
+  await rename(from, to);
+  await forceToDisk(dirname(to));
+}
+
+/** Gives a new arrival its name back, or one beside it where yet another file has taken the name. */
+export async function putBack(held: Buffer, from: Buffer): Promise<void> {
+  if (!(await exists(from))) return rename(held, from);
+  const { ino } = await lstat(held);
+  const at = from.lastIndexOf(0x2f) + 1;
+  const { stem, ending } = splitEnding(from.subarray(at).toString('latin1'));
+  const name = Buffer.from(`${stem.slice(0, 200)}~${ino}${ending.slice(-16)}`, 'latin1');
+  await rename(held, Buffer.concat([from.subarray(0, at), name]));
 }
 
 /** SHA-256 of a regular file, read in parts; null for anything else. */

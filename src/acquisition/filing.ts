@@ -5,16 +5,25 @@
  *     1 set aside: rename to a hidden name beside it, which only this order has
  *     2 look: is it the file that was read? else put it back, it is a new arrival
  *     3 make the folder, write the reason beside the place
- *     4 rename into place; across file systems: copy to NAME.part, fsync, compare, rename, remove the original
+ *     4 force the content to the disk, rename into place; across file systems: copy to NAME.part, fsync, compare, rename, remove the original
  *     5 the same for the sidecar
  *
  * Invariants: at every moment the content exists under at least one of the names; nothing in the data folder is ever
  * overwritten; carrying out an order that was carried out, or half so, leads to the same end.
  */
-import { lstat, mkdir, rename, unlink, writeFile } from 'node:fs/promises';
+import { lstat, rename, unlink, writeFile } from 'node:fs/promises';
 import { dirname, join } from 'node:path';
-import { nameOf, pathBytes, printableName, sidecarNameOf, splitEnding } from './file-name.ts';
-import { contentSha256, copyInto, exists, isSystemError, syncFolder } from './filing-disk.ts';
+import { nameOf, pathBytes, printableName, sidecarNameOf } from './file-name.ts';
+import {
+  contentSha256,
+  copyInto,
+  exists,
+  forceToDisk,
+  isSystemError,
+  makeFolder,
+  putBack,
+  renameForGood,
+} from './filing-disk.ts';
 import { placesFor, setAsidePath } from './filing-place.ts';
 
 /** A file as it was read. */
@@ -151,7 +160,7 @@ async function place(
   reason: string | null,
   steps: Stepping,
 ): Promise<string> {
-  await mkdir(join(dataFolder, dirname(to)), { recursive: true });
+  await makeFolder(join(dataFolder, dirname(to)));
   steps.step('filing: folder made');
   const free = await findPlace(dataFolder, to, sha256);
   const target = join(dataFolder, free.to);
@@ -161,7 +170,7 @@ async function place(
   }
   if (!free.taken) {
     try {
-      await rename(held, target);
+      await renameForGood(held, target);
       steps.step(steps.inPlace);
       return free.to;
     } catch (error) {
@@ -171,7 +180,7 @@ async function place(
     await copyInto(held, part, sha256);
     steps.step('filing: copied');
     await rename(part, target);
-    await syncFolder(dirname(target));
+    await forceToDisk(dirname(target));
     steps.step(steps.inPlace);
   }
   // The same content lies in its place, put there just now or by an earlier attempt.
@@ -229,16 +238,6 @@ export async function putBackHeld(
   if (!(await exists(held))) return false;
   await putBack(held, absolute(dropFolder, file.from));
   return true;
-}
-
-/** Gives a new arrival its name back, or one beside it where yet another file has taken the name. */
-async function putBack(held: Buffer, from: Buffer): Promise<void> {
-  if (!(await exists(from))) return rename(held, from);
-  const { ino } = await lstat(held);
-  const at = from.lastIndexOf(0x2f) + 1;
-  const { stem, ending } = splitEnding(from.subarray(at).toString('latin1'));
-  const name = Buffer.from(`${stem.slice(0, 200)}~${ino}${ending.slice(-16)}`, 'latin1');
-  await rename(held, Buffer.concat([from.subarray(0, at), name]));
 }
 
 function absolute(folder: string, path: string): Buffer {

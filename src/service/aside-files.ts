@@ -2,7 +2,7 @@ import { readFileSync } from 'node:fs';
 import { lstat, open, realpath, rename, unlink } from 'node:fs/promises';
 import { basename, dirname, isAbsolute, join, relative, resolve, sep } from 'node:path';
 import { nameOf, printableName, sidecarNameOf } from '../acquisition/file-name.ts';
-import { contentSha256, copyInto, exists, isSystemError, syncFolder } from '../acquisition/filing-disk.ts';
+import { contentSha256, copyInto, exists, forceToDisk, isSystemError } from '../acquisition/filing-disk.ts';
 import { sweepFolder } from '../acquisition/sweep.ts';
 import type { Site } from '../config/site.ts';
 import type { Reader } from '../store/lent-connection.ts';
@@ -201,6 +201,6 @@ async function moveOver(from: string, to: string): Promise<void> {
     await unlink(part).catch(() => {});
     throw error;
   }
-  await syncFolder(dirname(to));
+  await forceToDisk(dirname(to));
   await unlink(from);
 }
