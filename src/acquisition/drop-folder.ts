@@ -5,7 +5,7 @@
  * found none before.
  */
 import { type FSWatcher, watch } from 'chokidar';
-import { type LeftAlone, type Sweep, sweepFolder, usualBounds } from './sweep.ts';
+import { type LeftAlone, type SeenFile, type Sweep, sweepFolder, usualBounds } from './sweep.ts';
 
 export interface DropFolderSettings {
   readonly folder: string;
@@ -28,10 +28,10 @@ export class DropFolder {
     this.#settings = settings;
   }
 
-  /** As `sweepFolder`, but `leftAlone` holds only what earlier sweeps have not told. */
-  async sweep(): Promise<Sweep> {
+  /** As `sweepFolder`, with its usual bounds, but `leftAlone` holds only what earlier sweeps have not told. */
+  async sweep(isKnown: (file: SeenFile) => boolean = () => false): Promise<Sweep> {
     const { folder, except } = this.#settings;
-    const sweep = await sweepFolder(folder, except);
+    const sweep = await sweepFolder(folder, except, usualBounds, isKnown);
     await this.#watch(sweep.state === 'read' ? sweep.folderInode : null);
     if (sweep.state !== 'read') return sweep;
     const key = ({ path, reason }: LeftAlone) => `${path}\n${reason}`;

@@ -54,20 +54,26 @@ interface Found {
   readonly files: SeenFile[];
   readonly leftAlone: LeftAlone[];
   readonly setAside: string[];
+  /** Files that count for the bound. */
+  counted: number;
   cut: boolean;
 }
 
-/** Walks the folder. `except`: absolute paths of folders inside it that are not the logger's (the data folder). */
+/**
+ * Walks the folder. `except`: absolute paths of folders inside it that are not the logger's (the data folder).
+ * `isKnown`: files that were read and stay there; they do not count for the bound, or they would hide the new ones.
+ */
 export async function sweepFolder(
   folder: string,
   except: readonly string[] = [],
   bounds: SweepBounds = usualBounds,
+  isKnown: (file: SeenFile) => boolean = () => false,
 ): Promise<Sweep> {
-  const found: Found = { files: [], leftAlone: [], setAside: [], cut: false };
+  const found: Found = { files: [], leftAlone: [], setAside: [], counted: 0, cut: false };
   let root: Stats;
   try {
     root = await lstat(`${folder}/.`);
-    await walk(folder, Buffer.alloc(0), 0, { found, bounds, except });
+    await walk(folder, Buffer.alloc(0), 0, { found, bounds, except, isKnown });
   } catch (error) {
     const code = codeOf(error);
     return code === 'ENOENT' || code === 'ENOTDIR'
@@ -89,16 +95,17 @@ interface Walk {
   readonly found: Found;
   readonly bounds: SweepBounds;
   readonly except: readonly string[];
+  readonly isKnown: (file: SeenFile) => boolean;
 }
 
 /** `below`: bytes of the path below the drop folder, empty or ending in `/`. */
 async function walk(folder: string, below: Buffer, depth: number, scene: Walk): Promise<void> {
-  const { found, bounds } = scene;
+  const { found, bounds, isKnown } = scene;
   const here = Buffer.concat([Buffer.from(`${folder}/`), below]);
   const entries = await readdir(here, { encoding: 'buffer', withFileTypes: true });
   entries.sort((a, b) => Buffer.compare(a.name, b.name));
   for (let n = 0; n < entries.length; n += lookedAtOnce) {
-    if (found.files.length >= bounds.mostFiles) {
+    if (found.counted >= bounds.mostFiles) {
       found.cut = true;
       return;
     }
@@ -108,7 +115,7 @@ async function walk(folder: string, below: Buffer, depth: number, scene: Walk): 
       const stat = stats[index];
       const path = Buffer.concat([below, entry.name]);
       if (stat === null) continue;
-      if (!stat.isDirectory()) note(path, entry, stat, found);
+      if (!stat.isDirectory()) note(path, entry, stat, found, isKnown);
       else if (await mayEnter(folder, path, entry, depth, scene)) {
         await enter(folder, path, depth, scene);
       }
@@ -142,7 +149,13 @@ async function mayEnter(
   return problem === null;
 }
 
-function note(path: Buffer, entry: Dirent<Buffer>, stat: Stats, found: Found): void {
+function note(
+  path: Buffer,
+  entry: Dirent<Buffer>,
+  stat: Stats,
+  found: Found,
+  isKnown: (file: SeenFile) => boolean,
+): void {
   const text = pathText(path);
   const name = entry.name.toString('latin1');
   if (name.startsWith(setAsidePrefix)) {
@@ -160,7 +173,9 @@ function note(path: Buffer, entry: Dirent<Buffer>, stat: Stats, found: Found): v
   // The spelling of names that are no text must not be mistaken for a name.
   const problem =
     nameProblem(entry.name) ?? (text.startsWith(codedPrefix) ? `its path begins with ${codedPrefix}` : null);
-  found.files.push({ path: text, dev, ino, size, mtimeMs, ctimeMs, nameProblem: problem });
+  const file = { path: text, dev, ino, size, mtimeMs, ctimeMs, nameProblem: problem };
+  if (!isKnown(file)) found.counted++;
+  found.files.push(file);
 }
 
 function kindProblem(stat: Stats): string | null {

@@ -55,11 +55,14 @@ export class Arrivals {
 
   async look(files: readonly SeenFile[]): Promise<Look> {
     const view = this.#tools.view();
-    const sidecarOf = sidecarPairs(files);
-    const paired = new Set([...sidecarOf.values()].map(({ path }) => path));
     this.#forgetVanished(new Set(files.map(({ path }) => path)));
+    const kept = new Set(files.filter((file) => this.#tools.isKept(file)).map(({ path }) => path));
+    const sidecarOf = sidecarPairs(files);
+    // What lies beside a kept recording and was not read with it has come too late.
+    const pairs = [...sidecarOf].filter(([recording]) => !kept.has(recording));
+    const paired = new Set(pairs.map(([, { path }]) => path));
     const verdicts: Verdict[] = [];
-    const mains = files.filter((file) => !paired.has(file.path) && !this.#tools.isKept(file));
+    const mains = files.filter(({ path }) => !paired.has(path) && !kept.has(path));
     for (let n = 0; n < mains.length; n += lookedAtOnce) {
       const part = mains.slice(n, n + lookedAtOnce);
       verdicts.push(

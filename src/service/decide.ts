@@ -13,6 +13,7 @@ import type { SiteView } from './site-view.ts';
 import {
   fileFindings,
   identityOf,
+  looksOf,
   otherReading,
   recordingRow,
   remarkOf,
@@ -118,7 +119,7 @@ async function repeat(
   return { recordingId, outcome: 'repeat', usedMs };
 }
 
-/** With `after_reading: keep` the ledger remembers what the file looked like, so that it is read once. */
+/** With `after_reading: keep` the ledger remembers what file and sidecar looked like, so that they are read once. */
 async function keepInPlace(
   writer: Writer,
   view: SiteView,
@@ -126,8 +127,8 @@ async function keepInPlace(
   recordingId: number,
 ): Promise<void> {
   if (view.site.folders.afterReading !== 'keep' || ready.archived !== null) return;
-  const { size, mtimeMs, ctimeMs } = answer.look;
-  await noteSeen(writer, { path: ready.path, sizeBytes: size, mtimeMs, ctimeMs, recordingId });
+  for (const { path, size, mtimeMs, ctimeMs } of looksOf(ready, answer.look))
+    await noteSeen(writer, { path, sizeBytes: size, mtimeMs, ctimeMs, recordingId });
 }
 
 /** Older than two expected intervals when it arrived, or taken again from the archive. */

@@ -1,6 +1,6 @@
 import type { DropFolder } from '../acquisition/drop-folder.ts';
 import { printableName } from '../acquisition/file-name.ts';
-import type { Sweep } from '../acquisition/sweep.ts';
+import { type SeenFile, type Sweep, usualBounds } from '../acquisition/sweep.ts';
 import type { WorkerPool } from '../manipulation/pool.ts';
 import type { Ledger } from '../store/ledger.ts';
 import { LedgerError } from '../store/ledger-error.ts';
@@ -66,6 +66,8 @@ export interface Round {
   readonly againInMs: number | null;
 }
 
+const crowded = `more than ${usualBounds.mostFiles} files lie in the drop folder; the others are seen when these are gone`;
+
 /** How long until files that could not be taken for the ledger's sake are tried again. */
 const retryMs = 5_000;
 
@@ -89,7 +91,7 @@ export class Intake {
       wallMs: () => clock.wallMs(),
       monotonicMs: () => clock.monotonicMs(),
       header: (task) => this.#header(task),
-      isKept: (file) => view().site.folders.afterReading === 'keep' && tools.kept.has(file),
+      isKept: (file) => this.#isKept(file),
     });
     this.#backlog = new Backlog(() => clock.monotonicMs());
     const { filingLog, recordings: missing } = tools.beyond ?? {
@@ -124,12 +126,14 @@ export class Intake {
         if (this.#archived.isOpen)
           return { ...nothing, unfiled, waiting: 1, dropFolder: 'read', againInMs: retryMs };
       }
-      const sweep = await this.#tools.dropFolder.sweep();
+      const sweep = await this.#tools.dropFolder.sweep((file) => this.#isKept(file));
       if (sweep.state !== 'read') {
         this.#tools.complaints.say('drop folder', sweep.reason);
         return { ...nothing, unfiled, dropFolder: sweep.state, againInMs: retryMs };
       }
       this.#tools.complaints.over('drop folder');
+      if (sweep.cut) this.#tools.complaints.say('crowded', crowded);
+      await this.#tools.kept.forgetGone(this.#tools.ledger);
       return await this.#roundOf(sweep, unfiled, holdBacklog);
     } catch (error) {
       if (!(error instanceof LedgerError)) throw error;
@@ -175,6 +179,10 @@ export class Intake {
       unfiled,
       againInMs: soonest([look.againInMs, againInMs, taken.left + unfiled > 0 ? retryMs : null]),
     };
+  }
+
+  #isKept(file: SeenFile): boolean {
+    return this.#tools.view().site.folders.afterReading === 'keep' && this.#tools.kept.has(file);
   }
 
   async #header(task: HeaderTask): Promise<HeaderAnswer> {

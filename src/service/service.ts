@@ -85,7 +85,7 @@ export class Service {
     const wallMs = Math.round(clock.wallMs());
     const view = await putInForce(ledger, siteFile, wallMs);
     const last = await noteStarted(ledger, view, wallMs);
-    const kept = await KeptFiles.load(ledger);
+    const kept = await KeptFiles.load(ledger, () => clock.monotonicMs());
     const beyond = await lookBeyond(ledger);
     const service = new Service(options, {
       ledger,

@@ -15,6 +15,7 @@ import type { PutAside } from './put-aside.ts';
 import type { MeasureAnswer, RecordingAnswer, RecordingTask } from './recording-task.ts';
 import type { SiteView } from './site-view.ts';
 import type { Step } from './steps.ts';
+import { looksOf } from './taken-file.ts';
 import type { ReadyRecording } from './verdicts.ts';
 
 /** Analysis in parallel, decisions one after another. */
@@ -217,7 +218,7 @@ export class TakeFiles {
   #remember(ready: ReadyRecording, { look }: { readonly look: FileLook }, recordingId: number): void {
     const { fileAway, forget, kept } = this.#tools;
     const { path, sidecarPath, view } = ready;
-    if (view.site.folders.afterReading === 'keep') kept.add({ path, ...look });
+    if (view.site.folders.afterReading === 'keep') for (const one of looksOf(ready, look)) kept.add(one);
     const { sidecar } = ready.header;
     fileAway.know(recordingId, {
       file: look,

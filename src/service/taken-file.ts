@@ -4,6 +4,7 @@ import type { QualityFinding } from '../acquisition/recording.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { findTaken, type NewRecording, type StoredRecording } from '../store/recordings.ts';
 import type { Source } from '../store/sources.ts';
+import type { FileLook } from './file-source.ts';
 import type { MeasureAnswer } from './recording-task.ts';
 import type { RecordingTime } from './recording-time.ts';
 import type { SiteView } from './site-view.ts';
@@ -36,6 +37,16 @@ export async function otherReading(
   otherMs: number | null,
 ): Promise<StoredRecording | null> {
   return otherMs === null ? null : findTaken(reader, identityOf(taken, otherMs));
+}
+
+/** The recording, and the sidecar that was read with it, as they lay in the drop folder. */
+export function looksOf(
+  { path, sidecarPath, header }: ReadyRecording,
+  look: FileLook,
+): ({ readonly path: string } & FileLook)[] {
+  const { sidecar } = header;
+  const beside = sidecar === null || sidecarPath === null ? [] : [{ path: sidecarPath, ...sidecar.look }];
+  return [{ path, ...look }, ...beside];
 }
 
 /** What the file as a whole lacks. An incomplete one may be replaced by a second version. */

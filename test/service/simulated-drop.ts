@@ -37,7 +37,7 @@ export class SimulatedDrop {
   static async on(site: SiteOnDisk): Promise<SimulatedDrop> {
     const ledger = await opened(site.data, { wait: async () => {} });
     const view = await putInForce(ledger, site.siteFile, beginMs);
-    return new SimulatedDrop(ledger, view, await KeptFiles.load(ledger));
+    return new SimulatedDrop(ledger, view, await KeptFiles.load(ledger, () => 0));
   }
 
   private constructor(ledger: Ledger, view: Awaited<ReturnType<typeof putInForce>>, kept: KeptFiles) {
