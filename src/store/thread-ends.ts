@@ -10,6 +10,8 @@ export async function openThreads(reader: Reader): Promise<Thread[]> {
     .selectFrom('threads')
     .selectAll()
     .where('closed_ms', 'is', null)
+    // By `id` alone SQLite would read every thread there ever was.
+    .orderBy('opened_ms')
     .orderBy('id')
     .execute();
   return rows.map((row) => ({

@@ -81,6 +81,7 @@ function trends(): string {
       line_spacing_hz real, averages integer, effective_averages real, used_percent real, segment_spread real, confidence_percent real,
       quality text not null, unique (recording_id, point_id, settings_fingerprint)) strict;
     create index measurement_by_point on measurements (point_id, used_ms);
+    create index measurement_unflagged on measurements (point_id, used_ms) where quality = '[]';
     create table series (
       id integer primary key, point_id integer not null references points, band_id integer not null references bands,
       fingerprint text not null, quantity text not null, from_hz real not null, to_hz real not null,
@@ -144,7 +145,8 @@ function outbox(): string {
       due_ms integer not null, tries integer not null, last_try_ms integer, last_answer text,
       state text not null check (state in ('waiting', 'accepted', 'failed', 'superseded')),
       bytes blob not null, unique (message_id, recipient)) strict;
-    create index delivery_by_state on deliveries (state);
+    create index delivery_by_state on deliveries (state, last_try_ms);
+    create index delivery_by_recipient on deliveries (recipient, last_try_ms, mail_id) where last_try_ms is not null;
     create index delivery_by_try on deliveries (last_try_ms, mail_id) where last_try_ms is not null;
     create index delivery_waiting on deliveries (due_ms) where state = 'waiting';
     create table to_tell (

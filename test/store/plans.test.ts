@@ -1,0 +1,65 @@
+/** Questions that are asked with every recording or mail stay cheap however old the ledger grows. */
+import { mkdtempSync, rmSync } from 'node:fs';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
+import Database from 'better-sqlite3';
+import { expect, it, onTestFinished, vi } from 'vitest';
+import { lastGoodRms } from '../../src/store/good-signals.ts';
+import { isLedgerRefusal } from '../../src/store/ledger-error.ts';
+import { PreparedConnection, type Reader } from '../../src/store/lent-connection.ts';
+import { openLedger } from '../../src/store/open-ledger.ts';
+import { lastUnflaggedMs } from '../../src/store/past-levels.ts';
+import { openThreads } from '../../src/store/thread-ends.ts';
+import { countRefusedSince, lastAcceptedMs, refusedRecipients } from '../../src/store/waiting-mail.ts';
+
+/** How SQLite goes about what `ask` asks, without statistics, as the service never gathers any. */
+async function planOf(ask: (reader: Reader) => Promise<unknown>): Promise<string> {
+  const folder = mkdtempSync(join(tmpdir(), 'humledger-plans-'));
+  onTestFinished(() => rmSync(folder, { recursive: true, force: true }));
+  const ledger = await openLedger({ folder, mode: 'owner', wallMs: () => 0, monotonicMs: () => 0 });
+  if (isLedgerRefusal(ledger)) throw new Error(ledger.reason);
+  const asked = vi.spyOn(PreparedConnection.prototype, 'run');
+  await ledger.read(ask);
+  const [{ sql, parameters }] = asked.mock.calls[0] as Parameters<PreparedConnection['run']>;
+  asked.mockRestore();
+  const connection = new Database(ledger.path, { readonly: true });
+  const rows = connection.prepare(`explain query plan ${sql}`).all(...parameters) as { detail: string }[];
+  connection.close();
+  await ledger.close();
+  return rows.map(({ detail }) => detail).join('; ');
+}
+
+it.each<[string, (reader: Reader) => Promise<unknown>, string]>([
+  [
+    'the usual signal of a point that has been flagged for years',
+    (reader) => lastGoodRms(reader, 1, 20),
+    'SEARCH measurements USING INDEX measurement_unflagged (point_id=?)',
+  ],
+  [
+    'when a point was last sound',
+    (reader) => lastUnflaggedMs(reader, 1, 1),
+    'SEARCH measurements USING COVERING INDEX measurement_unflagged (point_id=? AND used_ms<?)',
+  ],
+  [
+    'when a mail was last accepted',
+    (reader) => lastAcceptedMs(reader),
+    'SEARCH deliveries USING COVERING INDEX delivery_by_state (state=? AND last_try_ms>?)',
+  ],
+  [
+    'how many mails were refused lately',
+    (reader) => countRefusedSince(reader, 1),
+    'SEARCH deliveries USING COVERING INDEX delivery_by_state (state=? AND last_try_ms>?)',
+  ],
+  [
+    'whether a recipient is refused',
+    (reader) => refusedRecipients(reader, ['somebody@trial.example']),
+    'SEARCH deliveries USING INDEX delivery_by_recipient (recipient=? AND last_try_ms>?)',
+  ],
+  [
+    'which threads are open',
+    (reader) => openThreads(reader),
+    'SCAN threads USING INDEX thread_open; USE TEMP B-TREE FOR ORDER BY',
+  ],
+])('%s is looked up, not searched for', async (_what, ask, plan) => {
+  expect(await planOf(ask)).toBe(plan);
+});
