@@ -12,7 +12,7 @@
  * | settling | the first 10 ms lie 8 deviations (of all later such means) and half an r.m.s. off, and the way back is half gone by the middle |
  * | bias-out-of-range | volts of an accelerometer whose mean is no 0 (coupled without its bias) and not 8 to 13 V |
  * | hum-only | 99 % of the power at multiples of 50 or 60 Hz, three of them standing out, no shaft speed near |
- * | ski-slope | the floor of the velocity rises towards the lowest lines like 1/f or steeper and is half of its power |
+ * | ski-slope | the floor of the velocity is half of its power and rises towards the lowest lines steeper than 1/f, or like 1/f and is as low as sensor noise |
  *
  * Every threshold was set so that 1,000 simulated healthy recordings raise none (see the tests).
  */
@@ -43,10 +43,18 @@ export const qualityRules = {
   humLeastMultiples: 3,
   /** Lines on either side of a multiple that are counted to it. */
   humSideLines: 3,
-  /** Shaft frequencies this near to a mains frequency cannot be told from hum. */
+  /** The same below the mains where no shaft speed is known: a lightly loaded two-pole motor turns 0.2 Hz slower. */
+  humBelowUnknownSpeedHz: 0.12,
+  /** Shafts with a multiple this near to a mains frequency cannot be told from hum. */
   humSpeedDistanceHz: 1,
+  /** Two-pole motors turn up to 7 % below their mains at full load, which is the speed on their plate, and hardly below it at none. */
+  humSpeedPart: 0.07,
   /** Exponent of the velocity's floor in density over frequency: 1/f in amplitude is -2. */
   skiSlopeExponent: -1.8,
+  /** Steeper than the 1/f of an even acceleration: no machine's broadband vibration does that. */
+  skiSlopeSteepExponent: -2.4,
+  /** Highest even noise of an accelerometer, m/s² per root Hz: 1 mg. Louder 1/f is cavitation, turbulence, combustion. */
+  sensorNoise: 0.01,
   skiSlopePart: 0.5,
   skiSlopeLeastAverages: 4,
   /** Lines of the lowest octave. */

@@ -38,8 +38,10 @@ function humOnly(
 ): string | null {
   if (speedHz !== null && speedHz > 0) {
     const multiple = Math.max(1, Math.round(mainsHz / speedHz));
-    if (Math.abs(multiple * speedHz - mainsHz) < rules.humSpeedDistanceHz) return null;
+    const nearHz = multiple === 1 ? rules.humSpeedPart * mainsHz : rules.humSpeedDistanceHz;
+    if (Math.abs(multiple * speedHz - mainsHz) < nearHz) return null;
   }
+  const belowHz = speedHz === null ? rules.humBelowUnknownSpeedHz : rules.humToleranceHz;
   const side = rules.humSideLines;
   // Where the multiples cover most lines anyway, their share says nothing.
   if ((2 * side + 1) * lineSpacingHz > 0.5 * mainsHz) return null;
@@ -56,8 +58,8 @@ function humOnly(
       if (density[line] > density[peak]) peak = line;
     }
     atMultiples += part;
-    const distanceHz = Math.abs(peakLine(density, peak) * lineSpacingHz - k * mainsHz);
-    if (part > 1e-4 * all && distanceHz <= k * rules.humToleranceHz) standing++;
+    const offHz = (peakLine(density, peak) * lineSpacingHz) / k - mainsHz;
+    if (part > 1e-4 * all && offHz <= rules.humToleranceHz && offHz >= -belowHz) standing++;
   }
   if (atMultiples < rules.humPart * all || standing < rules.humLeastMultiples) return null;
   const share = ((100 * atMultiples) / all).toFixed(1);
@@ -91,6 +93,10 @@ function skiSlope(look: SpectrumLook, { quantity, lowestVelocityHz }: SpectrumQu
   });
   const { slope, at } = straightLine(octaves);
   if (!(slope <= rules.skiSlopeExponent)) return null;
+  // An even acceleration gives 1/f too: a pump that cavitates is not a doubtful sensor.
+  const middle = 4 * first;
+  const acceleration = Math.sqrt(Math.exp(at(Math.log(middle)))) * 2 * Math.PI * middle * lineSpacingHz;
+  if (slope > rules.skiSlopeSteepExponent && acceleration > rules.sensorNoise) return null;
   let all = 0;
   let floor = 0;
   for (let line = first; line < density.length; line++) {

@@ -182,6 +182,18 @@ describe('the sample quality of a bad recording', () => {
     expect(flags(quantised(sum(hum, sine(24.3, 0.2))))).not.toContain('hum-only');
   });
 
+  it.each([50, 60])('takes no lightly loaded two-pole motor for hum at %s Hz', (mains) => {
+    const shaft = 0.996 * mains;
+    const motor = quantised(
+      sum(sine(shaft, 0.2), sine(2 * shaft, 0.15), sine(3 * shaft, 0.08), noise(14, 0.002)),
+    );
+    expect(flags(motor)).not.toContain('hum-only');
+    for (const plate of [0.94, 0.96, 0.99, 1])
+      expect(flags(motor, { speedHz: plate * mains }), `plate ${plate}`).not.toContain('hum-only');
+    // The same lines on a shaft that cannot give them.
+    expect(flags(motor, { speedHz: 0.37 * mains })).toContain('hum-only');
+  });
+
   it('tells a velocity that is nothing but its slope', () => {
     // White noise of the sensor, integrated: 1/f; a drifting input: steeper.
     const lowestVelocityHz = 20;
@@ -192,6 +204,9 @@ describe('the sample quality of a bad recording', () => {
       return x + drift;
     });
     expect(flags(quantised(drifting), { lowestVelocityHz })).toContain('ski-slope');
+    // As even as the first but far louder than a sensor's own noise: a pump that cavitates.
+    const loud = noise(12, 0.01).map((x) => 300 * x);
+    expect(flags(loud, { lowestVelocityHz, samples: 'number' })).not.toContain('ski-slope');
     expect(flags(noise(12, 0.01))).not.toContain('ski-slope');
     expect(flags(sum(noise(12, 0.01), sine(24, 0.05)), { lowestVelocityHz })).not.toContain('ski-slope');
   });
