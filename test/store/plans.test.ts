@@ -4,22 +4,32 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import Database from 'better-sqlite3';
 import { expect, it, onTestFinished, vi } from 'vitest';
+import { missingOf } from '../../src/service/beyond-ledger.ts';
 import { lastGoodRms } from '../../src/store/good-signals.ts';
+import type { Ledger } from '../../src/store/ledger.ts';
 import { isLedgerRefusal } from '../../src/store/ledger-error.ts';
 import { PreparedConnection, type Reader } from '../../src/store/lent-connection.ts';
 import { openLedger } from '../../src/store/open-ledger.ts';
 import { lastUnflaggedMs } from '../../src/store/past-levels.ts';
+import { findTakenByContent } from '../../src/store/recordings.ts';
 import { openThreads } from '../../src/store/thread-ends.ts';
 import { countRefusedSince, lastAcceptedMs, refusedRecipients } from '../../src/store/waiting-mail.ts';
 
+type Ask = (ledger: Ledger) => Promise<unknown>;
+
+const reading =
+  (ask: (reader: Reader) => Promise<unknown>): Ask =>
+  (ledger) =>
+    ledger.read(ask);
+
 /** How SQLite goes about what `ask` asks, without statistics, as the service never gathers any. */
-async function planOf(ask: (reader: Reader) => Promise<unknown>): Promise<string> {
+async function planOf(ask: Ask): Promise<string> {
   const folder = mkdtempSync(join(tmpdir(), 'humledger-plans-'));
   onTestFinished(() => rmSync(folder, { recursive: true, force: true }));
   const ledger = await openLedger({ folder, mode: 'owner', wallMs: () => 0, monotonicMs: () => 0 });
   if (isLedgerRefusal(ledger)) throw new Error(ledger.reason);
   const asked = vi.spyOn(PreparedConnection.prototype, 'run');
-  await ledger.read(ask);
+  await ask(ledger);
   const [{ sql, parameters }] = asked.mock.calls[0] as Parameters<PreparedConnection['run']>;
   asked.mockRestore();
   const connection = new Database(ledger.path, { readonly: true });
@@ -29,35 +39,54 @@ async function planOf(ask: (reader: Reader) => Promise<unknown>): Promise<string
   return rows.map(({ detail }) => detail).join('; ');
 }
 
-it.each<[string, (reader: Reader) => Promise<unknown>, string]>([
+const filed = {
+  from: 'a.wav',
+  to: null,
+  sha256: 'a',
+  sidecarSha256: null,
+  arrivedMs: 0,
+  outcome: 'taken',
+} as const;
+
+it.each<[string, Ask, string]>([
   [
     'the usual signal of a point that has been flagged for years',
-    (reader) => lastGoodRms(reader, 1, 20),
+    reading((reader) => lastGoodRms(reader, 1, 20)),
     'SEARCH measurements USING INDEX measurement_unflagged (point_id=?)',
   ],
   [
     'when a point was last sound',
-    (reader) => lastUnflaggedMs(reader, 1, 1),
+    reading((reader) => lastUnflaggedMs(reader, 1, 1)),
     'SEARCH measurements USING COVERING INDEX measurement_unflagged (point_id=? AND used_ms<?)',
   ],
   [
     'when a mail was last accepted',
-    (reader) => lastAcceptedMs(reader),
+    reading((reader) => lastAcceptedMs(reader)),
     'SEARCH deliveries USING COVERING INDEX delivery_by_state (state=? AND last_try_ms>?)',
   ],
   [
     'how many mails were refused lately',
-    (reader) => countRefusedSince(reader, 1),
+    reading((reader) => countRefusedSince(reader, 1)),
     'SEARCH deliveries USING COVERING INDEX delivery_by_state (state=? AND last_try_ms>?)',
   ],
   [
     'whether a recipient is refused',
-    (reader) => refusedRecipients(reader, ['somebody@trial.example']),
+    reading((reader) => refusedRecipients(reader, ['somebody@trial.example'])),
     'SEARCH deliveries USING INDEX delivery_by_recipient (recipient=? AND last_try_ms>?)',
   ],
   [
+    'a recording of the same content',
+    reading((reader) => findTakenByContent(reader, 1, 'a')),
+    'SEARCH recordings USING INDEX recording_by_content (content_sha256=?)',
+  ],
+  [
+    'what the ledger knows of files that were filed',
+    (ledger) => missingOf(ledger, Array(500).fill(filed)),
+    'SEARCH recordings USING INDEX recording_by_content (content_sha256=?); USE TEMP B-TREE FOR ORDER BY',
+  ],
+  [
     'which threads are open',
-    (reader) => openThreads(reader),
+    reading((reader) => openThreads(reader)),
     'SCAN threads USING INDEX thread_open; USE TEMP B-TREE FOR ORDER BY',
   ],
 ])('%s is looked up, not searched for', async (_what, ask, plan) => {

@@ -53,7 +53,7 @@ function intake(): string {
       filing_state text not null check (filing_state in ('pending', 'filed'))) strict;
     create unique index recording_taken_once on recordings (identity) where outcome = 'taken';
     create index recording_by_source on recordings (source_id, used_ms) where outcome = 'taken';
-    create index recording_by_content on recordings (content_sha256) where outcome = 'taken';
+    create index recording_by_content on recordings (content_sha256);
     create index recording_to_file on recordings (id) where filing_state = 'pending';
     create index recording_by_arrival on recordings (arrived_ms, outcome);
     create table seen_files (
