@@ -68,11 +68,16 @@ export class Housekeeping {
   #check(nowMs: number): void {
     this.#checkedMs = nowMs;
     const { ledger, log } = this.#tools;
-    this.#checking = quickCheck(ledger.path).then((found) => {
-      this.#checking = null;
-      this.damage = 'refused' in found ? found.reason : (found[0] ?? null);
-      if (this.damage !== null)
-        log.error({ found: this.damage }, `the ledger fails its check; ${whatToDoWithDamage}`);
-    });
+    this.#checking = quickCheck(ledger.path)
+      .then((found) => {
+        this.damage = 'refused' in found ? found.reason : (found[0] ?? null);
+        if (this.damage !== null)
+          log.error({ found: this.damage }, `the ledger fails its check; ${whatToDoWithDamage}`);
+      })
+      // A thread that could not be started says nothing of the ledger, and is no reason to end.
+      .catch((error: unknown) => log.error({ error: String(error) }, 'the ledger could not be checked'))
+      .finally(() => {
+        this.#checking = null;
+      });
   }
 }
