@@ -1,7 +1,7 @@
 import { resolve } from 'node:path';
 import { systemClock } from '../../service/clock.ts';
 import { orDamage } from '../../service/damage.ts';
-import { createLog } from '../../service/log.ts';
+import { createLog, type Logger } from '../../service/log.ts';
 import { type OnceReport, runOnce, runUntil, Waker } from '../../service/run.ts';
 import { Service } from '../../service/service.ts';
 import { readSiteFile, type SiteFile } from '../../service/site-in-force.ts';
@@ -48,7 +48,7 @@ async function runService(siteFile: SiteFile, once: boolean, io: CommandIo): Pro
     },
   });
   if ('refused' in service) return fail(io, service.refused);
-  const forget = listen(service, stop, drop);
+  const forget = listen(service, log, stop, drop);
   try {
     if (once) return report(await runOnce(service, stop.signal), io);
     await runUntil(service, drop, stop.signal);
@@ -71,13 +71,18 @@ function report(once: OnceReport, io: CommandIo): ExitStatus {
 }
 
 /** The first SIGTERM or SIGINT stops in order; a second one gives up waiting. SIGHUP re-reads the site file. */
-function listen(service: Service, stop: AbortController, drop: Waker): () => void {
+function listen(service: Service, log: Logger, stop: AbortController, drop: Waker): () => void {
   const end = () => {
     if (stop.signal.aborted) process.exit(1);
     stop.abort();
   };
   const reload = () => {
-    void service.reload().then(() => drop.wake());
+    service.reload().then(
+      () => drop.wake(),
+      // A ledger that is locked or full for the moment; the service goes on with the site file that it has.
+      (error: Error) =>
+        log.error({ problem: error.message }, 'the site file could not be put in force; send SIGHUP again'),
+    );
   };
   process.on('SIGTERM', end);
   process.on('SIGINT', end);
