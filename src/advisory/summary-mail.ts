@@ -136,10 +136,16 @@ function pointRows({ point, judging, lastMs, bands }: PointNow, timeZone: string
   const word = judgingWord[judging];
   const note = word === '' ? '' : ` (${word})`;
   if (bands.length === 0) return [[`${nameOf(point)}${note}`, 'no band', '', '', '', last]];
-  return bands.map((now) => [`${nameOf(point)}${note}, ${idText(now.band.id)}`, ...bandCells(now), last]);
+  return bands.map((now) => {
+    // A machine that stands shows the level of when it last ran, which 'last' would belie.
+    const older = now.level !== null && lastMs !== null && now.level.usedMs < lastMs;
+    const from = older ? `, of ${shortMomentText(now.level.usedMs, timeZone)}` : '';
+    return [`${nameOf(point)}${note}, ${idText(now.band.id)}`, ...bandCells(now, from), last];
+  });
 }
 
-function bandCells({ band, level, limits, change, zone }: BandNow): string[] {
+/** `from`: when the level was measured, where that must be said. */
+function bandCells({ band, level, limits, change, zone }: BandNow, from: string): string[] {
   if (level === null) return ['no level', '', '', ''];
   const { display } = band;
   const interval = `(${bareLevel(level.intervalLow, display)} to ${bareLevel(level.intervalHigh, display)})`;
@@ -152,5 +158,5 @@ function bandCells({ band, level, limits, change, zone }: BandNow): string[] {
     return used.length === 0 ? 'none' : percentText(Math.max(...used));
   });
   const changed = change === null ? '' : `${changeText(change.ratio)}${change.worse ? ', worse' : ''}`;
-  return [`${value} ${interval}${inZone}`, ...shares, changed];
+  return [`${value} ${interval}${inZone}${from}`, ...shares, changed];
 }

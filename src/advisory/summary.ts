@@ -67,7 +67,7 @@ export function morningOf(facts: SummaryFacts): Morning {
       name: 'worse',
       title: 'Worse, no limit passed',
       findings: worseGroups.map((group) => worseFinding(group)),
-      lines: worse.length === 0 ? ['Nothing rose by more than its ordinary spread.'] : [],
+      lines: worse.length === 0 ? [nothingWorse(facts)] : [],
     },
     {
       name: 'known',
@@ -132,6 +132,12 @@ function bandKey(machine: MachineFacts, point: PointFacts, band: { readonly id: 
 
 function pointKey(machine: MachineFacts | null, point: PointFacts | null): string {
   return `${machine?.id}\n${point?.id}`;
+}
+
+/** Of what nobody measured no one can say that it did not rise. */
+function nothingWorse({ points }: SummaryFacts): string {
+  const compared = points.some(({ bands }) => bands.some(({ change }) => change !== null));
+  return compared ? 'Nothing rose by more than its ordinary spread.' : 'There is nothing to compare yet.';
 }
 
 /** Judged points of which nothing stands and nothing got worse. */

@@ -5,7 +5,9 @@ import { alarmMail, mailSeverity } from '../../src/advisory/alarm-mail.ts';
 import type { Mail } from '../../src/advisory/facts.ts';
 import { catchUpMail, serviceMail, testMail } from '../../src/advisory/notices.ts';
 import { morningOf, mostShown, needsPerson } from '../../src/advisory/summary.ts';
+import type { SummaryFacts } from '../../src/advisory/summary-facts.ts';
 import { summaryFile, summaryMail } from '../../src/advisory/summary-mail.ts';
+import { shortMomentText } from '../../src/advisory/time-words.ts';
 import { caution } from '../../src/advisory/wording.ts';
 import { alarm, name, numbered, summary, trouble } from './random-facts.ts';
 import {
@@ -13,6 +15,7 @@ import {
   danger,
   day,
   driveH,
+  hour,
   mailFacts,
   morning,
   overdue,
@@ -224,6 +227,32 @@ describe('the summary', () => {
     expect(places).toEqual([...places].sort((a, b) => a - b));
     const screen = text.slice(0, text.indexOf('Caution:'));
     expect(screen.match(/■ DANGER/g)).toHaveLength(mostShown);
+  });
+
+  it('says of which recording a level is, where a newer one of the standing machine came', () => {
+    const [row] = quietFacts.points;
+    if (row === undefined) throw new Error('the sample has no point');
+    const stopped = (lastMs: number): SummaryFacts => ({
+      ...quietFacts,
+      points: [{ ...row, judging: 'stopped', lastMs }],
+    });
+    const levelMs = row.bands[0]?.level?.usedMs ?? Number.NaN;
+    const older = ` of ${shortMomentText(levelMs, quietFacts.site.timeZone)} `;
+    expect(unwrapped(summaryMail(stopped(levelMs + hour)).text)).toContain(older);
+    expect(unwrapped(summaryMail(stopped(levelMs)).text)).not.toContain(older);
+  });
+
+  it('claims that nothing rose only where there was something to compare', () => {
+    const without = quietFacts.points.map((point) => ({
+      ...point,
+      bands: point.bands.map((band) => ({ ...band, change: null })),
+    }));
+    const said = (facts: SummaryFacts) =>
+      morningOf(facts)
+        .sections.find(({ name }) => name === 'worse')
+        ?.lines.join();
+    expect(said(quietFacts)).toBe('Nothing rose by more than its ordinary spread.');
+    expect(said({ ...quietFacts, points: without })).toBe('There is nothing to compare yet.');
   });
 
   it('begins with who needs a person, and what could not be judged', () => {
