@@ -2,7 +2,7 @@ import fc from 'fast-check';
 import { sql } from 'kysely';
 import { expect } from 'vitest';
 import { SimulatedDrop } from './simulated-drop.ts';
-import { hourMs, type SiteOnDisk, stamp } from './site-on-disk.ts';
+import { hourMs, makeSite, type SiteOnDisk, stamp } from './site-on-disk.ts';
 
 /**
  * Loggers as they are at their worst: clocks that jump, power cycles, gaps, batches in any order, files that come
@@ -184,6 +184,25 @@ export class ArrivalsPlay {
   async #rows<T>(text: string): Promise<T[]> {
     const { rows } = await this.#drop.ledger.read((reader) => sql.raw<T>(text).execute(reader as never));
     return rows;
+  }
+}
+
+/** Plays one story on a site of its own and checks it; adds up what was seen. */
+export async function promisesHold(
+  all: readonly Deed[],
+  seen: { files: number; late: number; clockTroubles: number },
+): Promise<void> {
+  const site = makeSite({ folders: 'after_reading: delete' });
+  const play = await ArrivalsPlay.on(site);
+  try {
+    await play.play(all);
+    const { files, late, clockTroubles } = await play.check();
+    seen.files += files;
+    seen.late += late;
+    seen.clockTroubles += clockTroubles;
+  } finally {
+    await play.end();
+    site.remove();
   }
 }
 

@@ -4,8 +4,16 @@ import { setFlagsFromString } from 'node:v8';
 import { runInNewContext } from 'node:vm';
 import { expect } from 'vitest';
 import { noteSeen } from '../../src/store/intake-marks.ts';
-import { beginMs, hourMs, signal, stamp, TrialService, wav } from './site-on-disk.ts';
-import { serviceOn, site } from './trial.ts';
+import {
+  beginMs,
+  hourMs,
+  makeSite,
+  type SiteOnDisk,
+  signal,
+  stamp,
+  TrialService,
+  wav,
+} from './site-on-disk.ts';
 
 const rowsAtOnce = 1000;
 /** What is left afterwards is what is held. */
@@ -32,7 +40,16 @@ export function opened(folder: string): string[] {
  * changed and the new are opened. Says what a sweep takes and holds.
  */
 export async function manyKept(files: number, changed: number): Promise<void> {
-  const on = site({ folders: 'after_reading: keep', recordings: 'overdue_after: 8000 h' });
+  const on = makeSite({ folders: 'after_reading: keep', recordings: 'overdue_after: 8000 h' });
+  try {
+    await keptOn(on, files, changed);
+  } finally {
+    // Here and not after the test: to remove so many files takes its time.
+    on.remove();
+  }
+}
+
+async function keptOn(on: SiteOnDisk, files: number, changed: number): Promise<void> {
   const first = await TrialService.start(on);
   const names = Array.from({ length: files }, (_, n) => `pump-2_${stamp(beginMs - n * hourMs)}.wav`);
   for (const name of names) writeFileSync(join(on.drop, name), 'read long ago');
@@ -45,7 +62,7 @@ export async function manyKept(files: number, changed: number): Promise<void> {
     });
   await first.stop();
 
-  const service = await serviceOn(on, { worker: countingWorker });
+  const service = await TrialService.start(on, { worker: countingWorker });
   await service.after(0);
   collectGarbage();
   const before = process.memoryUsage();
@@ -73,6 +90,7 @@ export async function manyKept(files: number, changed: number): Promise<void> {
         .map((line) => line.split(' ')[1])
         .sort(),
     ).toEqual(wanted);
+  await service.stop();
   const mb = (bytes: number) => Math.round(bytes / 2 ** 20);
   process.stdout.write(
     `${files} kept files: a round ${sweepMs.toFixed(0)} ms, heap ${mb(held.heapUsed)} MB (${mb(before.heapUsed)} before), rss ${mb(held.rss)} MB\n`,
