@@ -13,8 +13,11 @@ export interface OverdueLook {
   readonly nowMs: number;
   /** Wall time at which this run of the service began: what never came is waited for from here. */
   readonly startedMs: number;
-  /** Nothing waits to be settled, read or committed: what is not there now has not come. */
-  readonly queueEmpty: boolean;
+  /**
+   * Points (`pointPath`) for which files wait to be settled, read or committed; null: it may be any. What waits for one
+   * point says nothing of another: in a busy drop folder something always waits.
+   */
+  readonly waitingFor: ReadonlySet<string> | null;
   readonly dropFolderReadable: boolean;
   /** By `subjectKey`. */
   readonly earlier: ReadonlyMap<string, AlarmState>;
@@ -53,7 +56,8 @@ function overduePoint(point: Point, look: OverdueLook): AlarmChange | null {
   const arrivedMs = look.lastArrivedMs.get(pointPath(point)) ?? null;
   const silentMs = look.nowMs - (arrivedMs ?? look.startedMs);
   const present = silentMs > overdueAfterMs + settleMs;
-  const canBeJudged = look.queueEmpty && look.nowMs - look.startedMs >= expectedEveryMs;
+  const nothingWaits = look.waitingFor?.has(pointPath(point)) === false;
+  const canBeJudged = nothingWaits && look.nowMs - look.startedMs >= expectedEveryMs;
   if (present ? !canBeJudged : arrivedMs === null) return null;
   const subject = overdueSubject(point);
   return troubleStep(subject, look.earlier.get(subjectKey(subject)), {

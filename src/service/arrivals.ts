@@ -86,7 +86,7 @@ export class Arrivals {
       const { verdict, state } = settle(watched.settling, this.#observe(file, sidecar, watched), waits);
       if (state.stillSinceMs !== watched.settling?.stillSinceMs) watched.looked = null;
       watched.settling = state;
-      if (verdict.verdict === 'wait') return { at: 'waiting', againInMs: verdict.againInMs };
+      if (verdict.verdict === 'wait') return { at: 'waiting', againInMs: verdict.againInMs, points };
       const arrivedMs = this.#arrivedMs(watched);
       const { looked } = watched;
       const arrival: Arrival = { file, sidecar, arrivedMs, looked };
@@ -101,7 +101,7 @@ export class Arrivals {
         continue;
       }
       const waitMs = this.#sidecarWaitMs(points, sidecar, state, waits.incompleteAfterMs);
-      if (waitMs > 0) return { at: 'waiting', againInMs: waitMs };
+      if (waitMs > 0) return { at: 'waiting', againInMs: waitMs, points };
       return ready(view, arrival, points, verdict.zeroTail);
     }
   }
@@ -156,7 +156,7 @@ export class Arrivals {
     watched.settling ??= settle(null, this.#observe(file, null, watched), waitsFor(view, [])).state;
     const leftMs =
       watched.settling.firstSeenMs + view.site.timings.incompleteAfterMs - this.#tools.monotonicMs();
-    if (leftMs > 0) return { at: 'waiting', againInMs: leftMs };
+    if (leftMs > 0) return { at: 'waiting', againInMs: leftMs, points: [] };
     const reason = 'no recording came with this sidecar, or it came after its recording had been read';
     const arrivedMs = this.#arrivedMs(watched);
     return givenUp(view, { file, sidecar: null, arrivedMs, looked: null }, reason, 'late-sidecar');

@@ -1,6 +1,7 @@
 import type { DropFolder } from '../acquisition/drop-folder.ts';
 import { printableName } from '../acquisition/file-name.ts';
 import { type SeenFile, type Sweep, usualBounds } from '../acquisition/sweep.ts';
+import { pointPath } from '../config/site.ts';
 import type { WorkerPool } from '../manipulation/pool.ts';
 import type { Ledger } from '../store/ledger.ts';
 import { LedgerError } from '../store/ledger-error.ts';
@@ -59,6 +60,8 @@ export interface Round {
   readonly setAside: number;
   /** Files that settle, wait for their backlog, or are to be tried again. */
   readonly waiting: number;
+  /** Points (pointPath) that these files are for: their silence is not judged. Null: it may be any. */
+  readonly waitingFor: ReadonlySet<string> | null;
   readonly unassigned: readonly Unassigned[];
   /** Orders of filing that something stands in the way of. */
   readonly unfiled: number;
@@ -118,7 +121,7 @@ export class Intake {
 
   /** `holdBacklog` false: what lies there is all there is (`run --once`). */
   async round(holdBacklog: boolean): Promise<Round> {
-    const nothing = { taken: 0, setAside: 0, waiting: 0, unassigned: [], unfiled: 0 };
+    const nothing = { taken: 0, setAside: 0, waiting: 0, waitingFor: null, unassigned: [], unfiled: 0 };
     try {
       const unfiled = await this.#fileAway.all();
       if (this.#archived.isOpen) {
@@ -163,6 +166,7 @@ export class Intake {
     this.#backlogRuns = held.length > 0 || now.some((ready) => isOld(ready, startOf(ready)));
     const taken = await this.#take.recordings(inOrder(now, startOf), startOf);
     this.#backlogRuns = held.length > 0;
+    const stay = taken.left > 0 ? [...held, ...now] : held;
     const setAside = await this.#putAside.givenUp(look.givenUp);
     const wallMs = clock.wallMs();
     const { unassigned, notRead } = look;
@@ -175,6 +179,7 @@ export class Intake {
       taken: taken.decided,
       setAside: setAside + moved,
       waiting: look.waiting + held.length + taken.left,
+      waitingFor: new Set([...look.waitingFor, ...stay.flatMap(({ points }) => points)].map(pointPath)),
       unassigned: look.unassigned,
       unfiled,
       againInMs: soonest([look.againInMs, againInMs, taken.left + unfiled > 0 ? retryMs : null]),

@@ -165,10 +165,10 @@ export class Service {
       await watchSilence(this.ledger, this.#view, {
         wallMs: Math.round(this.#options.clock.wallMs()),
         startedMs: this.#wallSteps.startedMs,
-        queueEmpty: round.waiting === 0,
+        waitingFor: round.waitingFor,
         dropFolderReadable: round.dropFolder === 'read',
       });
-      if (round.waiting === 0) await this.#housekeeping.whenIdle();
+      if (round.waiting === 0 || round.taken === 0) await this.#housekeeping.whenIdle();
     } catch (error) {
       if (!(error instanceof LedgerError)) throw error;
       this.#complaints.say('ledger', error.message);

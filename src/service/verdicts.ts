@@ -8,7 +8,7 @@ import type { SiteView } from './site-view.ts';
 
 /** What a look at one file of the drop folder comes to. */
 export type Verdict =
-  | { readonly at: 'waiting'; readonly againInMs: number }
+  | { readonly at: 'waiting'; readonly againInMs: number; readonly points: readonly Point[] }
   | { readonly at: 'ready'; readonly recording: ReadyRecording }
   | { readonly at: 'given-up'; readonly file: GivenUp }
   | { readonly at: 'unassigned'; readonly file: Unassigned }
@@ -61,6 +61,8 @@ export interface Look {
   readonly notRead: readonly NotRead[];
   /** Files still settling, and when the first of them is worth another look. */
   readonly waiting: number;
+  /** Points that these files are for. */
+  readonly waitingFor: readonly Point[];
   readonly againInMs: number | null;
 }
 
@@ -135,6 +137,7 @@ export function collect(verdicts: readonly Verdict[]): Look {
     unassigned: verdicts.flatMap((verdict) => (verdict.at === 'unassigned' ? [verdict.file] : [])),
     notRead: verdicts.flatMap((verdict) => (verdict.at === 'not-read' ? [verdict.file] : [])),
     waiting: waits.length,
+    waitingFor: verdicts.flatMap((verdict) => (verdict.at === 'waiting' ? verdict.points : [])),
     againInMs: waits.length === 0 ? null : Math.min(...waits),
   };
 }

@@ -12,7 +12,8 @@ export interface SilenceLook {
   readonly wallMs: number;
   /** Wall time at which this run of the service began. */
   readonly startedMs: number;
-  readonly queueEmpty: boolean;
+  /** Points for which files wait to be settled, read or committed; null: it may be any. */
+  readonly waitingFor: ReadonlySet<string> | null;
   readonly dropFolderReadable: boolean;
 }
 
@@ -52,7 +53,7 @@ async function changesOf(reader: Reader, view: SiteView, look: SilenceLook) {
     lastArrivedMs,
     nowMs: look.wallMs,
     startedMs: look.startedMs,
-    queueEmpty: look.queueEmpty,
+    waitingFor: look.waitingFor,
     dropFolderReadable: look.dropFolderReadable,
     earlier,
   });

@@ -13,7 +13,7 @@ const look = (parts: Partial<OverdueLook>): OverdueLook => ({
   lastArrivedMs: new Map(),
   nowMs: 100 * hourMs,
   startedMs: 0,
-  queueEmpty: true,
+  waitingFor: new Set(),
   dropFolderReadable: true,
   earlier: new Map(),
   ...parts,
@@ -30,9 +30,12 @@ describe('a point that should have sent by now', () => {
     ]);
   });
 
-  it('is judged only with an empty queue, and from one interval after the start on', () => {
+  it('is judged only when nothing waits for it, and from one interval after the start on', () => {
     const lastArrivedMs = both(0);
-    expect(named({ lastArrivedMs, queueEmpty: false })).toEqual([]);
+    expect(named({ lastArrivedMs, waitingFor: new Set(['blower-1/de-h']) })).toEqual([
+      ['trouble:overdue:blower-1/nde-h', 'raised'],
+    ]);
+    expect(named({ lastArrivedMs, waitingFor: null })).toEqual([]);
     expect(named({ lastArrivedMs, startedMs: 99 * hourMs + 1 })).toEqual([]);
     expect(named({ lastArrivedMs, startedMs: 99 * hourMs })).toHaveLength(2);
   });
@@ -48,7 +51,7 @@ describe('a point that should have sent by now', () => {
     const later = {
       nowMs: 101 * hourMs,
       startedMs: 101 * hourMs,
-      queueEmpty: false,
+      waitingFor: null,
       lastArrivedMs: new Map([['blower-1/de-h', 101 * hourMs]]),
       earlier: book.states,
     };

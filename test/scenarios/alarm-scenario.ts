@@ -119,7 +119,7 @@ export class AlarmScenario {
           lastArrivedMs: this.#arrivedMs,
           nowMs: this.#nowMs,
           startedMs: 0,
-          queueEmpty: true,
+          waitingFor: new Set(),
           dropFolderReadable: true,
           earlier: this.#book.states,
         }),
