@@ -1,0 +1,1 @@
+import './effects.test.ts';

@@ -1,0 +1,1 @@
+import './delivery-random.test.ts';
