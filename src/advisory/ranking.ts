@@ -9,7 +9,7 @@ import type { LimitFacts, MachineFacts, PastLevel, PointFacts } from './facts.ts
 export interface Change {
   /** Median of the last 24 h over median of the 7 days before; 1.2 is a fifth more. */
   readonly ratio: number;
-  /** Ratio above which a change exceeds the series' own spread: exp(3 x 1.4826 MAD of the log levels of the 7 days). */
+  /** Ratio above which a change exceeds the series' own spread: exp(3 x 1.4826 MAD) of the 7 days' log levels about their line. */
   readonly ordinaryRatio: number;
   /** Changed by more than the spread, towards the worse: up, or down where only a lower limit guards the band. */
   readonly worse: boolean;
@@ -18,8 +18,8 @@ export interface Change {
 const dayMs = 86_400_000;
 /** With fewer levels in the week a median absolute deviation says nothing of the spread. */
 const fewestBefore = 5;
-/** A series that does not vary at all (a test signal) has no spread; less than this would not show in three figures. */
-const leastRatio = 1.01;
+/** A very even series would call the smallest step worse; less than a tenth is within what load and heat do. */
+const leastRatio = 1.1;
 
 /**
  * Change of one series in one operating condition. `levels`: SI r.m.s. with used times, in any order; those at or
@@ -32,18 +32,38 @@ export function changeOf(
   guarded: 'upper' | 'lower' = 'upper',
 ): Change | null {
   const day: number[] = [];
-  const week: number[] = [];
+  const week: PastLevel[] = [];
   for (const { usedMs, level } of levels) {
     const age = nowMs - usedMs;
     if (!(level > 0) || age < 0 || age >= 8 * dayMs) continue;
-    (age < dayMs ? day : week).push(level);
+    if (age < dayMs) day.push(level);
+    else week.push({ usedMs, level });
   }
   if (day.length === 0 || week.length < fewestBefore) return null;
-  const ratio = median(day) / median(week);
-  const spread = medianAbsoluteDeviation(week.map(Math.log));
+  const ratio = median(day) / median(week.map(({ level }) => level));
+  const spread = medianAbsoluteDeviation(aboutTheirLine(week));
   const ordinaryRatio = Math.max(leastRatio, Math.exp(3 * madToDeviation * spread));
   const towardsWorse = guarded === 'upper' ? ratio : 1 / ratio;
   return { ratio, ordinaryRatio, worse: towardsWorse > ordinaryRatio };
+}
+
+/**
+ * Log levels less their straight line, whose slope is the median over pairs half the series apart (Theil 1950, the
+ * incomplete method). Without that a steady rise would hide itself: a week that grows evenly by G has a MAD of G/4, hence a
+ * bound of 1.1 G, while the next day's median lies 0.6 G over the week's.
+ */
+function aboutTheirLine(week: readonly PastLevel[]): number[] {
+  const inOrder = [...week].sort((a, b) => a.usedMs - b.usedMs);
+  const logs = inOrder.map(({ level }) => Math.log(level));
+  const days = inOrder.map(({ usedMs }) => (usedMs - (inOrder[0] as PastLevel).usedMs) / dayMs);
+  const half = inOrder.length >> 1;
+  const slopes: number[] = [];
+  for (let i = 0; i + half < logs.length; i++) {
+    const apart = (days[i + half] as number) - (days[i] as number);
+    if (apart > 0) slopes.push(((logs[i + half] as number) - (logs[i] as number)) / apart);
+  }
+  const slope = slopes.length === 0 ? 0 : median(slopes);
+  return logs.map((log, i) => log - slope * (days[i] as number));
 }
 
 /** The limit that speaks first on a side: alert, or danger where there is no alert. SI r.m.s. */

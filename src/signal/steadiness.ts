@@ -62,6 +62,12 @@ export function steadiness(
   };
 }
 
+/**
+ * Half range of an even drift of the floor's power that is let pass beside what chance makes: with thousands of lines the
+ * 99.9 % point alone would flag a drift of a few percent, which pumps, fans and reciprocating machines always have.
+ */
+const leastSpread = 0.2;
+
 function floorSpread(segments: SegmentSpectra, search: PeakSearch, settings: PeakSettings): number | null {
   const marked = floorLines(search, settings);
   const lines = marked.reduce((sum, mark) => sum + mark, 0);
@@ -85,7 +91,7 @@ function floorSpread(segments: SegmentSpectra, search: PeakSearch, settings: Pea
   const limit =
     floorSpreadLimit({ ...settings, segmentsPerGroup: segments.segmentsPerGroup, groups }) *
     levelVariance(settings.window, settings.segmentSamples, marked);
-  return Math.sqrt(variance / limit);
+  return Math.sqrt(variance / (limit + leastSpread ** 2 / 3));
 }
 
 /** Marks the lines where noise alone counts: outside peaks, and where these leak less than a twentieth of the floor. */

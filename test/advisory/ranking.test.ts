@@ -8,6 +8,7 @@ import {
   type Ranked,
   shareOfAlert,
 } from '../../src/advisory/ranking.ts';
+import { seededNoise } from '../../src/cli/demo/noise.ts';
 import { blower, day, driveH, driveV, fan, hour, morning, overallLimit, pump } from './sample-facts.ts';
 
 const week = (levels: readonly number[]) =>
@@ -23,12 +24,24 @@ describe('change of a band', () => {
   });
 
   it('is worse only beyond 3 x 1.4826 MAD of the log levels of the week', () => {
-    // Log levels 0, ±0.1, ±0.2: their median absolute deviation is 0.1.
-    const before = week([-0.2, -0.1, 0, 0.1, 0.2].map(Math.exp));
+    // Log levels without a slope: their median is 0.1, their median absolute deviation 0.1.
+    const before = week([0.1, -0.2, 0.2, 0.1, -0.2, 0.2].map(Math.exp));
+    const middle = Math.exp(0.1);
     const edge = Math.exp(3 * 1.4826 * 0.1);
-    expect(changeOf([...before, ...lastDay(edge * 0.999)], morning)?.worse).toBe(false);
-    expect(changeOf([...before, ...lastDay(edge * 1.001)], morning)?.worse).toBe(true);
-    expect(changeOf([...before, ...lastDay(1)], morning)?.ordinaryRatio).toBeCloseTo(edge, 12);
+    expect(changeOf([...before, ...lastDay(middle * edge * 0.999)], morning)?.worse).toBe(false);
+    expect(changeOf([...before, ...lastDay(middle * edge * 1.001)], morning)?.worse).toBe(true);
+    expect(changeOf([...before, ...lastDay(middle)], morning)?.ordinaryRatio).toBeCloseTo(edge, 12);
+  });
+
+  it('sees a steady rise: a level that doubles in ten days is worse, one that only scatters is not', () => {
+    const noise = seededNoise(20261201);
+    const hourly = (growthADay: number) =>
+      Array.from({ length: 8 * 24 }, (_, h) => ({
+        usedMs: morning - h * 3_600_000,
+        level: Math.exp((-growthADay * h) / 24 + 0.05 * noise.gaussian()),
+      }));
+    expect(changeOf(hourly(Math.LN2 / 10), morning)?.worse).toBe(true);
+    expect(changeOf(hourly(0), morning)?.worse).toBe(false);
   });
 
   it('of a band that a lower limit guards is worse when it falls', () => {

@@ -65,7 +65,7 @@ export async function timeLapse(
 }
 
 /** Recordings of the night before the last morning. */
-const lastNightSteps = 2;
+const lastNightSteps = 3;
 
 /** A recording lies in the folder ten seconds after it began. */
 const recordedAfterMs = 10_000;
