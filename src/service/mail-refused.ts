@@ -1,12 +1,14 @@
 import { subjectKey } from '../detection/alarm.ts';
 import type { TroubleSubject } from '../detection/trouble.ts';
+import { standingAlarms } from '../store/alarms.ts';
 import type { DueDelivery } from '../store/deliveries.ts';
-import { appendJournal } from '../store/journal.ts';
-import type { Writer } from '../store/lent-connection.ts';
+import { appendJournal, readJournal } from '../store/journal.ts';
+import type { Reader, Writer } from '../store/lent-connection.ts';
 import { type ChangeContext, saveAlarmChange } from '../store/save-alarm.ts';
-import { refusedRecipients } from '../store/waiting-mail.ts';
+import { lastTold, refusedRecipients, waitAgain } from '../store/waiting-mail.ts';
 import { lookAtTrouble, statesOf } from './evaluate.ts';
 import type { SiteView } from './site-view.ts';
+import { stillStands } from './standing-facts.ts';
 
 /**
  * The site's trouble 'mail refused': a server refused a mail for good. It stands until every recipient of the site
@@ -20,6 +22,12 @@ export const mailRefusedSubject: TroubleSubject = {
   pointId: null,
   source: null,
 };
+
+const dayMs = 86_400_000;
+/** What was refused longer ago is no news; the summary lists what stands. */
+const tellAgainWithinMs = 14 * dayMs;
+/** A mail that is refused for what is in it would go back and forth for ever. */
+const mostRefusals = 3;
 
 /** Part of the transaction that stores the refusal. Each refusal has its line in the journal. */
 export async function noteRefused(
@@ -50,7 +58,10 @@ export async function noteRefused(
   if (change !== null) await saveAlarmChange(writer, change, contextOf(view, wallMs));
 }
 
-/** Part of the transaction that stores an acceptance. */
+/**
+ * Part of the transaction that stores an acceptance. Where it ends the trouble, the mails refused meanwhile about what
+ * still stands are due again: nobody may have heard of it.
+ */
 export async function noteAccepted(writer: Writer, view: SiteView, wallMs: number): Promise<void> {
   const state = (await statesOf(writer, [mailRefusedSubject])).get(subjectKey(mailRefusedSubject));
   if (state?.condition !== 'trouble') return;
@@ -59,7 +70,37 @@ export async function noteAccepted(writer: Writer, view: SiteView, wallMs: numbe
   if ((await refusedRecipients(writer, [...new Set(recipients)])).length > 0) return;
   const look = { present: false, usedMs: wallMs, reason: {} };
   const change = await lookAtTrouble(writer, mailRefusedSubject, look);
-  if (change !== null) await saveAlarmChange(writer, change, contextOf(view, wallMs));
+  if (change === null) return;
+  await saveAlarmChange(writer, change, contextOf(view, wallMs));
+  const again = await toTellAgain(writer, view, wallMs);
+  if (again.length > 0) await waitAgain(writer, again, wallMs);
+}
+
+/** Mails by Message-ID. Of one alarm the newest to each recipient: where that was accepted, he has been told. */
+async function toTellAgain(reader: Reader, view: SiteView, wallMs: number): Promise<string[]> {
+  const recipients = new Set(view.site.mail?.to.map(({ address }) => address));
+  const refusals = await refusalsByMail(reader);
+  const again = new Set<string>();
+  for (const standing of await standingAlarms(reader)) {
+    if (!stillStands(standing)) continue;
+    for (const { recipient, mailId, state, lastTryMs } of await lastTold(reader, standing.life.number)) {
+      const isRecent = lastTryMs !== null && wallMs - lastTryMs < tellAgainWithinMs;
+      const wasRefused = state === 'failed' && (refusals.get(mailId) ?? 0) < mostRefusals;
+      if (wasRefused && isRecent && recipients.has(recipient)) again.add(mailId);
+    }
+  }
+  return [...again];
+}
+
+/** How often each mail was refused, by the newest notes in the journal. */
+async function refusalsByMail(reader: Reader): Promise<Map<string, number>> {
+  const counts = new Map<string, number>();
+  const notes = await readJournal(reader, { key: subjectKey(mailRefusedSubject), limit: 5_000 });
+  for (const { event, reason } of notes) {
+    if (event !== 'note' || typeof reason.mailId !== 'string') continue;
+    counts.set(reason.mailId, (counts.get(reason.mailId) ?? 0) + 1);
+  }
+  return counts;
 }
 
 function contextOf(view: SiteView, wallMs: number): ChangeContext {

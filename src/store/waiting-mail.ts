@@ -60,6 +60,42 @@ export async function refusedRecipients(reader: Reader, recipients: readonly str
   return refused;
 }
 
+export interface LastTold {
+  readonly recipient: string;
+  readonly mailId: string;
+  readonly state: string;
+  readonly lastTryMs: number | null;
+}
+
+/** Of each recipient the newest alarm mail that tells of the life of that number. */
+export async function lastTold(reader: Reader, number: number): Promise<LastTold[]> {
+  const rows = await reader
+    .selectFrom('to_tell')
+    .innerJoin('messages', 'messages.id', 'to_tell.message_id')
+    .innerJoin('deliveries', 'deliveries.message_id', 'messages.id')
+    .select(['recipient', 'mail_id', 'state', 'last_try_ms'])
+    .where('to_tell.number', '=', number)
+    .where('messages.kind', '=', 'alarm')
+    .orderBy('messages.id')
+    .execute();
+  const newest = new Map<string, LastTold>();
+  for (const row of rows) {
+    const { recipient, state } = row;
+    newest.set(recipient, { recipient, mailId: row.mail_id, state, lastTryMs: row.last_try_ms });
+  }
+  return [...newest.values()];
+}
+
+/** Refused deliveries wait again, with the same bytes and Message-ID. */
+export async function waitAgain(writer: Writer, mailIds: readonly string[], dueMs: number): Promise<void> {
+  await writer
+    .updateTable('deliveries')
+    .set({ state: 'waiting', due_ms: dueMs })
+    .where('mail_id', 'in', mailIds)
+    .where('state', '=', 'failed')
+    .execute();
+}
+
 /** When a server last took a mail; null: never. */
 export async function lastAcceptedMs(reader: Reader): Promise<number | null> {
   const row = await reader

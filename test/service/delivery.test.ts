@@ -81,9 +81,52 @@ describe('a mail', () => {
     server.atRecipient = () => undefined;
     await b.record('blower/nde', { overall: 3 });
     await b.pass(hourMs, 5 * minuteMs);
-    expect(server.to(ben).length).toBe(1);
+    // Told of what is new, then of what he never heard of and still stands.
+    expect(server.to(ben).map(({ text }) => /blower, n?de/.exec(text ?? '')?.[0])).toEqual([
+      'blower, nde',
+      'blower, de',
+    ]);
     const after = await b.ledger.read((reader) => readJournal(reader, { limit: 1 }));
     expect(after[0]).toMatchObject({ event: 'returned', key: 'trouble:mail-refused:site' });
+  });
+
+  it('refused over a weekend is sent when the server takes mail again, if what it tells of still stands', async () => {
+    const tree = { blower: { de: ['overall'] }, pump: { de: ['overall'] }, fan: { de: ['overall'] } };
+    const { server, bench: b } = await bench({ tree });
+    server.atData = () => 554;
+    await b.record('blower/de', { overall: 6 });
+    await b.record('pump/de', { overall: 6 });
+    await b.pass(hourMs, 5 * minuteMs);
+    const refused = await b.ledger.read((reader) => deliveriesOf(reader, 1));
+    await b.pass(2 * dayMs, 30 * minuteMs);
+    await b.record('pump/de', { overall: 1 });
+    await b.command(2, 'acknowledge');
+    expect(server.got).toEqual([]);
+    server.atData = () => undefined;
+    await b.record('fan/de', { overall: 6 });
+    await b.pass(hourMs, 5 * minuteMs);
+    expect(server.to(ann).map(({ subject }) => subject)).toEqual([
+      'DANGER 4: fan, de, overall 6 mm/s r.m.s.',
+      'DANGER 1: blower, de, overall 6 mm/s r.m.s.',
+    ]);
+    expect(server.to(ann)[1]?.messageId).toBe(refused[0]?.mailId);
+    expect(await counts(b)).toMatchObject({ waiting: 0 });
+  });
+
+  it('refused for what is in it goes out three times, however often other mails are taken', async () => {
+    const { server, bench: b } = await bench();
+    let refusals = 0;
+    server.atData = () => {
+      if (server.got.length < refusals) return undefined;
+      refusals++;
+      return 554;
+    };
+    await b.record('blower/de', { overall: 6 });
+    await b.pass(dayMs, 5 * minuteMs);
+    const tries = await b.ledger.read((reader) => deliveriesOf(reader, 1));
+    expect(tries.map(({ state, tries: count }) => [state, count])).toEqual([['failed', 3]]);
+    expect(server.got.length).toBe(3);
+    expect(await counts(b)).toMatchObject({ waiting: 0 });
   });
 
   it('that all servers refuse for good is not tried again', async () => {
