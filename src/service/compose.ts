@@ -7,7 +7,7 @@ import { closeThread, type Thread } from '../store/threads.ts';
 import { sortEvents } from './catch-up.ts';
 import { type Draft, type DraftFrom, draftAlarmMail, draftCatchUp } from './draft.ts';
 import { type MailTools, wallMsOf } from './mail-tools.ts';
-import { deliveriesFor, eventsAtOnce, storeDraft } from './store-draft.ts';
+import { deliveriesFor, storeDraft } from './store-draft.ts';
 
 /**
  * From events due to be told to messages in the outbox. Read the facts in one reading of the ledger, make words and
@@ -35,6 +35,8 @@ interface Look {
   readonly nextDueMs: number | null;
 }
 
+/** Events that are looked at in one go; what is beyond them waits its turn. */
+const eventsAtOnce = 500;
 /** How often a draft is made again because the ledger moved on under it, before it is left to the next round. */
 const mostTries = 5;
 
@@ -72,9 +74,7 @@ async function lookForDue(
   nowMs: number,
 ): Promise<Look> {
   const backlogRuns = !how.flush && (tools.backlogRuns?.() ?? false);
-  const events = (await untoldEvents(reader, eventsAtOnce)).filter(
-    ({ fromBacklog }) => !(fromBacklog && backlogRuns),
-  );
+  const events = await untoldEvents(reader, eventsAtOnce, { withoutBacklog: backlogRuns });
   if (events.length === 0) return { draft: null, heldBack: false, nextDueMs: null };
   const times = how.flush ? { gatherMs: 0, gatherDangerMs: 0 } : mail;
   const sorted = await sortEvents(reader, events, nowMs, mail.catchUpAfterMs);

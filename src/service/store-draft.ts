@@ -1,12 +1,9 @@
 import { mailBytes } from '../advisory/mail-bytes.ts';
 import { isWorse, mailId } from '../advisory/outbox.ts';
 import type { Writer } from '../store/lent-connection.ts';
-import { insertMessage, type NewDelivery, untoldEvents } from '../store/messages.ts';
+import { areUntold, insertMessage, type NewDelivery } from '../store/messages.ts';
 import { changeThread, closeThread, openThread, openThreadOf } from '../store/threads.ts';
 import type { Draft, DraftThread } from './draft.ts';
-
-/** Events that are looked at in one go; what is beyond them waits its turn. */
-export const eventsAtOnce = 500;
 
 /**
  * The bytes of a draft's mails. The mail library builds them over several turns of the event loop, so this is done
@@ -42,8 +39,7 @@ export async function storeDraft(
   deliveries: readonly NewDelivery[],
   nowMs: number,
 ): Promise<boolean> {
-  const untold = new Set((await untoldEvents(writer, eventsAtOnce)).map(({ id }) => id));
-  if (!draft.tells.every((id) => untold.has(id))) return false;
+  if (!(await areUntold(writer, draft.tells))) return false;
   const threadId = draft.thread === null ? null : await keepThread(writer, draft, draft.thread, nowMs);
   if (threadId === 'changed') return false;
   const { kind, identity, priority, groupKey, subject, tells } = draft;

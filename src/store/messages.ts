@@ -50,16 +50,34 @@ export interface StoredMessage extends Omit<NewMessage, 'deliveries' | 'tells'> 
   readonly supersededBy: number | null;
 }
 
-/** Events not yet in any message, oldest first. */
-export async function untoldEvents(reader: Reader, limit: number): Promise<UntoldEvent[]> {
-  const rows = await reader
-    .selectFrom('to_tell')
-    .selectAll()
-    .where('message_id', 'is', null)
+/**
+ * At most `limit` events not yet in any message, oldest first; where there are more, danger before the rest, then the
+ * oldest. `withoutBacklog`: what a backlog raised does not count.
+ */
+export async function untoldEvents(
+  reader: Reader,
+  limit: number,
+  { withoutBacklog = false } = {},
+): Promise<UntoldEvent[]> {
+  const untold = reader.selectFrom('to_tell').selectAll().where('message_id', 'is', null);
+  const rows = await (withoutBacklog ? untold.where('from_backlog', '=', 0) : untold)
+    .orderBy(({ case: when }) => when().when('severity', '=', 'danger').then(0).else(1).end())
     .orderBy('id')
     .limit(limit)
     .execute();
-  return rows.map(untoldEvent);
+  return rows.map(untoldEvent).sort((a, b) => a.id - b.id);
+}
+
+/** Whether none of these events (UntoldEvent.id) is in a message. */
+export async function areUntold(reader: Reader, ids: readonly number[]): Promise<boolean> {
+  if (ids.length === 0) return true;
+  const row = await reader
+    .selectFrom('to_tell')
+    .select(({ fn }) => fn.countAll<number>().as('count'))
+    .where('id', 'in', ids)
+    .where('message_id', 'is', null)
+    .executeTakeFirstOrThrow();
+  return row.count === new Set(ids).size;
 }
 
 /** Events that a message tells, oldest first. */

@@ -4,6 +4,8 @@
  */
 import type { ParsedMail } from 'mailparser';
 import { describe, expect, it } from 'vitest';
+import { lookAtTrouble, sourceTrouble } from '../../src/service/evaluate.ts';
+import { saveAlarmChange } from '../../src/store/save-alarm.ts';
 import { ann, ben, dayMs, hourMs, MailBench, minuteMs } from './mail-bench.ts';
 import { MailServerOnLoopback } from './mail-server.ts';
 
@@ -133,6 +135,24 @@ describe('the mails of an alarm', () => {
 });
 
 describe('a backlog', () => {
+  it.each([true, false])(
+    'of more than can be looked at in one go holds up no danger (it runs: %s)',
+    async (runs) => {
+      const { server, bench: b } = await bench({ to: [{ address: ann }] });
+      b.backlogRuns = runs;
+      await b.ledger.transact(async (writer) => {
+        for (let kind = 0; kind < 600; kind++) {
+          const look = { present: true, usedMs: b.clock.wallMs(), reason: {} };
+          const change = await lookAtTrouble(writer, sourceTrouble('unassigned', `kind ${kind}`), look);
+          if (change !== null) await saveAlarmChange(writer, change, b.context(true));
+        }
+      });
+      await b.record('blower/de', { overall: 6 });
+      await b.pass(10_000);
+      expect(subjects(server.to(ann))).toEqual(['DANGER 601: blower, de, overall 6 mm/s r.m.s.']);
+    },
+  );
+
   it('mails what still stands, and tells what came and went in one mail for all machines', async () => {
     const { server, bench: b } = await bench({
       tree: { blower: { de: ['overall'] }, pump: { de: ['overall'] }, fan: { de: ['overall'] } },
