@@ -7,6 +7,7 @@ import { closeThread, type Thread } from '../store/threads.ts';
 import { sortEvents } from './catch-up.ts';
 import { type Draft, type DraftFrom, draftAlarmMail, draftCatchUp } from './draft.ts';
 import { type MailTools, wallMsOf } from './mail-tools.ts';
+import { isLedgersOwn, plainDraft, stackOf } from './plain-draft.ts';
 import { deliveriesFor, storeDraft } from './store-draft.ts';
 
 /**
@@ -31,6 +32,8 @@ export interface Composed {
 
 interface Look {
   readonly draft: Draft | null;
+  /** The same events in plain words, should the draft's bytes fail. */
+  readonly plain?: (error: unknown) => Draft;
   readonly heldBack: boolean;
   readonly nextDueMs: number | null;
 }
@@ -46,15 +49,26 @@ export async function composeDue(tools: MailTools, mail: MailSettings, how: Comp
     const nowMs = wallMsOf(tools.clock);
     const look = await tools.ledger.read((reader) => lookForDue(reader, tools, mail, how, nowMs));
     if (look.draft === null) return { messages, heldBack: look.heldBack, nextDueMs: look.nextDueMs };
-    if (await store(tools, mail, look.draft, nowMs)) messages++;
+    if (await store(tools, mail, look, look.draft, nowMs)) messages++;
     else failed++;
   }
   tools.complaints.say('compose', 'the ledger kept changing while a message was composed; tried again soon');
   return { messages, heldBack: false, nextDueMs: wallMsOf(tools.clock) };
 }
 
-async function store(tools: MailTools, mail: MailSettings, draft: Draft, nowMs: number): Promise<boolean> {
-  const deliveries = await deliveriesFor(draft, mail.from, nowMs);
+async function store(
+  tools: MailTools,
+  mail: MailSettings,
+  { plain }: Look,
+  full: Draft,
+  nowMs: number,
+): Promise<boolean> {
+  let draft = full;
+  const deliveries = await deliveriesFor(full, mail.from, nowMs).catch((error: unknown) => {
+    if (plain === undefined) throw error;
+    draft = plain(error);
+    return deliveriesFor(draft, mail.from, nowMs);
+  });
   const stored = await tools.ledger.transact((writer) => storeDraft(writer, draft, deliveries, nowMs));
   if (!stored) return false;
   tools.step('delivery: message stored');
@@ -83,17 +97,45 @@ async function lookForDue(
   const first = due.find(({ severity }) => severity === 'danger' || !how.onlyDanger);
   if (first !== undefined) {
     const told = first.events.map(({ event }) => event);
-    const draft = await draftAlarmMail(reader, from, told[0]?.machineId ?? null, told);
-    return { draft, heldBack: false, nextDueMs: nowMs };
+    const machineId = told[0]?.machineId ?? null;
+    const drafted = await draftOrPlain(tools, from, told, () =>
+      draftAlarmMail(reader, from, machineId, told),
+    );
+    return { ...drafted, heldBack: false, nextDueMs: nowMs };
   }
   const passed = [sorted.backlog, sorted.waitedLong].find(
     (group) => groupsDue(group.map(together), nowMs, times).length > 0,
   );
   const heldBack = how.onlyDanger && (due.length > 0 || passed !== undefined);
-  if (passed !== undefined && !heldBack)
-    return { draft: await draftCatchUp(reader, from, passed), heldBack, nextDueMs: nowMs };
+  if (passed !== undefined && !heldBack) {
+    const drafted = await draftOrPlain(tools, from, passed, () => draftCatchUp(reader, from, passed));
+    return { ...drafted, heldBack, nextDueMs: nowMs };
+  }
   const waiting = [...sorted.toTell.map(grouped), ...[...sorted.backlog, ...sorted.waitedLong].map(together)];
   return { draft: null, heldBack, nextDueMs: nextGroupDueMs(waiting, times) };
+}
+
+/** One message that cannot be composed is told in plain words and logged, and keeps no other. */
+async function draftOrPlain(
+  tools: MailTools,
+  from: DraftFrom,
+  events: readonly UntoldEvent[],
+  full: () => Promise<Draft>,
+): Promise<Required<Pick<Look, 'draft' | 'plain'>>> {
+  const plain = (error: unknown) => {
+    const numbers = [...new Set(events.map(({ number }) => number))];
+    tools.log.error(
+      { numbers, error: stackOf(error) },
+      'a message could not be composed; sent in plain words',
+    );
+    return plainDraft(from, events, error);
+  };
+  try {
+    return { draft: await full(), plain };
+  } catch (error) {
+    if (isLedgersOwn(error)) throw error;
+    return { draft: plain(error), plain };
+  }
 }
 
 /** Events of one machine travel together. */

@@ -14,6 +14,7 @@ import { keepSummary, lastSummary, readSummary } from '../store/summaries.ts';
 import { ledgerBytes, noteLedgerSize } from './disk-room.ts';
 import type { Draft } from './draft.ts';
 import { type MailTools, wallMsOf } from './mail-tools.ts';
+import { type PlainSummary, plainSummary } from './plain-summary.ts';
 import { dailyDue } from './schedule.ts';
 import type { SiteView } from './site-view.ts';
 import { deliveriesFor } from './store-draft.ts';
@@ -57,19 +58,37 @@ export async function morning(tools: MailTools): Promise<string | null> {
     }
     return null;
   }
-  const now = await summaryNow({ ledger, view, nowMs, upSinceMs: tools.startedMs });
-  if (!(await store(tools, view, date, now, nowMs))) return null;
+  const question = { ledger, view, nowMs, upSinceMs: tools.startedMs };
+  const made = await summaryOrPlain(tools, view, question, date);
+  if (made === null) return null;
   tools.step('summary: stored');
-  tools.log.info({ date, subject: now.mail.subject }, 'summary written');
-  writeFiles(tools, view, date, now.html);
+  tools.log.info({ date, subject: made.mail.subject }, 'summary written');
+  writeFiles(tools, view, date, made.html);
   return date;
+}
+
+/** Makes and stores it; null where the date has one already. One that cannot be made or stored is a plain list. */
+async function summaryOrPlain(
+  tools: MailTools,
+  view: SiteView,
+  question: SummaryQuestion,
+  date: string,
+): Promise<SummaryNow | PlainSummary | null> {
+  const { nowMs } = question;
+  try {
+    const now = await summaryNow(question);
+    return (await store(tools, view, date, now, nowMs)) ? now : null;
+  } catch (error) {
+    const plain = await plainSummary(tools, view, error);
+    return (await store(tools, view, date, plain, nowMs)) ? plain : null;
+  }
 }
 
 async function store(
   tools: MailTools,
   view: SiteView,
   date: string,
-  now: SummaryNow,
+  now: SummaryNow | PlainSummary,
   nowMs: number,
 ): Promise<boolean> {
   const { ledger } = tools;
@@ -86,6 +105,7 @@ async function store(
     thread: null,
   };
   const deliveries = mail === null ? [] : await deliveriesFor(draft, mail.from, nowMs);
+  const { facts } = now;
   const bytes = ledgerBytes(ledger);
   return ledger.transact(async (writer) => {
     if ((await readSummary(writer, date)) !== null) return false;
@@ -95,9 +115,9 @@ async function store(
       createdMs: nowMs,
       messageId,
       html: now.mail.html,
-      facts: JSON.stringify(morningOf(now.facts)),
+      facts: JSON.stringify(facts === null ? null : morningOf(facts)),
     });
-    await acknowledgeTold(writer, view, now.facts, nowMs);
+    if (facts !== null) await acknowledgeTold(writer, view, facts, nowMs);
     await noteLedgerSize(writer, { ms: nowMs, bytes });
     return true;
   });
