@@ -96,7 +96,14 @@ function troubleOf(
   });
 }
 
-/** A name with its digits folded, so that a logger's next file of the same kind is no news. */
+const uuid = /[0-9a-f]{8}(?:-[0-9a-f]{4}){3}-[0-9a-f]{12}/gi;
+/** Eight hex digits or more that are no part of a longer word; a word of letters alone is none. */
+const hexRun = /(?<![a-z0-9])(?=[a-f]*[0-9])[0-9a-f]{8,}(?![a-z0-9])/gi;
+
+/** A name with its digits, UUIDs and hex numbers folded, so that a logger's next file of the same kind is no news. */
 export function namePattern(path: string): string {
-  return path.replace(/[0-9]+/g, '#');
+  return path
+    .replace(uuid, '#')
+    .replace(hexRun, '#')
+    .replace(/[0-9]+/g, '#');
 }
