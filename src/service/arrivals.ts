@@ -35,6 +35,8 @@ export interface ArrivalsTools {
   readonly header: (task: HeaderTask) => Promise<HeaderAnswer>;
   /** True where `after_reading: keep` left a file that is in the ledger already. */
   readonly isKept: (file: SeenFile) => boolean;
+  /** The service was asked to stop: the others are looked into by the next run. */
+  readonly isStopping: () => boolean;
 }
 
 /** Files that are looked into at a time; the worker pool bounds what runs at once. */
@@ -63,7 +65,7 @@ export class Arrivals {
     const paired = new Set(pairs.map(([, { path }]) => path));
     const verdicts: Verdict[] = [];
     const mains = files.filter(({ path }) => !paired.has(path) && !kept.has(path));
-    for (let n = 0; n < mains.length; n += lookedAtOnce) {
+    for (let n = 0; n < mains.length && !this.#tools.isStopping(); n += lookedAtOnce) {
       const part = mains.slice(n, n + lookedAtOnce);
       verdicts.push(
         ...(await Promise.all(part.map((file) => this.#one(view, file, sidecarOf.get(file.path) ?? null)))),

@@ -1,4 +1,5 @@
 import type { FileLook } from './file-source.ts';
+import type { MeasureAnswer } from './recording-task.ts';
 import type { ReadyRecording } from './verdicts.ts';
 
 /** In which parts ready recordings are analysed and decided. */
@@ -54,4 +55,36 @@ export function newestBySource(ready: readonly ReadyRecording[], startOf: StartO
   for (const one of ready)
     newest.set(one.source, Math.max(startOf(one), newest.get(one.source) ?? Number.NEGATIVE_INFINITY));
   return newest;
+}
+
+/** The order of decisions; among equals the hash decides, once it is known. */
+export function inOrder(ready: readonly ReadyRecording[], startOf: StartOf): ReadyRecording[] {
+  return [...ready].sort(
+    (a, b) => startOf(a) - startOf(b) || compare(a.source, b.source) || compare(a.path, b.path),
+  );
+}
+
+function compare(a: string, b: string): number {
+  return a < b ? -1 : a > b ? 1 : 0;
+}
+
+/** What the analysis of a recording says. */
+export type Analysed = {
+  readonly ready: ReadyRecording;
+  readonly answer:
+    | MeasureAnswer
+    | { readonly kind: 'stopped'; readonly reason: string }
+    | { readonly kind: 'no-worker'; readonly reason: string };
+};
+
+export function byHash(a: Analysed, b: Analysed): number {
+  const hash = ({ answer }: Analysed) => ('sha256' in answer ? answer.sha256 : '');
+  return hash(a) < hash(b) ? -1 : hash(a) > hash(b) ? 1 : 0;
+}
+
+/** `left`: could not be decided on for the ledger's sake. `notBegun`: the time of the round was up before. */
+export interface Taken {
+  readonly decided: number;
+  readonly left: number;
+  readonly notBegun: readonly ReadyRecording[];
 }

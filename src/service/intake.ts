@@ -6,7 +6,8 @@ import type { WorkerPool } from '../manipulation/pool.ts';
 import type { Ledger } from '../store/ledger.ts';
 import { LedgerError } from '../store/ledger-error.ts';
 import { Arrivals } from './arrivals.ts';
-import { Backlog } from './backlog.ts';
+import { Backlog, isOld } from './backlog.ts';
+import { inOrder } from './batches.ts';
 import type { BeyondLedger } from './beyond-ledger.ts';
 import type { Clock } from './clock.ts';
 import { FileAway } from './file-away.ts';
@@ -15,7 +16,7 @@ import type { KeptFiles } from './kept-files.ts';
 import type { Complaints, Logger } from './log.ts';
 import { PutAside } from './put-aside.ts';
 import type { HeaderAnswer, HeaderTask, RecordingAnswer, RecordingTask } from './recording-task.ts';
-import { spansOf, startsOf } from './recording-time.ts';
+import { startsOf } from './recording-time.ts';
 import type { SiteView } from './site-view.ts';
 import type { Step } from './steps.ts';
 import { Strangers } from './strangers.ts';
@@ -36,6 +37,7 @@ import type { ReadyRecording, Unassigned } from './verdicts.ts';
  * 4. A file whose attempt was noted and not ended is analysed alone at the next start; the second time it is
  *    quarantined.
  * 5. When the ledger cannot be written, files stay where they are, and the round says so and ends.
+ *    A round takes for a while only: then the next one sweeps anew, and goes on with what was not begun.
  * 6. What leaves the drop folder is first noted beside the ledger (filing-log.ts). A ledger that was put back from a
  *    backup lacks what was noted since: that is taken again from the archive, in the old order and with the old times of
  *    arrival, before anything newer (take-archived.ts). What people did since is named, never done again (acts-log.ts).
@@ -71,6 +73,8 @@ export interface Round {
 
 const crowded = `more than ${usualBounds.mostFiles} files lie in the drop folder; the others are seen when these are gone`;
 
+const nothing = { taken: 0, setAside: 0, waiting: 0, waitingFor: null, unassigned: [], unfiled: 0 };
+
 /** How long until files that could not be taken for the ledger's sake are tried again. */
 const retryMs = 5_000;
 
@@ -84,6 +88,7 @@ export class Intake {
   readonly #strangers: Strangers;
   readonly #archived: TakeArchived;
   #backlogRuns = false;
+  #isStopping = false;
 
   constructor(tools: IntakeTools) {
     this.#tools = tools;
@@ -95,6 +100,7 @@ export class Intake {
       monotonicMs: () => clock.monotonicMs(),
       header: (task) => this.#header(task),
       isKept: (file) => this.#isKept(file),
+      isStopping: () => this.#isStopping,
     });
     this.#backlog = new Backlog(() => clock.monotonicMs());
     const { filingLog, recordings: missing } = tools.beyond ?? {
@@ -103,7 +109,13 @@ export class Intake {
     };
     this.#fileAway = new FileAway({ ...tools, filingLog, replaced: forget });
     this.#putAside = new PutAside({ ...tools, fileAway: this.#fileAway, forget });
-    this.#take = new TakeFiles({ ...tools, fileAway: this.#fileAway, putAside: this.#putAside, forget });
+    this.#take = new TakeFiles({
+      ...tools,
+      fileAway: this.#fileAway,
+      putAside: this.#putAside,
+      forget,
+      isStopping: () => this.#isStopping,
+    });
     this.#archived = new TakeArchived({ ...tools, take: this.#take, filingLog, missing });
     this.#backlogRuns = this.#archived.isOpen;
     this.#strangers = new Strangers(tools);
@@ -114,6 +126,11 @@ export class Intake {
     return this.#backlogRuns;
   }
 
+  /** The round under way ends after what it has begun; what is left lies there for the next run. */
+  askToStop(): void {
+    this.#isStopping = true;
+  }
+
   /** Before an orderly stop, between two rounds. */
   end(): Promise<void> {
     return this.#take.end();
@@ -121,13 +138,14 @@ export class Intake {
 
   /** `holdBacklog` false: what lies there is all there is (`run --once`). */
   async round(holdBacklog: boolean): Promise<Round> {
-    const nothing = { taken: 0, setAside: 0, waiting: 0, waitingFor: null, unassigned: [], unfiled: 0 };
     try {
       const unfiled = await this.#fileAway.all();
       if (this.#archived.isOpen) {
         await this.#archived.all();
-        if (this.#archived.isOpen)
-          return { ...nothing, unfiled, waiting: 1, dropFolder: 'read', againInMs: retryMs };
+        if (this.#archived.isOpen) {
+          const againInMs = this.#archived.isLetUp ? 0 : retryMs;
+          return { ...nothing, unfiled, waiting: 1, dropFolder: 'read', againInMs };
+        }
       }
       const sweep = await this.#tools.dropFolder.sweep((file) => this.#isKept(file));
       if (sweep.state !== 'read') {
@@ -155,6 +173,8 @@ export class Intake {
     }
     const look = await this.#arrivals.look(sweep.files.filter((file) => !this.#fileAway.holds(file)));
     const { view: viewOf, clock } = this.#tools;
+    if (this.#isStopping)
+      return { ...nothing, waiting: 1, unfiled: unfiledBefore, dropFolder: 'read', againInMs: 0 };
     const view = viewOf();
     const starts = startsOf(view, look.ready);
     const startOf = (ready: ReadyRecording) => starts.get(ready.path) as number;
@@ -165,8 +185,9 @@ export class Intake {
     );
     this.#backlogRuns = held.length > 0 || now.some((ready) => isOld(ready, startOf(ready)));
     const taken = await this.#take.recordings(inOrder(now, startOf), startOf);
-    this.#backlogRuns = held.length > 0;
-    const stay = taken.left > 0 ? [...held, ...now] : held;
+    const { notBegun } = taken;
+    this.#backlogRuns = held.length > 0 || notBegun.some((ready) => isOld(ready, startOf(ready)));
+    const stay = [...held, ...(taken.left > 0 ? now : notBegun)];
     const setAside = await this.#putAside.givenUp(look.givenUp);
     const wallMs = clock.wallMs();
     const { unassigned, notRead } = look;
@@ -178,11 +199,16 @@ export class Intake {
       dropFolder: 'read',
       taken: taken.decided,
       setAside: setAside + moved,
-      waiting: look.waiting + held.length + taken.left,
+      waiting: look.waiting + held.length + taken.left + notBegun.length,
       waitingFor: new Set([...look.waitingFor, ...stay.flatMap(({ points }) => points)].map(pointPath)),
       unassigned: look.unassigned,
       unfiled,
-      againInMs: soonest([look.againInMs, againInMs, taken.left + unfiled > 0 ? retryMs : null]),
+      againInMs: soonest([
+        look.againInMs,
+        againInMs,
+        taken.left + unfiled > 0 ? retryMs : null,
+        notBegun.length > 0 && taken.left === 0 ? 0 : null,
+      ]),
     };
   }
 
@@ -210,23 +236,6 @@ export class Intake {
     });
     return this.#putAside.unassigned(tooOld);
   }
-}
-
-function isOld(ready: ReadyRecording, startMs: number): boolean {
-  return ready.arrivedMs - startMs > 2 * spansOf(ready.points).intervalMs;
-}
-
-function inOrder(
-  ready: readonly ReadyRecording[],
-  startOf: (ready: ReadyRecording) => number,
-): ReadyRecording[] {
-  return [...ready].sort(
-    (a, b) => startOf(a) - startOf(b) || compare(a.source, b.source) || compare(a.path, b.path),
-  );
-}
-
-function compare(a: string, b: string): number {
-  return a < b ? -1 : a > b ? 1 : 0;
 }
 
 function soonest(times: readonly (number | null)[]): number | null {

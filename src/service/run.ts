@@ -42,6 +42,7 @@ export async function runUntil(service: Service, drop: Waker, stop: AbortSignal)
   const mail = new Waker();
   const broken = new AbortController();
   const signal = AbortSignal.any([stop, broken.signal]);
+  askToStopOn(signal, service);
   let minute = true;
   const ticks = schedule('* * * * *', () => {
     minute = true;
@@ -94,6 +95,7 @@ export interface OnceReport {
 
 /** The service's own way, ended: takes what lies there, evaluates, sends what is due. */
 export async function runOnce(service: Service, signal: AbortSignal): Promise<OnceReport> {
+  askToStopOn(signal, service);
   let taken = 0;
   let setAside = 0;
   for (;;) {
@@ -108,6 +110,12 @@ export async function runOnce(service: Service, signal: AbortSignal): Promise<On
     }
     await pauseUntil(againInMs + 1, signal);
   }
+}
+
+/** So that a round does not go on with its backlog. */
+function askToStopOn(signal: AbortSignal, service: Service): void {
+  if (signal.aborted) service.askToStop();
+  else signal.addEventListener('abort', () => service.askToStop(), { once: true });
 }
 
 function pauseUntil(ms: number, signal: AbortSignal): Promise<void> {

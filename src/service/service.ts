@@ -1,4 +1,5 @@
 import { availableParallelism } from 'node:os';
+import { extname } from 'node:path';
 import { DropFolder } from '../acquisition/drop-folder.ts';
 import { WorkerPool } from '../manipulation/pool.ts';
 import type { Ledger } from '../store/ledger.ts';
@@ -43,7 +44,7 @@ export interface ServiceOptions {
   readonly onLost?: (reason: string) => void;
 }
 
-/** The longest recordings are read in well under a minute; what takes longer hangs. */
+/** Recordings are read in well under a minute; what takes longer hangs. */
 const longestTaskMs = 300_000;
 
 export class Service {
@@ -87,15 +88,8 @@ export class Service {
     const last = await noteStarted(ledger, view, wallMs);
     const kept = await KeptFiles.load(ledger, () => clock.monotonicMs());
     const beyond = await lookBeyond(ledger);
-    const service = new Service(options, {
-      ledger,
-      view,
-      kept,
-      beyond,
-      unclean: last === 'unclean',
-      startedMs: wallMs,
-      step,
-    });
+    const unclean = last === 'unclean';
+    const service = new Service(options, { ledger, view, kept, beyond, unclean, startedMs: wallMs, step });
     await service.#mail.announce(last === 'none' ? 'first' : last, beyond);
     await noteBeyond(ledger, options.log, beyond);
     return service;
@@ -130,7 +124,7 @@ export class Service {
       hint: options.hint ?? (() => {}),
     });
     this.#pool = new WorkerPool({
-      worker: options.worker ?? workerUrl(),
+      worker: options.worker ?? workerUrl,
       threads: options.threads ?? Math.max(1, Math.min(4, availableParallelism())),
       deadlineMs: options.deadlineMs ?? longestTaskMs,
       onAllLost: (reason) => options.onLost?.(reason),
@@ -174,6 +168,11 @@ export class Service {
       this.#complaints.say('ledger', error.message);
     }
     return round;
+  }
+
+  /** A round under way ends soon, with what it has begun; rounds that follow begin nothing. */
+  askToStop(): void {
+    this.#intake.askToStop();
   }
 
   /** Composes and delivers what is due. `flush`: gathering is over, everything decided on leaves now. */
@@ -242,9 +241,4 @@ export class Service {
 }
 
 /** The worker beside this file, in the form in which this file runs (source or built). */
-function workerUrl(): URL {
-  return new URL(
-    import.meta.url.endsWith('.ts') ? './recording-worker.ts' : './recording-worker.js',
-    import.meta.url,
-  );
-}
+const workerUrl = new URL(`./recording-worker${extname(import.meta.url)}`, import.meta.url);

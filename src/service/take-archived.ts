@@ -6,6 +6,7 @@ import { placesFor } from '../acquisition/filing-place.ts';
 import type { WorkerPool } from '../manipulation/pool.ts';
 import { writeMark } from '../store/intake-marks.ts';
 import type { Ledger } from '../store/ledger.ts';
+import type { Taken } from './batches.ts';
 import { keyOf, missingOf } from './beyond-ledger.ts';
 import { type FiledLine, type FilingLog, filingsMark } from './filing-log.ts';
 import type { Logger } from './log.ts';
@@ -40,6 +41,8 @@ export class TakeArchived {
   readonly #tools: TakeArchivedTools;
   #missing: readonly FiledLine[];
   #looks = 0;
+  /** The time of the round was up: to be called again at once, not after a while. */
+  isLetUp = false;
   readonly #leftOut = new Set<string>();
 
   constructor(tools: TakeArchivedTools) {
@@ -56,11 +59,13 @@ export class TakeArchived {
   async all(): Promise<number> {
     const { ledger, log, filingLog } = this.#tools;
     let taken = 0;
+    this.isLetUp = false;
     while (this.#missing.length > 0 && this.#looks < mostLooks) {
       for (const group of together(this.#missing)) {
-        const { decided, left } = await this.#group(group);
+        const { decided, left, notBegun } = await this.#group(group);
         taken += decided;
-        if (left > 0) return taken;
+        this.isLetUp = left === 0 && notBegun.length > 0;
+        if (left + notBegun.length > 0) return taken;
       }
       this.#looks++;
       const rest = await missingOf(ledger, this.#missing);
@@ -75,7 +80,7 @@ export class TakeArchived {
     return taken;
   }
 
-  async #group(group: readonly FiledLine[]): Promise<{ readonly decided: number; readonly left: number }> {
+  async #group(group: readonly FiledLine[]): Promise<Taken> {
     const still = (await missingOf(this.#tools.ledger, group)).filter(
       (line) => !this.#leftOut.has(keyOf(line)),
     );

@@ -4,7 +4,17 @@ import type { WorkerPool } from '../manipulation/pool.ts';
 import { beginAttempt, endAttempt, unfinishedAttempts } from '../store/intake-marks.ts';
 import type { Ledger } from '../store/ledger.ts';
 import { LedgerError } from '../store/ledger-error.ts';
-import { attemptKey, batches, isSuspect, newestBySource, type StartOf, sameStart } from './batches.ts';
+import {
+  type Analysed,
+  attemptKey,
+  batches,
+  byHash,
+  isSuspect,
+  newestBySource,
+  type StartOf,
+  sameStart,
+  type Taken,
+} from './batches.ts';
 import type { Clock } from './clock.ts';
 import { decide } from './decide.ts';
 import type { FileAway } from './file-away.ts';
@@ -31,18 +41,15 @@ export interface TakeTools {
   readonly complaints: Complaints;
   readonly step: Step;
   readonly kept: KeptFiles;
+  /** The service was asked to stop: nothing more is begun. */
+  readonly isStopping: () => boolean;
 }
+
+/** So long a round takes recordings; what came meanwhile is seen by the next one. */
+const longestTakingMs = 20_000;
 
 /** Files of a batch, a worker; two batches are under way at a time. */
 const waitingPerWorker = 2;
-
-type Analysed = {
-  readonly ready: ReadyRecording;
-  readonly answer:
-    | MeasureAnswer
-    | { readonly kind: 'stopped'; readonly reason: string }
-    | { readonly kind: 'no-worker'; readonly reason: string };
-};
 
 export class TakeFiles {
   readonly #tools: TakeTools;
@@ -55,24 +62,22 @@ export class TakeFiles {
     this.#tools = tools;
   }
 
-  /** Takes recordings in their order. `left`: files that stay in the drop folder for now. */
-  async recordings(
-    ready: readonly ReadyRecording[],
-    startOf: StartOf,
-  ): Promise<{ readonly decided: number; readonly left: number }> {
-    if (ready.length === 0) return { decided: 0, left: 0 };
+  /** Takes recordings in their order, for a while. */
+  async recordings(ready: readonly ReadyRecording[], startOf: StartOf): Promise<Taken> {
+    if (ready.length === 0) return { decided: 0, left: 0, notBegun: [] };
+    const beganMs = this.#tools.clock.monotonicMs();
     const suspects = await this.#suspectsOf();
     const newest = newestBySource(ready, startOf);
     let decided = 0;
     const held = new Set<string>();
     const waiting = [...batches(ready, suspects, this.#tools.pool.threads * waitingPerWorker)];
-    let next = await this.#start(waiting.shift());
+    let next = this.#mayBegin(waiting[0], beganMs) ? await this.#start(waiting.shift()) : null;
     while (next !== null) {
       const now = next;
       // The next batch is analysed while this one is decided; a file that stopped the service is read alone.
       const ahead = waiting[0];
-      const apart = ahead === undefined || isSuspect(ahead[0], suspects) || isSuspect(now.files[0], suspects);
-      next = apart ? null : await this.#start(waiting.shift());
+      const apart = isSuspect(ahead?.[0], suspects) || isSuspect(now.files[0], suspects);
+      next = !apart && this.#mayBegin(ahead, beganMs) ? await this.#start(waiting.shift()) : null;
       for (const group of sameStart(now.files, startOf)) {
         const analysed = await Promise.all(group.map((index) => now.running[index] as Promise<Analysed>));
         for (const one of analysed.sort(byHash)) {
@@ -81,9 +86,17 @@ export class TakeFiles {
           else for (const point of one.ready.points) held.add(pointPath(point));
         }
       }
-      next ??= await this.#start(waiting.shift());
+      if (next === null && this.#mayBegin(waiting[0], beganMs)) next = await this.#start(waiting.shift());
     }
-    return { decided, left: held.size === 0 ? 0 : ready.length - decided };
+    const notBegun = waiting.flat();
+    return { decided, left: held.size === 0 ? 0 : ready.length - notBegun.length - decided, notBegun };
+  }
+
+  /** No batch is begun by a site file that is no longer in force: its points may be others. */
+  #mayBegin(batch: readonly ReadyRecording[] | undefined, beganMs: number): boolean {
+    const { clock, view, isStopping } = this.#tools;
+    if (batch === undefined || isStopping() || batch.some((ready) => ready.view !== view())) return false;
+    return clock.monotonicMs() - beganMs < longestTakingMs;
   }
 
   /** Before an orderly stop: what was analysed did not stop the service, although it could not be decided on. */
@@ -229,9 +242,4 @@ export class TakeFiles {
     });
     forget(path);
   }
-}
-
-function byHash(a: Analysed, b: Analysed): number {
-  const hash = ({ answer }: Analysed) => ('sha256' in answer ? answer.sha256 : '');
-  return hash(a) < hash(b) ? -1 : hash(a) > hash(b) ? 1 : 0;
 }
