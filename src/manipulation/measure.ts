@@ -241,11 +241,10 @@ function speedOf({ sidecar, nominalHz }: MeasureSettings): RunningSpeed | null {
 /** A flat signal has no shape: crest factor, kurtosis and skewness are given as 0, so that no NaN is stored. */
 function plainWaveform(values: WaveformValues): WaveformValues {
   const plain = (value: number) => (Number.isFinite(value) ? value : 0);
-  const { crestFactor, kurtosis, skewness } = values;
   return {
     ...values,
-    crestFactor: plain(crestFactor),
-    kurtosis: plain(kurtosis),
-    skewness: plain(skewness),
+    crestFactor: plain(values.crestFactor),
+    kurtosis: plain(values.kurtosis),
+    skewness: plain(values.skewness),
   };
 }
