@@ -143,7 +143,8 @@ export class Service {
       backlogRuns: () => this.#intake.backlogRuns,
       ...(options.mailerFor ? { mailerFor: options.mailerFor } : {}),
     });
-    this.#housekeeping = new Housekeeping({ ledger, view, log, monotonicMs }, parts.unclean);
+    const wallMs = () => clock.wallMs();
+    this.#housekeeping = new Housekeeping({ ledger, view, log, monotonicMs, wallMs }, parts.unclean);
   }
 
   get view(): SiteView {
@@ -199,7 +200,9 @@ export class Service {
       await tellWrongSiteFile(this.ledger, this.#view, problem ?? '', wallMs);
       return problem;
     }
-    this.#view = await putInForce(this.ledger, read, wallMs);
+    await putInForce(this.ledger, read, wallMs, (view) => {
+      this.#view = view;
+    });
     log.info({ config_version: read.site.configVersion }, 'site file in force');
     return null;
   }

@@ -50,14 +50,16 @@ const goneRule: AlarmRule = {
 
 /**
  * Puts a site file in force: in one transaction the ledger learns its machines, points, bands and limits, and what
- * stood for those that vanished is closed by `limit-removed`.
+ * stood for those that vanished is closed by `limit-removed`. `inForce` is called at the commit, before any other
+ * transaction begins: what is decided in one is decided by the site file that the ledger holds then.
  */
 export async function putInForce(
   ledger: Ledger,
   { site, text }: SiteFile,
   wallMs: number,
+  inForce: (view: SiteView) => void = () => {},
 ): Promise<SiteView> {
-  const ids = await ledger.transact(async (writer) => {
+  return await ledger.transact(async (writer, afterCommit) => {
     const synced = await syncSite(writer, site, { text, wallMs });
     for (const orphan of synced.orphans) {
       const step = alarmStep(orphan.state, { kind: 'limit-removed', comment: null, reason: {} }, goneRule);
@@ -65,9 +67,10 @@ export async function putInForce(
       if (change !== null) await saveAlarmChange(writer, change, contextOf(synced.ids, wallMs));
     }
     await tellSiteFile(writer, synced.ids, null, wallMs);
-    return synced.ids;
+    const view = siteView(site, synced.ids);
+    afterCommit(() => inForce(view));
+    return view;
   });
-  return siteView(site, ids);
 }
 
 /** A site file that cannot be put in force leaves the old one, and is told. */

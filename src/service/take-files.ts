@@ -182,16 +182,12 @@ export class TakeFiles {
   }
 
   async #conclude({ ready, answer }: Analysed, batchNewestStatedMs: number): Promise<boolean> {
-    const { view } = this.#tools;
     if (answer.kind === 'no-worker') throw new Error(answer.reason);
     if (answer.kind === 'changed' || answer.kind === 'gone') return await this.#lookAgain(ready);
     if (answer.kind === 'refused') return await this.#setAside(ready, answer.refusal.reason);
     if (answer.kind === 'stopped')
       return await this.#setAside(ready, `reading it stopped a worker: ${answer.reason}`);
-    // Another site file came into force meanwhile: the points may be others.
-    if (ready.view !== view()) return await this.#lookAgain(ready);
-    await this.#take(ready, answer, batchNewestStatedMs);
-    return true;
+    return (await this.#take(ready, answer, batchNewestStatedMs)) || (await this.#lookAgain(ready));
   }
 
   /** One that was filed before stays in the archive. */
@@ -208,23 +204,29 @@ export class TakeFiles {
     return true;
   }
 
+  /** False: another site file came into force meanwhile, and the points may be others. */
   async #take(
     ready: ReadyRecording,
     answer: Extract<MeasureAnswer, { kind: 'measured' }>,
     batchNewestStatedMs: number,
-  ): Promise<void> {
+  ): Promise<boolean> {
     const { ledger, clock, putAside, step, log } = this.#tools;
     step('intake: decision begun');
     const wallMs = Math.round(clock.wallMs());
     const fileKey = attemptKey(ready.header.look);
     const { path, view, archived } = ready;
-    const decided = await ledger.transact((writer) =>
-      decide(writer, view, { ready, answer, fileKey, batchNewestStatedMs }, wallMs),
+    // A reload may have been waiting for the ledger before this, so it is asked for within the transaction.
+    const decided = await ledger.transact(async (writer) =>
+      view === this.#tools.view()
+        ? decide(writer, view, { ready, answer, fileKey, batchNewestStatedMs }, wallMs)
+        : null,
     );
+    if (decided === null) return false;
     if (archived === null) this.#remember(ready, answer, decided.recordingId);
     step('intake: decision committed');
     log.debug({ file: path, outcome: decided.outcome }, 'recording in the ledger');
     if (archived === null) await putAside.sidecar(ready);
+    return true;
   }
 
   /** What this run knows of a file that is to leave the drop folder, or to stay there. */
