@@ -3,6 +3,9 @@ import { describe, expect, it } from 'vitest';
 import { loadSite } from '../../src/config/load.ts';
 import { exampleText } from './site-parts.ts';
 
+/** More of them in the long run. */
+const times = process.env.HUMLEDGER_LONG === '1' ? 25 : 1;
+
 /** A text changed the way slips of the hand change it: characters lost, doubled, replaced; lines moved, cut, merged. */
 const slip = fc.record({
   at: fc.nat(exampleText.length - 1),
@@ -81,7 +84,7 @@ describe('a site file with slips of the hand', () => {
       fc.property(fc.array(slip, { minLength: 1, maxLength: 4 }), (slips) =>
         expectAnswer(changed(exampleText, slips)),
       ),
-      { seed: 20261201, numRuns: 400 },
+      { seed: 20261201, numRuns: 400 * times },
     );
   });
 
@@ -92,11 +95,14 @@ describe('a site file with slips of the hand', () => {
       fc.property(order, fc.nat(lines.length), (moved, keep) => {
         expectAnswer([...lines.slice(0, keep), ...moved.map((index) => lines[index])].join('\n'));
       }),
-      { seed: 20261201, numRuns: 200 },
+      { seed: 20261201, numRuns: 200 * times },
     );
   });
 
   it('and with any text at all', () => {
-    fc.assert(fc.property(fc.string({ maxLength: 200 }), expectAnswer), { seed: 20261201, numRuns: 500 });
+    fc.assert(fc.property(fc.string({ maxLength: 200 }), expectAnswer), {
+      seed: 20261201,
+      numRuns: 500 * times,
+    });
   });
 });

@@ -1,0 +1,1 @@
+import './site-mutations.test.ts';
