@@ -233,7 +233,11 @@ export class TakeFiles {
   #remember(ready: ReadyRecording, { look }: { readonly look: FileLook }, recordingId: number): void {
     const { fileAway, forget, kept } = this.#tools;
     const { path, sidecarPath, view } = ready;
-    if (view.site.folders.afterReading === 'keep') for (const one of looksOf(ready, look)) kept.add(one);
+    forget(path);
+    if (view.site.folders.afterReading === 'keep') {
+      for (const one of looksOf(ready, look)) kept.add(one);
+      return;
+    }
     const { sidecar } = ready.header;
     fileAway.know(recordingId, {
       file: look,
@@ -242,6 +246,5 @@ export class TakeFiles {
           ? null
           : { path: sidecarPath, sha256: sidecar.sha256, look: sidecar.look },
     });
-    forget(path);
   }
 }

@@ -1,8 +1,9 @@
 /** With `after_reading: keep` the drop folder is the archive: what was read is opened again only when it has changed. */
 import { renameSync, rmSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
-import { describe, expect, it } from 'vitest';
+import { describe, expect, it, onTestFinished, vi } from 'vitest';
 import { sweepFolder } from '../../src/acquisition/sweep.ts';
+import { FileAway } from '../../src/service/file-away.ts';
 import { manyKept, opened } from './many-kept.ts';
 import { beginMs, hourMs, signal, stamp, type TrialService, wav } from './site-on-disk.ts';
 import { serviceOn, site } from './trial.ts';
@@ -37,6 +38,21 @@ describe('kept files', () => {
     expect(opened(on.folder)).toEqual([]);
     expect(again.files('drop')).toEqual([pump(0, 'json'), pump(0)].sort());
     expect(await again.standing()).toEqual([]);
+  });
+
+  it('are not held in memory as files that are to be moved', async () => {
+    const know = vi.spyOn(FileAway.prototype, 'know');
+    onTestFinished(() => know.mockRestore());
+    const service = await serviceOn(site(keep));
+    service.drop(pump(0), tone(1));
+    service.clock.advance(10_000);
+    expect(await service.take()).toMatchObject({ taken: 1 });
+    expect(know).not.toHaveBeenCalled();
+    const archiving = await serviceOn(site());
+    archiving.drop(pump(0), tone(1));
+    archiving.clock.advance(10_000);
+    expect(await archiving.take()).toMatchObject({ taken: 1 });
+    expect(know).toHaveBeenCalledTimes(1);
   });
 
   it('get no sidecar afterwards: one that comes late or changes is quarantined and told', async () => {
