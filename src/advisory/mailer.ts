@@ -24,10 +24,14 @@ export interface MailerOptions {
   readonly extraCertificates?: readonly string[];
   readonly connectTimeoutMs?: number;
   readonly idleTimeoutMs?: number;
+  /** The whole attempt. */
+  readonly attemptTimeoutMs?: number;
 }
 
 const connectTimeoutMs = 20_000;
 const idleTimeoutMs = 60_000;
+/** A server that says a little now and then never falls silent, and would hold up all mail. */
+const attemptTimeoutMs = 180_000;
 
 export function createMailer(server: MailServer, options: MailerOptions = {}): Mailer {
   return {
@@ -50,13 +54,18 @@ export function createMailer(server: MailServer, options: MailerOptions = {}): M
         ...(options.extraCertificates ? { tls: { ca: [...options.extraCertificates] } } : {}),
         ...(login.user !== null ? { auth: { user: login.user, pass: login.password } } : {}),
       });
+      const mostMs = options.attemptTimeoutMs ?? attemptTimeoutMs;
+      const signal = AbortSignal.timeout(mostMs);
       try {
         const done = await transport.sendMail({
           envelope: { from: addressOf(from), to: [recipient] },
           raw: Buffer.from(bytes),
+          signal,
         });
         return { kind: 'accepted', answer: oneLine(done.response) };
       } catch (error) {
+        if (signal.aborted)
+          return { kind: 'later', answer: `not through within ${mostMs / 1000} s`, server: 'out' };
         return answerOf(error as SmtpError, login.user === null ? null : login.password);
       } finally {
         transport.close();

@@ -56,3 +56,29 @@ it.each([
 it('a mail that the server takes is accepted', async () => {
   expect(await answerTo('VRFY', '500 no')).toEqual({ kind: 'accepted', server: undefined });
 });
+
+it('a server that never falls silent and never comes to an end is left after the time of an attempt', async () => {
+  let closed: Promise<unknown> | null = null;
+  const server = createServer((socket) => {
+    socket.write('220-mail.trial.example\r\n');
+    const drip = setInterval(() => socket.write('220-please wait\r\n'), 20);
+    socket.on('error', () => {});
+    socket.on('data', () => {});
+    closed = once(socket, 'close').then(() => clearInterval(drip));
+  }).listen(0, '127.0.0.1');
+  onTestFinished(() => void server.close());
+  await once(server, 'listening');
+  const { port } = server.address() as AddressInfo;
+  const mailer = createMailer(
+    { host: '127.0.0.1', port, security: 'none', user: null, passwordFile: null },
+    { attemptTimeoutMs: 300 },
+  );
+  const bytes = Buffer.from('Subject: trial\r\n\r\ntrial\r\n');
+  expect(await mailer.send({ from: 'a@trial.example', recipient: 'b@trial.example', bytes })).toEqual({
+    kind: 'later',
+    answer: 'not through within 0.3 s',
+    server: 'out',
+  });
+  await closed;
+  expect(closed).not.toBe(null);
+});
