@@ -59,6 +59,18 @@ export function alarmSubject(facts: AlarmMailFacts): string {
   return subjectLine(`${mark}: ${where}${what}${others}`);
 }
 
+/** The alarm or trouble that a subject of `alarmSubject` names, and how grave it was then; null where it names none. */
+export function numberOfSubject(
+  subject: string,
+): { readonly severity: Severity; readonly number: number } | null {
+  const severity = (['danger', 'alert', 'trouble'] as const).find((one) =>
+    subject.startsWith(`${markWord[one]} `),
+  );
+  const number =
+    severity === undefined ? Number.NaN : Number.parseInt(subject.slice(markWord[severity].length), 10);
+  return severity === undefined || Number.isNaN(number) ? null : { severity, number };
+}
+
 /** The worst severity in a mail: what the thread is stored with, and what decides its haste. Null in an empty one. */
 export function mailSeverity(facts: Pick<AlarmMailFacts, 'alarms' | 'troubles'>): Severity | null {
   const severities = [...facts.alarms, ...facts.troubles].map(severityOf);

@@ -1,4 +1,4 @@
-import { alarmMail, mailSeverity } from '../advisory/alarm-mail.ts';
+import { alarmMail, mailSeverity, numberOfSubject } from '../advisory/alarm-mail.ts';
 import type { AlarmFacts, AlarmMailFacts, Mail, TroubleFacts } from '../advisory/facts.ts';
 import { catchUpMail } from '../advisory/notices.ts';
 import { isWorse, messageIdentity, priorityOf, worseSeverity } from '../advisory/outbox.ts';
@@ -7,7 +7,7 @@ import { alarmByNumber } from '../store/alarms.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import type { MessageKind, UntoldEvent } from '../store/messages.ts';
 import { stoodAt } from '../store/thread-ends.ts';
-import { mailIdsOfThread, openThreadOf, type Thread } from '../store/threads.ts';
+import { mailIdsOfThread, openThreadOf, subjectsOfThread, type Thread } from '../store/threads.ts';
 import { alarmFacts } from './alarm-facts.ts';
 import { addressesFor, catchUpFacts, passedFor } from './catch-up.ts';
 import { machineFacts, machineOfId, siteFacts } from './fact-names.ts';
@@ -62,7 +62,8 @@ export async function draftAlarmMail(
   const severity = mailSeverity(facts) ?? 'trouble';
   const open = await openThreadOf(reader, machineId);
   const goesOn = open !== null && (await threadGoesOn(reader, machineId, events));
-  const threadSubject = goesOn && open !== null && !isWorse(severity, open.severity) ? open.subject : null;
+  const threadSubject =
+    goesOn && open !== null ? await subjectBefore(reader, open.id, facts, severity) : null;
   const mail = alarmMail({ ...facts, threadSubject });
   const mails: MailTo[] = [];
   for (const recipient of addressesFor(view, from.mail.to, machineId, events)) {
@@ -79,6 +80,29 @@ export async function draftAlarmMail(
     mails,
     thread: { machineId, open, goesOn, severity },
   };
+}
+
+/** Mails of a thread in which an earlier subject is looked for. */
+const subjectsLookedAt = 200;
+
+/**
+ * The subject under which the thread told one of these alarms before. An alarm keeps its subject through its life, until its
+ * severity rises; another alarm of the same machine stands in the same thread under a subject of its own, or nobody would
+ * see in an inbox that something new has come.
+ */
+async function subjectBefore(
+  reader: Reader,
+  threadId: number,
+  facts: AlarmMailFacts,
+  severity: Severity,
+): Promise<string | null> {
+  const numbers = new Set([...facts.alarms, ...facts.troubles].map(({ number }) => number));
+  for (const subject of await subjectsOfThread(reader, threadId, subjectsLookedAt)) {
+    const told = numberOfSubject(subject);
+    if (told === null || !numbers.has(told.number)) continue;
+    return isWorse(severity, told.severity) ? null : subject;
+  }
+  return null;
 }
 
 export async function alarmMailFacts(

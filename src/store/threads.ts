@@ -63,6 +63,18 @@ export async function closeThread(writer: Writer, id: number, closedMs: number):
     .execute();
 }
 
+/** Subjects under which a thread's mails went out, newest first. */
+export async function subjectsOfThread(reader: Reader, threadId: number, limit: number): Promise<string[]> {
+  const rows = await reader
+    .selectFrom('messages')
+    .select('subject')
+    .where('thread_id', '=', threadId)
+    .orderBy('id', 'desc')
+    .limit(limit)
+    .execute();
+  return rows.map(({ subject }) => subject);
+}
+
 /** Message-IDs that one recipient got in a thread, oldest first: for In-Reply-To (the last) and References. */
 export async function mailIdsOfThread(
   reader: Reader,

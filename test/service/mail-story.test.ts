@@ -74,7 +74,7 @@ describe('the mails of an alarm', () => {
     expect(references(second)).toEqual([]);
   });
 
-  it('stay in the thread and keep its subject while anything of the machine stands', async () => {
+  it('stay in one thread while anything of the machine stands, each alarm under a subject of its own', async () => {
     const { server, bench: b } = await bench({ to: [{ address: ann }] });
     for (const [index, path] of ['blower/de', 'blower/nde'].entries()) {
       await b.record(path, { overall: 3 + index });
@@ -83,7 +83,11 @@ describe('the mails of an alarm', () => {
     await b.look('overdue', true, { machineId: 'blower', pointId: 'de' });
     await b.pass(hourMs, 5 * minuteMs);
     const mails = server.to(ann);
-    expect(subjects(mails)).toEqual(Array(3).fill('ALERT 1: blower, de, overall 3 mm/s r.m.s.'));
+    expect(subjects(mails)).toEqual([
+      'ALERT 1: blower, de, overall 3 mm/s r.m.s.',
+      'ALERT 2: blower, nde, overall 4 mm/s r.m.s.',
+      'TROUBLE 3: blower, de: overdue',
+    ]);
     expect(references(mails[2] as ParsedMail)).toEqual([mails[0]?.messageId, mails[1]?.messageId]);
     expect(mails[2]?.text).toContain('TROUBLE 3');
   });
