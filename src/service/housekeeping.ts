@@ -2,6 +2,7 @@ import { localDate } from '../config/local-time.ts';
 import { quickCheck } from '../store/backup.ts';
 import type { Ledger } from '../store/ledger.ts';
 import { whatToDoWithDamage } from '../store/ledger-error.ts';
+import { emptyOldMail } from '../store/old-mail.ts';
 import { newestSpectraKept } from '../store/retention.ts';
 import { giveBackPages, thinSpectraOfPoint } from '../store/thinning.ts';
 import type { Logger } from './log.ts';
@@ -13,9 +14,12 @@ export interface HousekeepingTools {
   readonly view: () => SiteView;
   readonly log: Logger;
   readonly monotonicMs: () => number;
+  readonly wallMs: () => number;
 }
 
 const hourMs = 3_600_000;
+const mailKeptMs = 90 * 24 * hourMs;
+const summaryKeptMs = 366 * 24 * hourMs;
 const checkpointAboveBytes = 4 * 1024 * 1024;
 /** Kept for what comes next, so that the file does not shrink and grow with every recording (16 MiB). */
 const pagesKept = 4096;
@@ -49,14 +53,20 @@ export class Housekeeping {
   async thin(): Promise<void> {
     const { ledger, view, log } = this.#tools;
     const { points, ids, site } = view();
-    const rule = { newest: newestSpectraKept, dayOf: (usedMs: number) => localDate(usedMs, site.timeZone) };
+    const spectra = {
+      newest: newestSpectraKept,
+      dayOf: (usedMs: number) => localDate(usedMs, site.timeZone),
+    };
     const between = () => new Promise<void>((resolve) => setImmediate(resolve));
     let removed = 0;
     for (const point of points)
-      removed += await thinSpectraOfPoint(ledger, ids.pointId(point.machineId, point.id), rule, between);
-    if (removed === 0) return;
+      removed += await thinSpectraOfPoint(ledger, ids.pointId(point.machineId, point.id), spectra, between);
+    const wallMs = this.#tools.wallMs();
+    const rule = { mailBeforeMs: wallMs - mailKeptMs, summaryBeforeMs: wallMs - summaryKeptMs };
+    const emptied = await emptyOldMail(ledger, rule, between);
+    if (removed + emptied === 0) return;
     await giveBackPages(ledger, pagesKept, between);
-    log.debug({ spectra: removed }, 'spectra thinned');
+    log.debug({ spectra: removed, mails: emptied }, 'ledger thinned');
   }
 
   /** Waits for a check under way. */

@@ -53,7 +53,7 @@ export async function morning(tools: MailTools): Promise<string | null> {
   const date = dailyDue({ wallMs: nowMs, timeZone, at: summary.at, lastDone, sinceMs });
   if (date === null) {
     // A stop between the commit and the files leaves the mail's HTML, which has all but the longest tables.
-    if (last !== null && !hasSummaryFile(folders.data, last.localDate)) {
+    if (last !== null && last.html !== '' && !hasSummaryFile(folders.data, last.localDate)) {
       writeFiles(tools, view, last.localDate, last.html);
     }
     return null;
