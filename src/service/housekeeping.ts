@@ -29,6 +29,7 @@ export class Housekeeping {
   #thinnedMs: number;
   #checkedMs: number;
   #checking: Promise<void> | null = null;
+  readonly #ended = new AbortController();
   /** What the last quick check found; null: sound, or not checked yet. */
   damage: string | null = null;
 
@@ -69,23 +70,27 @@ export class Housekeeping {
     log.debug({ spectra: removed, mails: emptied }, 'ledger thinned');
   }
 
-  /** Waits for a check under way. */
+  /** A check under way is given up. */
   async end(): Promise<void> {
+    this.#ended.abort();
     await this.#checking;
   }
 
-  /** In a thread with its own connection; the service is ready meanwhile. */
+  /** In a process with its own connection; the service is ready meanwhile. */
   #check(nowMs: number): void {
     this.#checkedMs = nowMs;
     const { ledger, log } = this.#tools;
-    this.#checking = quickCheck(ledger.path)
+    this.#checking = quickCheck(ledger.path, this.#ended.signal)
       .then((found) => {
         this.damage = 'refused' in found ? found.reason : (found[0] ?? null);
         if (this.damage !== null)
           log.error({ found: this.damage }, `the ledger fails its check; ${whatToDoWithDamage}`);
       })
-      // A thread that could not be started says nothing of the ledger, and is no reason to end.
-      .catch((error: unknown) => log.error({ error: String(error) }, 'the ledger could not be checked'))
+      // A process that could not be started says nothing of the ledger, and is no reason to end.
+      .catch((error: unknown) => {
+        if (!this.#ended.signal.aborted)
+          log.error({ error: String(error) }, 'the ledger could not be checked');
+      })
       .finally(() => {
         this.#checking = null;
       });

@@ -211,7 +211,6 @@ export class Service {
   async stop(): Promise<void> {
     await this.#dropFolder.close();
     await this.#pool.close();
-    await this.#housekeeping.end();
     const wallMs = Math.round(this.#options.clock.wallMs());
     try {
       await this.#intake.end();
@@ -221,6 +220,7 @@ export class Service {
       if (!(error instanceof LedgerError)) throw error;
       this.#complaints.say('ledger', error.message);
     } finally {
+      await this.#housekeeping.end();
       await this.ledger.close();
     }
   }

@@ -1,6 +1,6 @@
+import { fork } from 'node:child_process';
 import { closeSync, existsSync, fsyncSync, openSync, renameSync, rmSync, statSync } from 'node:fs';
 import { dirname, extname } from 'node:path';
-import { fileURLToPath } from 'node:url';
 import { Worker } from 'node:worker_threads';
 import type { CopyAnswer, CopyTask } from './copy-worker.ts';
 import { type LedgerRefusal, toRefusal } from './ledger-error.ts';
@@ -10,9 +10,16 @@ export interface BackupDone {
   readonly bytes: number;
 }
 
-/** What SQLite's quick check found, at most twenty lines; empty when the ledger is sound. Runs in a thread. */
-export async function quickCheck(path: string): Promise<readonly string[] | LedgerRefusal> {
-  const answer = await inThread({ task: 'quick-check', path });
+/**
+ * What SQLite's quick check found, at most twenty lines; empty when the ledger is sound. Takes minutes on a large ledger,
+ * and a thread inside SQLite can neither be ended nor left behind by its process: so it runs in a process of its own,
+ * which `signal` ends at once (rejects with AbortError).
+ */
+export async function quickCheck(
+  path: string,
+  signal?: AbortSignal,
+): Promise<readonly string[] | LedgerRefusal> {
+  const answer = await inProcess({ task: 'quick-check', path }, signal);
   if ('findings' in answer) return answer.findings;
   // A file that SQLite cannot even read as a database is a finding too.
   if (/^SQLITE_(CORRUPT|NOTADB)/.test(answer.code)) return [answer.failed];
@@ -96,10 +103,27 @@ function noFolder(file: string): LedgerRefusal {
   return { refused: 'missing', reason: `the folder of ${file} does not exist; make it first` };
 }
 
+/** The worker is beside this file and has its ending: .ts run as it stands, .js once built. */
+const copyWorker = new URL(`./copy-worker${extname(import.meta.url)}`, import.meta.url);
+
+function inProcess(task: CopyTask, signal?: AbortSignal): Promise<CopyAnswer> {
+  const child = fork(copyWorker, [JSON.stringify(task)], {
+    execArgv: [],
+    stdio: ['ignore', 'ignore', 'ignore', 'ipc'],
+    killSignal: 'SIGKILL',
+    ...(signal === undefined ? {} : { signal }),
+  });
+  return new Promise((resolve, reject) => {
+    child.once('message', (answer) => resolve(answer as CopyAnswer));
+    child.on('error', reject);
+    child.once('close', (status, killedBy) =>
+      reject(new Error(`the process for ${task.task} ended without an answer (${killedBy ?? status})`)),
+    );
+  });
+}
+
 function inThread(task: CopyTask): Promise<CopyAnswer> {
-  // The worker is beside this file and has its ending: .ts run as it stands, .js once built.
-  const ending = extname(fileURLToPath(import.meta.url));
-  const worker = new Worker(new URL(`./copy-worker${ending}`, import.meta.url), { workerData: task });
+  const worker = new Worker(copyWorker, { workerData: task });
   return new Promise((resolve, reject) => {
     worker.once('message', resolve);
     worker.once('error', reject);

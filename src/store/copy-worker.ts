@@ -2,7 +2,7 @@ import { parentPort, workerData } from 'node:worker_threads';
 import Database from 'better-sqlite3';
 import { codeOf } from './ledger-error.ts';
 
-/** Slow work on a ledger, off the service's thread and on a connection of its own. */
+/** Slow work on a ledger, off the service's thread and on a connection of its own: in a thread, or a process. */
 export type CopyTask =
   | { readonly task: 'quick-check'; readonly path: string }
   | { readonly task: 'copy'; readonly path: string; readonly to: string };
@@ -36,4 +36,5 @@ function answer(task: CopyTask): CopyAnswer {
   }
 }
 
-parentPort?.postMessage(answer(workerData as CopyTask));
+if (parentPort !== null) parentPort.postMessage(answer(workerData as CopyTask));
+else process.send?.(answer(JSON.parse(process.argv[2] ?? '')), () => process.disconnect());
