@@ -36,29 +36,34 @@ async function runService(siteFile: SiteFile, once: boolean, io: CommandIo): Pro
   const drop = new Waker();
   let lost: string | null = null;
   const log = createLog(io.out);
-  const service = await Service.start({
-    siteFile,
-    clock: systemClock,
-    log,
-    hint: () => drop.wake(),
-    onLost: (reason) => {
-      lost = reason;
-      log.fatal({ reason }, 'the service ends itself');
-      stop.abort();
-    },
-  });
-  if ('refused' in service) return fail(io, service.refused);
-  const forget = listen(service, log, stop, drop);
+  // Before the start: a signal that nobody listens to would end the process.
+  const signals = listen(log, stop, drop);
   try {
-    if (once) return report(await runOnce(service, stop.signal), io);
-    await runUntil(service, drop, stop.signal);
-    return lost === null ? 0 : 1;
-  } catch (error) {
-    if (lost === null) throw error;
-    return 1;
+    const service = await Service.start({
+      siteFile,
+      clock: systemClock,
+      log,
+      hint: () => drop.wake(),
+      onLost: (reason) => {
+        lost = reason;
+        log.fatal({ reason }, 'the service ends itself');
+        stop.abort();
+      },
+    });
+    if ('refused' in service) return fail(io, service.refused);
+    try {
+      signals.started(service);
+      if (once) return report(await runOnce(service, stop.signal), io);
+      await runUntil(service, drop, stop.signal);
+      return lost === null ? 0 : 1;
+    } catch (error) {
+      if (lost === null) throw error;
+      return 1;
+    } finally {
+      await service.stop();
+    }
   } finally {
-    await service.stop();
-    forget();
+    signals.forget();
   }
 }
 
@@ -70,26 +75,41 @@ function report(once: OnceReport, io: CommandIo): ExitStatus {
   return mailsWaiting > 0 ? 1 : 0;
 }
 
-/** The first SIGTERM or SIGINT stops in order; a second one gives up waiting. SIGHUP re-reads the site file. */
-function listen(service: Service, log: Logger, stop: AbortController, drop: Waker): () => void {
+interface Signals {
+  /** From here on SIGHUP is obeyed at once. */
+  started(service: Service): void;
+  forget(): void;
+}
+
+/**
+ * The first SIGTERM or SIGINT stops in order; a second one gives up waiting. SIGHUP re-reads the site file; one that comes
+ * during the start does so after it.
+ */
+function listen(log: Logger, stop: AbortController, drop: Waker): Signals {
+  let running: Service | null = null;
+  let askedEarly = false;
   const end = () => {
     if (stop.signal.aborted) process.exit(1);
     stop.abort();
   };
   const reload = () => {
-    service.reload().then(
+    askedEarly ||= running === null;
+    running?.reload().then(
       () => drop.wake(),
       // A ledger that is locked or full for the moment; the service goes on with the site file that it has.
       (error: Error) =>
         log.error({ problem: error.message }, 'the site file could not be put in force; send SIGHUP again'),
     );
   };
-  process.on('SIGTERM', end);
-  process.on('SIGINT', end);
-  process.on('SIGHUP', reload);
-  return () => {
-    process.off('SIGTERM', end);
-    process.off('SIGINT', end);
-    process.off('SIGHUP', reload);
+  const listeners = { SIGTERM: end, SIGINT: end, SIGHUP: reload };
+  for (const [signal, listener] of Object.entries(listeners)) process.on(signal, listener);
+  return {
+    started(service) {
+      running = service;
+      if (askedEarly) reload();
+    },
+    forget() {
+      for (const [signal, listener] of Object.entries(listeners)) process.off(signal, listener);
+    },
   };
 }
