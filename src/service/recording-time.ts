@@ -89,7 +89,10 @@ export async function timeOf(reader: Reader, question: TimeQuestion): Promise<Re
     limit: 100,
   });
   const repeated = start.statedMs === null && (await findTakenByContent(reader, source.id, sha256)) !== null;
-  const first = repeated ? undefined : versionBefore(near, start, ready.arrivedMs, intervalMs);
+  // Nothing was evaluated for the overdue span: then what the clock rules make of it goes before all else.
+  const evaluatedMs = source.lastEvaluatedArrivedMs;
+  const blind = evaluatedMs !== null && ready.arrivedMs - evaluatedMs > overdueAfterMs;
+  const first = repeated || blind ? undefined : versionBefore(near, start, ready.arrivedMs, intervalMs);
   if (first !== undefined && first.usedMs !== null) return inPlaceOf(first, first.usedMs, start, source);
   const clock = readLoggerClock(
     { ...source, offsetMs: source.clockOffsetMs },
