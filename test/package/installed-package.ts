@@ -5,15 +5,7 @@ import { delimiter, dirname, join, resolve } from 'node:path';
 
 const root = resolve(import.meta.dirname, '../..');
 /** What the package is built from. */
-const sources = [
-  'src',
-  'config',
-  'demo-data',
-  'package.json',
-  'tsconfig.json',
-  'tsconfig.build.json',
-  'README.md',
-];
+const sources = ['src', 'config', 'demo-data', 'package.json', 'tsconfig.json', 'README.md'];
 
 export interface Ended {
   readonly status: number;
