@@ -2,33 +2,13 @@
  * The real service, in a process of its own, is killed at every named step of intake, filing and delivery, and started
  * again: nothing is lost and nothing is told twice. What is compared stands in story-state.ts.
  */
-import { spawn } from 'node:child_process';
-import { once } from 'node:events';
-import { tmpdir } from 'node:os';
-import { join } from 'node:path';
-import { fileURLToPath } from 'node:url';
 import { afterAll, describe, expect, it } from 'vitest';
-import { noStep, type StepName, stepNames } from '../../src/service/steps.ts';
-import { interruptions, leftOut, mayRepeatMails } from './interrupted.ts';
-import { playStory } from './story.ts';
-import { otherFileSystem, removeTemplate, storyRun, undisturbedRun } from './story-run.ts';
+import { stepNames } from '../../src/service/steps.ts';
+import { interruptions, leftOut } from './interrupted.ts';
+import { killedAndStartedAgain } from './killed.ts';
+import { otherFileSystem, removeTemplate, undisturbedRun } from './story-run.ts';
 
-const child = fileURLToPath(new URL('./story-child.ts', import.meta.url));
 afterAll(removeTemplate);
-
-/** Resolves to how the process ended. */
-async function playInChild(folder: string, step: StepName, n: number) {
-  const process_ = spawn(process.execPath, [child, folder, step, String(n)], {
-    stdio: ['ignore', 'pipe', 'pipe'],
-    env: { ...process.env, NODE_COMPILE_CACHE: join(tmpdir(), 'humledger-compiled') },
-  });
-  let said = '';
-  process_.stderr.on('data', (part) => {
-    said += part;
-  });
-  const [code, signal] = await once(process_, 'exit');
-  return { code, signal, said };
-}
 
 describe('a story that nobody interrupts', () => {
   it('reaches every step, and leaves what its files say', async () => {
@@ -58,15 +38,7 @@ describe('a story that nobody interrupts', () => {
 
 describe('a service that is killed', () => {
   it.each(interruptions)('at "$title" ends where an undisturbed one ends', async ({ step, shelf }) => {
-    const whole = await undisturbedRun(shelf);
-    const total = whole.steps.get(step) ?? 0;
-    const run = await storyRun(shelf);
-    const ended = await playInChild(run.folder, step, Math.ceil(total / 2));
-    expect(ended).toMatchObject({ signal: 'SIGKILL', said: '' });
-    await playStory(run.folder, noStep);
-    expect(run.state()).toEqual(whole.state);
-    const received = run.received();
-    const twice = received.length - new Set(received).size;
-    expect(twice).toBe(mayRepeatMails.includes(step) ? 1 : 0);
+    const { steps } = await undisturbedRun(shelf);
+    await killedAndStartedAgain(step, shelf, Math.ceil((steps.get(step) ?? 0) / 2));
   });
 });
