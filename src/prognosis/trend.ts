@@ -1,6 +1,6 @@
+import { dependenceFactor, mannKendall, theilSen } from '../signal/rank-trend.ts';
 import { gaussianQuantile, madToDeviation, median, medianAbsoluteDeviation } from '../signal/statistics.ts';
 import { type Crossing, crossingOf, type UncertainLine } from './crossing.ts';
-import { dependenceFactor, mannKendall, theilSen } from './rank-trend.ts';
 import { stepIn } from './step.ts';
 
 /**

@@ -1,6 +1,6 @@
 import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
-import { dependenceFactor, mannKendall, theilSen } from '../../src/prognosis/rank-trend.ts';
+import { dependenceFactor, mannKendall, theilSen } from '../../src/signal/rank-trend.ts';
 
 /** J. Little, College of the Holy Cross, 'A Mann-Kendall Example "By Hand"': 14 values, one tie. */
 const little = [12.9, 14.8, 13.2, 15.7, 13.8, 15.6, 12.9, 11.0, 17.3, 15.9, 19.0, 18.3, 20.1, 21.7];

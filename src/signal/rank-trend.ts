@@ -1,5 +1,5 @@
 import normalCdf from '@stdlib/stats-base-dists-normal-cdf';
-import { median } from '../signal/statistics.ts';
+import { median } from './statistics.ts';
 
 /**
  * Trend from the order of values and from the slopes of their pairs: neither knows a distribution, and up to 29 % of the
