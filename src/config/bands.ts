@@ -1,3 +1,4 @@
+import { advisedAverages } from '../signal/segment-length.ts';
 import { leastBandLines } from '../signal/window.ts';
 import { secondsFor, segmentOf, segmentSamplesFor } from './meaning.ts';
 import { printFrequency, printNumber, printSeconds, printSpeed } from './print-value.ts';
@@ -24,14 +25,11 @@ export interface BandFinding {
   readonly instead: string | null;
 }
 
-/** Averages for which a recording length is advised: a danger counts at once only from five on. */
-const advisedAverages = 5;
-
 /**
  * Highest frequency at which a sensor fixed like this reads flat. Common practice without a single source: makers'
  * data sheets differ by a factor of two either way.
  */
-const mountingRangeHz: Readonly<Record<NonNullable<Point['mounting']>, number>> = {
+export const mountingRangeHz: Readonly<Record<NonNullable<Point['mounting']>, number>> = {
   stud: 10_000,
   glue: 8000,
   magnet: 2000,
