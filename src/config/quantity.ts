@@ -124,6 +124,7 @@ function named(dimension: Dimension): string {
     order: 'an order',
     acceleration: 'an acceleration',
     bytes: 'a size',
+    angle: 'an angle',
   };
   return names[dimension] ?? `a ${dimension}`;
 }
@@ -167,6 +168,24 @@ export function parseDelay(text: string): Parsed<{ readonly recordings: number }
     return refused(`'${shorten(text)}' is not a whole number of recordings from 1 to 1000`, '1 recordings');
   }
   return understood({ recordings: value });
+}
+
+/** Metres from '7.94 mm' or '0.3126 in': a size of a part, which has no detector. */
+export function parseLength(text: string): Parsed<number> {
+  const parsed = parsePhysical(text, ['displacement', 'length'], 'mm');
+  return parsed.ok ? understood(parsed.value.value) : parsed;
+}
+
+/** Degrees from '15 deg'. */
+export function parseAngle(text: string): Parsed<number> {
+  const parsed = parsePhysical(text, ['angle'], 'deg');
+  return parsed.ok ? understood(parsed.value.value) : parsed;
+}
+
+/** Turns for one turn of the running speed: '1x', '0.3433x'. */
+export function parseOrder(text: string): Parsed<number> {
+  const parsed = parsePhysical(text, ['order'], 'x');
+  return parsed.ok ? understood(parsed.value.value) : parsed;
 }
 
 /** At most 60 characters of what was written, for messages. */

@@ -12,13 +12,15 @@ export type Dimension =
   | 'time'
   | 'recordings'
   | 'power'
-  | 'bytes';
+  | 'bytes'
+  | 'length'
+  | 'angle';
 
 export interface Unit {
   /** The way this project prints it. */
   readonly text: string;
   readonly dimension: Dimension;
-  /** Size in the SI unit of the dimension: m/s², m/s, m, Pa, V, A, Hz, W; else orders, percent, ms, bytes. */
+  /** Size in the SI unit of the dimension: m/s², m/s, m, Pa, V, A, Hz, W; else orders, percent, ms, bytes, degrees. */
   readonly inSi: number;
   /** Other spellings that are accepted. */
   readonly also?: readonly string[];
@@ -43,6 +45,8 @@ export const units: readonly Unit[] = [
   { text: 'V', dimension: 'voltage', inSi: 1 },
   { text: 'mA', dimension: 'current', inSi: 1e-3 },
   { text: 'A', dimension: 'current', inSi: 1 },
+  { text: 'in', dimension: 'length', inSi: inch },
+  { text: 'deg', dimension: 'angle', inSi: 1, also: ['°', 'degrees', 'degree'] },
   { text: 'Hz', dimension: 'frequency', inSi: 1 },
   { text: 'kHz', dimension: 'frequency', inSi: 1000 },
   { text: 'rpm', dimension: 'frequency', inSi: 1 / 60, also: ['r/min', '1/min'] },
