@@ -1,13 +1,16 @@
 import { tellDoubledBands } from './build-bands.ts';
 import { tellDoubledLimits } from './build-limits.ts';
+import { buildParts } from './build-parts.ts';
 import { type BuiltPoint, buildPoint, type PointSurroundings } from './build-point.ts';
+import { buildZones } from './build-zones.ts';
 import { type Build, type Layers, tellDoubledIds, valueOr, valuesOf } from './layers.ts';
 import { nearest } from './nearest.ts';
+import { buildConditions } from './operating-conditions.ts';
 import type { WrittenSite } from './schema.ts';
-import type { machineKeys, machineTypeKeys, zoneKeys } from './schema-machines.ts';
+import type { machineKeys, machineTypeKeys } from './schema-machines.ts';
 import type { Written } from './shape.ts';
 import type { ReadMap } from './shape-map.ts';
-import type { Machine, RunningRule, ZoneChoice } from './site.ts';
+import type { Machine, RunningRule } from './site.ts';
 
 type WrittenMachine = Written<ReadMap<typeof machineKeys>>;
 type WrittenType = Written<ReadMap<typeof machineTypeKeys>>;
@@ -64,9 +67,12 @@ function buildMachine(
   const type = typeOf(build, keys.type, types);
   if (type === undefined) return null;
   const runningSpeedHz = valueOr(keys.running_speed, null);
+  const named = { id, name: valueOr(keys.name, id), type: keys.type?.value ?? null };
+  const zones = keys.zones === null ? null : buildZones(build, keys.zones, named);
   const around: PointSurroundings = {
     machineId: id,
     runningSpeedHz,
+    zones,
     recordings: layersOf(site, type, written, 'recordings') as PointSurroundings['recordings'],
     analysis: layersOf(site, type, written, 'analysis') as PointSurroundings['analysis'],
     bands: [type?.value.keys.bands ?? null, keys.bands],
@@ -76,10 +82,8 @@ function buildMachine(
   const points = (keys.points?.value ?? []).flatMap((point) => buildPoint(build, point, around) ?? []);
   tellUnknownSisters(build, keys, id, known);
   const machine: Machine = {
-    id,
-    name: valueOr(keys.name, id),
+    ...named,
     area: valueOr(keys.area, null),
-    type: keys.type?.value ?? null,
     formerly: valuesOf(keys.formerly),
     runningSpeedHz,
     running: runningRule(build, keys, points),
@@ -87,8 +91,10 @@ function buildMachine(
     stoppedExpectedMs: valueOr(keys.stopped_expected, 7 * 86_400_000),
     criticality: valueOr(keys.criticality, 'B'),
     like: valuesOf(keys.like),
-    zones: keys.zones === null ? null : zoneChoice(build, keys.zones),
+    conditions: buildConditions(build, keys.conditions),
+    zones,
     points: points.map(({ point }) => point),
+    parts: buildParts(build, keys.parts, id, pointIdsOf(keys)),
   };
   return { machine, points };
 }
@@ -126,6 +132,13 @@ function layersOf(
 }
 
 type MachineRead = WrittenMachine['value']['keys'];
+
+/** As written, so that a part of a point whose settings were refused is not told as well. */
+function pointIdsOf(keys: MachineRead): string[] {
+  return (keys.points?.value ?? []).flatMap(({ value: { keys: point } }) =>
+    point.id === null ? [] : [point.id.value],
+  );
+}
 
 function tellDoubledPoints({ reading }: Build, keys: MachineRead, machineId: string): void {
   const ids = (keys.points?.value ?? []).flatMap(({ value: { keys: point } }) => {
@@ -187,49 +200,3 @@ function runningRule(
   }
   return { by: 'level', bandId: rule.bandId, above: rule.above.value };
 }
-
-const neededByStandard = {
-  'iso-20816-3': ['power', 'support'],
-  'iso-10816-7': ['category', 'power'],
-  'iso-10816-1': ['class'],
-} as const;
-
-function zoneChoice(
-  { reading }: Build,
-  { value: { keys, has }, at }: Written<ReadMap<typeof zoneKeys>>,
-): ZoneChoice | null {
-  if (keys.standard === null) return null;
-  const standard = keys.standard.value;
-  const needed: readonly (keyof typeof zoneKeys)[] = neededByStandard[standard];
-  for (const name of needed) {
-    if (!has.has(name))
-      reading.problem(
-        keys.standard.at,
-        `${standard} needs ${name}`,
-        `add: ${name}: ${exampleOfZone[name]}`,
-        name,
-      );
-  }
-  for (const name of has) {
-    if (name === 'standard' || needed.includes(name as keyof typeof zoneKeys)) continue;
-    reading.problem(
-      keys[name as keyof typeof zoneKeys]?.at ?? at,
-      `${name} has no meaning in ${standard}`,
-      `it takes ${needed.join(' and ')}`,
-    );
-  }
-  return {
-    standard,
-    powerW: valueOr(keys.power, null),
-    support: valueOr(keys.support, null),
-    category: valueOr(keys.category, null),
-    class: valueOr(keys.class, null),
-  };
-}
-
-const exampleOfZone: Readonly<Record<string, string>> = {
-  power: '110 kW',
-  support: 'rigid',
-  category: 'II',
-  class: 'II',
-};

@@ -1,19 +1,14 @@
 import { parseDisplayUnit } from './level.ts';
-import {
-  type Parsed,
-  parseDelay,
-  parseEdge,
-  parsePercent,
-  parsePhysical,
-  refused,
-  shorten,
-  understood,
-} from './quantity.ts';
+import { conditions } from './operating-conditions.ts';
+import { type Parsed, parseEdge, refused, shorten, understood } from './quantity.ts';
 import { parseRunning } from './running-rule.ts';
+import { limits } from './schema-limits.ts';
+import { parts } from './schema-parts.ts';
 import { analysis, areaName, recordings } from './schema-recordings.ts';
-import { duration, formerIds, frequency, id, percent } from './schema-values.ts';
+import { duration, formerIds, frequency, id } from './schema-values.ts';
+import { sensorPlaces, zoneKeys } from './schema-zones.ts';
 import { parseSensitivity } from './sensitivity.ts';
-import { choice, list, ruled, scalar, trueOrFalse, words } from './shape.ts';
+import { choice, list, ruled, scalar, words } from './shape.ts';
 import { key, map, mapById } from './shape-map.ts';
 import type { Quantity } from './site.ts';
 
@@ -36,20 +31,6 @@ const edge = scalar(
   { example: '10 Hz', pattern: '^[0-9.]+\\s*(Hz|kHz|rpm|r/min|1/min|x)$' },
 );
 
-/** A limit's value is understood where its band's quantity is known. */
-const levelText = scalar((text) => understood(text.trim()), { example: '2.8 mm/s', most: 60 });
-
-const delay = scalar(parseDelay, { example: '2 recordings' });
-
-/** '+25 %', or 'never' (null). */
-function parseSayAgain(text: string): Parsed<number | null> {
-  if (text.trim() === 'never') return understood(null);
-  const parsed = parsePercent(text);
-  if (!parsed.ok) return parsed;
-  if (parsed.value >= 1 && parsed.value <= 1000) return parsed;
-  return refused(`'${shorten(text)}' is not from +1 % to +1000 %, or never`);
-}
-
 export const bandKeys = {
   id: key(id('overall'), 'Names the band in limits, trends and mails.', { required: true }),
   formerly: key(formerIds, 'Earlier ids: the series are carried over.'),
@@ -67,47 +48,7 @@ export const bandKeys = {
   ),
 };
 
-/** Later kinds of limit each add one word here, their own keys, and one entry where limits are built. */
-export const limitKinds = ['fixed'] as const;
-
-export const limitKeys = {
-  id: key(id('overall-fixed-upper'), 'Names the limit.', { fallback: 'band-kind-side' }),
-  formerly: key(formerIds, 'Earlier ids: standing alarms are carried over.'),
-  band: key(id('overall'), 'The band whose level is judged.', { required: true }),
-  kind: key(choice(limitKinds), 'fixed: the values as they stand.', { fallback: 'fixed' }),
-  side: key(choice(['upper', 'lower']), 'upper: too much; lower: too little.', { fallback: 'upper' }),
-  alert: key(levelText, 'The lower severity.'),
-  danger: key(levelText, 'The higher severity.'),
-  on_delay: key(
-    delay,
-    'The level must stay over the limit for so many recordings, or so long: single knocks raise nothing.',
-    {
-      fallback: '2 recordings',
-    },
-  ),
-  off_delay: key(delay, 'The level must stay below for so many recordings, or so long.', {
-    fallback: '1 recordings',
-  }),
-  deadband: key(percent(0, 50, '10 %'), 'The level must fall this far below the limit, in percent of it.', {
-    fallback: '10 %',
-  }),
-  latching: key(trueOrFalse, 'The alarm stands until it is reset by hand.', { fallback: 'false' }),
-  say_again_at: key(
-    scalar(parseSayAgain, { example: '+25 %' }),
-    'An acknowledged alarm is told again when its level has risen by this much; or never.',
-    {
-      fallback: '+25 %',
-    },
-  ),
-  action: key(
-    words(1000, 'Check base bolts and coupling', { lines: true }),
-    'What to do first, in the words of the site.',
-  ),
-  respond_within: key(duration(60_000, 365 * day, '2 d'), 'Time within which a person should have looked.'),
-};
-
 const bands = list(map(bandKeys), 200);
-const limits = list(map(limitKeys), 400);
 
 export const pointKeys = {
   id: key(id('de-h'), 'Names the point; as written, never as a number.', { required: true }),
@@ -118,6 +59,9 @@ export const pointKeys = {
     choice(['stud', 'glue', 'magnet', 'hand']),
     'How the sensor is fixed: bounds the usable range.',
   ),
+  sensor_on: key(choice(sensorPlaces), 'Where the sensor sits; evaluation zones hold for bearing housings.', {
+    fallback: 'bearing-housing; shaft where displacement is measured',
+  }),
   channel: key(
     scalar(parseChannel, { example: '1', free: true }),
     'Channel of the file: a number from 1, or a column name.',
@@ -146,32 +90,6 @@ function parseChannel(text: string): Parsed<number | string> {
   }
   return understood(written);
 }
-
-function parsePower(text: string): Parsed<number> {
-  const parsed = parsePhysical(text, ['power'], 'kW');
-  if (!parsed.ok) return parsed;
-  return parsed.value.value > 0
-    ? understood(parsed.value.value)
-    : refused(`'${shorten(text)}' is not above 0`);
-}
-
-/** Which evaluation zones hold for a machine; judged by the zone tables, kept here as chosen. */
-export const zoneKeys = {
-  standard: key(
-    choice(['iso-20816-3', 'iso-10816-7', 'iso-10816-1']),
-    'iso-20816-3 with power and support; iso-10816-7 (pumps) with category and power; iso-10816-1 with class.',
-    {
-      required: true,
-    },
-  ),
-  power: key(scalar(parsePower, { example: '110 kW' }), 'Rated power of the machine.'),
-  support: key(
-    choice(['rigid', 'flexible']),
-    'Rigid: the lowest natural frequency on its support is at least 25 % above the running frequency.',
-  ),
-  category: key(choice(['I', 'II']), 'iso-10816-7: I high demands on reliability or safety, II general.'),
-  class: key(choice(['I', 'II', 'III', 'IV']), 'iso-10816-1, Annex B.'),
-};
 
 export const machineTypeKeys = {
   recordings: key(recordings, 'What differs for machines of this type.'),
@@ -204,6 +122,11 @@ export const machineKeys = {
   }),
   criticality: key(choice(['A', 'B', 'C'], 'B'), 'A matters most; orders the summary.', { fallback: 'B' }),
   like: key(list(id('blower-2'), 50), 'Sister machines, for comparison.'),
+  conditions: key(
+    conditions,
+    'Operating conditions: levels are compared within one; the first that fits a recording holds.',
+    { fallback: 'all running is one condition' },
+  ),
   zones: key(map(zoneKeys), 'Evaluation zones of a published standard.'),
   recordings: key(recordings, 'What differs for this machine.'),
   analysis: key(analysis, 'What differs for this machine.'),
@@ -216,6 +139,7 @@ export const machineKeys = {
     'Limits of every point of this machine, added to those of its type; the same id replaces.',
   ),
   points: key(list(map(pointKeys), 500), 'Measuring points.', { required: true }),
+  parts: key(parts, 'What turns, rolls or meshes in it: gives lines of a spectrum their names.'),
 };
 
 export const machines = list(map(machineKeys), 2000);

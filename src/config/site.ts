@@ -1,4 +1,7 @@
 import type { WindowName } from '../signal/window.ts';
+import type { MachineZones, SensorPlace } from './machine-zones.ts';
+import type { Part } from './parts.ts';
+import type { SampleLayout } from './sample-layout.ts';
 
 /**
  * The frozen Site: what a site file means, in SI units, with ids as written. Everything else reads this.
@@ -91,17 +94,20 @@ export interface Machine {
   readonly stoppedExpectedMs: number;
   readonly criticality: 'A' | 'B' | 'C';
   readonly like: readonly string[];
-  readonly zones?: ZoneChoice | null;
+  /** Operating conditions in which levels are compared, the first that fits; none: all running is one. */
+  readonly conditions?: readonly OperatingCondition[];
+  /** The part of a published table that holds for it. */
+  readonly zones?: MachineZones | null;
+  /** Without it: none. */
+  readonly parts?: readonly Part[];
   readonly points: readonly Point[];
 }
 
-/** Which evaluation zones hold for a machine, as chosen in the site file; the zone tables judge it. */
-export interface ZoneChoice {
-  readonly standard: 'iso-20816-3' | 'iso-10816-7' | 'iso-10816-1';
-  readonly powerW: number | null;
-  readonly support: 'rigid' | 'flexible' | null;
-  readonly category: 'I' | 'II' | null;
-  readonly class: 'I' | 'II' | 'III' | 'IV' | null;
+/** A class of speed and load; null: any. Both ends belong to it. */
+export interface OperatingCondition {
+  readonly id: string;
+  readonly speedHz: { readonly from: number; readonly to: number } | null;
+  readonly loadPercent: { readonly from: number; readonly to: number } | null;
 }
 
 /** When a machine counts as running. `level`: two points must agree; threshold in SI r.m.s. */
@@ -117,6 +123,8 @@ export interface Point {
   readonly formerly: readonly string[];
   readonly direction: string | null;
   readonly mounting: 'stud' | 'glue' | 'magnet' | 'hand' | null;
+  /** null: on a bearing housing, on the shaft where displacement is measured. */
+  readonly sensorOn?: SensorPlace | null;
   /** A number from 1, or a column name. */
   readonly channel: number | string;
   readonly quantity: Quantity;
@@ -154,6 +162,8 @@ export interface RecordingSettings {
   readonly overdueAfterMs: number;
   readonly settleMs: number;
   readonly sidecar: 'none' | 'optional' | 'expected';
+  /** Left out: nothing is said of it. */
+  readonly layout?: SampleLayout;
 }
 
 export interface AnalysisSettings {
@@ -178,7 +188,13 @@ export interface Band {
   readonly display: DisplayUnit;
 }
 
-export type LimitKind = 'fixed';
+export type LimitKind = 'fixed' | 'zone';
+
+/** Where alert and danger come from, in words; null: as the site file gives them. */
+export interface LimitReasons {
+  readonly alert: string | null;
+  readonly danger: string | null;
+}
 
 export interface Limit {
   /** As written, or `band-kind-side`. Unique within its point. */
@@ -190,6 +206,7 @@ export interface Limit {
   /** SI r.m.s.; at least one of the two is set. */
   readonly alert: number | null;
   readonly danger: number | null;
+  readonly reasons?: LimitReasons | null;
   readonly onDelay: Delay;
   readonly offDelay: Delay;
   readonly deadbandPercent: number;

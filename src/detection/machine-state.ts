@@ -15,6 +15,7 @@ import type { Measurement } from '../manipulation/measurement.ts';
  * - Transient within `afterStartMs` after the first running recording that follows a stop. When the watch begins on a
  *   running machine its start is unknown and long past.
  * - Machines without a rule always run.
+ * - Running time is cumulated from recording to recording: baselines and trends count the hours that a machine ran.
  */
 export type MachineState = 'running' | 'stopped' | 'transient';
 
@@ -24,6 +25,10 @@ export interface MachineMemory {
   readonly sinceMs: number;
   /** Used time of the start that was seen; null while stopped and where no start was seen. */
   readonly runningSinceMs: number | null;
+  /** Time that the machine has run since the ledger knows it, in ms of used time; ledgers before it was counted have none. */
+  readonly ranMs?: number;
+  /** Used time of the step that made this memory. */
+  readonly usedMs?: number;
   /** Newest reading of each point, by point id. */
   readonly readings: Readonly<Record<string, PointReading>>;
 }
@@ -50,8 +55,9 @@ export interface PointMachineState {
 }
 
 /**
- * What one recording says of its machine, by the machine's rule. A speed counts only from the sidecar: the nominal one
- * is what the machine does when it runs. A level that is known to be 'at least' so high still counts as running.
+ * What one recording says of its machine, by the machine's rule. A speed counts from the sidecar and from pulses only:
+ * the nominal one is what the machine does when it runs, and shaft lines in a spectrum may be those of a neighbour. A
+ * level that is known to be 'at least' so high still counts as running.
  *
  * @returns null where it says nothing
  */
@@ -63,7 +69,8 @@ export function readingOf(
   switch (rule.by) {
     case 'speed': {
       const { speed } = measurement;
-      return speed !== null && speed.origin === 'sidecar' ? speed.rpm > rule.aboveRpm : null;
+      if (speed === null || (speed.origin !== 'sidecar' && speed.origin !== 'pulses')) return null;
+      return speed.rpm > rule.aboveRpm;
     }
     case 'sidecar':
       return measurement.runningSaid;
@@ -99,6 +106,8 @@ export function machineStep(
     state,
     sinceMs,
     runningSinceMs,
+    ranMs: (earlier?.ranMs ?? 0) + ranSince(machine, earlier, runs, usedMs),
+    usedMs: Math.max(usedMs, earlier?.usedMs ?? usedMs),
     readings: Object.fromEntries(known.map(({ point, reading }) => [point.id, reading])),
   };
   const anyRuns = fresh.some(({ reading }) => reading.running);
@@ -108,6 +117,17 @@ export function machineStep(
     return [id, { state: own === false ? 'stopped' : state, readsStopped }];
   });
   return { memory, points: Object.fromEntries(points) };
+}
+
+/**
+ * Running time between two steps: it counts where the machine ran at both. Over a longer gap than two expected intervals
+ * nobody knows; then one interval counts.
+ */
+function ranSince(machine: Machine, earlier: MachineMemory | null, runs: boolean, usedMs: number): number {
+  if (!runs || earlier === null || earlier.state === 'stopped' || earlier.usedMs === undefined) return 0;
+  const intervalMs = Math.min(...machine.points.map(({ recordings }) => recordings.expectedEveryMs));
+  const gapMs = Math.max(0, usedMs - earlier.usedMs);
+  return gapMs > 2 * intervalMs ? intervalMs : gapMs;
 }
 
 interface KnownReading {

@@ -1,0 +1,75 @@
+import { type Build, tellDoubledIds } from './layers.ts';
+import { type Parsed, parseFrequency, parsePercent, refused, shorten, understood } from './quantity.ts';
+import { id } from './schema-values.ts';
+import { list, scalar, type Written } from './shape.ts';
+import { key, map, type ReadMap } from './shape-map.ts';
+import type { OperatingCondition } from './site.ts';
+
+/** `conditions:` of a machine: classes of speed and load within which levels are compared. */
+
+interface Range {
+  readonly from: number;
+  readonly to: number;
+}
+
+/** `2800 rpm..3000 rpm`: both ends with their unit, the lower first. */
+function parseRange(text: string, parseEnd: (end: string) => Parsed<number>, example: string): Parsed<Range> {
+  const ends = text.split('..');
+  if (ends.length !== 2) return refused(`'${shorten(text)}' is no range such as ${example}`);
+  const [from, to] = ends.map((end) => parseEnd(end.trim()));
+  if (!from.ok)
+    return refused(from.what, from.instead === null ? null : `${from.instead}..${ends[1].trim()}`);
+  if (!to.ok) return refused(to.what, to.instead === null ? null : `${ends[0].trim()}..${to.instead}`);
+  if (from.value > to.value)
+    return refused(`'${shorten(text)}' begins above its end`, `${ends[1].trim()}..${ends[0].trim()}`);
+  return from.value < to.value
+    ? understood({ from: from.value, to: to.value })
+    : refused(`'${shorten(text)}' begins and ends at the same value`);
+}
+
+const speedExample = '2800 rpm..3000 rpm';
+const loadExample = '60 %..100 %';
+
+export const conditionKeys = {
+  id: key(id('full-load'), 'Names the operating condition.', { required: true }),
+  speed: key(
+    scalar((text) => parseRange(text, (end) => parseFrequency(end, 'rpm'), speedExample), {
+      example: speedExample,
+    }),
+    'Running speed from..to; both ends belong to it.',
+    { fallback: 'any' },
+  ),
+  load: key(
+    scalar((text) => parseRange(text, parsePercent, loadExample), { example: loadExample }),
+    "Load from..to, as the sidecar's load_percent gives it.",
+    { fallback: 'any' },
+  ),
+};
+
+export const conditions = list(map(conditionKeys), 50);
+
+type WrittenConditions = Written<readonly Written<ReadMap<typeof conditionKeys>>[]>;
+
+export function buildConditions(
+  build: Build,
+  written: WrittenConditions | null,
+): readonly OperatingCondition[] {
+  const entries = written?.value ?? [];
+  const ids = entries.flatMap(({ value: { keys } }) =>
+    keys.id === null ? [] : [{ id: keys.id.value, at: keys.id.at }],
+  );
+  tellDoubledIds(
+    build.reading,
+    ids,
+    (name, line) => `condition '${name}' stands twice, first in line ${line}`,
+  );
+  return entries.flatMap(({ value: { keys, has }, at }) => {
+    if (keys.id === null) return [];
+    if (!has.has('speed') && !has.has('load')) {
+      const right = `add: speed: ${speedExample}, or load: ${loadExample}`;
+      build.reading.problem(at, `condition '${keys.id.value}' says neither speed nor load`, right);
+      return [];
+    }
+    return [{ id: keys.id.value, speedHz: keys.speed?.value ?? null, loadPercent: keys.load?.value ?? null }];
+  });
+}
