@@ -3,7 +3,7 @@ import { EqualRows } from './equal-rows.ts';
 import { qualityRules as rules } from './quality-rules.ts';
 import type { QualityFinding, RecordingHeader } from './recording.ts';
 import { SettlingStart } from './settling-start.ts';
-import { spectrumFindings } from './spectrum-quality.ts';
+import { type MachineLook, spectrumFindings } from './spectrum-quality.ts';
 
 export interface SampleQualitySettings {
   readonly samples: RecordingHeader['samples'];
@@ -11,9 +11,6 @@ export interface SampleQualitySettings {
   readonly quantity: Quantity;
   /** Volts of a sample of 1; null where the samples are no voltage behind a sensor. */
   readonly voltsPerSample: number | null;
-  /** Lower edge of the lowest band in velocity, Hz; null: none is asked for. */
-  readonly lowestVelocityHz: number | null;
-  readonly speedHz: number | null;
   /** A sample of more than this is a spoilt number; infinite where it is not given. */
   readonly largest?: number;
 }
@@ -72,6 +69,7 @@ export class SampleQuality {
       readonly lineSpacingHz: number;
       readonly averages: number;
     } | null,
+    machine: MachineLook,
   ): QualityFinding[] {
     this.#rows.end();
     const found: QualityFinding[] = [];
@@ -91,7 +89,10 @@ export class SampleQuality {
     if (settling !== null) found.push({ flag: 'settling', detail: settling });
     const bias = this.#bias(mean);
     if (bias !== null) found.push({ flag: 'bias-out-of-range', detail: bias });
-    if (spectrum !== null) found.push(...spectrumFindings(spectrum, this.#settings));
+    if (spectrum !== null) {
+      const { quantity } = this.#settings;
+      found.push(...spectrumFindings(spectrum, { quantity, ...machine }));
+    }
     return found;
   }
 

@@ -10,10 +10,15 @@ export interface SpectrumLook {
   readonly averages: number;
 }
 
-export interface SpectrumQuestion {
-  readonly quantity: Quantity;
+/** What is known of the machine once its recording is read. */
+export interface MachineLook {
+  /** Lower edge of the lowest band in velocity, Hz; null: none is asked for. */
   readonly lowestVelocityHz: number | null;
   readonly speedHz: number | null;
+}
+
+export interface SpectrumQuestion extends MachineLook {
+  readonly quantity: Quantity;
 }
 
 /** Lines nearest to 0 that hold what the removal of the mean leaves; no rule looks at them. */

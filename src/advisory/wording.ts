@@ -1,4 +1,5 @@
 import type { JournalEventName, TroubleKind } from '../detection/alarm.ts';
+import type { SpeedOrigin } from '../manipulation/measurement.ts';
 import { clip } from './escape.ts';
 import type { MachineFacts, PointFacts, SiteFacts, StandingFacts } from './facts.ts';
 import { momentText } from './time-words.ts';
@@ -150,4 +151,9 @@ export function zoneText(timeZone: string): string {
   return `Times are those of ${clip(timeZone, longestName)}.`;
 }
 
-export const speedOrigin = { sidecar: 'from the sidecar', nominal: 'nominal, not measured' } as const;
+export const speedOrigin = {
+  sidecar: 'from the sidecar',
+  pulses: 'from its pulses',
+  spectrum: 'found in the spectrum',
+  nominal: 'nominal, not measured',
+} as const satisfies Readonly<Record<SpeedOrigin, string>>;

@@ -4,6 +4,14 @@ import { SegmentSpectra } from '../signal/segment-spectra.ts';
 import { Waveform, type WaveformValues } from '../signal/waveform.ts';
 import type { LaidBand } from './point-bands.ts';
 
+/** What is to be made of a stretch. */
+export interface StretchSettings {
+  /** Null: waveform values only. */
+  readonly averaging: AveragingSettings | null;
+  /** Bands that lie where they lie whatever the running speed is. */
+  readonly bands: readonly LaidBand[];
+}
+
 /** What one unbroken stretch of samples gave. */
 export interface StretchResult {
   readonly samples: number;
@@ -24,6 +32,9 @@ const leastGroups = 8;
 /**
  * Waveform values and averaged density of a stretch without gaps, fed in blocks of any size. Holds samples only
  * until the first segment is full, so that a file which claims more than it has costs no memory.
+ *
+ * Every analysis of a point's samples lives here: made in the constructor, fed in `add`, read in `finish`. What needs
+ * the running speed, which is known only when all channels are read, works from `StretchResult` afterwards.
  */
 export class CleanStretch {
   readonly #settings: AveragingSettings | null;
@@ -35,9 +46,8 @@ export class CleanStretch {
   #segments: SegmentSpectra | null = null;
   samples = 0;
 
-  /** `settings` null: waveform values only. */
-  constructor(settings: AveragingSettings | null, bands: readonly LaidBand[]) {
-    this.#settings = settings;
+  constructor({ averaging, bands }: StretchSettings) {
+    this.#settings = averaging;
     this.#bands = bands;
     this.#segmentPowers = bands.map(() => []);
   }

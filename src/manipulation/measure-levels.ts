@@ -1,22 +1,58 @@
 import type { Point } from '../config/site.ts';
 import type { AveragedDensity, AveragingSettings } from '../signal/averaging.ts';
 import { bandInterval, type IntervalKernel, makeIntervalKernel } from '../signal/band-interval.ts';
+import type { BandWeights } from '../signal/band-level.ts';
 import { Kept } from '../signal/kept.ts';
 import { effectiveAverages } from '../signal/overlap.ts';
-import { findPeaks, type Peak } from '../signal/peaks.ts';
+import { findPeaks, type Peak, type PeakSearch, type PeakSettings } from '../signal/peaks.ts';
 import type { SegmentSpectra } from '../signal/segment-spectra.ts';
 import { steadiness } from '../signal/steadiness.ts';
 import { type FingerprintSettings, seriesFingerprint } from './fingerprint.ts';
 import type { Averaging, BandLevel, SpectralPeak } from './measurement.ts';
 import type { LaidBand } from './point-bands.ts';
 
+/** A density with the peaks that were found in it. */
+export interface SearchedDensity {
+  readonly density: AveragedDensity;
+  readonly settings: PeakSettings;
+  readonly search: PeakSearch;
+}
+
+export function searchPeaks(
+  density: AveragedDensity,
+  { window, segmentSamples, sampleRateHz }: AveragingSettings,
+  falsePeaksPerSpectrum: number,
+): SearchedDensity {
+  const { hopSamples, averages } = density;
+  const settings = { window, segmentSamples, hopSamples, averages, sampleRateHz, falsePeaksPerSpectrum };
+  return { density, settings, search: findPeaks(density.density, settings) };
+}
+
+/** A band on the lines, with its mean square in each segment by itself. */
+export interface BandSegments {
+  readonly laid: LaidBand;
+  readonly segmentPowers: readonly number[];
+}
+
+/**
+ * Mean squares of a band that could be laid only when all segments were there, from the densities kept of them: of
+ * each by itself, or of each group where there are more segments than are kept.
+ */
+export function groupPowers(segments: SegmentSpectra, { firstLine, weights }: BandWeights): number[] {
+  return Array.from({ length: segments.count }, (_, group) => {
+    const density = segments.group(group);
+    let power = 0;
+    for (let i = 0; i < weights.length; i++) power += weights[i] * density[firstLine + i];
+    return power;
+  });
+}
+
 export interface LevelQuestion {
   readonly point: Point;
   readonly averaging: AveragingSettings;
-  readonly density: AveragedDensity;
-  readonly segmentPowers: readonly (readonly number[])[];
+  readonly searched: SearchedDensity;
   readonly segments: SegmentSpectra | null;
-  readonly bands: readonly LaidBand[];
+  readonly bands: readonly BandSegments[];
   readonly speedHz: number | null;
   /** The true levels are at least these: the recording is clipped or the sensor saturated. */
   readonly atLeast: boolean;
@@ -33,13 +69,11 @@ export interface MeasuredLevels {
 
 /** Band levels with their intervals, peaks with their orders, and how they were averaged. */
 export function levelsOf(question: LevelQuestion): MeasuredLevels {
-  const { point, averaging, density } = question;
-  const { window, segmentSamples, overlapPercent, sampleRateHz } = averaging;
+  const { averaging, searched } = question;
+  const { density, settings, search } = searched;
+  const { window, segmentSamples, overlapPercent } = averaging;
   const { averages, hopSamples } = density;
   const { kernel, effective } = averagesOf(averaging, hopSamples, averages);
-  const { falsePeaksPerSpectrum } = point.analysis;
-  const settings = { window, segmentSamples, hopSamples, averages, sampleRateHz, falsePeaksPerSpectrum };
-  const search = findPeaks(density.density, settings);
   const { peaks } = search;
   const steady = question.segments && steadiness(question.segments, search, settings);
   const tones = peaks.filter((peak) => peak.kind === 'tone');
@@ -54,23 +88,20 @@ export function levelsOf(question: LevelQuestion): MeasuredLevels {
       usedPercent: density.usedPercent,
       segmentSpread: steady?.segmentSpread ?? null,
     },
-    levels: question.bands.map((laid, n) =>
-      levelOf(question, laid, question.segmentPowers[n], kernel, tones),
-    ),
+    levels: question.bands.map((band) => levelOf(question, band, kernel, tones)),
     peaks: peaks.map((peak) => spectralPeak(peak, question.speedHz)),
     unsteady: steady?.unsteady === true ? steady.detail : null,
   };
 }
 
 function levelOf(
-  { point, density, fingerprint, atLeast }: LevelQuestion,
-  { band, fromHz, toHz, weights }: LaidBand,
-  segmentPowers: readonly number[],
+  { point, searched, fingerprint, atLeast }: LevelQuestion,
+  { laid: { band, fromHz, toHz, weights }, segmentPowers }: BandSegments,
   kernel: IntervalKernel,
   tones: readonly Peak[],
 ): BandLevel {
   const { confidencePercent } = point.analysis;
-  const interval = bandInterval(density.density, weights, kernel, tones, confidencePercent);
+  const interval = bandInterval(searched.density.density, weights, kernel, tones, confidencePercent);
   return {
     bandId: band.id,
     fingerprint: seriesFingerprint(fingerprint, band),

@@ -3,11 +3,20 @@ import { longestSegmentSamples, segmentOf } from '../config/meaning.ts';
 import type { Point, SignalSettings } from '../config/site.ts';
 import { siUnit } from '../config/units.ts';
 import type { AveragedDensity, AveragingSettings } from '../signal/averaging.ts';
+import type { LineGrid } from '../signal/band-level.ts';
 import { CleanStretch, type StretchResult } from './clean-stretch.ts';
-import { isWrongRate, settingsFingerprint } from './fingerprint.ts';
-import { levelsOf, type MeasuredLevels } from './measure-levels.ts';
-import type { Measurement, RunningSpeed, WaveformValues } from './measurement.ts';
-import { type LaidBand, layBands, type UnlaidBand } from './point-bands.ts';
+import { settingsFingerprint } from './fingerprint.ts';
+import { measureFindings, unevenStepRatio } from './measure-findings.ts';
+import {
+  type BandSegments,
+  groupPowers,
+  levelsOf,
+  type MeasuredLevels,
+  type SearchedDensity,
+  searchPeaks,
+} from './measure-levels.ts';
+import type { MeasuredSpeed, Measurement, WaveformValues } from './measurement.ts';
+import { type LaidBands, layFixedBands, layOrderBands, lowestVelocityHz } from './point-bands.ts';
 
 /** Looks at the samples as the file holds them, and at what was made of them. */
 export interface SampleCheck {
@@ -16,13 +25,12 @@ export interface SampleCheck {
   /** Its findings. `density`: one-sided, (SI unit of the point)²/Hz; null where not one segment fitted. */
   finish(
     spectrum: Pick<AveragedDensity, 'density' | 'lineSpacingHz' | 'averages'> | null,
+    machine: { readonly speedHz: number | null; readonly lowestVelocityHz: number | null },
   ): readonly QualityFinding[];
 }
 
 export interface MeasureSettings {
   readonly point: Point;
-  /** Nominal running speed of its machine, Hz. */
-  readonly nominalHz: number | null;
   /** Channel as the file names it. */
   readonly channel: string;
   /** The recording's own; null where neither the file nor the site file says it. */
@@ -31,20 +39,9 @@ export interface MeasureSettings {
   readonly siPerSample: number;
   /** The way from sample to SI as it was applied, for the fingerprint. */
   readonly signal: SignalSettings;
-  readonly sidecar: Pick<Sidecar, 'speedRpm' | 'loadPercent' | 'running'> | null;
+  readonly sidecar: Pick<Sidecar, 'loadPercent' | 'running'> | null;
   readonly check: SampleCheck | null;
 }
-
-/** Uncertainty of a speed that a logger wrote down: its tachometer, and drift over the recording. */
-const sidecarSpeedUncertainty = 0.005;
-/** Uncertainty of a nominal speed: induction motors slip by up to about 3 % between no and full load. */
-const nominalSpeedUncertainty = 0.03;
-
-/**
- * A time step that differs from the mean one by more makes a spectrum wrong: a tone at a quarter of the rate then lies
- * a twelfth of a radian off. What comes from the rounding of written times is not counted by the reader.
- */
-export const unevenStepRatio = 0.05;
 
 /**
  * No sensor gives more than this in the SI unit of its quantity, nor less and yet something: a sample beyond is a spoilt
@@ -58,34 +55,31 @@ const leastSample = 1e-60;
  * the sizes. Holds a segment, never the recording. Samples that are not finite, or larger than any sensor gives, end a
  * stretch: the longest is measured and the sample check says so.
  *
+ * In three steps, because the running speed is known only when every channel of the file is read and every spectrum is
+ * there: `add` the samples, `end` them, `finish` with the speed.
+ *
  * Throws where the point asks for what its check must have refused (velocity from displacement).
  */
 export class Measurer {
   readonly #settings: MeasureSettings;
   readonly #averaging: AveragingSettings | null;
-  readonly #laid: readonly LaidBand[];
-  readonly #unlaid: readonly UnlaidBand[];
-  readonly #speed: RunningSpeed | null;
+  readonly #fixed: LaidBands;
   #toSkip: number;
   #stretch: CleanStretch;
   #longest: StretchResult | null = null;
+  #ended: Ended | null = null;
   #scaled = new Float64Array(0);
 
   constructor(settings: MeasureSettings) {
     this.#settings = settings;
     const { point, sampleRateHz } = settings;
-    this.#speed = speedOf(settings);
     this.#averaging = averagingOf(settings);
-    const grid = this.#averaging && {
-      lineSpacingHz: this.#averaging.sampleRateHz / this.#averaging.segmentSamples,
-      lines: this.#averaging.segmentSamples / 2 + 1,
-    };
-    const speedHz = this.#speed && this.#speed.rpm / 60;
-    const bands = grid === null ? { laid: [], unlaid: [] } : layBands(point, grid, speedHz);
-    this.#laid = bands.laid;
-    this.#unlaid = bands.unlaid;
+    const grid = gridOf(this.#averaging);
+    this.#fixed = grid === null ? noBands : layFixedBands(point, grid);
+    // A quantity that a band in orders cannot have is refused before a sample is read, like any other.
+    if (grid !== null) layOrderBands(point, grid, null);
     this.#toSkip = Math.round(point.analysis.skipStartS * (sampleRateHz ?? 0));
-    this.#stretch = new CleanStretch(this.#averaging, this.#laid);
+    this.#stretch = this.#newStretch();
   }
 
   /** Takes the next samples as the file holds them; the array may be used again by the caller. */
@@ -111,22 +105,46 @@ export class Measurer {
     this.#stretch.add(scaled.subarray(from));
   }
 
-  /**
-   * The measurement. `end`: how the samples ended; nothing can be added afterwards. `onDensity` is shown the density,
-   * (SI unit)²/Hz, as the levels were made from it; a measurement keeps it in single precision.
-   */
-  finish(
-    end: Pick<SamplesEnd, 'timeStepDeviation'>,
-    onDensity: (density: Float64Array) => void = () => {},
-  ): Measurement {
+  /** `end`: how the samples ended. The spectrum with its peaks, where a running speed may be looked for; null: none. */
+  end({ timeStepDeviation }: Pick<SamplesEnd, 'timeStepDeviation'>): SearchedDensity | null {
     this.#endStretch();
+    const isUneven = timeStepDeviation !== null && timeStepDeviation > unevenStepRatio;
+    const density = isUneven ? null : (this.#longest?.density ?? null);
+    const { falsePeaksPerSpectrum } = this.#settings.point.analysis;
+    const searched =
+      density === null || this.#averaging === null
+        ? null
+        : searchPeaks(density, this.#averaging, falsePeaksPerSpectrum);
+    this.#ended = { timeStepDeviation, searched };
+    return searched;
+  }
+
+  /**
+   * The measurement, after `end`. `onDensity` is shown the density, (SI unit)²/Hz, as the levels were made from it; a
+   * measurement keeps it in single precision.
+   */
+  finish(speed: MeasuredSpeed | null, onDensity: (density: Float64Array) => void = () => {}): Measurement {
+    if (this.#ended === null) throw new Error('a measurement is finished before its samples are ended');
+    const { timeStepDeviation, searched } = this.#ended;
     const { point, sampleRateHz, channel, sidecar, check } = this.#settings;
     const result = this.#longest;
-    const uneven = end.timeStepDeviation !== null && end.timeStepDeviation > unevenStepRatio;
-    const spectrum = uneven || this.#averaging === null ? null : (result?.density ?? null);
-    const found = check?.finish(spectrum) ?? [];
-    const levels = this.#levels(spectrum === null ? null : result, found);
+    const speedHz = speed && speed.rpm / 60;
+    const spectrum = searched?.density ?? null;
+    const machine = { speedHz, lowestVelocityHz: lowestVelocityHz(point, speedHz) };
+    const found = check?.finish(spectrum, machine) ?? [];
+    const grid = gridOf(this.#averaging);
+    const orders = grid === null ? noBands : layOrderBands(point, grid, speedHz);
+    const levels = searched && this.#levels(searched, orders, speedHz, found);
     if (spectrum !== null) onDensity(spectrum.density);
+    const own = measureFindings({
+      point,
+      sampleRateHz,
+      samples: result?.samples ?? 0,
+      timeStepDeviation,
+      hasSpectrum: searched !== null,
+      unlaid: [...this.#fixed.unlaid, ...orders.unlaid],
+      unsteady: levels?.unsteady ?? null,
+    });
     return {
       machineId: point.machineId,
       pointId: point.id,
@@ -135,7 +153,7 @@ export class Measurer {
       unit: point.quantity === 'other' ? point.signal.samplesIn.text : siUnit(point.quantity).text,
       sampleRateHz: sampleRateHz ?? 0,
       durationS: result === null || sampleRateHz === null ? 0 : result.samples / sampleRateHz,
-      speed: this.#speed,
+      speed,
       loadPercent: sidecar?.loadPercent ?? null,
       runningSaid: sidecar?.running ?? null,
       waveform: result === null || result.samples === 0 ? null : plainWaveform(result.waveform),
@@ -146,22 +164,33 @@ export class Measurer {
         lineSpacingHz: spectrum.lineSpacingHz,
         density: Float32Array.from(spectrum.density),
       },
-      quality: [...found, ...this.#ownFindings(uneven, end.timeStepDeviation, spectrum !== null, levels)],
+      quality: [...found, ...own],
       settingsFingerprint: settingsFingerprint(this.#fingerprintSettings(), point.bands),
     };
   }
 
-  #levels(result: StretchResult | null, found: readonly QualityFinding[]): MeasuredLevels | null {
-    if (result?.density == null || this.#averaging === null) return null;
+  #levels(
+    searched: SearchedDensity,
+    orders: LaidBands,
+    speedHz: number | null,
+    found: readonly QualityFinding[],
+  ): MeasuredLevels | null {
+    const result = this.#longest;
+    if (result === null || this.#averaging === null) return null;
     const { point } = this.#settings;
+    const fixed = this.#fixed.laid.map((laid, n) => ({ laid, segmentPowers: result.segmentPowers[n] }));
+    const ordered = orders.laid.map((laid) => ({
+      laid,
+      segmentPowers: result.segments === null ? [] : groupPowers(result.segments, laid.weights),
+    }));
+    const place = ({ laid }: BandSegments) => point.bands.indexOf(laid.band);
     return levelsOf({
       point,
       averaging: this.#averaging,
-      density: result.density,
-      segmentPowers: result.segmentPowers,
+      searched,
       segments: result.segments,
-      bands: this.#laid,
-      speedHz: this.#speed && this.#speed.rpm / 60,
+      bands: [...fixed, ...ordered].sort((a, b) => place(a) - place(b)),
+      speedHz,
       atLeast: found.some(({ flag }) => flag === 'clipped' || flag === 'saturated'),
       fingerprint: this.#fingerprintSettings(),
     });
@@ -173,50 +202,30 @@ export class Measurer {
     return { point, signal, sampleRateHz: sampleRateHz ?? 0, segmentSamples };
   }
 
+  #newStretch(): CleanStretch {
+    return new CleanStretch({ averaging: this.#averaging, bands: this.#fixed.laid });
+  }
+
   /** Keeps the longest stretch; the first of two equal ones. */
   #endStretch(): void {
     if (this.#stretch.samples === 0) return;
     if (this.#stretch.samples > (this.#longest?.samples ?? 0)) this.#longest = this.#stretch.finish();
-    this.#stretch = new CleanStretch(this.#averaging, this.#laid);
+    this.#stretch = this.#newStretch();
   }
+}
 
-  #ownFindings(
-    uneven: boolean,
-    deviation: number | null,
-    measured: boolean,
-    levels: MeasuredLevels | null,
-  ): QualityFinding[] {
-    const { point, sampleRateHz } = this.#settings;
-    const found: QualityFinding[] = [];
-    const configured = point.recordings.sampleRateHz;
-    if (sampleRateHz === null) {
-      const detail = 'neither the file nor the site file says the sample rate; set sample_rate';
-      return [{ flag: 'wrong-rate', detail }];
-    }
-    if (isWrongRate(sampleRateHz, configured)) {
-      const detail = `recorded at ${sampleRateHz} Hz, the site file says ${configured} Hz; analysed at the recording's own`;
-      found.push({ flag: 'wrong-rate', detail });
-    }
-    if (uneven) {
-      const percent = Math.round(100 * (deviation ?? 0));
-      const detail = `time steps differ from their mean by up to ${percent} %; waveform values only`;
-      return [...found, { flag: 'uneven-time', detail }];
-    }
-    if (!measured) return [...found, this.#tooShort(sampleRateHz)];
-    for (const { flag, reason } of this.#unlaid) found.push({ flag, detail: reason });
-    if (levels?.unsteady != null) found.push({ flag: 'unsteady', detail: levels.unsteady });
-    return found;
-  }
+/** How the samples ended, and the peaks of their spectrum. */
+interface Ended {
+  readonly timeStepDeviation: number | null;
+  readonly searched: SearchedDensity | null;
+}
 
-  #tooShort(sampleRateHz: number): QualityFinding {
-    const needed = segmentOf(this.#settings.point.analysis, sampleRateHz);
-    const has = ((this.#longest?.samples ?? 0) / sampleRateHz).toPrecision(3);
-    const wants = (needed / sampleRateHz).toPrecision(3);
-    return {
-      flag: 'too-short',
-      detail: `${has} s without a gap, one segment needs ${wants} s; waveform values only. Record longer or widen line_spacing`,
-    };
-  }
+const noBands: LaidBands = { laid: [], unlaid: [] };
+
+function gridOf(averaging: AveragingSettings | null): LineGrid | null {
+  if (averaging === null) return null;
+  const { sampleRateHz, segmentSamples } = averaging;
+  return { lineSpacingHz: sampleRateHz / segmentSamples, lines: segmentSamples / 2 + 1 };
 }
 
 function averagingOf({ point, sampleRateHz }: MeasureSettings): AveragingSettings | null {
@@ -225,17 +234,6 @@ function averagingOf({ point, sampleRateHz }: MeasureSettings): AveragingSetting
   if (segmentSamples < 8 || segmentSamples > longestSegmentSamples) return null;
   const { window, overlapPercent } = point.analysis;
   return { window, overlapPercent, segmentSamples, sampleRateHz };
-}
-
-function speedOf({ sidecar, nominalHz }: MeasureSettings): RunningSpeed | null {
-  if (sidecar?.speedRpm != null) {
-    const rpm = sidecar.speedRpm;
-    return { rpm, origin: 'sidecar', uncertaintyRpm: sidecarSpeedUncertainty * Math.abs(rpm) };
-  }
-  if (nominalHz === null) return null;
-  // The site file says r/min; what the way through hertz adds in the last digits is taken off again.
-  const rpm = Number((60 * nominalHz).toPrecision(12));
-  return { rpm, origin: 'nominal', uncertaintyRpm: nominalSpeedUncertainty * rpm };
 }
 
 /** A flat signal has no shape: crest factor, kurtosis and skewness are given as 0, so that no NaN is stored. */

@@ -16,7 +16,7 @@ export interface Measurement {
   readonly sampleRateHz: number;
   /** Length of the stretch that was analysed, in seconds. */
   readonly durationS: number;
-  readonly speed: RunningSpeed | null;
+  readonly speed: MeasuredSpeed | null;
   readonly loadPercent: number | null;
   /** The sidecar's own word; null where it has none. */
   readonly runningSaid: boolean | null;
@@ -31,10 +31,32 @@ export interface Measurement {
   readonly settingsFingerprint: string;
 }
 
+/** Where a running speed comes from; best first. */
+export type SpeedOrigin = 'sidecar' | 'pulses' | 'spectrum' | 'nominal';
+
 export interface RunningSpeed {
+  /** Mean over the recording. */
   readonly rpm: number;
-  readonly origin: 'sidecar' | 'nominal';
+  readonly origin: SpeedOrigin;
+  /** The true mean speed lies this near in about 95 of 100 recordings. */
   readonly uncertaintyRpm: number;
+}
+
+/** A recording's own running speed, with what the recording itself says of it; the ledger keeps a `RunningSpeed`. */
+export interface MeasuredSpeed extends RunningSpeed {
+  /** False where the recording contradicts a speed that somebody declared: no line may be named by it. */
+  readonly usableForNames: boolean;
+  /** Slowest and fastest within the recording, from pulses; null where only a mean is known. */
+  readonly rangeRpm: { readonly lowest: number; readonly highest: number } | null;
+  /** The speed at which the spectra of the machine's points hold a family of shaft harmonics; null: none, or not looked for. */
+  readonly inSpectrum: SpeedInSpectrum | null;
+}
+
+export interface SpeedInSpectrum {
+  readonly rpm: number;
+  readonly uncertaintyRpm: number;
+  /** Sum over the harmonics of how far each stands out of the noise, dB. */
+  readonly score: number;
 }
 
 export interface WaveformValues {

@@ -17,18 +17,46 @@ export interface UnlaidBand {
   readonly reason: string;
 }
 
+export interface LaidBands {
+  readonly laid: readonly LaidBand[];
+  readonly unlaid: readonly UnlaidBand[];
+}
+
+/** Lays those of the point's bands that are in Hz onto the lines. Throws like `layBands`. */
+export function layFixedBands(point: Pick<Point, 'quantity' | 'bands'>, grid: LineGrid): LaidBands {
+  return layBands(point, grid, null, (band) => !band.inOrders);
+}
+
 /**
- * Lays the point's bands onto the lines; bands in orders follow the running speed (Hz; null or 0: unknown or at a
- * standstill). Throws where a band's quantity cannot be had from the point's, which the site file's check refuses.
+ * Lays the point's bands in orders of the running speed (Hz; null or 0: unknown or at a standstill) onto the lines.
+ * Throws like `layBands`.
  */
-export function layBands(
+export function layOrderBands(
   point: Pick<Point, 'quantity' | 'bands'>,
   grid: LineGrid,
   speedHz: number | null,
-): { readonly laid: readonly LaidBand[]; readonly unlaid: readonly UnlaidBand[] } {
+): LaidBands {
+  return layBands(point, grid, speedHz, (band) => band.inOrders);
+}
+
+/** Lower edge of the point's lowest band in velocity, Hz; null where it has none, or none that can be laid. */
+export function lowestVelocityHz({ bands }: Pick<Point, 'bands'>, speedHz: number | null): number | null {
+  const edges = bands
+    .filter(({ quantity }) => quantity === 'velocity')
+    .flatMap(({ from, inOrders }) => (inOrders ? (speedHz ? [from * speedHz] : []) : [from]));
+  return edges.length === 0 ? null : Math.min(...edges);
+}
+
+/** Throws where a band's quantity cannot be had from the point's, which the site file's check refuses. */
+function layBands(
+  point: Pick<Point, 'quantity' | 'bands'>,
+  grid: LineGrid,
+  speedHz: number | null,
+  wanted: (band: Band) => boolean,
+): LaidBands {
   const laid: LaidBand[] = [];
   const unlaid: UnlaidBand[] = [];
-  for (const band of point.bands) {
+  for (const band of point.bands.filter(wanted)) {
     const integrations = integrationsBetween(point.quantity, band.quantity);
     if (typeof integrations !== 'number') throw new Error(`band ${band.id}: ${integrations.reason}`);
     if (band.inOrders && !speedHz) {

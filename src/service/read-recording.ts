@@ -5,14 +5,17 @@ import {
   type RecordingHeader,
   type RecordingReader,
   type Refusal,
+  type SampleBlock,
   type SamplesEnd,
   type Sidecar,
 } from '../acquisition/recording.ts';
 import { SampleQuality } from '../acquisition/sample-quality.ts';
 import { appliedSignal, scalingOf } from '../acquisition/scaling.ts';
+import { nothingSaid, type SampleLayout, sameLayout } from '../config/sample-layout.ts';
 import { type Point, pointPath } from '../config/site.ts';
 import { largestSample, Measurer } from '../manipulation/measure.ts';
 import type { Measurement } from '../manipulation/measurement.ts';
+import { runningSpeed } from '../manipulation/running-speed.ts';
 
 /** A point that takes part in a recording, with what its machine adds. */
 export interface PointTask {
@@ -43,14 +46,17 @@ export function readRecording(
   points: readonly PointTask[],
   onDensity: (index: number, density: Float64Array) => void = () => {},
 ): RecordingRead | Refusal {
-  const { fed, missing } = measurers(header, sidecar, points);
-  const end = feed(source, reader, header, fed);
+  const layout = layoutOf(points);
+  const { fed, missing } = measurers(header, sidecar, points, layout);
+  const end = feed(reader.samples(source, header, layout), fed);
   if (isRefusal(end)) return end;
+  for (const { measurer } of fed) measurer.end(end);
+  const sidecarRpm = sidecar?.speedRpm ?? null;
   const quality: QualityFinding[] =
     end.truncated === null ? [] : [{ flag: 'too-short', detail: `the file is cut short: ${end.truncated}` }];
   return {
-    measurements: fed.map(({ measurer }, index) =>
-      measurer.finish(end, (density) => onDensity(index, density)),
+    measurements: fed.map(({ measurer, task: { nominalHz } }, index) =>
+      measurer.finish(runningSpeed({ sidecarRpm, nominalHz }), (density) => onDensity(index, density)),
     ),
     missing,
     quality,
@@ -59,7 +65,13 @@ export function readRecording(
   };
 }
 
+/** What the points of a file say of its samples' place: the first one's word, with which the others agree. */
+export function layoutOf(points: readonly PointTask[]): SampleLayout {
+  return points[0]?.point.recordings.layout ?? nothingSaid;
+}
+
 interface Fed {
+  readonly task: PointTask;
   readonly index: number;
   readonly measurer: Measurer;
   readonly rateHz: number | null;
@@ -69,10 +81,16 @@ function measurers(
   header: RecordingHeader,
   sidecar: Sidecar | null,
   points: readonly PointTask[],
+  layout: SampleLayout,
 ): { readonly fed: readonly Fed[]; readonly missing: readonly string[] } {
   const fed: Fed[] = [];
   const missing: string[] = [];
-  for (const { point, nominalHz } of points) {
+  for (const task of points) {
+    const { point } = task;
+    if (!sameLayout(point.recordings.layout ?? nothingSaid, layout)) {
+      missing.push(`${pointPath(point)}: ${otherLayout(points[0] as PointTask, point)}`);
+      continue;
+    }
     const index = channelIndex(header, point.channel);
     if (index === null) {
       missing.push(`${pointPath(point)}: ${noSuchChannel(header, point.channel)}`);
@@ -86,10 +104,8 @@ function measurers(
       continue;
     }
     const rateHz = header.sampleRateHz ?? point.recordings.sampleRateHz;
-    const speedHz = sidecar?.speedRpm == null ? nominalHz : sidecar.speedRpm / 60;
     const measurer = new Measurer({
       point,
-      nominalHz,
       channel,
       sampleRateHz: rateHz,
       siPerSample: scaling.siPerSample,
@@ -100,30 +116,18 @@ function measurers(
         sampleRateHz: rateHz,
         quantity: point.quantity,
         voltsPerSample: scaling.voltsPerSample,
-        lowestVelocityHz: lowestVelocityHz(point, speedHz),
-        speedHz,
         largest: largestSample / scaling.siPerSample,
       }),
     });
-    fed.push({ index, measurer, rateHz });
+    fed.push({ task, index, measurer, rateHz });
   }
   return { fed, missing };
 }
 
-function lowestVelocityHz(point: Point, speedHz: number | null): number | null {
-  const edges = point.bands
-    .filter(({ quantity }) => quantity === 'velocity')
-    .flatMap(({ from, inOrders }) => (inOrders ? (speedHz === null ? [] : [from * speedHz]) : [from]));
-  return edges.length === 0 ? null : Math.min(...edges);
-}
-
 function feed(
-  source: ByteSource,
-  reader: RecordingReader,
-  header: RecordingHeader,
+  blocks: Generator<SampleBlock, SamplesEnd | Refusal>,
   fed: readonly Fed[],
 ): SamplesEnd | Refusal {
-  const blocks = reader.samples(source, header);
   for (;;) {
     const next = blocks.next();
     if (next.done) return next.value;
@@ -134,6 +138,11 @@ function feed(
 function channelIndex(header: RecordingHeader, channel: number | string): number | null {
   const index = typeof channel === 'number' ? channel - 1 : header.channelNames.indexOf(channel);
   return index >= 0 && index < header.channelNames.length ? index : null;
+}
+
+function otherLayout({ point: first }: PointTask, point: Point): string {
+  const asks = (one: Point) => one.recordings.layout?.dataset ?? 'no data set of its own';
+  return `the file is read as ${pointPath(first)} says (${asks(first)}), this point says otherwise (${asks(point)}); give all points of one file the same dataset, sample_rate_attribute and channels_in: a group holds several channels`;
 }
 
 function noSuchChannel(header: RecordingHeader, channel: number | string): string {

@@ -2,11 +2,14 @@ import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
 import type { QualityFlag } from '../../src/acquisition/recording.ts';
 import { SampleQuality, type SampleQualitySettings } from '../../src/acquisition/sample-quality.ts';
+import type { MachineLook } from '../../src/acquisition/spectrum-quality.ts';
 import { averageDensity } from '../../src/signal/averaging.ts';
 import { gaussianNoise, seededRandom } from '../signal/random.ts';
 import { healthySignal, quantised, sampleRateHz } from './signals.ts';
 
-const usual: SampleQualitySettings = {
+type Settings = SampleQualitySettings & MachineLook;
+
+const usual: Settings = {
   samples: 'integer',
   sampleRateHz,
   quantity: 'acceleration',
@@ -15,7 +18,7 @@ const usual: SampleQualitySettings = {
   speedHz: null,
 };
 
-function findings(samples: Float64Array, settings: Partial<SampleQualitySettings> = {}) {
+function findings(samples: Float64Array, settings: Partial<Settings> = {}) {
   const quality = new SampleQuality({ ...usual, ...settings });
   quality.add(samples);
   const finite = samples.every(Number.isFinite);
@@ -25,10 +28,10 @@ function findings(samples: Float64Array, settings: Partial<SampleQualitySettings
     overlapPercent: 50,
     sampleRateHz,
   });
-  return quality.finish(spectrum);
+  return quality.finish(spectrum, { ...usual, ...settings });
 }
 
-const flags = (samples: Float64Array, settings: Partial<SampleQualitySettings> = {}): QualityFlag[] =>
+const flags = (samples: Float64Array, settings: Partial<Settings> = {}): QualityFlag[] =>
   findings(samples, settings).map(({ flag }) => flag);
 
 const noise = (seed: number, deviation = 0.1) =>
@@ -219,7 +222,7 @@ describe('the sample quality', () => {
     samples.fill(0.125, 500, 540);
     const whole = new SampleQuality(usual);
     whole.add(quantised(samples));
-    const wanted = whole.finish(null);
+    const wanted = whole.finish(null, usual);
     expect(wanted.length).toBeGreaterThan(2);
     fc.assert(
       fc.property(fc.array(fc.integer({ min: 1, max: 5000 }), { minLength: 1, maxLength: 20 }), (sizes) => {
@@ -230,7 +233,7 @@ describe('the sample quality', () => {
           quality.add(all.subarray(at, at + size));
           at += size;
         }
-        expect(quality.finish(null)).toEqual(wanted);
+        expect(quality.finish(null, usual)).toEqual(wanted);
       }),
       { seed: 20261201, numRuns: 30 },
     );
@@ -240,6 +243,6 @@ describe('the sample quality', () => {
     const quality = new SampleQuality(usual);
     const block = Float64Array.from({ length: 3_000_000 }, (_, n) => ((n >> 2) % 2) * 0.5);
     quality.add(block);
-    expect(quality.finish(null).map(({ flag }) => flag)).not.toContain('not-a-number');
+    expect(quality.finish(null, usual).map(({ flag }) => flag)).not.toContain('not-a-number');
   });
 });

@@ -7,7 +7,7 @@ import { wavReader } from '../../src/acquisition/read-wav.ts';
 import { isRefusal } from '../../src/acquisition/recording.ts';
 import { SampleQuality } from '../../src/acquisition/sample-quality.ts';
 import type { Point } from '../../src/config/site.ts';
-import { layBands } from '../../src/manipulation/point-bands.ts';
+import { layFixedBands } from '../../src/manipulation/point-bands.ts';
 import { openRegularFile } from '../../src/service/file-source.ts';
 import work from '../../src/service/recording-worker.ts';
 import { type AveragedDensity, averageDensity } from '../../src/signal/averaging.ts';
@@ -27,7 +27,7 @@ const segmentSamples = 16_384;
 const hop = segmentSamples / 2;
 
 /** Every stage of reading a recording by itself, then all of them as the worker thread does them. */
-export function stageTimes(bytes: readonly Uint8Array[]): StageTimes {
+export async function stageTimes(bytes: readonly Uint8Array[]): Promise<StageTimes> {
   const folder = mkdtempSync(join(tmpdir(), 'humledger-bench-'));
   try {
     const paths = bytes.map((file, index) => {
@@ -36,7 +36,7 @@ export function stageTimes(bytes: readonly Uint8Array[]): StageTimes {
       return path;
     });
     const point = makeSite(folder).site.machines[0]?.points[0] as Point;
-    return measured(paths, point);
+    return await measured(paths, point);
   } finally {
     rmSync(folder, { recursive: true });
   }
@@ -50,27 +50,27 @@ interface Prepared {
   readonly search: PeakSearch;
 }
 
-function measured(paths: readonly string[], point: Point): StageTimes {
+async function measured(paths: readonly string[], point: Point): Promise<StageTimes> {
   const files = paths.map(prepared);
   const { averages } = (files[0] as Prepared).averaged;
   const kernel = makeIntervalKernel('hann', segmentSamples, hop, averages);
   const grid = { lineSpacingHz: sampleRateHz / segmentSamples, lines: hop + 1 };
-  const { laid } = layBands(point, grid, null);
+  const { laid } = layFixedBands(point, grid);
   const each = (stage: (file: Prepared) => unknown) => cpuMsEach(files, stage);
   return {
-    'read, hash, decode': each(({ path }) => readSamples(path)),
-    'sample quality': each(({ samples }) => checkSamples(samples)),
-    'waveform values': each(({ samples }) => waveformValues(samples)),
-    averaging: each(({ samples }) => averageDensity(samples, averaging)),
+    'read, hash, decode': await each(({ path }) => readSamples(path)),
+    'sample quality': await each(({ samples }) => checkSamples(samples)),
+    'waveform values': await each(({ samples }) => waveformValues(samples)),
+    averaging: await each(({ samples }) => averageDensity(samples, averaging)),
     'each segment kept':
       each(({ samples }) => segmentsOf(samples)) - each(({ samples }) => averageDensity(samples, averaging)),
-    peaks: each(({ averaged }) => findPeaks(averaged.density, shapeOf(averages))),
-    steadiness: each(({ segments, search }) => steadiness(segments, search, shapeOf(averages))),
-    'six bands with intervals': each(({ averaged, search }) => {
+    peaks: await each(({ averaged }) => findPeaks(averaged.density, shapeOf(averages))),
+    steadiness: await each(({ segments, search }) => steadiness(segments, search, shapeOf(averages))),
+    'six bands with intervals': await each(({ averaged, search }) => {
       const tones = search.peaks.filter(({ kind }) => kind === 'tone');
       for (const { weights } of laid) bandInterval(averaged.density, weights, kernel, tones);
     }),
-    'whole task of the thread': each(({ path }) => measureTask(path, point)),
+    'whole task of the thread': await each(({ path }) => measureTask(path, point)),
   };
 }
 
@@ -119,29 +119,30 @@ function checkSamples(samples: Float64Array): void {
     sampleRateHz,
     quantity: 'acceleration',
     voltsPerSample: 5,
-    lowestVelocityHz: 10,
-    speedHz: 1480 / 60,
   });
   check.add(samples);
-  check.finish(null);
+  check.finish(null, { lowestVelocityHz: 10, speedHz: 1480 / 60 });
 }
 
-function measureTask(path: string, point: Point): void {
+async function measureTask(path: string, point: Point): Promise<void> {
   const file = openRegularFile(path, Number.MAX_SAFE_INTEGER);
   if ('reason' in file) throw new Error(file.reason);
   file.close();
   const points = [{ point, nominalHz: 1480 / 60 }];
   const largestBytes = Number.MAX_SAFE_INTEGER;
-  const answer = work({ task: 'measure', path, largestBytes, seen: file.first, sidecar: null, points });
+  const answer = await work({ task: 'measure', path, largestBytes, seen: file.first, sidecar: null, points });
   if (answer.kind !== 'measured') throw new Error(`${path}: ${answer.kind}`);
 }
 
 /** CPU time, in the best of several rounds over all files: both keep out what else the machine does meanwhile. */
-function cpuMsEach(files: readonly Prepared[], stage: (file: Prepared) => unknown): number {
+async function cpuMsEach(
+  files: readonly Prepared[],
+  stage: (file: Prepared) => unknown,
+): Promise<number> {
   let best = Number.POSITIVE_INFINITY;
   for (let round = 0; round < 6; round++) {
     const before = process.cpuUsage();
-    for (const file of files) stage(file);
+    for (const file of files) await stage(file);
     const { user, system } = process.cpuUsage(before);
     best = Math.min(best, (user + system) / 1000 / files.length);
   }

@@ -6,6 +6,7 @@ import {
   machineStep,
   readingOf,
 } from '../../src/detection/machine-state.ts';
+import type { SpeedOrigin } from '../../src/manipulation/measurement.ts';
 import { hourMs, levelOf, machineWith, measurementWith, minuteMs } from './site-parts.ts';
 
 const bySpeed = machineWith({ running: { by: 'speed', aboveRpm: 300 } });
@@ -29,13 +30,25 @@ function played(
 }
 
 describe('what a recording says of its machine', () => {
-  const speed = (rpm: number, origin: 'sidecar' | 'nominal') =>
-    measurementWith({ speed: { rpm, origin, uncertaintyRpm: 1 } });
+  const speed = (rpm: number, origin: SpeedOrigin) =>
+    measurementWith({
+      speed: {
+        rpm,
+        origin,
+        uncertaintyRpm: 1,
+        usableForNames: true,
+        rangeRpm: null,
+        inSpectrum: null,
+      },
+    });
 
-  it('by speed: over the threshold it runs; a nominal speed says nothing', () => {
+  it('by speed: over the threshold it runs; a nominal speed or shaft lines say nothing', () => {
     expect(readingOf(bySpeed.running, speed(301, 'sidecar'))).toBe(true);
     expect(readingOf(bySpeed.running, speed(300, 'sidecar'))).toBe(false);
+    expect(readingOf(bySpeed.running, speed(301, 'pulses'))).toBe(true);
+    expect(readingOf(bySpeed.running, speed(290, 'pulses'))).toBe(false);
     expect(readingOf(bySpeed.running, speed(2970, 'nominal'))).toBeNull();
+    expect(readingOf(bySpeed.running, speed(2970, 'spectrum'))).toBeNull();
     expect(readingOf(bySpeed.running, measurementWith())).toBeNull();
   });
 

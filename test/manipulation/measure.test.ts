@@ -5,14 +5,25 @@ import { scalingOf } from '../../src/acquisition/scaling.ts';
 import type { Point } from '../../src/config/site.ts';
 import { Measurer, type MeasureSettings } from '../../src/manipulation/measure.ts';
 import { exceededBy80Percent } from '../../src/manipulation/measure-levels.ts';
-import type { Measurement } from '../../src/manipulation/measurement.ts';
+import type { MeasuredSpeed, Measurement } from '../../src/manipulation/measurement.ts';
+import { runningSpeed } from '../../src/manipulation/running-speed.ts';
 import { gaussianNoise, seededRandom } from '../signal/random.ts';
 import { sines, testBand, testPoint, testSettings } from './point.ts';
 
-function measure(samples: Float64Array, point: Point, changes: Partial<MeasureSettings> = {}): Measurement {
+function measure(
+  samples: Float64Array,
+  point: Point,
+  changes: Partial<MeasureSettings> = {},
+  speed: MeasuredSpeed | null = null,
+): Measurement {
   const measurer = new Measurer(testSettings(point, changes));
   measurer.add(samples);
-  return measurer.finish({ timeStepDeviation: null });
+  return finished(measurer, speed);
+}
+
+function finished(measurer: Measurer, speed: MeasuredSpeed | null = null): Measurement {
+  measurer.end({ timeStepDeviation: null });
+  return measurer.finish(speed);
 }
 
 const level = (measurement: Measurement, bandId: string): number => {
@@ -98,15 +109,16 @@ describe('band levels of known signals', () => {
       [1, 18, 0],
       [3, 30, 0],
     ]);
-    const nominal = measure(samples, testPoint({ bands }), { nominalHz: 20 });
+    const point = testPoint({ bands });
+    const nominal = measure(samples, point, {}, runningSpeed({ sidecarRpm: null, nominalHz: 20 }));
     expect(nominal.speed).toMatchObject({
       rpm: 1200,
       origin: 'nominal',
       uncertaintyRpm: expect.closeTo(36, 9),
     });
     expect(nominal.levels[0]).toMatchObject({ fromHz: 16, toHz: 24 });
-    const sidecar = { speedRpm: 1800, loadPercent: 60, running: true };
-    const told = measure(samples, testPoint({ bands }), { nominalHz: 20, sidecar });
+    const sidecar = { loadPercent: 60, running: true };
+    const told = measure(samples, point, { sidecar }, runningSpeed({ sidecarRpm: 1800, nominalHz: 20 }));
     expect(told).toMatchObject({
       loadPercent: 60,
       runningSaid: true,
@@ -217,8 +229,6 @@ describe('a recording that cannot be measured whole', () => {
       sampleRateHz: fs,
       quantity: 'acceleration',
       voltsPerSample: null,
-      lowestVelocityHz: null,
-      speedHz: null,
     });
     const measurement = measure(samples, testPoint(), { check });
     const wanted = measure(clean, testPoint());
@@ -254,7 +264,8 @@ describe('a recording that cannot be measured whole', () => {
     const samples = sines(5, fs, [[1, 100, 0]]);
     const measurer = new Measurer(testSettings(testPoint()));
     measurer.add(samples);
-    const uneven = measurer.finish({ timeStepDeviation: 0.5 });
+    expect(measurer.end({ timeStepDeviation: 0.5 })).toBeNull();
+    const uneven = measurer.finish(null);
     expect(uneven).toMatchObject({ levels: [], spectrum: null, averaging: null });
     expect(flags(uneven)).toEqual(['uneven-time']);
     const noRate = measure(samples, testPoint(), { sampleRateHz: null });
@@ -302,7 +313,7 @@ describe('a measurement', () => {
           block.fill(1e9);
           at += size;
         }
-        expect(measurer.finish({ timeStepDeviation: null })).toEqual(wanted);
+        expect(finished(measurer)).toEqual(wanted);
       }),
       { seed: 20261201, numRuns: 15 },
     );
@@ -318,7 +329,7 @@ describe('a measurement', () => {
     const after = process.memoryUsage();
     const grown = after.arrayBuffers - before.arrayBuffers;
     expect(grown).toBeLessThan(16 * 2 ** 20);
-    expect(measurer.finish({ timeStepDeviation: null }).averaging?.averages).toBeGreaterThan(8000);
+    expect(finished(measurer).averaging?.averages).toBeGreaterThan(8000);
   });
 
   it('takes no memory for a segment that the recording does not fill', () => {
@@ -326,6 +337,6 @@ describe('a measurement', () => {
     const absurd = new Measurer(testSettings(testPoint(), { sampleRateHz: 3e6 }));
     absurd.add(new Float64Array(1000));
     expect(process.memoryUsage().arrayBuffers - before).toBeLessThan(2 ** 20);
-    expect(flags(absurd.finish({ timeStepDeviation: null }))).toContain('too-short');
+    expect(flags(finished(absurd))).toContain('too-short');
   });
 });

@@ -50,7 +50,6 @@ export function testBand(id: string, quantity: Quantity, from: number, to: numbe
 export function testSettings(point: Point, changes: Partial<MeasureSettings> = {}): MeasureSettings {
   return {
     point,
-    nominalHz: null,
     channel: '1',
     sampleRateHz: 5120,
     siPerSample: 1,

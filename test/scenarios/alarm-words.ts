@@ -1,6 +1,7 @@
 import { type QualityFlag, qualityFlags } from '../../src/acquisition/recording.ts';
 import type { Delay, Limit, RunningRule } from '../../src/config/site.ts';
 import type { BandLevel, Measurement } from '../../src/manipulation/measurement.ts';
+import { runningSpeed } from '../../src/manipulation/running-speed.ts';
 import { hourMs, levelOf, limitWith, measurementWith } from '../detection/site-parts.ts';
 
 /** The words of alarm-scenario.ts, as parts of a recording, a limit, a running rule. */
@@ -16,7 +17,7 @@ export function measurementOf(parts: readonly string[]): Measurement {
     else if (part.startsWith('80 % over ')) level = { ...level, exceededBy80Percent: number };
     else if (part.startsWith('averages ')) averages = number;
     else if (part === 'at least') level = { ...level, atLeast: true };
-    else if (part.startsWith('speed ')) more.speed = { rpm: number, origin: 'sidecar', uncertaintyRpm: 1 };
+    else if (part.startsWith('speed ')) more.speed = runningSpeed({ sidecarRpm: number, nominalHz: null });
     else if (part.startsWith('said ')) more.runningSaid = part === 'said running';
     else if (part === 'too short') more.waveform = null;
     else if (flag !== undefined) flags.push(flag);

@@ -95,6 +95,7 @@ test('a measurement comes back from the ledger as it went in', async () => {
   const stored = await at.ledger.read((reader) => newestMeasurement(reader, at.ids.pointId('pump', 'de')));
   expect(stored).toMatchObject({
     ...plain,
+    speed: { rpm: 2970, origin: 'nominal', uncertaintyRpm: 60 },
     id,
     usedMs: 1000,
     machineState: 'running',

@@ -1,5 +1,6 @@
 import { plain } from '../../advisory/escape.ts';
 import { bareLevel, unitText } from '../../advisory/level-words.ts';
+import { speedOrigin } from '../../advisory/wording.ts';
 import { printFrequency, printNumber, printSeconds } from '../../config/print-value.ts';
 import type { Band } from '../../config/site.ts';
 import type { Averaging, Measurement, SpectralPeak, WaveformValues } from '../../manipulation/measurement.ts';
@@ -49,8 +50,6 @@ const originWords = {
   'modification-time': 'the time of its last change, for want of a better one',
 } as const;
 
-const speedWords = { sidecar: 'from the sidecar', nominal: 'nominal, not measured' } as const;
-
 function channelText(
   measurement: Measurement,
   bands: readonly Band[],
@@ -64,7 +63,7 @@ function channelText(
   if (speed !== null) {
     facts.push([
       'speed',
-      `${printNumber(speed.rpm, 4)} rpm ± ${printNumber(speed.uncertaintyRpm, 2)}, ${speedWords[speed.origin]}`,
+      `${printNumber(speed.rpm, 4)} rpm ± ${printNumber(speed.uncertaintyRpm, 2)}, ${speedOrigin[speed.origin]}`,
     ]);
   }
   facts.push([
