@@ -1,50 +1,93 @@
-import type { BuiltBand, BuiltBands, ListLayers } from './build-bands.ts';
+import type { BuiltBand, BuiltBands } from './build-bands.ts';
 import { type Build, tellDoubledIds, valueOr, valuesOf } from './layers.ts';
-import { parseLevel } from './level.ts';
+import { fixedValues, type KindParts, type LimitCase } from './limit-values.ts';
+import { notOnHousing } from './machine-zones.ts';
 import { nearest } from './nearest.ts';
-import { printLevel } from './print-value.ts';
-import type { limitKeys } from './schema-machines.ts';
+import { limitKeys, type WrittenLimit, type WrittenLimits } from './schema-limits.ts';
 import type { Written } from './shape.ts';
-import type { ReadMap } from './shape-map.ts';
 import type { Limit, LimitKind } from './site.ts';
-import { asYaml } from './site-text.ts';
+import type { Span } from './site-text.ts';
+import { zoneValues } from './zone-limit-values.ts';
+import { bandThatWouldDo, type ZoneCase, zonesAtSpeed, zonesOfBand } from './zone-limits.ts';
 
-export type WrittenLimit = Written<ReadMap<typeof limitKeys>>;
-
-/** What a kind of limit adds to the keys that all kinds share; null where it was refused. */
-type KindParts = Pick<Limit, 'alert' | 'danger'>;
+/** Lists, or `from zones`, of the machine type, the machine, the point: outermost first. */
+export type LimitLayers = readonly (Written<WrittenLimits> | null)[];
 
 /** One entry a kind. */
 const kinds: Readonly<
-  Record<LimitKind, (build: Build, written: WrittenLimit, band: BuiltBand) => KindParts | null>
+  Record<LimitKind, (build: Build, written: WrittenLimit, limit: LimitCase) => KindParts | null>
 > = {
   fixed: fixedValues,
+  zone: zoneValues,
 };
 
 /** The limits of one point: a limit of an inner list replaces the outer one of the same id. */
 export function buildLimits(
   build: Build,
-  layers: ListLayers<WrittenLimit>,
+  layers: LimitLayers,
   bands: BuiltBands,
-  shown: string,
+  of: { readonly shown: string; readonly zoneCase: ZoneCase },
 ): readonly Limit[] {
   const chosen = new Map<string, { readonly written: WrittenLimit; readonly layer: number }>();
-  layers.forEach((list, layer) => {
-    for (const written of list?.value ?? []) {
+  layers.forEach((layer, index) => {
+    if (layer === null) return;
+    const listed = layer.value.fromZones
+      ? limitsFromZones(build, layer.at, bands, { ...of, shared: index < layers.length - 1 })
+      : layer.value.list;
+    for (const written of listed) {
       const id = limitId(written);
-      if (id !== null && chosen.get(id)?.layer !== layer) chosen.set(id, { written, layer });
+      if (id !== null && chosen.get(id)?.layer !== index) chosen.set(id, { written, layer: index });
     }
   });
   const limits: Limit[] = [];
   for (const [id, { written }] of chosen) {
-    const limit = buildLimit(build, id, written, bands, shown);
+    const limit = buildLimit(build, id, written, bands, of);
     if (limit !== null) limits.push(limit);
   }
   return limits;
 }
 
-export function tellDoubledLimits({ reading }: Build, list: Written<readonly WrittenLimit[]> | null): void {
-  const ids = (list?.value ?? []).flatMap((written) => {
+/**
+ * `limits: from zones`: one for each band that the table judges. A machine that lies outside its table is refused once;
+ * so is a point of vibration without such a band, since it could never alarm.
+ */
+function limitsFromZones(
+  { reading }: Build,
+  at: Span,
+  { bands }: BuiltBands,
+  {
+    shown,
+    zoneCase,
+    shared,
+  }: { readonly shown: string; readonly zoneCase: ZoneCase; readonly shared: boolean },
+): readonly WrittenLimit[] {
+  const machine = zonesAtSpeed(zoneCase);
+  if (!machine.ok) {
+    const what = `there are no limits from zones for machine '${zoneCase.machineId}': ${machine.why}`;
+    reading.problem(at, what, machine.right, `from zones ${zoneCase.machineId}`);
+    return [];
+  }
+  const judged = bands.filter(({ band }) => zonesOfBand(zoneCase, band).ok);
+  if (judged.length > 0) return judged.map(({ band }) => zoneLimit(band.id, at));
+  const housing = notOnHousing(zoneCase.point, machine.zones);
+  const vibrates = ['acceleration', 'velocity', 'displacement'].includes(zoneCase.point.quantity);
+  const why = housing ?? `none of its bands is one: ${bandThatWouldDo(machine.zones, machine.speedHz)}`;
+  const what = `${shown} has no limit from zones: ${why}`;
+  if (shared && (housing !== null || !vibrates)) reading.warn(at, what, `from zones ${shown}`);
+  else
+    reading.problem(at, what, 'add such a band, or give the point limits of its own', `from zones ${shown}`);
+  return [];
+}
+
+/** As if it had been written: `band: ..., kind: zone`. */
+function zoneLimit(bandId: string, at: Span): WrittenLimit {
+  const none = Object.fromEntries(Object.keys(limitKeys).map((name) => [name, null]));
+  const keys = { ...none, band: { value: bandId, at }, kind: { value: 'zone', at } };
+  return { value: { keys: keys as WrittenLimit['value']['keys'], has: new Set(['band', 'kind']) }, at };
+}
+
+export function tellDoubledLimits({ reading }: Build, layer: LimitLayers[number]): void {
+  const ids = (layer?.value.list ?? []).flatMap((written) => {
     const id = limitId(written);
     const at = written.value.keys.id?.at ?? written.at;
     return id === null ? [] : [{ id, at }];
@@ -64,7 +107,7 @@ function buildLimit(
   id: string,
   written: WrittenLimit,
   { bands, absent }: BuiltBands,
-  shown: string,
+  { shown, zoneCase }: { readonly shown: string; readonly zoneCase: ZoneCase },
 ): Limit | null {
   const { keys } = written.value;
   if (keys.band === null) return null;
@@ -75,7 +118,7 @@ function buildLimit(
     return null;
   }
   const kind = valueOr(keys.kind, 'fixed');
-  const parts = kinds[kind](build, written, band);
+  const parts = kinds[kind](build, written, { band, zoneCase, shown });
   if (parts === null) return null;
   return {
     id,
@@ -108,55 +151,4 @@ function tellUnknownBand(
       ? 'it has no bands; add some under bands:'
       : `its bands are ${known.slice(0, 20).join(', ')}`;
   reading.problem(written.at, what, meant === null ? all : reading.write(written.at, meant), 'unknown band');
-}
-
-function fixedValues(build: Build, written: WrittenLimit, band: BuiltBand): KindParts | null {
-  const { reading } = build;
-  const { keys, has } = written.value;
-  if (!has.has('alert') && !has.has('danger')) {
-    const example = printLevel(band.band.display.inSi, band.band.display);
-    reading.problem(
-      written.at,
-      'the limit has neither alert nor danger',
-      `add: alert: ${example}`,
-      'no value',
-    );
-    return null;
-  }
-  const alert = levelOf(build, 'alert', keys.alert, band);
-  const danger = levelOf(build, 'danger', keys.danger, band);
-  if ((keys.alert !== null && alert === null) || (keys.danger !== null && danger === null)) return null;
-  const side = valueOr(keys.side, 'upper');
-  if (alert !== null && danger !== null && keys.alert !== null && keys.danger !== null) {
-    const wrong = side === 'upper' ? alert >= danger : alert <= danger;
-    if (wrong) {
-      const relation = side === 'upper' ? 'not below' : 'not above';
-      const what = `alert ${keys.alert.value} is ${relation} danger ${keys.danger.value}`;
-      const swapped = reading.write(keys.alert.at, asYaml(keys.danger.value));
-      const right =
-        alert === danger ? 'give them different values' : `${swapped} and danger: ${keys.alert.value}`;
-      reading.problem(keys.alert.at, what, right, 'alert and danger');
-      return null;
-    }
-  }
-  return { alert, danger };
-}
-
-function levelOf(
-  { reading }: Build,
-  name: string,
-  written: Written<string> | null,
-  { band }: BuiltBand,
-): number | null {
-  if (written === null) return null;
-  const parsed = parseLevel(written.value, band.quantity, band.display.text);
-  const example = `write for example: ${name}: ${printLevel(band.display.inSi, band.display)}`;
-  if (!parsed.ok) {
-    const right = parsed.instead === null ? example : reading.write(written.at, asYaml(parsed.instead));
-    reading.problem(written.at, `${name}: ${parsed.what}`, right, name);
-    return null;
-  }
-  if (parsed.value.value > 0) return parsed.value.value;
-  reading.problem(written.at, `${name}: '${written.value}' is not above 0`, example, name);
-  return null;
 }

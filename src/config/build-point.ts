@@ -5,7 +5,7 @@ import {
   tellDoubledBands,
   type WrittenBand,
 } from './build-bands.ts';
-import { buildLimits, tellDoubledLimits, type WrittenLimit } from './build-limits.ts';
+import { buildLimits, type LimitLayers, tellDoubledLimits } from './build-limits.ts';
 import {
   type AnalysisLayers,
   buildAnalysis,
@@ -15,6 +15,7 @@ import {
 } from './build-settings.ts';
 import { buildSignal } from './build-signal.ts';
 import { type Build, valueOr, valuesOf } from './layers.ts';
+import type { MachineZones } from './machine-zones.ts';
 import type { pointKeys } from './schema-machines.ts';
 import type { Written } from './shape.ts';
 import type { ReadMap } from './shape-map.ts';
@@ -30,7 +31,8 @@ export interface PointSurroundings {
   readonly recordings: RecordingLayers;
   readonly analysis: AnalysisLayers;
   readonly bands: ListLayers<WrittenBand>;
-  readonly limits: ListLayers<WrittenLimit>;
+  readonly limits: LimitLayers;
+  readonly zones: MachineZones | null;
 }
 
 /** A point with the places that later checks of the whole site point at. */
@@ -76,7 +78,11 @@ export function buildPoint(
     sidecar: recordings.sidecar === 'expected',
     situation: { analysis, sampleRateHz, runningSpeedHz, mounting, shown },
   });
-  const limits = buildLimits(build, [...around.limits, keys.limits], bands, shown);
+  const sensorOn = valueOr(keys.sensor_on, null);
+  const limits = buildLimits(build, [...around.limits, keys.limits], bands, {
+    shown,
+    zoneCase: { machineId, zones: around.zones, runningSpeedHz, point: { quantity, sensorOn } },
+  });
   if (signal === null) return null;
   const point: Point = {
     machineId,
@@ -85,6 +91,7 @@ export function buildPoint(
     formerly: valuesOf(keys.formerly),
     direction: valueOr(keys.direction, null),
     mounting,
+    sensorOn,
     channel: valueOr(keys.channel, 1),
     quantity,
     signal,

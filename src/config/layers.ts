@@ -2,11 +2,13 @@ import type { Reading } from './reading.ts';
 import type { Written } from './shape.ts';
 import type { Keys, ReadMap } from './shape-map.ts';
 import type { Span } from './site-text.ts';
+import type { ZoneStandard, ZoneTable } from './zone-tables.ts';
 
-/** What builds a Site from what was read: where to tell problems, and how to make a path absolute. */
+/** What builds a Site from what was read: where to tell problems, how to make a path absolute, the zone tables. */
 export interface Build {
   readonly reading: Reading;
   readonly absolute: (path: string) => string;
+  readonly zoneTable: (standard: ZoneStandard) => ZoneTable;
 }
 
 /** The same group of keys at the site, the machine type, the machine and the point, outermost first. */

@@ -10,6 +10,7 @@ import { homesOfKeys, siteShape, type WrittenSite } from './schema.ts';
 import type { IntakeTimings, Site } from './site.ts';
 import { formatProblem, type SiteProblem, SiteText } from './site-text.ts';
 import { mostCharacters, readYaml } from './site-yaml.ts';
+import { readZoneTable, type ZoneStandard, type ZoneTable } from './zone-tables.ts';
 
 /** A site, or every problem of the file at once. */
 export type SiteAnswer =
@@ -17,8 +18,8 @@ export type SiteAnswer =
   | { readonly ok: false; readonly problems: readonly SiteProblem[] };
 
 /**
- * What a site file means. `path` is its absolute path: relative paths are seen from its folder. Pure: no file is
- * looked at, so a folder or password file that does not exist is no problem here. Never throws on any text.
+ * What a site file means. `path` is its absolute path: relative paths are seen from its folder. No file is looked at
+ * (but the program's own zone tables), so a folder or password file that does not exist is no problem here. Never throws on any text.
  */
 export function loadSite(text: string, path: string): SiteAnswer {
   const original = new SiteText(text.replace(/^\uFEFF/, ''));
@@ -27,7 +28,7 @@ export function loadSite(text: string, path: string): SiteAnswer {
   let site: Site | null = null;
   if (yaml.root !== null) {
     const read = siteShape.read(yaml.root, 'the site file', reading);
-    const build: Build = { reading, absolute: (written) => resolve(dirname(path), written) };
+    const build: Build = { reading, absolute: (written) => resolve(dirname(path), written), zoneTable };
     site = read === null ? null : buildSite(build, read.value.keys, path, text);
   } else if (original.problems().length === 0) {
     original.problem(
@@ -60,6 +61,19 @@ export function loadSiteFile(path: string): SiteAnswer {
 /** One line a problem: `file:line:column: what is wrong; what would be right`. */
 export function formatProblems(file: string, problems: readonly SiteProblem[]): readonly string[] {
   return problems.map((problem) => formatProblem(file, problem));
+}
+
+const tables = new Map<ZoneStandard, ZoneTable>();
+
+/** A table of the program's own; they lie beside `src` and beside `dist`. */
+function zoneTable(standard: ZoneStandard): ZoneTable {
+  const known = tables.get(standard);
+  if (known !== undefined) return known;
+  const table = readZoneTable(
+    readFileSync(new URL(`../../config/zones/${standard}.json`, import.meta.url), 'utf8'),
+  );
+  tables.set(standard, table);
+  return table;
 }
 
 /** Null where a required part was refused; its problem is told then. */

@@ -88,6 +88,7 @@ function detectLimit(limit: Limit, flags: readonly QualityFlag[], input: Detecti
     side: limit.side,
     alert,
     danger,
+    ...(limit.reasons == null ? {} : { reasons: limit.reasons }),
     deadbandPercent: limit.deadbandPercent,
     onDelay: limit.onDelay,
     offDelay: limit.offDelay,

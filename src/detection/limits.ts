@@ -30,8 +30,14 @@ interface Comparison {
 }
 
 const comparisons: Readonly<Record<LimitKind, (limit: Limit, level: BandLevel) => Comparison | null>> = {
-  fixed: (limit, level) => ({ value: level.level, alert: limit.alert, danger: limit.danger }),
+  fixed: asTheyStand,
+  // Worked out from the table when the site file was read; they move with the site file alone.
+  zone: asTheyStand,
 };
+
+function asTheyStand({ alert, danger }: Limit, { level }: BandLevel): Comparison {
+  return { value: level, alert, danger };
+}
 
 /**
  * Judge one level. The severity is the highest whose threshold is passed: above it on the upper side, below it on the

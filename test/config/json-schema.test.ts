@@ -35,13 +35,14 @@ describe('the JSON Schema of the site file', () => {
     const silent: string[] = [];
     const walk = (node: unknown, path: string) => {
       if (typeof node !== 'object' || node === null) return;
-      const { properties = {}, items, additionalProperties } = node as Record<string, object>;
+      const { properties = {}, items, additionalProperties, anyOf } = node as Record<string, object>;
       for (const [name, property] of Object.entries(properties as Record<string, { description?: string }>)) {
         if (!property.description?.endsWith('.')) silent.push(`${path}.${name}`);
         walk(property, `${path}.${name}`);
       }
       walk(items, `${path}[]`);
       walk(additionalProperties, `${path}{}`);
+      for (const [n, one] of Object.entries(anyOf ?? {})) walk(one, `${path}|${n}`);
     };
     walk(schema, '');
     expect(silent).toEqual([]);

@@ -1,0 +1,96 @@
+import { isScalar, type Node } from 'yaml';
+import { type Parsed, parseDelay, parsePercent, refused, shorten, understood } from './quantity.ts';
+import type { Reading } from './reading.ts';
+import { duration, formerIds, id, percent } from './schema-values.ts';
+import { choice, list, type Shape, scalar, trueOrFalse, type Written, words } from './shape.ts';
+import { key, map, type ReadMap } from './shape-map.ts';
+
+const day = 86_400_000;
+
+/** A limit's value is understood where its band's quantity is known. */
+const levelText = scalar((text) => understood(text.trim()), { example: '2.8 mm/s', most: 60 });
+
+const delay = scalar(parseDelay, { example: '2 recordings' });
+
+/** '+25 %', or 'never' (null). */
+function parseSayAgain(text: string): Parsed<number | null> {
+  if (text.trim() === 'never') return understood(null);
+  const parsed = parsePercent(text);
+  if (!parsed.ok) return parsed;
+  if (parsed.value >= 1 && parsed.value <= 1000) return parsed;
+  return refused(`'${shorten(text)}' is not from +1 % to +1000 %, or never`);
+}
+
+/** Later kinds of limit each add one word here, their own keys, and one entry where limits are built. */
+export const limitKinds = ['fixed', 'zone'] as const;
+
+export const limitKeys = {
+  id: key(id('overall-fixed-upper'), 'Names the limit.', { fallback: 'band-kind-side' }),
+  formerly: key(formerIds, 'Earlier ids: standing alarms are carried over.'),
+  band: key(id('overall'), 'The band whose level is judged.', { required: true }),
+  kind: key(
+    choice(limitKinds),
+    "fixed: the values as they stand; zone: from the boundaries of the machine's evaluation zones.",
+    { fallback: 'fixed' },
+  ),
+  side: key(choice(['upper', 'lower']), 'upper: too much; lower: too little.', { fallback: 'upper' }),
+  alert: key(levelText, 'The lower severity.'),
+  danger: key(levelText, 'The higher severity.'),
+  baseline: key(
+    levelText,
+    'Kind zone: the level while the machine was known to be good; the alert stands 25 % of B/C above it.',
+    { fallback: 'the alert stands at B/C' },
+  ),
+  on_delay: key(
+    delay,
+    'The level must stay over the limit for so many recordings, or so long: single knocks raise nothing.',
+    {
+      fallback: '2 recordings',
+    },
+  ),
+  off_delay: key(delay, 'The level must stay below for so many recordings, or so long.', {
+    fallback: '1 recordings',
+  }),
+  deadband: key(percent(0, 50, '10 %'), 'The level must fall this far below the limit, in percent of it.', {
+    fallback: '10 %',
+  }),
+  latching: key(trueOrFalse, 'The alarm stands until it is reset by hand.', { fallback: 'false' }),
+  say_again_at: key(
+    scalar(parseSayAgain, { example: '+25 %' }),
+    'An acknowledged alarm is told again when its level has risen by this much; or never.',
+    {
+      fallback: '+25 %',
+    },
+  ),
+  action: key(
+    words(1000, 'Check base bolts and coupling', { lines: true }),
+    'What to do first, in the words of the site.',
+  ),
+  respond_within: key(duration(60_000, 365 * day, '2 d'), 'Time within which a person should have looked.'),
+};
+
+export type WrittenLimit = Written<ReadMap<typeof limitKeys>>;
+
+/** A list of limits, or `from zones`: one of kind zone for each band that the machine's zone table judges. */
+export interface WrittenLimits {
+  readonly fromZones: boolean;
+  readonly list: readonly WrittenLimit[];
+}
+
+const listed = list(map(limitKeys), 400);
+const fromZones = choice(['from zones']);
+
+export const limits: Shape<WrittenLimits> = {
+  read(node: Node, name: string, reading: Reading): Written<WrittenLimits> | null {
+    const resolved = reading.resolve(node);
+    if (isScalar(resolved) && /\bzones?\b/i.test(String(resolved.value))) {
+      const written = fromZones.read(node, name, reading);
+      return written === null ? null : { value: { fromZones: true, list: [] }, at: written.at };
+    }
+    const written = listed.read(node, name, reading);
+    return written === null ? null : { value: { fromZones: false, list: written.value }, at: written.at };
+  },
+  jsonSchema: { anyOf: [fromZones.jsonSchema, listed.jsonSchema] },
+  example: listed.example,
+  below: listed.below,
+};
