@@ -1,3 +1,4 @@
+import type { SampleLayout } from '../config/sample-layout.ts';
 import type { SampleUnit, SignalSettings } from '../config/site.ts';
 
 /**
@@ -69,8 +70,15 @@ export interface RecordingReader {
   readonly format: string;
   /** Pure on the first bytes (up to 64 kB) and the file's name; must not throw. */
   recognise(head: Uint8Array, fileName: string): boolean;
-  header(source: ByteSource): RecordingHeader | Refusal;
-  samples(source: ByteSource, header: RecordingHeader): Generator<SampleBlock, SamplesEnd | Refusal>;
+  /** Awaited before `header` and before `samples`, by formats whose library is loaded only when it is needed. */
+  prepare?(): Promise<void>;
+  /** `layout` is what the site file says of files that hold more than samples in one order; left out: nothing. */
+  header(source: ByteSource, layout?: SampleLayout): RecordingHeader | Refusal;
+  samples(
+    source: ByteSource,
+    header: RecordingHeader,
+    layout?: SampleLayout,
+  ): Generator<SampleBlock, SamplesEnd | Refusal>;
 }
 
 /** The closed list of data-quality flags. */

@@ -48,6 +48,11 @@ export function buildRecordings(
     overdueAfterMs: valueOr(overdue, 2 * expectedEveryMs),
     settleMs: valueOr(innermost(layers, 'settle'), 5000),
     sidecar: valueOr(innermost(layers, 'sidecar'), 'optional'),
+    layout: {
+      dataset: valueOr(innermost(layers, 'dataset'), null),
+      sampleRateAttribute: valueOr(innermost(layers, 'sample_rate_attribute'), null),
+      channelsIn: valueOr(innermost(layers, 'channels_in'), null),
+    },
   };
 }
 

@@ -2,6 +2,7 @@ import { windowNames } from '../signal/window.ts';
 import { parseFilePattern, parseFilesRegex, parseStartPattern } from './file-pattern.ts';
 import { parseSampleUnit, parseSampleValue } from './level.ts';
 import { understood } from './quantity.ts';
+import { parseDatasetPath } from './sample-layout.ts';
 import { duration, frequency, percent } from './schema-values.ts';
 import { choice, list, plainNumber, type Shape, scalar, words } from './shape.ts';
 import { key, map } from './shape-map.ts';
@@ -79,6 +80,18 @@ export const recordingKeys = {
   full_scale: key(
     scalar(parseSampleValue, { example: '10 V' }),
     'Integer samples: the value of the largest one.',
+  ),
+  dataset: key(
+    scalar(parseDatasetPath, { example: '/vibration/acceleration' }),
+    'HDF5: path of the data set, or of the group whose data sets are the channels; without it the file must hold one only.',
+  ),
+  sample_rate_attribute: key(
+    words(120, 'sample_rate'),
+    'HDF5: the attribute that gives the sample rate in Hz, at the data set or at a group above it.',
+  ),
+  channels_in: key(
+    choice(['columns', 'rows'], 'columns'),
+    'NPY and HDF5, two dimensions: whether a channel is a column or a row; said by the shape where one side exceeds 1024.',
   ),
 };
 

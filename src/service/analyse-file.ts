@@ -12,6 +12,7 @@ import {
 } from '../acquisition/recording.ts';
 import { namePattern, startInName } from '../acquisition/start-in-name.ts';
 import { type RecordingStart, recordingStart } from '../acquisition/start-time.ts';
+import type { SampleLayout } from '../config/sample-layout.ts';
 import type { RecordingSettings } from '../config/site.ts';
 import type { Measurement } from '../manipulation/measurement.ts';
 import { openRegularFile, sameFile } from './file-source.ts';
@@ -32,6 +33,12 @@ export type PlanFor = (
   header: RecordingHeader,
   sidecar: Sidecar | null,
 ) => AnalysisPlan | { readonly reason: string };
+
+/** A file's plan, and what is known of its samples' place before it is opened. */
+export interface PlannedFile {
+  readonly layout: SampleLayout;
+  readonly planFor: PlanFor;
+}
 
 export interface FileAnalysis {
   readonly sha256: string;
@@ -54,11 +61,11 @@ export interface FileAnalysis {
  * One file by itself, in the way in which the service measures it: one descriptor, one pass for hash and samples. No
  * ledger, nothing is moved. A link that a person names is followed; what then cannot be read is answered in words.
  */
-export function analyseFile(
+export async function analyseFile(
   path: string,
   largestBytes: number,
-  planFor: PlanFor,
-): FileAnalysis | { readonly reason: string } {
+  { layout, planFor }: PlannedFile,
+): Promise<FileAnalysis | { readonly reason: string }> {
   const real = realPath(path);
   if (real === null) return { reason: 'there is no such file' };
   const file = openRegularFile(real, largestBytes);
@@ -68,7 +75,8 @@ export function analyseFile(
     const source = hashingSource(file.source, (bytes) => hash.update(bytes));
     const reader = readerFor(readHead(source), basename(real));
     if (isRefusal(reader)) return reader;
-    const header = reader.header(source);
+    await reader.prepare?.();
+    const header = reader.header(source, layout);
     if (isRefusal(header)) return header;
     const beside = readSidecar(join(dirname(path), sidecarNameOf(basename(path))));
     const sidecar = beside !== null && 'content' in beside ? beside.content : null;

@@ -7,6 +7,7 @@ import {
   settle,
 } from '../acquisition/settling.ts';
 import type { SeenFile } from '../acquisition/sweep.ts';
+import { nothingSaid } from '../config/sample-layout.ts';
 import type { Point } from '../config/site.ts';
 import type { HeaderAnswer, HeaderTask } from './recording-task.ts';
 import { isSidecarName, sidecarPairs, waitForSidecarMs } from './sidecar-pairs.ts';
@@ -96,7 +97,7 @@ export class Arrivals {
       if (points.length === 0) return { at: 'unassigned', file: { path: file.path, look: file, arrivedMs } };
       if (verdict.verdict === 'give-up') return givenUp(view, arrival, verdict.reason, 'unreadable');
       if (verdict.verdict === 'look') {
-        const answer = await this.#tools.header(this.#headerTask(view, file, sidecar));
+        const answer = await this.#tools.header(this.#headerTask(view, file, sidecar, points));
         if (answer.kind === 'gone') return { at: 'ignored' };
         if (answer.kind === 'left-alone') return notRead(view, arrival, answer.reason);
         watched.looked = answer;
@@ -134,12 +135,18 @@ export class Arrivals {
     };
   }
 
-  #headerTask(view: SiteView, file: SeenFile, sidecar: SeenFile | null): HeaderTask {
+  #headerTask(
+    view: SiteView,
+    file: SeenFile,
+    sidecar: SeenFile | null,
+    points: readonly Point[],
+  ): HeaderTask {
     return {
       task: 'header',
       path: `${view.site.folders.drop}/${file.path}`,
       sidecarPath: sidecar === null ? null : `${view.site.folders.drop}/${sidecar.path}`,
       largestBytes: view.site.largestFileBytes,
+      layout: points[0]?.recordings.layout ?? nothingSaid,
     };
   }
 

@@ -1,4 +1,5 @@
 import type { RecordingHeader, Refusal, Sidecar } from '../acquisition/recording.ts';
+import type { SampleLayout } from '../config/sample-layout.ts';
 import type { FileLook } from './file-source.ts';
 import type { PointTask, RecordingRead } from './read-recording.ts';
 
@@ -12,6 +13,8 @@ export interface HeaderTask {
   readonly path: string;
   readonly sidecarPath: string | null;
   readonly largestBytes: number;
+  /** What the points that take the file say of its samples' place. */
+  readonly layout: SampleLayout;
 }
 
 /** Read everything once: hash, samples, measurements. */

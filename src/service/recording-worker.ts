@@ -6,7 +6,7 @@ import { type ByteSource, isRefusal } from '../acquisition/recording.ts';
 import { allZeros, tailBytes } from '../acquisition/settling.ts';
 import { largestSidecarBytes, parseSidecar } from '../acquisition/sidecar.ts';
 import { openRegularFile, sameFile } from './file-source.ts';
-import { readRecording } from './read-recording.ts';
+import { layoutOf, readRecording } from './read-recording.ts';
 import type {
   HashAnswer,
   HashTask,
@@ -19,7 +19,7 @@ import type {
 } from './recording-task.ts';
 
 /** Entry of a worker thread: everything that reads a recording happens here, on one descriptor, in blocks. */
-export default function work(task: RecordingTask): HeaderAnswer | MeasureAnswer | HashAnswer {
+export default async function work(task: RecordingTask): Promise<HeaderAnswer | MeasureAnswer | HashAnswer> {
   switch (task.task) {
     case 'header':
       return readHeader(task);
@@ -30,13 +30,14 @@ export default function work(task: RecordingTask): HeaderAnswer | MeasureAnswer 
   }
 }
 
-function readHeader(task: HeaderTask): HeaderAnswer {
+async function readHeader(task: HeaderTask): Promise<HeaderAnswer> {
   const file = openRegularFile(task.path, task.largestBytes);
   if ('reason' in file) return file.gone ? { kind: 'gone' } : { kind: 'left-alone', reason: file.reason };
   try {
     const head = readHead(file.source);
     const reader = readerFor(head, basename(task.path));
-    const header = isRefusal(reader) ? reader : reader.header(file.source);
+    if (!isRefusal(reader)) await reader.prepare?.();
+    const header = isRefusal(reader) ? reader : reader.header(file.source, task.layout);
     if (isRefusal(header)) return { kind: 'refused', refusal: header, headIsZeros: allZeros(head) };
     const beside = task.sidecarPath === null ? null : readSidecar(task.sidecarPath);
     return {
@@ -52,7 +53,7 @@ function readHeader(task: HeaderTask): HeaderAnswer {
   }
 }
 
-function measure(task: MeasureTask): MeasureAnswer {
+async function measure(task: MeasureTask): Promise<MeasureAnswer> {
   const file = openRegularFile(task.path, task.largestBytes);
   if ('reason' in file) return { kind: file.gone ? 'gone' : 'changed' };
   try {
@@ -60,7 +61,8 @@ function measure(task: MeasureTask): MeasureAnswer {
     const hash = createHash('sha256');
     const source = hashingSource(file.source, (bytes) => hash.update(bytes));
     const reader = readerFor(readHead(source), basename(task.path));
-    const header = isRefusal(reader) ? reader : reader.header(source);
+    if (!isRefusal(reader)) await reader.prepare?.();
+    const header = isRefusal(reader) ? reader : reader.header(source, layoutOf(task.points));
     const read =
       isRefusal(reader) || isRefusal(header)
         ? null

@@ -3,6 +3,7 @@ import { nameOf, printableName, sidecarNameOf } from '../acquisition/file-name.t
 import { putBackHeld } from '../acquisition/filing.ts';
 import { contentSha256, exists } from '../acquisition/filing-disk.ts';
 import { placesFor } from '../acquisition/filing-place.ts';
+import { nothingSaid } from '../config/sample-layout.ts';
 import type { WorkerPool } from '../manipulation/pool.ts';
 import { writeMark } from '../store/intake-marks.ts';
 import type { Ledger } from '../store/ledger.ts';
@@ -110,6 +111,7 @@ export class TakeArchived {
       path: join(data, archived),
       sidecarPath: line.sidecarSha256 === null ? null : join(data, beside),
       largestBytes: view.site.largestFileBytes,
+      layout: points[0]?.recordings.layout ?? nothingSaid,
     });
     const header = answer.outcome === 'answer' ? (answer.answer as HeaderAnswer) : null;
     if (header?.kind !== 'header') return this.#leave(line, `${archived} cannot be read`);

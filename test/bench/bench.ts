@@ -30,7 +30,7 @@ async function bench(): Promise<Bench> {
   const service: ServiceSpeed[] = [];
   for (const threads of [1, 2]) service.push(await throughService(threads, recordings, files));
   const mostResidentBytes = 1024 * process.resourceUsage().maxRSS;
-  const stagesMs = stageTimes(files);
+  const stagesMs = await stageTimes(files);
   const averaging = segments.map((segmentSamples) => ({
     segmentSamples,
     secondsASecond: averagingSpeed(segmentSamples),

@@ -63,7 +63,8 @@ async function measured(paths: readonly string[], point: Point): Promise<StageTi
     'waveform values': await each(({ samples }) => waveformValues(samples)),
     averaging: await each(({ samples }) => averageDensity(samples, averaging)),
     'each segment kept':
-      each(({ samples }) => segmentsOf(samples)) - each(({ samples }) => averageDensity(samples, averaging)),
+      (await each(({ samples }) => segmentsOf(samples))) -
+      (await each(({ samples }) => averageDensity(samples, averaging))),
     peaks: await each(({ averaged }) => findPeaks(averaged.density, shapeOf(averages))),
     steadiness: await each(({ segments, search }) => steadiness(segments, search, shapeOf(averages))),
     'six bands with intervals': await each(({ averaged, search }) => {
@@ -135,10 +136,7 @@ async function measureTask(path: string, point: Point): Promise<void> {
 }
 
 /** CPU time, in the best of several rounds over all files: both keep out what else the machine does meanwhile. */
-async function cpuMsEach(
-  files: readonly Prepared[],
-  stage: (file: Prepared) => unknown,
-): Promise<number> {
+async function cpuMsEach(files: readonly Prepared[], stage: (file: Prepared) => unknown): Promise<number> {
   let best = Number.POSITIVE_INFINITY;
   for (let round = 0; round < 6; round++) {
     const before = process.cpuUsage();

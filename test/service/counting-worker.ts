@@ -4,7 +4,7 @@ import type { RecordingAnswer, RecordingTask } from '../../src/service/recording
 import work from '../../src/service/recording-worker.ts';
 
 /** The usual worker, which notes in `opened` beside the drop folder which files it opens. */
-export default function count(task: RecordingTask): RecordingAnswer {
+export default function count(task: RecordingTask): Promise<RecordingAnswer> {
   const path = String(task.path);
   appendFileSync(join(dirname(dirname(path)), 'opened'), `${task.task} ${basename(path)}\n`);
   return work(task);

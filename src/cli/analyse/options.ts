@@ -2,6 +2,7 @@ import { parseSampleUnit, parseSampleValue } from '../../config/level.ts';
 import { longestSegmentSamples } from '../../config/meaning.ts';
 import { nearest } from '../../config/nearest.ts';
 import { type Parsed, parseFrequency, refused, understood } from '../../config/quantity.ts';
+import { parseDatasetPath, type SampleLayout } from '../../config/sample-layout.ts';
 import { parseSensitivity, type Sensitivity } from '../../config/sensitivity.ts';
 import type { Band, Quantity, SampleUnit, WindowName } from '../../config/site.ts';
 import { usualDisplayUnit } from '../../config/units.ts';
@@ -14,6 +15,9 @@ export interface OneOffOptions {
   readonly fullScale?: string;
   readonly sensitivity?: string;
   readonly sampleRate?: string;
+  readonly dataset?: string;
+  readonly sampleRateAttribute?: string;
+  readonly channelsIn?: string;
   readonly window?: string;
   readonly overlap?: string;
   readonly segment?: string;
@@ -27,6 +31,7 @@ export interface OneOffSettings {
   readonly fullScale: number | null;
   readonly sensitivity: (Sensitivity & { readonly text: string }) | null;
   readonly sampleRateHz: number | null;
+  readonly layout: SampleLayout;
   readonly window: WindowName;
   readonly overlapPercent: number;
   readonly segmentSamples: number | null;
@@ -47,6 +52,9 @@ const optionNames = {
   fullScale: '--full-scale',
   sensitivity: '--sensitivity',
   sampleRate: '--sample-rate',
+  dataset: '--dataset',
+  sampleRateAttribute: '--sample-rate-attribute',
+  channelsIn: '--channels-in',
   window: '--window',
   overlap: '--overlap',
   segment: '--segment',
@@ -81,6 +89,11 @@ export function readOneOffOptions(options: OneOffOptions): OneOffSettings | { re
       return parsed.ok ? understood({ ...parsed.value, text }) : parsed;
     }),
     sampleRateHz: read('sampleRate', frequency),
+    layout: {
+      dataset: read('dataset', parseDatasetPath),
+      sampleRateAttribute: read('sampleRateAttribute', understood),
+      channelsIn: read('channelsIn', side),
+    },
     window: read('window', windowName) ?? 'hann',
     overlapPercent: read('overlap', overlap) ?? 50,
     segmentSamples: read('segment', segment),
@@ -150,26 +163,31 @@ function positive(value: number, text: string): Parsed<number> {
 }
 
 /** Hz, or with its unit. */
-function frequency(text: string): Parsed<number> {
+export function frequency(text: string): Parsed<number> {
   const bare = Number(text);
   if (text.trim() !== '' && Number.isFinite(bare)) return positive(bare, text);
   const parsed = parseFrequency(text);
   return parsed.ok ? positive(parsed.value, text) : parsed;
 }
 
-function windowName(text: string): Parsed<WindowName> {
+function side(text: string): Parsed<'columns' | 'rows'> {
+  if (text === 'columns' || text === 'rows') return understood(text);
+  return refused(`'${text}' is neither columns nor rows`, nearest(text, ['columns', 'rows']));
+}
+
+export function windowName(text: string): Parsed<WindowName> {
   const found = windowNames.find((name) => name === text);
   if (found !== undefined) return understood(found);
   return refused(`'${text}' is no window (${windowNames.join(', ')})`, nearest(text, windowNames));
 }
 
-function overlap(text: string): Parsed<number> {
+export function overlap(text: string): Parsed<number> {
   const percent = Number(text.replace(/\s*%$/, ''));
   if (text.trim() !== '' && percent >= 0 && percent <= 95) return understood(percent);
   return refused(`'${text}' is no overlap from 0 to 95 percent`);
 }
 
-function segment(text: string): Parsed<number> {
+export function segment(text: string): Parsed<number> {
   const samples = Number(text);
   const right = Number.isInteger(samples) && samples >= 8 && samples <= longestSegmentSamples;
   if (right && Number.isInteger(Math.log2(samples))) return understood(samples);
@@ -192,7 +210,7 @@ const quantities: readonly Quantity[] = [
 ];
 
 /** '10..1000', '2 kHz..8 kHz', '10..1000:velocity'. */
-function askedBand(text: string): Parsed<AskedBand> {
+export function askedBand(text: string): Parsed<AskedBand> {
   const match = /^(.+?)\.\.([^:]+)(?::(.+))?$/.exec(text.trim());
   if (match === null) return refused('a band is FROM..TO[:QUANTITY] in Hz, such as 10..1000:velocity');
   const [, fromText = '', toText = '', word] = match;

@@ -114,6 +114,7 @@ function point(
       overdueAfterMs: 0,
       settleMs: 0,
       sidecar: 'optional',
+      layout: settings.layout,
     },
     analysis: {
       window,

@@ -1,7 +1,8 @@
 import { basename, isAbsolute, relative } from 'node:path';
 import { explainMismatch, type SiteFiles, siteFiles } from '../../acquisition/file-pattern.ts';
+import { nothingSaid } from '../../config/sample-layout.ts';
 import type { Point, Site } from '../../config/site.ts';
-import type { AnalysisPlan, PlanFor } from '../../service/analyse-file.ts';
+import type { AnalysisPlan, PlanFor, PlannedFile } from '../../service/analyse-file.ts';
 
 /** Deepest folder below the drop folder whose name may take part in a pattern. */
 const deepest = 16;
@@ -11,11 +12,11 @@ const deepest = 16;
  * below it; elsewhere its name, or as many of its folders as a pattern asks for. The mark of a second file of one name
  * in archive or quarantine is no part of it.
  */
-export function plansOfSite(site: Site, path: string): PlanFor {
+export function plansOfSite(site: Site, path: string): PlannedFile {
   const files = siteFiles(site);
   const points = pointsTaking(files, site, path);
   const machines = new Map(site.machines.map((machine) => [machine.id, machine]));
-  return (_header, sidecar): AnalysisPlan | { readonly reason: string } => {
+  const planFor: PlanFor = (_header, sidecar): AnalysisPlan | { readonly reason: string } => {
     const [first] = points;
     if (first === undefined) {
       const { text } = explainMismatch(basename(path), site);
@@ -33,6 +34,7 @@ export function plansOfSite(site: Site, path: string): PlanFor {
         points.find(({ recordings }) => recordings.startInName !== null)?.recordings.startInName ?? null,
     };
   };
+  return { layout: points[0]?.recordings.layout ?? nothingSaid, planFor };
 }
 
 function pointsTaking(files: SiteFiles, site: Site, path: string): readonly Point[] {

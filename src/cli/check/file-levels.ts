@@ -1,4 +1,5 @@
 import { siteFiles } from '../../acquisition/file-pattern.ts';
+import { nothingSaid } from '../../config/sample-layout.ts';
 import { type Machine, type Point, pointPath, type Site } from '../../config/site.ts';
 import { analyseFile, type FileAnalysis } from '../../service/analyse-file.ts';
 
@@ -21,23 +22,26 @@ export class FileLevels {
   }
 
   /** `path` is absolute; `asDropped` how it was called in the drop folder, which says whose it is. */
-  analyse(path: string, asDropped: string, point: Point): FileAnswer {
+  async analyse(path: string, asDropped: string, point: Point): Promise<FileAnswer> {
     const known = this.#done.get(path);
     if (known !== undefined) return known;
     if (this.#done.size >= mostFiles)
       return { reason: `not analysed: more than ${mostFiles} files would have to be` };
     const taking = this.#takes(asDropped);
     const points = taking.some((one) => pointPath(one) === pointPath(point)) ? taking : [point];
-    const answer = analyseFile(path, this.#site.largestFileBytes, (_, sidecar) => ({
-      points: points.map((one) => ({
-        point: one,
-        nominalHz: this.#machines.get(one.machineId)?.runningSpeedHz ?? null,
-      })),
-      sidecar,
-      clock: point.recordings.clock,
-      siteZone: this.#site.timeZone,
-      startInName: point.recordings.startInName,
-    }));
+    const answer = await analyseFile(path, this.#site.largestFileBytes, {
+      layout: points[0]?.recordings.layout ?? nothingSaid,
+      planFor: (_, sidecar) => ({
+        points: points.map((one) => ({
+          point: one,
+          nominalHz: this.#machines.get(one.machineId)?.runningSpeedHz ?? null,
+        })),
+        sidecar,
+        clock: point.recordings.clock,
+        siteZone: this.#site.timeZone,
+        startInName: point.recordings.startInName,
+      }),
+    });
     this.#done.set(path, answer);
     return answer;
   }

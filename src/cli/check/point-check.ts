@@ -60,18 +60,18 @@ interface Found {
  * A point with its levels now: from the ledger where those were made under today's settings, else from the newest file
  * found, else the ledger's all the same.
  */
-export function checkPoint(
+export async function checkPoint(
   site: Site,
   point: Point,
   known: { readonly drop: DropLook; readonly ledger: LedgerPoint | null; readonly files: FileLevels },
-): PointCheck {
+): Promise<PointCheck> {
   const { ledger } = known;
   const waiting = known.drop.waiting.get(pointPath(point)) ?? null;
   const stored = ledger === null ? null : fromLedger(ledger, point);
   const found =
     stored !== null && ledger?.otherSettings === false
       ? stored
-      : newest(fromFile(site, point, waiting, ledger, known.files), stored);
+      : newest(await fromFile(site, point, waiting, ledger, known.files), stored);
   const bands = point.bands.map((band) => ({
     band,
     now: found.levels.get(band.id) ?? null,
@@ -110,13 +110,13 @@ function fromLedger({ measurement, bandIds }: LedgerPoint, point: Point): Found 
   };
 }
 
-function fromFile(
+async function fromFile(
   site: Site,
   point: Point,
   waiting: Waiting | null,
   ledger: LedgerPoint | null,
   files: FileLevels,
-): Found {
+): Promise<Found> {
   const none: Found = {
     from: null,
     usedMs: null,
@@ -127,10 +127,9 @@ function fromFile(
   };
   const archived = ledger?.archived.newest ?? null;
   if (waiting === null && archived === null) return { ...none, remark: 'no recording yet' };
-  const answer =
-    waiting === null
-      ? files.analyse(join(site.folders.data, archived as string), archived as string, point)
-      : files.analyse(join(site.folders.drop, waiting.newest), waiting.newest, point);
+  const answer = await (waiting === null
+    ? files.analyse(join(site.folders.data, archived as string), archived as string, point)
+    : files.analyse(join(site.folders.drop, waiting.newest), waiting.newest, point));
   const name = (waiting?.newest ?? archived) as string;
   if ('reason' in answer) return { ...none, remark: `${name}: ${answer.reason}` };
   const measurement = answer.measurements.find(

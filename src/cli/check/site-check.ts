@@ -42,11 +42,9 @@ export async function checkSite(
   const read = await readLedger(siteFile, nowMs, monotonicMs);
   if (read.refusal !== null) hindrances.push(read.refusal);
   const files = new FileLevels(site);
-  const points = site.machines.flatMap((machine) =>
-    machine.points.map((point) =>
-      checkPoint(site, point, { drop, files, ledger: read.points.get(point) ?? null }),
-    ),
-  );
+  const points: PointCheck[] = [];
+  for (const point of site.machines.flatMap((machine) => machine.points))
+    points.push(await checkPoint(site, point, { drop, files, ledger: read.points.get(point) ?? null }));
   hindrances.push(...passwordProblems(site));
   const limits = points.reduce((sum, { point }) => sum + point.limits.length, 0);
   const recipients = recipientsOf(site);

@@ -81,7 +81,7 @@ async function fromFile(
       refused: `there is no recording of ${path}, neither in the ledger nor in ${site.folders.drop}; let the logger record, or see humledger files`,
     };
   }
-  const answer = new FileLevels(site).analyse(`${site.folders.drop}/${newest}`, newest, point);
+  const answer = await new FileLevels(site).analyse(`${site.folders.drop}/${newest}`, newest, point);
   if ('reason' in answer) return { refused: `${newest}: ${answer.reason}` };
   const measurement = answer.measurements.find(
     (one) => one.machineId === point.machineId && one.pointId === point.id,

@@ -3,7 +3,7 @@ import { resolve } from 'node:path';
 import { printableName } from '../../acquisition/file-name.ts';
 import { judgeBand } from '../../config/bands.ts';
 import type { Band, Site } from '../../config/site.ts';
-import { type AnalysisPlan, analyseFile, type PlanFor } from '../../service/analyse-file.ts';
+import { type AnalysisPlan, analyseFile, type PlannedFile } from '../../service/analyse-file.ts';
 import { readSiteFile } from '../../service/site-in-force.ts';
 import { type AnalysedFile, analysisJson } from '../analyse/analysis-json.ts';
 import { analysisText } from '../analyse/analysis-text.ts';
@@ -34,6 +34,9 @@ export const addAnalyse: AddCommand = (program, io, done) => {
     .option('--full-scale <value>', 'value of the largest integer sample, in that unit (default: 1)')
     .option('--sensitivity <value>', "of the sensor, such as '100 mV/g'; the samples are V then")
     .option('--sample-rate <hz>', 'of files that do not say it (CSV without time)')
+    .option('--dataset <path>', 'HDF5: the data set, or the group whose data sets are the channels')
+    .option('--sample-rate-attribute <name>', 'HDF5: the attribute that gives the sample rate in Hz')
+    .option('--channels-in <side>', 'NPY, HDF5: columns or rows, where the shape does not tell')
     .option('--window <name>', 'hann (default), rectangular, hamming, blackman, blackman-harris, flat-top')
     .option('--overlap <percent>', '0 to 95 (default: 50)')
     .option('--segment <samples>', 'a power of two (default: as long as lines 1.6 Hz apart need)')
@@ -44,7 +47,9 @@ export const addAnalyse: AddCommand = (program, io, done) => {
       'after',
       "\nExample:\n  humledger analyse --sensitivity '100 mV/g' --full-scale 10 --band 10..1000:velocity fan.wav",
     )
-    .action((files: string[], options: AnalyseOptions) => done(analyse(files, options, io)));
+    .action(async (files: string[], options: AnalyseOptions) => {
+      done(await analyse(files, options, io));
+    });
 };
 
 function collect(value: string, before: readonly string[] = []): readonly string[] {
@@ -52,18 +57,22 @@ function collect(value: string, before: readonly string[] = []): readonly string
 }
 
 /** How each file is to be planned for; or the exit status where the command line or site file is wrong. */
-type Planner = { readonly largestBytes: number; readonly planFor: (path: string) => PlanFor };
+type Planner = { readonly largestBytes: number; readonly planFor: (path: string) => PlannedFile };
 
 /** Largest file without a site file to say it. */
 const usualLargestBytes = 4e9;
 
-function analyse(files: readonly string[], options: AnalyseOptions, io: CommandIo): ExitStatus {
+async function analyse(
+  files: readonly string[],
+  options: AnalyseOptions,
+  io: CommandIo,
+): Promise<ExitStatus> {
   const planner = plannerOf(options, io);
   if ('problems' in planner) return misused(io, planner.problems.join('\n'));
   const objects: unknown[] = [];
   let status: ExitStatus = 0;
   for (const file of files) {
-    const analysed = one(file, planner, io);
+    const analysed = await one(file, planner, io);
     if ('reason' in analysed) {
       status = fail(io, `${printableName(file)}: ${analysed.reason}`);
       continue;
@@ -98,7 +107,10 @@ function plannerOf(
     }
     const settings = readOneOffOptions(options);
     if ('wrong' in settings) return { problems: [settings.wrong] };
-    return { largestBytes: usualLargestBytes, planFor: () => plansOfChannels(settings) };
+    return {
+      largestBytes: usualLargestBytes,
+      planFor: () => ({ layout: settings.layout, planFor: plansOfChannels(settings) }),
+    };
   }
   const siteFile = readSiteFile(path);
   if ('problems' in siteFile) return siteFile;
@@ -106,14 +118,21 @@ function plannerOf(
   return { largestBytes: site.largestFileBytes, planFor: (file) => plansOfSite(site, file) };
 }
 
-function one(file: string, planner: Planner, io: CommandIo): AnalysedFile | { readonly reason: string } {
+async function one(
+  file: string,
+  planner: Planner,
+  io: CommandIo,
+): Promise<AnalysedFile | { readonly reason: string }> {
   const path = resolve(io.workingFolder, file);
-  const planFor = planner.planFor(path);
+  const { layout, planFor } = planner.planFor(path);
   let plan: AnalysisPlan | null = null;
-  const analysis = analyseFile(path, planner.largestBytes, (header, sidecar) => {
-    const answer = planFor(header, sidecar);
-    if (!('reason' in answer)) plan = answer;
-    return answer;
+  const analysis = await analyseFile(path, planner.largestBytes, {
+    layout,
+    planFor: (header, sidecar) => {
+      const answer = planFor(header, sidecar);
+      if (!('reason' in answer)) plan = answer;
+      return answer;
+    },
   });
   if ('reason' in analysis) return analysis;
   return { file, analysis, bands: analysis.measurements.map((measured) => bandsIn(plan, measured)) };

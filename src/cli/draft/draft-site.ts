@@ -36,7 +36,7 @@ export async function draftSite(
   };
   for (const series of all) {
     const found =
-      read.length < mostSeries ? lookAtSeries(folder, series) : { reason: 'too many kinds of names' };
+      read.length < mostSeries ? await lookAtSeries(folder, series) : { reason: 'too many kinds of names' };
     if ('reason' in found) leave(series, found.reason);
     else read.push({ series, look: found, sidecars: sidecarsOf(series, look.sidecars) });
   }

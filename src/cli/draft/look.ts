@@ -4,6 +4,7 @@ import { nameOf, sidecarNameOf } from '../../acquisition/file-name.ts';
 import { readerFor } from '../../acquisition/readers.ts';
 import { isRefusal, type RecordingHeader } from '../../acquisition/recording.ts';
 import { sweepFolder } from '../../acquisition/sweep.ts';
+import { nothingSaid } from '../../config/sample-layout.ts';
 import { openRegularFile } from '../../service/file-source.ts';
 import type { NamedFile } from './name-parts.ts';
 import type { NameSeries } from './name-series.ts';
@@ -55,13 +56,16 @@ export interface SeriesLook {
 }
 
 /** Newest, oldest and middle recording of a series; or why none of them can be read. */
-export function lookAtSeries(folder: string, series: NameSeries): SeriesLook | { readonly reason: string } {
+export async function lookAtSeries(
+  folder: string,
+  series: NameSeries,
+): Promise<SeriesLook | { readonly reason: string }> {
   const order = series.files.toSorted((a, b) => b.mtimeMs - a.mtimeMs);
   const picked = new Set([0, order.length - 1, order.length >> 1].slice(0, headersASeries));
   const looks: Look[] = [];
   let reason = 'no file of it can be read';
   for (const index of picked) {
-    const look = lookAtFile(`${folder}/${order[index]?.path}`);
+    const look = await lookAtFile(`${folder}/${order[index]?.path}`);
     if ('reason' in look) reason = look.reason;
     else looks.push(look);
   }
@@ -89,19 +93,20 @@ interface Look {
   readonly durationS: number | null;
 }
 
-function lookAtFile(path: string): Look | { readonly reason: string } {
+async function lookAtFile(path: string): Promise<Look | { readonly reason: string }> {
   const file = openRegularFile(path, largestFile);
   if ('reason' in file) return file;
   try {
     const reader = readerFor(readHead(file.source), basename(path));
     if (isRefusal(reader)) return { reason: reader.reason };
-    const header = reader.header(file.source);
+    await reader.prepare?.();
+    const header = reader.header(file.source, nothingSaid);
     if (isRefusal(header)) return { reason: header.reason };
     const { framesClaimed, sampleRateHz } = header;
     if (framesClaimed !== null && sampleRateHz !== null)
       return { header, sampleRateHz, durationS: framesClaimed / sampleRateHz };
     if (file.source.size > largestReadThrough) return { header, sampleRateHz, durationS: null };
-    const blocks = reader.samples(file.source, header);
+    const blocks = reader.samples(file.source, header, nothingSaid);
     let next = blocks.next();
     while (next.done !== true) next = blocks.next();
     if (isRefusal(next.value)) return { reason: next.value.reason };
