@@ -77,3 +77,8 @@ export function localDate(ms: number, timeZone: string): string {
   const { year, month, day } = localTime(ms, timeZone);
   return `${String(year).padStart(4, '0')}-${String(month).padStart(2, '0')}-${String(day).padStart(2, '0')}`;
 }
+
+/** Days since 1970-01-01 of the local date at the instant `ms`: neighbouring dates differ by one. */
+export function localDay(ms: number, timeZone: string): number {
+  return Math.floor((ms + offsetMs(ms, timeZone)) / 86_400_000);
+}

@@ -6,6 +6,7 @@ import { type ChangeContext, saveAlarmChange } from '../store/save-alarm.ts';
 import { getSource, noteArrival, type Source, saveSource } from '../store/sources.ts';
 import { insertMeasurement } from '../store/trends.ts';
 import { type Evaluated, evaluate } from './evaluate.ts';
+import { learn } from './learn.ts';
 import type { RecordingTime } from './recording-time.ts';
 import { spansOf, statedStart, timeOf } from './recording-time.ts';
 import { troublesOf } from './recording-troubles.ts';
@@ -153,11 +154,14 @@ async function storeEvaluated(
     recordingId,
     usedMs: Math.round(time.usedMs),
     machineState: one.machineState,
+    condition: one.condition,
+    runningHours: one.runningHours,
     evaluated: judged && !time.late,
-    inTrend: judged && one.machineState === 'running',
+    inTrend: judged && one.condition !== null,
     atAlarm: one.changes.some(({ journal }) => journal.length > 0),
   });
   for (const change of one.changes) await saveAlarmChange(writer, change, context);
+  if (judged) await learn(writer, view, one.point, Math.round(time.usedMs));
 }
 
 async function noteArrivals(

@@ -1,6 +1,7 @@
 import type { QualityFinding, QualityFlag } from '../acquisition/recording.ts';
 import type { Point } from '../config/site.ts';
 import { type AlarmChange, type AlarmState, type AlarmSubject, subjectKey } from '../detection/alarm.ts';
+import { conditionOf } from '../detection/condition.ts';
 import { detect, subjectsOf } from '../detection/detect.ts';
 import { lowSignal } from '../detection/low-signal.ts';
 import { type MachineMemory, type MachineState, machineStep, readingOf } from '../detection/machine-state.ts';
@@ -20,6 +21,9 @@ export interface Evaluated {
   readonly point: Point;
   readonly measurement: Measurement;
   readonly machineState: MachineState;
+  /** Operating condition; null: outside all of them, or the machine does not run. */
+  readonly condition: string | null;
+  readonly runningHours: number;
   readonly changes: readonly AlarmChange[];
 }
 
@@ -85,7 +89,14 @@ async function evaluateMachine(
           earlier,
         })
       : [];
-    evaluated.push({ point, measurement, machineState: own.state, changes });
+    evaluated.push({
+      point,
+      measurement,
+      machineState: own.state,
+      condition: own.state === 'running' ? conditionOf(machine.conditions ?? [], measured) : null,
+      runningHours: (step.memory.ranMs ?? 0) / 3_600_000,
+      changes,
+    });
   }
   return evaluated;
 }

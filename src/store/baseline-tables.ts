@@ -1,8 +1,10 @@
+import type { Generated } from 'kysely';
+
 /** Tables of what is usual and of what was done to machines. Conventions as in schema.ts. */
 
 /** Operating conditions by surrogate id; 0 in other tables: the machine's list is empty, all running is one. */
 export interface ConditionsTable {
-  id: number;
+  id: Generated<number>;
   machine_id: number;
   id_in_site: string;
 }
@@ -50,7 +52,7 @@ export interface BaselinesTable {
 
 /** What people did to a machine, or what they have to say. */
 export interface NotesTable {
-  id: number;
+  id: Generated<number>;
   machine_id: number;
   /** null: the whole machine. */
   point_id: number | null;

@@ -23,6 +23,8 @@ export interface StoredMeasurement {
   readonly loadPercent: number | null;
   readonly runningSaid: boolean | null;
   readonly machineState: MachineStateName;
+  readonly condition: string | null;
+  readonly runningHours: number | null;
   readonly evaluated: boolean;
   readonly waveform: WaveformValues | null;
   readonly averaging: Averaging | null;
@@ -107,6 +109,8 @@ function storedMeasurement(
     loadPercent: row.load_percent,
     runningSaid: row.running_said === null ? null : row.running_said === 1,
     machineState: row.machine_state as MachineStateName,
+    condition: row.condition,
+    runningHours: row.running_hours,
     evaluated: row.evaluated === 1,
     waveform: waveformOf(row),
     averaging: averagingOf(row),

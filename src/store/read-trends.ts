@@ -15,6 +15,7 @@ export interface TrendPoint {
   readonly intervalHigh: number;
   readonly exceededBy80Percent: number | null;
   readonly atLeast: boolean;
+  readonly conditionId: number;
   readonly inTrend: boolean;
 }
 
@@ -112,6 +113,7 @@ export function trendPoint(row: Selectable<LevelsTable>): TrendPoint {
     intervalHigh: row.interval_high,
     exceededBy80Percent: row.exceeded_by_80_percent,
     atLeast: row.at_least === 1,
+    conditionId: row.condition_id,
     inTrend: row.in_trend === 1,
   };
 }

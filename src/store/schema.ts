@@ -8,6 +8,13 @@ import type {
   ThreadsTable,
   ToTellTable,
 } from './alarm-tables.ts';
+import type {
+  BaselinesTable,
+  ConditionsTable,
+  DailyLevelsTable,
+  DayMarksTable,
+  NotesTable,
+} from './baseline-tables.ts';
 
 /**
  * The ledger's tables. Times are integer milliseconds since 1970 UTC; truth values are 0 or 1; levels are r.m.s. in
@@ -38,6 +45,11 @@ export interface LedgerTables {
   peaks: PeaksTable;
   spectra: SpectraTable;
   point_arrivals: PointArrivalsTable;
+  conditions: ConditionsTable;
+  daily_levels: DailyLevelsTable;
+  day_marks: DayMarksTable;
+  baselines: BaselinesTable;
+  notes: NotesTable;
   machine_states: { machine_id: number; state: string; used_ms: number | null; version: number };
   alarm_states: AlarmStatesTable;
   alarms: AlarmsTable;
@@ -142,6 +154,10 @@ export interface MeasurementsTable {
   running_said: number | null;
   /** running | stopped | transient */
   machine_state: string;
+  /** Operating condition by its id in the site file, '' where the machine lists none; null: outside all, or not running. */
+  condition: string | null;
+  /** Hours that the machine has run since the ledger knows it. */
+  running_hours: number | null;
   evaluated: number;
   mean: number | null;
   rms: number | null;
@@ -186,6 +202,7 @@ export interface LevelsTable {
   interval_high: number;
   exceeded_by_80_percent: number | null;
   at_least: number;
+  condition_id: number;
   /** 1: belongs to the trend; 0: machine stopped or transient, late twin, repeated content. */
   in_trend: number;
 }

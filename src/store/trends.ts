@@ -1,5 +1,6 @@
 import type { Insertable } from 'kysely';
 import type { Measurement, SpectralPeak } from '../manipulation/measurement.ts';
+import { conditionId } from './conditions.ts';
 import { jsonOfFinite } from './journal.ts';
 import type { Writer } from './lent-connection.ts';
 import { insertRows } from './many-rows.ts';
@@ -15,6 +16,10 @@ export interface NewMeasurement {
   readonly recordingId: number;
   readonly usedMs: number;
   readonly machineState: MachineStateName;
+  /** Operating condition, '' where the machine lists none; null: outside all, or not running. */
+  readonly condition: string | null;
+  /** Hours that the machine has run so far; null: not counted. */
+  readonly runningHours: number | null;
   /** Took part in detection in its turn. */
   readonly evaluated: boolean;
   /** Belongs to the trend; false: machine stopped or transient, late twin, repeated content. */
@@ -64,6 +69,8 @@ async function insertLevels(
   const { measurement, usedMs } = entry;
   if (measurement.levels.length === 0) return;
   const seriesIds = await getSeries(writer, ids, entry, place.pointId);
+  const machineId = ids.machineId(measurement.machineId);
+  const condition = await conditionId(writer, machineId, entry.condition ?? '');
   const rows = measurement.levels.map((level): LevelsTable => {
     if (!(level.level >= 0)) throw new Error(`${measurement.pointId} ${level.bandId}: level ${level.level}`);
     const bandId = ids.bandId(measurement.machineId, measurement.pointId, level.bandId);
@@ -78,6 +85,7 @@ async function insertLevels(
       interval_high: level.intervalHigh,
       exceeded_by_80_percent: level.exceededBy80Percent,
       at_least: level.atLeast ? 1 : 0,
+      condition_id: condition,
       in_trend: entry.inTrend ? 1 : 0,
     };
   });
@@ -95,6 +103,7 @@ const levelColumns = [
   'interval_high',
   'exceeded_by_80_percent',
   'at_least',
+  'condition_id',
   'in_trend',
 ] as const satisfies readonly (keyof LevelsTable)[];
 
@@ -103,7 +112,7 @@ const levelConflict = `
   on conflict (point_id, used_ms, band_id, series_id) do update set
     measurement_id = excluded.measurement_id, level = excluded.level, interval_low = excluded.interval_low,
     interval_high = excluded.interval_high, exceeded_by_80_percent = excluded.exceeded_by_80_percent,
-    at_least = excluded.at_least, in_trend = excluded.in_trend
+    at_least = excluded.at_least, condition_id = excluded.condition_id, in_trend = excluded.in_trend
   where excluded.in_trend >= levels.in_trend or excluded.measurement_id = levels.measurement_id`;
 
 /** Ids of the series of all levels of a measurement, by `seriesName`; new settings begin a new series. */
@@ -199,6 +208,8 @@ function measurementRow(entry: NewMeasurement, pointId: number): Insertable<Meas
     load_percent: measurement.loadPercent,
     running_said: measurement.runningSaid === null ? null : measurement.runningSaid ? 1 : 0,
     machine_state: entry.machineState,
+    condition: entry.condition,
+    running_hours: entry.runningHours,
     evaluated: entry.evaluated ? 1 : 0,
     mean: waveform?.mean ?? null,
     rms: waveform?.rms ?? null,

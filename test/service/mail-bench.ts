@@ -134,6 +134,8 @@ export class MailBench {
           recordingId,
           usedMs,
           machineState: one.machineState,
+          condition: '',
+          runningHours: null,
           evaluated: !late,
           inTrend: one.machineState === 'running',
           atAlarm: false,

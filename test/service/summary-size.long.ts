@@ -41,6 +41,8 @@ it('takes a second or two, and holds up nobody meanwhile', async () => {
           recordingId,
           usedMs,
           machineState: 'running',
+          condition: '',
+          runningHours: null,
           evaluated: true,
           inTrend: true,
           atAlarm: false,

@@ -60,7 +60,7 @@ test('a backup never overwrites, and one that stops half-way leaves no file of t
   });
   expect(steps).toEqual([]);
   expect(readFileSync(file, 'utf8')).toBe('precious');
-  for (const stop of ['backup copied', 'backup checked']) {
+  for (const stop of ['backup: copied', 'backup: checked', 'backup: forced to the disk'] as const) {
     const other = join(target, 'other.sqlite');
     const stopped = backupLedger(ledger.path, other, (name) => {
       if (name === stop) throw new Error(`stopped at ${name}`);

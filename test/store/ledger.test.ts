@@ -131,7 +131,7 @@ test('a transaction that is run again begins anew: no rows and no hooks of the f
   const ledger = await opened(temporaryFolder(), {
     wait: async () => {},
     step: (name) => {
-      if (name !== 'transaction before commit' || !fail) return;
+      if (name !== 'transaction: before commit' || !fail) return;
       fail = false;
       throw Object.assign(new Error('held'), { code: 'SQLITE_BUSY' });
     },

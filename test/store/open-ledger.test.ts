@@ -10,8 +10,11 @@ import { ledgerPath } from '../../src/store/open-ledger.ts';
 import { isOwned } from '../../src/store/owner-lock.ts';
 import { opened, refusal, temporaryFolder } from './temporary-ledger.ts';
 
+/** The newest version that the program knows; one more is made up here. */
+const newest = migrations.length;
+
 const second: Migration = {
-  number: 2,
+  number: newest + 1,
   name: 'second',
   statements: [
     'alter table sources add column colour text',
@@ -57,13 +60,13 @@ test('a migration that stops half-way leaves the ledger as it was and runs again
   const killed = opened(folder, {
     migrations: [...migrations, second],
     step: (name) => {
-      if (name === 'migration 2 before commit') throw new Error('killed here');
+      if (name === 'migration: noted as done') throw new Error('killed here');
     },
   });
   await expect(killed).rejects.toThrow('killed here');
   expect(tablesOf(folder)).toEqual(half);
   const done = await opened(folder, { migrations: [...migrations, second] });
-  expect(done.version).toBe(2);
+  expect(done.version).toBe(newest + 1);
   expect(tablesOf(folder)).toContain('extra');
 });
 
@@ -74,14 +77,14 @@ test('an older ledger is copied before it is changed; the copy is whole', async 
     await writer.insertInto('told_once').values({ key: 'kept', wall_ms: 1 }).execute();
   });
   await old.close();
-  writeFileSync(join(folder, 'ledger-before-2.sqlite.part'), 'left by an earlier try');
+  writeFileSync(join(folder, `ledger-before-${newest + 1}.sqlite.part`), 'left by an earlier try');
   await opened(folder, { migrations: [...migrations, second] });
-  const copy = new Database(join(folder, 'ledger-before-2.sqlite'), { readonly: true });
+  const copy = new Database(join(folder, `ledger-before-${newest + 1}.sqlite`), { readonly: true });
   expect(copy.pragma('quick_check', { simple: true })).toBe('ok');
   expect(copy.prepare('select key from told_once').pluck().all()).toEqual(['kept']);
-  expect(copy.prepare('select max(number) from migrations').pluck().get()).toBe(1);
+  expect(copy.prepare('select max(number) from migrations').pluck().get()).toBe(newest);
   copy.close();
-  expect(existsSync(join(folder, 'ledger-before-2.sqlite.part'))).toBe(false);
+  expect(existsSync(join(folder, `ledger-before-${newest + 1}.sqlite.part`))).toBe(false);
 });
 
 test('a newer ledger is refused by all, an older one by guests and readers, and neither is touched', async () => {
@@ -90,10 +93,12 @@ test('a newer ledger is refused by all, an older one by guests and readers, and 
   for (const mode of ['owner', 'guest', 'reader'] as const) {
     const answer = await refusal(folder, { mode });
     expect(answer.refused).toBe('newer');
-    expect(answer.reason).toContain('is of version 2, this program knows versions up to 1');
+    expect(answer.reason).toContain(
+      `is of version ${newest + 1}, this program knows versions up to ${newest}`,
+    );
   }
   const third: Migration = {
-    number: 3,
+    number: newest + 2,
     name: 'third',
     statements: ['create table third (id integer primary key)'],
   };

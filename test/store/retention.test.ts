@@ -104,6 +104,8 @@ test('thinning works in slices, respects alarms that change meanwhile, and gives
           recordingId,
           usedMs: hour * hourMs,
           machineState: 'running',
+          condition: '',
+          runningHours: null,
           evaluated: true,
           inTrend: true,
           atAlarm: hour === 30,

@@ -96,6 +96,8 @@ test('a renaming of machine, point and band at once carries series and standing 
       recordingId,
       usedMs: 5,
       machineState: 'running',
+      condition: '',
+      runningHours: null,
       evaluated: true,
       inTrend: true,
       atAlarm: false,

@@ -40,6 +40,8 @@ async function store(
       ));
     return insertMeasurement(writer, ids, {
       machineState: 'running',
+      condition: '',
+      runningHours: null,
       evaluated: true,
       inTrend: true,
       atAlarm: false,
@@ -99,6 +101,8 @@ test('a measurement comes back from the ledger as it went in', async () => {
     id,
     usedMs: 1000,
     machineState: 'running',
+    condition: '',
+    runningHours: null,
     evaluated: true,
     confidencePercent: 95,
   });
@@ -267,6 +271,8 @@ test('a recording with 12 bands, 40 peaks and a spectrum costs less than 2 ms of
           recordingId,
           usedMs: number,
           machineState: 'running',
+          condition: '',
+          runningHours: null,
           evaluated: true,
           inTrend: true,
           atAlarm: false,

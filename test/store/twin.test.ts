@@ -175,6 +175,8 @@ async function perform(
         recordingId,
         usedMs: of.usedMs,
         machineState: 'running',
+        condition: '',
+        runningHours: null,
         evaluated: true,
         inTrend: of.inTrend,
         atAlarm: false,

@@ -1,5 +1,7 @@
 import type { Database } from 'better-sqlite3';
+import type { LedgerStep } from '../ledger-steps.ts';
 import { first } from './001-first.ts';
+import { baselines } from './002-baselines.ts';
 
 /** One step of the ledger's tables; `number` counts from 1 without gaps, in the order of `migrations`. */
 export interface Migration {
@@ -8,7 +10,13 @@ export interface Migration {
   readonly statements: readonly string[];
 }
 
-export const migrations: readonly Migration[] = [first];
+/** In this order; who adds one takes the next number. */
+export const migrations: readonly Migration[] = [first, baselines];
+
+interface Now {
+  readonly wallMs: number;
+  readonly step: (name: LedgerStep) => void;
+}
 
 /** Version of a ledger: the greatest number done; 0 for an empty file; null where the file is another program's. */
 export function ledgerVersion(connection: Database): number | null {
@@ -26,11 +34,7 @@ export function ledgerVersion(connection: Database): number | null {
  * Runs what is not done yet. Each migration commits together with the row that says it is done, so one that was
  * killed half-way leaves nothing behind and runs again from its beginning.
  */
-export function migrate(
-  connection: Database,
-  known: readonly Migration[],
-  now: { readonly wallMs: number; readonly step: (name: string) => void },
-): void {
+export function migrate(connection: Database, known: readonly Migration[], now: Now): void {
   const done = ledgerVersion(connection) ?? 0;
   for (const [index, migration] of known.entries()) {
     if (migration.number !== index + 1) throw new Error(`migration ${migration.name} is out of order`);
@@ -39,22 +43,21 @@ export function migrate(
   }
 }
 
-function runOne(
-  connection: Database,
-  migration: Migration,
-  now: { readonly wallMs: number; readonly step: (name: string) => void },
-): void {
+function runOne(connection: Database, migration: Migration, now: Now): void {
   connection.exec('begin immediate');
   try {
     connection.exec(
       'create table if not exists migrations (number integer primary key, name text not null, done_ms integer not null) strict',
     );
+    now.step('migration: begun');
     for (const statement of migration.statements) connection.exec(statement);
-    now.step(`migration ${migration.number} before commit`);
+    now.step('migration: tables changed');
     connection
       .prepare('insert into migrations (number, name, done_ms) values (?, ?, ?)')
       .run(migration.number, migration.name, now.wallMs);
+    now.step('migration: noted as done');
     connection.exec('commit');
+    now.step('migration: committed');
   } catch (error) {
     if (connection.inTransaction) connection.exec('rollback');
     throw error;
