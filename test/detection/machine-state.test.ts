@@ -157,3 +157,42 @@ describe('running, stopped, transient', () => {
     expect(Object.keys(next.memory.readings)).toEqual(['de-h']);
   });
 });
+
+describe('the hours that a machine ran', () => {
+  const ran = (heard: readonly (readonly [number, boolean | null])[]) =>
+    (played(
+      bySpeed,
+      heard.map(([hours, running]) => [hours, { 'de-h': running }] as const),
+    ).memory.ranMs ?? 0) / hourMs;
+
+  it('are counted from recording to recording while it runs', () => {
+    expect(ran([[0, true]])).toBe(0);
+    expect(
+      ran([
+        [0, true],
+        [1, true],
+        [2, true],
+        [3, false],
+        [9, false],
+        [10, true],
+        [11, true],
+      ]),
+    ).toBe(3);
+  });
+
+  it('are one interval where nothing came for longer than two', () => {
+    expect(
+      ran([
+        [0, true],
+        [2, true],
+      ]),
+    ).toBe(2);
+    expect(
+      ran([
+        [0, true],
+        [100, true],
+        [101, true],
+      ]),
+    ).toBe(2);
+  });
+});
