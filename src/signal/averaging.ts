@@ -8,7 +8,11 @@ export interface AveragingSettings {
   /** Overlap of neighbouring segments in percent of the segment, 0 to 95. */
   readonly overlapPercent: number;
   readonly sampleRateHz: number;
+  /** What is taken off each segment before the window: its mean (default), or its straight line of least squares. */
+  readonly detrend?: Detrend;
 }
+
+export type Detrend = 'mean' | 'linear';
 
 export interface AveragedDensity {
   /** One-sided density, (unit of the samples)²/Hz, lines 0 .. segmentSamples / 2; NaN throughout where `averages` is 0. */
@@ -44,8 +48,9 @@ export function segmentsThatFit(samples: number, segmentSamples: number, hop: nu
  * Overlap-averaged density (Welch 1967) of a recording that is fed in blocks of any size; keeps two segments, never
  * the recording, and gives bit for bit the same whatever the size of the blocks.
  *
- * Each segment has its mean removed, is windowed and transformed; its one-sided density is c |X[k]|² / (fs sum w²),
- * c = 2, but 1 at lines 0 and N / 2, which have no mirror image. Two segments share one complex transform.
+ * Each segment has its mean removed (or its straight line, see `slopeOf`), is windowed and transformed; its one-sided
+ * density is c |X[k]|² / (fs sum w²), c = 2, but 1 at lines 0 and N / 2, which have no mirror image. Two segments share
+ * one complex transform.
  *
  * The samples are finite numbers: a NaN would spread over every line of the average.
  */
@@ -127,6 +132,10 @@ export class Averager {
       packed[2 * n] = (pair[n] - firstMean) * window[n];
       packed[2 * n + 1] = (pair[n + hop] - secondMean) * window[n];
     }
+    if (this.settings.detrend === 'linear') {
+      this.removeSlope(0, slopeOf(pair, 0, length, firstMean));
+      this.removeSlope(1, slopeOf(pair, hop, length, secondMean));
+    }
     this.transform.run();
     this.include(firstPower);
     this.include(secondPower);
@@ -140,8 +149,17 @@ export class Averager {
     const mean = meanOf(pair, 0, window.length);
     packed.fill(0);
     for (let n = 0; n < window.length; n++) packed[2 * n] = (pair[n] - mean) * window[n];
+    if (this.settings.detrend === 'linear') this.removeSlope(0, slopeOf(pair, 0, window.length, mean));
     this.transform.run();
     this.include(firstPower);
+  }
+
+  /** Takes the windowed straight line through the middle of a segment off one side of the packed input. */
+  private removeSlope(side: 0 | 1, slope: number): void {
+    const { values: window } = this.window;
+    const { packed } = this.transform;
+    const middle = 0.5 * (window.length - 1);
+    for (let n = 0; n < window.length; n++) packed[2 * n + side] -= slope * (n - middle) * window[n];
   }
 
   /** Turns |X|² into the one-sided density in place, adds it to the sum and shows it to the visitor. */
@@ -184,6 +202,17 @@ function meanOf(samples: Float64Array, from: number, length: number): number {
     d += samples[n + 3];
   }
   return (a + b + (c + d)) / length;
+}
+
+/**
+ * Slope of the straight line of least squares through a segment, per sample: sum t x / sum t² with t = n - (N - 1) / 2,
+ * sum t² = N (N² - 1) / 12. The line passes through the mean at the segment's middle.
+ */
+function slopeOf(samples: Float64Array, from: number, length: number, mean: number): number {
+  const middle = 0.5 * (length - 1);
+  let sum = 0;
+  for (let n = 0; n < length; n++) sum += (n - middle) * (samples[from + n] - mean);
+  return (12 * sum) / (length * (length * length - 1));
 }
 
 function checkSettings({ segmentSamples, overlapPercent, sampleRateHz }: AveragingSettings): void {

@@ -13,8 +13,12 @@
  * line is F, so its variance per sample F N / 2. The product 2 sum w² s v / sum w², averaged over K segments, has
  *     V_tone = 2 T F N / (sum w²)² / K * [ sum w⁴ + 2 sum_{m>=1} (1 - m/K) sum w²[n] w²[n - m hop] ],
  * T the tone's mean square. T, F and V are weighted as the band's lines are.
+ *
+ * Where recordings are pooled, K is their segments in all and the share of pairs m hops apart (`pooled-segments.ts`)
+ * takes the place of 1 - m/K: segments repeat each other within a recording only.
  */
 import type { BandWeights } from './band-level.ts';
+import { mostSegments, pairShare, type Segments, totalSegments } from './pooled-segments.ts';
 import { chiSquareQuantile } from './statistics.ts';
 import { PairTransform } from './transform.ts';
 import { makeWindow, type WindowName } from './window.ts';
@@ -53,8 +57,7 @@ const farthestCoupling = 64;
 
 /**
  * The kernel for `averages` segments of `segmentSamples` (a power of two), `hop` samples apart. Costs one transform
- * per two overlapped neighbours: build it once per setting and number of averages. `averages` is that of one
- * recording; where the densities of several like recordings are pooled, `recordings` is their number.
+ * per two overlapped neighbours: build it once per setting and number of averages.
  *
  * Throws a RangeError for a length that is no power of two, or without a single average.
  * Checked: Hann, no overlap, K = 1: c(0) = 1, c(1) = 4/9, c(2) = 1/36, nothing beyond.
@@ -63,15 +66,15 @@ export function makeIntervalKernel(
   window: WindowName,
   segmentSamples: number,
   hop: number,
-  averages: number,
-  recordings = 1,
+  averages: Segments,
 ): IntervalKernel {
-  if (!(averages >= 1)) throw new RangeError(`averages = ${averages}: an interval needs at least 1`);
+  const total = totalSegments(averages);
+  if (!(total >= 1)) throw new RangeError(`averages = ${averages}: an interval needs at least 1`);
   const length = Math.min(segmentSamples, kernelSamples);
   const shortHop = Math.max(1, Math.round((hop * length) / segmentSamples));
   const w = makeWindow(window, length);
   const power = w.reduce((sum, value) => sum + value * value, 0);
-  const lags = Math.min(Math.ceil(length / shortHop), averages);
+  const lags = Math.min(Math.ceil(length / shortHop), mostSegments(averages));
   const coupling = new Float64Array(length / 2 + 1);
   let fourth = 0;
   const transform = new PairTransform(length);
@@ -86,7 +89,6 @@ export function makeIntervalKernel(
       if (second) coupling[d] += lagWeight(m + 1, averages) * transform.secondPower[d];
     }
   }
-  const total = averages * recordings;
   const corrected = coupling.map((sum) => {
     const c = sum / power ** 2;
     return c / (1 + c / total) / total;
@@ -99,8 +101,8 @@ export function makeIntervalKernel(
 }
 
 /** In the double sum over segments, m hops apart occur on both sides, K - m times. */
-function lagWeight(m: number, averages: number): number {
-  return m === 0 ? 1 : 2 * (1 - m / averages);
+function lagWeight(m: number, averages: Segments): number {
+  return m === 0 ? 1 : 2 * pairShare(averages, m);
 }
 
 /** Writes w[n] w[n - shift] into one side of the packed input; returns the sum of its squares. */

@@ -36,10 +36,14 @@ export function usableLines(shape: AveragingShape): { firstLine: number; lastLin
  * a second pass, so that even a dense family of harmonics lifts it little.
  *
  * `perLine`: probability with which a line of noise may pass the threshold. Spectra of fewer than 301 usable lines use
- * what there is.
+ * what there is. `statistics`: of the density's lines, where it is no mean of the segments.
  */
-export function noiseFloor(density: Float64Array, shape: AveragingShape, perLine: number): NoiseFloor {
-  const statistics = noiseStatistics(shape);
+export function noiseFloor(
+  density: Float64Array,
+  shape: AveragingShape,
+  perLine: number,
+  statistics: NoiseStatistics = noiseStatistics(shape),
+): NoiseFloor {
   const { firstLine, lastLine } = usableLines(shape);
   const floor = new Float64Array(density.length);
   const linesBehind = new Uint16Array(density.length);

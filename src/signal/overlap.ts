@@ -1,3 +1,4 @@
+import { mostSegments, pairShare, type Segments, totalSegments } from './pooled-segments.ts';
 import { makeWindow, type WindowName } from './window.ts';
 
 /**
@@ -19,19 +20,20 @@ export function windowCorrelations(name: WindowName, segmentSamples: number, hop
 
 /**
  * Independent averages that overlapped ones are worth on Gaussian noise: K / (1 + 2 sum (1 - m/K) rho_m²)
- * (Welch 1967). Not monotonic in overlap: past about 75 % (Hann) further segments only repeat data.
+ * (Welch 1967). Not monotonic in overlap: past about 75 % (Hann) further segments only repeat data. Where recordings
+ * are pooled, the share of pairs takes the place of 1 - m/K: recordings of equal length add up.
  * Checked: Hann, 50 %, K = 39: 36.9973.
  */
 export function effectiveAverages(
   name: WindowName,
   segmentSamples: number,
   hop: number,
-  averages: number,
+  averages: Segments,
 ): number {
   const correlations = windowCorrelations(name, segmentSamples, hop);
   let sum = 0;
-  for (let m = 1; m < Math.min(correlations.length, averages); m++) {
-    sum += (1 - m / averages) * correlations[m] ** 2;
+  for (let m = 1; m < Math.min(correlations.length, mostSegments(averages)); m++) {
+    sum += pairShare(averages, m) * correlations[m] ** 2;
   }
-  return averages / (1 + 2 * sum);
+  return totalSegments(averages) / (1 + 2 * sum);
 }

@@ -1,7 +1,10 @@
-import { type NoiseFloor, noiseFloor, usableLines } from './floor.ts';
+import { type NoiseFloor, usableLines } from './floor.ts';
 import { humpRegion } from './hump.ts';
 import { type Leakage, type LeakageSource, leakageOf } from './leakage.ts';
-import { type AveragingShape, noiseStatistics } from './threshold.ts';
+import type { MedianDensity } from './median-average.ts';
+import { totalSegments } from './pooled-segments.ts';
+import { type Searched, searchedMean, searchedMedian } from './searched-density.ts';
+import type { AveragingShape } from './threshold.ts';
 import { ToneFitter } from './tone-fit.ts';
 import { mainLobeHalfWidthLines, noiseBandwidthLines } from './window.ts';
 
@@ -9,6 +12,8 @@ export interface PeakSettings extends AveragingShape {
   readonly sampleRateHz: number;
   /** False peaks that noise alone may give in a spectrum, on average. Default 0.1. */
   readonly falsePeaksPerSpectrum?: number;
+  /** Where the search looks for peaks, over this one's own floor; their levels are the density's all the same. */
+  readonly searchIn?: MedianDensity;
 }
 
 /** A spectral maximum that stands out of the local noise floor. */
@@ -70,17 +75,23 @@ export function findPeaks(density: Float64Array, settings: PeakSettings): PeakSe
   }
   const { firstLine, lastLine } = usableLines(settings);
   const empty = { floor: new Float64Array(density.length), peaks: [] };
-  if (settings.averages < 1 || lastLine < firstLine || !Number.isFinite(density[firstLine])) return empty;
+  if (totalSegments(settings.averages) < 1 || lastLine < firstLine || !Number.isFinite(density[firstLine]))
+    return empty;
   const perLine = falsePeaksPerSpectrum / (lastLine - firstLine + 1);
-  const noise = noiseFloor(density, settings, perLine);
-  const peaks = new PeakPicker(density, noise, settings, perLine).pick();
-  return { floor: noise.floor, peaks };
+  const measured = searchedMean(density, settings, perLine);
+  const searched =
+    settings.searchIn === undefined ? measured : searchedMedian(settings.searchIn, settings, perLine);
+  const peaks = new PeakPicker(searched, measured, settings, perLine).pick();
+  return { floor: searched.noise.floor, peaks };
 }
 
 /** One search: goes through the maxima from the strongest down and keeps what the stronger ones do not explain. */
 class PeakPicker {
   private readonly density: Float64Array;
   private readonly noise: NoiseFloor;
+  private readonly toneGain: number;
+  /** What levels are taken from: `density` itself, unless the search is made in another average. */
+  private readonly measured: Searched;
   private readonly halfWidth: number;
   private readonly leakage: Leakage;
   private readonly fitter: ToneFitter;
@@ -89,13 +100,15 @@ class PeakPicker {
   private readonly bandwidthHz: number;
   private readonly sources: LeakageSource[] = [];
 
-  constructor(density: Float64Array, noise: NoiseFloor, settings: PeakSettings, perLine: number) {
-    this.density = density;
-    this.noise = noise;
+  constructor(searched: Searched, measured: Searched, settings: PeakSettings, perLine: number) {
+    this.density = searched.density;
+    this.noise = searched.noise;
+    this.toneGain = searched.toneGain;
+    this.measured = measured;
     this.halfWidth = mainLobeHalfWidthLines(settings.window);
     this.leakage = leakageOf(settings.window, settings.segmentSamples);
     this.fitter = new ToneFitter(settings.window, settings.segmentSamples);
-    this.threshold = noiseStatistics(settings).thresholds(perLine);
+    this.threshold = searched.statistics.thresholds(perLine);
     this.lineSpacingHz = settings.sampleRateHz / settings.segmentSamples;
     this.bandwidthHz = noiseBandwidthLines(settings.window) * this.lineSpacingHz;
   }
@@ -105,7 +118,7 @@ class PeakPicker {
     const peaks: Peak[] = [];
     for (const line of this.maxima()) {
       if (this.explained(line)) continue;
-      if (line < firstLine || line > lastLine) {
+      if (line < firstLine || line > lastLine || !this.isMeasurable(line)) {
         // Too near an end to be measured, but its side lobes reach further in.
         this.sources.push({ firstLine: line, lastLine: line, amplitude: Math.sqrt(this.density[line]) });
         continue;
@@ -115,6 +128,12 @@ class PeakPicker {
       if (peaks.length === mostPeaks) break;
     }
     return peaks.sort((a, b) => b.level - a.level);
+  }
+
+  /** A peak that the median shows has a level only if the mean shows it at all: 3 dB over its floor. */
+  private isMeasurable(line: number): boolean {
+    const { density, noise } = this.measured;
+    return density === this.density || density[line] >= 2 * noise.floor[line];
   }
 
   /** Lines higher than both neighbours and above the noise threshold, strongest first. */
@@ -172,23 +191,29 @@ class PeakPicker {
    * tone's own leakage, 1 / (pi d)² of it at d lines, and must not be taken off it.
    */
   private noiseUnder(line: number): number {
-    const floor = this.noise.floor[line];
+    const { density, noise } = this.measured;
+    const floor = noise.floor[line];
     if (this.halfWidth > 1) return floor;
-    const typicalDistance = this.noise.linesBehind[line] / 4;
-    return floor > (2 * this.density[line]) / (Math.PI * typicalDistance) ** 2 ? floor : 0;
+    const typicalDistance = noise.linesBehind[line] / 4;
+    return floor > (2 * density[line]) / (Math.PI * typicalDistance) ** 2 ? floor : 0;
   }
 
   private measure(line: number): Peak {
-    const { density, lineSpacingHz } = this;
-    const floorDensity = this.noise.floor[line];
+    const { lineSpacingHz, toneGain } = this;
+    const { density, noise } = this.measured;
+    const floorDensity = noise.floor[line];
     const isClean = (at: number): boolean => 16 * this.leakedAt(at) ** 2 < density[at];
     const fit = this.fitter.fit(density, line, this.noiseUnder(line), isClean);
-    const hump = humpRegion(density, this.noise, this.halfWidth, line, (at) => this.leakageLimit(at));
-    const aboveFloorDb =
-      10 * Math.log10(density[line] / Math.max(floorDensity, roundingOfLargest * density[line]));
+    const hump = humpRegion(density, noise, this.halfWidth, line, (at) => this.leakageLimit(at));
+    const leastFloor = roundingOfLargest * density[line];
+    const aboveFloorDb = 10 * Math.log10(density[line] / Math.max(this.noise.floor[line], leastFloor));
     if (hump === null) {
       const power = fit.density * this.bandwidthHz;
-      this.sources.push({ firstLine: fit.line, lastLine: fit.line, amplitude: Math.sqrt(fit.density) });
+      this.sources.push({
+        firstLine: fit.line,
+        lastLine: fit.line,
+        amplitude: toneGain * Math.sqrt(fit.density),
+      });
       return {
         kind: 'tone',
         frequencyHz: fit.line * lineSpacingHz,
@@ -205,7 +230,7 @@ class PeakPicker {
     this.sources.push({
       firstLine: hump.firstLine,
       lastLine: hump.lastLine,
-      amplitude: Math.sqrt(power / this.bandwidthHz),
+      amplitude: toneGain * Math.sqrt(power / this.bandwidthHz),
     });
     return {
       kind: 'hump',

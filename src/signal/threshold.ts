@@ -1,6 +1,7 @@
 import { toeplitzEigenvalues } from './eigenvalues.ts';
 import { Kept } from './kept.ts';
 import { windowCorrelations } from './overlap.ts';
+import { countsOfSegments, type Segments, segmentsKey, totalSegments } from './pooled-segments.ts';
 import { logUpperTail, type QuadraticForm, upperPoint } from './quadratic-form.ts';
 import { makeWindow, type WindowName } from './window.ts';
 
@@ -9,8 +10,8 @@ export interface AveragingShape {
   readonly window: WindowName;
   readonly segmentSamples: number;
   readonly hopSamples: number;
-  /** Segments averaged, K. */
-  readonly averages: number;
+  /** Segments averaged, K; those of each recording where several are pooled. */
+  readonly averages: Segments;
 }
 
 /** What noise looks like on one line of an averaged density, as ratios to its mean. */
@@ -41,10 +42,11 @@ const kept = new Kept<string, NoiseStatistics>(64);
  * Past 128 averages ln det (I - s R) grows by the same amount with each further one, but for terms that vanish
  * exponentially (the strong limit theorem of Szegő 1952 for banded Toeplitz matrices), so the eigenvalues of 128 and
  * of 64 averages, counted (K - 64) / 64 and (128 - K) / 64 times, stand for all. Error of the tail at 1e-6: under
- * 1e-7 of it, for all windows, up to 95 % overlap.
+ * 1e-7 of it, for all windows, up to 95 % overlap. Segments of pooled recordings are independent of each other: the
+ * eigenvalues of each recording's own matrix side by side.
  */
 export function averagedNoise(shape: AveragingShape): QuadraticForm {
-  const { averages } = shape;
+  const total = totalSegments(shape.averages);
   const correlations = windowCorrelations(shape.window, shape.segmentSamples, shape.hopSamples);
   const weights: number[] = [];
   const shapes: number[] = [];
@@ -52,24 +54,26 @@ export function averagedNoise(shape: AveragingShape): QuadraticForm {
     for (const eigenvalue of toeplitzEigenvalues(correlations, segments)) {
       // Those at the rounding error, of segments that only repeat others, would carry nothing.
       if (eigenvalue < 1e-9) continue;
-      weights.push(eigenvalue / averages);
+      weights.push(eigenvalue / total);
       shapes.push(count);
     }
   };
-  if (averages <= mostEigenvalues) {
-    add(averages, 1);
-  } else {
-    const half = mostEigenvalues / 2;
-    add(mostEigenvalues, (averages - half) / half);
-    add(half, (mostEigenvalues - averages) / half);
+  for (const [averages, recordings] of countsOfSegments(shape.averages)) {
+    if (averages <= mostEigenvalues) {
+      add(averages, recordings);
+    } else {
+      const half = mostEigenvalues / 2;
+      add(mostEigenvalues, (recordings * (averages - half)) / half);
+      add(half, (recordings * (mostEigenvalues - averages)) / half);
+    }
   }
   return { weights: Float64Array.from(weights), shapes: Float64Array.from(shapes) };
 }
 
 /** The statistics of one configuration; computed once (some milliseconds), then remembered. */
 export function noiseStatistics(shape: AveragingShape): NoiseStatistics {
-  const key = `${shape.window} ${shape.segmentSamples} ${shape.hopSamples} ${shape.averages}`;
-  return kept.get(key, () => makeStatistics(shape));
+  const key = `${shape.window} ${shape.segmentSamples} ${shape.hopSamples} ${segmentsKey(shape.averages)}`;
+  return kept.get(key, () => statisticsOf(shape, averagedNoise(shape)));
 }
 
 /**
@@ -86,8 +90,8 @@ export function linesPerIndependentLine(window: WindowName, segmentSamples: numb
   return (segmentSamples * fourths) / squares ** 2;
 }
 
-function makeStatistics(shape: AveragingShape): NoiseStatistics {
-  const form = averagedNoise(shape);
+/** The statistics of lines that are distributed like `form` about a mean of 1. */
+export function statisticsOf(shape: AveragingShape, form: QuadraticForm): NoiseStatistics {
   const median = upperPoint(form, Math.log(0.5));
   const slope =
     (Math.exp(logUpperTail(form, 0.99 * median)) - Math.exp(logUpperTail(form, 1.01 * median))) / 0.02;

@@ -26,8 +26,8 @@ WINDOWS = {
 FULL = 2**19
 
 
-def samples(count, seed, noise_scale, tone_scale, offset):
-    """Noise from a linear congruential generator, two triangular tones, an offset; every value a sum of exact parts."""
+def samples(count, seed, noise_scale, tone_scale, offset, drift=0.0):
+    """Noise from a linear congruential generator, two triangular tones, an offset, a drift a sample; all exact parts."""
     state = seed
     phase_a = phase_b = 0
     values = np.empty(count)
@@ -37,7 +37,7 @@ def samples(count, seed, noise_scale, tone_scale, offset):
         phase_a = (phase_a + 91403) % 2**20
         phase_b = (phase_b + 7001) % 2**20
         tone = 8 * (2 * abs(phase_a - FULL) - FULL) + 2 * abs(phase_b - FULL) - FULL
-        values[n] = offset + noise * noise_scale + tone * tone_scale
+        values[n] = offset + noise * noise_scale + tone * tone_scale + n * drift
     return values
 
 
@@ -88,6 +88,47 @@ def density_cases():
     lengths = sorted({case["segment_samples"] for case in cases})
     lines = {str(length): chosen_lines(length) for length in lengths}
     return {**VERSIONS, "sample_rate_hz": 25600.0, "inputs": inputs, "lines": lines, "cases": cases}
+
+
+def averaging_cases():
+    """Straight lines taken off each segment, and the median over the segments (divided by its bias for noise)."""
+    # Over a segment of 2048 samples the drift amounts to twice the noise.
+    parts = {"seed": 8, "noise_scale": 2.0**-20, "tone_scale": 2.0**-24, "offset": -2.0, "drift": 2.0**-10}
+    x = samples(2048 * 16 // 3, **parts)
+    cases = []
+    for window in WINDOWS:
+        for length in (256, 2048):
+            for overlap, detrend, average in (
+                (0, "linear", "mean"),
+                (50, "linear", "mean"),
+                (75, "linear", "mean"),
+                (0, "constant", "median"),
+                (50, "constant", "median"),
+                (50, "linear", "median"),
+            ):
+                count = length * 16 // 3
+                values = signal.welch(
+                    x[:count],
+                    25600.0,
+                    signal.get_window(WINDOWS[window], length),
+                    noverlap=length - hop_of(length, overlap),
+                    detrend=detrend,
+                    average=average,
+                )[1]
+                cases.append(
+                    {
+                        "window": window,
+                        "segment_samples": length,
+                        "overlap_percent": overlap,
+                        "detrend": detrend,
+                        "average": average,
+                        "samples": count,
+                        "largest": float(values.max()),
+                        "density": [float(values[k]) for k in chosen_lines(length)],
+                    }
+                )
+    lines = {str(length): chosen_lines(length) for length in (256, 2048)}
+    return {**VERSIONS, "sample_rate_hz": 25600.0, "input": parts, "lines": lines, "cases": cases}
 
 
 def mean_factor(a, b, integrations):
@@ -188,6 +229,7 @@ def main():
     print(VERSIONS)
     files = {
         "density": density_cases(),
+        "averaging": averaging_cases(),
         "band-level": band_cases(),
         "waveform": waveform_cases(),
         "chi-square": quantile_cases(),

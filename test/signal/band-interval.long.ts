@@ -36,6 +36,42 @@ describe.each(windowNames)('%s', (window) => {
   }
 });
 
+describe('pooled recordings', () => {
+  const thirty = (count: (i: number) => number) => Array.from({ length: 30 }, (_, i) => count(i));
+  const cases = [
+    ['30 bursts of one segment', 'hann', thirty(() => 1), 50],
+    ['30 bursts of 1 to 3 segments', 'hann', thirty((i) => 1 + (i % 3)), 75],
+    ['30 bursts of two segments', 'flat-top', thirty(() => 2), 75],
+    ['2 bursts of one segment', 'hann', [1, 1], 50],
+    ['5 recordings of 7 segments and one of 2', 'rectangular', [7, 7, 7, 7, 7, 2], 50],
+  ] as const;
+  for (const [name, window, averages, overlapPercent] of cases) {
+    test(`noise, ${name}, ${window}, ${overlapPercent} % overlap`, () => {
+      expectCovered({
+        window,
+        averages,
+        overlapPercent,
+        bandLines,
+        recordings,
+        seed: 60_000 + averages.length,
+      });
+    });
+  }
+
+  test('a steady tone in noise, 30 bursts of one segment', () => {
+    expectCovered({
+      window: 'hann',
+      averages: thirty(() => 1),
+      overlapPercent: 50,
+      bandLines: [40, 150],
+      firstLine: 40,
+      tone: { fromLine: 50, toLine: 70, dbOverFloorLine: 25 },
+      recordings,
+      seed: 60_900,
+    });
+  });
+});
+
 const leastIntegrated: Record<number, number> = { 1: 90.5, 2: 92, 5: 92.5, 31: 92.5 };
 
 describe('noise as velocity and displacement', () => {

@@ -75,7 +75,7 @@ describe('how lines and segments repeat each other', () => {
 
   test('pooled recordings count as so many times the averages of one', () => {
     const one = makeIntervalKernel('hann', 256, 128, 9);
-    const pooled = makeIntervalKernel('hann', 256, 128, 9, 4);
+    const pooled = makeIntervalKernel('hann', 256, 128, [9, 9, 9, 9]);
     expect(pooled.averages).toBe(36);
     expect(pooled.toneCoupling).toBeCloseTo(one.toneCoupling / 4, 14);
     const density = new Float64Array(129).fill(1);
@@ -83,8 +83,21 @@ describe('how lines and segments repeat each other', () => {
     expect(dof(pooled)).toBeCloseTo(4 * dof(one), 6);
   });
 
+  test('pooled recordings of unequal length: the sum over all pairs of segments, as by definition', () => {
+    const parts = [1, 4, 2];
+    const hop = 32;
+    const { lineCoupling, averages } = makeIntervalKernel('hann', 128, hop, parts);
+    expect(averages).toBe(7);
+    lineCoupling.forEach((value, d) => {
+      // The variances of sums of K segments, K c each, add up over independent recordings.
+      const c = parts.reduce((sum, part) => sum + part * plainCoupling('hann', 128, hop, part, d), 0) / 7;
+      expect(value).toBeCloseTo(c / (1 + c / 7) / 7, 13);
+    });
+  });
+
   test('without an average there is no interval', () => {
     expect(() => makeIntervalKernel('hann', 256, 128, 0)).toThrow('averages = 0');
+    expect(() => makeIntervalKernel('hann', 256, 128, [])).toThrow('averages');
     expect(() => makeIntervalKernel('hann', 100, 50, 1)).toThrow('length = 100');
   });
 });
@@ -227,4 +240,17 @@ describe('coverage of the 95 % interval, short seeded form', () => {
       within(intervalCoverage({ ...cases, bandLines: [40, 150] }));
     },
   );
+
+  test.each([
+    ['thirty bursts of one segment', new Array(30).fill(1), 50],
+    [
+      'thirty bursts of one segment and a bit, unequal',
+      Array.from({ length: 30 }, (_, i) => 1 + (i % 3)),
+      75,
+    ],
+    ['three recordings', [5, 5, 5], 50],
+  ])('noise, pooled: %s', (_, averages, overlapPercent) => {
+    const recordings = 1000;
+    within(intervalCoverage({ window: 'hann', averages, overlapPercent, bandLines, recordings, seed: 45 }));
+  });
 });

@@ -1,13 +1,14 @@
-import { Averager, hopSamples } from '../../src/signal/averaging.ts';
+import { averageDensity, hopSamples } from '../../src/signal/averaging.ts';
 import { bandInterval, makeIntervalKernel } from '../../src/signal/band-interval.ts';
 import { type BandWeights, bandWeights } from '../../src/signal/band-level.ts';
 import type { Integrations } from '../../src/signal/integration.ts';
 import { mainLobeHalfWidthLines, type WindowName } from '../../src/signal/window.ts';
-import { seededRandom } from './random.ts';
+import { gaussianNoise, seededRandom } from './random.ts';
 
 export interface CoverageCase {
   readonly window: WindowName;
-  readonly averages: number;
+  /** Segments of one recording, or of each of several that are pooled. */
+  readonly averages: number | readonly number[];
   readonly overlapPercent: number;
   /** Whole lines from `firstLine` on. */
   readonly bandLines: readonly number[];
@@ -31,20 +32,23 @@ export function intervalCoverage(cases: CoverageCase): number[] {
   const random = seededRandom(cases.seed);
   const hop = hopSamples(segmentSamples, overlapPercent);
   const kernel = makeIntervalKernel(window, segmentSamples, hop, averages);
-  const samples = new Float64Array(segmentSamples + (averages - 1) * hop);
+  const parts = typeof averages === 'number' ? [averages] : averages;
   const bands = cases.bandLines.map((lines) => bandOf(firstLine, lines, integrations));
   const half = mainLobeHalfWidthLines(window);
   const hits = bands.map(() => 0);
   for (let recording = 0; recording < cases.recordings; recording++) {
-    for (let n = 0; n < samples.length; n++) samples[n] = random.gaussian();
     const tonePower = tone ? floorDensity * 10 ** (tone.dbOverFloorLine / 10) : 0;
     const toneLine = tone ? tone.fromLine + (tone.toLine - tone.fromLine) * random.uniform() : 0;
-    if (tone) addTone(samples, toneLine, Math.sqrt(2 * tonePower), 2 * Math.PI * random.uniform());
     const middle = Math.round(toneLine);
     const tones = tone ? [{ firstLine: middle - half, lastLine: middle + half, floorDensity }] : [];
-    const averager = new Averager({ window, segmentSamples, overlapPercent, sampleRateHz });
-    averager.add(samples);
-    const { density } = averager.finish();
+    const density = new Float64Array(segmentSamples / 2 + 1);
+    const total = parts.reduce((sum, part) => sum + part, 0);
+    for (const part of parts) {
+      const samples = gaussianNoise(random, segmentSamples + (part - 1) * hop);
+      if (tone) addTone(samples, toneLine, Math.sqrt(2 * tonePower), 2 * Math.PI * random.uniform());
+      const averaged = averageDensity(samples, { window, segmentSamples, overlapPercent, sampleRateHz });
+      for (let k = 0; k < density.length; k++) density[k] += (averaged.density[k] * part) / total;
+    }
     bands.forEach((band, i) => {
       const { low, high } = bandInterval(density, band, kernel, tones);
       const noise = band.weights.reduce((sum, weight) => sum + weight * floorDensity, 0);
