@@ -8,6 +8,7 @@ import { addCheck } from './commands/check.ts';
 import { addDemo } from './commands/demo.ts';
 import { addDraft } from './commands/draft.ts';
 import { addFiles } from './commands/files.ts';
+import { addRecordingPlan } from './commands/recording-plan.ts';
 import { addRun } from './commands/run.ts';
 import { addStatus } from './commands/status.ts';
 import { addSummary } from './commands/summary.ts';
@@ -24,6 +25,7 @@ const commands: readonly AddCommand[] = [
   addSummary,
   addTrend,
   addAlarms,
+  addRecordingPlan,
   addBackup,
   addDemo,
 ];

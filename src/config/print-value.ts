@@ -50,9 +50,21 @@ export function printDuration(ms: number): string {
   return fitting === undefined ? `${ms} ms` : `${ms / fitting[1]} ${fitting[0]}`;
 }
 
-/** Seconds for people, three figures: '0.64 s', '10.2 s'. */
+/** Seconds for people, three figures: '0.64 s', '10.2 s'; from two minutes on '10 min', '2 min 20 s', '1 h 30 min'. */
 export function printSeconds(seconds: number): string {
-  return `${printNumber(seconds)} s`;
+  if (Math.round(seconds) < 120) return `${printNumber(seconds)} s`;
+  const parts: string[] = [];
+  let rest = Math.round(seconds);
+  for (const [unit, size] of [
+    ['h', 3600],
+    ['min', 60],
+    ['s', 1],
+  ] as const) {
+    const count = Math.floor(rest / size);
+    rest -= count * size;
+    if (count > 0 && parts.length < 2) parts.push(`${count} ${unit}`);
+  }
+  return parts.join(' ');
 }
 
 export function printPercent(percent: number): string {

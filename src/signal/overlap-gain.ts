@@ -30,10 +30,10 @@ export function overlapGain(recording: RecordingKind, confidencePercent: number)
   const layouts = overlaps.map((overlapPercent) => layOutSegments({ ...recording, overlapPercent }));
   if (layouts.some(({ averages }) => averages === 0)) return [];
   const most = Math.max(...layouts.map(({ effectiveAverages }) => effectiveAverages));
-  let before = 0;
+  let before = { averages: Number.POSITIVE_INFINITY, worth: 0 };
   return layouts.map(({ averages, effectiveAverages }, n) => {
-    const repeats = effectiveAverages < leastGain * before;
-    before = Math.max(before, effectiveAverages);
+    const repeats = averages > before.averages && effectiveAverages < leastGain * before.worth;
+    before = { averages, worth: Math.max(before.worth, effectiveAverages) };
     return {
       overlapPercent: overlaps[n] as number,
       averages,

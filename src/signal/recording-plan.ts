@@ -2,7 +2,7 @@ import { hopSamples } from './averaging.ts';
 import { makeIntervalKernel } from './band-interval.ts';
 import { degreesFor } from './level-uncertainty.ts';
 import { recommendedOverlap } from './overlap-gain.ts';
-import { type AskedBand, bandReach, linesForNames, rateOverHighest } from './recording-reach.ts';
+import { type AskedBand, bandLevelReach, linesForNames, rateOverHighest } from './recording-reach.ts';
 import {
   advisedAverages,
   effectiveAveragesBrief,
@@ -188,7 +188,7 @@ function confidenceTest(wish: RecordingWish, shape: Shape): (averages: number) =
   return (averages) => {
     const kernel = makeIntervalKernel(window, segmentSamples, hop, averages);
     return bands.every((band) => {
-      const reach = bandReach(band, { lineSpacingHz, segmentSamples }, kernel, confidence.percent);
+      const reach = bandLevelReach(band, { lineSpacingHz, segmentSamples }, kernel, confidence.percent);
       return reach === null || reach.highDb <= confidence.db;
     });
   };

@@ -34,6 +34,13 @@ export interface ReachQuestion {
   readonly envelope: { readonly fromHz: number; readonly toHz: number };
 }
 
+export interface BandReach {
+  /** Null: not to be had, or not one segment fits. */
+  readonly level: LevelUncertainty | null;
+  /** Why it is not to be had; null: it is. */
+  readonly hindrance: 'too-low' | 'too-narrow' | 'too-high' | null;
+}
+
 export interface RecordingReach {
   readonly layout: SegmentLayout;
   /** Highest edge of a band, and what bounds it. */
@@ -48,8 +55,8 @@ export interface RecordingReach {
   readonly unequalTonesHz: number | null;
   /** Null: not one segment fits. */
   readonly line: LevelUncertainty | null;
-  /** By the order in which they were asked; null: the recording cannot give that band. */
-  readonly bands: readonly (LevelUncertainty | null)[];
+  /** By the order in which they were asked. */
+  readonly bands: readonly BandReach[];
   /** Turns of the slowest shaft in a segment. */
   readonly turns: number | null;
   /** Slowest shaft whose peaks can be named after machine parts, Hz. */
@@ -80,7 +87,11 @@ export function recordingReach(recording: RecordingKind, question: ReachQuestion
     equalTonesHz: apart && apart.equalLines * lineSpacingHz,
     unequalTonesHz: apart && apart.unequalLines * lineSpacingHz,
     line: layout.averages === 0 ? null : lineUncertainty(layout.effectiveAverages, confidencePercent),
-    bands: question.bands.map((band) => kernel && bandReach(band, layout, kernel, confidencePercent)),
+    bands: question.bands.map((band) => {
+      const hindrance = hindranceOf(band, least, byRate);
+      const hindered = hindrance !== null || kernel === null;
+      return { level: hindered ? null : bandLevelReach(band, layout, kernel, confidencePercent), hindrance };
+    }),
     turns: slowestHz === null ? null : slowestHz / lineSpacingHz,
     leastNamedHz: linesForNames * lineSpacingHz,
     slowestRepetitionHz: least,
@@ -92,8 +103,21 @@ function kernelOf({ window }: RecordingKind, layout: SegmentLayout): IntervalKer
   return makeIntervalKernel(window, layout.segmentSamples, layout.hopSamples, layout.averages);
 }
 
-/** Null where the band has no line, or reaches beyond the spectrum. */
-export function bandReach(
+/** An edge that is right to the last digit is right. */
+const rounding = 1e-9;
+
+function hindranceOf(
+  { fromHz, toHz, integrations }: AskedBand,
+  leastHz: number,
+  highestHz: number,
+): BandReach['hindrance'] {
+  if (toHz > highestHz * (1 + rounding)) return 'too-high';
+  if (integrations > 0 && fromHz < leastHz * (1 - rounding)) return 'too-low';
+  return toHz - fromHz < leastHz * (1 - rounding) ? 'too-narrow' : null;
+}
+
+/** How well the band's level is known; null where it has no line, or reaches beyond the spectrum. */
+export function bandLevelReach(
   { fromHz, toHz, integrations }: AskedBand,
   { lineSpacingHz, segmentSamples }: Pick<SegmentLayout, 'lineSpacingHz' | 'segmentSamples'>,
   kernel: IntervalKernel,

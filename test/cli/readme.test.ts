@@ -98,9 +98,9 @@ describe('commands in README', () => {
 
   it('are all that there are, and no others', async () => {
     const { out } = await run(['--help']);
-    const known = Array.from(out.matchAll(/^ {2}([a-z]+) (?:\[|<)/gm), ([, name = '']) => name);
+    const known = Array.from(out.matchAll(/^ {2}([a-z-]+) (?:\[|<)/gm), ([, name = '']) => name);
     const shown = new Set(
-      Array.from(readme.matchAll(/^\| `([a-z]+)[^`]*` \|.*`humledger /gm), ([, name]) => name),
+      Array.from(readme.matchAll(/^\| `([a-z-]+)[^`]*` \|.*`humledger /gm), ([, name]) => name),
     );
     expect([...shown].sort()).toEqual(known.filter((name) => name !== 'help').sort());
   });

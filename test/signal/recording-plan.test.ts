@@ -135,11 +135,12 @@ describe('a recording plan', () => {
         if (wish.lineSpacingHz === null && wish.separate === null && wish.slowestHz !== null)
           expect(can.leastNamedHz).toBeLessThanOrEqual(wish.slowestHz * (1 + 1e-9));
         for (const [n, band] of wish.bands.entries()) {
-          expect(can.bands[n]).not.toBeNull();
+          expect(can.bands[n]).toMatchObject({ hindrance: null });
           expect(can.narrowestBandHz).toBeLessThanOrEqual((band.toHz - band.fromHz) * (1 + 1e-9));
           if (band.integrations > 0)
             expect(can.lowestIntegratedHz).toBeLessThanOrEqual(band.fromHz * (1 + 1e-9));
-          if (wish.confidence !== null) expect(can.bands[n]?.highDb).toBeLessThanOrEqual(wish.confidence.db);
+          if (wish.confidence !== null)
+            expect(can.bands[n]?.level?.highDb).toBeLessThanOrEqual(wish.confidence.db);
         }
         if (wish.confidence !== null && wish.bands.length === 0)
           expect(can.line?.highDb).toBeLessThanOrEqual(wish.confidence.db);

@@ -62,7 +62,7 @@ describe('what a recording can and cannot show', () => {
     const can = reach({ durationS: 0.5 }, { bands: [{ fromHz: 10, toHz: 1000, integrations: 0 }] });
     expect(can.layout.averages).toBe(0);
     expect(can.line).toBeNull();
-    expect(can.bands).toEqual([null]);
+    expect(can.bands).toEqual([{ level: null, hindrance: null }]);
   });
 
   it('knows a wide band far better than a line, and a velocity less well than the acceleration it is made of', () => {
@@ -78,7 +78,7 @@ describe('what a recording can and cannot show', () => {
         ],
       },
     );
-    const [acceleration, velocity, narrow, beyond] = can.bands;
+    const [acceleration, velocity, narrow, beyond] = can.bands.map(({ level }) => level);
     // 2 B T: 990 Hz for 10 s are 19,800 degrees of freedom, of which half overlapped Hann segments keep 92 %.
     expect((acceleration?.degreesOfFreedom ?? 0) / 19_800).toBeGreaterThan(0.88);
     expect((acceleration?.degreesOfFreedom ?? 0) / 19_800).toBeLessThan(1);
@@ -87,6 +87,19 @@ describe('what a recording can and cannot show', () => {
     expect(narrow?.highDb ?? 0).toBeGreaterThan(velocity?.highDb ?? 0);
     expect(narrow?.highDb ?? 0).toBeLessThan(can.line?.highDb ?? 0);
     expect(beyond).toBeNull();
+    expect(can.bands.map(({ hindrance }) => hindrance)).toEqual([null, null, null, 'too-high']);
+  });
+
+  it('has no band that is narrower, or a velocity that begins lower, than three lines of hann', () => {
+    const hindrance = (fromHz: number, toHz: number, integrations: 0 | 1 | 2) =>
+      reach({}, { bands: [{ fromHz, toHz, integrations }] }).bands[0]?.hindrance;
+    expect(hindrance(100, 100 + 3 * 1.5625, 0)).toBeNull();
+    expect(hindrance(100, 104.6, 0)).toBe('too-narrow');
+    expect(hindrance(3 * 1.5625, 1000, 1)).toBeNull();
+    expect(hindrance(4.6, 1000, 2)).toBe('too-low');
+    expect(hindrance(1, 1000, 0)).toBeNull();
+    expect(hindrance(10, 10_000, 0)).toBeNull();
+    expect(hindrance(10, 10_010, 0)).toBe('too-high');
   });
 
   it('promises no separation under the rectangular window', () => {
