@@ -1,5 +1,6 @@
 import { printFrequency, printNumber } from '../config/print-value.ts';
 import type { AlarmFacts, LineFacts, LinesFacts, OtherPointFacts, RecordingFacts } from './facts.ts';
+import type { Said } from './letter.ts';
 import {
   bareLevel,
   counted,
@@ -13,9 +14,10 @@ import {
 import { lineCourse } from './line-changes.ts';
 import { durationText, momentText } from './time-words.ts';
 import { foreign, idText, nameOf, speedOrigin, standingText } from './wording.ts';
+import { zoneSaid } from './zone-words.ts';
 
 /** What an alarm mail says below the first lines, in the order in which one asks: a name and what is said of it. */
-export type Detail = readonly [name: string, said: string];
+export type Detail = readonly [name: string, said: Said];
 
 const mostLines = 4;
 const mostPoints = 6;
@@ -25,6 +27,8 @@ export function alarmDetails(alarm: AlarmFacts, timeZone: string, writtenMs: num
   return [
     ['Level', `${level}; ${bandText(alarm)}`],
     ['Limit', limitDetail(alarm)],
+    ...reasonsDetail(alarm),
+    ...(alarm.zone === null ? [] : [['Standard', zoneSaid(alarm.zone, alarm.band.display)] as const]),
     [
       'Since',
       `${momentText(alarm.sinceMs, timeZone)} (${durationText(writtenMs - alarm.sinceMs)}), ${counted(alarm.recordings, 'recording')} beyond the limit`,
@@ -52,7 +56,16 @@ function limitDetail(alarm: AlarmFacts): string {
     return `${severity} ${levelText(at, band.display)}: ${distanceText(level.level, at)}`;
   });
   const side = limit.side === 'lower' ? 'lower limit, ' : '';
-  return `${side}${said.join('; ')}${alarm.zone === null ? '' : `; zone ${foreign(alarm.zone)}`}`;
+  return `${side}${said.join('; ')}`;
+}
+
+/** Why the limit stands where it stands, where it is not the site's own number. */
+function reasonsDetail({ limit }: AlarmFacts): Detail[] {
+  const said = (['alert', 'danger'] as const).flatMap((severity) => {
+    const why = limit.reasons?.[severity] ?? null;
+    return why === null ? [] : [`${severity} at ${foreign(why)}`];
+  });
+  return said.length === 0 ? [] : [['Limit from', said.join('; ')]];
 }
 
 function beforeDetail({ before, band }: AlarmFacts): string {

@@ -1,5 +1,7 @@
 import type { QualityFinding } from '../acquisition/recording.ts';
-import type { DisplayUnit, Machine, Severity } from '../config/site.ts';
+import type { ZoneChange } from '../assessment/zone-change.ts';
+import type { DisplayUnit, LimitReasons, Machine, Severity } from '../config/site.ts';
+import type { ZoneBoundaries, ZoneLetter } from '../config/zone-tables.ts';
 import type { AlarmStanding, JournalEventName, TroubleKind } from '../detection/alarm.ts';
 import type { Averaging, RunningSpeed } from '../manipulation/measurement.ts';
 import type { Change } from './ranking.ts';
@@ -44,6 +46,25 @@ export interface LimitFacts {
   /** SI r.m.s.; at least one of the two is set. */
   readonly alert: number | null;
   readonly danger: number | null;
+  /** Why they stand there; left out where the site says so. */
+  readonly reasons?: LimitReasons | null;
+}
+
+/** The evaluation zone of a level of velocity or displacement. */
+export interface ZoneFacts {
+  /** null: no zone; `why` says the reason. */
+  readonly letter: ZoneLetter | null;
+  readonly why: string | null;
+  /** Of a clipped recording: this zone or a worse one. */
+  readonly atLeast: boolean;
+  /** 'ISO 20816-3 (group 2, rigid)'. */
+  readonly table: string;
+  /** SI r.m.s.; null where none hold. */
+  readonly boundaries: Pick<ZoneBoundaries, 'ab' | 'bc' | 'cd'> | null;
+  /** Against the earlier level named with it. */
+  readonly change: (ZoneChange & { readonly since: 'baseline' | 'week' }) | null;
+  /** The machine's zone, where another of its points is in a worse one. */
+  readonly machine: { readonly letter: ZoneLetter; readonly point: PointFacts } | null;
 }
 
 /** A level with what stands behind it. SI r.m.s. */
@@ -120,8 +141,8 @@ export interface AlarmFacts extends StandingAlarm {
   readonly level: LevelFacts;
   /** What this mail tells: raised, rose, said-again, exceeded-came-late, limit-removed, ... */
   readonly event: JournalEventName;
-  /** Evaluation zone, A to D, where the machine has a zone table. */
-  readonly zone: string | null;
+  /** Where the machine has a zone table and the band is of a quantity that it may judge. */
+  readonly zone: ZoneFacts | null;
   readonly before: {
     /** Up to four, newest first, without the present one. */
     readonly last: readonly PastLevel[];

@@ -1,7 +1,8 @@
 import type { Severity } from '../config/site.ts';
+import type { ZoneLetter } from '../config/zone-tables.ts';
 import { html, type Markup } from './escape.ts';
 import type { Block, Letter } from './letter.ts';
-import { markWord } from './letter.ts';
+import { markWord, type Said, saidText } from './letter.ts';
 
 /**
  * A letter as HTML: one column, text first, nothing from elsewhere. Styles stand inline, because some mail programs
@@ -21,6 +22,7 @@ const darkAndPrint = `
 @media print {
   .paper { background:#fff !important; color:#000 !important }
   .soft { color:#000 !important }
+  .zone { background:none !important; color:#000 !important }
 }`;
 
 export function letterHtml(letter: Letter): string {
@@ -94,19 +96,19 @@ function findingHtml(block: Block & { kind: 'finding' }): Markup {
 `;
 }
 
-function pairsHtml(rows: readonly (readonly [string, string])[]): Markup {
+function pairsHtml(rows: readonly (readonly [string, Said])[]): Markup {
   return html`<table role="presentation" cellspacing="0" cellpadding="4" style="width:100%;margin:0 0 12px;border-collapse:collapse">
 ${rows.map(
   ([
     name,
     said,
-  ]) => html`<tr><td class="soft" valign="top" style="width:84px;padding-left:0;color:#4c5157">${name}</td><td valign="top">${said}</td></tr>
+  ]) => html`<tr><td class="soft" valign="top" style="width:84px;padding-left:0;color:#4c5157">${name}</td><td valign="top">${saidHtml(said)}</td></tr>
 `,
 )}</table>
 `;
 }
 
-function tableHtml(heads: readonly string[], rows: readonly (readonly string[])[]): Markup {
+function tableHtml(heads: readonly string[], rows: readonly (readonly Said[])[]): Markup {
   return html`<table cellspacing="0" cellpadding="4" style="width:100%;margin:0 0 12px;border-collapse:collapse;${plainFont};font-size:12px;line-height:1.35">
 <tr>${heads.map((cell) => html`<th class="rule" align="left" valign="bottom" style="border-bottom:1px solid #8b9096">${cell}</th>`)}</tr>
 ${rows.map(
@@ -117,6 +119,22 @@ ${rows.map(
 }
 
 /** Short figures ('116 %') stay on one line where a phone makes the columns narrow. */
-function cellHtml(cell: string): Markup {
-  return cell.length <= 8 ? html`<td valign="top" nowrap>${cell}</td>` : html`<td valign="top">${cell}</td>`;
+function cellHtml(cell: Said): Markup {
+  return saidText(cell).length <= 8
+    ? html`<td valign="top" nowrap>${saidHtml(cell)}</td>`
+    : html`<td valign="top">${saidHtml(cell)}</td>`;
+}
+
+/** One hue in four lightnesses, the letter always on it; a frame, because backgrounds are not printed. */
+const zoneColours: Readonly<Record<ZoneLetter, string>> = {
+  A: 'background:#eaf0f8;color:#14263d',
+  B: 'background:#b9cbe3;color:#14263d',
+  C: 'background:#7b9cc8;color:#0d1826',
+  D: 'background:#2c4f7f;color:#ffffff',
+};
+
+function saidHtml(said: Said): Markup {
+  if (typeof said === 'string') return html`${said}`;
+  const { before, zone, after } = said;
+  return html`${before}<b class="zone" style="padding:0 5px;border:1px solid #2c4f7f;${zoneColours[zone]}">${zone}</b>${after}`;
 }

@@ -1,7 +1,7 @@
 import { units } from '../config/units.ts';
 import { plain } from './escape.ts';
 import type { Block, Letter } from './letter.ts';
-import { markWord } from './letter.ts';
+import { markWord, type Said, saidText } from './letter.ts';
 
 /** Columns of a text mail: fits a terminal and a phone held sideways. */
 const width = 76;
@@ -42,17 +42,19 @@ function blockText(block: Block): string {
   }
 }
 
-function pairsText(rows: readonly (readonly [string, string])[]): string {
+function pairsText(rows: readonly (readonly [string, Said])[]): string {
   const names = rows.map(([name]) => plain(name));
   const column = Math.min(18, Math.max(...names.map((name) => name.length))) + 2;
   return rows
-    .map(([, said], index) => wrap(plain(said), (names[index] as string).padEnd(column), ' '.repeat(column)))
+    .map(([, said], index) =>
+      wrap(plain(saidText(said)), (names[index] as string).padEnd(column), ' '.repeat(column)),
+    )
     .join('\n');
 }
 
 /** Columns as wide as their widest cell; rows may be longer than the width, a table broken up is no table. */
-function tableText(heads: readonly string[], rows: readonly (readonly string[])[]): string {
-  const all = [heads, ...rows].map((row) => row.map(plain));
+function tableText(heads: readonly string[], rows: readonly (readonly Said[])[]): string {
+  const all = [heads, ...rows].map((row) => row.map((cell) => plain(saidText(cell))));
   const widths = heads.map((_, column) => Math.max(...all.map((row) => (row[column] ?? '').length)));
   return all
     .map((row) =>

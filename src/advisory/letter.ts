@@ -1,4 +1,5 @@
 import type { Severity } from '../config/site.ts';
+import type { ZoneLetter } from '../config/zone-tables.ts';
 
 /**
  * A message before it is rendered: blocks of words, the same for text and HTML, so that neither can say less than
@@ -14,6 +15,20 @@ export interface Letter {
   readonly blocks: readonly Block[];
 }
 
+/** Words around the letter of a zone, which HTML sets on its own lightness of one hue. */
+export interface ZoneSaid {
+  readonly before: string;
+  readonly zone: ZoneLetter;
+  readonly after: string;
+}
+
+export type Said = string | ZoneSaid;
+
+/** The same without the hue. */
+export function saidText(said: Said): string {
+  return typeof said === 'string' ? said : `${said.before}${said.zone}${said.after}`;
+}
+
 export type Block =
   | { readonly kind: 'heading'; readonly text: string }
   /** An alarm, a trouble or another finding; `more` are lines below it. */
@@ -26,11 +41,11 @@ export type Block =
     }
   | { readonly kind: 'paragraph'; readonly text: string }
   /** Names with what is said of each. */
-  | { readonly kind: 'pairs'; readonly rows: readonly (readonly [name: string, said: string])[] }
+  | { readonly kind: 'pairs'; readonly rows: readonly (readonly [name: string, said: Said])[] }
   | {
       readonly kind: 'table';
       readonly heads: readonly string[];
-      readonly rows: readonly (readonly string[])[];
+      readonly rows: readonly (readonly Said[])[];
     }
   | { readonly kind: 'command'; readonly text: string }
   /** Caution and other words that stand last. */

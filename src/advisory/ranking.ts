@@ -31,20 +31,36 @@ export function changeOf(
   nowMs: number,
   guarded: 'upper' | 'lower' = 'upper',
 ): Change | null {
-  const day: number[] = [];
-  const week: PastLevel[] = [];
-  for (const { usedMs, level } of levels) {
-    const age = nowMs - usedMs;
-    if (!(level > 0) || age < 0 || age >= 8 * dayMs) continue;
-    if (age < dayMs) day.push(level);
-    else week.push({ usedMs, level });
-  }
-  if (day.length === 0 || week.length < fewestBefore) return null;
-  const ratio = median(day) / median(week.map(({ level }) => level));
+  const medians = mediansOf(levels, nowMs);
+  if (medians === null) return null;
+  const { week } = dayAndWeek(levels, nowMs);
+  const ratio = medians.day / medians.week;
   const spread = medianAbsoluteDeviation(aboutTheirLine(week));
   const ordinaryRatio = Math.max(leastRatio, Math.exp(3 * madToDeviation * spread));
   const towardsWorse = guarded === 'upper' ? ratio : 1 / ratio;
   return { ratio, ordinaryRatio, worse: towardsWorse > ordinaryRatio };
+}
+
+/** Median of the last 24 h and of the 7 days before, SI r.m.s.; null under the same conditions as `changeOf`. */
+export function mediansOf(
+  levels: readonly PastLevel[],
+  nowMs: number,
+): { readonly day: number; readonly week: number } | null {
+  const { day, week } = dayAndWeek(levels, nowMs);
+  if (day.length === 0 || week.length < fewestBefore) return null;
+  return { day: median(day.map(({ level }) => level)), week: median(week.map(({ level }) => level)) };
+}
+
+function dayAndWeek(
+  levels: readonly PastLevel[],
+  nowMs: number,
+): { readonly day: readonly PastLevel[]; readonly week: readonly PastLevel[] } {
+  const usable = levels.filter(({ usedMs, level }) => {
+    const age = nowMs - usedMs;
+    return level > 0 && age >= 0 && age < 8 * dayMs;
+  });
+  const isOfDay = ({ usedMs }: PastLevel) => nowMs - usedMs < dayMs;
+  return { day: usable.filter(isOfDay), week: usable.filter((one) => !isOfDay(one)) };
 }
 
 /**

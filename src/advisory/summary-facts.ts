@@ -7,6 +7,7 @@ import type {
   SiteFacts,
   StandingAlarm,
   TroubleFacts,
+  ZoneFacts,
 } from './facts.ts';
 import type { Change } from './ranking.ts';
 
@@ -18,7 +19,7 @@ export interface BandNow {
   readonly level: LevelFacts | null;
   readonly limits: readonly LimitFacts[];
   readonly change: Change | null;
-  readonly zone: string | null;
+  readonly zone: ZoneFacts | null;
 }
 
 /**

@@ -9,6 +9,7 @@ import type { Standing, Worse } from './summary.ts';
 import type { SummaryFacts } from './summary-facts.ts';
 import { durationText, shortMomentText } from './time-words.ts';
 import { idText, isReturned, nameOf, placeText, shortAdvice, standingText, troubleName } from './wording.ts';
+import { zoneChangeText } from './zone-words.ts';
 
 /** One line of the summary: a bearing (or other place) with all that is to say of it. */
 export interface Finding {
@@ -71,7 +72,9 @@ function worseText({ now }: Worse): string {
   if (now.level === null) return `${idText(now.band.id)} ${change}${usual}`;
   const share = largestShare(now.level.level, now.limits);
   const used = share === null ? 'no limit' : `${percentText(share)} of the alert limit`;
-  return `${idText(now.band.id)} ${change} on the week${usual}, now ${measuredText(now.level, now.band.display)}, ${used}`;
+  const significant = now.zone === null ? null : zoneChangeText(now.zone, now.band.display);
+  const byStandard = significant === null ? '' : `; ${significant}`;
+  return `${idText(now.band.id)} ${change} on the week${usual}, now ${measuredText(now.level, now.band.display)}, ${used}${byStandard}`;
 }
 
 /** The direction where the bearing has been named, else the point. */

@@ -1,6 +1,6 @@
 import { subjectLine } from './alarm-mail.ts';
-import type { MachineFacts, Mail } from './facts.ts';
-import type { Block, Letter } from './letter.ts';
+import type { Mail } from './facts.ts';
+import type { Block, Letter, Said } from './letter.ts';
 import { letterHtml } from './letter-html.ts';
 import { letterText } from './letter-text.ts';
 import { bareLevel, changeText, counted, percentText, unitText } from './level-words.ts';
@@ -9,6 +9,7 @@ import { type Morning, morningOf, mostShown, type Section } from './summary.ts';
 import type { BandNow, PointNow, SummaryFacts } from './summary-facts.ts';
 import { dateText, momentText, shortMomentText } from './time-words.ts';
 import { acknowledgeCommand, caution, foreign, idText, nameOf, zoneText } from './wording.ts';
+import { machineZoneNow } from './zone-words.ts';
 
 /** Rows of the full tables that a mail carries at most; the file has them all. */
 const mostTableRows = 800;
@@ -112,8 +113,7 @@ function tableBlocks(facts: SummaryFacts, mostRows: number): Block[] {
     left -= shown.length;
     hidden += rows.length - shown.length;
     if (shown.length === 0) continue;
-    const machine = (points[0] as PointNow).machine;
-    blocks.push({ kind: 'heading', text: machineHeading(machine) });
+    blocks.push({ kind: 'heading', text: machineHeading(points) });
     blocks.push({ kind: 'table', heads: tableHeads, rows: shown });
   }
   if (hidden > 0) {
@@ -125,13 +125,17 @@ function tableBlocks(facts: SummaryFacts, mostRows: number): Block[] {
   return blocks;
 }
 
-function machineHeading(machine: MachineFacts): string {
-  return `${nameOf(machine)} (criticality ${machine.criticality})`;
+function machineHeading(points: readonly PointNow[]): string {
+  const { machine } = points[0] as PointNow;
+  const worst = machineZoneNow(points);
+  const zone =
+    worst === null ? '' : `, zone ${worst.letter} of ${foreign(worst.table)}: ${nameOf(worst.point)}`;
+  return `${nameOf(machine)} (criticality ${machine.criticality})${zone}`;
 }
 
 const tableHeads = ['Point, band', 'Level (interval)', 'Of alert', 'Of danger', 'Change', 'Last'];
 
-function pointRows({ point, judging, lastMs, bands }: PointNow, timeZone: string): string[][] {
+function pointRows({ point, judging, lastMs, bands }: PointNow, timeZone: string): Said[][] {
   const last = lastMs === null ? 'never' : shortMomentText(lastMs, timeZone);
   const word = judgingWord[judging];
   const note = word === '' ? '' : ` (${word})`;
@@ -145,11 +149,10 @@ function pointRows({ point, judging, lastMs, bands }: PointNow, timeZone: string
 }
 
 /** `from`: when the level was measured, where that must be said. */
-function bandCells({ band, level, limits, change, zone }: BandNow, from: string): string[] {
+function bandCells({ band, level, limits, change, zone }: BandNow, from: string): Said[] {
   if (level === null) return ['no level', '', '', ''];
   const { display } = band;
   const interval = `(${bareLevel(level.intervalLow, display)} to ${bareLevel(level.intervalHigh, display)})`;
-  const inZone = zone === null ? '' : `, zone ${foreign(zone)}`;
   const value = `${level.atLeast ? 'at least ' : ''}${bareLevel(level.level, display)} ${unitText(display)}`;
   const shares = (['alert', 'danger'] as const).map((severity) => {
     const used = limits
@@ -158,5 +161,8 @@ function bandCells({ band, level, limits, change, zone }: BandNow, from: string)
     return used.length === 0 ? 'none' : percentText(Math.max(...used));
   });
   const changed = change === null ? '' : `${changeText(change.ratio)}${change.worse ? ', worse' : ''}`;
-  return [`${value} ${interval}${inZone}${from}`, ...shares, changed];
+  const said = `${value} ${interval}`;
+  if (zone === null || zone.letter === null) return [`${said}${from}`, ...shares, changed];
+  const before = `${said}, ${zone.atLeast ? 'at least ' : ''}zone `;
+  return [{ before, zone: zone.letter, after: from }, ...shares, changed];
 }

@@ -103,7 +103,10 @@ function rankOf(item: Standing): { machine: MachineFacts | null; severity: Sever
   return { machine: item.machine, severity: item.severity, share };
 }
 
-/** Bands whose change is for the worse and that no limit speaks of; by criticality, then share of the alert limit. */
+/**
+ * Bands whose change is for the worse, or significant by the standard of their zones (up or down), and that no limit
+ * speaks of; by criticality, then share of the alert limit.
+ */
 function worseOf(facts: SummaryFacts, standing: readonly Standing[]): Worse[] {
   const told = new Set(
     standing
@@ -114,7 +117,9 @@ function worseOf(facts: SummaryFacts, standing: readonly Standing[]): Worse[] {
     .filter(({ judging }) => judging === 'judged' || judging === 'no-limit')
     .flatMap(({ machine, point, bands }) => bands.map((now) => ({ machine, point, now })))
     .filter(
-      ({ machine, point, now }) => now.change?.worse === true && !told.has(bandKey(machine, point, now.band)),
+      ({ machine, point, now }) =>
+        (now.change?.worse === true || now.zone?.change?.significant === true) &&
+        !told.has(bandKey(machine, point, now.band)),
     );
   const rank = ({ machine, now }: Worse) => ({
     machine,

@@ -8,6 +8,15 @@ import type { DisplayUnit } from './site.ts';
 export const zoneStandards = ['iso-20816-3', 'iso-10816-3', 'iso-10816-7', 'iso-10816-1'] as const;
 export type ZoneStandard = (typeof zoneStandards)[number];
 
+/** From good to bad. */
+export const zoneLetters = ['A', 'B', 'C', 'D'] as const;
+export type ZoneLetter = (typeof zoneLetters)[number];
+
+/** Null of nothing. */
+export function worstZone(letters: readonly ZoneLetter[]): ZoneLetter | null {
+  return zoneLetters.findLast((letter) => letters.includes(letter)) ?? null;
+}
+
 /**
  * Where a figure comes from: `seen` in a source that restates the standard, or from `memory`, to be compared with the
  * standard before anybody relies on it.

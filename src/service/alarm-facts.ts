@@ -1,5 +1,5 @@
 import type { AlarmFacts, LevelFacts, LimitFacts, RecordingFacts, StandingFacts } from '../advisory/facts.ts';
-import type { Machine, Point } from '../config/site.ts';
+import type { LimitReasons, Machine, Point } from '../config/site.ts';
 import { normalState } from '../detection/alarm.ts';
 import { alarmByNumber, loadAlarms, type StandingLife, type StoredAlarm } from '../store/alarms.ts';
 import { type JournalRow, readJournal } from '../store/journal.ts';
@@ -26,6 +26,7 @@ import {
 import { levelFacts, levelsBefore, linesFacts, otherPoints, recordingFacts } from './level-facts.ts';
 import type { SiteView } from './site-view.ts';
 import { standingFacts } from './standing-facts.ts';
+import { alarmZone } from './zone-facts.ts';
 
 /** From one event of a limit, due to be told, to everything that its mail says. */
 
@@ -60,6 +61,7 @@ export async function alarmFacts(reader: Reader, view: SiteView, event: UntoldEv
       : (await seriesOfPoint(reader, known.pointId)).find(({ id }) => id === seriesId);
   const usedMs = measured?.measurement.usedMs ?? row?.usedMs ?? event.wallMs;
   const state = known.standing?.alarm.number === event.number ? known.standing?.alarm.state : undefined;
+  const past = await before(reader, known, measured);
   return {
     ...(await standingOf(reader, known, limit?.respondWithinMs ?? null, usedMs)),
     kind: 'alarm',
@@ -78,8 +80,17 @@ export async function alarmFacts(reader: Reader, view: SiteView, event: UntoldEv
     dangerUnconfirmed: state?.pending?.to === 'danger',
     change: null,
     action: limit?.action ?? null,
-    zone: null,
-    before: await before(reader, known, measured),
+    zone:
+      measured === null
+        ? null
+        : await alarmZone(reader, view, {
+            machine,
+            point,
+            bandId: subject.bandId,
+            measurement: measured.measurement,
+            before: past,
+          }),
+    before: past,
     trend: null,
     lines: measured === null ? null : await linesFacts(reader, point, measured.measurement),
     otherPoints: await otherPoints(reader, view, machine, { pointId: subject.pointId, usedMs }),
@@ -210,5 +221,6 @@ async function limitFromJournal(reader: Reader, event: UntoldEvent, id: string):
     side: reason.side === 'lower' ? 'lower' : 'upper',
     alert: number(reason.alert),
     danger: number(reason.danger),
+    ...(reason.reasons == null ? {} : { reasons: reason.reasons as LimitReasons }),
   };
 }

@@ -7,6 +7,7 @@ import { seriesOfPoint, type TrendPoint } from '../store/read-trends.ts';
 import { bandFacts, limitFacts, machineFacts, pointFacts, siteFacts } from './fact-names.ts';
 import { levelFacts, levelsBefore, linesFacts, otherPoints, recordingFacts } from './level-facts.ts';
 import type { SiteView } from './site-view.ts';
+import { alarmZone } from './zone-facts.ts';
 
 /**
  * The alarm mail that the newest recording of a point would make, marked TEST: of the limit that is used up most. Nothing
@@ -69,6 +70,7 @@ async function alarmOf(reader: Reader, view: SiteView, subject: Subject): Promis
   const series = (await seriesOfPoint(reader, pointId)).find(({ id }) => id === seriesId);
   const band = point.bands.find(({ id }) => id === limit.bandId);
   const everyMs = point.recordings.expectedEveryMs;
+  const before = await levelsBefore(reader, { pointId, bandId, seriesId, usedMs, everyMs });
   return {
     kind: 'alarm',
     number: 0,
@@ -89,8 +91,8 @@ async function alarmOf(reader: Reader, view: SiteView, subject: Subject): Promis
     dangerUnconfirmed: false,
     change: null,
     action: limit.action,
-    zone: null,
-    before: await levelsBefore(reader, { pointId, bandId, seriesId, usedMs, everyMs }),
+    zone: await alarmZone(reader, view, { machine, point, bandId: limit.bandId, measurement, before }),
+    before,
     trend: null,
     lines: await linesFacts(reader, point, measurement),
     otherPoints: await otherPoints(reader, view, machine, { pointId: point.id, usedMs }),

@@ -30,8 +30,8 @@ export function pointFacts(view: SiteView, machineId: string, id: string): Point
   return { id, name: point?.name ?? id, direction: point?.direction ?? null };
 }
 
-export function limitFacts({ id, side, alert, danger }: Limit): LimitFacts {
-  return { id, side, alert, danger };
+export function limitFacts({ id, side, alert, danger, reasons }: Limit): LimitFacts {
+  return { id, side, alert, danger, ...(reasons == null ? {} : { reasons }) };
 }
 
 /** Edges as evaluated, where a level has been; else as the site file has them, orders at the nominal speed. */

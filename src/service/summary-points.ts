@@ -1,4 +1,4 @@
-import { changeOf } from '../advisory/ranking.ts';
+import { changeOf, mediansOf } from '../advisory/ranking.ts';
 import type { BandNow, Judging, PointNow } from '../advisory/summary-facts.ts';
 import { type Machine, type Point, pointPath } from '../config/site.ts';
 import type { TroubleKind } from '../detection/alarm.ts';
@@ -12,6 +12,7 @@ import type { PointArrivals } from '../store/sources.ts';
 import { bandFacts, limitFacts, machineFacts, pointFacts } from './fact-names.ts';
 import { levelFacts } from './level-facts.ts';
 import type { SiteView } from './site-view.ts';
+import { zoneFacts, zoneReading } from './zone-facts.ts';
 
 /** One point as the summary sees it: can it be judged, and what do its bands say. */
 export interface PointKnown {
@@ -82,18 +83,22 @@ async function bandsNow(reader: Reader, { view, machine, point, nowMs }: PointKn
     if (levels === undefined) bySeries.set(level.seriesId, [level]);
     else levels.push(level);
   }
+  const reading = measurement === null ? null : zoneReading(view, machine, point, measurement, series);
   return point.bands.map((band): BandNow => {
     const bandId = view.ids.bandId(machine.id, point.id, band.id);
     const level = measurement?.levels.find((one) => one.bandId === bandId);
     const limits = point.limits.filter((limit) => limit.bandId === band.id);
     const onlyLower = limits.length > 0 && limits.every(({ side }) => side === 'lower');
     const levels = level === undefined ? [] : (bySeries.get(level.seriesId) ?? []);
+    const medians = mediansOf(levels, nowMs);
+    const compared =
+      medians === null ? null : { level: medians.day, reference: medians.week, since: 'week' as const };
     return {
       band: bandFacts(band.id, band, level === undefined ? undefined : series.get(level.seriesId), machine),
       level: level === undefined || measurement === null ? null : levelFacts(measurement, level),
       limits: limits.map(limitFacts),
       change: changeOf(levels, nowMs, onlyLower ? 'lower' : 'upper'),
-      zone: null,
+      zone: reading === null ? null : zoneFacts(machine, reading, band.id, compared),
     };
   });
 }

@@ -7,6 +7,7 @@ import type {
   MachineFacts,
   PointFacts,
   TroubleFacts,
+  ZoneFacts,
 } from '../../src/advisory/facts.ts';
 import type { BandNow, PointNow, SummaryFacts } from '../../src/advisory/summary-facts.ts';
 import { displayUnit, usualDisplayUnit } from '../../src/config/units.ts';
@@ -54,6 +55,32 @@ export const bearingLimit: LimitFacts = {
   danger: null,
 };
 
+/** The same machine with its limits from the zones of group 2, rigid. */
+export const zoneLimit: LimitFacts = {
+  id: 'overall-zone-upper',
+  side: 'upper',
+  alert: 2.5e-3,
+  danger: 4.5e-3,
+  reasons: {
+    alert: 'baseline 1.8 mm/s + 25 % of B/C (2.8 mm/s) of ISO 20816-3 (group 2, rigid)',
+    danger: 'C/D of ISO 20816-3 (group 2, rigid)',
+  },
+};
+
+/** Of ISO 20816-3, group 2, rigid. */
+export function zoneOf(letter: ZoneFacts['letter'], parts: Partial<ZoneFacts> = {}): ZoneFacts {
+  return {
+    letter,
+    why: null,
+    atLeast: false,
+    table: 'ISO 20816-3 (group 2, rigid)',
+    boundaries: letter === null ? null : { ab: 1.4e-3, bc: 2.8e-3, cd: 4.5e-3 },
+    change: null,
+    machine: null,
+    ...parts,
+  };
+}
+
 export function levelOf(level: number, usedMs = morning - hour / 2, atLeast = false): LevelFacts {
   return {
     usedMs,
@@ -90,7 +117,9 @@ export const danger: AlarmFacts = {
   sinceMs: morning - 9.5 * hour,
   recordings: 4,
   event: 'rose',
-  zone: null,
+  zone: zoneOf('D', {
+    change: { by: 3.41e-3, reference: 1.8e-3, threshold: 0.7e-3, significant: true, since: 'baseline' },
+  }),
   before: {
     last: [4.71e-3, 4.38e-3, 3.1e-3, 2.95e-3].map((level, index) => ({
       usedMs: morning - (index + 1.5) * hour,
@@ -143,6 +172,8 @@ export const alert: AlarmFacts = {
   number: 18,
   severity: 'alert',
   point: driveV,
+  limit: zoneLimit,
+  zone: zoneOf('C', { atLeast: true, machine: { letter: 'D', point: driveH } }),
   level: levelOf(3.1e-3, morning - hour / 2, true),
   action: null,
   respondByMs: null,
@@ -253,9 +284,18 @@ export const summaryFacts: SummaryFacts = {
   writtenMs: morning,
   sinceMs: morning - day,
   points: [
-    pointNow(blower, driveH, bandsOf(5.21e-3, 4.1, { change: danger.change })),
-    pointNow(blower, driveV, bandsOf(3.1e-3, 3.9)),
-    pointNow(blower, otherH, bandsOf(1.44e-3, 4.4)),
+    pointNow(blower, driveH, bandsOf(5.21e-3, 4.1, { change: danger.change, zone: danger.zone })),
+    pointNow(blower, driveV, bandsOf(3.1e-3, 3.9, { zone: zoneOf('C', { atLeast: true }) })),
+    pointNow(
+      blower,
+      otherH,
+      bandsOf(1.44e-3, 4.4, {
+        change: { ratio: 0.62, ordinaryRatio: 1.12, worse: false },
+        zone: zoneOf('B', {
+          change: { by: -0.88e-3, reference: 2.32e-3, threshold: 0.7e-3, significant: true, since: 'week' },
+        }),
+      }),
+    ),
     pointNow(pump, driveH, bandsOf(0.02e-3, 0.03), 'blind'),
     pointNow(
       pump,
@@ -318,7 +358,10 @@ export const summaryFacts: SummaryFacts = {
 /** A quiet morning. */
 export const quietFacts: SummaryFacts = {
   ...summaryFacts,
-  points: summaryFacts.points.filter(({ judging }) => judging === 'judged').slice(1, 3),
+  points: [
+    pointNow(blower, driveV, bandsOf(1.3e-3, 3.9, { zone: zoneOf('A') })),
+    pointNow(blower, otherH, bandsOf(1.44e-3, 4.4, { zone: zoneOf('B') })),
+  ],
   standing: [],
   recordings: { received: 48, expected: 48, repeats: 0, late: 0, quarantined: 0, unassigned: 0 },
   history: { yesterday: 0, week: 0, frequent: [] },

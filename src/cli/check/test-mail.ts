@@ -9,6 +9,7 @@ import type { BandLevel, Measurement } from '../../manipulation/measurement.ts';
 import { asAlarm } from '../../service/as-alarm.ts';
 import { bandFacts, limitFacts } from '../../service/fact-names.ts';
 import { readersView } from '../../service/readers-view.ts';
+import { measuredReading, zoneFacts } from '../../service/zone-facts.ts';
 import type { Ledger } from '../../store/ledger.ts';
 import { lookAtDrop } from './drop-look.ts';
 import { FileLevels } from './file-levels.ts';
@@ -154,7 +155,7 @@ function alarmOf(
     dangerUnconfirmed: false,
     change: null,
     action: limit.action,
-    zone: null,
+    zone: zoneFacts(machine, measuredReading(machine, point, measurement), limit.bandId, null),
     before: { last: [], dayBefore: null, weekBefore: null, baseline: null },
     trend: null,
     lines: {
