@@ -4,7 +4,7 @@ import { DropFolder } from '../acquisition/drop-folder.ts';
 import { WorkerPool } from '../manipulation/pool.ts';
 import type { Ledger } from '../store/ledger.ts';
 import { isLedgerRefusal, LedgerError } from '../store/ledger-error.ts';
-import { openLedger } from '../store/open-ledger.ts';
+import { type OpenOptions, openLedger } from '../store/open-ledger.ts';
 import { type BeyondLedger, lookBeyond, noteBeyond } from './beyond-ledger.ts';
 import type { Clock } from './clock.ts';
 import { HealthFile } from './health.ts';
@@ -26,7 +26,7 @@ import { watchSilence } from './watch-silence.ts';
  * (run.ts: rounds on ticks), `run --once` (rounds until nothing is left) and the demo (rounds between steps of a
  * clock) are one and the same way.
  */
-export interface ServiceOptions {
+export interface ServiceOptions extends Pick<OpenOptions, 'largestPages' | 'migrations'> {
   readonly siteFile: SiteFile;
   readonly clock: Clock;
   readonly log: Logger;
@@ -38,8 +38,6 @@ export interface ServiceOptions {
   /** Module of the worker threads, and how long one task may take there. */
   readonly worker?: URL;
   readonly deadlineMs?: number;
-  /** The ledger refuses to grow beyond this many pages of 4 KiB, as if the disk were full. */
-  readonly largestPages?: number;
   /** Called when no worker thread is left: the process should end and be started again. */
   readonly onLost?: (reason: string) => void;
 }
@@ -69,7 +67,9 @@ export class Service {
       mode: 'owner',
       wallMs: () => Math.round(clock.wallMs()),
       monotonicMs: () => clock.monotonicMs(),
+      step: options.step ?? noStep,
       ...(options.largestPages === undefined ? {} : { largestPages: options.largestPages }),
+      ...(options.migrations === undefined ? {} : { migrations: options.migrations }),
     });
     if (isLedgerRefusal(opened)) return { refused: opened.reason };
     try {

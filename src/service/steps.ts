@@ -1,4 +1,5 @@
 import { filingSteps } from '../acquisition/filing.ts';
+import { type LedgerStep, transactionSteps } from '../store/ledger-steps.ts';
 
 /**
  * Names of the places between two outside effects. The service calls `step(name)` at each; in normal running it does
@@ -17,9 +18,11 @@ export const stepNames = [
   'delivery: answer received',
   'delivery: answer stored',
   'summary: stored',
+  ...transactionSteps,
 ] as const;
 
-export type StepName = (typeof stepNames)[number];
+/** Those of a start that brings an older ledger up to date are reached in no other life of the service. */
+export type StepName = (typeof stepNames)[number] | LedgerStep;
 
 export type Step = (name: StepName) => void;
 

@@ -1,9 +1,21 @@
 import { fork } from 'node:child_process';
-import { closeSync, existsSync, fsyncSync, openSync, renameSync, rmSync, statSync } from 'node:fs';
-import { dirname, extname } from 'node:path';
+import {
+  closeSync,
+  existsSync,
+  fstatSync,
+  fsyncSync,
+  openSync,
+  readdirSync,
+  readSync,
+  renameSync,
+  rmSync,
+  statSync,
+} from 'node:fs';
+import { dirname, extname, join } from 'node:path';
 import { Worker } from 'node:worker_threads';
 import type { CopyAnswer, CopyTask } from './copy-worker.ts';
 import { type LedgerRefusal, toRefusal } from './ledger-error.ts';
+import type { BackupStep } from './ledger-steps.ts';
 
 export interface BackupDone {
   readonly file: string;
@@ -30,38 +42,90 @@ export async function quickCheck(
  * A consistent copy of the ledger while others write: `vacuum into` FILE.part on a read-only connection in a thread, quick
  * check, fsync, rename. Refuses a FILE that is there already. (The driver's stepwise backup starts again with each
  * write beside it and so may never end.)
+ *
+ * FILE.part of a backup that was killed is cleared by the next one of that name. It is made here and held open, so that
+ * of two backups to one name at the same time the one whose part the other took away does not put the other's in place.
  */
 export async function backupLedger(
   path: string,
   file: string,
-  step: (name: string) => void = () => {},
+  step: (name: BackupStep) => void = () => {},
 ): Promise<BackupDone | LedgerRefusal> {
   if (existsSync(file)) return existing(file);
   if (!existsSync(path)) return { refused: 'missing', reason: `there is no ledger ${path} to copy` };
   if (!existsSync(dirname(file))) return noFolder(file);
   const part = `${file}.part`;
+  let held: number | null = null;
   try {
-    rmSync(part, { force: true });
+    removePart(part);
+    held = openSync(part, 'wx');
+    step('backup: begun');
     const copied = await inThread({ task: 'copy', path, to: part });
+    if (!isSameFile(part, held)) return overtaken(file);
     if ('failed' in copied)
       return refusalOf(copied, /CORRUPT|NOTADB/.test(copied.code) ? path : `copy ${file}`);
-    step('backup copied');
+    step('backup: copied');
     const findings = await quickCheck(part);
     if ('refused' in findings) return findings;
     if (findings.length > 0) {
       return { refused: 'damaged', reason: `the copy of ${path} fails its check: ${findings[0]}` };
     }
+    step('backup: checked');
     syncFile(part);
-    step('backup checked');
+    step('backup: forced to the disk');
     if (existsSync(file)) return existing(file);
+    if (!isSameFile(part, held)) return overtaken(file);
     renameSync(part, file);
     syncFile(dirname(file));
+    step('backup: in place');
     return { file, bytes: statSync(file).size };
   } catch (error) {
     return systemRefusal(error, file);
   } finally {
-    rmSync(part, { force: true });
+    if (held !== null) {
+      if (isSameFile(part, held)) removePart(part);
+      closeSync(held);
+    }
   }
+}
+
+/** A copy that is not finished, with what SQLite may have kept beside it. */
+export function removePart(part: string): void {
+  for (const path of [part, `${part}-journal`]) rmSync(path, { force: true });
+}
+
+/** Names of ledgers' copies in the folder of `file` that are not finished: broken off, or still being made. */
+export function unfinishedBeside(file: string): readonly string[] {
+  const folder = dirname(file);
+  return readdirSync(folder, { withFileTypes: true })
+    .filter(
+      (entry) => entry.isFile() && entry.name.endsWith('.part') && isCopyBegun(join(folder, entry.name)),
+    )
+    .map((entry) => entry.name)
+    .sort();
+}
+
+const sqliteMark = 'SQLite format 3\0';
+
+/** Nothing is in it yet, or a database; false where it is gone by now or cannot be read. */
+function isCopyBegun(path: string): boolean {
+  let descriptor: number | null = null;
+  try {
+    descriptor = openSync(path, 'r');
+    const start = new Uint8Array(sqliteMark.length);
+    const read = readSync(descriptor, start, 0, start.length, 0);
+    return read === 0 || Buffer.from(start).toString('latin1') === sqliteMark;
+  } catch {
+    return false;
+  } finally {
+    if (descriptor !== null) closeSync(descriptor);
+  }
+}
+
+function isSameFile(path: string, descriptor: number): boolean {
+  const there = statSync(path, { throwIfNoEntry: false });
+  const mine = fstatSync(descriptor);
+  return there?.ino === mine.ino && there.dev === mine.dev;
 }
 
 /** Puts a finished file, or a rename in a folder, on the disk for good. */
@@ -78,6 +142,13 @@ function existing(file: string): LedgerRefusal {
   return {
     refused: 'exists',
     reason: `${file} is there already; a backup never overwrites, name another file`,
+  };
+}
+
+function overtaken(file: string): LedgerRefusal {
+  return {
+    refused: 'busy',
+    reason: `another backup to ${file} was begun meanwhile; that one goes on, this one is given up`,
   };
 }
 

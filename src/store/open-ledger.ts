@@ -1,11 +1,12 @@
 import { randomUUID } from 'node:crypto';
-import { existsSync, mkdirSync, renameSync, rmSync } from 'node:fs';
-import { join } from 'node:path';
+import { existsSync, mkdirSync, renameSync } from 'node:fs';
+import { dirname, join } from 'node:path';
 import { setTimeout as pause } from 'node:timers/promises';
 import Database, { type Database as Connection } from 'better-sqlite3';
-import { syncFile } from './backup.ts';
+import { removePart, syncFile } from './backup.ts';
 import { Ledger, type LedgerMode } from './ledger.ts';
 import { LedgerError, type LedgerRefusal, toRefusal } from './ledger-error.ts';
+import type { LedgerStep } from './ledger-steps.ts';
 import { ledgerVersion, type Migration, migrate, migrations } from './migrations/index.ts';
 import { fileSystemType, networkShareName } from './network-share.ts';
 import { type OwnerLock, takeOwnerLock } from './owner-lock.ts';
@@ -19,7 +20,7 @@ export interface OpenOptions {
   readonly wallMs: () => number;
   readonly monotonicMs: () => number;
   /** Called by name between outside effects; tests throw or kill there. */
-  readonly step?: (name: string) => void;
+  readonly step?: (name: LedgerStep) => void;
   /** How pauses are waited for. */
   readonly wait?: (ms: number) => Promise<void>;
   /** Type of the folder's file system, as statfs(2) gives it. */
@@ -148,16 +149,26 @@ function bringUpToDate(
   known: readonly Migration[],
 ): void {
   const step = options.step ?? (() => {});
-  if (before > 0) {
-    const copy = join(options.folder, `ledger-before-${before + 1}.sqlite`);
-    rmSync(`${copy}.part`, { force: true });
-    writing.prepare('vacuum into ?').run(`${copy}.part`);
-    syncFile(`${copy}.part`);
-    renameSync(`${copy}.part`, copy);
-    syncFile(options.folder);
-    step('older ledger copied');
-  }
+  if (before > 0) copyOlder(writing, join(options.folder, `ledger-before-${before + 1}.sqlite`), step);
   migrate(writing, known, { wallMs: options.wallMs(), step });
+  step('opening: up to date');
+}
+
+function copyOlder(writing: Connection, copy: string, step: (name: LedgerStep) => void): void {
+  const part = `${copy}.part`;
+  removePart(part);
+  step('opening: leftovers cleared');
+  try {
+    writing.prepare('vacuum into ?').run(part);
+    step('opening: older ledger copied');
+    syncFile(part);
+    step('opening: copy forced to the disk');
+    renameSync(part, copy);
+    syncFile(dirname(copy));
+    step('opening: copy in place');
+  } finally {
+    removePart(part);
+  }
 }
 
 function nameLedger(writing: Connection): string {

@@ -1,4 +1,5 @@
 import { isBusy, LedgerError, toLedgerError } from './ledger-error.ts';
+import type { LedgerStep } from './ledger-steps.ts';
 import { lend, type PreparedConnection, type Writer } from './lent-connection.ts';
 
 export type AfterCommit = (hook: () => void) => void;
@@ -11,7 +12,7 @@ export interface TransactionTools {
   readonly begin: 'begin immediate' | 'begin deferred';
   readonly wait: (ms: number) => Promise<void>;
   readonly monotonicMs: () => number;
-  readonly step: (name: string) => void;
+  readonly step: (name: LedgerStep) => void;
 }
 
 /**
@@ -93,9 +94,9 @@ async function runOnce<T>(
   try {
     const value = await Promise.race([work(lent.db, afterCommit), overrun.happened]);
     lent.end();
-    tools.step('transaction before commit');
+    tools.step('transaction: before commit');
     connection.exec('commit');
-    tools.step('transaction after commit');
+    tools.step('transaction: after commit');
     return value;
   } catch (error) {
     lent.end();

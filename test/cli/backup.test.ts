@@ -1,4 +1,4 @@
-import { readdirSync } from 'node:fs';
+import { readdirSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 import Database from 'better-sqlite3';
 import { expect, test } from 'vitest';
@@ -20,6 +20,23 @@ test('a backup is made beside the running service, checked, never over another f
     expect((await run(['summary', '--text'], at)).out.replace(/\s+/g, ' ')).toContain(
       'last backup Mon 2 Mar 2026, 06:00',
     );
+    for (const name of ['old.sqlite.part', 'empty.part', 'letter.part'])
+      writeFileSync(
+        join(site.folder, name),
+        name.startsWith('old')
+          ? readFileSync(join(site.folder, 'copy.sqlite')).subarray(0, 9000)
+          : name.startsWith('letter')
+            ? 'Dear'
+            : '',
+      );
+    const second = await run(['backup', 'second.sqlite'], at);
+    expect(second.status).toBe(0);
+    expect(second.err.split('\n').map((line) => line.slice(0, 45))).toEqual([
+      'note: empty.part beside it is no backup: one ',
+      'note: old.sqlite.part beside it is no backup:',
+      '',
+    ]);
+    for (const name of ['old.sqlite.part', 'empty.part', 'letter.part']) rmSync(join(site.folder, name));
     const again = await run(['backup', 'copy.sqlite'], at);
     expect(again.status).toBe(1);
     expect(again.err).toContain('is there already; a backup never overwrites');

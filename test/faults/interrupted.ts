@@ -34,3 +34,5 @@ export const leftOut: readonly string[] =
 
 /** A mail that the server took and whose answer was not stored goes out again, with the same Message-ID. */
 export const mayRepeatMails: readonly StepName[] = ['delivery: answer received'];
+/** So it does when the transaction that would store the answer is broken off; other transactions repeat none. */
+export const someRepeatMails: readonly StepName[] = ['transaction: before commit'];

@@ -29,6 +29,7 @@ export function removeTemplate(): Promise<void> {
 /** A copy of the site with a mail server of its own. */
 export interface StoryRun {
   readonly folder: string;
+  readonly data: string;
   /** Ledger, files and mails as they are now; the service must be ended. */
   state(): StoryState;
   /** Message-IDs as the server took them, one after the other. */
@@ -39,20 +40,32 @@ export interface StoryRun {
 export async function storyRun(shelf: string | null): Promise<StoryRun> {
   template ??= makeTemplate();
   const { folder: from } = await template;
+  return storyRunOn(shelf, (folder, data) => {
+    cpSync(join(from, 'drop'), join(folder, 'drop'), { recursive: true });
+    cpSync(join(from, 'data'), data, { recursive: true });
+    cpSync(join(from, 'site.yaml'), join(folder, 'site.yaml'));
+  });
+}
+
+/** `fill` puts the site file, the drop folder and the data into place. */
+export async function storyRunOn(
+  shelf: string | null,
+  fill: (folder: string, data: string) => void,
+): Promise<StoryRun> {
   const folder = mkdtempSync(join(tmpdir(), 'humledger-story-'));
   const data = shelf === null ? join(folder, 'data') : mkdtempSync(join(shelf, 'humledger-story-'));
   onTestFinished(() => {
     for (const path of [folder, data]) rmSync(path, { recursive: true, force: true });
   });
   const server = await MailServerOnLoopback.start();
-  cpSync(join(from, 'drop'), join(folder, 'drop'), { recursive: true });
-  cpSync(join(from, 'data'), data, { recursive: true });
-  const text = readFileSync(join(from, 'site.yaml'), 'utf8')
+  fill(folder, data);
+  const path = join(folder, 'site.yaml');
+  const text = readFileSync(path, 'utf8')
     .replace(`port: ${portOfNobody}`, `port: ${server.port}`)
     .replace('./data', data);
-  writeFileSync(join(folder, 'site.yaml'), text);
+  writeFileSync(path, text);
   const received = () => server.got.map(({ mail }) => mail.messageId ?? '');
-  return { folder, received, state: () => stateOf(join(folder, 'drop'), data, received()) };
+  return { folder, data, received, state: () => stateOf(join(folder, 'drop'), data, received()) };
 }
 
 /** The same story with nothing in its way: what it leaves behind, and how often each step was reached. */

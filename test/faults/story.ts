@@ -3,6 +3,7 @@ import { existsSync, readFileSync, renameSync, utimesSync, writeFileSync } from 
 import { join } from 'node:path';
 import { setAsidePath } from '../../src/acquisition/filing-place.ts';
 import { SteppedClock } from '../../src/service/clock.ts';
+import type { ServiceOptions } from '../../src/service/service.ts';
 import type { Step, StepName } from '../../src/service/steps.ts';
 import { beginMs, hourMs, siteAt, stamp, TrialService, wav } from '../service/site-on-disk.ts';
 
@@ -41,13 +42,18 @@ const hours = 5;
 /** Seconds after the hour at which the service is given a round: noticed, settled, gathered, the morning's half hour. */
 const momentsS = [10, 16, 90, 420, 2100];
 
-/** Plays what is left of the story to its end, or to where `step` ends it. */
-export async function playStory(folder: string, step: Step): Promise<void> {
+/** Plays what is left of the story to its end (or the beginning of the hour `until`), or to where `step` ends it. */
+export async function playStory(
+  folder: string,
+  step: Step,
+  { until = hours, ...options }: Partial<ServiceOptions> & { readonly until?: number } = {},
+): Promise<void> {
   const site = siteAt(folder);
   const place = join(folder, 'story-hour');
   const from = existsSync(place) ? Number(readFileSync(place, 'utf8')) : 0;
   const clock = new SteppedClock(beginMs + from * hourMs);
   const trial = await TrialService.start(site, {
+    ...options,
     clock,
     step: (reached) => {
       if (reached === 'filing: set aside under its own name') writeOn(folder, site.drop);
@@ -55,7 +61,7 @@ export async function playStory(folder: string, step: Step): Promise<void> {
     },
   });
   try {
-    for (let hour = from; hour < hours; hour++) {
+    for (let hour = from; hour < until; hour++) {
       clock.advance(Math.max(0, beginMs + hour * hourMs - clock.wallMs()));
       once(folder, `hour-${hour}`, () => dropFiles(site.drop, hour));
       replaceFile(place, String(hour));

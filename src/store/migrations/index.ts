@@ -18,6 +18,11 @@ interface Now {
   readonly step: (name: LedgerStep) => void;
 }
 
+interface Now {
+  readonly wallMs: number;
+  readonly step: (name: LedgerStep) => void;
+}
+
 /** Version of a ledger: the greatest number done; 0 for an empty file; null where the file is another program's. */
 export function ledgerVersion(connection: Database): number | null {
   const tables = connection
