@@ -2,6 +2,7 @@ import { shareOfAlert } from '../../advisory/ranking.ts';
 import type { Limit } from '../../config/site.ts';
 import { limitFacts } from '../../service/fact-names.ts';
 import { levelJson, limitJson } from '../level-json.ts';
+import { adviceJson, reachJson } from '../recording-plan/plan-json.ts';
 import { type BandCheck, canAlarm, type LevelNow, type PointCheck } from './point-check.ts';
 import type { SiteCheck } from './site-check.ts';
 
@@ -61,12 +62,14 @@ function pointJson(check: PointCheck) {
       effective_averages: averaging.effectiveAverages,
       used_percent: averaging.usedPercent,
     },
+    shows: check.advice && reachJson(check.advice.reach, []),
+    cannot_show: check.advice === null ? [] : check.advice.cannot.map(adviceJson),
     bands: check.bands.map(bandJson),
     quality: check.quality.map(({ flag, detail }) => ({ flag, detail })),
   };
 }
 
-function bandJson({ band, now, limits }: BandCheck) {
+function bandJson({ band, now, limits, judged }: BandCheck) {
   return {
     band: band.id,
     quantity: band.quantity,
@@ -80,8 +83,8 @@ function bandJson({ band, now, limits }: BandCheck) {
       side: limit.side,
       alert: limitJson(limit.alert, band.display),
       danger: limitJson(limit.danger, band.display),
-      share_of_alert: shareOf(limit, limit.alert, now),
-      share_of_danger: shareOf(limit, limit.danger, now),
+      share_of_alert: shareOf(limit, limit.alert, judged ? now : null),
+      share_of_danger: shareOf(limit, limit.danger, judged ? now : null),
     })),
   };
 }

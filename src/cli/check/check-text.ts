@@ -1,19 +1,23 @@
 import { plain } from '../../advisory/escape.ts';
 import { counted } from '../../advisory/level-words.ts';
 import { lineWidth, listing, wrapText } from '../output.ts';
-import { averagingText, machineText } from './machine-text.ts';
+import { averagingText, machineText, showsOf } from './machine-text.ts';
+import { cannotTexts } from './recording-advice.ts';
 import { outermost } from './retired.ts';
 import type { SiteCheck } from './site-check.ts';
+
+/** More advice than that at once is not followed; all of it stands in --json. */
+const mostAdvice = 10;
 
 /** What a site file means, for people: machine by machine, then what to know, last one line. */
 export function checkText(check: SiteCheck): string {
   const { site } = check;
-  const averagings = new Set(check.points.map(averagingText));
+  const elsewhere = sharedFacts(check).length > 0;
   const machines = site.machines.map((machine) =>
     machineText(
       machine,
       check.points.filter(({ point }) => point.machineId === machine.id),
-      { timeZone: site.timeZone, averagingElsewhere: averagings.size === 1 },
+      { timeZone: site.timeZone, averagingElsewhere: elsewhere },
     ),
   );
   return [
@@ -24,15 +28,23 @@ export function checkText(check: SiteCheck): string {
   ].join('\n');
 }
 
+/** How recordings are averaged and what they show, where that holds for all points alike. */
+function sharedFacts({ points }: SiteCheck): [string, string][] {
+  const only = (texts: readonly string[]) => (new Set(texts).size === 1 ? (texts[0] ?? null) : null);
+  const averaging = only(points.map(averagingText));
+  const shows = only(points.map(showsOf));
+  if (averaging === null || shows === null) return [];
+  return [
+    ['Averaging', `all points: ${averaging}`],
+    ...(shows === '' ? [] : [['Shows', shows] as [string, string]]),
+  ];
+}
+
 /** What holds for the whole site. */
 function siteFacts(check: SiteCheck): [string, string][] {
-  const { site, firstTime, points } = check;
-  const averagings = [...new Set(points.map(averagingText))];
-  const [shared] = averagings;
+  const { site, firstTime } = check;
   return [
-    ...(averagings.length === 1 && shared !== undefined
-      ? [['Averaging', `all points: ${shared}`] as [string, string]]
-      : []),
+    ...sharedFacts(check),
     ['Mail', mailText(site)],
     ['Summary', summaryText(site)],
     ...(firstTime
@@ -51,6 +63,11 @@ function siteTexts(check: SiteCheck): string[] {
   // That there is no mail stands below, at the end where it is not overlooked.
   const warnings = site.warnings.filter(({ text }) => site.mail !== null || !text.startsWith('without mail'));
   told('Warnings', [...remarks, ...warnings.map(({ line, text }) => `line ${line}: ${text}`)]);
+  const cannot = cannotTexts(check.points);
+  told('What recordings cannot show (humledger recording-plan --point MACHINE/POINT says more)', [
+    ...cannot.slice(0, mostAdvice),
+    ...(cannot.length > mostAdvice ? [`and ${cannot.length - mostAdvice} more`] : []),
+  ]);
   const strangers = drop.unassigned.slice(0, 5);
   const more = drop.unassigned.length - strangers.length;
   told('Files in the drop folder that no point takes (humledger files says why)', [

@@ -13,6 +13,7 @@ import { limitFacts } from '../../service/fact-names.ts';
 import { lineWidth, listing, type Row, table, wrapText } from '../output.ts';
 import { timeText } from '../when.ts';
 import { type BandCheck, canAlarm, type LevelNow, type PointCheck } from './point-check.ts';
+import { showsText } from './recording-advice.ts';
 
 /**
  * A machine's points with their levels, shares of the limits, files, and what is doubtful. `averagingElsewhere`: it is
@@ -64,7 +65,7 @@ function levelTable(points: readonly PointCheck[]): string {
 }
 
 /** One row a limit; the level stands in the first. */
-function bandRows({ band, now, limits }: BandCheck): string[][] {
+function bandRows({ band, now, limits, judged }: BandCheck): string[][] {
   const level =
     now === null ? 'none yet' : `${now.atLeast ? 'at least ' : ''}${levelWithUnit(now.level, band)}`;
   const interval =
@@ -73,7 +74,11 @@ function bandRows({ band, now, limits }: BandCheck): string[][] {
       : `${bareLevel(now.intervalLow, band.display)} to ${bareLevel(now.intervalHigh, band.display)}`;
   if (limits.length === 0) return [[band.id, level, interval, 'no limit', '']];
   return limits.map((limit, n) => {
-    const cells = [limitCell(limit, limit.alert, band, now), limitCell(limit, limit.danger, band, now)];
+    const against = judged ? now : null;
+    const cells = [
+      limitCell(limit, limit.alert, band, against),
+      limitCell(limit, limit.danger, band, against),
+    ];
     return n === 0 ? [band.id, level, interval, ...cells] : ['', '', '', ...cells];
   });
 }
@@ -119,15 +124,7 @@ function filesTable(points: readonly PointCheck[], timeZone: string): string {
 
 /** Averaging once for points that share it, then what is doubtful or missing, point by point. */
 function notes(points: readonly PointCheck[], averagingElsewhere: boolean): string {
-  const byText = new Map<string, string[]>();
-  for (const one of points) {
-    const text = averagingText(one);
-    byText.set(text, [...(byText.get(text) ?? []), one.point.id]);
-  }
-  const averaging = [...byText].map(([text, ids]): [string, string] => [
-    'averaging',
-    byText.size === 1 ? text : `${ids.join(', ')}: ${text}`,
-  ]);
+  const averaging = [...byText('averaging', points, averagingText), ...byText('shows', points, showsOf)];
   const remarks = points.flatMap((one): Remark[] => {
     const { id } = one.point;
     return [
@@ -142,6 +139,23 @@ function notes(points: readonly PointCheck[], averagingElsewhere: boolean): stri
   });
   const entries = [...(averagingElsewhere ? [] : averaging), ...told];
   return entries.length === 0 ? '' : `\n${listing(entries, '  ')}`;
+}
+
+function byText(
+  title: string,
+  points: readonly PointCheck[],
+  textOf: (one: PointCheck) => string,
+): [string, string][] {
+  const same = new Map<string, string[]>();
+  for (const one of points) same.set(textOf(one), [...(same.get(textOf(one)) ?? []), one.point.id]);
+  return [...same]
+    .filter(([text]) => text !== '')
+    .map(([text, ids]) => [title, same.size === 1 ? text : `${ids.join(', ')}: ${text}`]);
+}
+
+/** Empty where nothing is known of the recordings. */
+export function showsOf({ advice }: PointCheck): string {
+  return advice === null ? '' : showsText(advice);
 }
 
 interface Remark {

@@ -2,10 +2,12 @@ import { join } from 'node:path';
 import type { QualityFinding } from '../../acquisition/recording.ts';
 import { pointMeaning } from '../../config/meaning.ts';
 import { type Band, type Limit, type Point, pointPath, type Site } from '../../config/site.ts';
+import { readingOf } from '../../detection/machine-state.ts';
 import type { Averaging, BandLevel } from '../../manipulation/measurement.ts';
 import type { DropLook, Waiting } from './drop-look.ts';
 import type { FileLevels } from './file-levels.ts';
 import type { LedgerPoint } from './ledger-look.ts';
+import type { PointAdvice, RecordingAdviser } from './recording-advice.ts';
 
 /** A level with its interval, SI r.m.s. */
 export type LevelNow = Pick<
@@ -17,6 +19,8 @@ export interface BandCheck {
   readonly band: Band;
   readonly now: LevelNow | null;
   readonly limits: readonly Limit[];
+  /** False: the machine stood still, and a level of standstill says nothing of its limits. */
+  readonly judged: boolean;
 }
 
 /** Segment, lines and averages: of the newest recording, or as the site file's rate and duration have it. */
@@ -45,9 +49,13 @@ export interface PointCheck {
   readonly quality: readonly QualityFinding[];
   /** Why there are no levels, or what is doubtful about them. */
   readonly remark: string | null;
+  /** What its recordings can and cannot show; null: nothing says how they are made. */
+  readonly advice: PointAdvice | null;
 }
 
 interface Found {
+  /** The machine stood still in the recording. */
+  readonly stopped: boolean;
   readonly from: PointCheck['from'];
   readonly usedMs: number | null;
   readonly levels: ReadonlyMap<string, LevelNow>;
@@ -63,7 +71,12 @@ interface Found {
 export async function checkPoint(
   site: Site,
   point: Point,
-  known: { readonly drop: DropLook; readonly ledger: LedgerPoint | null; readonly files: FileLevels },
+  known: {
+    readonly drop: DropLook;
+    readonly ledger: LedgerPoint | null;
+    readonly files: FileLevels;
+    readonly adviser: RecordingAdviser;
+  },
 ): Promise<PointCheck> {
   const { ledger } = known;
   const waiting = known.drop.waiting.get(pointPath(point)) ?? null;
@@ -76,10 +89,35 @@ export async function checkPoint(
     band,
     now: found.levels.get(band.id) ?? null,
     limits: point.limits.filter(({ bandId }) => bandId === band.id),
+    judged: !found.stopped,
   }));
-  const { from, usedMs, quality, remark } = found;
+  const { from, usedMs } = found;
   const averaging = found.averaging ?? configured(point);
-  return { point, waiting, ledger, from, usedMs, bands, averaging, quality, remark };
+  const machine = site.machines.find(({ id }) => id === point.machineId);
+  const advice = machine === undefined ? null : known.adviser.adviseOn(machine, { point, averaging });
+  const { quality, remark } = found.stopped ? ofStandstill(found) : found;
+  return { point, waiting, ledger, from, usedMs, bands, averaging, quality, remark, advice };
+}
+
+/** What a quality finding says of a vibration, it does not say of silence. */
+const aboutVibration: readonly QualityFinding['flag'][] = [
+  'dropouts',
+  'flat',
+  'hum-only',
+  'low-signal',
+  'settling',
+  'ski-slope',
+  'speed-doubtful',
+  'transient',
+  'unsteady',
+];
+
+function ofStandstill({ quality, remark }: Found): Pick<Found, 'quality' | 'remark'> {
+  const said = quality.some(({ flag }) => flag === 'not-running');
+  return {
+    quality: quality.filter(({ flag }) => !aboutVibration.includes(flag)),
+    remark: remark ?? (said ? null : 'the machine stood still: not judged'),
+  };
 }
 
 /** False: no limit watches any band of it. */
@@ -107,6 +145,7 @@ function fromLedger({ measurement, bandIds }: LedgerPoint, point: Point): Found 
     averaging: ofRecording(measurement.averaging, measurement.sampleRateHz),
     quality: measurement.quality,
     remark: null,
+    stopped: measurement.machineState === 'stopped',
   };
 }
 
@@ -124,6 +163,7 @@ async function fromFile(
     averaging: null,
     quality: [],
     remark: null,
+    stopped: false,
   };
   const archived = ledger?.archived.newest ?? null;
   if (waiting === null && archived === null) return { ...none, remark: 'no recording yet' };
@@ -143,6 +183,7 @@ async function fromFile(
     };
   }
   const quality = [...answer.quality, ...measurement.quality];
+  const rule = site.machines.find(({ id }) => id === point.machineId)?.running ?? null;
   return {
     from: 'file',
     // Filed away, a recording has lost the subfolders that its name may need to tell its start.
@@ -155,6 +196,7 @@ async function fromFile(
       measurement.averaging === null && quality.length === 0
         ? `${name}: not even one segment fits into it`
         : null,
+    stopped: readingOf(rule, measurement) === false,
   };
 }
 

@@ -11,6 +11,7 @@ import { type DropLook, lookAtDrop } from './drop-look.ts';
 import { FileLevels } from './file-levels.ts';
 import { type LedgerPoint, lookUpPoint } from './ledger-look.ts';
 import { checkPoint, type PointCheck } from './point-check.ts';
+import { RecordingAdviser } from './recording-advice.ts';
 import { nothingRetired, type Retired, recipientsOf, retiredBy } from './retired.ts';
 
 /** Everything that `check` says of a site file that is sound. */
@@ -42,9 +43,12 @@ export async function checkSite(
   const read = await readLedger(siteFile, nowMs, monotonicMs);
   if (read.refusal !== null) hindrances.push(read.refusal);
   const files = new FileLevels(site);
+  const adviser = new RecordingAdviser();
   const points: PointCheck[] = [];
   for (const point of site.machines.flatMap((machine) => machine.points))
-    points.push(await checkPoint(site, point, { drop, files, ledger: read.points.get(point) ?? null }));
+    points.push(
+      await checkPoint(site, point, { drop, files, adviser, ledger: read.points.get(point) ?? null }),
+    );
   hindrances.push(...passwordProblems(site));
   const limits = points.reduce((sum, { point }) => sum + point.limits.length, 0);
   const recipients = recipientsOf(site);

@@ -15,6 +15,8 @@ import type { NamedBand } from './question.ts';
 export interface Advice {
   /** Names the rule, so that many points of one kind are told once. */
   readonly rule: 'names' | 'few-averages' | 'band-level' | 'unused';
+  /** The band it is about, where it is about one. */
+  readonly band: string | null;
   readonly what: string;
   readonly remedy: string;
   readonly lineSpacingHz: number | null;
@@ -53,7 +55,8 @@ function names(recording: RecordingKind, reach: RecordingReach, slowestHz: numbe
   const needs = roundDown(slowestHz / linesForNames);
   return {
     rule: 'names',
-    what: `no peak of a shaft at ${printSpeed(slowestHz)} gets a name: a line every ${printFrequency(reach.layout.lineSpacingHz)} names from ${printSpeed(reach.leastNamedHz)} on`,
+    band: null,
+    what: `no peak of the spectrum gets a name at ${printSpeed(slowestHz)}: a line every ${printFrequency(reach.layout.lineSpacingHz)} names from ${printSpeed(reach.leastNamedHz)} on`,
     ...finerLines(recording, needs),
   };
 }
@@ -64,6 +67,7 @@ function fewAverages(recording: RecordingKind, { layout, line }: RecordingReach)
   const steady = layout.averages < 4 ? ', and nothing tells whether it was steady' : '';
   return {
     rule: 'few-averages',
+    band: null,
     what: `${layout.averages} ${layout.averages === 1 ? 'average' : 'averages'} a recording: a danger is not told at once${steady}`,
     remedy: `duration: ${lengthText(durationS)} would do (${advisedAverages} averages)`,
     lineSpacingHz: null,
@@ -83,6 +87,7 @@ function bandLevel(recording: RecordingKind, band: NamedBand, known: LevelUncert
   const durationS = 'refused' in longer ? null : longer.recording.durationS;
   return {
     rule: 'band-level',
+    band: band.name,
     what,
     remedy:
       durationS === null ? 'widen the band' : `duration: ${lengthText(durationS)} would do, or a wider band`,
@@ -97,6 +102,7 @@ function unused(recording: RecordingKind, { layout }: RecordingReach): Advice | 
   const nextS = secondsFor(layout.averages + 1, recording);
   return {
     rule: 'unused',
+    band: null,
     what: `${printNumber(layout.usedPercent)} % of each recording is used, the rest is shorter than a segment`,
     remedy: `${printSeconds(usedS)} would do as well, ${printSeconds(nextS)} gives one average more`,
     lineSpacingHz: null,

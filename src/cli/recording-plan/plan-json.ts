@@ -29,8 +29,8 @@ export function reachedJson(reached: Reached): Record<string, unknown> {
   };
 }
 
-export function adviceJson({ rule, what, remedy, lineSpacingHz, durationS }: Advice) {
-  return { rule, text: what, remedy, line_spacing_hz: lineSpacingHz, duration_s: durationS };
+export function adviceJson({ rule, band, what, remedy, lineSpacingHz, durationS }: Advice) {
+  return { rule, band, text: what, remedy, line_spacing_hz: lineSpacingHz, duration_s: durationS };
 }
 
 function recordingJson({ window, overlapPercent, durationS }: RecordingKind, layout: SegmentLayout) {
