@@ -61,8 +61,8 @@ export interface ServiceStartFacts {
 export interface LostAct {
   readonly wallMs: number;
   readonly by: string;
-  readonly command: 'acknowledge' | 'reset';
-  readonly number: number;
+  /** As people type it: 'acknowledge 12', 'note blower-1 repair'. */
+  readonly command: string;
 }
 
 /** The mail server refused a message for good. */

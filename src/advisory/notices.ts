@@ -121,10 +121,12 @@ function olderLedger({ takenAgain, lostActs, site }: ServiceStartFacts): Block[]
     blocks.push({ kind: 'paragraph', text });
   }
   if (lostActs.length === 0) return blocks;
-  const rows = lostActs.slice(0, mostActs).map(({ wallMs, by, command, number }): [string, string] => {
-    const what = command === 'acknowledge' ? `acknowledged number ${number}` : `reset number ${number}`;
-    return ['Do again', `${foreign(by)} ${what} (${momentText(wallMs, site.timeZone)})`];
-  });
+  const rows = lostActs
+    .slice(0, mostActs)
+    .map(({ wallMs, by, command }): [string, string] => [
+      'Do again',
+      `${foreign(command)}, by ${foreign(by)} (${momentText(wallMs, site.timeZone)})`,
+    ]);
   const rest = lostActs.length - rows.length;
   if (rest > 0) rows.push(['', `and ${rest} more, in acts.log of the data folder`]);
   return [...blocks, { kind: 'pairs', rows }];

@@ -4,10 +4,12 @@ import type { AddCommand, CommandIo, ExitStatus } from './command.ts';
 import { addAlarms } from './commands/alarms.ts';
 import { addAnalyse } from './commands/analyse.ts';
 import { addBackup } from './commands/backup.ts';
+import { addBaseline } from './commands/baseline.ts';
 import { addCheck } from './commands/check.ts';
 import { addDemo } from './commands/demo.ts';
 import { addDraft } from './commands/draft.ts';
 import { addFiles } from './commands/files.ts';
+import { addNoteCommand } from './commands/note.ts';
 import { addRecordingPlan } from './commands/recording-plan.ts';
 import { addRun } from './commands/run.ts';
 import { addStatus } from './commands/status.ts';
@@ -25,6 +27,8 @@ const commands: readonly AddCommand[] = [
   addSummary,
   addTrend,
   addAlarms,
+  addBaseline,
+  addNoteCommand,
   addRecordingPlan,
   addBackup,
   addDemo,

@@ -25,6 +25,22 @@ export function findPoint(
   return { unknown: `${asked}${meant(path, ids)}` };
 }
 
+/** `MACHINE` or `MACHINE/POINT`; point null: the whole machine. */
+export function findPlace(
+  site: Site,
+  path: string,
+): Found<{ readonly machine: Machine; readonly point: Point | null }> {
+  if (path.includes('/')) return findPoint(site, path);
+  const machine = site.machines.find(({ id }) => id === path);
+  if (machine !== undefined) return { machine, point: null };
+  return {
+    unknown: `there is no machine '${path}' in the site file${meant(
+      path,
+      site.machines.map(({ id }) => id),
+    )}`,
+  };
+}
+
 export function findBand(point: Point, id: string): Found<Band> {
   const found = point.bands.find((band) => band.id === id);
   if (found !== undefined) return found;

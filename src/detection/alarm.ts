@@ -93,6 +93,9 @@ export const journalEvents = [
   'suppressed',
   'unsuppressed',
   'note',
+  'baseline-begun-again',
+  'baseline-frozen',
+  'baseline-confirmed',
   'started',
   'stopped',
 ] as const;

@@ -1,6 +1,5 @@
 import { join } from 'node:path';
-import type { AlarmSubject } from '../detection/alarm.ts';
-import { subjectKey } from '../detection/alarm.ts';
+import { type AlarmSubject, type JournalEventName, subjectKey } from '../detection/alarm.ts';
 import { readMark } from '../store/intake-marks.ts';
 import type { Ledger } from '../store/ledger.ts';
 import type { Reader } from '../store/lent-connection.ts';
@@ -8,16 +7,19 @@ import { appendLines, readLines } from '../store/line-log.ts';
 import { type CommandAnswer, commandAlarm, type Person } from './alarm-command.ts';
 
 /**
- * What people did to alarms, one line each, beside the ledger and forced to the disk: `data/acts.log`. A ledger that was
- * put back from a backup lacks the acts since then. They are named in the log and in the mail of the start, never done
- * again: whoever acknowledged took something in hand, and only he knows whether he still does.
+ * What people did to alarms and machines, one line each, beside the ledger and forced to the disk: `data/acts.log`. A
+ * ledger that was put back from a backup lacks the acts since then. They are named in the log and in the mail of the
+ * start, never done again: whoever acknowledged took something in hand, and only he knows whether he still does.
  */
 export interface Act {
   readonly wallMs: number;
   readonly by: string;
-  readonly command: 'acknowledge' | 'reset';
-  readonly number: number;
-  readonly key: string;
+  /** What was done, as people type it: 'acknowledge 12', 'note blower-1 repair'. */
+  readonly command: string;
+  /** How the journal names it. */
+  readonly event: JournalEventName;
+  /** Key of the alarm; null where it is about a machine or a point. */
+  readonly key: string | null;
   readonly comment: string | null;
 }
 
@@ -28,27 +30,40 @@ const mostBytes = 4 * 1024 * 1024;
 /** The answer of `commandAlarm`; `note`: it is done, but could not be written down beside the ledger. */
 export type ActAnswer = CommandAnswer & { readonly note?: string };
 
+const eventOf = { acknowledge: 'acknowledged', reset: 'reset' } as const;
+
 /** What a person does to an alarm: one transaction, then its line. */
 export async function actOnAlarm(
   ledger: Ledger,
   number: number,
-  command: { readonly kind: Act['command']; readonly comment: string | null },
+  command: { readonly kind: keyof typeof eventOf; readonly comment: string | null },
   person: Person,
 ): Promise<ActAnswer> {
   const answer = await ledger.transact((writer) => commandAlarm(writer, number, command, person));
   if ('refused' in answer) return answer;
-  const { by, wallMs } = person;
-  const key = subjectKey(answer.subject as AlarmSubject);
-  const act: Act = { wallMs, by, command: command.kind, number, key, comment: command.comment };
-  try {
-    appendLines(join(ledger.folder, 'acts.log'), [act]);
-    return answer;
-  } catch (error) {
-    return { ...answer, note: `it stands in the ledger, but not in acts.log: ${(error as Error).message}` };
-  }
+  const note = writeAct(ledger, person, {
+    command: `${command.kind} ${number}`,
+    event: eventOf[command.kind],
+    key: subjectKey(answer.subject as AlarmSubject),
+    comment: command.comment,
+  });
+  return note === null ? answer : { ...answer, note };
 }
 
-const eventOf = { acknowledge: 'acknowledged', reset: 'reset' } as const;
+/** Writes the line of an act that the ledger has taken; the answer is what went wrong, for people. */
+export function writeAct(
+  ledger: Ledger,
+  { by, wallMs }: Person,
+  act: Omit<Act, 'wallMs' | 'by'>,
+): string | null {
+  try {
+    const line: Act = { wallMs, by, ...act };
+    appendLines(join(ledger.folder, 'acts.log'), [line]);
+    return null;
+  } catch (error) {
+    return `it stands in the ledger, but not in acts.log: ${(error as Error).message}`;
+  }
+}
 
 /** Acts that the log has and the journal has not, oldest first; and the byte up to which was compared, null: as before. */
 export async function lostActs(
@@ -67,8 +82,8 @@ async function isInJournal(reader: Reader, act: Act): Promise<boolean> {
   const row = await reader
     .selectFrom('journal')
     .select('sequence')
-    .where('key', '=', act.key)
-    .where('event', '=', eventOf[act.command])
+    .where('key', act.key === null ? 'is' : '=', act.key)
+    .where('event', '=', act.event)
     .where('wall_ms', '=', act.wallMs)
     .where('actor', '=', act.by)
     .executeTakeFirst();
@@ -77,12 +92,12 @@ async function isInJournal(reader: Reader, act: Act): Promise<boolean> {
 
 function isAct(value: unknown): value is Act {
   if (typeof value !== 'object' || value === null) return false;
-  const { wallMs, by, command, number, key } = value as Record<string, unknown>;
+  const { wallMs, by, command, event, key } = value as Record<string, unknown>;
   return (
     Number.isFinite(wallMs) &&
-    Number.isFinite(number) &&
     typeof by === 'string' &&
-    typeof key === 'string' &&
-    (command === 'acknowledge' || command === 'reset')
+    typeof command === 'string' &&
+    typeof event === 'string' &&
+    (key === null || typeof key === 'string')
   );
 }

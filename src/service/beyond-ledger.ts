@@ -32,8 +32,8 @@ export async function noteBeyond(ledger: Ledger, log: Logger, beyond: BeyondLedg
       { recordings: recordings.length },
       'the ledger is older than its log: what it lacks is taken again',
     );
-  for (const { wallMs, by, command, number, comment } of acts) {
-    const act = { by, command, number, at: new Date(wallMs).toISOString(), comment };
+  for (const { wallMs, by, command, comment } of acts) {
+    const act = { by, command, at: new Date(wallMs).toISOString(), comment };
     log.warn(act, 'an act that the ledger lacks: it was put back to a time before; to be done again by hand');
   }
   if (mark !== null) await ledger.transact((writer) => writeMark(writer, actsMark, mark));

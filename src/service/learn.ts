@@ -4,6 +4,7 @@ import { baselineOf, baselineRules, isOpen } from '../detection/baseline.ts';
 import { baselinesOf, goodLevels, type StoredBaseline, saveBaseline } from '../store/baselines.ts';
 import { keepDailyLevels } from '../store/daily-levels.ts';
 import type { Writer } from '../store/lent-connection.ts';
+import { lastBreakMs } from '../store/notes.ts';
 import type { SiteView } from './site-view.ts';
 
 /**
@@ -29,11 +30,13 @@ export async function learn(writer: Writer, view: SiteView, point: Point, usedMs
     .orderBy('series_id')
     .orderBy('condition_id')
     .execute();
+  const machineId = view.ids.machineId(point.machineId);
+  const brokenMs = (await lastBreakMs(writer, { machineId, pointId, toMs: usedMs })) ?? 0;
   const known = await baselinesOf(writer, [...new Set(learned.map((row) => row.series_id))]);
   for (const { band_id: bandId, series_id: seriesId, condition_id: conditionId } of learned) {
     const before = known.find((one) => one.seriesId === seriesId && one.conditionId === conditionId) ?? null;
     if (before !== null && !isOpen(before.state)) continue;
-    const learnFromMs = before?.learnFromMs ?? 0;
+    const learnFromMs = before?.learnFromMs ?? brokenMs;
     await relearn(writer, view, { point, bandId, seriesId, conditionId, learnFromMs, before });
   }
 }

@@ -354,7 +354,7 @@ describe('the rarer mails', () => {
             dropFolder: two,
             lastSeenMs: null,
             takenAgain: 3,
-            lostActs: [{ wallMs: morning, by: one, command: 'acknowledge', number: 3 }],
+            lostActs: [{ wallMs: morning, by: one, command: one }],
           }),
           testMail({ ...base, from: one, to: [two], server: one, points: 1, limits: 1 }),
         ];

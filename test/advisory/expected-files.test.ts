@@ -113,7 +113,7 @@ const mails: Record<string, () => Mail> = {
       kind: 'start-with-older-ledger',
       ...start,
       takenAgain: 412,
-      lostActs: [{ wallMs: morning - 30 * hour, by: 'A. Fitter', command: 'acknowledge', number: 18 }],
+      lostActs: [{ wallMs: morning - 30 * hour, by: 'A. Fitter', command: 'acknowledge 18' }],
     }),
   'service-message-failed': () =>
     serviceMail({

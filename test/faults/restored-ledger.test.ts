@@ -199,7 +199,7 @@ describe('a ledger put back from its backup', () => {
       'TROUBLE',
       'Trial works: catch-up: 2 alarms came and went',
     ]);
-    expect(mails[0]?.text).toMatch(/A\. Fitter acknowledged number \d/);
+    expect(mails[0]?.text).toMatch(/acknowledge \d+, by A\. Fitter/);
     expect(mails[0]?.text).toContain('9 recordings of the archive');
     await again.stop();
     const third = await serviceOn(on, { clock });

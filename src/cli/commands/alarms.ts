@@ -8,6 +8,7 @@ import { standingJson, standingText, whereText } from '../alarms/standing-output
 import type { AddCommand, CommandIo, ExitStatus } from '../command.ts';
 import { fail, misused, wallMs, withLedger, withSite } from '../open.ts';
 import { writeJson } from '../output.ts';
+import { textsProblem } from '../person.ts';
 import { parseWhen } from '../when.ts';
 
 interface AlarmsOptions {
@@ -26,10 +27,6 @@ interface PersonOptions {
 
 const usualRows = 50;
 const mostRows = 10_000;
-/** Longest name and comment that are stored. */
-const longestName = 100;
-const longestComment = 1000;
-
 /** `alarms`: what stands, the journal, and what people do to an alarm. */
 export const addAlarms: AddCommand = (program, io, done) => {
   const alarms = program
@@ -131,8 +128,7 @@ function act(
   const wrong =
     number === null
       ? `'${numberText}' is no number of an alarm; humledger alarms lists them`
-      : (textProblem('--by', by, longestName) ??
-        (comment === null ? null : textProblem('--comment', comment, longestComment)));
+      : textsProblem({ by, comment });
   if (number === null || wrong !== null) return Promise.resolve(misused(io, wrong ?? ''));
   return withSite(io, options.site, ({ site }) =>
     withLedger(io, site, 'guest', async (ledger) => {
@@ -144,11 +140,6 @@ function act(
       return 0;
     }),
   );
-}
-
-function textProblem(option: string, text: string, longest: number): string | null {
-  if (text === '') return `${option} is empty`;
-  return text.length > longest ? `${option} is longer than ${longest} characters` : null;
 }
 
 /** From 1 on; null for anything else. */
