@@ -93,7 +93,7 @@ export interface StandingFacts {
   readonly sinceMs: number;
   /** Recordings over the limit, or files concerned, in this life; 0 where nothing is counted. */
   readonly recordings: number;
-  /** The wall time by which the site wants somebody to have responded: first told + respond_within. */
+  /** The wall time by which the site wants a response: `respond_within` after the first telling not yet acknowledged. */
   readonly respondByMs: number | null;
   readonly acknowledgedBy: string | null;
   readonly acknowledgedMs: number | null;

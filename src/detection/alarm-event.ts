@@ -104,6 +104,7 @@ export const lifeOver = {
   told: null,
   heldBack: false,
   toldLevel: null,
+  knownLevel: null,
   sinceMs: null,
   count: 0,
 } as const satisfies Partial<AlarmState>;

@@ -70,6 +70,7 @@ function fall(state: AlarmState, counted: Counted, judged: Judged): AlarmStep {
       condition: counted.condition,
       pending: counted.pending,
       toldLevel: judged.level,
+      knownLevel: judged.level,
       count: state.count + 1,
       usedMs: newest(state, judged),
     },
@@ -84,6 +85,7 @@ function comeBack(state: AlarmState, judged: Judged, rule: AlarmRule): AlarmStep
     condition: 'normal',
     latched: rule.latching,
     toldLevel: null,
+    knownLevel: null,
     heldBack: rule.latching && state.heldBack,
   } as const;
   return changed(state, { ...(over ? lifeOver : held), pending: null, usedMs: newest(state, judged) }, [
@@ -109,7 +111,7 @@ function hold(
       pending,
       count: state.count + (counts ? 1 : 0),
       usedMs: newest(state, judged),
-      toldLevel: counts && isToldOnLifting(state) ? (judged.level ?? state.toldLevel) : state.toldLevel,
+      ...(counts ? levelsKnown(state, judged.level) : {}),
       ...again?.fields,
     },
     [...unconfirmed, ...(again?.journal ?? [])],
@@ -119,16 +121,22 @@ function hold(
 
 /** C -> B by worsening. Under a suppression it waits: the level is compared again when the last one has gone. */
 function hasWorsened(state: AlarmState, judged: Judged, rule: AlarmRule): boolean {
-  const { toldLevel } = state;
+  const { toldLevel, knownLevel } = state;
   if (!state.acknowledged || state.suppressions.length > 0) return false;
   if (rule.sayAgainPercent === null || toldLevel === null || judged.level === null) return false;
   const by = rule.sayAgainPercent / 100;
-  return rule.side === 'upper' ? judged.level >= toldLevel * (1 + by) : judged.level <= toldLevel * (1 - by);
+  const known = knownLevel ?? toldLevel;
+  return rule.side === 'upper'
+    ? judged.level >= Math.max(toldLevel, known) * (1 + by)
+    : judged.level <= Math.min(toldLevel, known) * (1 - by);
 }
 
 /** What will be told when the suppression goes is the newest level, and worsening is reckoned from that. */
-function isToldOnLifting(state: AlarmState): boolean {
-  return state.heldBack || state.suppressions.some((one) => one !== 'by-design');
+function levelsKnown(state: AlarmState, level: number | null): Partial<AlarmState> {
+  if (level === null) return {};
+  if (state.heldBack || state.suppressions.some((one) => one !== 'by-design'))
+    return { toldLevel: level, knownLevel: level };
+  return state.acknowledged ? {} : { knownLevel: level };
 }
 
 function sayAgain(state: AlarmState, judged: Judged) {
@@ -148,10 +156,15 @@ function announce(
   telling: Telling,
 ): { fields: Partial<AlarmState>; tell: Telling | null } {
   if (state.suppressions.length > 0) {
-    return { fields: { heldBack: true, toldLevel: telling.level }, tell: null };
+    return { fields: { heldBack: true, toldLevel: telling.level, knownLevel: telling.level }, tell: null };
   }
   return {
-    fields: { told: higher(state.told, telling.severity), heldBack: false, toldLevel: telling.level },
+    fields: {
+      told: higher(state.told, telling.severity),
+      heldBack: false,
+      toldLevel: telling.level,
+      knownLevel: telling.level,
+    },
     tell: telling,
   };
 }

@@ -24,6 +24,11 @@ export interface AlarmState {
   readonly heldBack: boolean;
   /** Level (SI) when last told (or held back, or fallen to), from which worsening is reckoned. */
   readonly toldLevel: number | null;
+  /**
+   * Level (SI) of the newest recording over the limit until it was acknowledged: who acknowledged could know it.
+   * Worsening is reckoned from this where it is the worse.
+   */
+  readonly knownLevel: number | null;
   /** Used time of the first recording over the limit in this life of the alarm; null when normal. */
   readonly sinceMs: number | null;
   /** Recordings over the limit in this life. */
@@ -56,6 +61,7 @@ export const normalState: AlarmState = {
   told: null,
   heldBack: false,
   toldLevel: null,
+  knownLevel: null,
   sinceMs: null,
   count: 0,
   usedMs: null,

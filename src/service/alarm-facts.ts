@@ -6,7 +6,7 @@ import { type JournalRow, readJournal } from '../store/journal.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import type { UntoldEvent } from '../store/messages.ts';
 import { bandOfLimit } from '../store/past-levels.ts';
-import { firstToldMs } from '../store/period-counts.ts';
+import { askedSinceMs } from '../store/period-counts.ts';
 import {
   measurementsOfRecording,
   newestMeasurement,
@@ -173,8 +173,8 @@ async function standingOf(
   const { event, standing, alarm } = known;
   if (standing !== null) {
     const { number } = standing.life;
-    const firstMs = (await firstToldMs(reader, [number])).get(number) ?? event.wallMs;
-    return standingFacts(reader, standing, { firstMs, respondWithinMs });
+    const askedMs = (await askedSinceMs(reader, [number])).get(number) ?? event.wallMs;
+    return standingFacts(reader, standing, { askedMs, respondWithinMs });
   }
   return {
     number: 0,

@@ -21,7 +21,7 @@ export function stillStands(of: StandingLife): boolean {
 export async function standingFacts(
   reader: Reader,
   of: StandingLife,
-  told: { readonly firstMs: number | null; readonly respondWithinMs: number | null },
+  told: { readonly askedMs: number | null; readonly respondWithinMs: number | null },
 ): Promise<StandingFacts> {
   const { alarm, life } = of;
   const state = alarm.number === life.number ? alarm.state : normalState;
@@ -33,7 +33,7 @@ export async function standingFacts(
     sinceMs: state.sinceMs ?? life.raisedUsedMs ?? life.raisedWallMs,
     recordings: state.count,
     respondByMs:
-      told.firstMs === null || told.respondWithinMs === null ? null : told.firstMs + told.respondWithinMs,
+      told.askedMs === null || told.respondWithinMs === null ? null : told.askedMs + told.respondWithinMs,
     acknowledgedBy: life.acknowledgedBy,
     acknowledgedMs: life.acknowledgedWallMs,
     suppressedUntilMs: suppressed ? await suppressedUntil(reader, alarm.key, now) : null,

@@ -2,7 +2,7 @@ import type { StandingAlarm, TroubleFacts } from '../advisory/facts.ts';
 import type { BandNow, PointNow } from '../advisory/summary-facts.ts';
 import type { StandingLife } from '../store/alarms.ts';
 import type { Reader } from '../store/lent-connection.ts';
-import { firstToldMs } from '../store/period-counts.ts';
+import { askedSinceMs } from '../store/period-counts.ts';
 import { bandFacts, findMachine, limitFacts, limitOf, machineFacts, pointFacts } from './fact-names.ts';
 import type { SiteView } from './site-view.ts';
 import { standingFacts } from './standing-facts.ts';
@@ -15,7 +15,7 @@ export async function standingNow(
   lives: readonly StandingLife[],
   points: readonly PointNow[],
 ): Promise<(StandingAlarm | TroubleFacts)[]> {
-  const told = await firstToldMs(
+  const told = await askedSinceMs(
     reader,
     lives.map(({ life }) => life.number),
   );
@@ -39,7 +39,7 @@ async function standingAlarm(
   reader: Reader,
   view: SiteView,
   one: StandingLife,
-  firstMs: number | null,
+  askedMs: number | null,
   now: BandNow | undefined,
 ): Promise<StandingAlarm> {
   const { subject, state } = one.alarm;
@@ -49,7 +49,7 @@ async function standingAlarm(
   const limit = limitOf(point, limitId);
   const severity = state.condition === 'normal' ? state.highest : state.condition;
   return {
-    ...(await standingFacts(reader, one, { firstMs, respondWithinMs: limit?.respondWithinMs ?? null })),
+    ...(await standingFacts(reader, one, { askedMs, respondWithinMs: limit?.respondWithinMs ?? null })),
     kind: 'alarm',
     severity: severity === 'danger' ? 'danger' : 'alert',
     machine: machineFacts(view, machineId),

@@ -20,7 +20,7 @@ export async function troubleFacts(
   const subject = of.alarm.subject as TroubleSubject;
   const { machineId, pointId, trouble } = subject;
   const point = machineId === null ? undefined : view.point(`${machineId}/${pointId}`);
-  const shared = await standingFacts(reader, of, { firstMs: null, respondWithinMs: null });
+  const shared = await standingFacts(reader, of, { askedMs: null, respondWithinMs: null });
   return {
     ...shared,
     recordings: countsFiles(trouble) ? shared.recordings : 0,

@@ -1,6 +1,6 @@
 import type { Selectable } from 'kysely';
 import type { Severity } from '../config/site.ts';
-import type { AlarmState, AlarmSubject } from '../detection/alarm.ts';
+import { type AlarmState, type AlarmSubject, normalState } from '../detection/alarm.ts';
 import type { AlarmStatesTable, AlarmsTable } from './alarm-tables.ts';
 import type { Reader } from './lent-connection.ts';
 
@@ -136,7 +136,8 @@ function storedAlarm(row: Selectable<AlarmStatesTable>): StoredAlarm {
     pointId: row.point_id,
     limitId: row.limit_id,
     number: row.number,
-    state: JSON.parse(row.state) as AlarmState,
+    // What a state of an older program lacks is as in the beginning.
+    state: { ...normalState, ...(JSON.parse(row.state) as Partial<AlarmState>) },
   };
 }
 

@@ -57,20 +57,37 @@ export async function countEvaluated(
   return row.count;
 }
 
-/** Wall time at which each life was first told; a life that nobody was told of is not in the answer. */
-export async function firstToldMs(reader: Reader, numbers: readonly number[]): Promise<Map<number, number>> {
-  const told = new Map<number, number>();
+/**
+ * Wall time since when each life asks for a response: its first telling, or the first one after the acknowledgement
+ * that it outgrew. A danger told while its alert waits for a person takes over that alert's time; one that comes after
+ * somebody had the alert in hand asks anew. A life that nobody was told of is not in the answer.
+ */
+export async function askedSinceMs(reader: Reader, numbers: readonly number[]): Promise<Map<number, number>> {
+  const asked = new Map<number, number>();
   for (let from = 0; from < numbers.length; from += 500) {
-    const rows = await reader
+    const some = numbers.slice(from, from + 500);
+    const tellings = await reader
       .selectFrom('to_tell')
-      .select(({ fn }) => ['number', fn.min('wall_ms').as('firstMs')])
-      .where('number', 'in', numbers.slice(from, from + 500))
-      .groupBy('number')
-      .orderBy('number')
+      .select(['number', 'journal_sequence as sequence', 'wall_ms as wallMs'])
+      .where('number', 'in', some)
+      .orderBy('id')
       .execute();
-    for (const { number, firstMs } of rows) if (number !== null) told.set(number, firstMs);
+    const acknowledged = await reader
+      .selectFrom('journal')
+      .select(['number', 'sequence'])
+      .where('number', 'in', some)
+      .where('event', '=', 'acknowledged')
+      .orderBy('sequence')
+      .execute();
+    for (const number of some) {
+      const told = tellings.filter((one) => one.number === number);
+      const newest = told.at(-1)?.sequence ?? 0;
+      const answered = acknowledged.findLast((one) => one.number === number && one.sequence < newest);
+      const first = told.find(({ sequence }) => sequence > (answered?.sequence ?? 0));
+      if (first !== undefined) asked.set(number, first.wallMs);
+    }
   }
-  return told;
+  return asked;
 }
 
 /** Lives that ended since then by the wall clock, oldest number first. */

@@ -15,7 +15,8 @@ function ofState(s: AlarmState): string[] {
     !s.latched &&
     s.told === null &&
     !s.heldBack &&
-    s.toldLevel === null;
+    s.toldLevel === null &&
+    s.knownLevel === null;
   const pending = s.pending === null ? [] : [s.pending, ...(s.pending.beside ? [s.pending.beside] : [])];
   const directions = new Set(pending.map(({ to }) => Math.sign(rank(to) - rank(s.condition))));
   const kinds = [s.condition, s.highest, ...pending.map(({ to }) => to)];

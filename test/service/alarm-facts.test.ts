@@ -80,6 +80,27 @@ describe('the facts of an alarm', () => {
     ]);
   });
 
+  it('give a danger that outgrew an acknowledged alert a time to respond of its own, and no other', async () => {
+    const b = await bench({ limit: { respondWithinMs: 2 * dayMs, sayAgainPercent: 25 } });
+    const respondBy = async () => ((await untold(b)).alarms[0]?.respondByMs ?? 0) - 2 * dayMs;
+    const beginMs = b.clock.wallMs();
+    await b.record('blower/de', { overall: 3 });
+    b.clock.advance(dayMs);
+    await b.command(1, 'acknowledge');
+    expect(await respondBy()).toBe(beginMs);
+    b.clock.advance(3 * dayMs);
+    const worseMs = b.clock.wallMs();
+    await b.record('blower/de', { overall: 4 });
+    expect(await respondBy()).toBe(worseMs);
+    // Nobody has looked yet: the danger does not put off the time that people have.
+    b.clock.advance(dayMs);
+    await b.record('blower/de', { overall: 5 });
+    expect((await untold(b)).alarms[0]).toMatchObject({ event: 'rose', severity: 'danger' });
+    expect(await respondBy()).toBe(worseMs);
+    await b.command(1, 'acknowledge');
+    expect(await respondBy()).toBe(worseMs);
+  });
+
   it('say what the recording was, and by when somebody should respond', async () => {
     const b = await bench({ limit: { respondWithinMs: 2 * dayMs, action: 'Check the base bolts' } });
     const quality = [{ flag: 'clipped', detail: '12 samples' }] as const;
