@@ -8,7 +8,7 @@ interface Plan {
 }
 
 /** Plans are used one at a time and leave nothing behind, so all transforms of a length share one. */
-const plans = new Kept<number, Plan>(8);
+const plans = new Kept<number, Plan>(18);
 /** The plan of a longer transform takes more than 12 MB; it is made anew, which its own length dwarfs. */
 const longestKept = 2 ** 18;
 
@@ -64,6 +64,32 @@ export class PairTransform {
       firstPower[k] = firstReal * firstReal + firstImaginary * firstImaginary;
       secondPower[k] = secondReal * secondReal + secondImaginary * secondImaginary;
     }
+  }
+}
+
+/** Complex transform of one length; it owns its input and its result, nothing is allocated by `run`. */
+export class ComplexTransform {
+  readonly length: number;
+  /** Input: real and imaginary parts in turn. Kept by `run`. */
+  readonly input: Float64Array;
+  /** X[k] = sum x[n] exp(-2 pi i k n / length), parts in turn, after `run`. */
+  readonly result: Float64Array;
+  private readonly fft: FFT;
+
+  /** Throws a RangeError unless `length` is a power of two and at least 2. */
+  constructor(length: number) {
+    if (!isPowerOfTwo(length) || length < 2) {
+      throw new RangeError(`length = ${length}: a transform needs a power of two, at least 2`);
+    }
+    this.length = length;
+    this.fft = planOf(length).fft;
+    this.input = new Float64Array(2 * length);
+    this.result = new Float64Array(2 * length);
+  }
+
+  run(): Float64Array {
+    this.fft.transform(this.result, this.input);
+    return this.result;
   }
 }
 

@@ -95,7 +95,7 @@ export interface SharedWindow {
   readonly power: number;
 }
 
-const sharedWindows = new Kept<string, SharedWindow>(8);
+const sharedWindows = new Kept<string, SharedWindow>(16);
 /** Longer windows (2 MiB) are made anew. */
 const longestShared = 2 ** 18;
 

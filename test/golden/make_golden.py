@@ -225,6 +225,50 @@ def quantile_cases():
     return {**VERSIONS, "cases": cases}
 
 
+def smooth_step(x):
+    """Integral of the four-term Blackman-Harris window, 0 to 1."""
+    parts = (0.35875, -0.48829, 0.14128, -0.01168)
+    x = np.clip(x, 0, 1)
+    waves = [part / (2 * np.pi * k) * np.sin(2 * np.pi * k * x) for k, part in enumerate(parts) if k > 0]
+    return x + sum(waves) / parts[0]
+
+
+def envelope_cases():
+    """Envelope of a band: lines of the whole recording weighted, back to samples, magnitude of scipy.signal.hilbert."""
+    rate = 25600.0
+    inputs = [
+        {"seed": 11, "noise_scale": 2.0**-19, "tone_scale": 0.0, "offset": 0.0},
+        {"seed": 12, "noise_scale": 2.0**-19, "tone_scale": 2.0**-18, "offset": 2.0},
+    ]
+    cases = []
+    for parts in inputs:
+        x = samples(2**16, **parts)
+        # The last: samples at both ends in which the filter of the smooth edges has not rung out.
+        for low, high, ends in ((2000.0, 8000.0, 276), (3200.0, 4800.0, 1024), (640.0, 9600.0, 184)):
+            lines = np.fft.rfft(x)
+            hertz = np.fft.rfftfreq(len(x), 1 / rate)
+            edge = (high - low) / 16
+            vertical = ((hertz >= low) & (hertz <= high)).astype(float)
+            smooth = smooth_step((hertz - low) / edge + 0.5) * smooth_step((high - hertz) / edge + 0.5)
+            of = [np.abs(signal.hilbert(np.fft.irfft(lines * weights))) for weights in (vertical, smooth)]
+            hann = signal.get_window("hann", 16384)
+            averaged = signal.welch(of[1][ends:-ends], rate, hann, noverlap=8192)[1]
+            cases.append(
+                {
+                    "input": parts,
+                    "from_hz": low,
+                    "to_hz": high,
+                    "edge_samples": ends,
+                    "step": 1024,
+                    "vertical_edges": [float(value) for value in of[0][::1024]],
+                    "smooth_edges": [float(value) for value in of[1][::1024]],
+                    # 20 to 300 Hz of the envelope at the full rate, in lines of 1.5625 Hz.
+                    "level": level(averaged, rate / 16384, 20.0, 300.0, 0),
+                }
+            )
+    return {**VERSIONS, "sample_rate_hz": rate, "samples": 2**16, "cases": cases}
+
+
 def main():
     print(VERSIONS)
     files = {
@@ -233,6 +277,7 @@ def main():
         "band-level": band_cases(),
         "waveform": waveform_cases(),
         "chi-square": quantile_cases(),
+        "envelope": envelope_cases(),
     }
     for name, content in files.items():
         path = HERE / f"{name}.json"
