@@ -98,10 +98,14 @@ function tooNarrow(facts: Facts): BandFinding | null {
   };
 }
 
-/** Integration weighs the lowest lines most, so a level that begins there depends on where a tone falls. */
+/**
+ * Integration weighs the lowest lines most, so a level that begins there depends on where a tone falls. Pooled bursts
+ * have so few lines that the same holds of every quantity: what the means leave in the lowest ones is no vibration.
+ */
 function tooLow(facts: Facts): BandFinding | null {
   const { band, situation, fromHz, spacingHz } = facts;
-  if (band.quantity !== 'velocity' && band.quantity !== 'displacement') return null;
+  const pooled = situation.analysis.averageOver !== undefined;
+  if (band.quantity !== 'velocity' && band.quantity !== 'displacement' && !pooled) return null;
   const least = leastBandLines(situation.analysis.window);
   if (fromHz >= least * spacingHz * (1 - 1e-9)) return null;
   const lowest = inBandUnit(band, least * spacingHz, situation.runningSpeedHz, Math.ceil);

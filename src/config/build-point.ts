@@ -1,3 +1,4 @@
+import { tellOfAveraging } from './build-averaging.ts';
 import {
   type BuiltBands,
   buildBands,
@@ -70,6 +71,7 @@ export function buildPoint(
     at,
     shown,
   });
+  tellOfAveraging(build, analysisLayers, analysis, recordings, shown);
   warnOfAnalysis(build, analysisLayers, analysis, { sampleRateHz, runningSpeedHz, durationS, at, shown });
   const mounting = valueOr(keys.mounting, null);
   const bands = buildBands(build, [...around.bands, keys.bands], {

@@ -1,4 +1,5 @@
 import { finerSpacing } from './bands.ts';
+import { buildAveraging } from './build-averaging.ts';
 import { type Build, innermost, type Layers, valueOr } from './layers.ts';
 import { averagingMeaning, longestSegmentSamples, segmentSamplesFor, usualLineSpacingHz } from './meaning.ts';
 import { printNumber, printSeconds } from './print-value.ts';
@@ -99,6 +100,7 @@ export function buildAnalysis(
     skipStartS: valueOr(skip, 0) / 1000,
     confidencePercent: valueOr(innermost(layers, 'confidence'), 95),
     falsePeaksPerSpectrum: valueOr(innermost(layers, 'false_peaks'), 0.1),
+    ...buildAveraging(layers),
   };
   if (durationS !== null && settings.skipStartS >= durationS) {
     const what = `skip_start leaves nothing of the recordings of ${shown} (${printSeconds(durationS)})`;
@@ -119,7 +121,8 @@ export function buildAnalysis(
     build.reading.warn(at, text);
     return { ...settings, lineSpacingHz: widest };
   }
-  tellTooFine(build, { asked, segment, longest, widest, sampleRateHz, shown });
+  const pooled = settings.averageOver !== undefined;
+  tellTooFine(build, { asked, segment, longest, widest, sampleRateHz, shown, pooled });
   return settings;
 }
 
@@ -132,9 +135,10 @@ function tellTooFine(
     readonly widest: number;
     readonly sampleRateHz: number;
     readonly shown: string;
+    readonly pooled: boolean;
   },
 ): void {
-  const { asked, segment, longest, widest, sampleRateHz, shown } = facts;
+  const { asked, segment, longest, widest, sampleRateHz, shown, pooled } = facts;
   const needs = `needs segments of ${segment} samples (${printSeconds(segment / sampleRateHz)})`;
   const has =
     longest === longestSegmentSamples
@@ -142,7 +146,13 @@ function tellTooFine(
       : `a recording of ${shown} has ${longest}`;
   const finest = `${Number((Math.ceil(widest * 1000) / 1000).toPrecision(6))} Hz`;
   const right = reading.write(asked.at, finest);
-  reading.problem(asked.at, `line_spacing ${needs}, ${has}`, `${right}, or record for longer`, 'too fine');
+  const never = pooled ? '; average_over adds averages, never resolution' : '';
+  reading.problem(
+    asked.at,
+    `line_spacing ${needs}, ${has}${never}`,
+    `${right}, or record for longer`,
+    'too fine',
+  );
 }
 
 /** What is allowed but seldom meant: much overlap, no window, too few turns of the shaft in a segment. */

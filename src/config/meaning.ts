@@ -41,3 +41,14 @@ export function pointMeaning({ analysis, recordings }: Point): AveragingMeaning 
     ? null
     : averagingMeaning(analysis, sampleRateHz, durationS);
 }
+
+/** Recordings that are pooled in one average: 1 where each stands by itself. Of a time: as many as are expected in it. */
+export function poolSizeOf({ averageOver }: AnalysisSettings, expectedEveryMs: number): number {
+  if (averageOver === undefined) return 1;
+  return 'recordings' in averageOver ? averageOver.recordings : Math.round(averageOver.ms / expectedEveryMs);
+}
+
+/** How often a level of the point arrives: with each recording, or with each pool that is full. */
+export function levelEveryMs({ analysis, recordings }: Pick<Point, 'analysis' | 'recordings'>): number {
+  return Math.max(1, poolSizeOf(analysis, recordings.expectedEveryMs)) * recordings.expectedEveryMs;
+}

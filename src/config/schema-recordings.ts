@@ -1,10 +1,10 @@
 import { windowNames } from '../signal/window.ts';
 import { parseFilePattern, parseFilesRegex, parseStartPattern } from './file-pattern.ts';
 import { parseSampleUnit, parseSampleValue } from './level.ts';
-import { understood } from './quantity.ts';
+import { parseDelay, understood } from './quantity.ts';
 import { parseDatasetPath } from './sample-layout.ts';
 import { duration, frequency, percent } from './schema-values.ts';
-import { choice, list, plainNumber, type Shape, scalar, words } from './shape.ts';
+import { choice, list, plainNumber, ruled, type Shape, scalar, words } from './shape.ts';
 import { key, map } from './shape-map.ts';
 import { parseClock } from './time-zone.ts';
 
@@ -127,6 +127,16 @@ export const intakeKeys = {
   backlog_wait: key(duration(0, day, '15 min'), 'But never longer than this.', { fallback: '15 min' }),
 };
 
+/** One recording alone is no pool. */
+const poolSize = scalar(
+  ruled(parseDelay, (size) =>
+    'recordings' in size && size.recordings < 2
+      ? { what: 'pools nothing; leave it out, or give at least', instead: '2 recordings' }
+      : null,
+  ),
+  { example: '30 recordings' },
+);
+
 export const analysisKeys = {
   window: key(windowName, 'Window of the averaging.', { fallback: 'hann' }),
   overlap: key(percent(0, 95, '50 %'), 'Overlap of the segments.', { fallback: '50 %' }),
@@ -137,6 +147,21 @@ export const analysisKeys = {
       fallback:
         '1.6 Hz; 0.8 Hz below 1200 rpm, 0.4 Hz below 600 rpm; wider where the duration gives no such segment',
     },
+  ),
+  average_over: key(
+    poolSize,
+    'Short recordings are pooled: levels come from the average over so many, or over those of so long a time.',
+    { fallback: 'each recording by itself' },
+  ),
+  averaging: key(
+    choice(['power', 'median', 'peak-hold']),
+    'median: peaks are looked for in the median over the segments (overlap at most 50 %); peak-hold: the spectrum shown is the highest of all segments. Levels come from the power average in any case.',
+    { fallback: 'power' },
+  ),
+  detrend: key(
+    choice(['mean', 'linear']),
+    'What is taken off each segment: its mean, or its straight line where a signal drifts.',
+    { fallback: 'mean' },
   ),
   skip_start: key(
     duration(0, 600_000, '1 s'),

@@ -1,4 +1,5 @@
 import type { WindowName } from '../signal/window.ts';
+import type { AnalysisSettings } from './analysis-settings.ts';
 import type { MachineZones, SensorPlace } from './machine-zones.ts';
 import type { Part } from './parts.ts';
 import type { SampleLayout } from './sample-layout.ts';
@@ -34,7 +35,7 @@ export interface DisplayUnit extends SampleUnit {
   readonly detector: Detector;
 }
 
-export type { WindowName };
+export type { AnalysisSettings, WindowName };
 
 export interface Site {
   readonly name: string;
@@ -164,17 +165,6 @@ export interface RecordingSettings {
   readonly sidecar: 'none' | 'optional' | 'expected';
   /** Left out: nothing is said of it. */
   readonly layout?: SampleLayout;
-}
-
-export interface AnalysisSettings {
-  readonly window: WindowName;
-  readonly overlapPercent: number;
-  readonly lineSpacingHz: number;
-  /** Set instead of the line spacing for one-off analysis. */
-  readonly segmentSamples: number | null;
-  readonly skipStartS: number;
-  readonly confidencePercent: number;
-  readonly falsePeaksPerSpectrum: number;
 }
 
 export interface Band {
