@@ -106,8 +106,9 @@ export function bandZone(
 const spoilt = ['flat', 'dropouts', 'hum-only', 'low-signal', 'bias-out-of-range', 'ski-slope'];
 
 function notSteady({ state, flags }: Pick<ZoneReading, 'state' | 'flags'>): string | null {
-  if (state === 'stopped') return 'the machine stood still';
-  if (state === 'transient') return 'the machine had been started a short while before';
+  if (state === 'stopped' || flags.includes('not-running')) return 'the machine stood still';
+  if (state === 'transient' || flags.includes('transient'))
+    return 'the machine had been started a short while before';
   if (flags.includes('unsteady')) return 'the vibration changed within the recording';
   const flag = spoilt.find((one) => flags.includes(one));
   return flag === undefined ? null : `the recording is flagged ${flag}`;

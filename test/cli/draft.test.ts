@@ -177,12 +177,51 @@ describe('draft', () => {
     const path = join(folder, 'site.yaml');
     const hinted = text
       .replace(/^( *)# (?=( *)(- )?[a-z_]+:)/gm, '$1')
-      .replace(/running_speed: 1480 rpm/g, 'running_speed: 2970 rpm');
+      .replace(/running_speed: 1480 rpm/g, 'running_speed: 2970 rpm')
+      .replace(/^( *power:) /gm, '$1 110 kW ')
+      .replace(/^( *support:) /gm, '$1 rigid ');
     const loaded = loadSite(hinted, path);
     if (!loaded.ok) throw new Error(JSON.stringify(loaded.problems));
     expect(loaded.site.mail?.to).toHaveLength(1);
     for (const point of loaded.site.machines.flatMap((machine) => machine.points))
       expect(point.limits.length, pointPath(point)).toBe(point.bands.length);
+  });
+
+  it('proposes zones where a band could be judged, and leaves open what only a plate says', async () => {
+    const folder = newFolder();
+    for (const hours of [0, 1]) {
+      drop(folder, `blower-1_${stamp(hours)}.wav`, wav(1, 25_600, 2));
+      drop(folder, `pump-2_${stamp(hours)}.wav`, wav(1, 25_600, 2));
+      drop(folder, `slow-3_${stamp(hours)}.wav`, wav(1, 320, 20));
+    }
+    const { text } = await drafted(folder);
+    const machines = text.split(/^ {2}- id: /m).slice(1);
+    const hintsOf = (id: string) =>
+      machines
+        .find((one) => one.startsWith(id))
+        ?.match(/^ {4}# {1,3}(zones|standard|category|power|support):.*$/gm);
+    expect(hintsOf('blower-1')?.map((hint) => hint.replace(/(?<=\S) {2,}# .*/, ''))).toEqual([
+      '    # zones:',
+      '    #   standard: iso-20816-3',
+      '    #   power:',
+      '    #   support:',
+    ]);
+    expect(hintsOf('blower-1')?.[0]).toMatch(/# please confirm/);
+    expect(hintsOf('pump-2')?.map((hint) => hint.replace(/(?<=\S) {2,}# .*/, ''))).toEqual([
+      '    # zones:',
+      '    #   standard: iso-10816-7',
+      '    #   category:',
+      '    #   power:',
+    ]);
+    expect(hintsOf('slow-3')).toBeNull();
+    const open = text.replace(/^( {4})# (?=zones:| {2}(standard|power|support|category):)/gm, '$1');
+    const loaded = loadSite(open, join(folder, 'site.yaml'));
+    expect(loaded.ok ? [] : loaded.problems.map(({ what }) => what)).toEqual([
+      'power has no value',
+      'support has no value',
+      'category has no value',
+      'power has no value',
+    ]);
   });
 
   it('never overwrites, and says why it cannot write', async () => {

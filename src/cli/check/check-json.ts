@@ -1,10 +1,12 @@
 import { shareOfAlert } from '../../advisory/ranking.ts';
-import type { Limit } from '../../config/site.ts';
+import { type MachineZones, zonesName } from '../../config/machine-zones.ts';
+import type { Limit, Machine } from '../../config/site.ts';
 import { limitFacts } from '../../service/fact-names.ts';
-import { levelJson, limitJson } from '../level-json.ts';
+import { bareUnit, levelJson, limitJson } from '../level-json.ts';
 import { adviceJson, reachJson } from '../recording-plan/plan-json.ts';
 import { type BandCheck, canAlarm, type LevelNow, type PointCheck } from './point-check.ts';
 import type { SiteCheck } from './site-check.ts';
+import { type ZoneCheck, zoneCheck } from './zone-check.ts';
 
 /** The same for programs: full precision, display units. */
 export function checkJson(check: SiteCheck): Record<string, unknown> {
@@ -19,7 +21,10 @@ export function checkJson(check: SiteCheck): Record<string, unknown> {
     machines: site.machines.map((machine) => ({
       machine: machine.id,
       name: machine.name,
-      points: check.points.filter(({ point }) => point.machineId === machine.id).map(pointJson),
+      zones: zonesJson(machine.zones ?? null),
+      points: check.points
+        .filter(({ point }) => point.machineId === machine.id)
+        .map((one) => pointJson(machine, one)),
     })),
     warnings: [
       ...check.remarks.map((text) => ({ line: null, column: null, text })),
@@ -37,7 +42,8 @@ export function checkJson(check: SiteCheck): Record<string, unknown> {
   };
 }
 
-function pointJson(check: PointCheck) {
+function pointJson(machine: Machine, check: PointCheck) {
+  const zones = zoneCheck(machine, check);
   const { point, waiting, ledger, averaging, usedMs } = check;
   const iso = (ms: number | null) => (ms === null ? null : new Date(ms).toISOString());
   return {
@@ -64,7 +70,7 @@ function pointJson(check: PointCheck) {
     },
     shows: check.advice && reachJson(check.advice.reach, []),
     cannot_show: check.advice === null ? [] : check.advice.cannot.map(adviceJson),
-    bands: check.bands.map(bandJson),
+    bands: check.bands.map((band) => ({ ...bandJson(band), zone: zoneJson(zones, band) })),
     quality: check.quality.map(({ flag, detail }) => ({ flag, detail })),
   };
 }
@@ -80,13 +86,44 @@ function bandJson({ band, now, limits, judged }: BandCheck) {
     },
     limits: limits.map((limit) => ({
       limit: limit.id,
+      kind: limit.kind,
       side: limit.side,
       alert: limitJson(limit.alert, band.display),
       danger: limitJson(limit.danger, band.display),
+      alert_because: limit.reasons?.alert ?? null,
+      danger_because: limit.reasons?.danger ?? null,
       share_of_alert: shareOf(limit, limit.alert, judged ? now : null),
       share_of_danger: shareOf(limit, limit.danger, judged ? now : null),
     })),
   };
+}
+
+function zonesJson(zones: MachineZones | null) {
+  return (
+    zones && {
+      standard: zones.standard,
+      table: zonesName(zones),
+      outside: zones.outside,
+      boundaries: zones.boundaries.map(({ quantity, display, ab, bc, cd, known, source }) => ({
+        quantity,
+        unit: bareUnit(display),
+        detector: display.detector,
+        a_b: limitJson(ab, display),
+        b_c: limitJson(bc, display),
+        c_d: limitJson(cd, display),
+        from_memory: known === 'memory',
+        source,
+      })),
+    }
+  );
+}
+
+/** Null where the machine has no zones, or the band is of nothing that a table judges. */
+function zoneJson(check: ZoneCheck | null, { band }: BandCheck) {
+  const answer = check?.bands.get(band.id);
+  if (answer === undefined) return null;
+  if (answer.letter === null) return { zone: null, why: answer.why, at_least: false };
+  return { zone: answer.letter, why: null, at_least: answer.atLeast };
 }
 
 /** 1 at the limit; null without a level or a limit, or beyond all numbers. */

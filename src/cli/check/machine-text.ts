@@ -14,6 +14,7 @@ import { lineWidth, listing, type Row, table, wrapText } from '../output.ts';
 import { timeText } from '../when.ts';
 import { type BandCheck, canAlarm, type LevelNow, type PointCheck } from './point-check.ts';
 import { showsText } from './recording-advice.ts';
+import { machineZoneText, pointZoneTexts, tableText, zoneCheck } from './zone-check.ts';
 
 /**
  * A machine's points with their levels, shares of the limits, files, and what is doubtful. `averagingElsewhere`: it is
@@ -35,7 +36,7 @@ export function machineText(
     `${wrapText(plain(`${id}: ${facts.join(', ')}`), lineWidth).join('\n')}\n`,
     indented(levelTable(points)),
     indented(filesTable(points, how.timeZone)),
-    notes(points, how.averagingElsewhere),
+    notes(machine, points, how.averagingElsewhere),
   ].join('');
 }
 
@@ -123,13 +124,14 @@ function filesTable(points: readonly PointCheck[], timeZone: string): string {
 }
 
 /** Averaging once for points that share it, then what is doubtful or missing, point by point. */
-function notes(points: readonly PointCheck[], averagingElsewhere: boolean): string {
+function notes(machine: Machine, points: readonly PointCheck[], averagingElsewhere: boolean): string {
   const averaging = [...byText('averaging', points, averagingText), ...byText('shows', points, showsOf)];
   const remarks = points.flatMap((one): Remark[] => {
     const { id } = one.point;
     return [
       ...(one.remark === null ? [] : [{ id, title: 'levels', text: one.remark }]),
       ...one.quality.map(({ flag, detail }) => ({ id, title: 'quality', text: `${flag}: ${detail}` })),
+      ...zoneRemarks(machine, one),
       ...(canAlarm(one) ? [] : [{ id, title: 'limits', text: 'no limit: this point can never alarm' }]),
     ];
   });
@@ -137,7 +139,7 @@ function notes(points: readonly PointCheck[], averagingElsewhere: boolean): stri
     const [{ title, text }] = same as [Remark];
     return [title, `${same.map(({ id }) => id).join(', ')}: ${text}`];
   });
-  const entries = [...(averagingElsewhere ? [] : averaging), ...told];
+  const entries = [...(averagingElsewhere ? [] : averaging), ...machineZones(machine, points), ...told];
   return entries.length === 0 ? '' : `\n${listing(entries, '  ')}`;
 }
 
@@ -156,6 +158,37 @@ function byText(
 /** Empty where nothing is known of the recordings. */
 export function showsOf({ advice }: PointCheck): string {
   return advice === null ? '' : showsText(advice);
+}
+
+/** The table in force, and the zone in which the machine is. */
+function machineZones(machine: Machine, points: readonly PointCheck[]): [string, string][] {
+  const zones = machine.zones ?? null;
+  if (zones === null) return [];
+  const now = machineZoneText(
+    machine,
+    points.flatMap((one) => zoneCheck(machine, one) ?? []),
+  );
+  return [
+    ['zones', tableText(machine, zones)],
+    ...(now === null ? [] : [['zone now', now] as [string, string]]),
+  ];
+}
+
+/** Each point's zone, and where its limits come from that are not the site's own numbers. */
+function zoneRemarks(machine: Machine, one: PointCheck): Remark[] {
+  const { id, limits } = one.point;
+  const check = zoneCheck(machine, one);
+  const texts = check === null ? [] : pointZoneTexts(machine, one.point, check);
+  const reasons = limits.flatMap((limit) =>
+    (['alert', 'danger'] as const).flatMap((severity) => {
+      const why = limit.reasons?.[severity] ?? null;
+      return why === null ? [] : [`${limit.bandId}, ${severity} at ${why}`];
+    }),
+  );
+  return [
+    ...texts.map((text) => ({ id, title: 'zone', text })),
+    ...reasons.map((text) => ({ id, title: 'limits', text })),
+  ];
 }
 
 interface Remark {

@@ -10,7 +10,7 @@ import {
 import { printFrequency } from '../../config/print-value.ts';
 import type { Band, Machine, Point } from '../../config/site.ts';
 import { bandThatWouldDo } from '../../config/zone-limits.ts';
-import type { LevelNow } from './point-check.ts';
+import type { PointCheck } from './point-check.ts';
 
 /** The zone of a point's newest levels, band by band. */
 export interface ZoneCheck {
@@ -19,25 +19,24 @@ export interface ZoneCheck {
   readonly bands: ReadonlyMap<string, ZoneAnswer>;
 }
 
-/** What the newest recording was: how the machine ran, how fast, what is doubtful about it. */
-export type RecordingState = Pick<ZoneReading, 'state' | 'speedRpm' | 'flags'>;
-
-/** Null where the machine has no zones. `levels` by band id. */
-export function zoneCheck(
-  machine: Machine,
-  point: Point,
-  levels: ReadonlyMap<string, LevelNow>,
-  recording: RecordingState,
-): ZoneCheck | null {
+/** Null where the machine has no zones. */
+export function zoneCheck(machine: Machine, check: PointCheck): ZoneCheck | null {
   const { zones = null, runningSpeedHz } = machine;
   if (zones === null) return null;
+  const { point, ledger, from } = check;
   const nominalRpm = runningSpeedHz === null ? null : runningSpeedHz * 60;
-  const speedRpm = recording.speedRpm ?? nominalRpm;
-  const measured = point.bands.flatMap((band) => {
-    const now = levels.get(band.id);
-    return now === undefined ? [] : [{ bandId: band.id, ...edgesOf(band, speedRpm), ...now }];
-  });
-  const reading: ZoneReading = { ...recording, speedRpm, point, levels: measured };
+  const measuredRpm = from === 'ledger' ? (ledger?.measurement?.speed?.rpm ?? null) : null;
+  const speedRpm = measuredRpm ?? nominalRpm;
+  const measured = check.bands.flatMap(({ band, now }) =>
+    now === null ? [] : [{ bandId: band.id, ...edgesOf(band, speedRpm), ...now }],
+  );
+  const reading: ZoneReading = {
+    point,
+    state: check.bands.some(({ judged }) => !judged) ? 'stopped' : 'running',
+    speedRpm,
+    levels: measured,
+    flags: check.quality.map(({ flag }) => flag),
+  };
   const bands = new Map<string, ZoneAnswer>();
   for (const band of point.bands) {
     if (band.quantity !== 'velocity' && band.quantity !== 'displacement') continue;

@@ -4,6 +4,7 @@ import type { DraftMachine, DraftPoint, DraftSite, SettingKey, Settings } from '
 import { settingKeys } from './plan.ts';
 import { layerSettings, type Shared } from './shared-settings.ts';
 import { blank, line, type YamlLine, yamlText } from './yaml-lines.ts';
+import { zonesHint } from './zones-hint.ts';
 
 /** What the site file says beside machines and recordings. */
 export interface DraftFrame {
@@ -177,6 +178,7 @@ function machineLines(
     line(4, '# name: As people call it'),
     line(4, '# running_speed: 1480 rpm', 'see its plate; gives orders and finer lines'),
     ...(type === undefined ? [] : [line(4, `type: ${type.id}`)]),
+    ...zonesHint(machine),
     ...recordingLines(common, left, 4),
     line(4, 'points:'),
     ...machine.points.flatMap((point, index) => [

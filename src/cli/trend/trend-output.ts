@@ -7,6 +7,7 @@ import type { BandTrend, TrendRow } from '../../service/trend-of-band.ts';
 import { bareUnit, levelJson, limitJson } from '../level-json.ts';
 import { csvLine, lineWidth, type Row, table } from '../output.ts';
 import { timeText } from '../when.ts';
+import { type TrendZones, trendZones } from './trend-zones.ts';
 
 /** A band's trend with what it belongs to. */
 export interface ShownTrend {
@@ -110,9 +111,11 @@ export function trendText(shown: ShownTrend): string {
   const { site, point, band, trend } = shown;
   const { display } = band;
   const limits = limitsOf(shown).map((limit) => limitLine(limit, band));
+  const zones = trendZones(shown);
   const head = [
     `${pointPath(point)} ${band.id}, ${unitText(display)}; times of ${site.timeZone}`,
     ...(limits.length === 0 ? ['no limit: this band can never alarm'] : limits),
+    ...(zones === null ? [] : [zones.headline]),
   ];
   const lines = head.map((line) => `${plain(line)}\n`);
   if (trend.rows.length === 0) return `${lines.join('')}no level in this time\n`;
@@ -122,6 +125,7 @@ export function trendText(shown: ShownTrend): string {
     { title: 'level', right: true },
     { title: `interval${confidence == null ? '' : ` (${printNumber(confidence)} %)`}` },
     { title: 'limit' },
+    ...(zones === null ? [] : [{ title: 'zone' }]),
     { title: 'remarks', wraps: true },
   ];
   return [
@@ -130,7 +134,7 @@ export function trendText(shown: ShownTrend): string {
       ? [`the newest ${trend.rows.length}; --since shows older ones, --csv and --json all\n`]
       : []),
     '\n',
-    table(columns, rowsOf(shown), lineWidth, 0),
+    table(columns, rowsOf(shown, zones), lineWidth, 0),
   ].join('');
 }
 
@@ -144,7 +148,7 @@ function limitLine(limit: Limit, band: Band): string {
   return `${parts.join(', ')} (${limit.id})`;
 }
 
-function rowsOf(shown: ShownTrend): Row[] {
+function rowsOf(shown: ShownTrend, zones: TrendZones | null): Row[] {
   const { site, band, trend } = shown;
   const limits = limitsOf(shown);
   return trend.rows.flatMap((row) => {
@@ -154,6 +158,7 @@ function rowsOf(shown: ShownTrend): Row[] {
       `${row.atLeast ? '>= ' : ''}${bareLevel(row.level, band.display)}`,
       `${bareLevel(row.intervalLow, band.display)} to ${bareLevel(row.intervalHigh, band.display)}`,
       passedText(row, limits),
+      ...(zones === null ? [] : [zones.letterOf(row)]),
       remarksOf(row),
     ];
     return [...series, cells];
