@@ -1,5 +1,7 @@
 import { type AveragedDensity, Averager, type AveragingSettings } from '../signal/averaging.ts';
 import { bandPower } from '../signal/band-level.ts';
+import { MedianAverage, type MedianDensity, medianStride } from '../signal/median-average.ts';
+import { PeakHold } from '../signal/peak-hold.ts';
 import { SegmentSpectra } from '../signal/segment-spectra.ts';
 import { Waveform, type WaveformValues } from '../signal/waveform.ts';
 import type { LaidBand } from './point-bands.ts';
@@ -10,6 +12,8 @@ export interface StretchSettings {
   readonly averaging: AveragingSettings | null;
   /** Bands that lie where they lie whatever the running speed is. */
   readonly bands: readonly LaidBand[];
+  /** What else is made of the segments besides their mean. */
+  readonly besides?: 'median' | 'peak-hold' | undefined;
 }
 
 /** What one unbroken stretch of samples gave. */
@@ -22,6 +26,10 @@ export interface StretchResult {
   readonly segmentPowers: readonly (readonly number[])[];
   /** Densities of segments or groups of them; null where there is no density. */
   readonly segments: SegmentSpectra | null;
+  /** Null where it was not asked for, or there is no density. */
+  readonly median: MedianDensity | null;
+  /** The highest that any segment had, as `density`; null likewise. */
+  readonly highest: Float64Array | null;
 }
 
 /** Memory for single segments' densities; long segments are grouped sooner. */
@@ -41,13 +49,17 @@ export class CleanStretch {
   readonly #bands: readonly LaidBand[];
   readonly #waveform = new Waveform();
   readonly #segmentPowers: number[][];
+  readonly #besides: StretchSettings['besides'];
   #waiting: Float64Array[] = [];
   #averager: Averager | null = null;
   #segments: SegmentSpectra | null = null;
+  #median: MedianAverage | null = null;
+  #hold: PeakHold | null = null;
   samples = 0;
 
-  constructor({ averaging, bands }: StretchSettings) {
+  constructor({ averaging, bands, besides }: StretchSettings) {
     this.#settings = averaging;
+    this.#besides = besides;
     this.#bands = bands;
     this.#segmentPowers = bands.map(() => []);
   }
@@ -64,8 +76,16 @@ export class CleanStretch {
     }
     this.#waiting.push(samples.slice());
     if (this.samples < this.#settings.segmentSamples) return;
-    this.#segments = segmentSpectra(this.#settings.segmentSamples / 2 + 1);
+    const { window, segmentSamples } = this.#settings;
+    const lines = segmentSamples / 2 + 1;
+    this.#segments = segmentSpectra(lines);
     this.#averager = new Averager(this.#settings, (density) => this.#visit(density));
+    if (this.#besides === 'median') {
+      const stride = medianStride(window, segmentSamples, this.#averager.hopSamples);
+      this.#median = new MedianAverage(lines, stride);
+    } else if (this.#besides === 'peak-hold') {
+      this.#hold = new PeakHold(lines);
+    }
     for (const block of this.#waiting) this.#averager.add(block);
     this.#waiting = [];
   }
@@ -77,11 +97,15 @@ export class CleanStretch {
       density: this.#averager?.finish() ?? null,
       segmentPowers: this.#segmentPowers,
       segments: this.#segments,
+      median: this.#median?.finish() ?? null,
+      highest: this.#hold?.finish() ?? null,
     };
   }
 
   #visit(density: Float64Array): void {
     this.#segments?.add(density);
+    this.#median?.add(density);
+    this.#hold?.add(density);
     for (const [n, { weights }] of this.#bands.entries()) {
       this.#segmentPowers[n].push(bandPower(density, weights));
     }

@@ -16,7 +16,8 @@ export interface FingerprintSettings {
 /**
  * Identity of a band's series: equal as long as its numbers may be compared. Moved by window, segment, overlap, the
  * band's edges as configured, integration, the way from sample to SI, skipped start, sample rate and algorithm; not by
- * the recording's length, other bands, limits, names, speed or the unit in which people see it.
+ * the recording's length, other bands, limits, names, speed or the unit in which people see it. Recordings that are
+ * pooled count as a longer one: they steady the level and do not move it, so the series goes on.
  */
 export function seriesFingerprint(settings: FingerprintSettings, band: Band): string {
   return hash([...common(settings), 'band', band.quantity, band.from, band.to, band.inOrders]);
@@ -30,6 +31,8 @@ export function settingsFingerprint(settings: FingerprintSettings, bands: readon
     'point',
     analysis.confidencePercent,
     analysis.falsePeaksPerSpectrum,
+    ...(analysis.averaging === undefined ? [] : [analysis.averaging]),
+    ...(analysis.averageOver === undefined ? [] : ['pool', analysis.averageOver]),
     ...bands.flatMap((band) => [band.quantity, band.from, band.to, band.inOrders]),
   ]);
 }
@@ -40,7 +43,7 @@ function common({ point, signal, sampleRateHz, segmentSamples }: FingerprintSett
     'algorithm',
     algorithmVersion,
     'detrending',
-    'mean of each segment',
+    analysis.detrend === 'linear' ? 'straight line of each segment' : 'mean of each segment',
     'averaging',
     'power',
     analysis.window,

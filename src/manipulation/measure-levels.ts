@@ -5,6 +5,7 @@ import type { BandWeights } from '../signal/band-level.ts';
 import { Kept } from '../signal/kept.ts';
 import { effectiveAverages } from '../signal/overlap.ts';
 import { findPeaks, type Peak, type PeakSearch, type PeakSettings } from '../signal/peaks.ts';
+import { type Segments, segmentsKey } from '../signal/pooled-segments.ts';
 import type { SegmentSpectra } from '../signal/segment-spectra.ts';
 import { steadiness } from '../signal/steadiness.ts';
 import { type FingerprintSettings, seriesFingerprint } from './fingerprint.ts';
@@ -18,13 +19,19 @@ export interface SearchedDensity {
   readonly search: PeakSearch;
 }
 
+/** `averages`: the segments of each recording where several are pooled. */
 export function searchPeaks(
   density: AveragedDensity,
   { window, segmentSamples, sampleRateHz }: AveragingSettings,
-  falsePeaksPerSpectrum: number,
+  {
+    falsePeaksPerSpectrum,
+    averages = density.averages,
+    searchIn,
+  }: Pick<PeakSettings, 'falsePeaksPerSpectrum' | 'searchIn'> & { readonly averages?: Segments },
 ): SearchedDensity {
-  const { hopSamples, averages } = density;
-  const settings = { window, segmentSamples, hopSamples, averages, sampleRateHz, falsePeaksPerSpectrum };
+  const { hopSamples } = density;
+  const shape = { window, segmentSamples, hopSamples, averages, sampleRateHz };
+  const settings = { ...shape, falsePeaksPerSpectrum, ...(searchIn === undefined ? {} : { searchIn }) };
   return { density, settings, search: findPeaks(density.density, settings) };
 }
 
@@ -73,7 +80,7 @@ export function levelsOf(question: LevelQuestion): MeasuredLevels {
   const { density, settings, search } = searched;
   const { window, segmentSamples, overlapPercent } = averaging;
   const { averages, hopSamples } = density;
-  const { kernel, effective } = averagesOf(averaging, hopSamples, averages);
+  const { kernel, effective } = averagesOf(averaging, hopSamples, settings.averages);
   const { peaks } = search;
   const steady = question.segments && steadiness(question.segments, search, settings);
   const tones = peaks.filter((peak) => peak.kind === 'tone');
@@ -148,9 +155,9 @@ const kept = new Kept<string, KnownAverages>(32);
 /** The window's correlation depends on the hop as a share of the segment; a long segment is stood for by this one. */
 const standInSamples = 4096;
 
-function averagesOf(settings: AveragingSettings, hopSamples: number, averages: number): KnownAverages {
+function averagesOf(settings: AveragingSettings, hopSamples: number, averages: Segments): KnownAverages {
   const { window, segmentSamples } = settings;
-  return kept.get(`${window} ${segmentSamples} ${hopSamples} ${averages}`, () => {
+  return kept.get(`${window} ${segmentSamples} ${hopSamples} ${segmentsKey(averages)}`, () => {
     const scale = Math.max(1, segmentSamples / standInSamples);
     const shortHop = Math.max(1, Math.round(hopSamples / scale));
     return {

@@ -1,9 +1,7 @@
 import type { QualityFinding, SamplesEnd, Sidecar } from '../acquisition/recording.ts';
-import { longestSegmentSamples, segmentOf } from '../config/meaning.ts';
 import type { Point, SignalSettings } from '../config/site.ts';
 import { siUnit } from '../config/units.ts';
 import type { AveragedDensity, AveragingSettings } from '../signal/averaging.ts';
-import type { LineGrid } from '../signal/band-level.ts';
 import { CleanStretch, type StretchResult } from './clean-stretch.ts';
 import { settingsFingerprint } from './fingerprint.ts';
 import { measureFindings, unevenStepRatio } from './measure-findings.ts';
@@ -15,7 +13,8 @@ import {
   type SearchedDensity,
   searchPeaks,
 } from './measure-levels.ts';
-import type { MeasuredSpeed, Measurement, WaveformValues } from './measurement.ts';
+import type { MeasuredSpeed, Measurement, Spectrum, WaveformValues } from './measurement.ts';
+import { averagingOf, gridOf } from './point-averaging.ts';
 import { type LaidBands, layFixedBands, layOrderBands, lowestVelocityHz } from './point-bands.ts';
 
 /** Looks at the samples as the file holds them, and at what was made of them. */
@@ -73,8 +72,8 @@ export class Measurer {
   constructor(settings: MeasureSettings) {
     this.#settings = settings;
     const { point, sampleRateHz } = settings;
-    this.#averaging = averagingOf(settings);
-    const grid = gridOf(this.#averaging);
+    this.#averaging = averagingOf(point, sampleRateHz);
+    const grid = this.#averaging && gridOf(this.#averaging);
     this.#fixed = grid === null ? noBands : layFixedBands(point, grid);
     // A quantity that a band in orders cannot have is refused before a sample is read, like any other.
     if (grid !== null) layOrderBands(point, grid, null);
@@ -111,10 +110,14 @@ export class Measurer {
     const isUneven = timeStepDeviation !== null && timeStepDeviation > unevenStepRatio;
     const density = isUneven ? null : (this.#longest?.density ?? null);
     const { falsePeaksPerSpectrum } = this.#settings.point.analysis;
+    const median = this.#longest?.median ?? null;
     const searched =
       density === null || this.#averaging === null
         ? null
-        : searchPeaks(density, this.#averaging, falsePeaksPerSpectrum);
+        : searchPeaks(density, this.#averaging, {
+            falsePeaksPerSpectrum,
+            ...(median === null ? {} : { searchIn: median }),
+          });
     this.#ended = { timeStepDeviation, searched };
     return searched;
   }
@@ -132,7 +135,7 @@ export class Measurer {
     const spectrum = searched?.density ?? null;
     const machine = { speedHz, lowestVelocityHz: lowestVelocityHz(point, speedHz) };
     const found = check?.finish(spectrum, machine) ?? [];
-    const grid = gridOf(this.#averaging);
+    const grid = this.#averaging && gridOf(this.#averaging);
     const orders = grid === null ? noBands : layOrderBands(point, grid, speedHz);
     const levels = searched && this.#levels(searched, orders, speedHz, found);
     if (spectrum !== null) onDensity(spectrum.density);
@@ -160,12 +163,10 @@ export class Measurer {
       averaging: levels?.averaging ?? null,
       levels: levels?.levels ?? [],
       peaks: levels?.peaks ?? [],
-      spectrum: spectrum && {
-        lineSpacingHz: spectrum.lineSpacingHz,
-        density: Float32Array.from(spectrum.density),
-      },
+      spectrum: spectrum && shownSpectrum(spectrum, result?.highest ?? null),
       quality: [...found, ...own],
       settingsFingerprint: settingsFingerprint(this.#fingerprintSettings(), point.bands),
+      ...this.#share(spectrum),
     };
   }
 
@@ -196,6 +197,12 @@ export class Measurer {
     });
   }
 
+  #share(density: AveragedDensity | null): Pick<Measurement, 'share'> {
+    if (density === null || this.#averaging === null) return {};
+    const { averageOver } = this.#settings.point.analysis;
+    return averageOver === undefined ? {} : { share: { averaging: this.#averaging, density } };
+  }
+
   #fingerprintSettings() {
     const { point, signal, sampleRateHz } = this.#settings;
     const segmentSamples = this.#averaging?.segmentSamples ?? 0;
@@ -203,7 +210,8 @@ export class Measurer {
   }
 
   #newStretch(): CleanStretch {
-    return new CleanStretch({ averaging: this.#averaging, bands: this.#fixed.laid });
+    const besides = this.#settings.point.analysis.averaging;
+    return new CleanStretch({ averaging: this.#averaging, bands: this.#fixed.laid, besides });
   }
 
   /** Keeps the longest stretch; the first of two equal ones. */
@@ -222,18 +230,11 @@ interface Ended {
 
 const noBands: LaidBands = { laid: [], unlaid: [] };
 
-function gridOf(averaging: AveragingSettings | null): LineGrid | null {
-  if (averaging === null) return null;
-  const { sampleRateHz, segmentSamples } = averaging;
-  return { lineSpacingHz: sampleRateHz / segmentSamples, lines: segmentSamples / 2 + 1 };
-}
-
-function averagingOf({ point, sampleRateHz }: MeasureSettings): AveragingSettings | null {
-  if (sampleRateHz === null) return null;
-  const segmentSamples = segmentOf(point.analysis, sampleRateHz);
-  if (segmentSamples < 8 || segmentSamples > longestSegmentSamples) return null;
-  const { window, overlapPercent } = point.analysis;
-  return { window, overlapPercent, segmentSamples, sampleRateHz };
+/** What people are shown, in single precision: the mean of the segments, or the highest of them. */
+function shownSpectrum(mean: AveragedDensity, highest: Float64Array | null): Spectrum {
+  const { lineSpacingHz } = mean;
+  if (highest === null) return { lineSpacingHz, density: Float32Array.from(mean.density) };
+  return { lineSpacingHz, density: Float32Array.from(highest), averaging: 'peak-hold' };
 }
 
 /** A flat signal has no shape: crest factor, kurtosis and skewness are given as 0, so that no NaN is stored. */

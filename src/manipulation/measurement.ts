@@ -1,5 +1,6 @@
 import type { QualityFinding } from '../acquisition/recording.ts';
 import type { Quantity } from '../config/site.ts';
+import type { AveragedDensity, AveragingSettings } from '../signal/averaging.ts';
 
 /**
  * What one recording says of one measuring point. Levels are r.m.s. in the SI unit of their quantity
@@ -29,6 +30,14 @@ export interface Measurement {
   readonly quality: readonly QualityFinding[];
   /** Hash of everything that moves any number of this measurement (settings of the whole point). */
   readonly settingsFingerprint: string;
+  /** What it brings into the average over several recordings; left out where its point does not pool. */
+  readonly share?: PoolShare;
+}
+
+/** The mean density of a recording's segments, (SI unit)²/Hz in full precision, for an average over several recordings. */
+export interface PoolShare {
+  readonly averaging: AveragingSettings;
+  readonly density: AveragedDensity;
 }
 
 /** Where a running speed comes from; best first. */
@@ -73,7 +82,10 @@ export interface Averaging {
   readonly overlapPercent: number;
   readonly segmentSamples: number;
   readonly lineSpacingHz: number;
+  /** Segments, of all recordings where several are pooled. */
   readonly averages: number;
+  /** Recordings that were pooled; left out: the one. */
+  readonly recordings?: number;
   readonly effectiveAverages: number;
   readonly usedPercent: number;
   /** Larger of the two steadiness figures as a ratio to its flag's threshold; null below four averages. */
@@ -110,4 +122,6 @@ export interface SpectralPeak {
 export interface Spectrum {
   readonly lineSpacingHz: number;
   readonly density: Float32Array;
+  /** The highest that any segment had, for eyes only; left out: the mean of the segments. */
+  readonly averaging?: 'peak-hold';
 }

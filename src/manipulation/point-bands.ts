@@ -1,6 +1,7 @@
 import type { Band, Point } from '../config/site.ts';
 import { type BandWeights, bandWeights, type LineGrid } from '../signal/band-level.ts';
 import { integrationsBetween } from '../signal/integration.ts';
+import { leastBandLines } from '../signal/window.ts';
 
 /** A band of a point laid onto the lines of a spectrum. */
 export interface LaidBand {
@@ -22,8 +23,11 @@ export interface LaidBands {
   readonly unlaid: readonly UnlaidBand[];
 }
 
+/** What laying bands asks of a point. */
+export type BandedPoint = Pick<Point, 'quantity' | 'bands'> & Partial<Pick<Point, 'analysis'>>;
+
 /** Lays those of the point's bands that are in Hz onto the lines. Throws like `layBands`. */
-export function layFixedBands(point: Pick<Point, 'quantity' | 'bands'>, grid: LineGrid): LaidBands {
+export function layFixedBands(point: BandedPoint, grid: LineGrid): LaidBands {
   return layBands(point, grid, null, (band) => !band.inOrders);
 }
 
@@ -31,11 +35,7 @@ export function layFixedBands(point: Pick<Point, 'quantity' | 'bands'>, grid: Li
  * Lays the point's bands in orders of the running speed (Hz; null or 0: unknown or at a standstill) onto the lines.
  * Throws like `layBands`.
  */
-export function layOrderBands(
-  point: Pick<Point, 'quantity' | 'bands'>,
-  grid: LineGrid,
-  speedHz: number | null,
-): LaidBands {
+export function layOrderBands(point: BandedPoint, grid: LineGrid, speedHz: number | null): LaidBands {
   return layBands(point, grid, speedHz, (band) => band.inOrders);
 }
 
@@ -49,7 +49,7 @@ export function lowestVelocityHz({ bands }: Pick<Point, 'bands'>, speedHz: numbe
 
 /** Throws where a band's quantity cannot be had from the point's, which the site file's check refuses. */
 function layBands(
-  point: Pick<Point, 'quantity' | 'bands'>,
+  point: BandedPoint,
   grid: LineGrid,
   speedHz: number | null,
   wanted: (band: Band) => boolean,
@@ -69,6 +69,11 @@ function layBands(
     }
     const perUnit = band.inOrders ? (speedHz as number) : 1;
     const [fromHz, toHz] = [band.from * perUnit, band.to * perUnit];
+    const tooLow = tooLowForPool(point, fromHz, grid);
+    if (tooLow !== null) {
+      unlaid.push({ band, flag: 'too-short', reason: `no level of band ${band.id}: ${tooLow}` });
+      continue;
+    }
     const weights = bandWeights(fromHz, toHz, grid, integrations);
     if ('refused' in weights) {
       const flag = weights.refused === 'empty' ? 'too-short' : 'wrong-rate';
@@ -78,4 +83,16 @@ function layBands(
     }
   }
   return { laid, unlaid };
+}
+
+/** Pooling adds averages, never resolution: where a band of pooled bursts begins too few lines above 0, why. */
+function tooLowForPool(
+  { analysis }: BandedPoint,
+  fromHz: number,
+  { lineSpacingHz }: LineGrid,
+): string | null {
+  if (analysis?.averageOver === undefined) return null;
+  const least = leastBandLines(analysis.window);
+  if (fromHz >= least * lineSpacingHz * (1 - 1e-9)) return null;
+  return `it begins at ${fromHz} Hz, fewer than ${least} lines of ${lineSpacingHz} Hz above 0, which no pooling mends; begin it higher or record longer`;
 }
