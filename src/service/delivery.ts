@@ -38,7 +38,7 @@ export async function keepAnswer(tools: MailTools, { due, answer, next, triedMs 
     const stored = await storeAnswer(writer, due.delivery.mailId, { ...next, triedMs });
     if (!stored) return;
     if (next.state === 'failed') await noteRefused(writer, tools.view(), due, answer.answer, triedMs);
-    if (next.state === 'accepted') await noteAccepted(writer, tools.view(), triedMs);
+    if (next.state === 'accepted') await noteAccepted(writer, tools.view(), due.delivery.recipient, triedMs);
   });
   tools.step('delivery: answer stored');
 }

@@ -59,34 +59,47 @@ export async function noteRefused(
 }
 
 /**
- * Part of the transaction that stores an acceptance. Where it ends the trouble, the mails refused meanwhile about what
- * still stands are due again: nobody may have heard of it.
+ * Part of the transaction that stores an acceptance. Mails to that recipient that were refused meanwhile about what
+ * still stands are due again, whether or not others are still refused: he may not have heard of it.
  */
-export async function noteAccepted(writer: Writer, view: SiteView, wallMs: number): Promise<void> {
+export async function noteAccepted(
+  writer: Writer,
+  view: SiteView,
+  recipient: string,
+  wallMs: number,
+): Promise<void> {
   const state = (await statesOf(writer, [mailRefusedSubject])).get(subjectKey(mailRefusedSubject));
   if (state?.condition !== 'trouble') return;
   const { mail, summary } = view.site;
   const recipients = [...(mail?.to ?? []), ...(summary?.to ?? [])].map(({ address }) => address);
-  if ((await refusedRecipients(writer, [...new Set(recipients)])).length > 0) return;
-  const look = { present: false, usedMs: wallMs, reason: {} };
-  const change = await lookAtTrouble(writer, mailRefusedSubject, look);
-  if (change === null) return;
-  await saveAlarmChange(writer, change, contextOf(view, wallMs));
-  const again = await toTellAgain(writer, view, wallMs);
+  if ((await refusedRecipients(writer, [...new Set(recipients)])).length === 0) {
+    const look = { present: false, usedMs: wallMs, reason: {} };
+    const change = await lookAtTrouble(writer, mailRefusedSubject, look);
+    if (change !== null) await saveAlarmChange(writer, change, contextOf(view, wallMs));
+  }
+  // Afterwards, so that a trouble that this ends is no news any more.
+  const again = await toTellAgain(writer, view, recipient, wallMs);
   if (again.length > 0) await waitAgain(writer, again, wallMs);
 }
 
-/** Mails by Message-ID. Of one alarm the newest to each recipient: where that was accepted, he has been told. */
-async function toTellAgain(reader: Reader, view: SiteView, wallMs: number): Promise<string[]> {
-  const recipients = new Set(view.site.mail?.to.map(({ address }) => address));
+/** Mails by Message-ID. Of one alarm the newest to that recipient: where it was accepted, he has been told. */
+async function toTellAgain(
+  reader: Reader,
+  view: SiteView,
+  recipient: string,
+  wallMs: number,
+): Promise<string[]> {
+  if (!view.site.mail?.to.some(({ address }) => address === recipient)) return [];
   const refusals = await refusalsByMail(reader);
   const again = new Set<string>();
   for (const standing of await standingAlarms(reader)) {
     if (!stillStands(standing)) continue;
-    for (const { recipient, mailId, state, lastTryMs } of await lastTold(reader, standing.life.number)) {
+    for (const told of await lastTold(reader, standing.life.number)) {
+      if (told.recipient !== recipient) continue;
+      const { mailId, state, lastTryMs } = told;
       const isRecent = lastTryMs !== null && wallMs - lastTryMs < tellAgainWithinMs;
       const wasRefused = state === 'failed' && (refusals.get(mailId) ?? 0) < mostRefusals;
-      if (wasRefused && isRecent && recipients.has(recipient)) again.add(mailId);
+      if (wasRefused && isRecent) again.add(mailId);
     }
   }
   return [...again];

@@ -113,6 +113,26 @@ describe('a mail', () => {
     expect(await counts(b)).toMatchObject({ waiting: 0 });
   });
 
+  it('refused for one who takes mail again reaches him, though another is refused for good', async () => {
+    const { server, bench: b } = await bench({ to: [{ address: ann }, { address: ben }] });
+    const about = ({ text }: { text?: string | undefined }) => /blower, n?de/.exec(text ?? '')?.[0];
+    server.atRecipient = () => 550;
+    await b.record('blower/de', { overall: 6 });
+    await b.pass(hourMs, 5 * minuteMs);
+    server.atRecipient = (recipient) => (recipient === ann ? 550 : undefined);
+    await b.record('blower/nde', { overall: 6 });
+    await b.pass(dayMs, 5 * minuteMs);
+    const to = server.to(ben).map(about);
+    expect(to.filter((text) => text === 'blower, nde')).toHaveLength(1);
+    expect(to.filter((text) => text === 'blower, de')).toHaveLength(1);
+    expect(server.to(ann)).toEqual([]);
+    expect(await counts(b)).toMatchObject({ waiting: 0 });
+    const journal = await b.ledger.read((reader) => readJournal(reader, { limit: 50 }));
+    const events = journal.filter(({ key }) => key === 'trouble:mail-refused:site').map(({ event }) => event);
+    expect(events).toContain('raised');
+    expect(events).not.toContain('returned');
+  });
+
   it('refused for what is in it goes out three times, however often other mails are taken', async () => {
     const { server, bench: b } = await bench();
     let refusals = 0;
