@@ -133,7 +133,7 @@ export function explainMismatch(path: string, site: Site): Mismatch {
     .map((source) => ({ source, ...patternDistance(path, source.filled as string) }))
     .sort((a, b) => a.distance - b.distance);
   const best = candidates[0];
-  if (best === undefined || best.distance === Number.POSITIVE_INFINITY) {
+  if (best === undefined || !isNear(path, best.source.filled as string)) {
     return {
       nearest: null,
       points: [],
@@ -150,6 +150,18 @@ export function explainMismatch(path: string, site: Site): Mismatch {
     differsAt: best.fitsUpTo + 1,
     text: `nearest pattern ${filled} (${shortList(points)}): ${difference(path, filled, best.fitsUpTo, rest)}`,
   };
+}
+
+/**
+ * Whether a name was likely meant for a pattern: at most a third of the pattern's letters differ (two of a short one),
+ * capitals and folders aside. Any name shares an ending with some pattern, which says nothing.
+ */
+function isNear(path: string, filled: string): boolean {
+  const last = (text: string) => text.slice(text.lastIndexOf('/') + 1).toLowerCase();
+  const letters = (text: string) => text.replaceAll('<any>', '').length;
+  const near = (name: string, pattern: string) =>
+    patternDistance(name, pattern).distance <= Math.max(2, Math.floor(letters(pattern) / 3));
+  return near(path.toLowerCase(), filled.toLowerCase()) || near(last(path), last(filled));
 }
 
 function difference(path: string, filled: string, fitsUpTo: number, rest: string): string {

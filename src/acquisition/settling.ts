@@ -1,3 +1,4 @@
+import { printSeconds } from '../config/print-value.ts';
 import type { RecordingHeader, Refusal } from './recording.ts';
 
 /**
@@ -80,7 +81,7 @@ function decide(
   waits: SettlingWaits,
 ): SettlingVerdict {
   const giveUpAtMs = state.firstSeenMs + waits.incompleteAfterMs;
-  const waited = `${Math.round(waits.incompleteAfterMs / 1000)} s`;
+  const waited = printSeconds(waits.incompleteAfterMs / 1000);
   if (state.stillSinceMs > giveUpAtMs) {
     return {
       verdict: 'give-up',

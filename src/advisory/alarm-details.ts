@@ -1,4 +1,4 @@
-import { printFrequency, printNumber } from '../config/print-value.ts';
+import { printFrequency, printNumber, printSeconds } from '../config/print-value.ts';
 import type { AlarmFacts, LineFacts, LinesFacts, OtherPointFacts, RecordingFacts } from './facts.ts';
 import type { Said } from './letter.ts';
 import {
@@ -134,7 +134,7 @@ function otherPointsDetail(points: readonly OtherPointFacts[]): Detail[] {
 
 function recordingDetail(recording: RecordingFacts, timeZone: string): string {
   const { speed, averaging } = recording;
-  const said = [`${momentText(recording.startMs, timeZone)}, ${printNumber(recording.durationS)} s long`];
+  const said = [`${momentText(recording.startMs, timeZone)}, ${printSeconds(recording.durationS)} long`];
   if (recording.arrival !== 'in-time') {
     const how =
       recording.arrival === 'late' ? 'late, after newer ones' : 'together with others after a pause';

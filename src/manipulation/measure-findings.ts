@@ -1,5 +1,6 @@
 import type { QualityFinding } from '../acquisition/recording.ts';
 import { segmentOf } from '../config/meaning.ts';
+import { printSeconds } from '../config/print-value.ts';
 import type { Point } from '../config/site.ts';
 import { isWrongRate } from './fingerprint.ts';
 import type { UnlaidBand } from './point-bands.ts';
@@ -49,10 +50,10 @@ export function measureFindings(outcome: MeasureOutcome): QualityFinding[] {
 
 function tooShort({ point, samples }: MeasureOutcome, sampleRateHz: number): QualityFinding {
   const needed = segmentOf(point.analysis, sampleRateHz);
-  const has = (samples / sampleRateHz).toPrecision(3);
-  const wants = (needed / sampleRateHz).toPrecision(3);
+  const has = printSeconds(samples / sampleRateHz);
+  const wants = printSeconds(needed / sampleRateHz);
   return {
     flag: 'too-short',
-    detail: `${has} s without a gap, one segment needs ${wants} s; waveform values only. Record longer or widen line_spacing`,
+    detail: `${has} without a gap, one segment needs ${wants}; waveform values only. Record longer or widen line_spacing`,
   };
 }

@@ -150,8 +150,32 @@ describe('a name that no point takes', () => {
   });
 
   it('is shown without what it could do to a terminal', () => {
-    const { text } = explainMismatch('\u001b[31mx', siteWith('<machine>_<any>.wav'));
-    expect(text).toContain('"\\x1b[31mx"');
+    const { text } = explainMismatch('blower-1\u001b[31mx.wav', siteWith('<machine>_<any>.wav'));
+    expect(text).toContain('"\\x1b[31mx.wav"');
+  });
+
+  it.each([
+    ['<machine>_<any>.wav', 'visitor.wav'],
+    ['<machine>_<any>.wav', 'report.pdf'],
+    ['<machine>_<point>_<any>.wav', '2026-11-03.wav'],
+    ['<any>.wav', 'notes.txt'],
+    ['incoming/<machine>_<any>.wav', 'incoming/minutes of Tuesday.docx'],
+  ])('is not held against %s where it is as unlike as %s', (pattern, path) => {
+    expect(explainMismatch(path, siteWith(pattern))).toEqual({
+      nearest: null,
+      points: [],
+      differsAt: null,
+      text: 'no pattern of the site file is near this name',
+    });
+  });
+
+  it('is near in spite of folders and capitals', () => {
+    const { nearest, text } = explainMismatch(
+      'Old Recordings/2026/BLOWER-1_x.wav',
+      siteWith('<machine>_<any>.wav'),
+    );
+    expect(nearest).toBe('blower-1_<any>.wav');
+    expect(text).toContain('the file lies in a subfolder that the pattern does not name');
   });
 
   it('is answered where there are regular expressions only, and where it is absurdly long', () => {

@@ -24,18 +24,22 @@ const inData = (...parts: string[]) => join(site.folder, 'data', ...parts);
 const inDrop = (...parts: string[]) => join(site.folder, 'drop', ...parts);
 
 test('lists what nobody takes with the nearest pattern, and what could not be used with its reason', async () => {
+  writeFileSync(inDrop('pump2_20260302T104000Z.wav'), sines([3], 1));
   const ran = await files('--json');
   expect(ran).toMatchObject({ status: 0, err: '' });
   const answer = JSON.parse(ran.out);
   expect(answer.drop_folder.state).toBe('read');
   expect(answer.drop_folder.files).toMatchObject([
-    { file: 'visitor.wav', points: [], ignored: false, nearest_pattern: expect.any(String), differs_at: 1 },
+    { file: 'pump2_20260302T104000Z.wav', nearest_pattern: 'pump-2_<any>.wav', differs_at: 5 },
+    { file: 'visitor.wav', points: [], ignored: false, nearest_pattern: null, differs_at: null },
   ]);
   expect(answer.unassigned).toEqual([]);
   expect(answer.quarantine).toMatchObject([{ file: cut, size_bytes: 5000, points: ['pump-2/de-v'] }]);
   expect(answer.quarantine[0].reason).toContain('shorter than its own header');
   const { out } = await files();
-  expect(out).toContain('no point takes it; nearest pattern');
+  expect(out).toContain('no point takes it; nearest pattern pump-2_<any>.wav');
+  expect(out).toContain('no point takes it; no pattern of the site file is near this name');
+  rmSync(inDrop('pump2_20260302T104000Z.wav'));
   expect(out).toContain('taken by pump-2/de-v');
   expect(
     Math.max(
@@ -115,7 +119,7 @@ test('an unassigned file stays where it is until a pattern takes it; then it goe
   writeFileSync(inData('unassigned', 'visitor_1.json'), '{"speed_rpm": 1480}');
   const refused = await files('--take-again', 'visitor_1.wav');
   expect(refused.status).toBe(1);
-  expect(refused.err).toContain('no point takes visitor_1.wav, so it stays where it is; nearest pattern');
+  expect(refused.err).toContain('no point takes visitor_1.wav, so it stays where it is; no pattern');
   writeFileSync(
     site.file,
     `${siteText.replace('Raw water pump 2', 'Raw water pump 2\n    recordings:\n      files: visitor_<any>.wav')}`,

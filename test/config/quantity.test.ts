@@ -7,6 +7,7 @@ import {
   printFrequency,
   printLevel,
   printNumber,
+  printSeconds,
 } from '../../src/config/print-value.ts';
 import { type Parsed, parseDuration, parseFrequency, parsePercent } from '../../src/config/quantity.ts';
 import { parseSensitivity } from '../../src/config/sensitivity.ts';
@@ -153,6 +154,21 @@ describe('numbers for people', () => {
       '90 s',
       '2 h',
       '2 d',
+    ]);
+  });
+
+  it('say minutes and hours where there are as many', () => {
+    expect([0.64, 10.24, 60, 119, 120, 140, 600, 5400, 5425, 90_000].map(printSeconds)).toEqual([
+      '0.64 s',
+      '10.2 s',
+      '60 s',
+      '119 s',
+      '2 min',
+      '2 min 20 s',
+      '10 min',
+      '1 h 30 min',
+      '1 h 30 min',
+      '25 h',
     ]);
   });
 });

@@ -42,7 +42,7 @@ describe('a file that is not all there', () => {
     }
     expect(await service.outcomes()).toEqual({
       [pump(0)]:
-        `quarantined: ${pump(0)}: still growing after 120 s; lengthen incomplete_after if the logger writes that long`,
+        `quarantined: ${pump(0)}: still growing after 2 min; lengthen incomplete_after if the logger writes that long`,
     });
     expect(await service.standing()).toEqual(['unreadable pump-2_<any>.wav trouble']);
   });
@@ -55,7 +55,7 @@ describe('a file that is not all there', () => {
     expect(await service.outcomes()).toEqual({});
     await service.after(minuteMs);
     expect((await service.outcomes())[pump(0)]).toMatch(
-      /^quarantined: .*shorter than its own header says for 600 s \(1000 bytes\); copy it again/,
+      /^quarantined: .*shorter than its own header says for 10 min \(1000 bytes\); copy it again/,
     );
     expect(service.files('data', 'quarantine')).toEqual([pump(0), `${pump(0)}.reason.txt`]);
     expect(textOf(service.site.data, `quarantine/${pump(0)}.reason.txt`)).toMatch(/^pump-2.*shorter than/);

@@ -120,6 +120,8 @@ describe('the package, packed and installed into an empty folder', () => {
     const { status, out, err } = await humledger(['demo', '--days', '1', '--folder', './demo']);
     expect(status, err).toBe(0);
     expect(out).toContain('demo/data/ledger.sqlite');
+    // What it suggests to look at lies within the days that were played.
+    expect(out).toContain('trend pump-2/de-v overall --since 2026-03-02');
   });
 
   it('says plainly on an older Node what it needs, and loads nothing else there', async (context) => {

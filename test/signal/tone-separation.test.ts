@@ -1,4 +1,4 @@
-/** The stated separation against the peak search itself; the long run tries every distance up to twelve lines. */
+/** The stated separation against the peak search itself; the long run tries every distance up to eight lines. */
 import { describe, expect, it } from 'vitest';
 import { toneSeparation } from '../../src/signal/tone-separation.ts';
 import { windowNames } from '../../src/signal/window.ts';

@@ -1,3 +1,4 @@
+import { shaftsOf } from '../../assessment/fault-frequencies.ts';
 import { printFrequency, printSpeed } from '../../config/print-value.ts';
 import { type Machine, pointPath } from '../../config/site.ts';
 import { type RecordingReach, recordingReach } from '../../signal/recording-reach.ts';
@@ -29,7 +30,7 @@ export class RecordingAdviser {
     const slowestHz =
       machine.runningSpeedHz === null
         ? null
-        : machine.runningSpeedHz * Math.min(1, ...heard.map(({ shaft }) => shaft));
+        : machine.runningSpeedHz * Math.min(...shaftsOf(heard).filter((turns) => turns > 0));
     const bands = bandsOfPoint(point, machine.runningSpeedHz);
     const question = {
       confidencePercent: point.analysis.confidencePercent,

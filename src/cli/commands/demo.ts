@@ -74,7 +74,7 @@ async function tell(
   } finally {
     await service.stop();
   }
-  show(folder, catcher, io);
+  show(folder, storyDays, catcher, io);
   return 0;
 }
 
@@ -129,7 +129,10 @@ async function lastSummary(service: Service, nowMs: number): Promise<string> {
   return (await summaryNow({ ledger, view, nowMs, upSinceMs: startedMs })).mail.text;
 }
 
-function show(folder: string, catcher: MailCatcher, io: CommandIo): void {
+/** Days of the story that the suggested trend reaches back. */
+const lastDays = 6;
+
+function show(folder: string, storyDays: number, catcher: MailCatcher, io: CommandIo): void {
   const here = (path: string) => relative(io.workingFolder, join(folder, path)) || '.';
   const summaries = existsSync(join(folder, 'data/summary'))
     ? readdirSync(join(folder, 'data/summary')).filter((name) => /^\d/.test(name))
@@ -149,5 +152,6 @@ function show(folder: string, catcher: MailCatcher, io: CommandIo): void {
   const program = process.env.npm_lifecycle_event === 'demo' ? 'npm run -s humledger --' : 'humledger';
   io.out.write(`Look further, for example:\n`);
   io.out.write(`  ${program} alarms --site ${here('site.yaml')}\n`);
-  io.out.write(`  ${program} trend pump-2/de-v overall --since 2026-04-10 --site ${here('site.yaml')}\n`);
+  const since = new Date(beginMs + Math.max(0, storyDays - lastDays) * 86_400_000).toISOString().slice(0, 10);
+  io.out.write(`  ${program} trend pump-2/de-v overall --since ${since} --site ${here('site.yaml')}\n`);
 }
