@@ -1,7 +1,7 @@
 import type { ByteSource } from './recording.ts';
 
 export const longestLineBytes = 65_536;
-const bufferBytes = 4 * longestLineBytes;
+const usualBounds = { longest: longestLineBytes, buffer: 4 * longestLineBytes };
 
 /** Where the current line lies in `bytes`; valid until the next call. */
 export interface Lines {
@@ -10,6 +10,8 @@ export interface Lines {
   end: number;
   /** Counted from 1. */
   number: number;
+  /** Where in the file the next line begins. */
+  behind: number;
   /** False for a last line without a line end: perhaps cut short. */
   ended: boolean;
   /** Set when a line passed the bound; no line follows. */
@@ -21,9 +23,15 @@ export interface Lines {
 /**
  * Lines of a text through one buffer of fixed size, read from front to back. `lineEnd` is LF (a CR ahead of it is
  * cut off) or, for texts that know only that, CR; `from` is where the text begins, behind a byte-order mark.
+ * `longest` bounds a line, `buffer` the bytes held at a time.
  */
-export function linesOf(source: ByteSource, lineEnd: number, from: number): Lines {
-  const bytes = new Uint8Array(Math.min(bufferBytes, Math.max(1, source.size)));
+export function linesOf(
+  source: ByteSource,
+  lineEnd: number,
+  from: number,
+  { longest, buffer }: { readonly longest: number; readonly buffer: number } = usualBounds,
+): Lines {
+  const bytes = new Uint8Array(Math.min(buffer, Math.max(1, source.size)));
   let filled = 0;
   let nextStart = 0;
   let readTo = from;
@@ -46,6 +54,7 @@ export function linesOf(source: ByteSource, lineEnd: number, from: number): Line
     lines.ended = ended;
     lines.number++;
     nextStart = ended ? end + 1 : end;
+    lines.behind = readTo - filled + nextStart;
     return true;
   };
 
@@ -54,6 +63,7 @@ export function linesOf(source: ByteSource, lineEnd: number, from: number): Line
     start: 0,
     end: 0,
     number: 0,
+    behind: from,
     ended: true,
     tooLong: false,
     next() {
@@ -62,14 +72,14 @@ export function linesOf(source: ByteSource, lineEnd: number, from: number): Line
       for (;;) {
         const end = bytes.indexOf(lineEnd, searched);
         if (end >= 0 && end < filled) {
-          if (end - nextStart <= longestLineBytes) return give(end, true);
-        } else if (filled - nextStart <= longestLineBytes) {
+          if (end - nextStart <= longest) return give(end, true);
+        } else if (filled - nextStart <= longest) {
           searched = filled - nextStart;
           if (refill()) continue;
           return filled > nextStart && give(filled, false);
         }
         lines.start = nextStart;
-        lines.end = nextStart + longestLineBytes;
+        lines.end = nextStart + longest;
         lines.number++;
         lines.tooLong = true;
         return false;

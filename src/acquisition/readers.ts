@@ -1,9 +1,20 @@
 import { csvReader } from './read-csv.ts';
+import { hdf5Reader } from './read-hdf5.ts';
+import { npyReader } from './read-npy.ts';
+import { universalReader } from './read-universal.ts';
 import { wavReader } from './read-wav.ts';
 import type { RecordingReader, Refusal } from './recording.ts';
 
 /** The table of formats, in the order in which they are asked. */
-export const readers: readonly RecordingReader[] = [wavReader, csvReader];
+export const readers: readonly RecordingReader[] = [
+  wavReader,
+  npyReader,
+  hdf5Reader,
+  universalReader,
+  csvReader,
+];
+
+const expected = 'WAV, CSV, UFF 58, NPY or HDF5 expected';
 
 /**
  * The reader for a file, by its first bytes (`readHead`) and its name; or a refusal 'foreign'. A damaged file of a
@@ -12,6 +23,6 @@ export const readers: readonly RecordingReader[] = [wavReader, csvReader];
 export function readerFor(head: Uint8Array, fileName: string): RecordingReader | Refusal {
   const reader = readers.find((candidate) => candidate.recognise(head, fileName));
   if (reader !== undefined) return reader;
-  if (head.length === 0) return { refused: 'foreign', reason: 'the file is empty; WAV or CSV expected' };
-  return { refused: 'foreign', reason: 'no reader knows this kind of file; WAV or CSV expected' };
+  if (head.length === 0) return { refused: 'foreign', reason: `the file is empty; ${expected}` };
+  return { refused: 'foreign', reason: `no reader knows this kind of file; ${expected}` };
 }

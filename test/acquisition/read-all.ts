@@ -7,6 +7,7 @@ import {
   type Refusal,
   type SamplesEnd,
 } from '../../src/acquisition/recording.ts';
+import type { SampleLayout } from '../../src/config/sample-layout.ts';
 
 export interface Whole {
   readonly header: RecordingHeader;
@@ -16,12 +17,16 @@ export interface Whole {
 }
 
 /** Reads a recording whole and checks what every block promises. Throws where the header is a refusal. */
-export function readAll(reader: RecordingReader, file: Uint8Array | ByteSource): Whole {
+export function readAll(
+  reader: RecordingReader,
+  file: Uint8Array | ByteSource,
+  layout?: SampleLayout,
+): Whole {
   const source = file instanceof Uint8Array ? bytesSource(file) : file;
-  const header = reader.header(source);
+  const header = reader.header(source, layout);
   if (isRefusal(header)) throw new Error(`refused: ${header.reason}`);
   const channels: number[][] = header.channelNames.map(() => []);
-  const blocks = reader.samples(source, header);
+  const blocks = reader.samples(source, header, layout);
   let count = 0;
   let frames = 0;
   for (;;) {
@@ -50,11 +55,11 @@ export function wholeChannels(reader: RecordingReader, file: Uint8Array): number
 }
 
 /** The one line by which a file is refused, by its header or its samples. */
-export function refusalOf(reader: RecordingReader, file: Uint8Array): Refusal | null {
+export function refusalOf(reader: RecordingReader, file: Uint8Array, layout?: SampleLayout): Refusal | null {
   const source = bytesSource(file);
-  const header = reader.header(source);
+  const header = reader.header(source, layout);
   if (isRefusal(header)) return header;
-  const { end } = readAll(reader, file);
+  const { end } = readAll(reader, file, layout);
   return isRefusal(end) ? end : null;
 }
 

@@ -6,27 +6,40 @@ import { csvReader } from '../../src/acquisition/read-csv.ts';
 import { wavReader } from '../../src/acquisition/read-wav.ts';
 import { readerFor, readers } from '../../src/acquisition/readers.ts';
 import { isRefusal } from '../../src/acquisition/recording.ts';
+import type { SampleLayout } from '../../src/config/sample-layout.ts';
 import { readAll, refusalOf } from './read-all.ts';
 import { letters, wavFile } from './wav-writer.ts';
 
 const folder = new URL('../files/recordings/', import.meta.url);
 const file = (name: string): Uint8Array => new Uint8Array(readFileSync(new URL(name, folder)));
 
-/** Lines `name | what is expected`; lines that begin with # say what the group below has in common. */
-function list(name: string): [string, string][] {
+/** Lines `name | what is expected`, and behind a further | what the site file says; lines with # head a group. */
+function list(name: string): [string, string, string?][] {
   return new TextDecoder()
     .decode(file(name))
     .split('\n')
     .filter((line) => line !== '' && !line.startsWith('#'))
-    .map((line) => line.split('|').map((part) => part.trim()) as [string, string]);
+    .map((line) => line.split(' | ').map((part) => part.trim()) as [string, string, string?]);
+}
+
+/** 'channels_in rows, dataset /fan' */
+function layoutOf(said = ''): SampleLayout {
+  const words = Object.fromEntries(said.split(', ').map((one) => one.split(' ')));
+  const {
+    dataset = null,
+    sample_rate_attribute: sampleRateAttribute = null,
+    channels_in: channelsIn = null,
+  } = words;
+  return { dataset, sampleRateAttribute, channelsIn };
 }
 
 describe('recordings that are read', () => {
-  test.each(list('valid.txt'))('%s: %s', (name, expected) => {
+  test.each(list('valid.txt'))('%s: %s', async (name, expected, said) => {
     const bytes = file(name);
     const reader = readerFor(readHead(bytesSource(bytes)), name);
     if (isRefusal(reader)) throw new Error(reader.reason);
-    const { header, channels, end } = readAll(reader, bytes);
+    await reader.prepare?.();
+    const { header, channels, end } = readAll(reader, bytes, layoutOf(said));
     if (isRefusal(end)) throw new Error(end.reason);
     const rate = header.sampleRateHz === null ? 'no rate' : `${Number(header.sampleRateHz.toFixed(3))} Hz`;
     const sum = channels.map((values) => Number(values.reduce((a, b) => a + b, 0).toPrecision(6)));
@@ -45,10 +58,11 @@ describe('recordings that are read', () => {
 });
 
 describe('recordings that are refused', () => {
-  test.each(list('invalid.txt'))('%s: %s', (name, expected) => {
+  test.each(list('invalid.txt'))('%s: %s', async (name, expected, said) => {
     const bytes = file(name);
     const reader = readerFor(readHead(bytesSource(bytes)), name);
-    const refusal = isRefusal(reader) ? reader : refusalOf(reader, bytes);
+    if (!isRefusal(reader)) await reader.prepare?.();
+    const refusal = isRefusal(reader) ? reader : refusalOf(reader, bytes, layoutOf(said));
     expect(`${refusal?.refused}: ${refusal?.reason}`).toBe(expected);
   });
 });
@@ -104,7 +118,7 @@ describe('which reader takes a file', () => {
     ] as const) {
       expect(readerFor(bytes, fileName)).toEqual({
         refused: 'foreign',
-        reason: 'no reader knows this kind of file; WAV or CSV expected',
+        reason: 'no reader knows this kind of file; WAV, CSV, UFF 58, NPY or HDF5 expected',
       });
     }
     expect(readerFor(new Uint8Array(0), 'a.dat')).toMatchObject({

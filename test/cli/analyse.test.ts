@@ -266,7 +266,7 @@ describe('the shape of the answer', () => {
     expect(ran.status).toBe(1);
     expect((JSON.parse(ran.out) as Analysed[]).map(({ file }) => file)).toEqual(['good.wav']);
     expect(ran.err).toBe(
-      'bad.wav: no reader knows this kind of file; WAV or CSV expected\nnothing.wav: there is no such file\n',
+      'bad.wav: no reader knows this kind of file; WAV, CSV, UFF 58, NPY or HDF5 expected\nnothing.wav: there is no such file\n',
     );
   });
 
