@@ -30,7 +30,7 @@ describe('the manifest', () => {
     for (const file of readdirSync('src', { recursive: true, encoding: 'utf8' })) {
       if (!file.endsWith('.ts')) continue;
       const text = readFileSync(join('src', file), 'utf8');
-      for (const [, name] of text.matchAll(/ from '([a-z@][^'\s]*)';$/gm)) {
+      for (const [, name] of text.matchAll(/(?: from |import\.meta\.resolve\()'([a-z@][^'\s]*)'/gm)) {
         if (name.startsWith('node:') || builtinModules.includes(name)) continue;
         loaded.add(
           name.startsWith('@') ? name.split('/').slice(0, 2).join('/') : (name.split('/')[0] as string),
