@@ -31,10 +31,15 @@ export function buildLimits(
   const chosen = new Map<string, { readonly written: WrittenLimit; readonly layer: number }>();
   layers.forEach((layer, index) => {
     if (layer === null) return;
-    const listed = layer.value.fromZones
-      ? limitsFromZones(build, layer.at, bands, { ...of, shared: index < layers.length - 1 })
-      : layer.value.list;
-    for (const written of listed) {
+    const judged = layer.value.fromZones
+      ? bandsFromZones(build, layer.at, bands, { ...of, shared: index < layers.length - 1 })
+      : [];
+    const fromZones = judged.map((bandId) => {
+      const outer = [...chosen].filter(([, { written }]) => isFixedUpper(written, bandId));
+      for (const [id] of outer) chosen.delete(id);
+      return zoneLimit(bandId, layer.at, outer[0]?.[1].written ?? null);
+    });
+    for (const written of [...fromZones, ...layer.value.list]) {
       const id = limitId(written);
       if (id !== null && chosen.get(id)?.layer !== index) chosen.set(id, { written, layer: index });
     }
@@ -48,10 +53,10 @@ export function buildLimits(
 }
 
 /**
- * `limits: from zones`: one for each band that the table judges. A machine that lies outside its table is refused once;
- * so is a point of vibration without such a band, since it could never alarm.
+ * `limits: from zones`: the bands that the table judges. A machine that lies outside its table is refused once; so is a
+ * point of vibration without such a band, since it could never alarm.
  */
-function limitsFromZones(
+function bandsFromZones(
   { reading }: Build,
   at: Span,
   { bands }: BuiltBands,
@@ -60,7 +65,7 @@ function limitsFromZones(
     zoneCase,
     shared,
   }: { readonly shown: string; readonly zoneCase: ZoneCase; readonly shared: boolean },
-): readonly WrittenLimit[] {
+): readonly string[] {
   const machine = zonesAtSpeed(zoneCase);
   if (!machine.ok) {
     const what = `there are no limits from zones for machine '${zoneCase.machineId}': ${machine.why}`;
@@ -68,7 +73,7 @@ function limitsFromZones(
     return [];
   }
   const judged = bands.filter(({ band }) => zonesOfBand(zoneCase, band).ok);
-  if (judged.length > 0) return judged.map(({ band }) => zoneLimit(band.id, at));
+  if (judged.length > 0) return judged.map(({ band }) => band.id);
   const housing = notOnHousing(zoneCase.point, machine.zones);
   const vibrates = ['acceleration', 'velocity', 'displacement'].includes(zoneCase.point.quantity);
   const why = housing ?? `none of its bands is one: ${bandThatWouldDo(machine.zones, machine.speedHz)}`;
@@ -79,11 +84,26 @@ function limitsFromZones(
   return [];
 }
 
-/** As if it had been written: `band: ..., kind: zone`. */
-function zoneLimit(bandId: string, at: Span): WrittenLimit {
+/** What `from zones` takes the place of, in the lists further out. */
+function isFixedUpper({ value: { keys } }: WrittenLimit, bandId: string): boolean {
+  const { band, kind, side } = keys;
+  return band?.value === bandId && valueOr(kind, 'fixed') === 'fixed' && valueOr(side, 'upper') === 'upper';
+}
+
+/** As if it had been written: `kind: zone`, with the delays, the action and all else of the limit whose place it takes. */
+function zoneLimit(bandId: string, at: Span, outer: WrittenLimit | null): WrittenLimit {
   const none = Object.fromEntries(Object.keys(limitKeys).map((name) => [name, null]));
-  const keys = { ...none, band: { value: bandId, at }, kind: { value: 'zone', at } };
-  return { value: { keys: keys as WrittenLimit['value']['keys'], has: new Set(['band', 'kind']) }, at };
+  const own = {
+    band: { value: bandId, at },
+    kind: { value: 'zone', at },
+    alert: null,
+    danger: null,
+    baseline: null,
+  };
+  const keys = { ...none, ...outer?.value.keys, ...own } as WrittenLimit['value']['keys'];
+  const has = new Set(['band', 'kind', ...(outer?.value.has ?? [])]);
+  for (const name of ['alert', 'danger', 'baseline']) has.delete(name);
+  return { value: { keys, has }, at };
 }
 
 export function tellDoubledLimits({ reading }: Build, layer: LimitLayers[number]): void {

@@ -87,8 +87,12 @@ function outsideText(name: string, asked: readonly ZoneRow[], { powerW, shaftHei
   }
   const above = Math.min(...asked.map(({ when }) => when.powerAboveKw ?? 0));
   const to = Math.max(...asked.map(({ when }) => when.powerToKw ?? Number.POSITIVE_INFINITY));
-  const range = Number.isFinite(to) ? `above ${above} kW to ${to} kW` : `above ${above} kW`;
-  return `${name} holds ${range}, this machine has ${printNumber((powerW ?? 0) / 1000, 4)} kW`;
+  const range = Number.isFinite(to) ? ` to ${powerText(to)}` : '';
+  return `${name} holds above ${powerText(above)}${range}, this machine has ${powerText((powerW ?? 0) / 1000)}`;
+}
+
+function powerText(kw: number): string {
+  return kw >= 1000 ? `${printNumber(kw / 1000, 4)} MW` : `${printNumber(kw, 4)} kW`;
 }
 
 /** The boundaries that a level is held against, or in words why none are. */

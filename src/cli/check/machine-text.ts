@@ -179,12 +179,13 @@ function zoneRemarks(machine: Machine, one: PointCheck): Remark[] {
   const { id, limits } = one.point;
   const check = zoneCheck(machine, one);
   const texts = check === null ? [] : pointZoneTexts(machine, one.point, check);
-  const reasons = limits.flatMap((limit) =>
-    (['alert', 'danger'] as const).flatMap((severity) => {
+  const reasons = limits.flatMap((limit) => {
+    const said = (['alert', 'danger'] as const).flatMap((severity) => {
       const why = limit.reasons?.[severity] ?? null;
-      return why === null ? [] : [`${limit.bandId}, ${severity} at ${why}`];
-    }),
-  );
+      return why === null ? [] : [`${severity} at ${why}`];
+    });
+    return said.length === 0 ? [] : [`${limit.bandId}, ${said.join('; ')}`];
+  });
   return [
     ...texts.map((text) => ({ id, title: 'zone', text })),
     ...reasons.map((text) => ({ id, title: 'limits', text })),
