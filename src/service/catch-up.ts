@@ -3,6 +3,7 @@ import { recipientsFor, worseSeverity } from '../advisory/outbox.ts';
 import type { Recipient, Severity } from '../config/site.ts';
 import { alarmByNumber, type StandingLife } from '../store/alarms.ts';
 import { readJournal } from '../store/journal.ts';
+import { isLedgersOwn } from '../store/ledger-error.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import type { UntoldEvent } from '../store/messages.ts';
 import { highestLevel } from '../store/past-levels.ts';
@@ -40,13 +41,24 @@ export async function sortEvents(
   const waitedLong: UntoldEvent[] = [];
   for (const event of events) {
     const old = nowMs - event.wallMs > catchUpAfterMs;
-    const life =
-      event.number !== null && (event.fromBacklog || old) ? await alarmByNumber(reader, event.number) : null;
+    const isOver =
+      event.number !== null && (event.fromBacklog || old) && (await isKnownOver(reader, event.number));
     const isNews = event.event === 'limit-removed' || event.event === 'exceeded-came-late';
-    if (life === null || isNews || stillStands(life)) toTell.push(event);
+    if (!isOver || isNews) toTell.push(event);
     else (event.fromBacklog ? backlog : waitedLong).push(event);
   }
   return { toTell, backlog, waitedLong };
+}
+
+/** False where that cannot be read: then it is told by itself, in plain words if it must be. */
+async function isKnownOver(reader: Reader, number: number): Promise<boolean> {
+  try {
+    const life = await alarmByNumber(reader, number);
+    return life !== null && !stillStands(life);
+  } catch (error) {
+    if (isLedgersOwn(error)) throw error;
+    return false;
+  }
 }
 
 const hourMs = 3_600_000;

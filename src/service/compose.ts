@@ -1,5 +1,6 @@
 import { groupsDue, nextGroupDueMs } from '../advisory/outbox.ts';
 import type { MailSettings } from '../config/site.ts';
+import { isLedgersOwn } from '../store/ledger-error.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { type UntoldEvent, untoldEvents } from '../store/messages.ts';
 import { hasUntold, openThreads, standsFor } from '../store/thread-ends.ts';
@@ -7,7 +8,7 @@ import { closeThread, type Thread } from '../store/threads.ts';
 import { sortEvents } from './catch-up.ts';
 import { type Draft, type DraftFrom, draftAlarmMail, draftCatchUp } from './draft.ts';
 import { type MailTools, wallMsOf } from './mail-tools.ts';
-import { isLedgersOwn, plainDraft, stackOf } from './plain-draft.ts';
+import { plainDraft, stackOf } from './plain-draft.ts';
 import { deliveriesFor, storeDraft } from './store-draft.ts';
 
 /**

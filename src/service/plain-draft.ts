@@ -1,6 +1,5 @@
 import { messageIdentity, priorityOf, worseSeverity } from '../advisory/outbox.ts';
 import { type PlainLine, plainNotice } from '../advisory/plain-notice.ts';
-import { isBusy, LedgerError, toLedgerError } from '../store/ledger-error.ts';
 import type { UntoldEvent } from '../store/messages.ts';
 import { addressesFor } from './catch-up.ts';
 import type { Draft, DraftFrom } from './draft.ts';
@@ -10,11 +9,6 @@ import { machineOfId } from './fact-names.ts';
  * What leaves when the full text of a message cannot be composed: one message that cannot be written must neither stay
  * untold nor keep the others.
  */
-
-/** What the ledger says when it cannot be used is no fault of the message; everything waits for the ledger. */
-export function isLedgersOwn(error: unknown): boolean {
-  return isBusy(error) || toLedgerError(error, '') instanceof LedgerError;
-}
 
 export function stackOf(error: unknown): string {
   return error instanceof Error ? (error.stack ?? String(error)) : String(error);

@@ -1,9 +1,10 @@
 import type { Mail } from '../advisory/facts.ts';
 import { plainNotice } from '../advisory/plain-notice.ts';
 import { standingAlarms } from '../store/alarms.ts';
+import { isLedgersOwn } from '../store/ledger-error.ts';
 import { findMachine } from './fact-names.ts';
 import type { MailTools } from './mail-tools.ts';
-import { isLedgersOwn, stackOf } from './plain-draft.ts';
+import { stackOf } from './plain-draft.ts';
 import type { SiteView } from './site-view.ts';
 import { standingOfLife } from './standing-facts.ts';
 

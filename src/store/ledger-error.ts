@@ -76,3 +76,8 @@ export function toRefusal(error: unknown, path: string): LedgerRefusal {
   if (!(known instanceof LedgerError)) throw error;
   return { refused: known.kind, reason: known.message };
 }
+
+/** What the ledger says when it cannot be used; it is no fault of the work at hand, which waits for the ledger. */
+export function isLedgersOwn(error: unknown): boolean {
+  return isBusy(error) || toLedgerError(error, '') instanceof LedgerError;
+}

@@ -1,4 +1,5 @@
 /** What is told when the full text of a message cannot be composed. */
+import Database from 'better-sqlite3';
 import { expect, it, vi } from 'vitest';
 import { untoldEvents } from '../../src/store/messages.ts';
 import { ann, dayMs, hourMs, MailBench } from './mail-bench.ts';
@@ -47,6 +48,20 @@ it('an alarm whose mail cannot be composed is told in plain words, once, and kee
   expect(pump?.subject).toBe('DANGER 3: pump, de, overall 6 mm/s r.m.s.');
   expect(await b.ledger.read((reader) => untoldEvents(reader, 10))).toEqual([]);
   expect(b.logged.filter((line) => line.includes('could not be composed')).length).toBe(2);
+});
+
+it('an alarm whose state cannot be read is told in plain words, and keeps no other, of a backlog too', async () => {
+  const { server, b } = await bench();
+  for (const machine of ['pump', 'fan'])
+    await b.record(`${machine}/de`, { overall: 6 }, { fromBacklog: true });
+  const other = new Database(b.ledger.path);
+  other.prepare("update alarm_states set state = '{broken' where number = 1").run();
+  other.close();
+  await b.pass(hourMs, 10_000);
+  const told = new Map(server.to(ann).map(({ subject, text }) => [subject, text]));
+  expect([...told.keys()].sort()).toEqual(['Larkfen Waterworks: DANGER 1', 'Larkfen Waterworks: DANGER 2']);
+  expect(told.get('Larkfen Waterworks: DANGER 1')).toContain('DANGER 1: pump, limit:pump/de/overall');
+  expect(await b.ledger.read((reader) => untoldEvents(reader, 10))).toEqual([]);
 });
 
 it('a summary that cannot be made is a plain list of what stands, once that day', async () => {
