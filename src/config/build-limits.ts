@@ -3,6 +3,14 @@ import { type Build, tellDoubledIds, valueOr, valuesOf } from './layers.ts';
 import { fixedValues, type KindParts, type LimitCase } from './limit-values.ts';
 import { notOnHousing } from './machine-zones.ts';
 import { nearest } from './nearest.ts';
+import {
+  baselineValues,
+  ceilingsOf,
+  changeValues,
+  curveValues,
+  rateValues,
+  statisticalValues,
+} from './rule-values.ts';
 import { limitKeys, type WrittenLimit, type WrittenLimits } from './schema-limits.ts';
 import type { Written } from './shape.ts';
 import type { Limit, LimitKind } from './site.ts';
@@ -19,6 +27,19 @@ const kinds: Readonly<
 > = {
   fixed: fixedValues,
   zone: zoneValues,
+  baseline: baselineValues,
+  statistical: statisticalValues,
+  change: changeValues,
+  rate: rateValues,
+  curve: curveValues,
+};
+
+/** Keys that one kind alone knows. */
+const keysOfKind: Readonly<Record<string, readonly LimitKind[]>> = {
+  k: ['statistical'],
+  danger_k: ['statistical'],
+  over: ['rate'],
+  curve: ['curve'],
 };
 
 /** The limits of one point: a limit of an inner list replaces the outer one of the same id. */
@@ -26,7 +47,7 @@ export function buildLimits(
   build: Build,
   layers: LimitLayers,
   bands: BuiltBands,
-  of: { readonly shown: string; readonly zoneCase: ZoneCase },
+  of: LimitPlace,
 ): readonly Limit[] {
   const chosen = new Map<string, { readonly written: WrittenLimit; readonly layer: number }>();
   layers.forEach((layer, index) => {
@@ -49,7 +70,32 @@ export function buildLimits(
     const limit = buildLimit(build, id, written, bands, of);
     if (limit !== null) limits.push(limit);
   }
-  return limits;
+  return limits.map((limit) => withCeilings(limit, limits, bands, of));
+}
+
+/** Where the limits are and what may speak of them. */
+export interface LimitPlace {
+  /** 'blower-1/de-h'. */
+  readonly shown: string;
+  readonly zoneCase: ZoneCase;
+  /** Operating conditions of the machine. */
+  readonly conditions: readonly string[];
+}
+
+/** A value learned from a baseline never passes the standard's ceiling, nor, without one, the site's fixed limit. */
+function withCeilings(
+  limit: Limit,
+  all: readonly Limit[],
+  { bands }: BuiltBands,
+  { shown, zoneCase }: LimitPlace,
+): Limit {
+  const band = bands.find((one) => one.band.id === limit.bandId);
+  if (band === undefined || (limit.rule?.by !== 'baseline' && limit.rule?.by !== 'spread')) return limit;
+  const fixed = all.find(
+    ({ bandId, kind, side }) => bandId === limit.bandId && kind === 'fixed' && side === 'upper',
+  );
+  const ceilings = ceilingsOf({ band, zoneCase, shown }, fixed ?? null);
+  return ceilings === undefined ? limit : { ...limit, ceilings };
 }
 
 /**
@@ -127,8 +173,9 @@ function buildLimit(
   id: string,
   written: WrittenLimit,
   { bands, absent }: BuiltBands,
-  { shown, zoneCase }: { readonly shown: string; readonly zoneCase: ZoneCase },
+  of: LimitPlace,
 ): Limit | null {
+  const { shown, zoneCase } = of;
   const { keys } = written.value;
   if (keys.band === null) return null;
   const bandId = keys.band.value;
@@ -138,8 +185,10 @@ function buildLimit(
     return null;
   }
   const kind = valueOr(keys.kind, 'fixed');
+  if (!keysFit(build, written, kind)) return null;
   const parts = kinds[kind](build, written, { band, zoneCase, shown });
   if (parts === null) return null;
+  const confident = keys.confidence !== null;
   return {
     id,
     formerly: valuesOf(keys.formerly),
@@ -147,7 +196,10 @@ function buildLimit(
     kind,
     side: valueOr(keys.side, 'upper'),
     ...parts,
-    onDelay: valueOr(keys.on_delay, { recordings: 2 }),
+    ...(confident ? { confident } : {}),
+    conditions: conditionsOf(build, written, of),
+    // At three recordings single knocks raise nothing, and a learned limit stands nearer to what is usual.
+    onDelay: valueOr(keys.on_delay, { recordings: kind === 'statistical' ? 3 : 2 }),
     offDelay: valueOr(keys.off_delay, { recordings: 1 }),
     deadbandPercent: valueOr(keys.deadband, 10),
     latching: valueOr(keys.latching, false),
@@ -155,6 +207,38 @@ function buildLimit(
     action: keys.action === null ? null : keys.action.value,
     respondWithinMs: keys.respond_within === null ? null : keys.respond_within.value,
   };
+}
+
+function keysFit({ reading }: Build, { value: { keys, has } }: WrittenLimit, kind: LimitKind): boolean {
+  const wrong = [...has].filter((name) => keysOfKind[name]?.includes(kind) === false);
+  for (const name of wrong) {
+    const at = keys[name as keyof typeof keys]?.at;
+    const right = `leave it out, or write kind: ${keysOfKind[name].join(' or ')}`;
+    if (at !== undefined) reading.problem(at, `${name} has no meaning in a limit of kind ${kind}`, right);
+  }
+  return wrong.length === 0;
+}
+
+function conditionsOf(
+  { reading }: Build,
+  { value: { keys } }: WrittenLimit,
+  { shown, conditions }: LimitPlace,
+): readonly string[] | null {
+  if (keys.conditions === null) return null;
+  for (const { value, at } of keys.conditions.value) {
+    if (conditions.includes(value)) continue;
+    const meant = nearest(value, conditions);
+    const all =
+      conditions.length === 0
+        ? 'add conditions: to the machine, each with id and speed or load'
+        : `its conditions are ${conditions.join(', ')}`;
+    reading.problem(
+      at,
+      `the machine of ${shown} has no operating condition '${value}'`,
+      meant === null ? all : reading.write(at, meant),
+    );
+  }
+  return valuesOf(keys.conditions);
 }
 
 function tellUnknownBand(

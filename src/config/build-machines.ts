@@ -2,6 +2,7 @@ import { tellDoubledBands } from './build-bands.ts';
 import { tellDoubledLimits } from './build-limits.ts';
 import { buildParts } from './build-parts.ts';
 import { type BuiltPoint, buildPoint, type PointSurroundings } from './build-point.ts';
+import { buildSpeed } from './build-speed.ts';
 import { buildZones } from './build-zones.ts';
 import { type Build, type Layers, tellDoubledIds, valueOr, valuesOf } from './layers.ts';
 import { nearest } from './nearest.ts';
@@ -11,12 +12,15 @@ import type { machineKeys, machineTypeKeys } from './schema-machines.ts';
 import type { Written } from './shape.ts';
 import type { ReadMap } from './shape-map.ts';
 import type { Machine, RunningRule } from './site.ts';
+import type { Span } from './site-text.ts';
 
 type WrittenMachine = Written<ReadMap<typeof machineKeys>>;
 type WrittenType = Written<ReadMap<typeof machineTypeKeys>>;
 
 export interface BuiltMachine {
   readonly machine: Machine;
+  /** Where its pulse channel is written. */
+  readonly pulsesAt: Span | null;
   readonly points: readonly BuiltPoint[];
 }
 
@@ -69,8 +73,16 @@ function buildMachine(
   const runningSpeedHz = valueOr(keys.running_speed, null);
   const named = { id, name: valueOr(keys.name, id), type: keys.type?.value ?? null };
   const zones = keys.zones === null ? null : buildZones(build, keys.zones, named);
+  const parts = buildParts(build, keys.parts, id, pointIdsOf(keys));
+  const bearingShafts = (pointId: string) =>
+    parts.flatMap((part) =>
+      part.kind === 'rolling-bearing' && part.at.includes(pointId) ? [part.shaft] : [],
+    );
+  const conditions = buildConditions(build, keys.conditions);
   const around: PointSurroundings = {
+    conditions: conditions.map((one) => one.id),
     machineId: id,
+    bearingShafts,
     runningSpeedHz,
     zones,
     recordings: layersOf(site, type, written, 'recordings') as PointSurroundings['recordings'],
@@ -86,17 +98,22 @@ function buildMachine(
     area: valueOr(keys.area, null),
     formerly: valuesOf(keys.formerly),
     runningSpeedHz,
+    speed: buildSpeed(build, keys.speed, { id, runningSpeedHz, sidecars: mayHaveSidecars(points) }),
     running: runningRule(build, keys, points),
     afterStartMs: valueOr(keys.after_start, 0),
     stoppedExpectedMs: valueOr(keys.stopped_expected, 7 * 86_400_000),
     criticality: valueOr(keys.criticality, 'B'),
     like: valuesOf(keys.like),
-    conditions: buildConditions(build, keys.conditions),
+    conditions,
     zones,
     points: points.map(({ point }) => point),
-    parts: buildParts(build, keys.parts, id, pointIdsOf(keys)),
+    parts,
   };
-  return { machine, points };
+  return { machine, pulsesAt: keys.speed?.value.keys.pulse_channel?.at ?? null, points };
+}
+
+function mayHaveSidecars(points: readonly BuiltPoint[]): boolean {
+  return points.some(({ point }) => point.recordings.sidecar !== 'none');
 }
 
 /** Undefined where the type is unknown. */

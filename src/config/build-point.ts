@@ -6,6 +6,7 @@ import {
   tellDoubledBands,
   type WrittenBand,
 } from './build-bands.ts';
+import { askedEnvelope, type EnvelopeCase, readEnvelope } from './build-envelope.ts';
 import { buildLimits, type LimitLayers, tellDoubledLimits } from './build-limits.ts';
 import {
   type AnalysisLayers,
@@ -20,7 +21,7 @@ import type { MachineZones } from './machine-zones.ts';
 import type { pointKeys } from './schema-machines.ts';
 import type { Written } from './shape.ts';
 import type { ReadMap } from './shape-map.ts';
-import type { Point } from './site.ts';
+import type { Point, SignalSettings } from './site.ts';
 import type { Span } from './site-text.ts';
 
 export type WrittenPoint = Written<ReadMap<typeof pointKeys>>;
@@ -34,6 +35,10 @@ export interface PointSurroundings {
   readonly bands: ListLayers<WrittenBand>;
   readonly limits: LimitLayers;
   readonly zones: MachineZones | null;
+  /** Ids of the machine's operating conditions. */
+  readonly conditions: readonly string[];
+  /** Turns, for one of the machine's speed, of the shafts whose rolling bearings a point hears, by its id. */
+  readonly bearingShafts: (pointId: string) => readonly number[];
 }
 
 /** A point with the places that later checks of the whole site point at. */
@@ -60,7 +65,7 @@ export function buildPoint(
   const at = keys.id.at;
   const quantity = keys.quantity.value;
   const recordingLayers = [...around.recordings, keys.recordings === null ? null : keys.recordings.value];
-  const analysisLayers = [...around.analysis, keys.analysis === null ? null : keys.analysis.value];
+  const analysisLayers = analysisLayersOf(written, around);
   const recordings = buildRecordings(build, recordingLayers, at, shown);
   const { sampleRateHz, durationS } = recordings;
   const analysis = buildAnalysis(build, analysisLayers, recordings, runningSpeedHz, { at, shown });
@@ -74,15 +79,15 @@ export function buildPoint(
   tellOfAveraging(build, analysisLayers, analysis, recordings, shown);
   warnOfAnalysis(build, analysisLayers, analysis, { sampleRateHz, runningSpeedHz, durationS, at, shown });
   const mounting = valueOr(keys.mounting, null);
-  const bands = buildBands(build, [...around.bands, keys.bands], {
-    quantity,
+  const envelopeCase = { quantity, mounting, recordings, analysis, runningSpeedHz, at, shown };
+  const { bands, envelope } = bandsAndEnvelope(build, written, around, {
     signal,
-    sidecar: recordings.sidecar === 'expected',
-    situation: { analysis, sampleRateHz, runningSpeedHz, mounting, shown },
+    envelopeCase: { ...envelopeCase, bearingShafts: around.bearingShafts(keys.id.value) },
   });
   const sensorOn = valueOr(keys.sensor_on, null);
   const limits = buildLimits(build, [...around.limits, keys.limits], bands, {
     shown,
+    conditions: around.conditions,
     zoneCase: { machineId, zones: around.zones, runningSpeedHz, point: { quantity, sensorOn } },
   });
   if (signal === null) return null;
@@ -99,8 +104,35 @@ export function buildPoint(
     signal,
     recordings,
     analysis,
+    ...(envelope === null ? {} : { envelope }),
     bands: bands.bands.map(({ band }) => band),
     limits,
   };
   return { point, idAt: at, channelAt: keys.channel?.at ?? at, bands };
+}
+
+function analysisLayersOf({ value: { keys } }: WrittenPoint, around: PointSurroundings): AnalysisLayers {
+  return [...around.analysis, keys.analysis === null ? null : keys.analysis.value];
+}
+
+/** The bands of the envelope are judged by how it is made, and they are one of the things that ask for it. */
+function bandsAndEnvelope(
+  build: Build,
+  written: WrittenPoint,
+  around: PointSurroundings,
+  point: { readonly signal: SignalSettings | null; readonly envelopeCase: EnvelopeCase },
+) {
+  const { signal, envelopeCase } = point;
+  const { quantity, recordings, analysis, runningSpeedHz, mounting, shown } = envelopeCase;
+  const layers = analysisLayersOf(written, around);
+  const envelope = readEnvelope(build, layers, envelopeCase);
+  const { sampleRateHz, sidecar } = recordings;
+  const bands = buildBands(build, [...around.bands, written.value.keys.bands], {
+    quantity,
+    signal,
+    sidecar: sidecar === 'expected',
+    situation: { analysis, sampleRateHz, runningSpeedHz, mounting, shown, envelope },
+  });
+  const all = bands.bands.map(({ band }) => band);
+  return { bands, envelope: askedEnvelope(build, layers, envelope, all, envelopeCase) };
 }

@@ -10,7 +10,7 @@ import { asYaml } from './site-text.ts';
 import { type ZoneCase, zonesOfBand } from './zone-limits.ts';
 
 /** What a kind of limit adds to the keys that all kinds share; null where it was refused. */
-export type KindParts = Pick<Limit, 'alert' | 'danger' | 'reasons'>;
+export type KindParts = Pick<Limit, 'alert' | 'danger' | 'reasons' | 'rule'>;
 
 /** A limit's band, and the point whose zones may speak of it. */
 export interface LimitCase {

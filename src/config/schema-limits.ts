@@ -1,11 +1,13 @@
 import { isScalar, type Node } from 'yaml';
 import { type Parsed, parseDelay, parsePercent, refused, shorten, understood } from './quantity.ts';
 import type { Reading } from './reading.ts';
-import { duration, formerIds, id, percent } from './schema-values.ts';
-import { choice, list, type Shape, scalar, trueOrFalse, type Written, words } from './shape.ts';
+import { duration, formerIds, frequency, id, percent } from './schema-values.ts';
+import { choice, list, plainNumber, type Shape, scalar, trueOrFalse, type Written, words } from './shape.ts';
 import { key, map, type ReadMap } from './shape-map.ts';
+import type { LimitKind } from './site.ts';
 
-const day = 86_400_000;
+const hour = 3_600_000;
+const day = 24 * hour;
 
 /** A limit's value is understood where its band's quantity is known. */
 const levelText = scalar((text) => understood(text.trim()), { example: '2.8 mm/s', most: 60 });
@@ -22,7 +24,23 @@ function parseSayAgain(text: string): Parsed<number | null> {
 }
 
 /** Later kinds of limit each add one word here, their own keys, and one entry where limits are built. */
-export const limitKinds = ['fixed', 'zone'] as const;
+export const limitKinds = [
+  'fixed',
+  'zone',
+  'baseline',
+  'statistical',
+  'change',
+  'rate',
+  'curve',
+] as const satisfies readonly LimitKind[];
+
+/** One value of a curve; straight lines lie between them. */
+const curveKeys = {
+  speed: key(frequency(0.01, 5000, '1500 rpm'), 'Running speed at which it holds.'),
+  load: key(percent(0, 1000, '60 %'), 'Or the load.'),
+  alert: key(levelText, 'The lower severity.'),
+  danger: key(levelText, 'The higher severity.'),
+};
 
 export const limitKeys = {
   id: key(id('overall-fixed-upper'), 'Names the limit.', { fallback: 'band-kind-side' }),
@@ -30,12 +48,27 @@ export const limitKeys = {
   band: key(id('overall'), 'The band whose level is judged.', { required: true }),
   kind: key(
     choice(limitKinds),
-    "fixed: the values as they stand; zone: from the boundaries of the machine's evaluation zones.",
+    "fixed: the values as they stand; zone: from the boundaries of the machine's evaluation zones; baseline: multiples of what is usual; statistical: spreads above what is usual; change: away from what is usual, up or down; rate: growth over a time; curve: over speed or load.",
     { fallback: 'fixed' },
   ),
   side: key(choice(['upper', 'lower']), 'upper: too much; lower: too little.', { fallback: 'upper' }),
-  alert: key(levelText, 'The lower severity.'),
-  danger: key(levelText, 'The higher severity.'),
+  alert: key(levelText, 'The lower severity: a level; kind baseline also 2.5x or +8 dB, kind rate 50 %.'),
+  danger: key(levelText, 'The higher severity, likewise.'),
+  k: key(plainNumber(1, 20, false, '4.5'), 'Kind statistical: spreads from the median to the alert.', {
+    fallback: '4.5',
+  }),
+  danger_k: key(plainNumber(1, 40, false, '8'), 'Kind statistical: spreads from the median to the danger.'),
+  over: key(duration(hour, 365 * day, '7 d'), 'Kind rate: the time over which the growth is reckoned.', {
+    fallback: '7 d',
+  }),
+  curve: key(list(map(curveKeys), 50), 'Kind curve: its values, speed or load growing.'),
+  confidence: key(
+    percent(50, 99.9, '95 %'),
+    "An alert counts only where the level's whole interval is past the limit; a danger never waits for that.",
+  ),
+  conditions: key(list(id('full-load'), 50), 'Only in these operating conditions of the machine.', {
+    fallback: 'in all',
+  }),
   baseline: key(
     levelText,
     'Kind zone: the level while the machine was known to be good; the alert stands 25 % of B/C above it.',
@@ -45,7 +78,7 @@ export const limitKeys = {
     delay,
     'The level must stay over the limit for so many recordings, or so long: single knocks raise nothing.',
     {
-      fallback: '2 recordings',
+      fallback: '2 recordings; kind statistical 3 recordings',
     },
   ),
   off_delay: key(delay, 'The level must stay below for so many recordings, or so long.', {

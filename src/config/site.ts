@@ -1,8 +1,11 @@
 import type { WindowName } from '../signal/window.ts';
 import type { AnalysisSettings } from './analysis-settings.ts';
+import type { PointEnvelope } from './envelope-settings.ts';
+import type { Ceiling, LimitRule } from './limit-rules.ts';
 import type { MachineZones, SensorPlace } from './machine-zones.ts';
 import type { Part } from './parts.ts';
 import type { SampleLayout } from './sample-layout.ts';
+import type { SpeedSettings } from './speed-settings.ts';
 
 /**
  * The frozen Site: what a site file means, in SI units, with ids as written. Everything else reads this.
@@ -90,6 +93,8 @@ export interface Machine {
   readonly type: string | null;
   readonly formerly: readonly string[];
   readonly runningSpeedHz: number | null;
+  /** How the running speed of a recording is found. */
+  readonly speed: SpeedSettings;
   readonly running: RunningRule | null;
   readonly afterStartMs: number;
   readonly stoppedExpectedMs: number;
@@ -132,6 +137,8 @@ export interface Point {
   readonly signal: SignalSettings;
   readonly recordings: RecordingSettings;
   readonly analysis: AnalysisSettings;
+  /** Left out: nothing asks for it. */
+  readonly envelope?: PointEnvelope;
   readonly bands: readonly Band[];
   readonly limits: readonly Limit[];
 }
@@ -170,6 +177,8 @@ export interface RecordingSettings {
 export interface Band {
   readonly id: string;
   readonly formerly: readonly string[];
+  /** Left out: of the plain spectrum. */
+  readonly of?: 'envelope';
   readonly quantity: Quantity;
   /** Hz, or orders of the running speed where `inOrders`. */
   readonly from: number;
@@ -178,7 +187,7 @@ export interface Band {
   readonly display: DisplayUnit;
 }
 
-export type LimitKind = 'fixed' | 'zone';
+export type LimitKind = 'fixed' | 'zone' | 'baseline' | 'statistical' | 'change' | 'rate' | 'curve';
 
 /** Where alert and danger come from, in words; null: as the site file gives them. */
 export interface LimitReasons {
@@ -193,10 +202,18 @@ export interface Limit {
   readonly bandId: string;
   readonly kind: LimitKind;
   readonly side: 'upper' | 'lower';
-  /** SI r.m.s.; at least one of the two is set. */
+  /** SI r.m.s., as they stand in the site file; at least one of the two is set where no rule reckons them. */
   readonly alert: number | null;
   readonly danger: number | null;
   readonly reasons?: LimitReasons | null;
+  /** How its values come about; without it they stand. */
+  readonly rule?: LimitRule;
+  /** What values by the rule may not pass. */
+  readonly ceilings?: { readonly alert: Ceiling | null; readonly danger: Ceiling | null };
+  /** An alert counts only where the whole interval of the level is past the limit; a danger never waits for that. */
+  readonly confident?: boolean;
+  /** Operating conditions in which it holds; null: in all. */
+  readonly conditions?: readonly string[] | null;
   readonly onDelay: Delay;
   readonly offDelay: Delay;
   readonly deadbandPercent: number;

@@ -13,6 +13,7 @@ import { entry, rank } from './alarm-event.ts';
 import { alarmStep } from './alarm-state.ts';
 import { type Judgement, judgeLevel } from './limits.ts';
 import type { MachineState } from './machine-state.ts';
+import { type LimitSituation, nothingKnown } from './thresholds.ts';
 import { changeOf, looksDead, type TroubleSubject, troubleStep } from './trouble.ts';
 
 /**
@@ -34,6 +35,10 @@ export interface DetectionInput {
   readonly late: boolean;
   /** Flags of the recording as a whole (clock, repeats), besides those of the measurement. */
   readonly recordingFlags: readonly QualityFlag[];
+  /** Operating condition of the recording; null: outside all, or not running. */
+  readonly condition: string | null;
+  /** What limits may need besides a band's level, by band; what is missing is unknown. */
+  readonly situations: ReadonlyMap<string, LimitSituation>;
   /** By `subjectKey`; what is missing is normal. */
   readonly earlier: ReadonlyMap<string, AlarmState>;
 }
@@ -77,18 +82,25 @@ function detectLimit(limit: Limit, flags: readonly QualityFlag[], input: Detecti
   const subject = limitSubject(input.point, limit);
   const before = input.earlier.get(subjectKey(subject)) ?? normalState;
   const level = measurement.levels.find(({ bandId }) => bandId === limit.bandId);
-  if (level === undefined) return null;
+  const band = input.point.bands.find(({ id }) => id === limit.bandId);
+  if (level === undefined || band === undefined || !holdsIn(limit, input.condition)) return null;
   const averages = measurement.averaging?.averages ?? 0;
-  const judgement = judgeLevel(limit, level, averages, before.condition);
+  const situation = input.situations.get(limit.bandId) ?? nothingKnown;
+  const judged = { level, display: band.display, averages, situation };
+  const judgement = judgeLevel(limit, judged, before.condition);
   if (judgement === null) return null;
-  const { severity, value, alert, danger, dangerAtOnce } = judgement;
+  const { severity, dangerAtOnce, at } = judgement;
   const reason = {
-    level: value,
+    level: at.value,
     quantity: level.quantity,
-    side: limit.side,
-    alert,
-    danger,
-    ...(limit.reasons == null ? {} : { reasons: limit.reasons }),
+    kind: limit.kind,
+    side: at.side,
+    alert: at.alert,
+    danger: at.danger,
+    why: at.why,
+    provisional: at.provisional,
+    confirmedBy: at.confirmedBy,
+    condition: input.condition,
     deadbandPercent: limit.deadbandPercent,
     onDelay: limit.onDelay,
     offDelay: limit.offDelay,
@@ -105,14 +117,19 @@ function detectLimit(limit: Limit, flags: readonly QualityFlag[], input: Detecti
       kind: 'judged',
       severity,
       usedMs,
-      level: value,
+      level: at.value,
       flagged: flags.length > 0 || level.atLeast,
       atOnce: dangerAtOnce,
       reason,
     },
-    limit,
+    { ...limit, side: at.side },
   );
   return changeOf(subject, before, step);
+}
+
+/** A limit without a list holds in every running recording, also outside all conditions: none must blind a point. */
+function holdsIn({ conditions }: Limit, condition: string | null): boolean {
+  return conditions == null || (condition !== null && conditions.includes(condition));
 }
 
 /** The state stays, its version too; only the journal and the telling are new. */
@@ -123,7 +140,8 @@ function cameLate(
   reason: Readonly<Record<string, unknown>>,
   usedMs: number,
 ): AlarmChange | null {
-  const { severity, value: level } = judgement;
+  const { severity } = judgement;
+  const level = judgement.at.value;
   if (severity === 'normal' || rank(severity) <= rank(before.condition)) return null;
   const event = 'exceeded-came-late';
   return {

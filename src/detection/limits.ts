@@ -1,11 +1,12 @@
-import type { Limit, LimitKind, Severity } from '../config/site.ts';
+import type { DisplayUnit, Limit, Severity } from '../config/site.ts';
 import type { BandLevel } from '../manipulation/measurement.ts';
 import type { Condition } from './alarm.ts';
 import { rank } from './alarm-event.ts';
+import { type LimitSituation, type Thresholds, thresholdsOf } from './thresholds.ts';
 
 /**
- * A band level against a limit. Each kind of limit says what is compared with what; the comparison itself (side,
- * deadband, 'at least', danger at once) is the same for all.
+ * A band level against a limit. Where the limit stands, thresholds.ts says for each kind; the comparison itself (side,
+ * deadband, 'at least', confidence, danger at once) is the same for all.
  */
 
 /** A danger is proven by one recording only where this many segments were averaged. */
@@ -13,30 +14,20 @@ export const leastAveragesForDangerAtOnce = 5;
 
 export interface Judgement {
   readonly severity: Condition;
-  /** What was compared: SI r.m.s. for a fixed limit. */
-  readonly value: number;
-  /** The thresholds it was compared with, in the same unit. */
-  readonly alert: number | null;
-  readonly danger: number | null;
+  /** What was compared, and with what; SI r.m.s. */
+  readonly at: Thresholds;
   /** One recording is proof enough: at least 80 % of its segments exceed the danger limit on their own. */
   readonly dangerAtOnce: boolean;
 }
 
-/** What a kind of limit compares. null: it cannot be said now (no baseline yet). */
-interface Comparison {
-  readonly value: number;
-  readonly alert: number | null;
-  readonly danger: number | null;
-}
-
-const comparisons: Readonly<Record<LimitKind, (limit: Limit, level: BandLevel) => Comparison | null>> = {
-  fixed: asTheyStand,
-  // Worked out from the table when the site file was read; they move with the site file alone.
-  zone: asTheyStand,
-};
-
-function asTheyStand({ alert, danger }: Limit, { level }: BandLevel): Comparison {
-  return { value: level, alert, danger };
+/** A level and what is needed to judge it. */
+export interface JudgedLevel {
+  readonly level: BandLevel;
+  /** In which the reasons show levels. */
+  readonly display: DisplayUnit;
+  /** Nominal number of averages behind the level. */
+  readonly averages: number;
+  readonly situation: LimitSituation;
 }
 
 /**
@@ -45,43 +36,49 @@ function asTheyStand({ alert, danger }: Limit, { level }: BandLevel): Comparison
  * deadband (percent of the limit): a limit of 2.8 with 10 % holds above 2.52, on the lower side below 3.08.
  * Hysteresis as in ANSI/ISA-18.2-2016 and OPC 10000-9, B.1.5.
  *
- * @param averages nominal number of averages behind the level
  * @param present condition that stands, after its delays
- * @returns null where the level decides nothing: it is not a number, or it is only known to be *at least* so high and
- *   the limit is a lower one
+ * @returns null where the level decides nothing: it is not a number, its limit cannot be reckoned now (no baseline yet), or
+ *   it is only known to be *at least* so high and the limit is a lower one
  */
-export function judgeLevel(
-  limit: Limit,
-  level: BandLevel,
-  averages: number,
-  present: Condition,
-): Judgement | null {
-  const compared = comparisons[limit.kind](limit, level);
-  if (compared === null || !Number.isFinite(compared.value)) return null;
-  if (limit.side === 'lower' && level.atLeast) return null;
-  const { value, alert, danger } = compared;
-  const passes = (severity: Severity, threshold: number | null): boolean =>
-    threshold !== null && isPassed(limit, value, threshold, rank(present) >= rank(severity));
-  const severity = passes('danger', danger) ? 'danger' : passes('alert', alert) ? 'alert' : 'normal';
+export function judgeLevel(limit: Limit, judged: JudgedLevel, present: Condition): Judgement | null {
+  const { level, display, averages, situation } = judged;
+  const at = thresholdsOf(limit, level.level, situation, display);
+  if ('unknown' in at || !Number.isFinite(at.value)) return null;
+  if (at.side === 'lower' && level.atLeast) return null;
+  const passes = (severity: Severity, threshold: number | null): boolean => {
+    if (threshold === null) return false;
+    const held = rank(present) >= rank(severity);
+    if (!isPassed(limit, at, threshold, held)) return false;
+    return severity === 'danger' || held || limit.confident !== true || isCertain(at, level, threshold);
+  };
+  const severity = passes('danger', at.danger) ? 'danger' : passes('alert', at.alert) ? 'alert' : 'normal';
   return {
     severity,
-    value,
-    alert,
-    danger,
-    dangerAtOnce: severity === 'danger' && provesDanger(limit, level, averages, danger),
+    at,
+    dangerAtOnce: severity === 'danger' && provesDanger(at, level, averages),
   };
 }
 
-function isPassed(limit: Limit, value: number, threshold: number, held: boolean): boolean {
-  const back = held ? limit.deadbandPercent / 100 : 0;
-  return limit.side === 'upper' ? value > threshold * (1 - back) : value < threshold * (1 + back);
+/** The whole interval of the level lies past the threshold. */
+function isCertain({ side }: Thresholds, level: BandLevel, threshold: number): boolean {
+  return side === 'upper' ? level.intervalLow > threshold : level.intervalHigh < threshold;
+}
+
+function isPassed(
+  { deadbandPercent }: Limit,
+  { side, value }: Thresholds,
+  threshold: number,
+  held: boolean,
+): boolean {
+  const back = held ? deadbandPercent / 100 : 0;
+  return side === 'upper' ? value > threshold * (1 - back) : value < threshold * (1 + back);
 }
 
 /** Known for the upper side only: what 80 % of the segments exceed says nothing of what they stay under. */
-function provesDanger(limit: Limit, level: BandLevel, averages: number, danger: number | null): boolean {
+function provesDanger({ side, danger }: Thresholds, level: BandLevel, averages: number): boolean {
   const exceeded = level.exceededBy80Percent;
   return (
-    limit.side === 'upper' &&
+    side === 'upper' &&
     averages >= leastAveragesForDangerAtOnce &&
     exceeded !== null &&
     danger !== null &&

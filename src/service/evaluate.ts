@@ -11,6 +11,7 @@ import { loadAlarms } from '../store/alarms.ts';
 import { lastGoodRms } from '../store/good-signals.ts';
 import type { Reader, Writer } from '../store/lent-connection.ts';
 import { loadMachine, saveMachine } from '../store/sources.ts';
+import { limitSituations } from './limit-situations.ts';
 import type { SiteView } from './site-view.ts';
 
 /**
@@ -77,6 +78,7 @@ async function evaluateMachine(
     const measurement =
       findings.length === 0 ? measured : { ...measured, quality: [...measured.quality, ...findings] };
     const earlier = await statesOf(writer, subjectsOf(point));
+    const condition = own.state === 'running' ? conditionOf(machine.conditions ?? [], measured) : null;
     const changes = input.judged
       ? detect({
           point,
@@ -86,6 +88,8 @@ async function evaluateMachine(
           usedMs,
           late: input.late,
           recordingFlags: input.recordingFlags,
+          condition,
+          situations: await limitSituations(writer, view, point, measurement, { condition, usedMs }),
           earlier,
         })
       : [];
@@ -93,7 +97,7 @@ async function evaluateMachine(
       point,
       measurement,
       machineState: own.state,
-      condition: own.state === 'running' ? conditionOf(machine.conditions ?? [], measured) : null,
+      condition,
       runningHours: (step.memory.ranMs ?? 0) / 3_600_000,
       changes,
     });

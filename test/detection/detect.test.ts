@@ -8,7 +8,11 @@ import { AlarmBook, hourMs, levelOf, limitWith, measurementWith, pointWith } fro
 
 const once = limitWith({ onDelay: { recordings: 1 } });
 const bearing = limitWith({ ...once, id: 'bearing-fixed-upper', bandId: 'bearing', alert: 10, danger: 20 });
-const point = pointWith({ limits: [once, bearing] });
+const [overall] = pointWith().bands;
+const point = pointWith({
+  bands: [overall, { ...overall, id: 'bearing' }],
+  limits: [once, bearing],
+});
 
 function inputWith(parts: Partial<DetectionInput> & { level?: number; flags?: readonly QualityFlag[] } = {}) {
   const { level = 1, flags = [], ...rest } = parts;
@@ -20,6 +24,8 @@ function inputWith(parts: Partial<DetectionInput> & { level?: number; flags?: re
     usedMs: hourMs,
     late: false,
     recordingFlags: [],
+    condition: '',
+    situations: new Map(),
     earlier: new Map(),
     ...rest,
   };

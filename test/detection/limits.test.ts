@@ -4,11 +4,14 @@ import type { Limit } from '../../src/config/site.ts';
 import type { Condition } from '../../src/detection/alarm.ts';
 import { rank } from '../../src/detection/alarm-event.ts';
 import { judgeLevel } from '../../src/detection/limits.ts';
+import { nothingKnown } from '../../src/detection/thresholds.ts';
 import type { BandLevel } from '../../src/manipulation/measurement.ts';
 import { levelOf, limitWith } from './site-parts.ts';
 
+const display = { text: 'mm/s', quantity: 'velocity', inSi: 1, detector: 'rms' } as const;
+const judged = (level: BandLevel, averages = 31) => ({ level, averages, display, situation: nothingKnown });
 const severity = (limit: Limit, level: number, present: Condition = 'normal', averages = 31) =>
-  judgeLevel(limit, levelOf(level), averages, present)?.severity;
+  judgeLevel(limit, judged(levelOf(level), averages), present)?.severity;
 
 describe('a level against a fixed limit', () => {
   const upper = limitWith({ alert: 2.8, danger: 4.5, deadbandPercent: 10 });
@@ -53,8 +56,8 @@ describe('a level against a fixed limit', () => {
 
   it("takes a clipped level as 'at least': over an upper limit it counts, a lower limit it cannot pass", () => {
     const clipped = (level: number) => levelOf(level, { atLeast: true });
-    expect(judgeLevel(upper, clipped(3), 31, 'normal')?.severity).toBe('alert');
-    expect(judgeLevel(lower, clipped(0.5), 31, 'normal')).toBeNull();
+    expect(judgeLevel(upper, judged(clipped(3)), 'normal')?.severity).toBe('alert');
+    expect(judgeLevel(lower, judged(clipped(0.5)), 'normal')).toBeNull();
   });
 
   it('a higher level is never a lower severity, and what stands is never judged lower for standing', () => {
@@ -75,7 +78,7 @@ describe('a level against a fixed limit', () => {
 
 describe('a danger that one recording proves', () => {
   const atOnce = (parts: Partial<BandLevel>, averages: number, limit = limitWith()) =>
-    judgeLevel(limit, levelOf(5, parts), averages, 'normal')?.dangerAtOnce;
+    judgeLevel(limit, judged(levelOf(5, parts), averages), 'normal')?.dangerAtOnce;
 
   it('needs five averages, and the level that 80 % of the segments exceed over the danger limit', () => {
     expect(atOnce({ exceededBy80Percent: 4.51 }, 5)).toBe(true);

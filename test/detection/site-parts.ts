@@ -1,5 +1,6 @@
 import type { QualityFlag } from '../../src/acquisition/recording.ts';
 import type { Limit, Machine, Point } from '../../src/config/site.ts';
+import { usualSpeed } from '../../src/config/speed-settings.ts';
 import type { AlarmChange, AlarmState } from '../../src/detection/alarm.ts';
 import { subjectKey } from '../../src/detection/alarm.ts';
 import type { BandLevel, Measurement } from '../../src/manipulation/measurement.ts';
@@ -95,6 +96,7 @@ export function machineWith(parts: Partial<Machine> = {}): Machine {
     runningSpeedHz: 49.5,
     running: null,
     afterStartMs: 10 * minuteMs,
+    speed: usualSpeed,
     stoppedExpectedMs: 7 * 24 * hourMs,
     criticality: 'A',
     like: [],

@@ -102,6 +102,8 @@ export class AlarmScenario {
           usedMs,
           late,
           recordingFlags: late ? ['late'] : [],
+          condition: '',
+          situations: new Map(),
           earlier: this.#book.states,
         }),
       );
