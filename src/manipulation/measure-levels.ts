@@ -1,4 +1,4 @@
-import type { Point } from '../config/site.ts';
+import type { Band, Point } from '../config/site.ts';
 import type { AveragedDensity, AveragingSettings } from '../signal/averaging.ts';
 import { bandInterval, type IntervalKernel, makeIntervalKernel } from '../signal/band-interval.ts';
 import type { BandWeights } from '../signal/band-level.ts';
@@ -8,7 +8,6 @@ import { findPeaks, type Peak, type PeakSearch, type PeakSettings } from '../sig
 import { type Segments, segmentsKey } from '../signal/pooled-segments.ts';
 import type { SegmentSpectra } from '../signal/segment-spectra.ts';
 import { steadiness } from '../signal/steadiness.ts';
-import { type FingerprintSettings, seriesFingerprint } from './fingerprint.ts';
 import type { Averaging, BandLevel, SpectralPeak } from './measurement.ts';
 import type { LaidBand } from './point-bands.ts';
 
@@ -63,7 +62,8 @@ export interface LevelQuestion {
   readonly speedHz: number | null;
   /** The true levels are at least these: the recording is clipped or the sensor saturated. */
   readonly atLeast: boolean;
-  readonly fingerprint: FingerprintSettings;
+  /** Fingerprint of a band's series. */
+  readonly seriesOf: (band: Band) => string;
 }
 
 export interface MeasuredLevels {
@@ -102,7 +102,7 @@ export function levelsOf(question: LevelQuestion): MeasuredLevels {
 }
 
 function levelOf(
-  { point, searched, fingerprint, atLeast }: LevelQuestion,
+  { point, searched, seriesOf, atLeast }: LevelQuestion,
   { laid: { band, fromHz, toHz, weights }, segmentPowers }: BandSegments,
   kernel: IntervalKernel,
   tones: readonly Peak[],
@@ -111,7 +111,7 @@ function levelOf(
   const interval = bandInterval(searched.density.density, weights, kernel, tones, confidencePercent);
   return {
     bandId: band.id,
-    fingerprint: seriesFingerprint(fingerprint, band),
+    fingerprint: seriesOf(band),
     fromHz,
     toHz,
     quantity: band.quantity,

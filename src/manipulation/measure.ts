@@ -3,7 +3,7 @@ import type { Point, SignalSettings } from '../config/site.ts';
 import { siUnit } from '../config/units.ts';
 import type { AveragedDensity, AveragingSettings } from '../signal/averaging.ts';
 import { CleanStretch, type StretchResult } from './clean-stretch.ts';
-import { settingsFingerprint } from './fingerprint.ts';
+import { seriesFingerprint, settingsFingerprint } from './fingerprint.ts';
 import { measureFindings, unevenStepRatio } from './measure-findings.ts';
 import {
   type BandSegments,
@@ -193,7 +193,7 @@ export class Measurer {
       bands: [...fixed, ...ordered].sort((a, b) => place(a) - place(b)),
       speedHz,
       atLeast: found.some(({ flag }) => flag === 'clipped' || flag === 'saturated'),
-      fingerprint: this.#fingerprintSettings(),
+      seriesOf: (band) => seriesFingerprint(this.#fingerprintSettings(), band),
     });
   }
 

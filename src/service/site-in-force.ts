@@ -6,6 +6,7 @@ import { alarmStep } from '../detection/alarm-state.ts';
 import { changeOf, type TroubleSubject } from '../detection/trouble.ts';
 import type { Ledger } from '../store/ledger.ts';
 import type { Writer } from '../store/lent-connection.ts';
+import { dropOtherPools } from '../store/pooling.ts';
 import { saveAlarmChange } from '../store/save-alarm.ts';
 import { type SiteIds, syncSite } from '../store/site-ids.ts';
 import { lookAtTrouble } from './evaluate.ts';
@@ -68,6 +69,11 @@ export async function putInForce(
     }
     await tellSiteFile(writer, synced.ids, null, wallMs);
     const view = siteView(site, synced.ids);
+    const pooling = view.points.filter(({ analysis }) => analysis.averageOver !== undefined);
+    await dropOtherPools(
+      writer,
+      pooling.map((point) => synced.ids.pointId(point.machineId, point.id)),
+    );
     afterCommit(() => inForce(view));
     return view;
   });

@@ -151,6 +151,7 @@ function averagingOf(row: Selectable<MeasurementsTable>): Averaging | null {
     segmentSamples: row.segment_samples ?? 0,
     lineSpacingHz: row.line_spacing_hz ?? 0,
     averages: row.averages ?? 0,
+    ...(row.pooled_recordings === null ? {} : { recordings: row.pooled_recordings }),
     effectiveAverages: row.effective_averages ?? 0,
     usedPercent: row.used_percent ?? 0,
     segmentSpread: row.segment_spread,

@@ -15,6 +15,7 @@ import type {
   DayMarksTable,
   NotesTable,
 } from './baseline-tables.ts';
+import type { OpenPoolsTable } from './pooling.ts';
 
 /**
  * The ledger's tables. Times are integer milliseconds since 1970 UTC; truth values are 0 or 1; levels are r.m.s. in
@@ -44,6 +45,8 @@ export interface LedgerTables {
   levels: LevelsTable;
   peaks: PeaksTable;
   spectra: SpectraTable;
+  /** Recordings that wait to be averaged together, one row a point. */
+  open_pools: OpenPoolsTable;
   point_arrivals: PointArrivalsTable;
   conditions: ConditionsTable;
   daily_levels: DailyLevelsTable;
@@ -170,6 +173,8 @@ export interface MeasurementsTable {
   segment_samples: number | null;
   line_spacing_hz: number | null;
   averages: number | null;
+  /** Recordings pooled in these averages; null: the one. */
+  pooled_recordings: number | null;
   effective_averages: number | null;
   used_percent: number | null;
   segment_spread: number | null;
@@ -226,6 +231,8 @@ export interface SpectraTable {
   density: Uint8Array;
   /** 1 where an alarm of the point changed with this recording: never thinned. */
   at_alarm: number;
+  /** 'peak-hold': the highest of all segments; null: their mean. */
+  averaging: string | null;
 }
 
 export interface PointArrivalsTable {

@@ -21,6 +21,7 @@ export async function insertSpectrum(writer: Writer, entry: NewMeasurement, plac
       at_alarm: entry.atAlarm ? 1 : 0,
       line_spacing_hz: spectrum.lineSpacingHz,
       density: densityBytes(spectrum.density),
+      averaging: spectrum.averaging ?? null,
     })
     .execute();
 }
@@ -70,6 +71,7 @@ export async function newestSpectra(
     usedMs: row.used_ms,
     lineSpacingHz: row.line_spacing_hz,
     density: densityOf(row.density),
+    ...(row.averaging === 'peak-hold' ? { averaging: 'peak-hold' as const } : {}),
   }));
 }
 
@@ -78,8 +80,20 @@ export function densityOf(bytes: Uint8Array): Float32Array {
   return new Float32Array((littleEndianHere ? own : swapped(own)).buffer);
 }
 
-/** Each group of four bytes turned round, in place. */
-function swapped(bytes: Uint8Array<ArrayBuffer>): Uint8Array<ArrayBuffer> {
-  for (let at = 0; at < bytes.length; at += 4) bytes.subarray(at, at + 4).reverse();
+/** Float64, little-endian: what numbers are still made from. */
+export function doubleBytes(density: Float64Array): Uint8Array {
+  if (!density.every(Number.isFinite)) throw new Error('a density that is not finite is never stored');
+  const bytes = new Uint8Array(density.buffer, density.byteOffset, density.byteLength).slice();
+  return littleEndianHere ? bytes : swapped(bytes, 8);
+}
+
+export function doublesOf(bytes: Uint8Array): Float64Array {
+  const own = new Uint8Array(bytes);
+  return new Float64Array((littleEndianHere ? own : swapped(own, 8)).buffer);
+}
+
+/** Each group of so many bytes turned round, in place. */
+function swapped(bytes: Uint8Array<ArrayBuffer>, size = 4): Uint8Array<ArrayBuffer> {
+  for (let at = 0; at < bytes.length; at += size) bytes.subarray(at, at + size).reverse();
   return bytes;
 }

@@ -222,6 +222,7 @@ function measurementRow(entry: NewMeasurement, pointId: number): Insertable<Meas
     segment_samples: averaging?.segmentSamples ?? null,
     line_spacing_hz: averaging?.lineSpacingHz ?? null,
     averages: averaging?.averages ?? null,
+    pooled_recordings: averaging?.recordings ?? null,
     effective_averages: averaging?.effectiveAverages ?? null,
     used_percent: averaging?.usedPercent ?? null,
     segment_spread: averaging?.segmentSpread ?? null,

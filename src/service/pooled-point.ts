@@ -1,0 +1,61 @@
+import type { Point } from '../config/site.ts';
+import { pooledMeasurement } from '../manipulation/measure-pooled.ts';
+import type { Measurement } from '../manipulation/measurement.ts';
+import { type PoolArrival, type PoolStep, poolStep } from '../manipulation/pooling.ts';
+import type { Writer } from '../store/lent-connection.ts';
+import { dropPool, loadPool, type PoolNewest, savePool } from '../store/pooling.ts';
+
+/** What a recording does to the pool of its point; the rules are those of pooling.ts. */
+export interface Pooled {
+  readonly step: PoolStep;
+  /** What the pool says that this recording filled. */
+  readonly full: Measurement | null;
+  /** A pool that ended before this recording, judged as it stands, with its newest recording. */
+  readonly ended: EndedPool | null;
+}
+
+export interface EndedPool {
+  readonly measurement: Measurement;
+  readonly usedMs: number;
+  readonly condition: string | null;
+  readonly newest: PoolNewest;
+}
+
+/** A recording in its turn; nothing is stored yet. Null where the point does not pool. */
+export async function poolOf(
+  writer: Writer,
+  pointId: number,
+  point: Point,
+  arrival: PoolArrival,
+): Promise<Pooled | null> {
+  const { averageOver } = point.analysis;
+  if (averageOver === undefined) return null;
+  const { expectedEveryMs, overdueAfterMs } = point.recordings;
+  const open = await loadPool(writer, pointId);
+  const step = poolStep(open?.pool ?? null, arrival, { averageOver, expectedEveryMs, overdueAfterMs });
+  const { measurement } = arrival;
+  return {
+    step,
+    full: step.full === null ? null : pooledMeasurement(point, measurement, step.full),
+    ended:
+      step.ended === null || open === null
+        ? null
+        : {
+            measurement: pooledMeasurement(point, open.newest.measurement, step.ended),
+            usedMs: step.ended.newestUsedMs,
+            condition: step.ended.condition,
+            newest: open.newest,
+          },
+  };
+}
+
+/** Stores what is open after the recording, in its transaction. */
+export async function keepPool(
+  writer: Writer,
+  pointId: number,
+  { step }: Pooled,
+  newest: PoolNewest,
+): Promise<void> {
+  if (step.open === null) await dropPool(writer, pointId);
+  else if (step.entered) await savePool(writer, pointId, { pool: step.open, newest });
+}
