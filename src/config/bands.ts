@@ -1,5 +1,6 @@
 import { advisedAverages } from '../signal/segment-length.ts';
 import { leastBandLines } from '../signal/window.ts';
+import type { PointEnvelope } from './envelope-settings.ts';
 import { secondsFor, segmentOf, segmentSamplesFor } from './meaning.ts';
 import { printFrequency, printNumber, printSeconds, printSpeed } from './print-value.ts';
 import type { AnalysisSettings, Band, Point } from './site.ts';
@@ -12,6 +13,8 @@ export interface BandCase {
   readonly runningSpeedHz: number | null;
   readonly mounting: Point['mounting'];
   readonly shown: string;
+  /** Of the point, for bands of it; null or left out: its quantity has none. */
+  readonly envelope?: PointEnvelope | null;
 }
 
 export interface BandFinding {
@@ -54,7 +57,7 @@ export function judgeBand(band: Band, situation: BandCase): BandFinding[] {
   ].filter((finding) => finding !== null);
 }
 
-function edgesHz(band: Band, runningSpeedHz: number | null): readonly [number, number] | null {
+export function edgesHz(band: Band, runningSpeedHz: number | null): readonly [number, number] | null {
   if (!band.inOrders) return [band.from, band.to];
   return runningSpeedHz === null ? null : [band.from * runningSpeedHz, band.to * runningSpeedHz];
 }
@@ -179,7 +182,7 @@ export function finerSpacing(
   return `${spacing}, with recordings of at least ${length} (${advisedAverages} averages)`;
 }
 
-function inBandUnit(
+export function inBandUnit(
   band: Band,
   hz: number,
   runningSpeedHz: number | null,

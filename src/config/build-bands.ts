@@ -1,5 +1,7 @@
 import { integrationsBetween } from '../signal/integration.ts';
 import { type BandCase, judgeBand } from './bands.ts';
+import { judgeEnvelopeBand } from './envelope-bands.ts';
+import { hasEnvelope } from './envelope-settings.ts';
 import { type Build, tellDoubledIds, valueOr, valuesOf } from './layers.ts';
 import type { bandKeys } from './schema-machines.ts';
 import type { Written } from './shape.ts';
@@ -73,6 +75,7 @@ function buildBand(
   if (id === null || from === null || to === null) return null;
   if (refusedKey(written, 'unit') || refusedKey(written, 'quantity')) return null;
   const quantity = asked?.value ?? unit?.value.quantity ?? point.quantity;
+  const ofEnvelope = written.value.keys.of?.value === 'envelope';
   if (unit !== null && unit.value.quantity !== quantity) {
     const what = `band '${id.value}' is ${quantity}, its unit ${unit.value.text} is ${unit.value.quantity}`;
     build.reading.problem(
@@ -84,12 +87,20 @@ function buildBand(
     return null;
   }
   if (!edgesAgree(build, id.value, from, to)) return null;
-  if (!canBeGiven(build, written, { id: id.value, quantity, inOrders: from.value.inOrders, own }, point))
+  if (
+    !canBeGiven(
+      build,
+      written,
+      { id: id.value, ofEnvelope, quantity, inOrders: from.value.inOrders, own },
+      point,
+    )
+  )
     return null;
   const usual = usualDisplayUnit(quantity, point.signal?.samplesIn.text);
   return {
     id: id.value,
     formerly: valuesOf(formerly),
+    ...(ofEnvelope ? { of: 'envelope' as const } : {}),
     quantity,
     from: from.value.value,
     to: to.value.value,
@@ -122,13 +133,16 @@ function canBeGiven(
   written: WrittenBand,
   band: {
     readonly id: string;
+    readonly ofEnvelope: boolean;
     readonly quantity: Quantity;
     readonly inOrders: boolean;
     readonly own: boolean;
   },
   { quantity: measured, sidecar, situation }: Parameters<typeof buildBands>[2],
 ): boolean {
-  const derived = integrationsBetween(measured, band.quantity);
+  const derived = band.ofEnvelope
+    ? envelopeOfQuantity(measured, band.quantity)
+    : integrationsBetween(measured, band.quantity);
   if (typeof derived === 'object') {
     if (band.own)
       reading.problem(
@@ -147,12 +161,20 @@ function canBeGiven(
   return false;
 }
 
+/** An envelope is of what is measured: its lines are rates of repetition, which no integration weighs. */
+function envelopeOfQuantity(measured: Quantity, asked: Quantity): 0 | { readonly reason: string } {
+  if (!hasEnvelope(measured))
+    return { reason: `${measured} has no envelope, only acceleration, velocity and sound pressure` };
+  return asked === measured ? 0 : { reason: `the envelope of ${measured} is ${measured}, not ${asked}` };
+}
+
 function refusedKey({ value: { has, keys } }: WrittenBand, name: keyof typeof bandKeys): boolean {
   return has.has(name) && keys[name] === null;
 }
 
 function tellFindings({ reading }: Build, { band, written }: BuiltBand, situation: BandCase): void {
-  for (const { refused, edge, rule, what, right, instead } of judgeBand(band, situation)) {
+  const judge = band.of === 'envelope' ? judgeEnvelopeBand : judgeBand;
+  for (const { refused, edge, rule, what, right, instead } of judge(band, situation)) {
     const at = written.value.keys[edge]?.at ?? written.at;
     if (refused)
       reading.problem(at, what, instead === null ? right : reading.write(at, asYaml(instead)), rule);

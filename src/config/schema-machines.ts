@@ -34,6 +34,9 @@ const edge = scalar(
 export const bandKeys = {
   id: key(id('overall'), 'Names the band in limits, trends and mails.', { required: true }),
   formerly: key(formerIds, 'Earlier ids: the series are carried over.'),
+  of: key(choice(['spectrum', 'envelope'], 'envelope'), 'envelope: a band of the envelope spectrum.', {
+    fallback: 'spectrum',
+  }),
   quantity: key(choice(quantities, 'velocity'), 'What the level is of.', {
     fallback: "the unit's quantity, else the point's",
   }),

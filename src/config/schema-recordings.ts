@@ -3,6 +3,7 @@ import { parseFilePattern, parseFilesRegex, parseStartPattern } from './file-pat
 import { parseSampleUnit, parseSampleValue } from './level.ts';
 import { parseDelay, understood } from './quantity.ts';
 import { parseDatasetPath } from './sample-layout.ts';
+import { envelope } from './schema-envelope.ts';
 import { duration, frequency, percent } from './schema-values.ts';
 import { choice, list, plainNumber, ruled, type Shape, scalar, words } from './shape.ts';
 import { key, map } from './shape-map.ts';
@@ -162,6 +163,11 @@ export const analysisKeys = {
     choice(['mean', 'linear']),
     'What is taken off each segment: its mean, or its straight line where a signal drifts.',
     { fallback: 'mean' },
+  ),
+  envelope: key(
+    envelope,
+    'Spectrum of the demodulated high-frequency band, in which bearing damage shows first.',
+    { fallback: 'where a band of the envelope or a rolling bearing asks for it' },
   ),
   skip_start: key(
     duration(0, 600_000, '1 s'),
