@@ -1,4 +1,5 @@
 import type { RecordingStart } from '../acquisition/start-time.ts';
+import { looksDead } from '../detection/trouble.ts';
 import { endAttempt, noteSeen } from '../store/intake-marks.ts';
 import type { Writer } from '../store/lent-connection.ts';
 import { findTaken, insertRecording, type StoredRecording } from '../store/recordings.ts';
@@ -157,11 +158,17 @@ async function storeEvaluated(
     condition: one.condition,
     runningHours: one.runningHours,
     evaluated: judged && !time.late,
-    inTrend: judged && one.condition !== null,
+    inTrend: judged && one.condition !== null && !isOfDeadSensor(one),
     atAlarm: one.changes.some(({ journal }) => journal.length > 0),
   });
   for (const change of one.changes) await saveAlarmChange(writer, change, context);
   if (judged) await learn(writer, view, one.point, Math.round(time.usedMs));
+}
+
+/** What a dead sensor sends is held against limits, but no median and no baseline learns from it. */
+function isOfDeadSensor({ measurement, machineState }: Evaluated): boolean {
+  const flags = measurement.quality.map(({ flag }) => flag);
+  return looksDead(flags, machineState, measurement.waveform !== null)?.present === true;
 }
 
 async function noteArrivals(

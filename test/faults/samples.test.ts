@@ -154,6 +154,27 @@ describe('samples that are not what they should be', () => {
     expect(await service.standing()).toEqual([]);
   });
 
+  it('flat, saturated or silent: its levels are kept, held against limits, and stay out of the trend', async () => {
+    const service = await trial({ ...patient, limit: 'latching: false' });
+    for (const hour of [0, 1, 2]) await measured(service, hour, wav([1], hour));
+    const flat = (offset: number) =>
+      wav([Float64Array.from({ length: frames }, (_, n) => offset + (n % 2) * 1e-9)]);
+    expect((await measured(service, 3, flat(0.5))).flags).toEqual(['flat']);
+    const stuck = signal(40, 4).map((value) => Math.max(-100, Math.min(99.99, 3 * value + 95)));
+    const saturated = await measured(service, 4, wav([stuck], 4));
+    expect(saturated.flags).toContain('saturated');
+    await measured(service, 5, wav([stuck], 5));
+    await measured(service, 6, wav([1.1], 6));
+    const levels = await service.rows('levels', 'used_ms, level, in_trend', 'order by used_ms');
+    const inTrend = levels.map(({ used_ms, in_trend }) => [
+      ((used_ms as number) - beginMs) / hourMs,
+      in_trend,
+    ]);
+    expect(inTrend.filter(([, isIn]) => isIn === 1).map(([hour]) => hour)).toEqual([0, 1, 2, 6]);
+    expect(inTrend.filter(([, isIn]) => isIn === 0).map(([hour]) => hour)).toEqual([3, 4, 5]);
+    expect(await service.journal()).toContain('raised overall-fixed-upper pump-2/de-v');
+  });
+
   it('digital silence is a flat signal of a dead sensor, not a file that is not all there', async () => {
     const service = await trial(patient);
     for (const hour of [0, 1]) {
