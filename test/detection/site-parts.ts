@@ -154,6 +154,7 @@ export function measurementWith({ levels = [], flags = [], averages = 31, ...par
     },
     levels,
     peaks: [],
+    evidence: [],
     spectrum: null,
     quality: flags.map((flag) => ({ flag, detail: `flagged ${flag}` })),
     settingsFingerprint: 's',
