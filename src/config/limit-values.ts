@@ -117,7 +117,7 @@ function tellCeilings(
     if (value === null || at === undefined || value <= most * (1 + 1e-9)) continue;
     reading.warn(
       at,
-      `${severity} ${keys[severity]?.value} of ${limit.shown} stands above ${printLevel(most, limit.band.band.display)}, the most that ${zonesName(answer.zones)} advises (1.25 x ${boundary})`,
+      `${severity} ${keys[severity]?.value} of ${limit.shown} stands above ${printLevel(most, limit.band.band.display, 4)}, the most that ${zonesName(answer.zones)} advises (1.25 x ${boundary})`,
       `ceiling of ${severity}, ${limit.zoneCase.machineId}`,
     );
   }

@@ -78,6 +78,12 @@ export function zonesOfBand(of: ZoneCase, band: Band): ZonesAnswer {
   const { zones, speedHz } = machine;
   const housing = notOnHousing(of.point, zones);
   if (housing !== null) return { ok: false, why: housing, right: 'give it limits of kind fixed' };
+  if (band.of === 'envelope')
+    return {
+      ok: false,
+      why: `the band is of the envelope, ${zones.name} of the vibration itself`,
+      right: 'give it limits of kind fixed',
+    };
   const perOrder = band.inOrders ? speedHz : 1;
   const edges = { quantity: band.quantity, fromHz: band.from * perOrder, toHz: band.to * perOrder };
   const answer = boundariesFor(zones, edges, speedHz * 60);

@@ -221,6 +221,6 @@ async function limitFromJournal(reader: Reader, event: UntoldEvent, id: string):
     side: reason.side === 'lower' ? 'lower' : 'upper',
     alert: number(reason.alert),
     danger: number(reason.danger),
-    ...(reason.reasons == null ? {} : { reasons: reason.reasons as LimitReasons }),
+    ...(reason.why == null ? {} : { reasons: reason.why as LimitReasons }),
   };
 }

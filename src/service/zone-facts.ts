@@ -2,7 +2,7 @@ import type { AlarmFacts, ZoneFacts } from '../advisory/facts.ts';
 import { bandZone, isJudged, machineZone, type ZoneReading } from '../assessment/zone.ts';
 import { zoneChange } from '../assessment/zone-change.ts';
 import { zonesName } from '../config/machine-zones.ts';
-import type { Machine, Point } from '../config/site.ts';
+import type { Band, Machine, Point } from '../config/site.ts';
 import { worstZone } from '../config/zone-tables.ts';
 import { readingOf } from '../detection/machine-state.ts';
 import type { Measurement } from '../manipulation/measurement.ts';
@@ -51,6 +51,11 @@ export function zoneFacts(
   };
 }
 
+/** Envelopes have the quantity of a vibration, but are none. */
+function ofVibration({ bands }: Point): readonly Band[] {
+  return bands.filter((band) => band.of !== 'envelope');
+}
+
 /** A stored recording of a point as its zones see it; a level keeps the edges between which it was measured. */
 export function zoneReading(
   view: SiteView,
@@ -64,7 +69,7 @@ export function zoneReading(
     point,
     state: measurement.machineState,
     speedRpm: measurement.speed?.rpm ?? (runningSpeedHz === null ? null : runningSpeedHz * 60),
-    levels: point.bands.flatMap((band) => {
+    levels: ofVibration(point).flatMap((band) => {
       const bandId = view.ids.bandId(machine.id, point.id, band.id);
       const level = measurement.levels.find((one) => one.bandId === bandId);
       const edges = level === undefined ? undefined : series.get(level.seriesId);
@@ -141,7 +146,7 @@ export function measuredReading(machine: Machine, point: Point, measurement: Mea
     point,
     state: readingOf(machine.running, measurement) === false ? 'stopped' : 'running',
     speedRpm: measurement.speed?.rpm ?? (runningSpeedHz === null ? null : runningSpeedHz * 60),
-    levels: measurement.levels,
+    levels: measurement.levels.filter(({ bandId }) => ofVibration(point).some(({ id }) => id === bandId)),
     flags: measurement.quality.map(({ flag }) => flag),
   };
 }

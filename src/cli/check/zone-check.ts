@@ -28,7 +28,7 @@ export function zoneCheck(machine: Machine, check: PointCheck): ZoneCheck | null
   const measuredRpm = from === 'ledger' ? (ledger?.measurement?.speed?.rpm ?? null) : null;
   const speedRpm = measuredRpm ?? nominalRpm;
   const measured = check.bands.flatMap(({ band, now }) =>
-    now === null ? [] : [{ bandId: band.id, ...edgesOf(band, speedRpm), ...now }],
+    now === null || band.of === 'envelope' ? [] : [{ ...now, bandId: band.id, ...edgesOf(band, speedRpm) }],
   );
   const reading: ZoneReading = {
     point,
@@ -39,7 +39,8 @@ export function zoneCheck(machine: Machine, check: PointCheck): ZoneCheck | null
   };
   const bands = new Map<string, ZoneAnswer>();
   for (const band of point.bands) {
-    if (band.quantity !== 'velocity' && band.quantity !== 'displacement') continue;
+    if (band.of === 'envelope' || (band.quantity !== 'velocity' && band.quantity !== 'displacement'))
+      continue;
     const level = measured.find(({ bandId }) => bandId === band.id);
     bands.set(
       band.id,

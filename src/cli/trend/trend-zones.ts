@@ -16,7 +16,8 @@ export interface TrendZones {
 export function trendZones({ site, point, band, trend }: ShownTrend): TrendZones | null {
   const machine = site.machines.find(({ id }) => id === point.machineId);
   const zones = machine?.zones ?? null;
-  if (machine === undefined || zones === null || !isJudged(zones, band.quantity)) return null;
+  if (machine === undefined || zones === null || band.of === 'envelope') return null;
+  if (!isJudged(zones, band.quantity)) return null;
   const nominalRpm = machine.runningSpeedHz === null ? null : machine.runningSpeedHz * 60;
   const answerOf = (row: TrendRow): ZoneAnswer | null => {
     const edges = trend.series.find(({ id }) => id === row.seriesId);
