@@ -1,11 +1,25 @@
+import type { BuiltMachine } from './build-machines.ts';
 import type { BuiltPoint } from './build-point.ts';
 import { commonName, type ExpandedPattern, expandPattern } from './file-pattern.ts';
 import type { Build } from './layers.ts';
 import { shorten } from './quantity.ts';
-import { pointPath } from './site.ts';
+import { type Point, pointPath } from './site.ts';
+import type { Span } from './site-text.ts';
+
+/** A point, or the pulses of a machine: takes one channel of the files of a point. */
+interface Claimant {
+  /** As people name it. */
+  readonly name: string;
+  readonly isPulses: boolean;
+  readonly point: Point;
+  readonly channel: number | string;
+  readonly channelAt: Span;
+  /** False where the channel is not written: 1. */
+  readonly isWritten: boolean;
+}
 
 interface Claim {
-  readonly built: BuiltPoint;
+  readonly built: Claimant;
   readonly pattern: ExpandedPattern;
   /** Literal text before the first <any>. */
   readonly head: string;
@@ -16,17 +30,17 @@ interface Claim {
 const mostSteps = 2e8;
 
 /**
- * Two points that may take the same channel of the same file: the pattern of one file name that both take is the
- * proof. Patterns are compared with the ids in place, so `<machine><any>.wav` of blower-1 also takes what blower-10
- * sends.
+ * Two points that may take the same channel of the same file, or a point that takes a machine's pulses for vibration:
+ * the pattern of one file name that both take is the proof. Patterns are compared with the ids in place, so
+ * `<machine><any>.wav` of blower-1 also takes what blower-10 sends. Machines on one shaft may share their pulses.
  */
-export function tellDoubleClaims(build: Build, points: readonly BuiltPoint[]): void {
-  const byChannel = new Map<string, BuiltPoint[]>();
-  for (const built of points) {
-    const channel = String(built.point.channel);
+export function tellDoubleClaims(build: Build, machines: readonly BuiltMachine[]): void {
+  const byChannel = new Map<string, Claimant[]>();
+  for (const claimant of machines.flatMap((one) => [...one.points.map(claimantOf), ...pulseClaimants(one)])) {
+    const channel = String(claimant.channel);
     const group = byChannel.get(channel);
-    if (group === undefined) byChannel.set(channel, [built]);
-    else group.push(built);
+    if (group === undefined) byChannel.set(channel, [claimant]);
+    else group.push(claimant);
   }
   let left = mostSteps;
   for (const group of byChannel.values()) {
@@ -38,7 +52,8 @@ export function tellDoubleClaims(build: Build, points: readonly BuiltPoint[]): v
       open = open.filter(({ head }) => claim.head.startsWith(head));
       for (const earlier of open) {
         // Doubled ids are told already.
-        if (pointPath(earlier.built.point) === pointPath(claim.built.point)) continue;
+        if (earlier.built.name === claim.built.name) continue;
+        if (earlier.built.isPulses && claim.built.isPulses) continue;
         if (left <= 0) break;
         left -= earlier.length * claim.length;
         const name = commonName(earlier.pattern, claim.pattern);
@@ -56,7 +71,34 @@ export function tellDoubleClaims(build: Build, points: readonly BuiltPoint[]): v
   }
 }
 
-function claimOf(built: BuiltPoint): Claim[] {
+function claimantOf({ point, channelAt, idAt }: BuiltPoint): Claimant {
+  const { channel } = point;
+  return {
+    name: pointPath(point),
+    isPulses: false,
+    point,
+    channel,
+    channelAt,
+    isWritten: channelAt !== idAt,
+  };
+}
+
+/** The pulses are read from every file that a point of the machine takes. */
+function pulseClaimants({ machine, points, pulsesAt }: BuiltMachine): Claimant[] {
+  const { pulses } = machine.speed;
+  if (pulses === null || pulsesAt === null) return [];
+  const name = `the pulses of ${machine.id}`;
+  return points.map(({ point }) => ({
+    name,
+    isPulses: true,
+    point,
+    channel: pulses.channel,
+    channelAt: pulsesAt,
+    isWritten: true,
+  }));
+}
+
+function claimOf(built: Claimant): Claim[] {
   const { point } = built;
   if (point.recordings.files === null) return [];
   const pattern = expandPattern(point.recordings.files, point.machineId, point.id);
@@ -66,24 +108,23 @@ function claimOf(built: BuiltPoint): Claim[] {
   return [{ built, pattern, head, length }];
 }
 
-function tellEqualRegexes(build: Build, group: readonly BuiltPoint[]): void {
-  const seen = new Map<string, BuiltPoint>();
+function tellEqualRegexes(build: Build, group: readonly Claimant[]): void {
+  const seen = new Map<string, Claimant>();
   for (const built of group) {
     const regex = built.point.recordings.filesRegex;
     if (regex === null) continue;
     const earlier = seen.get(regex);
     if (earlier === undefined) seen.set(regex, built);
-    else tell(build, earlier, built, `by the same files_regex`);
+    else if (!earlier.isPulses || !built.isPulses) tell(build, earlier, built, `by the same files_regex`);
   }
 }
 
-function tell({ reading }: Build, one: BuiltPoint, other: BuiltPoint, file: string): void {
+function tell({ reading }: Build, one: Claimant, other: Claimant, file: string): void {
   const [first, second] = one.channelAt.from <= other.channelAt.from ? [one, other] : [other, one];
-  const { channel } = second.point;
-  const what = `${pointPath(second.point)} and ${pointPath(first.point)} (line ${reading.lineOf(first.channelAt)}) claim channel ${channel} of the same file, such as ${file}`;
+  const { channel } = second;
+  const what = `${second.name} and ${first.name} (line ${reading.lineOf(first.channelAt)}) claim channel ${channel} of the same file, such as ${file}`;
   const another = typeof channel === 'number' ? String(channel + 1) : 'the name of another column';
-  const written =
-    second.channelAt === second.idAt ? `add: channel: ${another}` : reading.write(second.channelAt, another);
+  const written = second.isWritten ? reading.write(second.channelAt, another) : `add: channel: ${another}`;
   reading.problem(
     second.channelAt,
     what,

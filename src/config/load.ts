@@ -80,10 +80,7 @@ function zoneTable(standard: ZoneStandard): ZoneTable {
 function buildSite(build: Build, keys: WrittenSite, file: string, text: string): Site | null {
   const built = buildMachines(build, keys);
   const machines = built.map(({ machine }) => machine);
-  tellDoubleClaims(
-    build,
-    built.flatMap(({ points }) => points),
-  );
+  tellDoubleClaims(build, built);
   const mail = buildMail(build, keys.mail?.value === undefined ? null : keys.mail, machines);
   const summary = buildSummary(build, keys, mail, machines);
   const folders = buildFolders(build, keys);

@@ -1,11 +1,12 @@
 import { parseDisplayUnit } from './level.ts';
 import { conditions } from './operating-conditions.ts';
-import { type Parsed, parseEdge, refused, shorten, understood } from './quantity.ts';
+import { parseEdge } from './quantity.ts';
 import { parseRunning } from './running-rule.ts';
 import { limits } from './schema-limits.ts';
 import { parts } from './schema-parts.ts';
 import { analysis, areaName, recordings } from './schema-recordings.ts';
-import { duration, formerIds, frequency, id } from './schema-values.ts';
+import { speedKeys } from './schema-speed.ts';
+import { channel, duration, formerIds, frequency, id } from './schema-values.ts';
 import { sensorPlaces, zoneKeys } from './schema-zones.ts';
 import { parseSensitivity } from './sensitivity.ts';
 import { choice, list, ruled, scalar, words } from './shape.ts';
@@ -65,11 +66,7 @@ export const pointKeys = {
   sensor_on: key(choice(sensorPlaces), 'Where the sensor sits; evaluation zones hold for bearing housings.', {
     fallback: 'bearing-housing; shaft where displacement is measured',
   }),
-  channel: key(
-    scalar(parseChannel, { example: '1', free: true }),
-    'Channel of the file: a number from 1, or a column name.',
-    { fallback: '1' },
-  ),
+  channel: key(channel, 'Channel of the file: a number from 1, or a column name.', { fallback: '1' }),
   quantity: key(choice(quantities), 'What the sensor measures.', { required: true }),
   sensitivity: key(
     scalar(parseSensitivity, { example: '100 mV/g' }),
@@ -80,19 +77,6 @@ export const pointKeys = {
   bands: key(bands, 'Bands of this point, added to those of its machine; the same id replaces.'),
   limits: key(limits, 'Limits of this point, added to those of its machine; the same id replaces.'),
 };
-
-function parseChannel(text: string): Parsed<number | string> {
-  const written = text.trim();
-  if (/^0+$/.test(written)) return refused('channels count from 1', '1');
-  if (/^0\d+$/.test(written))
-    return refused(`'${shorten(text)}' is a number with a 0 before it`, written.replace(/^0+/, ''));
-  if (/^\d+$/.test(written)) {
-    return Number(written) <= 4096
-      ? understood(Number(written))
-      : refused(`'${shorten(text)}' is above 4096 channels`);
-  }
-  return understood(written);
-}
 
 export const machineTypeKeys = {
   recordings: key(recordings, 'What differs for machines of this type.'),
@@ -108,6 +92,7 @@ export const machineKeys = {
   area: key(areaName, 'Part of the site.'),
   type: key(id('blower-small'), 'One of machine_types.'),
   running_speed: key(frequency(0.01, 5000, '2970 rpm'), 'Nominal speed of the shaft.'),
+  speed: key(map(speedKeys), 'How the running speed of each recording is found, where no sidecar says it.'),
   running: key(
     scalar(parseRunning, { example: 'speed above 300 rpm' }),
     "When it counts as running: 'speed above 300 rpm', 'sidecar', 'level of BAND above 0.5 mm/s'.",

@@ -64,6 +64,22 @@ export function percent(least: number, most: number, example: string): Shape<num
   return scalar(parse, { example, pattern: `${numberPattern}%$` });
 }
 
+function parseChannel(text: string): Parsed<number | string> {
+  const written = text.trim();
+  if (/^0+$/.test(written)) return refused('channels count from 1', '1');
+  if (/^0\d+$/.test(written))
+    return refused(`'${shorten(text)}' is a number with a 0 before it`, written.replace(/^0+/, ''));
+  if (/^\d+$/.test(written)) {
+    return Number(written) <= 4096
+      ? understood(Number(written))
+      : refused(`'${shorten(text)}' is above 4096 channels`);
+  }
+  return understood(written);
+}
+
+/** A channel of a file: a number from 1, or the name of a column. */
+export const channel = scalar(parseChannel, { example: '1', free: true });
+
 /** Of the mail standards only what a typing error breaks: one @, no spaces, no brackets. */
 function parseAddress(text: string): Parsed<string> {
   const written = text.trim();

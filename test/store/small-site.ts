@@ -1,5 +1,6 @@
 import { createHash } from 'node:crypto';
 import type { Band, Limit, Machine, Point, Site } from '../../src/config/site.ts';
+import { usualSpeed } from '../../src/config/speed-settings.ts';
 import type { Measurement } from '../../src/manipulation/measurement.ts';
 
 /** `id` or `id<former` or `id<former,older`. */
@@ -98,6 +99,7 @@ export function smallSite(tree: Tree): { readonly site: Site; readonly text: str
       runningSpeedHz: null,
       running: null,
       afterStartMs: 0,
+      speed: usualSpeed,
       stoppedExpectedMs: 0,
       criticality: 'B',
       like: [],
@@ -180,6 +182,7 @@ export function measurementOf(
       atLeast: false,
     })),
     peaks: [],
+    evidence: [],
     spectrum: null,
     quality: [],
     settingsFingerprint: 'all-1',
