@@ -1,7 +1,14 @@
 import type { Part, RollingBearing } from '../config/parts.ts';
 import { type Comb, type Family, findFamily, finerComb } from './families.ts';
 import { bearingMultiples, slipAllowance } from './fault-frequencies.ts';
-import { FreeLines, type SearchedSpectrum, type SeenShaft } from './standing-lines.ts';
+import {
+  FreeLines,
+  isSeparable,
+  nearestHarmonic,
+  type SearchedSpectrum,
+  type SeenShaft,
+  separationLines,
+} from './standing-lines.ts';
 
 /** A fault that a rolling bearing can show, and the family of lines it would make. */
 export type BearingFault = 'outer race' | 'inner race' | 'rolling element' | 'cage';
@@ -13,7 +20,7 @@ export interface Finding {
   readonly partId: string;
   readonly fault: BearingFault;
   readonly grade: Grade;
-  /** Chance that lines like these stand out by accident, all families looked for in this spectrum taken together. */
+  /** Chance that lines like these stand out by accident, all families looked for in this recording taken together. */
   readonly chance: number;
   /** Fundamental of the family as observed, and by formula and observed speed, Hz. */
   readonly observedHz: number;
@@ -29,7 +36,8 @@ const clearChance = 1e-5;
 const strongChance = 1e-8;
 const strongDb = 10;
 
-interface Suspect extends Comb {
+/** A fault of a part, and where its family would stand. */
+export interface Suspect extends Comb {
   readonly part: RollingBearing;
   readonly fault: BearingFault;
 }
@@ -43,13 +51,14 @@ export interface ObservedSpeed {
 /**
  * Faults of rolling bearings for which families of lines stand out of a spectrum, least likely by accident first. Lines
  * that cannot be told from a shaft's harmonic count for nothing; a family that is the part of a finer comb is none; the
- * lines of a finding are taken away before the next is looked for.
+ * lines of a finding are taken away before the next is looked for. `spectra`: how many of this recording are searched.
  */
 export function findFaults(
   spectrum: SearchedSpectrum,
   parts: readonly Part[],
   speed: ObservedSpeed,
   shafts: readonly SeenShaft[],
+  spectra = 1,
 ): Finding[] {
   const suspects = parts.flatMap((part) => (part.kind === 'rolling-bearing' ? suspectsOf(part, speed) : []));
   const findings: Finding[] = [];
@@ -61,7 +70,7 @@ export function findFaults(
       .flatMap((suspect) => {
         const family = findFamily(free, suspect);
         if (family === null) return [];
-        return [{ suspect, family, chance: Math.min(1, family.chance * suspects.length) }];
+        return [{ suspect, family, chance: Math.min(1, family.chance * suspects.length * spectra) }];
       })
       .filter(({ chance }) => chance <= mostChance)
       .sort((a, b) => a.chance - b.chance);
@@ -100,7 +109,7 @@ function likeliest(ranked: readonly Explained[]): Explained | null {
   if (first === undefined) return null;
   const lines = new Set(first.family.lines.map(({ line }) => line));
   return [first, ...others.filter(({ family }) => sharesMost(family, lines))].reduce((best, one) =>
-    one.chance / fit(one) < best.chance / fit(best) ? one : best,
+    one.chance / likeness(one) < best.chance / likeness(best) ? one : best,
   );
 }
 
@@ -109,7 +118,7 @@ const usualSlip = 0.008;
 const withoutSidebands = 0.1;
 
 /** How well a family fits the picture of its fault, 1 at best. */
-function fit({ suspect, family }: Explained): number {
+function likeness({ suspect, family }: Explained): number {
   const beside = (family.hz / suspect.hz - 1) / usualSlip;
   const bare = suspect.sidebandHz !== null && family.lines.every(({ sideband }) => sideband === 0);
   return Math.exp(-0.5 * beside * beside) * (bare ? withoutSidebands : 1);
@@ -119,7 +128,7 @@ function fit({ suspect, family }: Explained): number {
 const toldApart = 100;
 
 function rivals(one: Explained, best: Explained): boolean {
-  return one.chance / fit(one) < (toldApart * best.chance) / fit(best);
+  return one.chance / likeness(one) < (toldApart * best.chance) / likeness(best);
 }
 
 function sharesMost(family: Family, taken: ReadonlySet<unknown>): boolean {
@@ -167,4 +176,30 @@ function gradeOf({ lines }: Family, chance: number): Grade {
   const highest = Math.max(...lines.map(({ line }) => line.aboveFloorDb));
   if (chance <= strongChance && harmonics.length >= 3 && highest >= strongDb) return 'strong';
   return chance <= clearChance ? 'clear' : 'weak';
+}
+
+export interface Inseparable {
+  readonly suspect: Suspect;
+  /** Of the running speed. */
+  readonly harmonic: number;
+  /** Line spacing at which the two are two lines, Hz; null: none, the formula gives the harmonic itself. */
+  readonly neededHz: number | null;
+}
+
+/** Faults whose fundamental, by formula, cannot be told from a harmonic of the running speed at this line spacing. */
+export function inseparable(
+  parts: readonly Part[],
+  speed: ObservedSpeed,
+  lineSpacingHz: number,
+): Inseparable[] {
+  const shaft = { ...speed, harmonics: Number.POSITIVE_INFINITY };
+  return parts
+    .flatMap((part) => (part.kind === 'rolling-bearing' ? suspectsOf(part, speed) : []))
+    .filter(({ hz }) => hz > 0.5 * speed.hz && !isSeparable(hz, shaft, lineSpacingHz))
+    .map((suspect) => {
+      const harmonic = nearestHarmonic(suspect.hz, shaft);
+      const distance = Math.abs(suspect.hz - harmonic * speed.hz) - harmonic * speed.uncertaintyHz;
+      const neededHz = distance / separationLines;
+      return { suspect, harmonic, neededHz: neededHz > 0.002 * speed.hz ? neededHz : null };
+    });
 }

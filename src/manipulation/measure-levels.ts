@@ -141,6 +141,7 @@ function spectralPeak(peak: Peak, speedHz: number | null): SpectralPeak {
     aboveFloorDb: peak.aboveFloorDb,
     kind: peak.kind,
     order: speedHz ? peak.frequencyHz / speedHz : null,
+    names: [],
   };
 }
 

@@ -165,6 +165,7 @@ export class Measurer {
       peaks: levels?.peaks ?? [],
       spectrum: spectrum && shownSpectrum(spectrum, result?.highest ?? null),
       quality: [...found, ...own],
+      evidence: [],
       settingsFingerprint: settingsFingerprint(this.#fingerprintSettings(), point.bands),
       ...this.#share(spectrum),
     };

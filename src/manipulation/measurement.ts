@@ -1,6 +1,7 @@
 import type { QualityFinding } from '../acquisition/recording.ts';
 import type { Quantity } from '../config/site.ts';
 import type { AveragedDensity, AveragingSettings } from '../signal/averaging.ts';
+import type { Evidence } from './evidence.ts';
 
 /**
  * What one recording says of one measuring point. Levels are r.m.s. in the SI unit of their quantity
@@ -28,6 +29,8 @@ export interface Measurement {
   readonly peaks: readonly SpectralPeak[];
   readonly spectrum: Spectrum | null;
   readonly quality: readonly QualityFinding[];
+  /** What its lines say of the machine's parts. */
+  readonly evidence: readonly Evidence[];
   /** Hash of everything that moves any number of this measurement (settings of the whole point). */
   readonly settingsFingerprint: string;
   /** What it brings into the average over several recordings; left out where its point does not pool. */
@@ -116,6 +119,8 @@ export interface SpectralPeak {
   readonly kind: 'tone' | 'hump';
   /** Multiple of the running speed; null without a speed. */
   readonly order: number | null;
+  /** What may make the line, in plain words; empty where nothing is known to lie there, or too much. */
+  readonly names: readonly string[];
 }
 
 /** One-sided density, (SI unit)²/Hz, in single precision: it is kept for people to look at, levels are not made from it. */

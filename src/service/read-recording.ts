@@ -11,17 +11,21 @@ import {
 } from '../acquisition/recording.ts';
 import { SampleQuality } from '../acquisition/sample-quality.ts';
 import { appliedSignal, scalingOf } from '../acquisition/scaling.ts';
+import type { Part } from '../config/parts.ts';
 import { nothingSaid, type SampleLayout, sameLayout } from '../config/sample-layout.ts';
 import { type Point, pointPath } from '../config/site.ts';
 import { largestSample, Measurer } from '../manipulation/measure.ts';
 import type { Measurement } from '../manipulation/measurement.ts';
 import { runningSpeed } from '../manipulation/running-speed.ts';
+import { assessed } from './assess-measurement.ts';
 
 /** A point that takes part in a recording, with what its machine adds. */
 export interface PointTask {
   readonly point: Point;
   /** Nominal running speed of its machine; null where the site file has none. */
   readonly nominalHz: number | null;
+  /** Of its machine; without it: none. */
+  readonly parts?: readonly Part[];
 }
 
 export interface RecordingRead {
@@ -55,8 +59,11 @@ export function readRecording(
   const quality: QualityFinding[] =
     end.truncated === null ? [] : [{ flag: 'too-short', detail: `the file is cut short: ${end.truncated}` }];
   return {
-    measurements: fed.map(({ measurer, task: { nominalHz } }, index) =>
-      measurer.finish(runningSpeed({ sidecarRpm, nominalHz }), (density) => onDensity(index, density)),
+    measurements: fed.map(({ measurer, task: { nominalHz, parts } }, index) =>
+      assessed(
+        measurer.finish(runningSpeed({ sidecarRpm, nominalHz }), (density) => onDensity(index, density)),
+        parts,
+      ),
     ),
     missing,
     quality,

@@ -156,6 +156,7 @@ export class TakeFiles {
       points: ready.points.map((point) => ({
         point,
         nominalHz: view.machine(point.machineId).runningSpeedHz,
+        parts: view.machine(point.machineId).parts,
       })),
     });
     if (answer.outcome !== 'no-worker') this.#answered.add(attemptKey(ready.header.look));

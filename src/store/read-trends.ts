@@ -99,6 +99,7 @@ export async function peaksOf(reader: Reader, measurementId: number): Promise<Sp
     aboveFloorDb: row.above_floor_db,
     kind: row.kind as SpectralPeak['kind'],
     order: row.order_of_speed,
+    names: row.names === null ? [] : (JSON.parse(row.names) as string[]),
   }));
 }
 

@@ -44,6 +44,7 @@ export interface LedgerTables {
   series: SeriesTable;
   levels: LevelsTable;
   peaks: PeaksTable;
+  evidence: EvidenceTable;
   spectra: SpectraTable;
   /** Recordings that wait to be averaged together, one row a point. */
   open_pools: OpenPoolsTable;
@@ -220,6 +221,20 @@ export interface PeaksTable {
   above_floor_db: number;
   kind: string;
   order_of_speed: number | null;
+  /** JSON list; null: none. */
+  names: string | null;
+}
+
+export interface EvidenceTable {
+  measurement_id: number;
+  rank: number;
+  /** Id of the part in the site file. */
+  part: string;
+  fault: string;
+  /** weak | clear | strong | not separable */
+  grade: string;
+  /** JSON: everything that the assessment said. */
+  evidence: string;
 }
 
 export interface SpectraTable {

@@ -1,6 +1,7 @@
 import type { Insertable } from 'kysely';
 import type { Measurement, SpectralPeak } from '../manipulation/measurement.ts';
 import { conditionId } from './conditions.ts';
+import { insertEvidence } from './evidence.ts';
 import { jsonOfFinite } from './journal.ts';
 import type { Writer } from './lent-connection.ts';
 import { insertRows } from './many-rows.ts';
@@ -56,6 +57,7 @@ export async function insertMeasurement(
     .executeTakeFirstOrThrow();
   await insertLevels(writer, ids, entry, { pointId, measurementId: stored.id });
   await insertPeaks(writer, stored.id, measurement.peaks);
+  await insertEvidence(writer, stored.id, measurement.evidence);
   await insertSpectrum(writer, entry, { pointId, measurementId: stored.id });
   return stored.id;
 }
@@ -166,6 +168,7 @@ const peakColumns = [
   'above_floor_db',
   'kind',
   'order_of_speed',
+  'names',
 ] as const satisfies readonly (keyof PeaksTable)[];
 
 async function insertPeaks(
@@ -183,6 +186,7 @@ async function insertPeaks(
       above_floor_db: peak.aboveFloorDb,
       kind: peak.kind,
       order_of_speed: peak.order,
+      names: peak.names.length === 0 ? null : JSON.stringify(peak.names),
     }),
   );
   await insertRows(writer, 'peaks', peakColumns, rows);

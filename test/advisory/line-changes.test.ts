@@ -6,6 +6,7 @@ const peak = (frequencyHz: number, level: number, order: number | null = null): 
   frequencyHz,
   level,
   order,
+  names: [],
   aboveFloorDb: 20,
   kind: 'tone',
 });

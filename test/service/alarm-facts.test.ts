@@ -15,6 +15,7 @@ const peak = (frequencyHz: number, level: number, order: number | null = null): 
   aboveFloorDb: 20,
   kind: 'tone',
   order,
+  names: [],
 });
 
 async function bench(options: BenchOptions = {}) {

@@ -1,5 +1,7 @@
 import { expect, test } from 'vitest';
+import type { Evidence } from '../../src/manipulation/evidence.ts';
 import type { SpectralPeak } from '../../src/manipulation/measurement.ts';
+import { evidenceOf } from '../../src/store/evidence.ts';
 import type { Ledger } from '../../src/store/ledger.ts';
 import {
   measurementById,
@@ -59,6 +61,31 @@ const all = (ids: SiteIds, more: Partial<TrendRange> = {}): TrendRange => ({
   ...more,
 });
 
+const familyOfOuterRace: Evidence = {
+  partId: 'de-bearing',
+  fault: 'outer race',
+  frequency: 'BPFO',
+  spectrum: 'envelope',
+  grade: 'clear',
+  expectedHz: 89.3,
+  observedHz: 89.1,
+  harmonics: 3,
+  sidebands: 0,
+  aboveFloorDb: 14,
+  chance: 1e-6,
+  words: 'three harmonics of BPFO of the drive-end bearing in the envelope (89.1 Hz), 14 dB over the floor',
+};
+const besideSecondHarmonic: Evidence = {
+  partId: 'de-bearing',
+  fault: 'cage',
+  frequency: 'FTF',
+  spectrum: 'envelope',
+  grade: 'not separable',
+  expectedHz: 50.1,
+  neededLineSpacingHz: 0.05,
+  words: 'FTF of the drive-end bearing (50.1 Hz) cannot be told from 2x',
+};
+
 test('a measurement comes back from the ledger as it went in', async () => {
   const at = await withSite();
   const random = seededRandom(20261201);
@@ -70,6 +97,7 @@ test('a measurement comes back from the ledger as it went in', async () => {
       aboveFloorDb: 20,
       kind: index % 7 === 0 ? 'hump' : 'tone',
       order: index === 3 ? null : index + 1,
+      names: index === 5 ? ['6x', 'vane pass, impeller'] : [],
     }),
   );
   const density = Float32Array.from({ length: 6401 }, () => random.uniform());
@@ -83,6 +111,7 @@ test('a measurement comes back from the ledger as it went in', async () => {
       quality: [{ flag: 'clipped', detail: '3 samples' }],
       runningSaid: true,
       loadPercent: 80,
+      evidence: [familyOfOuterRace, besideSecondHarmonic],
     },
   );
   const id = await store(at, { measurement, usedMs: 1000 });
@@ -92,6 +121,7 @@ test('a measurement comes back from the ledger as it went in', async () => {
     spectrum: _spectrum,
     machineId: _machine,
     pointId: _point,
+    evidence: _evidence,
     ...plain
   } = measurement;
   const stored = await at.ledger.read((reader) => newestMeasurement(reader, at.ids.pointId('pump', 'de')));
@@ -117,6 +147,10 @@ test('a measurement comes back from the ledger as it went in', async () => {
     ]),
   );
   expect(await at.ledger.read((reader) => peaksOf(reader, id))).toEqual(peaks);
+  expect(await at.ledger.read((reader) => evidenceOf(reader, id))).toEqual([
+    familyOfOuterRace,
+    besideSecondHarmonic,
+  ]);
   const [spectrum] = await at.ledger.read((reader) =>
     newestSpectra(reader, at.ids.pointId('pump', 'de'), { limit: 5 }),
   );
@@ -250,6 +284,7 @@ test('a recording with 12 bands, 40 peaks and a spectrum costs less than 2 ms of
       aboveFloorDb: 20,
       kind: 'tone',
       order: null,
+      names: [],
     }),
   );
   const spectrum = { lineSpacingHz: 1.6, density: new Float32Array(8001).fill(1e-6) };

@@ -92,7 +92,7 @@ function peakJson(peak: SpectralPeak, unit: string) {
     unit,
     order: peak.order,
     above_floor_db: peak.aboveFloorDb,
-    names: [],
+    names: peak.names,
   };
 }
 

@@ -26,6 +26,7 @@ export function plansOfSite(site: Site, path: string): PlannedFile {
       points: points.map((point) => ({
         point,
         nominalHz: machines.get(point.machineId)?.runningSpeedHz ?? null,
+        parts: machines.get(point.machineId)?.parts,
       })),
       sidecar,
       clock: first.recordings.clock,

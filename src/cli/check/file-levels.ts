@@ -35,6 +35,7 @@ export class FileLevels {
         points: points.map((one) => ({
           point: one,
           nominalHz: this.#machines.get(one.machineId)?.runningSpeedHz ?? null,
+          parts: this.#machines.get(one.machineId)?.parts,
         })),
         sidecar,
         clock: point.recordings.clock,

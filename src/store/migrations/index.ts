@@ -3,6 +3,7 @@ import type { LedgerStep } from '../ledger-steps.ts';
 import { first } from './001-first.ts';
 import { baselines } from './002-baselines.ts';
 import { pooling } from './003-pooling.ts';
+import { evidence } from './004-evidence.ts';
 
 /** One step of the ledger's tables; `number` counts from 1 without gaps, in the order of `migrations`. */
 export interface Migration {
@@ -12,7 +13,7 @@ export interface Migration {
 }
 
 /** In this order; who adds one takes the next number. */
-export const migrations: readonly Migration[] = [first, baselines, pooling];
+export const migrations: readonly Migration[] = [first, baselines, pooling, evidence];
 
 interface Now {
   readonly wallMs: number;
