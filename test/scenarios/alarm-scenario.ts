@@ -18,6 +18,7 @@ import { limitOf, measurementOf, ruleOf } from './alarm-words.ts';
  *
  *   limit alert 2.8, danger 4.5, on-delay 2 recordings     begins anew with this limit (also: off-delay 3 h, deadband
  *                                                          10 %, say again at 25 %, latching, lower)
+ *   limit zone for 110 kW rigid with baseline 1            a limit of kind zone, by ISO 20816-3; without a baseline too
  *   runs by speed above 300 rpm | sidecar | level above 1  begins anew with this rule
  *   level 3.1, flag clipped, other 1.2                     a recording; nde-h in it too (also: at least, 80 % over 4.6,
  *                                                          averages 3, speed 0 rpm, said stopped, other flag flat)

@@ -1,4 +1,5 @@
 import { type QualityFlag, qualityFlags } from '../../src/acquisition/recording.ts';
+import { loadSite } from '../../src/config/load.ts';
 import type { Delay, Limit, RunningRule } from '../../src/config/site.ts';
 import type { BandLevel, Measurement } from '../../src/manipulation/measurement.ts';
 import { runningSpeed } from '../../src/manipulation/running-speed.ts';
@@ -30,6 +31,11 @@ export function measurementOf(parts: readonly string[]): Measurement {
 export function limitOf(parts: readonly string[]): Limit {
   let limit = limitWith({ alert: null, danger: null, deadbandPercent: 0 });
   for (const part of parts) {
+    const zone = /^zone for (\d+) kW (rigid|flexible)(?: with baseline ([\d.]+))?$/.exec(part);
+    if (zone !== null) {
+      limit = { ...limit, ...zoneLimit(zone[1] ?? '', zone[2] ?? '', zone[3] ?? null) };
+      continue;
+    }
     const [, key, number, unit] = /^([a-z -]+?)(?: ([\d.]+) ?(\S+)?)?$/.exec(part) ?? [];
     const value = Number(number);
     const delay: Delay = unit?.startsWith('recording') ? { recordings: value } : { ms: value * hourMs };
@@ -47,6 +53,48 @@ export function limitOf(parts: readonly string[]): Limit {
     limit = { ...limit, ...found };
   }
   return limit;
+}
+
+/** Out of a site file with a limit of kind zone, as the program reads it; here in mm/s like all levels of a story. */
+function zoneLimit(kw: string, support: string, baseline: string | null): Partial<Limit> {
+  const text = `site: Larkfen Waterworks
+time_zone: Europe/Dublin
+folders:
+  drop: ./drop
+  data: ./data
+machines:
+  - id: blower-1
+    running_speed: 2970 rpm
+    zones:
+      standard: iso-20816-3
+      power: ${kw} kW
+      support: ${support}
+    points:
+      - id: de-h
+        quantity: velocity
+        recordings:
+          files: <any>.wav
+          samples_in: mm/s
+        bands:
+          - id: overall
+            from: 10 Hz
+            to: 1000 Hz
+        limits:
+          - band: overall
+            kind: zone
+${baseline === null ? '' : `            baseline: ${baseline} mm/s\n`}`;
+  const answer = loadSite(text, '/srv/plant/site.yaml');
+  if (!answer.ok) throw new Error(answer.problems.map(({ what }) => what).join('; '));
+  const {
+    id,
+    kind,
+    alert = null,
+    danger = null,
+    reasons = null,
+  } = answer.site.machines[0]?.points[0]?.limits[0] ?? {};
+  if (id === undefined || kind === undefined) throw new Error('the site file gave no limit');
+  const inMm = (value: number | null) => (value === null ? null : Number((value * 1000).toPrecision(12)));
+  return { id, kind, alert: inMm(alert), danger: inMm(danger), reasons };
 }
 
 export function ruleOf(text: string): RunningRule {
