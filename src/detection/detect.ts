@@ -41,6 +41,11 @@ export interface DetectionInput {
   readonly situations: ReadonlyMap<string, LimitSituation>;
   /** By `subjectKey`; what is missing is normal. */
   readonly earlier: ReadonlyMap<string, AlarmState>;
+  /**
+   * Left out: everything. `limits`: no troubles, which are looked at with each recording, not with a pool of them.
+   * `danger-at-once`: of the limits only a danger that the recording's own segments prove; its level waits for the pool.
+   */
+  readonly only?: 'limits' | 'danger-at-once';
 }
 
 const pointTroubles = ['dead-sensor', 'reads-stopped', 'wrong-rate', 'uneven-time'] as const;
@@ -73,7 +78,7 @@ export function detect(input: DetectionInput): AlarmChange[] {
   const flags = [...new Set([...measured, ...input.recordingFlags])];
   const judged = input.machineState === 'running';
   const limits = judged ? input.point.limits.map((limit) => detectLimit(limit, flags, input)) : [];
-  const troubles = input.late ? [] : detectTroubles(flags, input);
+  const troubles = input.late || input.only === 'limits' ? [] : detectTroubles(flags, input);
   return [...limits, ...troubles].filter((change) => change !== null);
 }
 
@@ -90,6 +95,7 @@ function detectLimit(limit: Limit, flags: readonly QualityFlag[], input: Detecti
   const judgement = judgeLevel(limit, judged, before.condition);
   if (judgement === null) return null;
   const { severity, dangerAtOnce, at } = judgement;
+  if (input.only === 'danger-at-once' && !dangerAtOnce) return null;
   const reason = {
     level: at.value,
     quantity: level.quantity,

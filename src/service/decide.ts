@@ -12,6 +12,7 @@ import type { RecordingTime } from './recording-time.ts';
 import { spansOf, statedStart, timeOf } from './recording-time.ts';
 import { troublesOf } from './recording-troubles.ts';
 import type { SiteView } from './site-view.ts';
+import { keepPool, storeEnded } from './store-pooled.ts';
 import {
   fileFindings,
   identityOf,
@@ -150,19 +151,22 @@ async function storeEvaluated(
   },
 ): Promise<void> {
   const { recordingId, time, judged, context } = about;
+  const usedMs = Math.round(time.usedMs);
+  await storeEnded(writer, view, one, context);
   await insertMeasurement(writer, view.ids, {
     measurement: one.measurement,
     recordingId,
-    usedMs: Math.round(time.usedMs),
+    usedMs,
     machineState: one.machineState,
     condition: one.condition,
     runningHours: one.runningHours,
     evaluated: judged && !time.late,
-    inTrend: judged && one.condition !== null && !isOfDeadSensor(one),
+    inTrend: one.inTrend && !isOfDeadSensor(one),
     atAlarm: one.changes.some(({ journal }) => journal.length > 0),
   });
   for (const change of one.changes) await saveAlarmChange(writer, change, context);
-  if (judged) await learn(writer, view, one.point, Math.round(time.usedMs));
+  await keepPool(writer, view, one, recordingId);
+  if (judged) await learn(writer, view, one.point, usedMs);
 }
 
 /** What a dead sensor sends is held against limits, but no median and no baseline learns from it. */

@@ -2,7 +2,7 @@ import type { QualityFinding, QualityFlag } from '../acquisition/recording.ts';
 import type { Point } from '../config/site.ts';
 import { type AlarmChange, type AlarmState, type AlarmSubject, subjectKey } from '../detection/alarm.ts';
 import { conditionOf } from '../detection/condition.ts';
-import { detect, subjectsOf } from '../detection/detect.ts';
+import { subjectsOf } from '../detection/detect.ts';
 import { lowSignal } from '../detection/low-signal.ts';
 import { type MachineMemory, type MachineState, machineStep, readingOf } from '../detection/machine-state.ts';
 import { type TroubleLook, type TroubleSubject, troubleStep } from '../detection/trouble.ts';
@@ -11,21 +11,19 @@ import { loadAlarms } from '../store/alarms.ts';
 import { lastGoodRms } from '../store/good-signals.ts';
 import type { Reader, Writer } from '../store/lent-connection.ts';
 import { loadMachine, saveMachine } from '../store/sources.ts';
-import { limitSituations } from './limit-situations.ts';
+import { judgePoint, type PointJudged } from './judge-point.ts';
 import type { SiteView } from './site-view.ts';
 
 /**
  * Detection of one recording inside its transaction: earlier states are read here, the pure blocks decide, what they
  * return is stored by the caller.
  */
-export interface Evaluated {
+export interface Evaluated extends PointJudged {
   readonly point: Point;
-  readonly measurement: Measurement;
   readonly machineState: MachineState;
   /** Operating condition; null: outside all of them, or the machine does not run. */
   readonly condition: string | null;
   readonly runningHours: number;
-  readonly changes: readonly AlarmChange[];
 }
 
 export interface EvaluationInput {
@@ -79,27 +77,21 @@ async function evaluateMachine(
       findings.length === 0 ? measured : { ...measured, quality: [...measured.quality, ...findings] };
     const earlier = await statesOf(writer, subjectsOf(point));
     const condition = own.state === 'running' ? conditionOf(machine.conditions ?? [], measured) : null;
-    const changes = input.judged
-      ? detect({
-          point,
-          measurement,
-          machineState: own.state,
-          readsStopped: own.readsStopped,
-          usedMs,
-          late: input.late,
-          recordingFlags: input.recordingFlags,
-          condition,
-          situations: await limitSituations(writer, view, point, measurement, { condition, usedMs }),
-          earlier,
-        })
-      : [];
-    evaluated.push({
+    const judged = await judgePoint(writer, {
+      ...input,
       point,
       measurement,
       machineState: own.state,
+      readsStopped: own.readsStopped,
+      condition,
+      earlier,
+    });
+    evaluated.push({
+      ...judged,
+      point,
+      machineState: own.state,
       condition,
       runningHours: (step.memory.ranMs ?? 0) / 3_600_000,
-      changes,
     });
   }
   return evaluated;

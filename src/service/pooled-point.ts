@@ -3,7 +3,7 @@ import { pooledMeasurement } from '../manipulation/measure-pooled.ts';
 import type { Measurement } from '../manipulation/measurement.ts';
 import { type PoolArrival, type PoolStep, poolStep } from '../manipulation/pooling.ts';
 import type { Writer } from '../store/lent-connection.ts';
-import { dropPool, loadPool, type PoolNewest, savePool } from '../store/pooling.ts';
+import { loadPool, type PoolNewest } from '../store/pooling.ts';
 
 /** What a recording does to the pool of its point; the rules are those of pooling.ts. */
 export interface Pooled {
@@ -47,15 +47,4 @@ export async function poolOf(
             newest: open.newest,
           },
   };
-}
-
-/** Stores what is open after the recording, in its transaction. */
-export async function keepPool(
-  writer: Writer,
-  pointId: number,
-  { step }: Pooled,
-  newest: PoolNewest,
-): Promise<void> {
-  if (step.open === null) await dropPool(writer, pointId);
-  else if (step.entered) await savePool(writer, pointId, { pool: step.open, newest });
 }
