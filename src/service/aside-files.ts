@@ -20,7 +20,7 @@ export interface AsideFile {
   readonly name: string;
   readonly sizeBytes: number;
   readonly modifiedMs: number;
-  /** As it was written beside the file; null where nothing was. */
+  /** As it was written beside the file, but for the file's name; null where nothing was. */
   readonly reason: string | null;
 }
 
@@ -51,10 +51,17 @@ function beside(path: string): string {
 function reasonOf(path: string): string | null {
   try {
     const text = readFileSync(`${path}${reasonEnding}`).subarray(0, longestReasonBytes).toString('utf8');
-    return text.trim() || null;
+    return withoutOwnName(text.trim(), nameOf(path)) || null;
   } catch {
     return null;
   }
+}
+
+/** A reason that was written beside a file begins with the file's name; under that name it would stand twice. */
+function withoutOwnName(reason: string, name: string): string {
+  const unmarked = name.replace(/~[0-9a-f]{8}(~[2-9])?$/, '');
+  const own = [name, unmarked].find((one) => reason.startsWith(`${printableName(one)}: `));
+  return own === undefined ? reason : reason.slice(printableName(own).length + 2);
 }
 
 /** A file of quarantine or unassigned, found by what a person wrote. */

@@ -177,7 +177,7 @@ export class Intake {
       return { ...nothing, waiting: 1, unfiled: unfiledBefore, dropFolder: 'read', againInMs: 0 };
     const view = viewOf();
     const starts = startsOf(view, look.ready);
-    const startOf = (ready: ReadyRecording) => starts.get(ready.path) as number;
+    const startOf = (ready: ReadyRecording) => starts.get(ready) as number;
     const { now, held, againInMs } = this.#backlog.split(
       look.ready,
       holdBacklog ? (ready) => isOld(ready, startOf(ready)) : () => false,

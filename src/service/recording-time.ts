@@ -42,18 +42,18 @@ export function statedStart(
 }
 
 /**
- * Starts of files that wait together, by path, for their order. In the hour that comes twice, of two files of a source
+ * Starts of files that wait together, for their order. In the hour that comes twice, of two files of a source
  * with one reading the one that was changed later is the second.
  */
-export function startsOf(view: SiteView, ready: readonly ReadyRecording[]): Map<string, number> {
+export function startsOf(view: SiteView, ready: readonly ReadyRecording[]): Map<ReadyRecording, number> {
   const changed = ({ header }: ReadyRecording) => header.look.mtimeMs;
   const inOrder = [...ready].sort((a, b) => changed(a) - changed(b) || (a.path < b.path ? -1 : 1));
   const taken = new Set<string>();
-  const starts = new Map<string, number>();
+  const starts = new Map<ReadyRecording, number>();
   for (const one of inOrder) {
     const { startMs, otherMs } = statedStart(view, one, null);
     const reading = `${one.source}\n${startMs}`;
-    starts.set(one.path, otherMs !== null && taken.has(reading) ? otherMs : startMs);
+    starts.set(one, otherMs !== null && taken.has(reading) ? otherMs : startMs);
     taken.add(reading);
   }
   return starts;

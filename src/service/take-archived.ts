@@ -12,7 +12,7 @@ import { keyOf, missingOf } from './beyond-ledger.ts';
 import { type FiledLine, type FilingLog, filingsMark } from './filing-log.ts';
 import type { Logger } from './log.ts';
 import type { HeaderAnswer, RecordingAnswer, RecordingTask } from './recording-task.ts';
-import { statedStart } from './recording-time.ts';
+import { startsOf } from './recording-time.ts';
 import type { SiteView } from './site-view.ts';
 import type { TakeFiles } from './take-files.ts';
 import type { ReadyRecording } from './verdicts.ts';
@@ -90,7 +90,7 @@ export class TakeArchived {
       const looked = await Promise.all(still.slice(n, n + lookedAtOnce).map((line) => this.#ready(line)));
       ready.push(...looked.filter((one) => one !== null));
     }
-    const starts = new Map(ready.map((one) => [one, statedStart(one.view, one, null).startMs]));
+    const starts = startsOf(this.#tools.view(), ready);
     return this.#tools.take.recordings(ready, (one) => starts.get(one) as number);
   }
 

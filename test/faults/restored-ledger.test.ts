@@ -2,7 +2,16 @@
  * A ledger that was put back from its backup: what it lacks is taken again from the archive in the old order, and what
  * people did meanwhile is named. Real service, real files.
  */
-import { copyFileSync, existsSync, readFileSync, renameSync, rmSync, writeFileSync } from 'node:fs';
+import { createHash } from 'node:crypto';
+import {
+  copyFileSync,
+  existsSync,
+  readFileSync,
+  renameSync,
+  rmSync,
+  utimesSync,
+  writeFileSync,
+} from 'node:fs';
 import { join } from 'node:path';
 import { describe, expect, it } from 'vitest';
 import { setAsidePath } from '../../src/acquisition/filing-place.ts';
@@ -10,9 +19,10 @@ import { actOnAlarm } from '../../src/service/acts-log.ts';
 import { SteppedClock } from '../../src/service/clock.ts';
 import { backupLedger } from '../../src/store/backup.ts';
 import { MailServerOnLoopback } from '../service/mail-server.ts';
-import { hourMs, type SiteOnDisk, TrialService } from '../service/site-on-disk.ts';
+import { hourMs, type SiteOnDisk, siteAt, TrialService, wav } from '../service/site-on-disk.ts';
 import { serviceOn, site } from '../service/trial.ts';
 
+const sha256 = (bytes: Uint8Array) => createHash('sha256').update(bytes).digest('hex');
 const ledgerOf = (on: SiteOnDisk) => join(on.data, 'ledger.sqlite');
 
 /** Everything about recordings and alarms that must be the same again; times of the wall clock and row ids left out. */
@@ -96,6 +106,40 @@ describe('a ledger put back from its backup', () => {
     await service.stop();
     for (const ending of ['', '-wal', '-shm']) rmSync(`${ledgerOf(on)}${ending}`, { force: true });
     const again = await serviceOn(on, { clock });
+    await again.after(10_000);
+    expect(await told(again)).toEqual(before);
+  });
+
+  it('in the hour that comes twice in autumn the same recording is the second one again', async () => {
+    const on = site({ recordings: 'clock: site' });
+    const text = readFileSync(join(on.folder, 'site.yaml'), 'utf8');
+    writeFileSync(join(on.folder, 'site.yaml'), text.replace('<second>Z', '<second>'));
+    const local = { ...on, ...siteAt(on.folder) };
+    const arrivedMs = Date.UTC(2026, 9, 25, 5);
+    const clock = new SteppedClock(arrivedMs);
+    const service = await serviceOn(local, { clock });
+    // 01:30 in summer time and 01:30 an hour later; whichever hash would come first, it is that of the second.
+    const [first, second] = [wav([1], 1), wav([2], 2)].sort((a, b) => sha256(b).localeCompare(sha256(a)));
+    for (const [name, bytes, hour] of [
+      ['a', first, 0],
+      ['b', second, 1],
+    ] as const) {
+      const file = `pump-2_20261025T013000${name}.wav`;
+      service.drop(file, bytes as Uint8Array);
+      const changed = new Date(Date.UTC(2026, 9, 25, hour, 30));
+      utimesSync(join(on.drop, file), changed, changed);
+    }
+    await service.take();
+    await service.after(20 * 60_000);
+    const used = await service.rows('recordings', 'used_ms', 'order by file_name');
+    expect(used.map(({ used_ms }) => new Date(used_ms as number).toISOString().slice(11, 16))).toEqual([
+      '00:30',
+      '01:30',
+    ]);
+    const before = await told(service);
+    await service.stop();
+    for (const ending of ['', '-wal', '-shm']) rmSync(`${ledgerOf(on)}${ending}`, { force: true });
+    const again = await serviceOn(local, { clock });
     await again.after(10_000);
     expect(await told(again)).toEqual(before);
   });
@@ -184,7 +228,9 @@ describe('a ledger put back from its backup', () => {
     putBack(on, file);
     clock.advance(600_000);
     const again = await serviceOn(on, { clock });
-    expect(again.said('an act that the ledger lacks')).toMatchObject([{ by: 'A. Fitter', number }]);
+    expect(again.said('an act that the ledger lacks')).toMatchObject([
+      { by: 'A. Fitter', command: `acknowledge ${number}` },
+    ]);
     await again.service.mailRound();
     await again.after(10_000);
     for (let n = 0; n < 3; n++) {
