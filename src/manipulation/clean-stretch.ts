@@ -4,6 +4,7 @@ import { MedianAverage, type MedianDensity, medianStride } from '../signal/media
 import { PeakHold } from '../signal/peak-hold.ts';
 import { SegmentSpectra } from '../signal/segment-spectra.ts';
 import { Waveform, type WaveformValues } from '../signal/waveform.ts';
+import { type EnvelopePlan, type EnvelopeResult, EnvelopeRun } from './envelope-plan.ts';
 import type { LaidBand } from './point-bands.ts';
 
 /** What is to be made of a stretch. */
@@ -14,6 +15,8 @@ export interface StretchSettings {
   readonly bands: readonly LaidBand[];
   /** What else is made of the segments besides their mean. */
   readonly besides?: 'median' | 'peak-hold' | undefined;
+  /** Null: no envelope. */
+  readonly envelope: EnvelopePlan | null;
 }
 
 /** What one unbroken stretch of samples gave. */
@@ -30,6 +33,8 @@ export interface StretchResult {
   readonly median: MedianDensity | null;
   /** The highest that any segment had, as `density`; null likewise. */
   readonly highest: Float64Array | null;
+  /** Null likewise. */
+  readonly envelope: EnvelopeResult | null;
 }
 
 /** Memory for single segments' densities; long segments are grouped sooner. */
@@ -50,14 +55,17 @@ export class CleanStretch {
   readonly #waveform = new Waveform();
   readonly #segmentPowers: number[][];
   readonly #besides: StretchSettings['besides'];
+  readonly #plan: EnvelopePlan | null;
   #waiting: Float64Array[] = [];
   #averager: Averager | null = null;
   #segments: SegmentSpectra | null = null;
   #median: MedianAverage | null = null;
   #hold: PeakHold | null = null;
+  #envelope: EnvelopeRun | null = null;
   samples = 0;
 
-  constructor({ averaging, bands, besides }: StretchSettings) {
+  constructor({ averaging, bands, besides, envelope }: StretchSettings) {
+    this.#plan = envelope;
     this.#settings = averaging;
     this.#besides = besides;
     this.#bands = bands;
@@ -72,6 +80,7 @@ export class CleanStretch {
     if (this.#settings === null) return;
     if (this.#averager !== null) {
       this.#averager.add(samples);
+      this.#envelope?.add(samples);
       return;
     }
     this.#waiting.push(samples.slice());
@@ -86,7 +95,11 @@ export class CleanStretch {
     } else if (this.#besides === 'peak-hold') {
       this.#hold = new PeakHold(lines);
     }
-    for (const block of this.#waiting) this.#averager.add(block);
+    if (this.#plan !== null) this.#envelope = new EnvelopeRun(this.#plan);
+    for (const block of this.#waiting) {
+      this.#averager.add(block);
+      this.#envelope?.add(block);
+    }
     this.#waiting = [];
   }
 
@@ -99,6 +112,7 @@ export class CleanStretch {
       segments: this.#segments,
       median: this.#median?.finish() ?? null,
       highest: this.#hold?.finish() ?? null,
+      envelope: this.#envelope?.finish() ?? null,
     };
   }
 

@@ -11,6 +11,15 @@ export interface FingerprintSettings {
   readonly signal: SignalSettings;
   readonly sampleRateHz: number;
   readonly segmentSamples: number;
+  /** Of the recording; null or left out: it has none. */
+  readonly envelope?: EnvelopeFingerprint | null;
+}
+
+/** What moves the numbers of an envelope. */
+export interface EnvelopeFingerprint {
+  readonly band: { readonly fromHz: number; readonly toHz: number };
+  readonly averaging: { readonly segmentSamples: number };
+  readonly demodulation: { readonly decimation: number };
 }
 
 /**
@@ -18,9 +27,15 @@ export interface FingerprintSettings {
  * band's edges as configured, integration, the way from sample to SI, skipped start, sample rate and algorithm; not by
  * the recording's length, other bands, limits, names, speed or the unit in which people see it. Recordings that are
  * pooled count as a longer one: they steady the level and do not move it, so the series goes on.
+ *
+ * A band of the envelope is moved by the band that is demodulated and by the envelope's segment and rate in place of
+ * the plain spectrum's segment.
  */
 export function seriesFingerprint(settings: FingerprintSettings, band: Band): string {
-  return hash([...common(settings), 'band', band.quantity, band.from, band.to, band.inOrders]);
+  const { envelope } = settings;
+  if (band.of !== 'envelope' || envelope == null) return hash([...common(settings), ...edgesOf(band)]);
+  const own = { ...settings, segmentSamples: envelope.averaging.segmentSamples };
+  return hash([...common(own), ...demodulationParts(envelope), ...edgesOf(band)]);
 }
 
 /** As `seriesFingerprint` for everything that is measured on a point: all its bands and what its peaks depend on. */
@@ -33,8 +48,25 @@ export function settingsFingerprint(settings: FingerprintSettings, bands: readon
     analysis.falsePeaksPerSpectrum,
     ...(analysis.averaging === undefined ? [] : [analysis.averaging]),
     ...(analysis.averageOver === undefined ? [] : ['pool', analysis.averageOver]),
-    ...bands.flatMap((band) => [band.quantity, band.from, band.to, band.inOrders]),
+    ...(settings.envelope == null
+      ? []
+      : [settings.envelope.averaging.segmentSamples, ...demodulationParts(settings.envelope)]),
+    ...bands.flatMap((band) => [
+      ...(band.of === 'envelope' ? ['of', band.of] : []),
+      band.quantity,
+      band.from,
+      band.to,
+      band.inOrders,
+    ]),
   ]);
+}
+
+function edgesOf(band: Band): unknown[] {
+  return ['band', band.quantity, band.from, band.to, band.inOrders];
+}
+
+function demodulationParts({ band, demodulation }: EnvelopeFingerprint): unknown[] {
+  return ['envelope', band.fromHz, band.toHz, demodulation.decimation];
 }
 
 function common({ point, signal, sampleRateHz, segmentSamples }: FingerprintSettings): unknown[] {

@@ -1,46 +1,26 @@
-import type { QualityFinding, SamplesEnd, Sidecar } from '../acquisition/recording.ts';
-import type { Point, SignalSettings } from '../config/site.ts';
+import type { SamplesEnd } from '../acquisition/recording.ts';
+import type { Band } from '../config/site.ts';
 import { siUnit } from '../config/units.ts';
 import type { AveragedDensity, AveragingSettings } from '../signal/averaging.ts';
 import { CleanStretch, type StretchResult } from './clean-stretch.ts';
+import { type EnvelopePlan, envelopePlan } from './envelope-plan.ts';
 import { seriesFingerprint, settingsFingerprint } from './fingerprint.ts';
+import { plainWaveform, shownSpectrum } from './kept-values.ts';
+import { type MeasuredEnvelope, measureEnvelope, noEnvelope } from './measure-envelope.ts';
 import { measureFindings, unevenStepRatio } from './measure-findings.ts';
 import {
-  type BandSegments,
   groupPowers,
   levelsOf,
   type MeasuredLevels,
   type SearchedDensity,
   searchPeaks,
 } from './measure-levels.ts';
-import type { MeasuredSpeed, Measurement, Spectrum, WaveformValues } from './measurement.ts';
+import type { MeasureSettings } from './measure-settings.ts';
+import type { BandLevel, MeasuredSpeed, Measurement } from './measurement.ts';
 import { averagingOf, gridOf } from './point-averaging.ts';
 import { type LaidBands, layFixedBands, layOrderBands, lowestVelocityHz } from './point-bands.ts';
 
-/** Looks at the samples as the file holds them, and at what was made of them. */
-export interface SampleCheck {
-  /** Raw samples of the channel, from the end of the skipped start on. */
-  add(samples: Float64Array): void;
-  /** Its findings. `density`: one-sided, (SI unit of the point)²/Hz; null where not one segment fitted. */
-  finish(
-    spectrum: Pick<AveragedDensity, 'density' | 'lineSpacingHz' | 'averages'> | null,
-    machine: { readonly speedHz: number | null; readonly lowestVelocityHz: number | null },
-  ): readonly QualityFinding[];
-}
-
-export interface MeasureSettings {
-  readonly point: Point;
-  /** Channel as the file names it. */
-  readonly channel: string;
-  /** The recording's own; null where neither the file nor the site file says it. */
-  readonly sampleRateHz: number | null;
-  /** What a sample is multiplied by to be in the SI unit of the point's quantity. */
-  readonly siPerSample: number;
-  /** The way from sample to SI as it was applied, for the fingerprint. */
-  readonly signal: SignalSettings;
-  readonly sidecar: Pick<Sidecar, 'loadPercent' | 'running'> | null;
-  readonly check: SampleCheck | null;
-}
+export type { MeasureSettings, SampleCheck } from './measure-settings.ts';
 
 /**
  * No sensor gives more than this in the SI unit of its quantity, nor less and yet something: a sample beyond is a spoilt
@@ -63,6 +43,7 @@ export class Measurer {
   readonly #settings: MeasureSettings;
   readonly #averaging: AveragingSettings | null;
   readonly #fixed: LaidBands;
+  readonly #envelope: EnvelopePlan | null;
   #toSkip: number;
   #stretch: CleanStretch;
   #longest: StretchResult | null = null;
@@ -77,6 +58,7 @@ export class Measurer {
     this.#fixed = grid === null ? noBands : layFixedBands(point, grid);
     // A quantity that a band in orders cannot have is refused before a sample is read, like any other.
     if (grid !== null) layOrderBands(point, grid, null);
+    this.#envelope = envelopePlan(point, sampleRateHz, settings.chosenBand ?? null);
     this.#toSkip = Math.round(point.analysis.skipStartS * (sampleRateHz ?? 0));
     this.#stretch = this.#newStretch();
   }
@@ -137,7 +119,9 @@ export class Measurer {
     const found = check?.finish(spectrum, machine) ?? [];
     const grid = this.#averaging && gridOf(this.#averaging);
     const orders = grid === null ? noBands : layOrderBands(point, grid, speedHz);
-    const levels = searched && this.#levels(searched, orders, speedHz, found);
+    const atLeast = found.some(({ flag }) => flag === 'clipped' || flag === 'saturated');
+    const levels = searched && this.#levels(searched, orders, speedHz, atLeast);
+    const envelope = searched && this.#measureEnvelope(speedHz, atLeast);
     if (spectrum !== null) onDensity(spectrum.density);
     const own = measureFindings({
       point,
@@ -145,7 +129,11 @@ export class Measurer {
       samples: result?.samples ?? 0,
       timeStepDeviation,
       hasSpectrum: searched !== null,
-      unlaid: [...this.#fixed.unlaid, ...orders.unlaid],
+      unlaid: [
+        ...this.#fixed.unlaid,
+        ...orders.unlaid,
+        ...(envelope?.unlaid ?? noEnvelope(point, this.#envelope)),
+      ],
       unsteady: levels?.unsteady ?? null,
     });
     return {
@@ -161,9 +149,10 @@ export class Measurer {
       runningSaid: sidecar?.running ?? null,
       waveform: result === null || result.samples === 0 ? null : plainWaveform(result.waveform),
       averaging: levels?.averaging ?? null,
-      levels: levels?.levels ?? [],
+      levels: inOrderOf(point.bands, [...(levels?.levels ?? []), ...(envelope?.levels ?? [])]),
       peaks: levels?.peaks ?? [],
       spectrum: spectrum && shownSpectrum(spectrum, result?.highest ?? null),
+      envelope: envelope?.envelope ?? null,
       quality: [...found, ...own],
       evidence: [],
       settingsFingerprint: settingsFingerprint(this.#fingerprintSettings(), point.bands),
@@ -175,7 +164,7 @@ export class Measurer {
     searched: SearchedDensity,
     orders: LaidBands,
     speedHz: number | null,
-    found: readonly QualityFinding[],
+    atLeast: boolean,
   ): MeasuredLevels | null {
     const result = this.#longest;
     if (result === null || this.#averaging === null) return null;
@@ -185,17 +174,31 @@ export class Measurer {
       laid,
       segmentPowers: result.segments === null ? [] : groupPowers(result.segments, laid.weights),
     }));
-    const place = ({ laid }: BandSegments) => point.bands.indexOf(laid.band);
     return levelsOf({
       point,
       averaging: this.#averaging,
       searched,
       segments: result.segments,
-      bands: [...fixed, ...ordered].sort((a, b) => place(a) - place(b)),
+      bands: [...fixed, ...ordered],
       speedHz,
-      atLeast: found.some(({ flag }) => flag === 'clipped' || flag === 'saturated'),
+      atLeast,
       seriesOf: (band) => seriesFingerprint(this.#fingerprintSettings(), band),
     });
+  }
+
+  #measureEnvelope(speedHz: number | null, atLeast: boolean): MeasuredEnvelope | null {
+    const result = this.#longest?.envelope ?? null;
+    return (
+      result &&
+      measureEnvelope({
+        ...result,
+        point: this.#settings.point,
+        averages: result.density.averages,
+        speedHz,
+        atLeast,
+        seriesOf: (band) => seriesFingerprint(this.#fingerprintSettings(), band),
+      })
+    );
   }
 
   #share(density: AveragedDensity | null): Pick<Measurement, 'share'> {
@@ -207,12 +210,13 @@ export class Measurer {
   #fingerprintSettings() {
     const { point, signal, sampleRateHz } = this.#settings;
     const segmentSamples = this.#averaging?.segmentSamples ?? 0;
-    return { point, signal, sampleRateHz: sampleRateHz ?? 0, segmentSamples };
+    return { point, signal, sampleRateHz: sampleRateHz ?? 0, segmentSamples, envelope: this.#envelope };
   }
 
   #newStretch(): CleanStretch {
     const besides = this.#settings.point.analysis.averaging;
-    return new CleanStretch({ averaging: this.#averaging, bands: this.#fixed.laid, besides });
+    const envelope = this.#envelope;
+    return new CleanStretch({ averaging: this.#averaging, bands: this.#fixed.laid, besides, envelope });
   }
 
   /** Keeps the longest stretch; the first of two equal ones. */
@@ -231,20 +235,7 @@ interface Ended {
 
 const noBands: LaidBands = { laid: [], unlaid: [] };
 
-/** What people are shown, in single precision: the mean of the segments, or the highest of them. */
-function shownSpectrum(mean: AveragedDensity, highest: Float64Array | null): Spectrum {
-  const { lineSpacingHz } = mean;
-  if (highest === null) return { lineSpacingHz, density: Float32Array.from(mean.density) };
-  return { lineSpacingHz, density: Float32Array.from(highest), averaging: 'peak-hold' };
-}
-
-/** A flat signal has no shape: crest factor, kurtosis and skewness are given as 0, so that no NaN is stored. */
-function plainWaveform(values: WaveformValues): WaveformValues {
-  const plain = (value: number) => (Number.isFinite(value) ? value : 0);
-  return {
-    ...values,
-    crestFactor: plain(values.crestFactor),
-    kurtosis: plain(values.kurtosis),
-    skewness: plain(values.skewness),
-  };
+function inOrderOf(bands: readonly Band[], levels: readonly BandLevel[]): BandLevel[] {
+  const place = ({ bandId }: BandLevel) => bands.findIndex(({ id }) => id === bandId);
+  return levels.toSorted((a, b) => place(a) - place(b));
 }

@@ -1,6 +1,7 @@
 import type { QualityFinding } from '../acquisition/recording.ts';
 import type { Quantity } from '../config/site.ts';
 import type { AveragedDensity, AveragingSettings } from '../signal/averaging.ts';
+import type { EnvelopeMeasured } from './envelope-measured.ts';
 import type { Evidence } from './evidence.ts';
 
 /**
@@ -28,6 +29,8 @@ export interface Measurement {
   readonly levels: readonly BandLevel[];
   readonly peaks: readonly SpectralPeak[];
   readonly spectrum: Spectrum | null;
+  /** Null or left out: the point has none, or the recording is too short for it. */
+  readonly envelope?: EnvelopeMeasured | null;
   readonly quality: readonly QualityFinding[];
   /** What its lines say of the machine's parts. */
   readonly evidence: readonly Evidence[];

@@ -28,7 +28,7 @@ export type BandedPoint = Pick<Point, 'quantity' | 'bands'> & Partial<Pick<Point
 
 /** Lays those of the point's bands that are in Hz onto the lines. Throws like `layBands`. */
 export function layFixedBands(point: BandedPoint, grid: LineGrid): LaidBands {
-  return layBands(point, grid, null, (band) => !band.inOrders);
+  return layBands(point, grid, null, (band) => !band.inOrders && band.of !== 'envelope');
 }
 
 /**
@@ -36,7 +36,33 @@ export function layFixedBands(point: BandedPoint, grid: LineGrid): LaidBands {
  * Throws like `layBands`.
  */
 export function layOrderBands(point: BandedPoint, grid: LineGrid, speedHz: number | null): LaidBands {
-  return layBands(point, grid, speedHz, (band) => band.inOrders);
+  return layBands(point, grid, speedHz, (band) => band.inOrders && band.of !== 'envelope');
+}
+
+/** Lays the point's bands of the envelope onto its lines; up to `highestHz` it says something. */
+export function layEnvelopeBands(
+  point: BandedPoint,
+  grid: LineGrid,
+  speedHz: number | null,
+  highestHz: number,
+): LaidBands {
+  const { laid, unlaid } = layBands(point, grid, speedHz, (band) => band.of === 'envelope');
+  const reaching = ({ toHz }: LaidBand) => toHz <= highestHz * (1 + 1e-9);
+  return {
+    laid: laid.filter(reaching),
+    unlaid: [
+      ...unlaid,
+      ...laid
+        .filter((one) => !reaching(one))
+        .map(
+          ({ band, toHz }): UnlaidBand => ({
+            band,
+            flag: 'wrong-rate',
+            reason: `no level of band ${band.id}: it ends at ${toHz} Hz, the envelope of this recording at ${highestHz} Hz`,
+          }),
+        ),
+    ],
+  };
 }
 
 /** Lower edge of the point's lowest band in velocity, Hz; null where it has none, or none that can be laid. */

@@ -11,6 +11,7 @@ import {
 } from '../acquisition/recording.ts';
 import { SampleQuality } from '../acquisition/sample-quality.ts';
 import { appliedSignal, scalingOf } from '../acquisition/scaling.ts';
+import type { DemodulationBand } from '../config/envelope-settings.ts';
 import type { Part } from '../config/parts.ts';
 import { nothingSaid, type SampleLayout, sameLayout } from '../config/sample-layout.ts';
 import { type Point, pointPath } from '../config/site.ts';
@@ -26,6 +27,8 @@ export interface PointTask {
   readonly nominalHz: number | null;
   /** Of its machine; without it: none. */
   readonly parts?: readonly Part[];
+  /** Band of the envelope that its recordings have agreed on; without it: none yet. */
+  readonly chosenBand?: DemodulationBand | null;
 }
 
 export interface RecordingRead {
@@ -118,6 +121,7 @@ function measurers(
       siPerSample: scaling.siPerSample,
       signal: scaling.signal,
       sidecar,
+      chosenBand: task.chosenBand ?? null,
       check: new SampleQuality({
         samples: header.samples,
         sampleRateHz: rateHz,

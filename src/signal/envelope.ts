@@ -1,4 +1,4 @@
-import { type AveragedDensity, Averager, type AveragingSettings } from './averaging.ts';
+import { type AveragedDensity, Averager, type AveragingSettings, type SegmentVisitor } from './averaging.ts';
 import { type Demodulation, type DemodulationSettings, Demodulator, demodulationOf } from './demodulation.ts';
 import { secondsFor, segmentSamplesFor } from './segment-length.ts';
 import type { WindowName } from './window.ts';
@@ -44,8 +44,8 @@ export class EnvelopeAverager {
   private readonly demodulator: Demodulator;
   private readonly averager: Averager;
 
-  constructor({ demodulation, averaging }: EnvelopeAveraging) {
-    this.averager = new Averager(averaging);
+  constructor({ demodulation, averaging }: EnvelopeAveraging, visitor?: SegmentVisitor) {
+    this.averager = new Averager(averaging, visitor);
     const sampleRateHz = demodulation.envelopeRateHz * demodulation.decimation;
     this.demodulator = new Demodulator(demodulation, sampleRateHz, (values) => this.averager.add(values));
   }
