@@ -51,13 +51,15 @@ describe('the package, packed and installed into an empty folder', () => {
   it('holds the built program, its configuration and the demo data, and nothing else', () => {
     const paths = installed.files.map(({ path }) => path);
     const strange = paths.filter(
-      (path) => !/^(dist\/.*\.js|config\/[^/]+|demo-data\/.+|package\.json|README\.md|LICENSE)$/.test(path),
+      (path) =>
+        !/^(dist\/.*\.js|config\/(zones\/)?[^/]+|demo-data\/.+|package\.json|README\.md|LICENSE)$/.test(path),
     );
     expect(strange).toEqual([]);
     expect(paths.filter((path) => /\.(ts|map)$|\.test\.|(^|\/)test\//.test(path))).toEqual([]);
     for (const needed of [
       'dist/cli/start.js',
       'dist/service/recording-worker.js',
+      'config/zones/iso-20816-3.json',
       'dist/store/copy-worker.js',
       'config/site.schema.json',
       'config/site.example.yaml',
@@ -81,6 +83,12 @@ describe('the package, packed and installed into an empty folder', () => {
     expect(once.out).toContain('1 recordings taken, 0 files set aside, 0 left in the drop folder');
     expect(readdirSync(join(folder, 'drop'))).toEqual([]);
     expect(existsSync(join(folder, 'data/ledger.sqlite'))).toBe(true);
+  });
+
+  it('finds its zone tables', async (context) => {
+    needsInstallation(context);
+    const { out } = await humledger(['check', '--site', join(makeSite(), 'site.yaml')]);
+    expect(out).toContain('zones     ISO 10816-7 (category II, up to 200 kW): velocity A/B 3.2, B/C 5.1');
   });
 
   it('analyses a single file', async (context) => {
@@ -195,6 +203,8 @@ machines:
     name: Raw water pump 1
     type: rotating
     running_speed: 1480 rpm
+    zones: { standard: iso-10816-7, category: II, power: 45 kW }
+    limits: from zones
     points:
       - { id: de-h, name: drive end, channel: 1, quantity: acceleration, sensitivity: 100 mV/g }
 `;
