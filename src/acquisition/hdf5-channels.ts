@@ -24,9 +24,16 @@ const mostShown = 6;
 export function hdf5Channels(file: Hdf5File, layout: SampleLayout): Hdf5Channels | Refusal {
   const path = layout.dataset ?? onlyDataset(file);
   if (typeof path !== 'string') return path;
-  const kind = file.kind(path);
+  const kind = kindOf(file, path);
   if (kind === 'other') return unsupported(`no ${printable(path)} in it, but ${shown(arraysOf(file))}`);
   return kind === 'dataset' ? ofArray(file, path, layout) : ofGroup(file, path, layout);
+}
+
+/** Asked from the root on, for below a data set the library takes a path for damage. */
+function kindOf(file: Hdf5File, path: string): ReturnType<Hdf5File['kind']> {
+  for (let end = path.indexOf('/', 1); end > 0; end = path.indexOf('/', end + 1))
+    if (file.kind(path.slice(0, end)) !== 'group') return 'other';
+  return file.kind(path);
 }
 
 function unsupported(reason: string): Refusal {

@@ -42,23 +42,36 @@ const longestAttribute = 4096;
 const longestText = 80;
 let mounts = 0;
 
-/** Opens a file over its source; throws `Hdf5Trouble` where the library cannot read it. */
+/**
+ * Opens a file over its source; throws `Hdf5Trouble` where the library cannot read it. What the source throws, a disk
+ * that fails, comes through as it is: it says nothing against the file.
+ */
 export function openHdf5(source: ByteSource): Hdf5File {
   const library = hdf5Library();
-  mount(library, source);
-  return openFile(
-    library,
-    guarded(() => library.open(`${mountPoint}/file`, 0, false, -1, -1)),
-  );
+  let failure: { readonly error: unknown } | null = null;
+  const read: ByteSource['read'] = (offset, into) => {
+    try {
+      return source.read(offset, into);
+    } catch (error) {
+      failure = { error };
+      throw error;
+    }
+  };
+  const guarded: Guarded = (call) => {
+    try {
+      return call();
+    } catch (error) {
+      if (failure !== null) throw failure.error;
+      throw new Hdf5Trouble(innermost(error));
+    }
+  };
+  mount(library, { size: source.size, read });
+  const file = guarded(() => library.open(`${mountPoint}/file`, 0, false, -1, -1));
+  return openFile(library, file, guarded);
 }
 
-function guarded<T>(call: () => T): T {
-  try {
-    return call();
-  } catch (error) {
-    throw new Hdf5Trouble(innermost(error));
-  }
-}
+/** Calls into the library, and makes one kind of error of all that it throws. */
+type Guarded = <T>(call: () => T) => T;
 
 /** Of the library's stack of messages the last, which is nearest to the cause. */
 function innermost(error: unknown): string {
@@ -121,7 +134,7 @@ function mount({ FS }: Hdf5Library, source: ByteSource): void {
   FS.mount({ mount: make }, {}, mountPoint);
 }
 
-function openFile(library: Hdf5Library, file: bigint): Hdf5File {
+function openFile(library: Hdf5Library, file: bigint, guarded: Guarded): Hdf5File {
   const inHeap = <T>(bytes: number, use: (pointer: number) => T): T => {
     const pointer = library._malloc(bytes);
     if (pointer === 0) throw new Hdf5Trouble(`no room for ${bytes} bytes`);

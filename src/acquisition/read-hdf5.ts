@@ -110,17 +110,17 @@ function beyondBounds({ datasets, shape }: Hdf5Channels, size: number): Refusal 
         refused: 'unsupported',
         reason: `${printable(path)}: packed with ${printable(strangeFilter)}; save it with gzip or uncompressed`,
       };
-    const bytes = sides.reduce((product, side) => product * side, number.bytes);
-    if (bytes > (chunk === null ? 1 : mostCompression) * size)
-      return {
-        refused: 'damaged',
-        reason: `${printable(path)}: promises ${bytes} bytes, the file has ${size}`,
-      };
     const chunkBytes = (chunk ?? []).reduce((product, side) => product * side, number.bytes);
     if (chunkBytes > mostChunkBytes)
       return {
         refused: 'unsupported',
         reason: `${printable(path)}: chunks of ${chunkBytes} bytes; at most ${mostChunkBytes} are read: save it in smaller chunks`,
+      };
+    const bytes = sides.reduce((product, side) => product * side, number.bytes);
+    if (bytes > (chunk === null ? 1 : mostCompression) * size)
+      return {
+        refused: 'damaged',
+        reason: `${printable(path)}: promises ${bytes} bytes, the file has ${size}`,
       };
   }
   const step = stepFrames(datasets, shape);

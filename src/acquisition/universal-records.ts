@@ -100,7 +100,7 @@ function fields(record: (number: number) => string) {
     },
   };
   const bad = (number: number, written: string): number => {
-    read.wrong ??= `record ${number}: '${written.slice(0, 20)}' is no number`;
+    read.wrong ??= `record ${number}: '${written.replace(/[^ -~]/g, '?').slice(0, 20)}' is no number`;
     return Number.NaN;
   };
   return read;

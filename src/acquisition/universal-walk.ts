@@ -34,7 +34,7 @@ export function walkUniversal(source: ByteSource): UniversalFile | Refusal {
   let lines = linesOf(source, 0x0a, 0, bounds);
   for (let dataSet = 1; ; dataSet++) {
     const set = oneSet(source, lines);
-    if (set === null) return { responses, leftOut, cut: null };
+    if (set === null) return { responses, leftOut, cut: dataSet === 1 ? 'no data set yet' : null };
     if (typeof set === 'string') return { responses, leftOut, cut: `data set ${dataSet}: ${set}` };
     if ('refused' in set) return { ...set, reason: `data set ${dataSet}: ${set.reason}` };
     if (set.response === null) leftOut.set(set.what, (leftOut.get(set.what) ?? 0) + 1);
@@ -59,7 +59,10 @@ interface DataSet {
 /** The next data set; null: none follows; a text: the file ends ahead of its values. */
 function oneSet(source: ByteSource, lines: Lines): DataSet | Refusal | string | null {
   let opening = nextLine(lines);
-  while (opening === '') opening = nextLine(lines);
+  while (opening === '') {
+    if (!lines.ended) return 'the file ends within a line';
+    opening = nextLine(lines);
+  }
   if (opening === null && !lines.tooLong) return null;
   if (opening === null || isZeros(opening))
     return lines.bytes[lines.start] === 0

@@ -3,6 +3,7 @@ import { expect, it } from 'vitest';
 import { parseSidecar } from '../../src/acquisition/sidecar.ts';
 import { judgeName } from './judge-names.ts';
 import { judge } from './judge-spoilt.ts';
+import { spoiltContainer } from './spoilt-containers.ts';
 import { hostileName, spoiltRecording, spoiltSidecar, wholeRecording } from './spoilt-recordings.ts';
 
 /**
@@ -27,11 +28,11 @@ interface Report {
   peakMb: number;
 }
 
-function fuzz(
+async function fuzz(
   name: string,
   numbers: { from: number; count: number },
-  answerTo: (n: number) => string,
-): Report {
+  answerTo: (n: number) => string | Promise<string>,
+): Promise<Report> {
   const report: Report = {
     from: numbers.from,
     done: 0,
@@ -48,7 +49,7 @@ function fuzz(
   for (let number = numbers.from; number < numbers.from + numbers.count; number++) {
     const begunMs = performance.now();
     try {
-      const answer = answerTo(number);
+      const answer = await answerTo(number);
       report.answers[answer] = (report.answers[answer] ?? 0) + 1;
     } catch (error) {
       if (report.failures.length < 100) report.failures.push(`${number}: ${(error as Error).message}`);
@@ -61,19 +62,27 @@ function fuzz(
   return report;
 }
 
-it(`${count} spoilt recordings from number ${from} on`, () => {
-  const report = fuzz('recordings', { from, count }, (number) => judge(spoiltRecording(seed, number)));
+it(`${count} spoilt recordings from number ${from} on`, async () => {
+  const report = await fuzz('recordings', { from, count }, (number) => judge(spoiltRecording(seed, number)));
   expect(report.failures).toEqual([]);
   expect(report.slowestMs, `number ${report.slowest}`).toBeLessThan(slowMs);
   expect(report.peakMb).toBeLessThan(600);
 });
 
-it('100,000 spoilt sidecars and as many hostile names', () => {
+it.each(['UFF 58', 'NPY', 'HDF5'] as const)(`${Math.min(count, 20_000)} spoilt %s files`, async (kind) => {
+  const numbers = { from, count: Math.min(count, 20_000) };
+  const report = await fuzz(kind, numbers, (number) => judge(spoiltContainer(kind, seed, number)));
+  expect(report.failures).toEqual([]);
+  expect(report.slowestMs, `number ${report.slowest}`).toBeLessThan(slowMs);
+  expect(report.peakMb).toBeLessThan(600);
+});
+
+it('100,000 spoilt sidecars and as many hostile names', async () => {
   const numbers = { from, count: Math.min(count, 100_000) };
-  const sidecars = fuzz('sidecars', numbers, (number) => {
+  const sidecars = await fuzz('sidecars', numbers, (number) => {
     const sidecar = parseSidecar(spoiltSidecar(seed, number));
     return 'reason' in sidecar ? 'refused' : judge(wholeRecording(number), sidecar);
   });
-  const names = fuzz('names', numbers, (number) => judgeName(hostileName(seed, number)));
+  const names = await fuzz('names', numbers, (number) => judgeName(hostileName(seed, number)));
   expect([...sidecars.failures, ...names.failures]).toEqual([]);
 });

@@ -6,6 +6,7 @@ import {
   type RecordingHeader,
   type Sidecar,
 } from '../../src/acquisition/recording.ts';
+import type { SampleLayout } from '../../src/config/sample-layout.ts';
 import { type PointTask, type RecordingRead, readRecording } from '../../src/service/read-recording.ts';
 import { testBand, testPoint } from '../manipulation/point.ts';
 import type { Spoilt } from './spoilt-recordings.ts';
@@ -34,33 +35,63 @@ const points: readonly PointTask[] = [
   testPoint({ id: 'de-v', channel: 'A', signal: signal(1) }, { lineSpacingHz: 1.6, skipStartS: 0.01 }),
 ].map((point) => ({ point, nominalHz: 25 }));
 
+/** The same points of a site file that says where the samples stand; files without a rate get one from it. */
+function pointsWith(layout: SampleLayout): readonly PointTask[] {
+  return points.map((task) => {
+    const { recordings } = task.point;
+    return { ...task, point: { ...task.point, recordings: { ...recordings, sampleRateHz: 2560, layout } } };
+  });
+}
+
 const oneLine = /^[^\n\r\0]{5,400}$/;
 const mostReads = 6000;
+/** Of what is all the same, by deflate. */
+const mostCompression = 1100;
 
-function watched(bytes: Uint8Array): ByteSource {
+/** `broken` keeps what was wrong with a read, for a reader's library may swallow what is thrown at it. */
+interface Watched extends ByteSource {
+  broken: string | null;
+}
+
+function watched(bytes: Uint8Array): Watched {
   let reads = 0;
-  return {
+  const source: Watched = {
     size: bytes.length,
+    broken: null,
     read(offset, into) {
-      if (++reads > mostReads) throw new Error(`more than ${mostReads} reads of ${bytes.length} bytes`);
-      if (!Number.isSafeInteger(offset) || offset < 0) throw new Error(`read at ${offset}`);
+      if (++reads > mostReads) source.broken = `more than ${mostReads} reads of ${bytes.length} bytes`;
+      if (!Number.isSafeInteger(offset) || offset < 0) source.broken = `read at ${offset}`;
+      if (source.broken !== null) throw new Error(source.broken);
       const found = bytes.subarray(offset, offset + into.length);
       into.set(found);
       return found.length;
     },
   };
+  return source;
 }
 
-export function judge({ fileName, bytes }: Spoilt, sidecar: Sidecar | null = null): Answer {
-  const source = watched(bytes);
+export async function judge(spoilt: Spoilt, sidecar: Sidecar | null = null): Promise<Answer> {
+  const source = watched(spoilt.bytes);
+  const answer = await answerTo(spoilt, source, sidecar);
+  if (source.broken !== null) throw new Error(source.broken);
+  return answer;
+}
+
+async function answerTo(
+  { fileName, bytes, layout }: Spoilt,
+  source: ByteSource,
+  sidecar: Sidecar | null,
+): Promise<Answer> {
   const reader = readerFor(readHead(source), fileName);
   if (isRefusal(reader)) return refusal(reader);
-  const header = reader.header(source);
+  await reader.prepare?.();
+  const header = reader.header(source, layout);
   if (isRefusal(header)) return refusal(header);
   checkHeader(header);
-  const read = readRecording(source, reader, header, sidecar, points);
+  const tasks = layout === undefined ? points : pointsWith(layout);
+  const read = readRecording(source, reader, header, sidecar, tasks);
   if (isRefusal(read)) return refusal(read);
-  checkRead(read, bytes.length);
+  checkRead(read, bytes.length * (reader.format === 'HDF5' ? mostCompression : 1));
   return read.measurements.some(({ waveform }) => waveform !== null) ? 'measured' : 'nothing measured';
 }
 

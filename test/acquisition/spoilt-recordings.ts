@@ -1,3 +1,4 @@
+import type { SampleLayout } from '../../src/config/sample-layout.ts';
 import { seededRandom } from '../signal/random.ts';
 import { bext, letters, type WavParts, wavFile } from './wav-writer.ts';
 
@@ -9,9 +10,11 @@ import { bext, letters, type WavParts, wavFile } from './wav-writer.ts';
 export interface Spoilt {
   readonly fileName: string;
   readonly bytes: Uint8Array;
+  /** What the site file says of the place of its samples. */
+  readonly layout?: SampleLayout;
 }
 
-interface Dice {
+export interface Dice {
   uniform(): number;
   below(limit: number): number;
   pick<T>(of: readonly T[]): T;
@@ -101,9 +104,9 @@ const wordsOfText = [
 ].map((word) => new TextEncoder().encode(word));
 const chunkNames = ['fmt ', 'data', 'bext', 'ds64', 'LIST', 'RIFF', 'RF64', '\0\0\0\0', 'abcd'].map(letters);
 
-type Spoil = (bytes: Uint8Array, dice: Dice) => Uint8Array;
+export type Spoil = (bytes: Uint8Array, dice: Dice) => Uint8Array;
 
-function replaced(bytes: Uint8Array, at: number, length: number, by: Uint8Array): Uint8Array {
+export function replaced(bytes: Uint8Array, at: number, length: number, by: Uint8Array): Uint8Array {
   const rest = bytes.subarray(at + length);
   const all = new Uint8Array(at + by.length + rest.length);
   all.set(bytes.subarray(0, at));
@@ -120,7 +123,7 @@ function place(bytes: Uint8Array, { uniform, below }: Dice): number {
 const length = ({ uniform, below }: Dice) => 1 + below(uniform() < 0.8 ? 8 : 300);
 
 /** Overwrites `by` where it fits; the length stays. */
-function over(bytes: Uint8Array, at: number, by: Uint8Array): Uint8Array {
+export function over(bytes: Uint8Array, at: number, by: Uint8Array): Uint8Array {
   const from = Math.max(0, Math.min(at, bytes.length - by.length));
   return by.length > bytes.length ? bytes : replaced(bytes, from, by.length, by);
 }
@@ -134,7 +137,7 @@ function field(value: number | bigint, kind: 'u16' | 'u32' | 'f32' | 'f64', litt
   return new Uint8Array(view.buffer);
 }
 
-const spoils: readonly Spoil[] = [
+export const spoils: readonly Spoil[] = [
   (bytes, d) => over(bytes, place(bytes, d), Uint8Array.of(d.below(256))),
   (bytes, d) => {
     const at = place(bytes, d);

@@ -221,6 +221,11 @@ def hdf5():
     with h5py.File(path('elsewhere.h5'), 'w') as f:
         f['x'] = h5py.ExternalLink('one-data-set.h5', '/vibration/acceleration')
         f.create_dataset('y', shape=(40,), dtype='f8', external=[('/etc/hostname', 0, 320)])
+    # Nothing is written into either, so that both are small.
+    with h5py.File(path('long-chunks.h5'), 'w') as f:
+        f.create_dataset('x', shape=(8_000_000,), dtype='f8', chunks=(5_000_000,), compression='gzip')
+    with h5py.File(path('promises-much.h5'), 'w') as f:
+        f.create_dataset('x', shape=(10**12,), dtype='f8', chunks=(1000,), compression='gzip')
     whole = open(path('one-data-set.h5'), 'rb').read()
     open(path('cut-short.h5'), 'wb').write(whole[:3000])
 
