@@ -1,7 +1,7 @@
 import type { Part } from '../config/parts.ts';
 import type { Evidence } from '../manipulation/evidence.ts';
 import type { MeasuredSpeed, SpectralPeak } from '../manipulation/measurement.ts';
-import { type Finding, findFaults, inseparable, type ObservedSpeed } from './evidence.ts';
+import { type BearingFault, type Finding, findFaults, inseparable, type ObservedSpeed } from './evidence.ts';
 import {
   findingWords,
   frequencyOfFault,
@@ -138,6 +138,13 @@ function notSeparable(
     }));
 }
 
+/** 'BPFO x2'; an element that strikes both races makes the even multiples of its spin. */
+function lineOfFault(fault: BearingFault, harmonic: number): string {
+  return fault === 'rolling element'
+    ? harmonicName('BSF', 2 * harmonic)
+    : harmonicName(frequencyOfFault[fault], harmonic);
+}
+
 function named(
   { peaks }: AssessedSpectrum,
   findings: readonly Finding[],
@@ -149,7 +156,7 @@ function named(
     const part = parts.find(({ id }) => id === finding.partId)?.name ?? finding.partId;
     for (const { line, harmonic, sideband } of finding.family.lines) {
       const beside = sideband === 0 ? '' : ` ${sideband < 0 ? '-' : '+'} ${sidebandOf(finding)}`;
-      const name = `${harmonicName(frequencyOfFault[finding.fault], harmonic)}${beside}, ${part}`;
+      const name = `${lineOfFault(finding.fault, harmonic)}${beside}, ${part}`;
       ofFamilies.set(line, [...(ofFamilies.get(line) ?? []), name]);
     }
   }

@@ -5,7 +5,7 @@ import type { BearingFault, Finding } from './evidence.ts';
 export const frequencyOfFault: Readonly<Record<BearingFault, string>> = {
   'outer race': 'BPFO',
   'inner race': 'BPFI',
-  'rolling element': '2 BSF',
+  'rolling element': 'twice BSF',
   cage: 'FTF',
 };
 

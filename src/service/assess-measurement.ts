@@ -4,12 +4,28 @@ import type { Measurement } from '../manipulation/measurement.ts';
 
 /** The measurement with names on its peaks, and with what its lines say of the parts that its point hears. */
 export function assessed(measurement: Measurement, partsOfMachine: readonly Part[] | undefined): Measurement {
-  const { averaging, peaks, pointId, sampleRateHz, speed } = measurement;
+  const { averaging, envelope, peaks, pointId, sampleRateHz, speed } = measurement;
   const parts = partsOfMachine ?? [];
   const heard = parts.filter(({ at }) => at.includes(pointId));
   if (heard.length === 0 || averaging === null) return measurement;
   const { lineSpacingHz } = averaging;
   const plain: AssessedSpectrum = { kind: 'plain', peaks, lineSpacingHz, toHz: sampleRateHz / 2 };
-  const found = assess([plain], speed, heard, parts);
-  return { ...measurement, peaks: found.peaks[0] ?? peaks, evidence: found.evidence };
+  if (envelope == null) {
+    const found = assess([plain], speed, heard, parts);
+    return { ...measurement, peaks: found.peaks[0] ?? peaks, evidence: found.evidence };
+  }
+  const demodulated: AssessedSpectrum = {
+    kind: 'envelope',
+    peaks: envelope.peaks,
+    lineSpacingHz: envelope.lineSpacingHz,
+    toHz: (envelope.toHz - envelope.fromHz) / 2,
+  };
+  // The envelope first: it is where a bearing is heard soonest.
+  const found = assess([demodulated, plain], speed, heard, parts);
+  return {
+    ...measurement,
+    envelope: { ...envelope, peaks: found.peaks[0] ?? envelope.peaks },
+    peaks: found.peaks[1] ?? peaks,
+    evidence: found.evidence,
+  };
 }

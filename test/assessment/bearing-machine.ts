@@ -43,6 +43,17 @@ export function randomBearing(random: SeededRandom): RollingBearing {
   };
 }
 
+/** A bearing one of whose frequencies lies within 2 % of a harmonic of its shaft: one in about five is such. */
+export function bearingNearHarmonic(random: SeededRandom): RollingBearing {
+  for (;;) {
+    const bearing = randomBearing(random);
+    const { bsf, bpfo, bpfi } = bearingMultiples(bearing);
+    const multiples = [bpfo ?? 0, bpfi ?? 0, 2 * (bsf ?? 0)];
+    if (multiples.some((multiple) => Math.abs(multiple - Math.round(multiple)) < 0.02 * multiple))
+      return bearing;
+  }
+}
+
 export function bearingMachine(random: SeededRandom, kind: MachineKind): BearingMachine {
   const bearing = kind.bearing ?? randomBearing(random);
   const shaftHz = 10 + 40 * random.uniform();
