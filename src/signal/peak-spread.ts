@@ -16,8 +16,9 @@ export interface PeakSpread {
   readonly frequencyHz: number;
 }
 
-const levelLimit = 0.1;
-const lineLimit = 0.5;
+/** Beyond these the peak is not steady. */
+export const levelLimit = 0.1;
+export const lineLimit = 0.5;
 /** Height over the floor from which a peak can be measured in a single group: 13 dB. */
 const leastHeight = 20;
 /** Share of a peak's power that lies in one main lobe if it is a tone, at rest or moving. Noise in a hump spreads wider. */

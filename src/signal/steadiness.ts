@@ -1,7 +1,7 @@
 import { usableLines } from './floor.ts';
 import { floorSpreadLimit, levelVariance } from './floor-spread.ts';
 import { leakageOf } from './leakage.ts';
-import { peakSpread } from './peak-spread.ts';
+import { levelLimit, lineLimit, type PeakSpread, peakSpread } from './peak-spread.ts';
 import type { PeakSearch, PeakSettings } from './peaks.ts';
 import type { SegmentSpectra } from './segment-spectra.ts';
 
@@ -44,15 +44,10 @@ export function steadiness(
   const reasons: string[] = [];
   if (floorSpreadRatio !== null && floorSpreadRatio > 1) {
     reasons.push(
-      `the noise floor varies ${floorSpreadRatio.toPrecision(2)} times as much as steady noise would`,
+      `the noise floor varies ${figures(floorSpreadRatio, 2)} times as much as steady noise would`,
     );
   }
-  if (peak !== null && peak.ratio > 1) {
-    reasons.push(
-      `the peak at ${peak.frequencyHz.toPrecision(4)} Hz varies by ${(100 * peak.levelSpread).toPrecision(2)} % in level` +
-        ` and ${peak.lineSpread.toPrecision(2)} lines in frequency`,
-    );
-  }
+  if (peak !== null) reasons.push(...peakReasons(peak));
   return {
     floorSpreadRatio,
     peakSpreadRatio: peak?.ratio ?? null,
@@ -60,6 +55,22 @@ export function steadiness(
     unsteady: segmentSpread > 1,
     detail: reasons.join('; '),
   };
+}
+
+/** Of level and frequency what went beyond its limit, with the limit. */
+function peakReasons({ frequencyHz, levelSpread, lineSpread }: PeakSpread): string[] {
+  const peak = `of the peak at ${figures(frequencyHz, 4)} Hz moves by`;
+  const reasons: string[] = [];
+  if (levelSpread > levelLimit)
+    reasons.push(`the level ${peak} ±${figures(100 * levelSpread, 2)} %, more than ±${100 * levelLimit} %`);
+  if (lineSpread > lineLimit)
+    reasons.push(`the frequency ${peak} ±${figures(lineSpread, 2)} lines, more than ±${lineLimit} lines`);
+  return reasons;
+}
+
+/** So many significant figures, never with an exponent. */
+function figures(value: number, count: number): string {
+  return String(Number(value.toPrecision(count)));
 }
 
 /**
