@@ -10,8 +10,8 @@ export interface ToneSeparation {
 /**
  * Measured with this program's own peak search: from the distance on, both tones are found, each within half a line of
  * its place, in at least 95 of 100 trials; any place between the lines, any phases, the weaker tone 40 dB over the
- * floor, 1 to 11 averages; no multiple of half a line nearer does it. More averages do not move it. Null: under the rectangular window
- * the side lobes of one tone hide 3 to 80 of 100 weaker ones at any distance up to eight lines.
+ * floor, 1 to 11 averages, steps of half a line. More averages do not move it. Null: under the rectangular window the
+ * side lobes of one tone still hide 7 to 17 of 100 others eight lines off.
  * (The widths at half amplitude, after which resolution is often stated, are 2.00, 1.82, 2.30, 2.67 and 4.58 lines:
  * there the two peaks have merged.)
  */

@@ -145,15 +145,17 @@ describe('what recordings show', () => {
 });
 
 describe('a machine that stands still', () => {
-  const text = siteText.replace(
-    '    name: Raw water pump 2\n',
-    '    name: Raw water pump 2\n    running: speed above 300 rpm\n',
-  );
+  const text = siteText
+    .replace('from: 10 Hz', 'from: 20 Hz')
+    .replace(
+      '    name: Raw water pump 2\n',
+      '    name: Raw water pump 2\n    running: speed above 300 rpm\n',
+    );
   /** Drops a recording of the pump at the speed. */
-  function drop(site: SmallSite, stamp: string, rpm: number): void {
+  function drop(site: SmallSite, stamp: string, rpm: number, wav: Uint8Array): void {
     const at = (name: string) => join(site.folder, 'drop', name);
     writeFileSync(at(`pump-2_${stamp}.json`), JSON.stringify({ speed_rpm: rpm }));
-    writeFileSync(at(`pump-2_${stamp}.wav`), rpm === 0 ? slope() : sines([4], 1));
+    writeFileSync(at(`pump-2_${stamp}.wav`), wav);
   }
   /** Velocity that rises steadily towards 0 Hz: a random walk of acceleration. */
   function slope(): Uint8Array {
@@ -174,10 +176,12 @@ describe('a machine that stands still', () => {
     const site = await smallSite(text);
     try {
       const check = async () => (await run(['check', '--site', site.file], { clock: site.clock })).out;
-      drop(site, '20260302T060000Z', 1480);
+      drop(site, '20260302T060000Z', 1480, sines([4], 1));
       const running = await check();
       expect(running).toMatch(/overall +4\.0\d mm\/s .* 14\d % of 2\.8 !/);
-      drop(site, '20260302T070000Z', 0);
+      drop(site, '20260302T070000Z', 1480, slope());
+      expect(await check()).toContain('ski-slope');
+      drop(site, '20260302T070000Z', 0, slope());
       const file = await check();
       expect(file).toMatch(/levels +de-v: the machine stood still: not judged/);
       expect(file).not.toContain('ski-slope');

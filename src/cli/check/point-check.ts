@@ -34,6 +34,8 @@ export interface AveragingCheck {
   readonly averages: number;
   readonly effectiveAverages: number;
   readonly usedPercent: number;
+  /** Recordings that were pooled; left out: the one. */
+  readonly recordings?: number;
 }
 
 export interface PointCheck {

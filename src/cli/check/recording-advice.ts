@@ -1,11 +1,12 @@
 import { shaftsOf } from '../../assessment/fault-frequencies.ts';
 import { printFrequency, printSpeed } from '../../config/print-value.ts';
 import { type Machine, pointPath } from '../../config/site.ts';
+import { lineUncertainty } from '../../signal/level-uncertainty.ts';
 import { type RecordingReach, recordingReach } from '../../signal/recording-reach.ts';
 import { type RecordingKind, secondsFor } from '../../signal/segment-length.ts';
 import type { WindowName } from '../../signal/window.ts';
 import { type Advice, adviceOn, dbText } from '../recording-plan/advice.ts';
-import { bandsOfPoint } from '../recording-plan/question.ts';
+import { bandsOfPoint, demodulated } from '../recording-plan/question.ts';
 import type { AveragingCheck, PointCheck } from './point-check.ts';
 
 /** What a point's recordings show, in a line, and what they cannot, with what would do. */
@@ -37,19 +38,23 @@ export class RecordingAdviser {
       bands,
       mountingHz: null,
       slowestHz,
-      envelope: { fromHz: 2000, toHz: 8000 },
+      envelope: demodulated(point, averaging.sampleRateHz, point.mounting),
     };
     const key = JSON.stringify([recording, question]);
     const reach = this.#reaches.get(key) ?? recordingReach(recording, question);
     this.#reaches.set(key, reach);
     const cannot = adviceOn(recording, reach, { slowestHz, named: heard.length > 0, bands });
-    return { recording, reach, cannot };
+    if (point.analysis.averageOver == null) return { recording, reach, cannot };
+    // Pooling adds averages, never resolution: only what the spacing forbids still holds.
+    const line = lineUncertainty(averaging.effectiveAverages, question.confidencePercent);
+    return { recording, reach: { ...reach, line }, cannot: cannot.filter(({ rule }) => rule === 'names') };
   }
 }
 
-/** As long as the segments and their share of the recording say. */
+/** One recording, as long as its segments and their share of it say. */
 function recordingOf(averaging: AveragingCheck, skipStartS: number): RecordingKind {
-  const { overlapPercent, segmentSamples, sampleRateHz, averages, usedPercent } = averaging;
+  const { overlapPercent, segmentSamples, sampleRateHz, usedPercent } = averaging;
+  const averages = Math.max(1, Math.round(averaging.averages / (averaging.recordings ?? 1)));
   const shape = { overlapPercent, segmentSamples, sampleRateHz };
   const usedS = secondsFor(averages, { ...shape, skipStartS: 0 });
   return {

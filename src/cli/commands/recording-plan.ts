@@ -112,7 +112,7 @@ function atPoint(
 function planned(question: PlanQuestion, options: Options, io: CommandIo): ExitStatus {
   const plan = planRecording(wishOf(question));
   if ('refused' in plan) return fail(io, plan.reason);
-  const reach = recordingReach(plan.recording, reachQuestion(question));
+  const reach = recordingReach(plan.recording, reachQuestion(question, plan.recording.sampleRateHz));
   const overlaps = overlapGain(plan.recording, confidenceOf(question));
   const all = { question, plan, reach, overlaps };
   if (options.json === true) writeJson(io.out, planJson(all));
@@ -124,7 +124,7 @@ async function asItIs(question: PlanQuestion, options: Options, io: CommandIo): 
   const found = await lengthOf(question, io);
   if ('reason' in found) return fail(io, found.reason);
   const recording: RecordingKind = recordingOf(question, found);
-  const reach = recordingReach(recording, reachQuestion(question));
+  const reach = recordingReach(recording, reachQuestion(question, recording.sampleRateHz));
   const reached: Reached = {
     question,
     about: found.about,

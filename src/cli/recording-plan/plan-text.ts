@@ -1,12 +1,12 @@
 import { plain } from '../../advisory/escape.ts';
-import { printDuration, printFrequency, printNumber } from '../../config/print-value.ts';
+import { printFrequency, printNumber, printSeconds } from '../../config/print-value.ts';
 import { pointPath } from '../../config/site.ts';
 import type { OverlapRow } from '../../signal/overlap-gain.ts';
-import type { RecordingPlan, SpacingReason } from '../../signal/recording-plan.ts';
+import { handyLength, type RecordingPlan, type SpacingReason } from '../../signal/recording-plan.ts';
 import type { RecordingReach } from '../../signal/recording-reach.ts';
 import type { RecordingKind } from '../../signal/segment-length.ts';
 import { lineWidth, listing, table, wrapText } from '../output.ts';
-import { type Advice, dbText } from './advice.ts';
+import { type Advice, dbText, lengthText } from './advice.ts';
 import { type PlanQuestion, shownBands } from './question.ts';
 import { type Entry, reachEntries } from './reach-text.ts';
 
@@ -24,12 +24,26 @@ export function planText({ question, plan, reach, overlaps }: Planned): string {
   const why: Entry[] = [
     ['asked', askedText(question, plan)],
     ...reachEntries(plan.recording, reach, { ...question, bands: shownBands(question) }),
+    ...pooledEntry(plan),
   ];
   return [
     `${where}\n\n${siteLines(plan.recording)}`,
     `Why\n${listing(why, '  ')}`,
     overlapText(plan.recording, overlaps),
   ].join('\n');
+}
+
+/** Recordings of a minute and more are long for a logger; a segment each, pooled, gives the averages too. */
+function pooledEntry({ recording, layout }: RecordingPlan): Entry[] {
+  if (recording.durationS < 60) return [];
+  const least = handyLength(recording.skipStartS + recording.segmentSamples / recording.sampleRateHz);
+  const many = Math.ceil(layout.effectiveAverages);
+  return [
+    [
+      'shorter',
+      `recordings of ${printSeconds(least)} hold one segment; average_over: ${many} recordings, under analysis, pools as many averages from them`,
+    ],
+  ];
 }
 
 /** Ready to paste; loaded, they mean the plan again. */
@@ -43,7 +57,7 @@ export function siteLines({
   return [
     'recordings:',
     `  sample_rate: ${printFrequency(sampleRateHz, 9)}`,
-    `  duration: ${printDuration(Math.round(1000 * durationS))}`,
+    `  duration: ${lengthText(durationS)}`,
     'analysis:',
     `  window: ${window}`,
     `  overlap: ${printNumber(overlapPercent, 6)} %`,
@@ -139,7 +153,7 @@ export interface WishAnswer {
 /** What a recording can show, what it cannot, and what would. */
 export function reachText({ question, about, recording, reach, overlaps, advice, answers }: Reached): string {
   const { sampleRateHz, durationS, window, overlapPercent } = recording;
-  const head = `${about}: ${printDuration(Math.round(1000 * durationS))} at ${printFrequency(sampleRateHz, 6)}, ${window}, overlap ${printNumber(overlapPercent)} %`;
+  const head = `${about}: ${printSeconds(durationS)} at ${printFrequency(sampleRateHz, 6)}, ${window}, overlap ${printNumber(overlapPercent)} %`;
   const lines = [wrapText(plain(head), lineWidth).join('\n')];
   if (reach.layout.averages === 0) {
     const seconds = recording.segmentSamples / sampleRateHz;

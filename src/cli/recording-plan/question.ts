@@ -1,4 +1,5 @@
 import { mountingRangeHz } from '../../config/bands.ts';
+import { usualDemodulation } from '../../config/envelope-settings.ts';
 import { segmentOf, usualLineSpacingHz } from '../../config/meaning.ts';
 import { printFrequency } from '../../config/print-value.ts';
 import type { Machine, Point, Quantity } from '../../config/site.ts';
@@ -25,8 +26,14 @@ export interface PlanQuestion {
 
 /** The band that every velocity limit is about, where none is asked for. */
 const overall: NamedBand = { name: 'velocity, 10 Hz to 1000 Hz', fromHz: 10, toHz: 1000, integrations: 1 };
-/** What is demodulated unless the site says otherwise. */
-const usualEnvelope = { fromHz: 2000, toHz: 8000 };
+/** What would be demodulated of a point, or of any, at a sample rate. */
+export function demodulated(
+  point: Point | null,
+  sampleRateHz: number,
+  mounting: Point['mounting'],
+): ReachQuestion['envelope'] {
+  return point?.envelope?.band ?? usualDemodulation(sampleRateHz, mounting);
+}
 
 export function questionOf(
   asked: AskedPlan,
@@ -59,13 +66,15 @@ function namedBands({ bands }: AskedPlan, quantity: Quantity): NamedBand[] | { r
   return named;
 }
 
-/** Bands in orders lie where the slowest speed puts them; without a speed they lie nowhere. */
+/**
+ * Bands of the plain spectrum. Those in orders lie where the slowest speed puts them; without a speed they lie nowhere.
+ */
 export function bandsOfPoint(point: Point | null, slowestHz: number | null): NamedBand[] {
   if (point === null) return [];
   return point.bands.flatMap((band) => {
     const perUnit = band.inOrders ? slowestHz : 1;
     const integrations = integrationsBetween(point.quantity, band.quantity);
-    if (perUnit === null || typeof integrations !== 'number') return [];
+    if (band.of === 'envelope' || perUnit === null || typeof integrations !== 'number') return [];
     return [{ name: band.id, fromHz: band.from * perUnit, toHz: band.to * perUnit, integrations }];
   });
 }
@@ -79,14 +88,14 @@ export function confidenceOf({ asked, at }: PlanQuestion): number {
   return asked.confidence?.percent ?? at?.point.analysis.confidencePercent ?? 95;
 }
 
-export function reachQuestion(question: PlanQuestion): ReachQuestion {
-  const { mounting, slowestHz } = question;
+export function reachQuestion(question: PlanQuestion, sampleRateHz: number): ReachQuestion {
+  const { at, mounting, slowestHz } = question;
   return {
     confidencePercent: confidenceOf(question),
     bands: shownBands(question),
     mountingHz: mounting === null ? null : mountingRangeHz[mounting],
     slowestHz,
-    envelope: usualEnvelope,
+    envelope: demodulated(at?.point ?? null, sampleRateHz, mounting),
   };
 }
 
