@@ -6,6 +6,7 @@ import { findTaken, insertRecording, type StoredRecording } from '../store/recor
 import { type ChangeContext, saveAlarmChange } from '../store/save-alarm.ts';
 import { getSource, noteArrival, type Source, saveSource } from '../store/sources.ts';
 import { insertMeasurement } from '../store/trends.ts';
+import { noteEnvelopeChoices } from './envelope-choices.ts';
 import { type Evaluated, evaluate } from './evaluate.ts';
 import { learn } from './learn.ts';
 import type { RecordingTime } from './recording-time.ts';
@@ -89,6 +90,10 @@ export async function decide(
   };
   for (const one of evaluated)
     await storeEvaluated(writer, view, one, { recordingId, time, judged, context });
+  if (judged && !time.late) {
+    const { measurements } = answer;
+    await noteEnvelopeChoices(writer, view, { measurements, evaluated, usedMs: Math.round(time.usedMs) });
+  }
   for (const change of await troublesOf(writer, taken, time, source))
     await saveAlarmChange(writer, change, context);
   await noteArrivals(writer, view, taken, time, judged);

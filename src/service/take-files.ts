@@ -17,10 +17,12 @@ import {
 } from './batches.ts';
 import type { Clock } from './clock.ts';
 import { decide } from './decide.ts';
+import { type ChosenBands, chosenBandsOf } from './envelope-choices.ts';
 import type { FileAway } from './file-away.ts';
 import type { FileLook } from './file-source.ts';
 import type { KeptFiles } from './kept-files.ts';
 import type { Complaints, Logger } from './log.ts';
+import { measureTask } from './measure-task.ts';
 import type { PutAside } from './put-aside.ts';
 import type { MeasureAnswer, RecordingAnswer, RecordingTask } from './recording-task.ts';
 import type { SiteView } from './site-view.ts';
@@ -111,7 +113,8 @@ export class TakeFiles {
   async #start(batch: readonly ReadyRecording[] | undefined) {
     if (batch === undefined) return null;
     const files = await this.#begin(batch);
-    return { files, running: files.map((one) => this.#analyse(one)) };
+    const chosenBandOf = await chosenBandsOf(this.#tools.ledger, files);
+    return { files, running: files.map((one) => this.#analyse(one, chosenBandOf)) };
   }
 
   async #suspectsOf(): Promise<ReadonlyMap<string, number>> {
@@ -142,23 +145,8 @@ export class TakeFiles {
     return good;
   }
 
-  async #analyse(ready: ReadyRecording): Promise<Analysed> {
-    const { view } = ready;
-    const answer = await this.#tools.pool.run({
-      task: 'measure',
-      path:
-        ready.archived === null
-          ? `${view.site.folders.drop}/${ready.path}`
-          : `${view.site.folders.data}/${ready.archived}`,
-      largestBytes: view.site.largestFileBytes,
-      seen: ready.header.look,
-      sidecar: ready.header.sidecar,
-      points: ready.points.map((point) => ({
-        point,
-        nominalHz: view.machine(point.machineId).runningSpeedHz,
-        parts: view.machine(point.machineId).parts,
-      })),
-    });
+  async #analyse(ready: ReadyRecording, chosenBandOf: ChosenBands): Promise<Analysed> {
+    const answer = await this.#tools.pool.run(measureTask(ready, chosenBandOf));
     if (answer.outcome !== 'no-worker') this.#answered.add(attemptKey(ready.header.look));
     if (answer.outcome === 'answer') return { ready, answer: answer.answer as MeasureAnswer };
     const kind = answer.outcome === 'refused' ? 'stopped' : answer.outcome;

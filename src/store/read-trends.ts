@@ -2,6 +2,7 @@ import type { Selectable } from 'kysely';
 import type { Quantity } from '../config/site.ts';
 import type { SpectralPeak } from '../manipulation/measurement.ts';
 import type { Reader } from './lent-connection.ts';
+import { storedPeak } from './peaks.ts';
 import type { LevelsTable } from './schema.ts';
 
 /** One level of the past. SI r.m.s. */
@@ -93,14 +94,7 @@ export async function peaksOf(reader: Reader, measurementId: number): Promise<Sp
     .where('measurement_id', '=', measurementId)
     .orderBy('rank')
     .execute();
-  return rows.map((row) => ({
-    frequencyHz: row.frequency_hz,
-    level: row.level,
-    aboveFloorDb: row.above_floor_db,
-    kind: row.kind as SpectralPeak['kind'],
-    order: row.order_of_speed,
-    names: row.names === null ? [] : (JSON.parse(row.names) as string[]),
-  }));
+  return rows.map(storedPeak);
 }
 
 export function trendPoint(row: Selectable<LevelsTable>): TrendPoint {

@@ -15,6 +15,7 @@ import type {
   DayMarksTable,
   NotesTable,
 } from './baseline-tables.ts';
+import type { EnvelopeChoicesTable, EnvelopeSpectraTable, EnvelopesTable } from './envelope-tables.ts';
 import type { OpenPoolsTable } from './pooling.ts';
 
 /**
@@ -46,6 +47,10 @@ export interface LedgerTables {
   peaks: PeaksTable;
   evidence: EvidenceTable;
   spectra: SpectraTable;
+  envelopes: EnvelopesTable;
+  envelope_peaks: PeaksTable;
+  envelope_spectra: EnvelopeSpectraTable;
+  envelope_choices: EnvelopeChoicesTable;
   /** Recordings that wait to be averaged together, one row a point. */
   open_pools: OpenPoolsTable;
   point_arrivals: PointArrivalsTable;

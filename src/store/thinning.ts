@@ -48,6 +48,7 @@ async function thinSlice(writer: Writer, pointId: number, rule: ThinningRule): P
   const slice = removed.slice(0, spectraASlice);
   if (slice.length === 0) return 0;
   await writer.deleteFrom('spectra').where('measurement_id', 'in', slice).execute();
+  await writer.deleteFrom('envelope_spectra').where('measurement_id', 'in', slice).execute();
   return slice.length;
 }
 

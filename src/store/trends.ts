@@ -1,11 +1,13 @@
 import type { Insertable } from 'kysely';
-import type { Measurement, SpectralPeak } from '../manipulation/measurement.ts';
+import type { Measurement } from '../manipulation/measurement.ts';
 import { conditionId } from './conditions.ts';
+import { insertEnvelope } from './envelopes.ts';
 import { insertEvidence } from './evidence.ts';
 import { jsonOfFinite } from './journal.ts';
 import type { Writer } from './lent-connection.ts';
 import { insertRows } from './many-rows.ts';
-import type { LevelsTable, MeasurementsTable, PeaksTable } from './schema.ts';
+import { insertPeaks } from './peaks.ts';
+import type { LevelsTable, MeasurementsTable } from './schema.ts';
 import type { SiteIds } from './site-ids.ts';
 import { insertSpectrum, type Place } from './spectra.ts';
 
@@ -56,9 +58,10 @@ export async function insertMeasurement(
     .returning('id')
     .executeTakeFirstOrThrow();
   await insertLevels(writer, ids, entry, { pointId, measurementId: stored.id });
-  await insertPeaks(writer, stored.id, measurement.peaks);
+  await insertPeaks(writer, 'peaks', stored.id, measurement.peaks);
   await insertEvidence(writer, stored.id, measurement.evidence);
   await insertSpectrum(writer, entry, { pointId, measurementId: stored.id });
+  await insertEnvelope(writer, stored.id, measurement.envelope ?? null);
   return stored.id;
 }
 
@@ -158,38 +161,6 @@ async function getSeries(
 
 function seriesName(bandId: number, fingerprint: string): string {
   return `${bandId} ${fingerprint}`;
-}
-
-const peakColumns = [
-  'measurement_id',
-  'rank',
-  'frequency_hz',
-  'level',
-  'above_floor_db',
-  'kind',
-  'order_of_speed',
-  'names',
-] as const satisfies readonly (keyof PeaksTable)[];
-
-async function insertPeaks(
-  writer: Writer,
-  measurementId: number,
-  peaks: readonly SpectralPeak[],
-): Promise<void> {
-  await writer.deleteFrom('peaks').where('measurement_id', '=', measurementId).execute();
-  const rows = peaks.map(
-    (peak, index): PeaksTable => ({
-      measurement_id: measurementId,
-      rank: index + 1,
-      frequency_hz: peak.frequencyHz,
-      level: peak.level,
-      above_floor_db: peak.aboveFloorDb,
-      kind: peak.kind,
-      order_of_speed: peak.order,
-      names: peak.names.length === 0 ? null : JSON.stringify(peak.names),
-    }),
-  );
-  await insertRows(writer, 'peaks', peakColumns, rows);
 }
 
 function measurementRow(entry: NewMeasurement, pointId: number): Insertable<MeasurementsTable> {

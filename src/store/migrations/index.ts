@@ -4,6 +4,7 @@ import { first } from './001-first.ts';
 import { baselines } from './002-baselines.ts';
 import { pooling } from './003-pooling.ts';
 import { evidence } from './004-evidence.ts';
+import { envelope } from './005-envelope.ts';
 
 /** One step of the ledger's tables; `number` counts from 1 without gaps, in the order of `migrations`. */
 export interface Migration {
@@ -13,7 +14,7 @@ export interface Migration {
 }
 
 /** In this order; who adds one takes the next number. */
-export const migrations: readonly Migration[] = [first, baselines, pooling, evidence];
+export const migrations: readonly Migration[] = [first, baselines, pooling, evidence, envelope];
 
 interface Now {
   readonly wallMs: number;
