@@ -203,8 +203,10 @@ export class Measurer {
 
   #share(density: AveragedDensity | null): Pick<Measurement, 'share'> {
     if (density === null || this.#averaging === null) return {};
-    const { averageOver } = this.#settings.point.analysis;
-    return averageOver === undefined ? {} : { share: { averaging: this.#averaging, density } };
+    if (this.#settings.point.analysis.averageOver === undefined) return {};
+    const envelope = this.#longest?.envelope ?? null;
+    const part = envelope && { plan: envelope.plan, density: envelope.density };
+    return { share: { averaging: this.#averaging, density, envelope: part } };
   }
 
   #fingerprintSettings() {

@@ -2,6 +2,7 @@ import type { QualityFinding } from '../acquisition/recording.ts';
 import type { Quantity } from '../config/site.ts';
 import type { AveragedDensity, AveragingSettings } from '../signal/averaging.ts';
 import type { EnvelopeMeasured } from './envelope-measured.ts';
+import type { EnvelopePlan } from './envelope-plan.ts';
 import type { Evidence } from './evidence.ts';
 
 /**
@@ -29,6 +30,8 @@ export interface Measurement {
   readonly levels: readonly BandLevel[];
   readonly peaks: readonly SpectralPeak[];
   readonly spectrum: Spectrum | null;
+  /** Null or left out: the speed did not move so far that lines smear, or nothing says how it moved. */
+  readonly orders?: OrderSpectrum | null;
   /** Null or left out: the point has none, or the recording is too short for it. */
   readonly envelope?: EnvelopeMeasured | null;
   readonly quality: readonly QualityFinding[];
@@ -43,6 +46,13 @@ export interface Measurement {
 /** The mean density of a recording's segments, (SI unit)²/Hz in full precision, for an average over several recordings. */
 export interface PoolShare {
   readonly averaging: AveragingSettings;
+  readonly density: AveragedDensity;
+  /** Null where the point has none, or not one segment of it fitted. */
+  readonly envelope: EnvelopeShare | null;
+}
+
+export interface EnvelopeShare {
+  readonly plan: EnvelopePlan;
   readonly density: AveragedDensity;
 }
 
@@ -132,4 +142,14 @@ export interface Spectrum {
   readonly density: Float32Array;
   /** The highest that any segment had, for eyes only; left out: the mean of the segments. */
   readonly averaging?: 'peak-hold';
+}
+
+/** Spectrum over orders of a shaft whose speed moved, from samples at equal angles; frequencies are those at the mean speed. */
+export interface OrderSpectrum {
+  readonly meanRpm: number;
+  readonly lineSpacingOrders: number;
+  readonly averages: number;
+  /** One-sided, (SI unit)²/order. */
+  readonly density: Float32Array;
+  readonly peaks: readonly SpectralPeak[];
 }

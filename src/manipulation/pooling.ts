@@ -1,7 +1,7 @@
 import type { AnalysisSettings } from '../config/site.ts';
 import type { AveragedDensity, AveragingSettings } from '../signal/averaging.ts';
 import { poolDensities } from '../signal/pooled-density.ts';
-import type { Measurement, PoolShare } from './measurement.ts';
+import type { EnvelopeShare, Measurement, PoolShare } from './measurement.ts';
 
 /**
  * Pooling of short recordings: `average_over: 30 recordings` averages the segments of thirty consecutive recordings of
@@ -33,10 +33,16 @@ export interface Pool {
   readonly density: AveragedDensity;
   /** Segments of each recording, in order. */
   readonly segments: readonly number[];
+  /** Of those recordings that had one. */
+  readonly envelope: PooledEnvelope | null;
   /** Sum of the recordings' lengths. */
   readonly durationS: number;
   /** Of the recordings that had a speed: sum of segments, of segments times speed, lowest and highest less and plus uncertainty. */
   readonly speed: PooledSpeed | null;
+}
+
+export interface PooledEnvelope extends EnvelopeShare {
+  readonly segments: readonly number[];
 }
 
 export interface PooledSpeed {
@@ -116,18 +122,32 @@ function withRecording(pool: Pool | null, arrival: PoolArrival, share: PoolShare
   const { measurement, usedMs, condition } = arrival;
   const averaging = pool?.averaging ?? share.averaging;
   const { density } = share;
-  const { lineSpacingHz } = pool?.density ?? density;
-  const parts = pool === null ? [density] : [pool.density, { ...density, lineSpacingHz }];
   return {
     settingsFingerprint: measurement.settingsFingerprint,
     condition,
     firstUsedMs: pool?.firstUsedMs ?? usedMs,
     newestUsedMs: usedMs,
     averaging,
-    density: poolDensities(parts),
+    density: withDensity(pool?.density ?? null, density),
     segments: [...(pool?.segments ?? []), density.averages],
+    envelope: withEnvelope(pool?.envelope ?? null, share.envelope),
     durationS: (pool?.durationS ?? 0) + measurement.durationS,
     speed: withSpeed(pool?.speed ?? null, measurement.speed, density.averages),
+  };
+}
+
+/** Sample rates that count as the same give lines that count as the same: those of the first recording. */
+function withDensity(before: AveragedDensity | null, density: AveragedDensity): AveragedDensity {
+  if (before === null) return density;
+  return poolDensities([before, { ...density, lineSpacingHz: before.lineSpacingHz }]);
+}
+
+function withEnvelope(before: PooledEnvelope | null, share: EnvelopeShare | null): PooledEnvelope | null {
+  if (share === null || share.density.averages === 0) return before;
+  return {
+    plan: before?.plan ?? share.plan,
+    density: withDensity(before?.density ?? null, share.density),
+    segments: [...(before?.segments ?? []), share.density.averages],
   };
 }
 

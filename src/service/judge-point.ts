@@ -47,16 +47,22 @@ export interface PointJudged {
  */
 export async function judgePoint(writer: Writer, arrival: PointArrival): Promise<PointJudged> {
   const { view, point, measurement, usedMs, judged, late, condition } = arrival;
+  const { parts } = view.machine(point.machineId);
   const pools = point.analysis.averageOver !== undefined;
   const pooled =
     pools && judged && !late
-      ? await poolOf(writer, view.ids.pointId(point.machineId, point.id), point, {
-          measurement,
-          usedMs,
-          running: arrival.machineState === 'running',
-          condition,
-          flagged: measurement.quality.length > 0 || arrival.recordingFlags.length > 0,
-        })
+      ? await poolOf(
+          writer,
+          view.ids.pointId(point.machineId, point.id),
+          { point, parts },
+          {
+            measurement,
+            usedMs,
+            running: arrival.machineState === 'running',
+            condition,
+            flagged: measurement.quality.length > 0 || arrival.recordingFlags.length > 0,
+          },
+        )
       : null;
   let earlier = arrival.earlier;
   const judge = async (change: Partial<DetectionInput>): Promise<readonly AlarmChange[]> => {

@@ -1,9 +1,11 @@
+import type { Part } from '../config/parts.ts';
 import type { Point } from '../config/site.ts';
 import { pooledMeasurement } from '../manipulation/measure-pooled.ts';
 import type { Measurement } from '../manipulation/measurement.ts';
-import { type PoolArrival, type PoolStep, poolStep } from '../manipulation/pooling.ts';
+import { type Pool, type PoolArrival, type PoolStep, poolStep } from '../manipulation/pooling.ts';
 import type { Writer } from '../store/lent-connection.ts';
 import { loadPool, type PoolNewest } from '../store/pooling.ts';
+import { assessedPool } from './assess-measurement.ts';
 
 /** What a recording does to the pool of its point; the rules are those of pooling.ts. */
 export interface Pooled {
@@ -25,7 +27,7 @@ export interface EndedPool {
 export async function poolOf(
   writer: Writer,
   pointId: number,
-  point: Point,
+  { point, parts }: { readonly point: Point; readonly parts: readonly Part[] | undefined },
   arrival: PoolArrival,
 ): Promise<Pooled | null> {
   const { averageOver } = point.analysis;
@@ -33,15 +35,16 @@ export async function poolOf(
   const { expectedEveryMs, overdueAfterMs } = point.recordings;
   const open = await loadPool(writer, pointId);
   const step = poolStep(open?.pool ?? null, arrival, { averageOver, expectedEveryMs, overdueAfterMs });
-  const { measurement } = arrival;
+  const said = (newest: Measurement, pool: Pool) =>
+    assessedPool(pooledMeasurement(point, newest, pool), parts);
   return {
     step,
-    full: step.full === null ? null : pooledMeasurement(point, measurement, step.full),
+    full: step.full === null ? null : said(arrival.measurement, step.full),
     ended:
       step.ended === null || open === null
         ? null
         : {
-            measurement: pooledMeasurement(point, open.newest.measurement, step.ended),
+            measurement: said(open.newest.measurement, step.ended),
             usedMs: step.ended.newestUsedMs,
             condition: step.ended.condition,
             newest: open.newest,

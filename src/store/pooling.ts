@@ -1,5 +1,6 @@
 import type { Measurement } from '../manipulation/measurement.ts';
-import type { Pool } from '../manipulation/pooling.ts';
+import type { Pool, PooledEnvelope } from '../manipulation/pooling.ts';
+import type { AveragedDensity } from '../signal/averaging.ts';
 import { jsonOfFinite } from './journal.ts';
 import type { Reader, Writer } from './lent-connection.ts';
 import { doubleBytes, doublesOf } from './spectra.ts';
@@ -13,6 +14,9 @@ export interface OpenPool {
   readonly pool: Pool;
   readonly newest: PoolNewest;
 }
+
+/** A density without its lines, which are kept in double precision beside the facts. */
+type Lines = Omit<AveragedDensity, 'density'>;
 
 /** The newest recording of a pool, as the pool is judged by it when it ends early. */
 export interface PoolNewest {
@@ -32,10 +36,13 @@ export interface OpenPoolsTable {
   facts: string;
   /** Float64, little-endian, one-sided mean density in (SI unit)²/Hz. */
   density: Uint8Array;
+  /** Likewise, of the envelope; null: the recordings have none. */
+  envelope_density: Uint8Array | null;
 }
 
-type Facts = Omit<Pool, 'density'> & {
-  readonly density: Omit<Pool['density'], 'density'>;
+type Facts = Omit<Pool, 'density' | 'envelope'> & {
+  readonly density: Lines;
+  readonly envelope: (Omit<PooledEnvelope, 'density'> & { readonly density: Lines }) | null;
   readonly newest: Omit<PoolNewest, 'recordingId'>;
 };
 
@@ -46,23 +53,32 @@ export async function loadPool(reader: Reader, pointId: number): Promise<OpenPoo
     .where('point_id', '=', pointId)
     .executeTakeFirst();
   if (row === undefined) return null;
-  const { newest, density, ...pool } = JSON.parse(row.facts) as Facts;
+  const { newest, density, envelope, ...pool } = JSON.parse(row.facts) as Facts;
+  const ofEnvelope = row.envelope_density;
   return {
-    pool: { ...pool, density: { ...density, density: doublesOf(row.density) } },
+    pool: {
+      ...pool,
+      density: { ...density, density: doublesOf(row.density) },
+      envelope:
+        envelope === null || ofEnvelope === null
+          ? null
+          : { ...envelope, density: { ...envelope.density, density: doublesOf(ofEnvelope) } },
+    },
     newest: { ...newest, recordingId: row.recording_id },
   };
 }
 
 export async function savePool(writer: Writer, pointId: number, open: OpenPool): Promise<void> {
   const { pool, newest } = open;
-  const { density, ...lines } = pool.density;
+  const { density, envelope } = pool;
   const { share: _, ...measurement } = newest.measurement;
   const facts: Facts = {
     ...pool,
-    density: lines,
+    density: withoutLines(density),
+    envelope: envelope && { ...envelope, density: withoutLines(envelope.density) },
     newest: {
       runningHours: newest.runningHours,
-      measurement: { ...measurement, peaks: [], spectrum: null },
+      measurement: bare(measurement),
     },
   };
   const row = {
@@ -70,13 +86,34 @@ export async function savePool(writer: Writer, pointId: number, open: OpenPool):
     recordings: pool.segments.length,
     newest_used_ms: Math.round(pool.newestUsedMs),
     facts: jsonOfFinite(facts),
-    density: doubleBytes(density),
+    density: doubleBytes(density.density),
+    envelope_density: envelope && doubleBytes(envelope.density.density),
   };
   await writer
     .insertInto('open_pools')
     .values({ point_id: pointId, ...row })
     .onConflict((conflict) => conflict.column('point_id').doUpdateSet(row))
     .execute();
+}
+
+function withoutLines({ density: _, ...lines }: AveragedDensity): Lines {
+  return lines;
+}
+
+/** Of its levels only the series is needed, and of the envelope what shocks it held. */
+function bare(measurement: Measurement): Measurement {
+  const { envelope } = measurement;
+  return {
+    ...measurement,
+    peaks: [],
+    evidence: [],
+    spectrum: null,
+    orders: null,
+    envelope:
+      envelope == null
+        ? null
+        : { ...envelope, peaks: [], spectrum: { ...envelope.spectrum, density: new Float32Array(0) } },
+  };
 }
 
 /** Nothing happens where none is open. */

@@ -9,7 +9,7 @@ export const pooling: Migration = {
     create table open_pools (
       point_id integer primary key references points, recording_id integer not null references recordings,
       recordings integer not null, newest_used_ms integer not null, facts text not null,
-      density blob not null) strict;
+      density blob not null, envelope_density blob) strict;
     alter table measurements add column pooled_recordings integer;
     alter table spectra add column averaging text;`,
   ],
