@@ -44,7 +44,8 @@ interface Advised {
 }
 
 async function advised(path: string): Promise<Map<string, Advised>> {
-  const { out } = await run(['check', '--site', path, '--json']);
+  const { out, err } = await run(['check', '--site', path, '--json']);
+  expect(err).toBe('');
   const { machines } = JSON.parse(out) as {
     machines: { machine: string; points: (Advised & { point: string })[] }[];
   };
@@ -108,6 +109,18 @@ describe('what recordings show', () => {
       .replace('duration: 2 s', 'duration: 0.59 s')
       .replace('window: hann', 'window: hann');
     expect(await rules(siteOf(wasted))).toContain('unused');
+  });
+
+  it('advises neither longer recordings where they are pooled, nor on bands of the envelope', async () => {
+    const pooled = siteText
+      .replace('duration: 2 s', 'duration: 0.5 s')
+      .replace('  line_spacing: 2.5 Hz', '  line_spacing: 2.5 Hz\n  average_over: 30 recordings');
+    expect((await advised(siteOf(pooled))).get('pump-2/de-v')?.cannot_show).toEqual([]);
+    const envelope = siteText.replace(
+      '        unit: mm/s\n',
+      '        unit: mm/s\n      - id: shocks\n        of: envelope\n        from: 20 Hz\n        to: 28 Hz\n',
+    );
+    expect((await advised(siteOf(envelope))).get('pump-2/de-v')?.cannot_show).toEqual([]);
   });
 
   it('stays readable for 200 points: what is alike is said once, for the most demanding', async () => {
