@@ -1,4 +1,5 @@
 import { printFrequency, printNumber, printSeconds } from '../config/print-value.ts';
+import { evidenceCaution, evidenceLines } from './evidence-facts.ts';
 import type { AlarmFacts, LineFacts, LinesFacts, OtherPointFacts, RecordingFacts } from './facts.ts';
 import type { Said } from './letter.ts';
 import {
@@ -20,6 +21,7 @@ import { zoneSaid } from './zone-words.ts';
 export type Detail = readonly [name: string, said: Said];
 
 const mostLines = 4;
+const mostNames = 2;
 const mostPoints = 6;
 
 export function alarmDetails(alarm: AlarmFacts, timeZone: string, writtenMs: number): Detail[] {
@@ -36,6 +38,7 @@ export function alarmDetails(alarm: AlarmFacts, timeZone: string, writtenMs: num
     ['Before', beforeDetail(alarm)],
     ...(alarm.trend === null ? [] : [['Trend', foreign(alarm.trend)] as const]),
     ...(alarm.lines === null ? [] : linesDetails(withSureOrders(alarm.lines, alarm.recording), timeZone)),
+    ...evidenceDetail(alarm),
     ...otherPointsDetail(alarm.otherPoints),
     ['Recording', recordingDetail(alarm.recording, timeZone)],
     ...flagsDetail(alarm.recording),
@@ -115,9 +118,17 @@ function linesDetails(facts: LinesFacts, timeZone: string): Detail[] {
 function lineText(line: LineFacts, { display, comparedWithMs }: LinesFacts): string {
   const order = line.order === null ? '' : ` (${printNumber(line.order)}x)`;
   const now = line.level === null ? 'gone' : bareLevel(line.level, display);
-  const name = `${printFrequency(line.frequencyHz)}${order} ${now}`;
+  // The order says already which harmonic of the shaft it is.
+  const names = line.names.filter((one) => !/^\d+x$/.test(one)).slice(0, mostNames);
+  const named = names.length === 0 ? '' : ` [${foreign(names.join(', '))}]`;
+  const name = `${printFrequency(line.frequencyHz)}${order}${named} ${now}`;
   if (comparedWithMs === null) return name;
   return `${name} (${line.levelBefore === null ? 'new' : `was ${bareLevel(line.levelBefore, display)}`})`;
+}
+
+function evidenceDetail({ evidence }: AlarmFacts): Detail[] {
+  if (evidence.length === 0) return [];
+  return [['Evidence', `${evidenceLines(evidence).join('; ')}. ${evidenceCaution}`]];
 }
 
 function otherPointsDetail(points: readonly OtherPointFacts[]): Detail[] {

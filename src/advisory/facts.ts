@@ -4,6 +4,7 @@ import type { DisplayUnit, LimitReasons, Machine, Severity } from '../config/sit
 import type { ZoneBoundaries, ZoneLetter } from '../config/zone-tables.ts';
 import type { AlarmStanding, JournalEventName, TroubleKind } from '../detection/alarm.ts';
 import type { Averaging, RunningSpeed } from '../manipulation/measurement.ts';
+import type { EvidenceFacts } from './evidence-facts.ts';
 import type { Change } from './ranking.ts';
 
 /**
@@ -113,6 +114,8 @@ export interface StandingAlarm extends StandingFacts {
   readonly level: LevelFacts | null;
   /** Over the danger limit in the newest recording, on-delay still running. */
   readonly dangerUnconfirmed: boolean;
+  /** What the lines of the recording that the level is of say of the machine's parts. */
+  readonly evidence: readonly EvidenceFacts[];
   readonly change: Change | null;
   /** The site's own words of what to do. */
   readonly action: string | null;
@@ -170,6 +173,8 @@ export interface LinesFacts {
 export interface LineFacts {
   readonly frequencyHz: number;
   readonly order: number | null;
+  /** What may make it; see `SpectralPeak`. */
+  readonly names: readonly string[];
   /** SI r.m.s. of the line; null: it no longer stands out. */
   readonly level: number | null;
   /** The same then; null: it did not stand out. */

@@ -39,13 +39,15 @@ export function compareLines(now: PeaksAt, before: PeaksAt, most = 8): LineFacts
     return {
       frequencyHz: peak.frequencyHz,
       order: peak.order,
+      names: peak.names,
       level: peak.level,
       levelBefore: j === undefined ? null : (before.peaks[j]?.level ?? null),
     };
   });
   before.peaks.forEach((peak, j) => {
     if (taken.has(j)) return;
-    lines.push({ frequencyHz: peak.frequencyHz, order: peak.order, level: null, levelBefore: peak.level });
+    const { frequencyHz, order, names } = peak;
+    lines.push({ frequencyHz, order, names, level: null, levelBefore: peak.level });
   });
   return lines.sort((a, b) => strength(b) - strength(a)).slice(0, most);
 }

@@ -1,6 +1,7 @@
 import type { Severity } from '../config/site.ts';
 import { actionText, respondByText, whereText } from './alarm-mail.ts';
 import { clip } from './escape.ts';
+import { evidenceLines } from './evidence-facts.ts';
 import type { StandingAlarm } from './facts.ts';
 import { markWord } from './letter.ts';
 import { changeText, distanceText, levelText, measuredText, percentText } from './level-words.ts';
@@ -35,7 +36,7 @@ export function needFinding(group: readonly Standing[], facts: SummaryFacts): Fi
     number: first.number,
     text: findingText(first),
     todo: `${todoText(first)}${respond}`,
-    also: alsoLines(group),
+    also: [...alsoLines(group), ...evidenceOf(group)],
     since: `${sinceText(first, facts)}, ${standingText(first, timeZone)}.`,
   };
 }
@@ -118,6 +119,12 @@ function alsoLines(group: readonly Standing[]): string[] {
     const where = item.point === null ? 'the same' : directionOf({ point: item.point });
     return `Also ${markWord[severityOf(item)]} ${item.number}, ${where}: ${whatText(item)}`;
   });
+}
+
+/** What the lines of the bearing's directions say of its parts, each sentence once. */
+function evidenceOf(group: readonly Standing[]): string[] {
+  const said = group.flatMap((item) => (item.kind === 'alarm' ? evidenceLines(item.evidence) : []));
+  return [...new Set(said)].slice(0, 2).map((line) => line.charAt(0).toUpperCase() + line.slice(1));
 }
 
 function sinceText(item: Standing, { site, writtenMs }: SummaryFacts): string {

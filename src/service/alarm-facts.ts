@@ -13,6 +13,7 @@ import {
   type StoredMeasurement,
 } from '../store/read-measurements.ts';
 import { seriesOfPoint, type TrendPoint } from '../store/read-trends.ts';
+import { evidenceFacts } from './evidence-now.ts';
 import {
   bandFacts,
   findMachine,
@@ -78,6 +79,7 @@ export async function alarmFacts(reader: Reader, view: SiteView, event: UntoldEv
     limit: limit === undefined ? await limitFromJournal(reader, event, subject.limitId) : limitFacts(limit),
     level: levelOf(known, measured, usedMs),
     dangerUnconfirmed: state?.pending?.to === 'danger',
+    evidence: measured === null ? [] : await evidenceFacts(reader, measured.measurement.id),
     change: null,
     action: limit?.action ?? null,
     zone:

@@ -4,6 +4,7 @@ import type { Limit, Machine, Point } from '../config/site.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { newestMeasurement, type StoredMeasurement } from '../store/read-measurements.ts';
 import { seriesOfPoint, type TrendPoint } from '../store/read-trends.ts';
+import { evidenceFacts } from './evidence-now.ts';
 import { bandFacts, limitFacts, machineFacts, pointFacts, siteFacts } from './fact-names.ts';
 import { levelFacts, levelsBefore, linesFacts, otherPoints, recordingFacts } from './level-facts.ts';
 import type { SiteView } from './site-view.ts';
@@ -89,6 +90,7 @@ async function alarmOf(reader: Reader, view: SiteView, subject: Subject): Promis
     limit: limitFacts(limit),
     level: levelFacts(measurement, level),
     dangerUnconfirmed: false,
+    evidence: await evidenceFacts(reader, measurement.id),
     change: null,
     action: limit.action,
     zone: await alarmZone(reader, view, { machine, point, bandId: limit.bandId, measurement, before }),

@@ -3,6 +3,7 @@ import type { BandNow, PointNow } from '../advisory/summary-facts.ts';
 import type { StandingLife } from '../store/alarms.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { askedSinceMs } from '../store/period-counts.ts';
+import { newestEvidence } from './evidence-now.ts';
 import { bandFacts, findMachine, limitFacts, limitOf, machineFacts, pointFacts } from './fact-names.ts';
 import type { SiteView } from './site-view.ts';
 import { standingFacts } from './standing-facts.ts';
@@ -66,6 +67,7 @@ async function standingAlarm(
       limit === undefined ? { id: limitId, side: 'upper', alert: null, danger: null } : limitFacts(limit),
     level: now?.level ?? null,
     dangerUnconfirmed: state.pending?.to === 'danger',
+    evidence: one.alarm.pointId === null ? [] : await newestEvidence(reader, one.alarm.pointId),
     change: now?.change ?? null,
     action: limit?.action ?? null,
   };

@@ -34,7 +34,8 @@ describe('lines now against a week ago', () => {
   });
 
   it('rose or fell only beyond 3 dB', () => {
-    const course = (level: number) => lineCourse({ frequencyHz: 50, order: null, level, levelBefore: 1 });
+    const course = (level: number) =>
+      lineCourse({ frequencyHz: 50, order: null, names: [], level, levelBefore: 1 });
     expect([course(1.42), course(1.41), course(0.71), course(0.7)]).toEqual(['rose', 'same', 'same', 'fell']);
   });
 });

@@ -9,7 +9,17 @@ import type {
 import type { PointNow, SummaryFacts } from '../../src/advisory/summary-facts.ts';
 import { troubleName } from '../../src/advisory/wording.ts';
 import type { TroubleKind } from '../../src/detection/alarm.ts';
-import { danger, day, deadSensor, hour, levelOf, morning, overall, summaryFacts } from './sample-facts.ts';
+import {
+  danger,
+  day,
+  deadSensor,
+  hour,
+  levelOf,
+  morning,
+  overall,
+  summaryFacts,
+  zoneOf,
+} from './sample-facts.ts';
 
 /** Random facts with names as hostile as a file system and a careless site file allow. */
 
@@ -86,6 +96,15 @@ export const alarm: fc.Arbitrary<AlarmFacts> = fc
     change: random.change,
     action: random.text,
     trend: random.text,
+    evidence: [
+      { grade: 'weak', words: random.name },
+      { grade: 'strong', words: random.text },
+    ],
+    lines: danger.lines && {
+      ...danger.lines,
+      lines: danger.lines.lines.map((line) => ({ ...line, names: [random.name] })),
+    },
+    zone: clipped ? zoneOf(null, { why: random.text }) : zoneOf('C', { machine: { letter: 'D', point: p } }),
     recording: {
       ...danger.recording,
       fileName: random.text,
@@ -137,7 +156,7 @@ const pointNow: fc.Arbitrary<PointNow> = fc
       level: levelOf(level * 1e-3),
       limits: [danger.limit],
       change: changed,
-      zone: null,
+      zone: level > 5 ? null : zoneOf('B'),
     })),
   }));
 

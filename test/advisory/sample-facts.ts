@@ -111,6 +111,13 @@ export const danger: AlarmFacts = {
   limit: overallLimit,
   level: levelOf(5.21e-3),
   dangerUnconfirmed: false,
+  evidence: [
+    {
+      grade: 'clear',
+      words:
+        'three harmonics of BPFO of the drive-end bearing in the envelope (176.9 Hz), 14 dB over the floor, sidebands at 1x',
+    },
+  ],
   change: { ratio: 1.74, ordinaryRatio: 1.13, worse: true },
   action: 'Check base bolts and coupling, look for build-up on the impeller',
   respondByMs: morning + 1.5 * day,
@@ -134,10 +141,16 @@ export const danger: AlarmFacts = {
     display: mPerS2,
     comparedWithMs: morning - 7 * day - hour / 2,
     lines: [
-      { frequencyHz: 49.52, order: 1, level: 1.62, levelBefore: 0.61 },
-      { frequencyHz: 99.04, order: 2, level: 0.311, levelBefore: 0.302 },
-      { frequencyHz: 198.1, order: 4, level: 0.12, levelBefore: null },
-      { frequencyHz: 3127, order: 63.1, level: null, levelBefore: 0.09 },
+      { frequencyHz: 49.52, order: 1, names: ['1x'], level: 1.62, levelBefore: 0.61 },
+      { frequencyHz: 99.04, order: 2, names: ['2x'], level: 0.311, levelBefore: 0.302 },
+      {
+        frequencyHz: 198.1,
+        order: 4,
+        names: ['4x', 'blade pass, fan wheel'],
+        level: 0.12,
+        levelBefore: null,
+      },
+      { frequencyHz: 3127, order: 63.1, names: [], level: null, levelBefore: 0.09 },
     ],
   },
   otherPoints: [

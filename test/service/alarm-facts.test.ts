@@ -60,8 +60,8 @@ describe('the facts of an alarm', () => {
     expect(lines?.comparedWithMs).toBe(b.clock.wallMs() - 3 * dayMs);
     expect(lines?.display.quantity).toBe('acceleration');
     expect(lines?.lines).toEqual([
-      { frequencyHz: 163.4, order: null, level: 0.2, levelBefore: 0.02 },
-      { frequencyHz: 49.5, order: 1, level: 0.1, levelBefore: 0.1 },
+      { frequencyHz: 163.4, order: null, names: [], level: 0.2, levelBefore: 0.02 },
+      { frequencyHz: 49.5, order: 1, names: [], level: 0.1, levelBefore: 0.1 },
     ]);
     b.clock.advance(8 * dayMs);
     await b.record('blower/de', { overall: 5 }, { more: { peaks: [peak(163.4, 0.4)] } });

@@ -1,8 +1,10 @@
 import type { Band, DisplayUnit } from '../../config/site.ts';
 import { usualDisplayUnit } from '../../config/units.ts';
+import { type Evidence, isFaultEvidence } from '../../manipulation/evidence.ts';
 import type { BandLevel, Measurement, SpectralPeak } from '../../manipulation/measurement.ts';
 import type { FileAnalysis } from '../../service/analyse-file.ts';
 import { levelJson } from '../level-json.ts';
+import { envelopeJson } from './envelope-output.ts';
 import { noMachine } from './points-of-channels.ts';
 
 /** An analysed file with what its points were to give: what is written as JSON and as text. */
@@ -28,14 +30,19 @@ export function analysisJson(
     sample_rate_hz: sampleRateHz,
     duration_s: sampleRateHz === null ? null : frames / sampleRateHz,
     channels: measurements.map((measurement, n) => ({
-      ...channelJson(measurement, bands[n] ?? [], analysis),
+      ...channelJson(measurement, bands[n] ?? [], analysis, spectrum),
       ...(spectrum ? { spectrum: spectrumJson(measurement, densities[n] ?? null) } : {}),
     })),
   };
 }
 
-function channelJson(measurement: Measurement, bands: readonly Band[], { quality }: FileAnalysis) {
-  const { speed, waveform, averaging } = measurement;
+function channelJson(
+  measurement: Measurement,
+  bands: readonly Band[],
+  { quality }: FileAnalysis,
+  spectrum: boolean,
+) {
+  const { speed, waveform, averaging, envelope } = measurement;
   const inSite = measurement.machineId !== noMachine;
   return {
     channel: measurement.channel,
@@ -64,7 +71,8 @@ function channelJson(measurement: Measurement, bands: readonly Band[], { quality
     },
     bands: measurement.levels.map((level) => bandJson(level, displayOf(level, bands))),
     peaks: measurement.peaks.map((peak) => peakJson(peak, measurement.unit)),
-    envelope: null,
+    envelope: envelope == null ? null : envelopeJson(envelope, measurement.unit, peakJson, spectrum),
+    evidence: measurement.evidence.map(evidenceJson),
     quality: [...quality, ...measurement.quality].map(({ flag, detail }) => ({ flag, detail })),
   };
 }
@@ -93,6 +101,26 @@ function peakJson(peak: SpectralPeak, unit: string) {
     order: peak.order,
     above_floor_db: peak.aboveFloorDb,
     names: peak.names,
+  };
+}
+
+function evidenceJson(evidence: Evidence) {
+  const { partId, fault, frequency, spectrum, grade, expectedHz, words } = evidence;
+  const found = isFaultEvidence(evidence) ? evidence : null;
+  return {
+    part: partId,
+    fault,
+    frequency,
+    spectrum,
+    grade,
+    expected_hz: expectedHz,
+    observed_hz: found?.observedHz ?? null,
+    harmonics: found?.harmonics ?? null,
+    sidebands: found?.sidebands ?? null,
+    above_floor_db: found?.aboveFloorDb ?? null,
+    chance: found?.chance ?? null,
+    line_spacing_needed_hz: isFaultEvidence(evidence) ? null : evidence.neededLineSpacingHz,
+    words,
   };
 }
 

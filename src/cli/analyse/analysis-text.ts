@@ -1,11 +1,20 @@
 import { plain } from '../../advisory/escape.ts';
+import { evidenceCaution } from '../../advisory/evidence-facts.ts';
 import { bareLevel, unitText } from '../../advisory/level-words.ts';
 import { speedOrigin } from '../../advisory/wording.ts';
 import { printFrequency, printNumber, printSeconds } from '../../config/print-value.ts';
 import type { Band } from '../../config/site.ts';
-import type { Averaging, Measurement, SpectralPeak, WaveformValues } from '../../manipulation/measurement.ts';
+import { isFaultEvidence } from '../../manipulation/evidence.ts';
+import type {
+  Averaging,
+  BandLevel,
+  Measurement,
+  SpectralPeak,
+  WaveformValues,
+} from '../../manipulation/measurement.ts';
 import { listing, table, wrapText } from '../output.ts';
 import { type AnalysedFile, displayOf } from './analysis-json.ts';
+import { envelopeText } from './envelope-output.ts';
 import { noMachine } from './points-of-channels.ts';
 
 /** Peaks that a table shows. */
@@ -71,10 +80,20 @@ function channelText(
     averaging === null ? 'none: not even one segment fits' : averagingText(averaging),
   ]);
   facts.push(['waveform', waveform === null ? 'none' : waveformText(waveform)]);
+  if (measurement.envelope != null) facts.push(['envelope', envelopeText(measurement.envelope)]);
   if (quality.length === 0) facts.push(['quality', 'nothing to remark']);
   for (const [n, { flag, detail }] of quality.entries())
     facts.push([n === 0 ? 'quality' : '', `${flag}: ${detail}`]);
-  return `${head}${listing(facts, '  ')}${bandTable(measurement, bands)}${peakTable(measurement.peaks, measurement)}`;
+  facts.push(...evidenceFacts(measurement.evidence));
+  return `${head}${listing(facts, '  ')}${bandTable(measurement, bands)}${peakTable('peak', measurement.peaks, measurement)}${envelopePeaks(measurement)}`;
+}
+
+/** What the lines say of the parts, and that it is no verdict. */
+function evidenceFacts(evidence: Measurement['evidence']): [string, string][] {
+  if (evidence.length === 0) return [];
+  const said = evidence.map(({ grade, words }): [string, string] => ['', `${grade}: ${plain(words)}`]);
+  const told: [string, string][] = evidence.some(isFaultEvidence) ? [['', evidenceCaution]] : [];
+  return [...said, ...told].map(([, text], n) => [n === 0 ? 'evidence' : '', text]);
 }
 
 function averagingText(averaging: Averaging): string {
@@ -99,6 +118,10 @@ function waveformText(waveform: WaveformValues): string {
   ].join(', ');
 }
 
+function isOfEnvelope({ bandId }: BandLevel, bands: readonly Band[]): boolean {
+  return bands.find(({ id }) => id === bandId)?.of === 'envelope';
+}
+
 function bandTable(measurement: Measurement, bands: readonly Band[]): string {
   if (measurement.levels.length === 0) return '';
   const [first] = measurement.levels;
@@ -106,7 +129,7 @@ function bandTable(measurement: Measurement, bands: readonly Band[]): string {
     const display = displayOf(level, bands);
     return [
       level.bandId,
-      `${printFrequency(level.fromHz)} to ${printFrequency(level.toHz)}`,
+      `${printFrequency(level.fromHz)} to ${printFrequency(level.toHz)}${isOfEnvelope(level, bands) ? ' of the envelope' : ''}`,
       `${level.atLeast ? 'at least ' : ''}${bareLevel(level.level, display)}`,
       `${bareLevel(level.intervalLow, display)} to ${bareLevel(level.intervalHigh, display)}`,
       unitText(display),
@@ -128,9 +151,14 @@ function bandTable(measurement: Measurement, bands: readonly Band[]): string {
   )}`;
 }
 
-function peakTable(peaks: readonly SpectralPeak[], { unit, averaging }: Measurement): string {
+function envelopePeaks(measurement: Measurement): string {
+  const { envelope } = measurement;
+  return envelope == null ? '' : peakTable('envelope peak', envelope.peaks, measurement);
+}
+
+function peakTable(what: string, peaks: readonly SpectralPeak[], { unit, averaging }: Measurement): string {
   if (averaging === null) return '';
-  if (peaks.length === 0) return '\n  no peak stands out of the noise floor\n';
+  if (peaks.length === 0) return `\n  no ${what} stands out of the noise floor\n`;
   const rows = peaks
     .slice(0, mostPeaks)
     .map((peak) => [
@@ -138,13 +166,13 @@ function peakTable(peaks: readonly SpectralPeak[], { unit, averaging }: Measurem
       peak.order === null ? '' : `${printNumber(peak.order, 4)}x`,
       printNumber(peak.level, 4),
       printNumber(peak.aboveFloorDb),
-      peak.kind === 'hump' ? 'wider than a tone' : '',
+      [...peak.names, ...(peak.kind === 'hump' ? ['wider than a tone'] : [])].join('; '),
     ]);
   const more = peaks.length > mostPeaks ? `  and ${peaks.length - mostPeaks} weaker peaks\n` : '';
   return `\n${indented(
     table(
       [
-        { title: 'peak, Hz', right: true },
+        { title: `${what}, Hz`, right: true },
         { title: 'order', right: true },
         { title: `level, ${unit} r.m.s.`, right: true },
         { title: 'dB over the floor', right: true },
