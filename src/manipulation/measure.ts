@@ -2,10 +2,11 @@ import type { SamplesEnd } from '../acquisition/recording.ts';
 import type { Band } from '../config/site.ts';
 import { siUnit } from '../config/units.ts';
 import type { AveragedDensity, AveragingSettings } from '../signal/averaging.ts';
-import { CleanStretch, type StretchResult } from './clean-stretch.ts';
+import type { StretchResult } from './clean-stretch.ts';
 import { type EnvelopePlan, envelopePlan } from './envelope-plan.ts';
 import { seriesFingerprint, settingsFingerprint } from './fingerprint.ts';
 import { plainWaveform, shownSpectrum } from './kept-values.ts';
+import { LongestStretch } from './longest-stretch.ts';
 import { type MeasuredEnvelope, measureEnvelope, noEnvelope } from './measure-envelope.ts';
 import { measureFindings, unevenStepRatio } from './measure-findings.ts';
 import {
@@ -16,18 +17,13 @@ import {
   searchPeaks,
 } from './measure-levels.ts';
 import type { MeasureSettings } from './measure-settings.ts';
-import type { BandLevel, MeasuredSpeed, Measurement } from './measurement.ts';
+import type { BandLevel, Measurement } from './measurement.ts';
+import { OrderMeasurer } from './order-levels.ts';
 import { averagingOf, gridOf } from './point-averaging.ts';
 import { type LaidBands, layFixedBands, layOrderBands, lowestVelocityHz } from './point-bands.ts';
+import type { SpeedAnswer } from './running-speed.ts';
 
 export type { MeasureSettings, SampleCheck } from './measure-settings.ts';
-
-/**
- * No sensor gives more than this in the SI unit of its quantity, nor less and yet something: a sample beyond is a spoilt
- * number and counts as not finite, one below as 0. In between, fourth powers and densities stay numbers that can be kept.
- */
-export const largestSample = 1e12;
-const leastSample = 1e-60;
 
 /**
  * Makes a `Measurement` from the samples of one channel, fed in blocks of any size; the result does not depend on
@@ -44,11 +40,10 @@ export class Measurer {
   readonly #averaging: AveragingSettings | null;
   readonly #fixed: LaidBands;
   readonly #envelope: EnvelopePlan | null;
+  readonly #stretch: LongestStretch;
   #toSkip: number;
-  #stretch: CleanStretch;
   #longest: StretchResult | null = null;
   #ended: Ended | null = null;
-  #scaled = new Float64Array(0);
 
   constructor(settings: MeasureSettings) {
     this.#settings = settings;
@@ -60,7 +55,12 @@ export class Measurer {
     if (grid !== null) layOrderBands(point, grid, null);
     this.#envelope = envelopePlan(point, sampleRateHz, settings.chosenBand ?? null);
     this.#toSkip = Math.round(point.analysis.skipStartS * (sampleRateHz ?? 0));
-    this.#stretch = this.#newStretch();
+    this.#stretch = new LongestStretch(settings.siPerSample, this.#toSkip, {
+      averaging: this.#averaging,
+      bands: this.#fixed.laid,
+      besides: point.analysis.averaging,
+      envelope: this.#envelope,
+    });
   }
 
   /** Takes the next samples as the file holds them; the array may be used again by the caller. */
@@ -70,25 +70,12 @@ export class Measurer {
     const raw = samples.subarray(skipped);
     if (raw.length === 0) return;
     this.#settings.check?.add(raw);
-    if (this.#scaled.length < raw.length) this.#scaled = new Float64Array(raw.length);
-    const scaled = this.#scaled.subarray(0, raw.length);
-    const { siPerSample } = this.#settings;
-    let from = 0;
-    for (let n = 0; n < raw.length; n++) {
-      const value = raw[n] * siPerSample;
-      const size = Math.abs(value);
-      scaled[n] = size < leastSample ? 0 : value;
-      if (size <= largestSample) continue;
-      this.#stretch.add(scaled.subarray(from, n));
-      this.#endStretch();
-      from = n + 1;
-    }
-    this.#stretch.add(scaled.subarray(from));
+    this.#stretch.add(raw);
   }
 
   /** `end`: how the samples ended. The spectrum with its peaks, where a running speed may be looked for; null: none. */
   end({ timeStepDeviation }: Pick<SamplesEnd, 'timeStepDeviation'>): SearchedDensity | null {
-    this.#endStretch();
+    this.#longest = this.#stretch.finish();
     const isUneven = timeStepDeviation !== null && timeStepDeviation > unevenStepRatio;
     const density = isUneven ? null : (this.#longest?.density ?? null);
     const { falsePeaksPerSpectrum } = this.#settings.point.analysis;
@@ -104,11 +91,34 @@ export class Measurer {
     return searched;
   }
 
+  /** After `end`: what measures over equal angles, fed with the same samples once more; null where nothing can. */
+  overAngles(turnTimes: Float64Array): OrderMeasurer | null {
+    const { point, siPerSample } = this.#settings;
+    const samples = this.#longest?.samples ?? 0;
+    if (this.#averaging === null || !this.#ended?.searched) return null;
+    const seriesOf = (band: Band) => seriesFingerprint(this.#fingerprintSettings(), band);
+    const averaging = this.#averaging;
+    return OrderMeasurer.of({
+      point,
+      averaging,
+      turnTimes,
+      from: this.#stretch.from,
+      samples,
+      siPerSample,
+      seriesOf,
+    });
+  }
+
   /**
-   * The measurement, after `end`. `onDensity` is shown the density, (SI unit)²/Hz, as the levels were made from it; a
-   * measurement keeps it in single precision.
+   * The measurement, after `end`, with the running speed of its machine and what is to be said of it. `onDensity` is
+   * shown the density, (SI unit)²/Hz, as the levels were made from it; a measurement keeps it in single precision.
+   * `angles`: as `overAngles` gave it, fed; its levels take the place of those that a moving speed smears.
    */
-  finish(speed: MeasuredSpeed | null, onDensity: (density: Float64Array) => void = () => {}): Measurement {
+  finish(
+    { speed, findings }: SpeedAnswer,
+    onDensity: (density: Float64Array) => void = () => {},
+    angles: OrderMeasurer | null = null,
+  ): Measurement {
     if (this.#ended === null) throw new Error('a measurement is finished before its samples are ended');
     const { timeStepDeviation, searched } = this.#ended;
     const { point, sampleRateHz, channel, sidecar, check } = this.#settings;
@@ -122,6 +132,8 @@ export class Measurer {
     const atLeast = found.some(({ flag }) => flag === 'clipped' || flag === 'saturated');
     const levels = searched && this.#levels(searched, orders, speedHz, atLeast);
     const envelope = searched && this.#measureEnvelope(speedHz, atLeast);
+    const turned = angles?.finish(atLeast) ?? null;
+    const all = [...(levels?.levels ?? []), ...(envelope?.levels ?? []), ...(turned?.levels ?? [])];
     if (spectrum !== null) onDensity(spectrum.density);
     const own = measureFindings({
       point,
@@ -149,11 +161,12 @@ export class Measurer {
       runningSaid: sidecar?.running ?? null,
       waveform: result === null || result.samples === 0 ? null : plainWaveform(result.waveform),
       averaging: levels?.averaging ?? null,
-      levels: inOrderOf(point.bands, [...(levels?.levels ?? []), ...(envelope?.levels ?? [])]),
+      levels: inOrderOf(point.bands, all),
       peaks: levels?.peaks ?? [],
       spectrum: spectrum && shownSpectrum(spectrum, result?.highest ?? null),
+      orders: turned?.spectrum ?? null,
       envelope: envelope?.envelope ?? null,
-      quality: [...found, ...own],
+      quality: [...found, ...own, ...findings],
       evidence: [],
       settingsFingerprint: settingsFingerprint(this.#fingerprintSettings(), point.bands),
       ...this.#share(spectrum),
@@ -214,19 +227,6 @@ export class Measurer {
     const segmentSamples = this.#averaging?.segmentSamples ?? 0;
     return { point, signal, sampleRateHz: sampleRateHz ?? 0, segmentSamples, envelope: this.#envelope };
   }
-
-  #newStretch(): CleanStretch {
-    const besides = this.#settings.point.analysis.averaging;
-    const envelope = this.#envelope;
-    return new CleanStretch({ averaging: this.#averaging, bands: this.#fixed.laid, besides, envelope });
-  }
-
-  /** Keeps the longest stretch; the first of two equal ones. */
-  #endStretch(): void {
-    if (this.#stretch.samples === 0) return;
-    if (this.#stretch.samples > (this.#longest?.samples ?? 0)) this.#longest = this.#stretch.finish();
-    this.#stretch = this.#newStretch();
-  }
 }
 
 /** How the samples ended, and the peaks of their spectrum. */
@@ -237,7 +237,7 @@ interface Ended {
 
 const noBands: LaidBands = { laid: [], unlaid: [] };
 
+/** In the order of the bands; of two levels of one band the later. */
 function inOrderOf(bands: readonly Band[], levels: readonly BandLevel[]): BandLevel[] {
-  const place = ({ bandId }: BandLevel) => bands.findIndex(({ id }) => id === bandId);
-  return levels.toSorted((a, b) => place(a) - place(b));
+  return bands.flatMap(({ id }) => levels.findLast(({ bandId }) => bandId === id) ?? []);
 }

@@ -15,6 +15,7 @@ export function measureTask(ready: ReadyRecording, chosenBandOf: ChosenBands): M
     points: ready.points.map((point) => ({
       point,
       nominalHz: view.machine(point.machineId).runningSpeedHz,
+      speed: view.machine(point.machineId).speed,
       parts: view.machine(point.machineId).parts,
       chosenBand: chosenBandOf(ready, point),
     })),

@@ -15,16 +15,22 @@ import type { DemodulationBand } from '../config/envelope-settings.ts';
 import type { Part } from '../config/parts.ts';
 import { nothingSaid, type SampleLayout, sameLayout } from '../config/sample-layout.ts';
 import { type Point, pointPath } from '../config/site.ts';
-import { largestSample, Measurer } from '../manipulation/measure.ts';
+import type { SpeedSettings } from '../config/speed-settings.ts';
+import { largestSample } from '../manipulation/longest-stretch.ts';
+import { Measurer } from '../manipulation/measure.ts';
+import type { SearchedDensity } from '../manipulation/measure-levels.ts';
 import type { Measurement } from '../manipulation/measurement.ts';
-import { runningSpeed } from '../manipulation/running-speed.ts';
+import { hasMoved } from '../manipulation/order-levels.ts';
 import { assessed } from './assess-measurement.ts';
+import { channelIndex, type MachineSpeed, noSuchChannel, RecordingSpeeds } from './recording-speeds.ts';
 
 /** A point that takes part in a recording, with what its machine adds. */
 export interface PointTask {
   readonly point: Point;
   /** Nominal running speed of its machine; null where the site file has none. */
   readonly nominalHz: number | null;
+  /** How the running speed of its machine is found; without it: as usual. */
+  readonly speed?: SpeedSettings;
   /** Of its machine; without it: none. */
   readonly parts?: readonly Part[];
   /** Band of the envelope that its recordings have agreed on; without it: none yet. */
@@ -42,7 +48,9 @@ export interface RecordingRead {
 }
 
 /**
- * One pass over a recording: samples in blocks of bounded size to the measurer of each point. Bad input is an answer.
+ * One pass over a recording: samples in blocks of bounded size to the measurer of each point, and the pulses of each
+ * machine. Where these show that the speed moved, the points of that machine are read once more, over equal angles: only
+ * then is it known when its turns began. Bad input is an answer.
  * `onDensity` is shown the density behind each measurement, by its index, in full precision.
  */
 export function readRecording(
@@ -55,24 +63,49 @@ export function readRecording(
 ): RecordingRead | Refusal {
   const layout = layoutOf(points);
   const { fed, missing } = measurers(header, sidecar, points, layout);
-  const end = feed(reader.samples(source, header, layout), fed);
+  const speeds = new RecordingSpeeds(
+    header,
+    sidecar,
+    fed.map(({ task }) => task),
+  );
+  const feeders = fed.map(({ index, measurer }) => ({ index, to: measurer }));
+  const end = feed(reader.samples(source, header, layout), feeders, speeds);
   if (isRefusal(end)) return end;
-  for (const { measurer } of fed) measurer.end(end);
-  const sidecarRpm = sidecar?.speedRpm ?? null;
+  const speedOf = speedsOf(fed, speeds, end);
+  const angles = fed.map(({ measurer, task }) => {
+    const { turning } = speedOf(task);
+    return turning !== null && hasMoved(turning) ? measurer.overAngles(turning.turnTimes) : null;
+  });
+  const turned = fed.flatMap(({ index }, n) => (angles[n] ? [{ index, to: angles[n] }] : []));
+  const again = turned.length === 0 ? end : feed(reader.samples(source, header, layout), turned, null);
+  if (isRefusal(again)) return again;
   const quality: QualityFinding[] =
     end.truncated === null ? [] : [{ flag: 'too-short', detail: `the file is cut short: ${end.truncated}` }];
   return {
-    measurements: fed.map(({ measurer, task: { nominalHz, parts } }, index) =>
-      assessed(
-        measurer.finish(runningSpeed({ sidecarRpm, nominalHz }), (density) => onDensity(index, density)),
-        parts,
-      ),
-    ),
+    measurements: fed.map(({ measurer, task }, index) => {
+      const onOwn = (density: Float64Array) => onDensity(index, density);
+      return assessed(measurer.finish(speedOf(task).answer, onOwn, angles[index] ?? null), task.parts);
+    }),
     missing,
     quality,
     frames: end.frames,
     sampleRateHz: header.sampleRateHz ?? fed[0]?.rateHz ?? null,
   };
+}
+
+/** Ends the samples; the speed of each machine by the spectra of all its points. */
+function speedsOf(
+  fed: readonly Fed[],
+  speeds: RecordingSpeeds,
+  end: SamplesEnd,
+): (task: PointTask) => MachineSpeed {
+  const spectra = new Map<string, (SearchedDensity | null)[]>();
+  for (const { measurer, task } of fed) {
+    const { machineId } = task.point;
+    spectra.set(machineId, [...(spectra.get(machineId) ?? []), measurer.end(end)]);
+  }
+  const found = new Map([...spectra].map(([machineId, own]) => [machineId, speeds.of(machineId, own, end)]));
+  return ({ point }) => found.get(point.machineId) as MachineSpeed;
 }
 
 /** What the points of a file say of its samples' place: the first one's word, with which the others agree. */
@@ -135,30 +168,26 @@ function measurers(
   return { fed, missing };
 }
 
+interface Feeder {
+  /** Of the channel in the file. */
+  readonly index: number;
+  readonly to: { add(samples: Float64Array): void };
+}
+
 function feed(
   blocks: Generator<SampleBlock, SamplesEnd | Refusal>,
-  fed: readonly Fed[],
+  feeders: readonly Feeder[],
+  speeds: RecordingSpeeds | null,
 ): SamplesEnd | Refusal {
   for (;;) {
     const next = blocks.next();
     if (next.done) return next.value;
-    for (const { index, measurer } of fed) measurer.add(next.value.channels[index] as Float64Array);
+    for (const { index, to } of feeders) to.add(next.value.channels[index] as Float64Array);
+    speeds?.add(next.value);
   }
-}
-
-function channelIndex(header: RecordingHeader, channel: number | string): number | null {
-  const index = typeof channel === 'number' ? channel - 1 : header.channelNames.indexOf(channel);
-  return index >= 0 && index < header.channelNames.length ? index : null;
 }
 
 function otherLayout({ point: first }: PointTask, point: Point): string {
   const asks = (one: Point) => one.recordings.layout?.dataset ?? 'no data set of its own';
   return `the file is read as ${pointPath(first)} says (${asks(first)}), this point says otherwise (${asks(point)}); give all points of one file the same dataset, sample_rate_attribute and channels_in: a group holds several channels`;
-}
-
-function noSuchChannel(header: RecordingHeader, channel: number | string): string {
-  const names = header.channelNames.slice(0, 8).join(', ');
-  return typeof channel === 'number'
-    ? `the file has ${header.channelNames.length} channels, none number ${channel}`
-    : `the file has no column "${channel}"; it has ${names}`;
 }

@@ -5,23 +5,25 @@ import { scalingOf } from '../../src/acquisition/scaling.ts';
 import type { Point } from '../../src/config/site.ts';
 import { Measurer, type MeasureSettings } from '../../src/manipulation/measure.ts';
 import { exceededBy80Percent } from '../../src/manipulation/measure-levels.ts';
-import type { MeasuredSpeed, Measurement } from '../../src/manipulation/measurement.ts';
-import { runningSpeed } from '../../src/manipulation/running-speed.ts';
+import type { Measurement } from '../../src/manipulation/measurement.ts';
+import { runningSpeed, type SpeedAnswer } from '../../src/manipulation/running-speed.ts';
 import { gaussianNoise, seededRandom } from '../signal/random.ts';
 import { sines, testBand, testPoint, testSettings } from './point.ts';
+
+const noSpeed: SpeedAnswer = { speed: null, findings: [] };
 
 function measure(
   samples: Float64Array,
   point: Point,
   changes: Partial<MeasureSettings> = {},
-  speed: MeasuredSpeed | null = null,
+  speed: SpeedAnswer = noSpeed,
 ): Measurement {
   const measurer = new Measurer(testSettings(point, changes));
   measurer.add(samples);
   return finished(measurer, speed);
 }
 
-function finished(measurer: Measurer, speed: MeasuredSpeed | null = null): Measurement {
+function finished(measurer: Measurer, speed: SpeedAnswer = noSpeed): Measurement {
   measurer.end({ timeStepDeviation: null });
   return measurer.finish(speed);
 }
@@ -200,7 +202,7 @@ describe('the steadiness of a measurement', () => {
       testPoint(),
     );
     expect(doubling.averaging?.segmentSpread).toBeGreaterThan(1);
-    expect(doubling.quality).toEqual([{ flag: 'unsteady', detail: expect.stringContaining('100.0 Hz') }]);
+    expect(doubling.quality).toEqual([{ flag: 'unsteady', detail: expect.stringContaining('100 Hz') }]);
     expect(doubling.levels).toHaveLength(2);
   });
 });
@@ -265,7 +267,7 @@ describe('a recording that cannot be measured whole', () => {
     const measurer = new Measurer(testSettings(testPoint()));
     measurer.add(samples);
     expect(measurer.end({ timeStepDeviation: 0.5 })).toBeNull();
-    const uneven = measurer.finish(null);
+    const uneven = measurer.finish(noSpeed);
     expect(uneven).toMatchObject({ levels: [], spectrum: null, averaging: null });
     expect(flags(uneven)).toEqual(['uneven-time']);
     const noRate = measure(samples, testPoint(), { sampleRateHz: null });

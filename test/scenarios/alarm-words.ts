@@ -18,7 +18,8 @@ export function measurementOf(parts: readonly string[]): Measurement {
     else if (part.startsWith('80 % over ')) level = { ...level, exceededBy80Percent: number };
     else if (part.startsWith('averages ')) averages = number;
     else if (part === 'at least') level = { ...level, atLeast: true };
-    else if (part.startsWith('speed ')) more.speed = runningSpeed({ sidecarRpm: number, nominalHz: null });
+    else if (part.startsWith('speed '))
+      more.speed = runningSpeed({ sidecarRpm: number, nominalHz: null }).speed;
     else if (part.startsWith('said ')) more.runningSaid = part === 'said running';
     else if (part === 'too short') more.waveform = null;
     else if (flag !== undefined) flags.push(flag);

@@ -2,6 +2,7 @@ import { basename, isAbsolute, relative } from 'node:path';
 import { explainMismatch, type SiteFiles, siteFiles } from '../../acquisition/file-pattern.ts';
 import { nothingSaid } from '../../config/sample-layout.ts';
 import type { Point, Site } from '../../config/site.ts';
+import { usualSpeed } from '../../config/speed-settings.ts';
 import type { AnalysisPlan, PlanFor, PlannedFile } from '../../service/analyse-file.ts';
 
 /** Deepest folder below the drop folder whose name may take part in a pattern. */
@@ -26,6 +27,7 @@ export function plansOfSite(site: Site, path: string): PlannedFile {
       points: points.map((point) => ({
         point,
         nominalHz: machines.get(point.machineId)?.runningSpeedHz ?? null,
+        speed: machines.get(point.machineId)?.speed ?? usualSpeed,
         parts: machines.get(point.machineId)?.parts,
       })),
       sidecar,

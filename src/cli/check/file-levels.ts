@@ -1,6 +1,7 @@
 import { siteFiles } from '../../acquisition/file-pattern.ts';
 import { nothingSaid } from '../../config/sample-layout.ts';
 import { type Machine, type Point, pointPath, type Site } from '../../config/site.ts';
+import { usualSpeed } from '../../config/speed-settings.ts';
 import { analyseFile, type FileAnalysis } from '../../service/analyse-file.ts';
 
 /** Files that are analysed for want of a ledger; each takes up to a second or two. */
@@ -35,6 +36,7 @@ export class FileLevels {
         points: points.map((one) => ({
           point: one,
           nominalHz: this.#machines.get(one.machineId)?.runningSpeedHz ?? null,
+          speed: this.#machines.get(one.machineId)?.speed ?? usualSpeed,
           parts: this.#machines.get(one.machineId)?.parts,
         })),
         sidecar,
