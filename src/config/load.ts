@@ -5,6 +5,7 @@ import { buildMachines } from './build-machines.ts';
 import { buildMail, buildSummary } from './build-people.ts';
 import { tellDoubleClaims } from './claims.ts';
 import { type Build, valueOr } from './layers.ts';
+import { tellOtherLayouts } from './one-layout.ts';
 import { Reading } from './reading.ts';
 import { homesOfKeys, siteShape, type WrittenSite } from './schema.ts';
 import type { IntakeTimings, Site } from './site.ts';
@@ -81,6 +82,7 @@ function buildSite(build: Build, keys: WrittenSite, file: string, text: string):
   const built = buildMachines(build, keys);
   const machines = built.map(({ machine }) => machine);
   tellDoubleClaims(build, built);
+  tellOtherLayouts(build, built);
   const mail = buildMail(build, keys.mail?.value === undefined ? null : keys.mail, machines);
   const summary = buildSummary(build, keys, mail, machines);
   const folders = buildFolders(build, keys);

@@ -25,7 +25,10 @@ export function sidecarPathOf(path: string): string {
   return path.slice(0, path.length - name.length) + sidecarNameOf(name);
 }
 
-const recordingEndings = ['.wav', '.csv', '.WAV', '.CSV', '.txt', '.TXT'];
+const recordingEndings = ['wav', 'csv', 'txt', 'uff', 'unv', 'npy', 'h5', 'hdf5'].flatMap((ending) => [
+  `.${ending}`,
+  `.${ending.toUpperCase()}`,
+]);
 
 /** The source whose recording the sidecar would belong to; null where no point would take one of that name. */
 export function sourceOfSidecar(path: string, view: Pick<SiteView, 'files'>): string | null {

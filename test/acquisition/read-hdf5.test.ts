@@ -1,32 +1,18 @@
-import { mkdtempSync, readFileSync, rmSync } from 'node:fs';
-import { tmpdir } from 'node:os';
-import { join } from 'node:path';
-import { File, ready } from 'h5wasm/node';
-import { afterAll, beforeAll, beforeEach, describe, expect, test } from 'vitest';
+import { readFileSync } from 'node:fs';
+import type { File } from 'h5wasm/node';
+import { beforeAll, beforeEach, describe, expect, test } from 'vitest';
 import { bytesSource } from '../../src/acquisition/byte-source.ts';
 import { hdf5Library, mostHeapBytes, prepareHdf5 } from '../../src/acquisition/hdf5-library.ts';
 import { hdf5Reader } from '../../src/acquisition/read-hdf5.ts';
 import type { ByteSource } from '../../src/acquisition/recording.ts';
 import { nothingSaid, type SampleLayout } from '../../src/config/sample-layout.ts';
+import { hdf5WriterReady, madeHdf5 as made } from './container-writers.ts';
 import { readAll, refusalOf, shortReads } from './read-all.ts';
 
-let folder: string;
-
 beforeAll(async () => {
-  await ready;
-  folder = mkdtempSync(join(tmpdir(), 'humledger-hdf5-'));
+  await hdf5WriterReady;
 });
-afterAll(() => rmSync(folder, { recursive: true }));
 beforeEach(() => prepareHdf5());
-
-/** A file that the package's own writer makes. */
-function made(write: (file: File) => void): Uint8Array {
-  const path = join(folder, 'made.h5');
-  const file = new File(path, 'w');
-  write(file);
-  file.close();
-  return new Uint8Array(readFileSync(path));
-}
 
 const stored = (name: string) =>
   new Uint8Array(readFileSync(new URL(`../files/recordings/${name}`, import.meta.url)));
