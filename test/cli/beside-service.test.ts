@@ -96,7 +96,7 @@ class Beside {
   }
 }
 
-it('acknowledge, journal, trend, status, files, take again, backup, reload while recordings pour in', async () => {
+it('acknowledge, note, journal, trend, status, files, take again, backup, reload while recordings pour in', async () => {
   const server = await MailServerOnLoopback.start();
   const site = makeSite({ mailPort: server.port, recordings: 'settle: 1 s' });
   onTestFinished(() => site.remove());
@@ -125,6 +125,10 @@ it('acknowledge, journal, trend, status, files, take again, backup, reload while
   });
   expect(files.out).toContain('pump-2_broken.wav');
   expect(await b.command('files', '--take-again', 'pump-2_broken.wav')).toMatchObject({ status: 0 });
+
+  const noted = await b.command('note', 'pump-2', 'lubricated', '--by', 'A. Fitter', '--comment', 'greased');
+  expect(noted).toMatchObject({ status: 0, err: '' });
+  expect((await b.command('alarms', '--journal')).out).toContain('greased');
 
   const copy = join(site.folder, 'backup.sqlite');
   const takenBefore = counted(site, "outcome = 'taken'");
@@ -164,7 +168,7 @@ it('acknowledge, journal, trend, status, files, take again, backup, reload while
   expect(rows(site, "select actor from journal where event = 'acknowledged' and actor <> 'service'")).toEqual(
     [{ actor: 'A. Fitter' }],
   );
-  expect(readFileSync(join(site.data, 'acts.log'), 'utf8').split('\n')).toHaveLength(2);
+  expect(readFileSync(join(site.data, 'acts.log'), 'utf8').split('\n')).toHaveLength(3);
   const backup = new Database(copy, { readonly: true });
   expect(backup.pragma('integrity_check', { simple: true })).toBe('ok');
   expect(

@@ -10,6 +10,17 @@ export default function poisoned(task: RecordingTask): ReturnType<typeof work> {
   if (name.includes('crash')) process.exit(7);
   if (name.includes('throw')) throw new Error('thrown over this file');
   if (name.includes('hang')) for (;;);
+  if (name.includes('late')) {
+    setImmediate(() => {
+      throw new Error('thrown late');
+    });
+    return new Promise(() => {});
+  }
+  if (name.includes('after')) {
+    setTimeout(() => {
+      throw new Error('thrown after its answer');
+    }, 20);
+  }
   if (name.includes('fill')) {
     const kept: unknown[][] = [];
     for (;;) kept.push(new Array(2_000_000).fill(kept));

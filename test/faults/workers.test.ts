@@ -12,6 +12,7 @@ describe('a file over which a worker', () => {
   it.each([
     ['crashes', '-crash', /exited with code: 7.*tried again alone/],
     ['throws', '-throw', /thrown over this file; tried again alone: thrown over this file/],
+    ['throws late, outside its task', '-late', /thrown late.*tried again alone/],
     ['hangs', '-hang', /did not end within 0.8 s; tried again alone/],
     ['crashes while it reads the header', '-header-crash', /reading its header stopped a worker.*code: 7/],
   ])('%s is quarantined with the reason, and the others are taken', async (_, more, reason) => {
@@ -27,6 +28,22 @@ describe('a file over which a worker', () => {
     expect(service.files('drop')).toEqual([]);
     expect(await service.rows('attempts', '*')).toEqual([]);
     expect(await service.hour(1)).toMatchObject({ taken: 2 });
+  });
+
+  it('breaks after it has answered is no file that is to blame: all are taken', async () => {
+    const service = await trial({}, { worker, deadlineMs: 5_000 });
+    service.drop(pump(0, '-after'), wav([2]));
+    for (const hour of [0, 1, 2]) {
+      service.toHour(hour);
+      service.dropHour(hour);
+      await service.take();
+    }
+    await service.after(60_000);
+    const outcomes = Object.values(await service.outcomes());
+    expect(outcomes).toHaveLength(7);
+    expect(outcomes.filter((outcome) => !outcome.startsWith('taken'))).toEqual([]);
+    expect(service.files('drop')).toEqual([]);
+    expect(await service.rows('attempts', '*')).toEqual([]);
   });
 
   it('fills its memory is quarantined, and the others are taken', async () => {

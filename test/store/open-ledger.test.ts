@@ -4,6 +4,7 @@ import { existsSync, readdirSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 import Database from 'better-sqlite3';
 import { expect, test } from 'vitest';
+import { openingSteps } from '../../src/store/ledger-steps.ts';
 import { type Migration, migrations } from '../../src/store/migrations/index.ts';
 import { networkFileSystems } from '../../src/store/network-share.ts';
 import { ledgerPath } from '../../src/store/open-ledger.ts';
@@ -85,6 +86,34 @@ test('an older ledger is copied before it is changed; the copy is whole', async 
   expect(copy.prepare('select max(number) from migrations').pluck().get()).toBe(newest);
   copy.close();
   expect(existsSync(join(folder, `ledger-before-${newest + 1}.sqlite.part`))).toBe(false);
+});
+
+test('an error at any step of bringing a ledger up to date leaves it old or new, and the next start whole', async () => {
+  for (const step of openingSteps) {
+    const folder = temporaryFolder();
+    const old = await opened(folder);
+    await old.transact(async (writer) => {
+      await writer.insertInto('told_once').values({ key: 'kept', wall_ms: 1 }).execute();
+    });
+    await old.close();
+    const broken = opened(folder, {
+      migrations: [...migrations, second],
+      step: (name) => {
+        if (name === step) throw new Error(`broken at ${name}`);
+      },
+    });
+    await expect(broken).rejects.toThrow(`broken at ${step}`);
+    expect(isOwned(folder), step).toBe(false);
+    expect(readdirSync(folder).filter((name) => name.includes('.part'))).toEqual([]);
+    const ledger = await opened(folder, { migrations: [...migrations, second] });
+    expect(tablesOf(folder), step).toContain('extra');
+    expect(await ledger.read((reader) => reader.selectFrom('told_once').select('key').execute())).toEqual([
+      { key: 'kept' },
+    ]);
+    const copy = new Database(join(folder, `ledger-before-${newest + 1}.sqlite`), { readonly: true });
+    expect(copy.prepare('select max(number) from migrations').pluck().get(), step).toBe(newest);
+    copy.close();
+  }
 });
 
 test('a newer ledger is refused by all, an older one by guests and readers, and neither is touched', async () => {
