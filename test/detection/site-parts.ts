@@ -5,7 +5,7 @@ import type { AlarmChange, AlarmState } from '../../src/detection/alarm.ts';
 import { subjectKey } from '../../src/detection/alarm.ts';
 import type { BandLevel, Measurement } from '../../src/manipulation/measurement.ts';
 
-/** Parts of a site for the tests of detection, complete and plain; each takes what the test is about. */
+/** Parts of a site, complete and plain, for tests that need no site file; each takes what the test is about. */
 export const hourMs = 3_600_000;
 export const minuteMs = 60_000;
 

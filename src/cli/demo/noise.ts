@@ -6,9 +6,19 @@ export interface Noise {
   gaussian(): number;
 }
 
-/** xoshiro128** (Blackman and Vigna 2018), seeded through splitmix32; Gaussian by Marsaglia's polar method (1964). */
 export function seededNoise(seed: number): Noise {
-  let mix = seed >>> 0;
+  const bits = seededBits(seed);
+  const uniform = () => bits() / 4294967296;
+  return { uniform, gaussian: gaussianFrom(uniform) };
+}
+
+/**
+ * Numbers of 32 random bits by xoshiro128** (Blackman and Vigna 2021), started by splitmix32. Any integer serves as a
+ * seed; neighbouring seeds give unrelated sequences.
+ */
+export function seededBits(seed: number): () => number {
+  // The high half of seeds beyond 32 bits (for example a time in ms) is mixed in as well.
+  let mix = ((seed >>> 0) ^ Math.imul(Math.floor(Math.abs(seed) / 2 ** 32) >>> 0, 0x27d4eb2f)) >>> 0;
   const next32 = () => {
     mix = (mix + 0x9e3779b9) >>> 0;
     let z = mix;
@@ -17,8 +27,7 @@ export function seededNoise(seed: number): Noise {
     return (z ^ (z >>> 16)) >>> 0;
   };
   let [a, b, c, d] = [next32(), next32(), next32(), next32()];
-  const rotate = (x: number, by: number) => (x << by) | (x >>> (32 - by));
-  const uniform = () => {
+  return () => {
     const result = Math.imul(rotate(Math.imul(b, 5), 7), 9) >>> 0;
     const shifted = b << 9;
     c ^= a;
@@ -27,10 +36,18 @@ export function seededNoise(seed: number): Noise {
     a ^= d;
     c ^= shifted;
     d = rotate(d, 11);
-    return result / 4294967296;
+    return result;
   };
+}
+
+function rotate(x: number, by: number): number {
+  return (x << by) | (x >>> (32 - by));
+}
+
+/** Gaussian numbers, mean 0 and variance 1, from uniform ones by Marsaglia's polar method (1964). */
+export function gaussianFrom(uniform: () => number): () => number {
   let spare: number | null = null;
-  const gaussian = () => {
+  return () => {
     if (spare !== null) {
       const value = spare;
       spare = null;
@@ -47,5 +64,4 @@ export function seededNoise(seed: number): Noise {
       }
     }
   };
-  return { uniform, gaussian };
 }
