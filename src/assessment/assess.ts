@@ -29,8 +29,11 @@ export interface Assessed {
   readonly evidence: readonly Evidence[];
 }
 
-/** A named fault needs lines at most this part of the shaft speed apart. */
-const linesPerTurn = 25;
+/**
+ * A named fault needs lines at most 1/25 of the shaft speed apart; segments are laid out by the nominal speed, from which
+ * a shaft may differ by some percent.
+ */
+const widestSpacing = 1.05 / 25;
 /** A part's own shaft may show many harmonics, any other shaft of the machine some. */
 const harmonicsOfOtherShafts = 10;
 
@@ -71,7 +74,7 @@ function faultsIn(
   spectra: number,
 ): Finding[] {
   const { lineSpacingHz, peaks, toHz } = spectrum;
-  const fine = heard.filter(({ shaft }) => lineSpacingHz <= (shaft * speed.hz) / linesPerTurn);
+  const fine = heard.filter(({ shaft }) => lineSpacingHz <= widestSpacing * shaft * speed.hz);
   if (fine.length === 0) return [];
   const shafts = shaftsOf(partsOfMachine).map(
     (turns, n): SeenShaft => ({

@@ -4,6 +4,8 @@ import type { Limit, Machine } from '../../config/site.ts';
 import { limitFacts } from '../../service/fact-names.ts';
 import { bareUnit, levelJson, limitJson } from '../level-json.ts';
 import { adviceJson, reachJson } from '../recording-plan/plan-json.ts';
+import { envelopeCheckJson } from './envelope-check.ts';
+import { type PartCheck, partChecks } from './part-check.ts';
 import { type BandCheck, canAlarm, type LevelNow, type PointCheck } from './point-check.ts';
 import type { SiteCheck } from './site-check.ts';
 import { type ZoneCheck, zoneCheck } from './zone-check.ts';
@@ -22,6 +24,7 @@ export function checkJson(check: SiteCheck): Record<string, unknown> {
       machine: machine.id,
       name: machine.name,
       zones: zonesJson(machine.zones ?? null),
+      parts: partChecks(machine).map(partJson),
       points: check.points
         .filter(({ point }) => point.machineId === machine.id)
         .map((one) => pointJson(machine, one)),
@@ -39,6 +42,25 @@ export function checkJson(check: SiteCheck): Record<string, unknown> {
       limits: retired.limits,
       alarms_closed: retired.alarms,
     },
+  };
+}
+
+function partJson({ part, frequencies, points }: PartCheck) {
+  return {
+    part: part.id,
+    name: part.name,
+    kind: part.kind,
+    frequencies: frequencies.map(({ one, hz }) => ({ frequency: one.kind, of: one.of, hz })),
+    points: points.map(({ point, spectrum, lineSpacingHz, notSeparable }) => ({
+      point,
+      spectrum,
+      line_spacing_hz: lineSpacingHz,
+      not_separable: notSeparable.map(({ frequency, harmonic, neededHz }) => ({
+        frequency,
+        harmonic,
+        line_spacing_needed_hz: neededHz,
+      })),
+    })),
   };
 }
 
@@ -68,6 +90,7 @@ function pointJson(machine: Machine, check: PointCheck) {
       effective_averages: averaging.effectiveAverages,
       used_percent: averaging.usedPercent,
     },
+    envelope: envelopeCheckJson(check),
     shows: check.advice && reachJson(check.advice.reach, []),
     cannot_show: check.advice === null ? [] : check.advice.cannot.map(adviceJson),
     bands: check.bands.map((band) => ({ ...bandJson(band), zone: zoneJson(zones, band) })),

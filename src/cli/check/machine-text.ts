@@ -12,6 +12,8 @@ import type { Band, Limit, Machine } from '../../config/site.ts';
 import { limitFacts } from '../../service/fact-names.ts';
 import { lineWidth, listing, type Row, table, wrapText } from '../output.ts';
 import { timeText } from '../when.ts';
+import { envelopeCheckText } from './envelope-check.ts';
+import { partChecks, partTexts } from './part-check.ts';
 import { type BandCheck, canAlarm, type LevelNow, type PointCheck } from './point-check.ts';
 import { showsText } from './recording-advice.ts';
 import { machineZoneText, pointZoneTexts, tableText, zoneCheck } from './zone-check.ts';
@@ -139,8 +141,20 @@ function notes(machine: Machine, points: readonly PointCheck[], averagingElsewhe
     const [{ title, text }] = same as [Remark];
     return [title, `${same.map(({ id }) => id).join(', ')}: ${text}`];
   });
-  const entries = [...(averagingElsewhere ? [] : averaging), ...machineZones(machine, points), ...told];
+  const entries = [
+    ...(averagingElsewhere ? [] : averaging),
+    ...byText('envelope', points, envelopeCheckText),
+    ...machineZones(machine, points),
+    ...partEntries(machine),
+    ...told,
+  ];
   return entries.length === 0 ? '' : `\n${listing(entries, '  ')}`;
+}
+
+function partEntries(machine: Machine): [string, string][] {
+  return partChecks(machine).flatMap((part) =>
+    partTexts(part).map((text): [string, string] => ['part', plain(text)]),
+  );
 }
 
 function byText(
