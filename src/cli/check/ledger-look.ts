@@ -1,7 +1,10 @@
 import { segmentOf } from '../../config/meaning.ts';
 import type { Point, Site } from '../../config/site.ts';
+import { chosenBand, type EnvelopeChoice } from '../../manipulation/envelope-choice.ts';
+import { envelopePlan } from '../../manipulation/envelope-plan.ts';
 import { settingsFingerprint } from '../../manipulation/fingerprint.ts';
 import { type Archived, archivedOfPoint } from '../../store/archived.ts';
+import { envelopeChoices } from '../../store/envelope-choices.ts';
 import type { Reader } from '../../store/lent-connection.ts';
 import { newestMeasurement, type StoredMeasurement } from '../../store/read-measurements.ts';
 import type { SiteIds } from '../../store/site-ids.ts';
@@ -17,6 +20,8 @@ export interface LedgerPoint {
   readonly bandIds: ReadonlyMap<number, string>;
   /** The newest levels were made under other settings than those in the site file now. */
   readonly otherSettings: boolean;
+  /** What its recordings have agreed on; null: nothing, or they have no choice. */
+  readonly choice: EnvelopeChoice | null;
 }
 
 /** Null: the ledger has never heard of the point, under this id or a former one. */
@@ -35,6 +40,7 @@ export async function lookUpPoint(
   const pointId = ids.pointId(known.machineId, known.pointId);
   const arrivals = (await arrivalsOf(reader, [pointId])).get(pointId);
   const measurement = await newestMeasurement(reader, pointId);
+  const choice = (await envelopeChoices(reader, [pointId])).get(pointId) ?? null;
   const bandIds = new Map<number, string>();
   for (const band of point.bands) {
     for (const name of [band.id, ...band.formerly]) {
@@ -48,16 +54,22 @@ export async function lookUpPoint(
     archived: await archivedOfPoint(reader, pointId),
     measurement,
     bandIds,
-    otherSettings: measurement !== null && hasOtherSettings(measurement, point),
+    otherSettings: measurement !== null && hasOtherSettings(measurement, point, choice),
+    choice,
   };
 }
 
 /** A sidecar's own scaling counts as other settings too: then the newest file is analysed, which takes it in. */
-function hasOtherSettings(measurement: StoredMeasurement, point: Point): boolean {
+function hasOtherSettings(
+  measurement: StoredMeasurement,
+  point: Point,
+  choice: EnvelopeChoice | null,
+): boolean {
   const { sampleRateHz, settingsFingerprint: found } = measurement;
   const segmentSamples = segmentOf(point.analysis, sampleRateHz);
   const { signal, bands } = point;
-  return found !== settingsFingerprint({ point, signal, sampleRateHz, segmentSamples }, bands);
+  const envelope = envelopePlan(point, sampleRateHz, chosenBand(choice, point, sampleRateHz));
+  return found !== settingsFingerprint({ point, signal, sampleRateHz, segmentSamples, envelope }, bands);
 }
 
 /** Asking for what the ledger does not have is a mistake there, and an answer here. */
