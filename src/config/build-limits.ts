@@ -1,16 +1,10 @@
 import type { BuiltBand, BuiltBands } from './build-bands.ts';
+import { curveValues } from './curve-values.ts';
 import { bandsFromZones, isFixedUpper, zoneLimit } from './from-zones.ts';
 import { type Build, tellDoubledIds, valueOr, valuesOf } from './layers.ts';
 import { fixedValues, type KindParts, type LimitCase } from './limit-values.ts';
 import { nearest } from './nearest.ts';
-import {
-  baselineValues,
-  ceilingsOf,
-  changeValues,
-  curveValues,
-  rateValues,
-  statisticalValues,
-} from './rule-values.ts';
+import { baselineValues, ceilingsOf, changeValues, rateValues, statisticalValues } from './rule-values.ts';
 import type { WrittenLimit, WrittenLimits } from './schema-limits.ts';
 import type { Written } from './shape.ts';
 import type { Limit, LimitKind } from './site.ts';
@@ -39,6 +33,7 @@ const keysOfKind: Readonly<Record<string, readonly LimitKind[]>> = {
   danger_k: ['statistical'],
   over: ['rate'],
   curve: ['curve'],
+  baseline: ['zone'],
 };
 
 /** The limits of one point: a limit of an inner list replaces the outer one of the same id. */
@@ -79,6 +74,8 @@ export interface LimitPlace {
   readonly zoneCase: ZoneCase;
   /** Operating conditions of the machine. */
   readonly conditions: readonly string[];
+  /** Of the intervals of the point's levels. */
+  readonly confidencePercent: number;
 }
 
 /** A value learned from a baseline never passes the standard's ceiling, nor, without one, the site's fixed limit. */
@@ -134,6 +131,7 @@ function buildLimit(
   const parts = kinds[kind](build, written, { band, zoneCase, shown });
   if (parts === null) return null;
   const confident = keys.confidence !== null;
+  tellOtherConfidence(build, keys.confidence, of.confidencePercent);
   return {
     id,
     formerly: valuesOf(keys.formerly),
@@ -162,6 +160,18 @@ function keysFit({ reading }: Build, { value: { keys, has } }: WrittenLimit, kin
     if (at !== undefined) reading.problem(at, `${name} has no meaning in a limit of kind ${kind}`, right);
   }
   return wrong.length === 0;
+}
+
+/** A level has one interval; a limit cannot ask for another. */
+function tellOtherConfidence(
+  { reading }: Build,
+  written: Written<number> | null,
+  confidencePercent: number,
+): void {
+  if (written === null || written.value === confidencePercent) return;
+  const what = `confidence ${written.value} % is not that of the levels' intervals, ${confidencePercent} %`;
+  const right = `${reading.write(written.at, `${confidencePercent} %`)}, or set confidence under analysis`;
+  reading.problem(written.at, what, right, 'confidence of the limit');
 }
 
 function conditionsOf(

@@ -88,6 +88,7 @@ export function buildPoint(
   const limits = buildLimits(build, [...around.limits, keys.limits], bands, {
     shown,
     conditions: around.conditions,
+    confidencePercent: analysis.confidencePercent,
     zoneCase: { machineId, zones: around.zones, runningSpeedHz, point: { quantity, sensorOn } },
   });
   if (signal === null) return null;

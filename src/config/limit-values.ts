@@ -25,12 +25,6 @@ export function fixedValues(build: Build, written: WrittenLimit, limit: LimitCas
   const { reading } = build;
   const { keys, has } = written.value;
   const { band } = limit;
-  if (has.has('baseline'))
-    reading.problem(
-      keys.baseline?.at ?? written.at,
-      'baseline has no meaning in a limit of kind fixed',
-      'write kind: zone, or leave it out',
-    );
   if (!has.has('alert') && !has.has('danger')) {
     const example = printLevel(band.band.display.inSi, band.band.display);
     reading.problem(
@@ -121,4 +115,15 @@ function tellCeilings(
       `ceiling of ${severity}, ${limit.zoneCase.machineId}`,
     );
   }
+}
+
+/** A problem of one of the limit's values. */
+export function tellLimit(
+  build: Build,
+  at: Written<unknown> | null,
+  written: WrittenLimit,
+  what: string,
+  right: string,
+): void {
+  build.reading.problem(at?.at ?? written.at, what, right, 'values of the limit');
 }

@@ -1,7 +1,7 @@
 import type { Build } from './layers.ts';
 import { valueOr } from './layers.ts';
-import type { Ceiling, CurveValue, LimitRule } from './limit-rules.ts';
-import { fixedValues, type KindParts, type LimitCase, levelOf } from './limit-values.ts';
+import type { Ceiling, LimitRule } from './limit-rules.ts';
+import { fixedValues, type KindParts, type LimitCase, levelOf, tellLimit } from './limit-values.ts';
 import { zonesName } from './machine-zones.ts';
 import { printLevel } from './print-value.ts';
 import { type Parsed, parsePhysical, refused, shorten, understood } from './quantity.ts';
@@ -10,7 +10,7 @@ import type { Written } from './shape.ts';
 import type { Limit } from './site.ts';
 import { significantPart, zonesOfBand } from './zone-limits.ts';
 
-/** Kinds of limits whose values are reckoned for each recording: baseline, statistical, change, rate, curve. */
+/** Kinds of limits whose values are reckoned from the levels before: baseline, statistical, change, rate. */
 
 /** '2.5x', or '+8 dB' over the baseline (a factor of 10^(dB/20)); '0.5x' and '-6 dB' for a lower limit. */
 export function parseMultiple(text: string): Parsed<number> {
@@ -40,7 +40,7 @@ export function baselineValues(build: Build, written: WrittenLimit, limit: Limit
   const danger = multipleOrLevel(build, 'danger', keys.danger, limit, parseMultiple);
   if (alert === null || danger === null) return null;
   if (alert.multiple === null && danger.multiple === null) {
-    tell(
+    tellLimit(
       build,
       keys.kind ?? keys.alert ?? keys.danger,
       written,
@@ -58,7 +58,7 @@ export function baselineValues(build: Build, written: WrittenLimit, limit: Limit
 export function statisticalValues(build: Build, written: WrittenLimit, limit: LimitCase): KindParts | null {
   const { keys, has } = written.value;
   if (has.has('alert')) {
-    tell(
+    tellLimit(
       build,
       keys.alert,
       written,
@@ -67,11 +67,21 @@ export function statisticalValues(build: Build, written: WrittenLimit, limit: Li
     );
     return null;
   }
+  if (has.has('danger') && has.has('danger_k')) {
+    tellLimit(
+      build,
+      keys.danger_k,
+      written,
+      'the limit has a danger and a danger_k, from which a danger would follow',
+      'leave one of the two out',
+    );
+    return null;
+  }
   const danger = levelOf(build, 'danger', keys.danger, limit.band);
   if (has.has('danger') && danger === null) return null;
   const rule: LimitRule = { by: 'spread', alert: valueOr(keys.k, 4.5), danger: valueOr(keys.danger_k, null) };
   if (rule.danger !== null && rule.danger <= rule.alert) {
-    tell(
+    tellLimit(
       build,
       keys.danger_k,
       written,
@@ -88,7 +98,7 @@ export function changeValues(build: Build, written: WrittenLimit, limit: LimitCa
   const { keys, has } = written.value;
   if (has.has('danger') || keys.side !== null) {
     const at = keys.danger ?? keys.side;
-    tell(
+    tellLimit(
       build,
       at,
       written,
@@ -106,7 +116,7 @@ export function changeValues(build: Build, written: WrittenLimit, limit: LimitCa
   const zones = zonesOfBand(limit.zoneCase, limit.band.band);
   if (!zones.ok) {
     const example = printLevel(limit.band.band.display.inSi, limit.band.band.display);
-    tell(
+    tellLimit(
       build,
       keys.kind,
       written,
@@ -122,8 +132,18 @@ export function changeValues(build: Build, written: WrittenLimit, limit: LimitCa
 /** Kind rate: growth of the line through the levels over a time. */
 export function rateValues(build: Build, written: WrittenLimit, _limit: LimitCase): KindParts | null {
   const { keys, has } = written.value;
+  if (valueOr(keys.side, 'upper') === 'lower') {
+    tellLimit(
+      build,
+      keys.side,
+      written,
+      'a limit of kind rate is an upper one',
+      'leave side out; kind: change tells a fall',
+    );
+    return null;
+  }
   if (!has.has('alert') && !has.has('danger')) {
-    tell(build, keys.kind, written, 'the limit has neither alert nor danger', 'add: alert: 50 %');
+    tellLimit(build, keys.kind, written, 'the limit has neither alert nor danger', 'add: alert: 50 %');
     return null;
   }
   const alert = growthOf(build, 'alert', keys.alert);
@@ -133,48 +153,6 @@ export function rateValues(build: Build, written: WrittenLimit, _limit: LimitCas
   const rule: LimitRule = { by: 'rate', overMs, alert: alert.value, danger: danger.value };
   if (!multiplesInOrder(build, written, rule)) return null;
   return { alert: null, danger: null, reasons: null, rule };
-}
-
-/** Kind curve: levels over the running speed or the load. */
-export function curveValues(build: Build, written: WrittenLimit, limit: LimitCase): KindParts | null {
-  const { keys } = written.value;
-  const entries = keys.curve?.value ?? [];
-  if (entries.length < 2) {
-    tell(
-      build,
-      keys.curve ?? keys.kind,
-      written,
-      'a curve needs two values or more',
-      'add: curve: with entries of speed or load, alert, danger',
-    );
-    return null;
-  }
-  const over = entries[0].value.has.has('speed') ? 'speed' : 'load';
-  const values: CurveValue[] = [];
-  for (const { value: entry, at } of entries) {
-    const x = over === 'speed' ? entry.keys.speed : entry.keys.load;
-    const alert = levelOf(build, 'alert', entry.keys.alert, limit.band);
-    const danger = levelOf(build, 'danger', entry.keys.danger, limit.band);
-    if (x === null || (entry.keys.alert === null && entry.keys.danger === null)) {
-      build.reading.problem(
-        at,
-        `an entry of curve needs ${over} and alert or danger`,
-        `write for example: ${over}: ${over === 'speed' ? '1500 rpm' : '60 %'}`,
-      );
-      return null;
-    }
-    const before = values.at(-1);
-    if (before !== undefined && x.value <= before.at) {
-      build.reading.problem(
-        x.at,
-        `${over} does not grow from entry to entry of curve`,
-        'put the entries in order',
-      );
-      return null;
-    }
-    values.push({ at: x.value, alert, danger });
-  }
-  return { alert: null, danger: null, reasons: null, rule: { by: 'curve', over, values } };
 }
 
 /** What learned values may not pass: the ceilings of the zones' standard, else the site's fixed limit of that band. */
@@ -236,11 +214,11 @@ function multiplesInOrder(
   ] as const) {
     if (value === null || (upper ? value > 1 : value < 1)) continue;
     const right = upper ? 'an upper limit stands above 1x' : 'a lower limit stands below 1x';
-    tell(build, keys[name], written, `${name} of ${value}x would stand at or past what is usual`, right);
+    tellLimit(build, keys[name], written, `${name} of ${value}x would stand at or past what is usual`, right);
     return false;
   }
   if (alert === null || danger === null || (upper ? alert < danger : alert > danger)) return true;
-  tell(
+  tellLimit(
     build,
     keys.alert,
     written,
@@ -248,14 +226,4 @@ function multiplesInOrder(
     'give them different values',
   );
   return false;
-}
-
-function tell(
-  build: Build,
-  at: Written<unknown> | null,
-  written: WrittenLimit,
-  what: string,
-  right: string,
-): void {
-  build.reading.problem(at?.at ?? written.at, what, right, 'values of the limit');
 }

@@ -267,7 +267,7 @@ describe('zones in the site file', () => {
       ),
     ).toEqual([
       expect.stringMatching(
-        /baseline has no meaning in a limit of kind fixed; write kind: zone, or leave it out$/,
+        /baseline has no meaning in a limit of kind fixed; leave it out, or write kind: zone$/,
       ),
     ]);
   });
