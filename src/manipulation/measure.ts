@@ -22,6 +22,7 @@ import { OrderMeasurer } from './order-levels.ts';
 import { averagingOf, gridOf } from './point-averaging.ts';
 import { type LaidBands, layFixedBands, layOrderBands, lowestVelocityHz } from './point-bands.ts';
 import type { SpeedAnswer } from './running-speed.ts';
+import { seriesBeside } from './series-beside.ts';
 
 export type { MeasureSettings, SampleCheck } from './measure-settings.ts';
 
@@ -148,6 +149,8 @@ export class Measurer {
       ],
       unsteady: levels?.unsteady ?? null,
     });
+    const settings = this.#fingerprintSettings();
+    const ordered = inOrderOf(point.bands, all);
     return {
       machineId: point.machineId,
       pointId: point.id,
@@ -161,14 +164,15 @@ export class Measurer {
       runningSaid: sidecar?.running ?? null,
       waveform: result === null || result.samples === 0 ? null : plainWaveform(result.waveform),
       averaging: levels?.averaging ?? null,
-      levels: inOrderOf(point.bands, all),
+      levels: ordered,
       peaks: levels?.peaks ?? [],
       spectrum: spectrum && shownSpectrum(spectrum, result?.highest ?? null),
       orders: turned?.spectrum ?? null,
       envelope: envelope?.envelope ?? null,
       quality: [...found, ...own, ...findings],
       evidence: [],
-      settingsFingerprint: settingsFingerprint(this.#fingerprintSettings(), point.bands),
+      settingsFingerprint: settingsFingerprint(settings, point.bands),
+      seriesBeside: seriesBeside(settings, point.bands, ordered),
       ...this.#share(spectrum),
     };
   }

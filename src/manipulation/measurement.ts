@@ -4,6 +4,7 @@ import type { AveragedDensity, AveragingSettings } from '../signal/averaging.ts'
 import type { EnvelopeMeasured } from './envelope-measured.ts';
 import type { EnvelopePlan } from './envelope-plan.ts';
 import type { Evidence } from './evidence.ts';
+import type { SeriesBeside } from './series-beside.ts';
 
 /**
  * What one recording says of one measuring point. Levels are r.m.s. in the SI unit of their quantity
@@ -39,6 +40,8 @@ export interface Measurement {
   readonly evidence: readonly Evidence[];
   /** Hash of everything that moves any number of this measurement (settings of the whole point). */
   readonly settingsFingerprint: string;
+  /** Series of a neighbouring sample rate that its levels may join; left out: none. */
+  readonly seriesBeside?: readonly SeriesBeside[];
   /** What it brings into the average over several recordings; left out where its point does not pool. */
   readonly share?: PoolShare;
 }

@@ -8,6 +8,7 @@ import { getSource, noteArrival, type Source, saveSource } from '../store/source
 import { insertMeasurement } from '../store/trends.ts';
 import { noteEnvelopeChoices } from './envelope-choices.ts';
 import { type Evaluated, evaluate } from './evaluate.ts';
+import { onKnownSeries } from './known-series.ts';
 import { learn } from './learn.ts';
 import type { RecordingTime } from './recording-time.ts';
 import { spansOf, statedStart, timeOf } from './recording-time.ts';
@@ -58,9 +59,10 @@ export async function decide(
     batchNewestStatedMs,
   });
   const judged = !time.repeated && !time.secondVersion;
+  const measurements = await onKnownSeries(writer, view, answer.measurements);
   const evaluated = await evaluate(writer, {
     view,
-    measurements: answer.measurements,
+    measurements,
     usedMs: time.usedMs,
     late: time.late,
     judged,
@@ -90,10 +92,8 @@ export async function decide(
   };
   for (const one of evaluated)
     await storeEvaluated(writer, view, one, { recordingId, time, judged, context });
-  if (judged && !time.late) {
-    const { measurements } = answer;
+  if (judged && !time.late)
     await noteEnvelopeChoices(writer, view, { measurements, evaluated, usedMs: Math.round(time.usedMs) });
-  }
   for (const change of await troublesOf(writer, taken, time, source))
     await saveAlarmChange(writer, change, context);
   await noteArrivals(writer, view, taken, time, judged);

@@ -1,4 +1,6 @@
 /** Samples that are not what they should be: flagged, measured as far as they go, and limits still evaluated. */
+import { readFileSync, writeFileSync } from 'node:fs';
+import { join } from 'node:path';
 import { describe, expect, it } from 'vitest';
 import { wavFile } from '../acquisition/wav-writer.ts';
 import {
@@ -7,11 +9,12 @@ import {
   hourMs,
   sampleRateHz,
   signal,
+  siteAt,
   stamp,
   type TrialService,
   wav,
 } from '../service/site-on-disk.ts';
-import { trial } from '../service/trial.ts';
+import { serviceOn, site, trial } from '../service/trial.ts';
 
 /** Nobody is overdue while one machine after the other is looked at. */
 const patient = { recordings: 'overdue_after: 100 h' };
@@ -78,6 +81,22 @@ describe('samples that are not what they should be', () => {
     const back = await measured(service, 3, wav([5], 3, 2561));
     expect(back.flags).toEqual([]);
     expect(await service.standing()).toEqual(['overall-fixed-upper pump-2/de-v alert']);
+  });
+
+  it('a rate that nobody configured and that jitters about a rounding: one series all the time', async () => {
+    const on = site(patient);
+    const file = join(on.folder, 'site.yaml');
+    writeFileSync(file, readFileSync(file, 'utf8').replace('  sample_rate: 2560 Hz\n', ''));
+    const service = await serviceOn({ ...on, ...siteAt(on.folder) });
+    const rates = [16_386, 16_384, 16_386, 16_383, 16_387];
+    for (const [hour, rateHz] of rates.entries())
+      await measured(service, hour, wav([signal(1, hour, 8192)], hour, rateHz));
+    const perSeries = 'select count(*) from levels where levels.series_id = series.id';
+    const counts = () => service.rows('series', `(${perSeries}) as n`, 'where point_id = 3 order by id');
+    expect(await counts()).toEqual([{ n: 5 }]);
+    // More than 0.1 % away it is another rate.
+    await measured(service, 6, wav([signal(1, 6, 8192)], 6, 16_420));
+    expect(await counts()).toEqual([{ n: 5 }, { n: 1 }]);
   });
 
   it('NaN and infinite samples: the longest clean stretch is measured, flagged, and can raise', async () => {
