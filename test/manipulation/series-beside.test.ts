@@ -4,7 +4,7 @@ import { ratesBeside, seriesBeside } from '../../src/manipulation/series-beside.
 import { levelOf } from '../detection/site-parts.ts';
 import { testBand, testPoint } from './point.ts';
 
-it('two rates within 0.01 % of one another always know each other's rounding', () => {
+it('two rates within 0.01 % of one another always know of the rounding of the other', () => {
   for (let rateHz = 1000; rateHz < 200_000; rateHz *= 1.00037) {
     const other = rateHz * 1.0001;
     const names = (hz: number) => [seriesRate(hz, null), ...ratesBeside(hz, null)];
