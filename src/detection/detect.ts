@@ -116,6 +116,8 @@ function detectLimit(limit: Limit, flags: readonly QualityFlag[], input: Detecti
     dangerAtOnce,
     flags,
   };
+  // A doubtful speed moves the edges of bands in orders, and nothing else.
+  const doubts = flags.filter((flag) => band.inOrders || flag !== 'speed-doubtful');
   if (input.late) return cameLate(subject, before, judgement, reason, usedMs);
   const step = alarmStep(
     before,
@@ -124,7 +126,7 @@ function detectLimit(limit: Limit, flags: readonly QualityFlag[], input: Detecti
       severity,
       usedMs,
       level: at.value,
-      flagged: flags.length > 0 || level.atLeast,
+      flagged: doubts.length > 0 || level.atLeast,
       atOnce: dangerAtOnce,
       reason,
     },

@@ -202,7 +202,7 @@ describe('the shape of the answer', () => {
         'bands',
         'peaks',
       ],
-      ...['envelope', 'quality'],
+      ...['orders', 'envelope', 'evidence', 'quality'],
     ]);
     expect(Object.keys(channel?.waveform ?? {})).toEqual([
       'mean',

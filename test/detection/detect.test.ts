@@ -83,7 +83,7 @@ describe('one measurement of one point', () => {
     expect(of(4.6, 4)).toEqual([['danger-unconfirmed', null]]);
   });
 
-  it.each(qualityFlags)(
+  it.each(qualityFlags.filter((flag) => flag !== 'speed-doubtful'))(
     'flagged %s does not clear an alarm, and does not keep one from being raised',
     (flag) => {
       for (const parts of [{ flags: [flag] }, { recordingFlags: [flag] }]) {
@@ -94,6 +94,17 @@ describe('one measurement of one point', () => {
       }
     },
   );
+
+  it('flagged speed-doubtful clears an alarm of a band in Hz, but none of a band in orders', () => {
+    for (const inOrders of [false, true]) {
+      const bands = point.bands.map((band) => ({ ...band, inOrders }));
+      const book = standingBook();
+      const calm = { level: 0, earlier: book.states, usedMs: 2 * hourMs, flags: ['speed-doubtful'] as const };
+      book.take(detect(inputWith({ ...calm, point: { ...point, bands } })));
+      const { condition } = book.states.get(subjectKey(subjectsOf(point)[0] as never)) ?? {};
+      expect(condition).toBe(inOrders ? 'alert' : 'normal');
+    }
+  });
 
   it("reads 'at least' where it is clipped: it clears nothing, even if no flag says so", () => {
     const measurement = measurementWith({ levels: [levelOf(0, { atLeast: true })] });

@@ -6,6 +6,7 @@ import type { FileAnalysis } from '../../service/analyse-file.ts';
 import { levelJson } from '../level-json.ts';
 import { envelopeJson } from './envelope-output.ts';
 import { noMachine } from './points-of-channels.ts';
+import { ordersJson, speedJson } from './speed-output.ts';
 
 /** An analysed file with what its points were to give: what is written as JSON and as text. */
 export interface AnalysedFile {
@@ -42,7 +43,7 @@ function channelJson(
   { quality }: FileAnalysis,
   spectrum: boolean,
 ) {
-  const { speed, waveform, averaging, envelope } = measurement;
+  const { speed, waveform, averaging, envelope, orders } = measurement;
   const inSite = measurement.machineId !== noMachine;
   return {
     channel: measurement.channel,
@@ -50,7 +51,7 @@ function channelJson(
     point: inSite ? measurement.pointId : null,
     quantity: measurement.quantity,
     unit: measurement.unit,
-    speed: speed && { rpm: speed.rpm, origin: speed.origin, uncertainty_rpm: speed.uncertaintyRpm },
+    speed: speed && speedJson(speed),
     waveform: waveform && {
       mean: waveform.mean,
       rms: waveform.rms,
@@ -71,6 +72,7 @@ function channelJson(
     },
     bands: measurement.levels.map((level) => bandJson(level, displayOf(level, bands))),
     peaks: measurement.peaks.map((peak) => peakJson(peak, measurement.unit)),
+    orders: orders == null ? null : ordersJson(orders, measurement.unit, peakJson, spectrum),
     envelope: envelope == null ? null : envelopeJson(envelope, measurement.unit, peakJson, spectrum),
     evidence: measurement.evidence.map(evidenceJson),
     quality: [...quality, ...measurement.quality].map(({ flag, detail }) => ({ flag, detail })),

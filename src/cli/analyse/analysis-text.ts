@@ -1,7 +1,6 @@
 import { plain } from '../../advisory/escape.ts';
 import { evidenceCaution } from '../../advisory/evidence-facts.ts';
 import { bareLevel, unitText } from '../../advisory/level-words.ts';
-import { speedOrigin } from '../../advisory/wording.ts';
 import { printFrequency, printNumber, printSeconds } from '../../config/print-value.ts';
 import type { Band } from '../../config/site.ts';
 import { isFaultEvidence } from '../../manipulation/evidence.ts';
@@ -16,6 +15,7 @@ import { listing, table, wrapText } from '../output.ts';
 import { type AnalysedFile, displayOf } from './analysis-json.ts';
 import { envelopeText } from './envelope-output.ts';
 import { noMachine } from './points-of-channels.ts';
+import { ordersText, speedText } from './speed-output.ts';
 
 /** Peaks that a table shows. */
 const mostPeaks = 12;
@@ -69,23 +69,19 @@ function channelText(
   const quality = [...recordingQuality, ...measurement.quality];
   const head = `\nChannel ${plain(measurement.channel)}${inSite ? `: ${measurement.machineId}/${measurement.pointId}` : ''}, ${measurement.quantity} in ${measurement.unit}\n`;
   const facts: [string, string][] = [];
-  if (speed !== null) {
-    facts.push([
-      'speed',
-      `${printNumber(speed.rpm, 4)} rpm ± ${printNumber(speed.uncertaintyRpm, 2)}, ${speedOrigin[speed.origin]}`,
-    ]);
-  }
+  if (speed !== null) facts.push(['speed', speedText(speed)]);
   facts.push([
     'averaging',
     averaging === null ? 'none: not even one segment fits' : averagingText(averaging),
   ]);
   facts.push(['waveform', waveform === null ? 'none' : waveformText(waveform)]);
+  if (measurement.orders != null) facts.push(['orders', ordersText(measurement.orders)]);
   if (measurement.envelope != null) facts.push(['envelope', envelopeText(measurement.envelope)]);
   if (quality.length === 0) facts.push(['quality', 'nothing to remark']);
   for (const [n, { flag, detail }] of quality.entries())
     facts.push([n === 0 ? 'quality' : '', `${flag}: ${detail}`]);
   facts.push(...evidenceFacts(measurement.evidence));
-  return `${head}${listing(facts, '  ')}${bandTable(measurement, bands)}${peakTable('peak', measurement.peaks, measurement)}${envelopePeaks(measurement)}`;
+  return `${head}${listing(facts, '  ')}${bandTable(measurement, bands)}${peakTable('peak', measurement.peaks, measurement)}${orderPeaks(measurement)}${envelopePeaks(measurement)}`;
 }
 
 /** What the lines say of the parts, and that it is no verdict. */
@@ -154,6 +150,11 @@ function bandTable(measurement: Measurement, bands: readonly Band[]): string {
 function envelopePeaks(measurement: Measurement): string {
   const { envelope } = measurement;
   return envelope == null ? '' : peakTable('envelope peak', envelope.peaks, measurement);
+}
+
+function orderPeaks(measurement: Measurement): string {
+  const { orders } = measurement;
+  return orders == null ? '' : peakTable('peak over orders', orders.peaks, measurement);
 }
 
 function peakTable(what: string, peaks: readonly SpectralPeak[], { unit, averaging }: Measurement): string {
