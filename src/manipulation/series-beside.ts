@@ -45,9 +45,11 @@ export function ratesBeside(sampleRateHz: number, configuredHz: number | null): 
   if (!(sampleRateHz > 0) || (configuredHz !== null && !isWrongRate(sampleRateHz, configuredHz))) return [];
   const own = seriesRate(sampleRateHz, configuredHz);
   const step = 10 ** (Math.floor(Math.log10(own)) - 3);
+  // Below a power of ten the steps are a tenth of those above.
+  const stepDown = own === 1000 * step ? step / 10 : step;
   const away = (rateHz: number) => Math.abs(sampleRateHz / rateHz - 1);
   return (
-    [own - step, own + step]
+    [own - stepDown, own + step]
       .map((rateHz) => seriesRate(rateHz, null))
       .filter((rateHz) => away(rateHz) <= rateTolerance)
       // Who sends another rate than the configured one does not join the series of the configured one.

@@ -15,7 +15,7 @@ it('two rates within 0.01 % of one another always know of the rounding of the ot
 
 it('only roundings within 0.1 % of the rate are beside it, and none beside a configured rate that is kept', () => {
   expect(ratesBeside(16_385.2, null)).toEqual([16_380, 16_400]);
-  expect(ratesBeside(1000.4, null)).toEqual([1001]);
+  expect(ratesBeside(1001.3, null)).toEqual([1002]);
   expect(ratesBeside(25_610, 25_600)).toEqual([]);
   // 0.104 % off, and a rounding away from a rate that would pass for the configured one.
   expect(ratesBeside(25_626.6, 25_600)).toEqual([25_640]);
