@@ -6,7 +6,9 @@ import { hashingSource } from '../../src/acquisition/byte-source.ts';
 import { wavReader } from '../../src/acquisition/read-wav.ts';
 import { isRefusal } from '../../src/acquisition/recording.ts';
 import { SampleQuality } from '../../src/acquisition/sample-quality.ts';
-import type { Point } from '../../src/config/site.ts';
+import type { Band, Point } from '../../src/config/site.ts';
+import { EnvelopeRun, envelopePlan } from '../../src/manipulation/envelope-plan.ts';
+import { measureEnvelope } from '../../src/manipulation/measure-envelope.ts';
 import { layFixedBands } from '../../src/manipulation/point-bands.ts';
 import { openRegularFile } from '../../src/service/file-source.ts';
 import work from '../../src/service/recording-worker.ts';
@@ -71,6 +73,12 @@ async function measured(paths: readonly string[], point: Point): Promise<StageTi
       const tones = search.peaks.filter(({ kind }) => kind === 'tone');
       for (const { weights } of laid) bandInterval(averaged.density, weights, kernel, tones);
     }),
+    'envelope, its level and peaks (not of the task)': await each(({ samples }) =>
+      envelopeStage(samples, point, 'fixed'),
+    ),
+    'the same, and its band looked for': await each(({ samples }) =>
+      envelopeStage(samples, point, 'kurtosis'),
+    ),
     'whole task of the thread': await each(({ path }) => measureTask(path, point)),
   };
 }
@@ -123,6 +131,25 @@ function checkSamples(samples: Float64Array): void {
   });
   check.add(samples);
   check.finish(null, { lowestVelocityHz: 10, speedHz: 1480 / 60 });
+}
+
+function envelopeStage(samples: Float64Array, plain: Point, choose: 'fixed' | 'kurtosis'): void {
+  const band: Band = {
+    ...(plain.bands[0] as Band),
+    of: 'envelope',
+    quantity: 'acceleration',
+    from: 20,
+    to: 400,
+  };
+  const envelope = { band: null, choose, lineSpacingHz: 2, highestHz: band.to };
+  const point: Point = { ...plain, bands: [band], envelope };
+  const plan = envelopePlan(point, sampleRateHz, null);
+  if (plan === null) throw new Error('no envelope');
+  const run = new EnvelopeRun(plan);
+  run.add(samples);
+  const result = run.finish();
+  const { averages } = result.density;
+  measureEnvelope({ ...result, point, averages, speedHz: null, atLeast: false, seriesOf: () => '' });
 }
 
 async function measureTask(path: string, point: Point): Promise<void> {
