@@ -8,6 +8,7 @@ import { baselineValues, ceilingsOf, changeValues, rateValues, statisticalValues
 import type { WrittenLimit, WrittenLimits } from './schema-limits.ts';
 import type { Written } from './shape.ts';
 import type { Limit, LimitKind } from './site.ts';
+import { suppressionsOf, type WrittenSuppressions } from './suppressed-while.ts';
 import { zoneValues } from './zone-limit-values.ts';
 import type { ZoneCase } from './zone-limits.ts';
 
@@ -74,6 +75,8 @@ export interface LimitPlace {
   readonly zoneCase: ZoneCase;
   /** Operating conditions of the machine. */
   readonly conditions: readonly string[];
+  /** Of the machine, of the point. */
+  readonly suppressedWhile: readonly WrittenSuppressions[];
   /** Of the intervals of the point's levels. */
   readonly confidencePercent: number;
 }
@@ -131,6 +134,7 @@ function buildLimit(
   const parts = kinds[kind](build, written, { band, zoneCase, shown });
   if (parts === null) return null;
   const confident = keys.confidence !== null;
+  const suppressedWhile = suppressionsOf(shown, keys.suppressed_while, ...of.suppressedWhile);
   tellOtherConfidence(build, keys.confidence, of.confidencePercent);
   return {
     id,
@@ -141,6 +145,7 @@ function buildLimit(
     ...parts,
     ...(confident ? { confident } : {}),
     conditions: conditionsOf(build, written, of),
+    ...(suppressedWhile.length === 0 ? {} : { suppressedWhile }),
     // At three recordings single knocks raise nothing, and a learned limit stands nearer to what is usual.
     onDelay: valueOr(keys.on_delay, { recordings: kind === 'statistical' ? 3 : 2 }),
     offDelay: valueOr(keys.off_delay, { recordings: 1 }),

@@ -13,6 +13,7 @@ import type { Written } from './shape.ts';
 import type { ReadMap } from './shape-map.ts';
 import type { Machine, RunningRule } from './site.ts';
 import type { Span } from './site-text.ts';
+import { tellWrongSuppressions } from './suppressed-while.ts';
 
 type WrittenMachine = Written<ReadMap<typeof machineKeys>>;
 type WrittenType = Written<ReadMap<typeof machineTypeKeys>>;
@@ -53,6 +54,11 @@ export function buildMachines(build: Build, site: WrittenSite): readonly BuiltMa
     if (!used.has(id))
       build.reading.warn(at, `no machine is of the type '${id}', so its bands and limits are not judged`);
   }
+  tellWrongSuppressions(
+    build,
+    site,
+    machines.map(({ machine }) => machine),
+  );
   return machines;
 }
 
@@ -81,6 +87,7 @@ function buildMachine(
   const conditions = buildConditions(build, keys.conditions);
   const around: PointSurroundings = {
     conditions: conditions.map((one) => one.id),
+    suppressedWhile: keys.suppressed_while,
     machineId: id,
     bearingShafts,
     runningSpeedHz,

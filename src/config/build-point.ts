@@ -23,6 +23,7 @@ import type { Written } from './shape.ts';
 import type { ReadMap } from './shape-map.ts';
 import type { Point, SignalSettings } from './site.ts';
 import type { Span } from './site-text.ts';
+import type { WrittenSuppressions } from './suppressed-while.ts';
 
 export type WrittenPoint = Written<ReadMap<typeof pointKeys>>;
 
@@ -37,6 +38,8 @@ export interface PointSurroundings {
   readonly zones: MachineZones | null;
   /** Ids of the machine's operating conditions. */
   readonly conditions: readonly string[];
+  /** `suppressed_while` of the machine. */
+  readonly suppressedWhile: WrittenSuppressions;
   /** Turns, for one of the machine's speed, of the shafts whose rolling bearings a point hears, by its id. */
   readonly bearingShafts: (pointId: string) => readonly number[];
 }
@@ -88,6 +91,7 @@ export function buildPoint(
   const limits = buildLimits(build, [...around.limits, keys.limits], bands, {
     shown,
     conditions: around.conditions,
+    suppressedWhile: [keys.suppressed_while, around.suppressedWhile],
     confidencePercent: analysis.confidencePercent,
     zoneCase: { machineId, zones: around.zones, runningSpeedHz, point: { quantity, sensorOn } },
   });

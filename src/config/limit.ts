@@ -1,4 +1,5 @@
 import type { Ceiling, LimitRule } from './limit-rules.ts';
+import type { SuppressedWhile } from './suppressed-while.ts';
 
 /** A limit of one band of one point, as the site file means it. */
 
@@ -29,6 +30,8 @@ export interface Limit {
   readonly confident?: boolean;
   /** Operating conditions in which it holds; null: in all. */
   readonly conditions?: readonly string[] | null;
+  /** Its alarm is held back while one of these holds: those of the limit, of its point and of its machine. */
+  readonly suppressedWhile?: readonly SuppressedWhile[];
   readonly onDelay: Delay;
   readonly offDelay: Delay;
   readonly deadbandPercent: number;

@@ -99,6 +99,7 @@ function buildSite(build: Build, keys: WrittenSite, file: string, text: string):
     summary,
     page: keys.page?.value.keys.listen?.value ?? null,
     timings: buildTimings(keys),
+    shelveAtMostMs: valueOr(keys.shelve_at_most, 7 * 86_400_000),
     largestFileBytes: folders.largestFileBytes,
     warnings: [],
   };

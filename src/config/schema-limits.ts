@@ -5,6 +5,7 @@ import { duration, formerIds, frequency, id, percent } from './schema-values.ts'
 import { choice, list, plainNumber, type Shape, scalar, trueOrFalse, type Written, words } from './shape.ts';
 import { key, map, type ReadMap } from './shape-map.ts';
 import type { LimitKind } from './site.ts';
+import { suppressedWhileKey } from './suppressed-while.ts';
 
 const hour = 3_600_000;
 const day = 24 * hour;
@@ -87,6 +88,7 @@ export const limitKeys = {
   deadband: key(percent(0, 50, '10 %'), 'The level must fall this far below the limit, in percent of it.', {
     fallback: '10 %',
   }),
+  suppressed_while: suppressedWhileKey,
   latching: key(trueOrFalse, 'The alarm stands until it is reset by hand.', { fallback: 'false' }),
   say_again_at: key(
     scalar(parseSayAgain, { example: '+25 %' }),

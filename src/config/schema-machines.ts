@@ -12,6 +12,7 @@ import { parseSensitivity } from './sensitivity.ts';
 import { choice, list, ruled, scalar, words } from './shape.ts';
 import { key, map, mapById } from './shape-map.ts';
 import type { Quantity } from './site.ts';
+import { suppressedWhileKey } from './suppressed-while.ts';
 
 const day = 86_400_000;
 
@@ -76,6 +77,7 @@ export const pointKeys = {
   analysis: key(analysis, 'What differs at this point.'),
   bands: key(bands, 'Bands of this point, added to those of its machine; the same id replaces.'),
   limits: key(limits, 'Limits of this point, added to those of its machine; the same id replaces.'),
+  suppressed_while: suppressedWhileKey,
 };
 
 export const machineTypeKeys = {
@@ -126,6 +128,7 @@ export const machineKeys = {
     limits,
     'Limits of every point of this machine, added to those of its type; the same id replaces.',
   ),
+  suppressed_while: suppressedWhileKey,
   points: key(list(map(pointKeys), 500), 'Measuring points.', { required: true }),
   parts: key(parts, 'What turns, rolls or meshes in it: gives lines of a spectrum their names.'),
 };

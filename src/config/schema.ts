@@ -124,6 +124,11 @@ export const siteKeys = {
   analysis: key(analysis, 'How spectra are averaged; machine types, machines and points may override.'),
   machine_types: key(machineTypes, 'Bands and limits shared by machines of one kind.'),
   machines: key(machines, 'The machines and their measuring points.', { required: true }),
+  shelve_at_most: key(
+    duration(60_000, 90 * day, '7 d'),
+    'An alarm can be shelved for at most this long; then it speaks again by itself.',
+    { fallback: '7 d' },
+  ),
   mail: key(map(mailKeys), 'Alarm mails. Without it nobody is told.'),
   summary: key(map(summaryKeys), "The morning's report.", {
     fallback: "at '06:30' to the recipients of mail",

@@ -57,6 +57,8 @@ export interface Site {
   readonly summary: { readonly at: TimeOfDay; readonly to: readonly Recipient[] } | null;
   readonly page: { readonly host: string; readonly port: number } | null;
   readonly timings: IntakeTimings;
+  /** The longest time for which a person can shelve an alarm. */
+  readonly shelveAtMostMs: number;
   /** Largest file that intake accepts. */
   readonly largestFileBytes: number;
   /** Problems that do not stop the service (an overlap above 75 %, a band above the mounting's range). */

@@ -72,6 +72,7 @@ export function smallSite(tree: Tree): { readonly site: Site; readonly text: str
         polling: false,
       },
       largestFileBytes: 2 ** 31,
+      shelveAtMostMs: 7 * 86_400_000,
       warnings: [],
     },
   };
