@@ -78,7 +78,11 @@ function innermost(error: unknown): string {
   const text = error instanceof Error || hasMessage(error) ? error.message : String(error);
   const messages = [...text.matchAll(/^ *#\d+:.*?\(\): (.*)$/gm)];
   const last = messages.at(-1)?.[1] ?? `the HDF5 library stopped (${text.split('\n')[0]})`;
-  return last.replace(/[^ -~]/g, '?').slice(0, 160);
+  // A failed read is dated by the library, and told with its file and addresses.
+  return last
+    .replace(/: time = .*/, '')
+    .replace(/[^ -~]/g, '?')
+    .slice(0, 160);
 }
 
 function hasMessage(error: unknown): error is { readonly message: string } {
