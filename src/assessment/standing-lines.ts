@@ -106,7 +106,7 @@ export class FreeLines {
     return bins;
   }
 
-  /** Lines a hertz around each bin, or over the whole range where that is more. */
+  /** Lines a hertz around each bin but for the one that may be met there, or over the whole range where that is more. */
   #crowdOf(rung: number, free: Float64Array): Float64Array {
     const counts = new Float64Array(free.length);
     for (let rank = 0; rank < rung; rank++) counts[binOf(this.lines[rank].frequencyHz, this.fromHz)]++;
@@ -116,7 +116,7 @@ export class FreeLines {
     return free.map((_, bin) => {
       const width = sum(free, bin - binsPerOctave, bin + binsPerOctave + 1);
       const around = sum(counts, bin - binsPerOctave, bin + binsPerOctave + 1);
-      return Math.max(whole, around / Math.max(width, this.lineSpacingHz));
+      return Math.max(whole, (around - 1) / Math.max(width, this.lineSpacingHz));
     });
   }
 }

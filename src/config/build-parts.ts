@@ -139,7 +139,7 @@ function rollingBearing(build: Build, part: WrittenPart, place: PartPlace): Part
   };
   const sizes = ['rolling_elements', 'element_diameter', 'pitch_diameter'] as const;
   const given = sizes.filter((name) => has.has(name));
-  const byMultiples = Object.values(multiples).some((multiple) => multiple !== null);
+  const byMultiples = (['ftf', 'bsf', 'bpfo', 'bpfi'] as const).some((name) => has.has(name));
   if (given.length === 0 && !byMultiples) {
     const right = `add ${sizes.join(', ')} and contact_angle, or the maker's multiples such as bpfo: 3.585x`;
     build.reading.problem(
