@@ -56,7 +56,12 @@ export function tellOfAveraging(
     const right = reading.write(pool.at, printDuration((size < 2 ? 2 : mostPooled) * expectedEveryMs));
     reading.problem(pool.at, what, `${right}, or give a number of recordings`, 'pool size');
   }
-  if (sampleRateHz === null || segmentOf(analysis, sampleRateHz) <= longestPooledSamples) return;
+  if (sampleRateHz === null) {
+    const what = `average_over needs sample_rate, so that the recordings of ${shown} lie on the same lines`;
+    reading.problem(pool.at, what, 'add under recordings: sample_rate: 25.6 kHz', 'pool without rate');
+    return;
+  }
+  if (segmentOf(analysis, sampleRateHz) <= longestPooledSamples) return;
   const what = `average_over pools segments of at most ${longestPooledSamples} samples, ${shown} has segments of ${segmentOf(analysis, sampleRateHz)}`;
   const right = 'leave average_over out: pooling adds averages, never resolution; or widen line_spacing';
   reading.problem(pool.at, what, right, 'pool of long segments');

@@ -18,6 +18,7 @@ describe('a story that nobody interrupts', () => {
     const excused = leftOut.map((text) => text.slice(0, text.lastIndexOf(':')));
     expect([...reached, ...excused].sort()).toEqual([...stepNames].sort());
     expect(state.ledger.recordings).toHaveLength(9);
+    expect(state.ledger.measurements).toContainEqual(expect.objectContaining({ pooled_recordings: 2 }));
     expect(state.ledger.lives).toMatchObject([
       { key: expect.stringContaining('unreadable') },
       { key: expect.stringContaining('unassigned') },

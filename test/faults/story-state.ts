@@ -16,13 +16,15 @@ const queries: Readonly<Record<string, string>> = {
   sources: `select name, clock_offset_ms, newest_stated_ms, newest_used_ms, repeats_in_a_row from sources order by name`,
   arrivals: `select point_id, newest_used_ms, newest_evaluated_used_ms, recordings from point_arrivals order by point_id`,
   measurements: `select file_name, point_id, settings_fingerprint, is_current, m.used_ms, rms, peak, speed_rpm, machine_state,
-    m.evaluated, m.quality from measurements m join recordings r on r.id = recording_id order by file_name, point_id`,
+    m.evaluated, m.quality, averages, pooled_recordings from measurements m join recordings r on r.id = recording_id order by file_name, point_id`,
   levels:
     'select point_id, used_ms, band_id, series_id, level, in_trend from levels order by point_id, used_ms, band_id',
   peaks: `select point_id, used_ms, rank, frequency_hz, level from peaks join measurements m on m.id = measurement_id
     order by point_id, used_ms, rank`,
   spectra:
     'select point_id, used_ms, at_alarm, hex(density) as density from spectra order by point_id, used_ms',
+  pools: `select point_id, recordings, file_name, newest_used_ms, facts, hex(density) as density from open_pools
+    join recordings on recordings.id = recording_id order by point_id`,
   machines: 'select machine_id, state, used_ms, version from machine_states order by machine_id',
   states: 'select key, number, condition, state, version from alarm_states order by key',
   lives:
