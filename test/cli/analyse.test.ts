@@ -6,6 +6,8 @@ import { promisify } from 'node:util';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
 import { wavFile } from '../acquisition/wav-writer.ts';
 import { type GoldenInput, goldenSamples } from '../signal/golden-samples.ts';
+import { pulseChannel } from '../signal/pulse-channel.ts';
+import { seededRandom } from '../signal/random.ts';
 import { run, siteText } from './small-site.ts';
 
 let folder = '';
@@ -306,6 +308,45 @@ describe('with a site file', () => {
     ]);
     expect(answer.channels[1]?.bands[0]).toMatchObject({ band: 'overall', unit: 'mm/s', detector: 'rms' });
     expect(answer.channels[1]?.bands[0]?.level).toBeCloseTo((1000 * Math.SQRT2) / (2 * Math.PI * 100), 2);
+  });
+
+  test('the speed comes from the pulse channel; where it moves there is a spectrum over orders as well', async () => {
+    const own = mkdtempSync(join(folder, 'site-'));
+    const pulses = '    speed:\n      pulse_channel: 3\n    points:\n      - id: de-h';
+    writeFileSync(join(own, 'site.yaml'), siteText.replace('    points:\n      - id: de-h', pulses));
+    // 22.5 to 27.5 Hz within 8 s.
+    const turnsAt = (t: number) => 22.5 * t + 0.3125 * t * t;
+    const shaft = Float64Array.from({ length: 8 * 2560 }, (_, n) =>
+      Math.sin(2 * Math.PI * 3 * turnsAt(n / 2560)),
+    );
+    const marks = pulseChannel({ sampleRateHz: 2560, seconds: 8, turnsAt }, seededRandom(1));
+    writeFileSync(join(own, 'blower-1_20260302T060000Z.wav'), exactWav(2560, shaft, shaft, marks));
+    const asked = ['analyse', 'blower-1_20260302T060000Z.wav'];
+    const ran = await run([...asked, '--json', '--spectrum'], { workingFolder: own });
+    const [channel] = JSON.parse(ran.out).channels;
+    expect(channel.speed).toEqual({
+      rpm: expect.closeTo(1500, -1),
+      origin: 'pulses',
+      uncertainty_rpm: expect.any(Number),
+      names_lines: true,
+      lowest_rpm: expect.closeTo(1357, -1),
+      highest_rpm: expect.closeTo(1643, -1),
+      in_spectrum: null,
+    });
+    expect(channel.orders).toMatchObject({
+      mean_rpm: expect.closeTo(1500, -1),
+      averages: expect.any(Number),
+    });
+    expect(channel.orders.peaks[0].order).toBeCloseTo(3, 2);
+    expect(channel.orders.peaks[0].level).toBeCloseTo(Math.SQRT1_2, 2);
+    expect(channel.orders.spectrum).toMatchObject({ unit: '(m/s²)²/order' });
+    expect(channel.quality.map(({ flag }: { flag: string }) => flag)).toContain('transient');
+    const people = (await run(asked, { workingFolder: own })).out.replace(/\s+/g, ' ');
+    expect(people).toMatch(
+      /speed 1[45]\d\d(\.\d)? rpm ± \S+, from its pulses; between 13\d\d and 16\d\d rpm/,
+    );
+    expect(people).toContain('orders from samples at equal angles, for the speed moved');
+    expect(people).toContain('peak over orders, Hz');
   });
 
   test('a name that no point takes is answered with the nearest pattern; a channel that is not there too', async () => {
