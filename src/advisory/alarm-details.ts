@@ -12,7 +12,9 @@ import {
   percentText,
   unitText,
 } from './level-words.ts';
+import { reasonsText } from './limit-words.ts';
 import { lineCourse } from './line-changes.ts';
+import { comparedWith } from './ranking.ts';
 import { durationText, momentText } from './time-words.ts';
 import { foreign, idText, nameOf, speedOrigin, standingText } from './wording.ts';
 import { zoneSaid } from './zone-words.ts';
@@ -35,7 +37,7 @@ export function alarmDetails(alarm: AlarmFacts, timeZone: string, writtenMs: num
       'Since',
       `${momentText(alarm.sinceMs, timeZone)} (${durationText(writtenMs - alarm.sinceMs)}), ${counted(alarm.recordings, 'recording')} beyond the limit`,
     ],
-    ['Before', beforeDetail(alarm)],
+    ['Before', beforeDetail(alarm, timeZone)],
     ...(alarm.trend === null ? [] : [['Trend', foreign(alarm.trend)] as const]),
     ...(alarm.lines === null ? [] : linesDetails(withSureOrders(alarm.lines, alarm.recording), timeZone)),
     ...evidenceDetail(alarm),
@@ -56,22 +58,26 @@ function limitDetail(alarm: AlarmFacts): string {
   const said = ([alarm.severity, other] as const).map((severity) => {
     const at = limit[severity];
     if (at === null) return `no ${severity} limit`;
-    return `${severity} ${levelText(at, band.display)}: ${distanceText(level.level, at)}`;
+    return `${severity} ${levelText(at, band.display)}: ${distanceText(comparedWith(limit, level.level), at)}`;
   });
+  const line =
+    limit.compared === undefined ? '' : `its line now ${levelText(limit.compared, band.display)}; `;
   const side = limit.side === 'lower' ? 'lower limit, ' : '';
-  return `${side}${said.join('; ')}`;
+  return `${side}${line}${said.join('; ')}`;
 }
 
 /** Why the limit stands where it stands, where it is not the site's own number. */
 function reasonsDetail({ limit }: AlarmFacts): Detail[] {
-  const said = (['alert', 'danger'] as const).flatMap((severity) => {
-    const why = limit.reasons?.[severity] ?? null;
-    return why === null ? [] : [`${severity} at ${foreign(why)}`];
-  });
-  return said.length === 0 ? [] : [['Limit from', said.join('; ')]];
+  const said = reasonsText(limit);
+  return said === null ? [] : [['Limit from', said]];
 }
 
-function beforeDetail({ before, band }: AlarmFacts): string {
+function beforeDetail({ before, band }: AlarmFacts, timeZone: string): string {
+  const broken = before.broken ?? null;
+  const since =
+    broken === null
+      ? null
+      : `${broken.kind === 'repair' ? 'the repair' : 'the change of sensor'} of ${momentText(broken.atMs, timeZone)}`;
   const said: string[] = [];
   if (before.last.length > 0) {
     const levels = before.last.map(({ level }) => bareLevel(level, band.display)).join(', ');
@@ -80,7 +86,10 @@ function beforeDetail({ before, band }: AlarmFacts): string {
   if (before.dayBefore !== null) said.push(`a day ago ${bareLevel(before.dayBefore.level, band.display)}`);
   if (before.weekBefore !== null) said.push(`a week ago ${bareLevel(before.weekBefore.level, band.display)}`);
   if (before.baseline !== null) said.push(`baseline ${bareLevel(before.baseline, band.display)}`);
-  return said.length === 0 ? 'no earlier level under these settings' : said.join('; ');
+  if (said.length === 0)
+    return since === null ? 'no earlier level under these settings' : `no earlier level since ${since}`;
+  if (since !== null) said.push(`nothing from before ${since}`);
+  return said.join('; ');
 }
 
 /** An order is named where the speed is known well enough to tell it from its neighbours: within a quarter order. */

@@ -44,11 +44,19 @@ export interface BandFacts {
 export interface LimitFacts {
   readonly id: string;
   readonly side: 'upper' | 'lower';
-  /** SI r.m.s.; at least one of the two is set. */
+  /** SI r.m.s.; at least one of the two is set, but where the limit cannot be reckoned. */
   readonly alert: number | null;
   readonly danger: number | null;
   /** Why they stand there; left out where the site says so. */
   readonly reasons?: LimitReasons | null;
+  /** SI r.m.s.: what is held against it, where that is not the level itself (a rate: its line's level now). */
+  readonly compared?: number;
+  /** Reckoned from a baseline that is still provisional. */
+  readonly provisional?: boolean;
+  /** Who stands for the baseline, which had been refused or was frozen. */
+  readonly confirmedBy?: string;
+  /** Why it cannot be reckoned now. */
+  readonly unknown?: string;
 }
 
 /** The evaluation zone of a level of velocity or displacement. */
@@ -153,6 +161,8 @@ export interface AlarmFacts extends StandingAlarm {
     readonly weekBefore: PastLevel | null;
     /** SI r.m.s. */
     readonly baseline: number | null;
+    /** A repair or another sensor, before which no level is compared with this one. */
+    readonly broken?: { readonly kind: 'repair' | 'sensor-changed'; readonly atMs: number } | null;
   };
   /** A sentence of the prognosis, already worded; never a promise. */
   readonly trend: string | null;

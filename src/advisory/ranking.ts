@@ -87,6 +87,11 @@ export function firstLimit(limit: LimitFacts): number | null {
   return limit.alert ?? limit.danger;
 }
 
+/** What is held against the limit: the level, of a rate its line's. SI r.m.s. */
+export function comparedWith(limit: LimitFacts, level: number): number {
+  return limit.compared ?? level;
+}
+
 /**
  * Share of the alert limit that a level uses up: 1 at the limit, more beyond it, for upper and lower limits alike.
  * Infinity for nothing against a lower limit; null without a limit to measure by.
@@ -94,7 +99,8 @@ export function firstLimit(limit: LimitFacts): number | null {
 export function shareOfAlert(level: number, limit: LimitFacts): number | null {
   const at = firstLimit(limit);
   if (at === null) return null;
-  return limit.side === 'upper' ? level / at : at / level;
+  const compared = comparedWith(limit, level);
+  return limit.side === 'upper' ? compared / at : at / compared;
 }
 
 /** The largest share over several limits of one band; null where none applies. */

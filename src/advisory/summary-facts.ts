@@ -1,3 +1,4 @@
+import type { BaselineState } from '../detection/baseline.ts';
 import type {
   BandFacts,
   LevelFacts,
@@ -20,11 +21,26 @@ export interface BandNow {
   readonly limits: readonly LimitFacts[];
   readonly change: Change | null;
   readonly zone: ZoneFacts | null;
+  /** Of bands with a limit that is reckoned from them, one an operating condition. */
+  readonly baselines?: readonly BaselineNow[];
+}
+
+/** What is usual for a band in one operating condition, as far as limits depend on it. */
+export interface BaselineNow {
+  /** '' where the machine has one condition only. */
+  readonly condition: string;
+  readonly state: BaselineState;
+  readonly runningDays: number;
+  /** Why it is refused. */
+  readonly refused: string | null;
+  /** Who stands for it although it had been refused, or froze it. */
+  readonly confirmedBy: string | null;
 }
 
 /**
  * judged: an evaluated recording within the time allowed. stopped: its machine stands. blind: a trouble stands, no
- * usable data. not-judged: data come, but outside every operating condition. no-limit: it can never alarm.
+ * usable data. not-judged: data come, but none of its limits can be reckoned for them (outside every operating condition, no
+ * baseline yet). no-limit: it can never alarm.
  * out-of-service: taken out by a person.
  */
 export type Judging = 'judged' | 'stopped' | 'blind' | 'not-judged' | 'no-limit' | 'out-of-service';

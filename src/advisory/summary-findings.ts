@@ -5,7 +5,7 @@ import { evidenceLines } from './evidence-facts.ts';
 import type { StandingAlarm } from './facts.ts';
 import { markWord } from './letter.ts';
 import { changeText, distanceText, levelText, measuredText, percentText } from './level-words.ts';
-import { bearingOf, firstLimit, largestShare } from './ranking.ts';
+import { bearingOf, comparedWith, firstLimit, largestShare } from './ranking.ts';
 import type { Standing, Worse } from './summary.ts';
 import type { SummaryFacts } from './summary-facts.ts';
 import { durationText, shortMomentText } from './time-words.ts';
@@ -106,8 +106,11 @@ function whatText(item: Standing): string {
 function alarmText({ band, level, limit, severity, change, dangerUnconfirmed }: StandingAlarm): string {
   if (level === null) return `${idText(band.id)}, no level now`;
   const at = limit[severity] ?? firstLimit(limit);
+  const beside =
+    limit.unknown === undefined ? '' : `, its limit not reckoned now (${clip(limit.unknown, 120)})`;
+  const compared = comparedWith(limit, level.level);
   const distance =
-    at === null ? '' : `, ${distanceText(level.level, at)} ${severity} (${levelText(at, band.display)})`;
+    at === null ? beside : `, ${distanceText(compared, at)} ${severity} (${levelText(at, band.display)})`;
   const trend = change === null ? '' : `, ${changeText(change.ratio)} on the week`;
   const unconfirmed = dangerUnconfirmed ? ', over danger in the newest recording, not yet confirmed' : '';
   return `${idText(band.id)} ${measuredText(level, band.display)}${distance}${trend}${unconfirmed}`;

@@ -137,7 +137,7 @@ function runningDays({ levels, expectedADay }: BaselineQuestion): GoodLevel[][] 
 }
 
 function refusalOf(days: readonly GoodLevel[][], medianLog: number, zoneC: number | null): string | null {
-  if (zoneC !== null && medianLog >= Math.log(zoneC)) return 'it lies in zone C or D';
+  if (zoneC !== null && medianLog > Math.log(zoneC)) return 'it lies in zone C or D';
   if (days.length < baselineRules.provisionalDays) return null;
   const logs = days.map((day) => Math.log(median(day.map(({ level }) => level))));
   const at = logs.map((_, day) => day);

@@ -2,7 +2,7 @@ import type { Ceiling, CurveValue, LimitRule } from '../config/limit-rules.ts';
 import { printLevel, printNumber } from '../config/print-value.ts';
 import type { DisplayUnit, Limit } from '../config/site.ts';
 import { fitLine, slopeHalfWidth } from '../signal/line-fit.ts';
-import { type Baseline, isUsable } from './baseline.ts';
+import { type Baseline, baselineRules, isUsable } from './baseline.ts';
 
 /** What a limit may need to know of a recording besides its level. */
 export interface LimitSituation {
@@ -36,6 +36,7 @@ export interface NoThresholds {
   readonly unknown: string;
 }
 
+const dayMs = 86_400_000;
 /** Levels below which a rate says nothing: three days of one recording a day, or as many of one shift. */
 const leastForRate = 8;
 
@@ -62,7 +63,7 @@ export function thresholdsOf(
     case 'rate':
       return rateOf(rule, limit, situation, display);
     case 'curve':
-      return curveAt(rule, limit, level, situation, display);
+      return curveAt(rule, limit, level, situation);
     default:
       return learned(rule, limit, level, situation.baseline, display);
   }
@@ -86,9 +87,12 @@ function learned(
     if (by === null) return null;
     if (rule.by === 'baseline') return { value: by * usual, why: `${printNumber(by)} times ${said}` };
     if (rule.by === 'change')
-      return { value: Math.max(0, usual + sign * by), why: `${printLevel(by, display)} from ${said}` };
+      return {
+        value: Math.max(0, usual + sign * by),
+        why: `${printLevel(by, display)} ${sign > 0 ? 'over' : 'under'} ${said}`,
+      };
     const spread = printNumber(100 * Math.expm1(baseline.spreadLog), 2);
-    const words = `${sign > 0 ? 'above' : 'below'} ${said}, by ${printNumber(by)} spreads of ${spread} %`;
+    const words = `${printNumber(by)} spreads of ${spread} % ${sign > 0 ? 'above' : 'below'} ${said}`;
     return { value: usual * Math.exp(sign * by * baseline.spreadLog), why: words };
   };
   const alert = held(reckon(rule.alert), limit.ceilings?.alert ?? null, side, display);
@@ -137,9 +141,8 @@ function held(
 }
 
 function whyUnusable(baseline: Baseline | null): string {
-  if (baseline === null || baseline.medianLog === null) return 'there is no baseline yet';
-  if (baseline.state === 'refused') return `the baseline is refused: ${baseline.refused}`;
-  return `the baseline has ${baseline.runningDays} running days so far`;
+  if (baseline?.state === 'refused') return `the baseline is refused: ${baseline.refused}`;
+  return `no baseline yet: ${baseline?.runningDays ?? 0} of ${baselineRules.provisionalDays} running days`;
 }
 
 /**
@@ -174,7 +177,10 @@ function rateOf(
   const reckon = (by: number | null): Value | null =>
     by === null
       ? null
-      : { value: before * by, why: `${printNumber(by)} times ${printLevel(before, display)} before` };
+      : {
+          value: before * by,
+          why: `${printNumber(by)} times ${printLevel(before, display)}, its line ${spanText(rule.overMs)} before`,
+        };
   return {
     value: doubtful ? before : Math.exp(line.intercept),
     side,
@@ -184,20 +190,23 @@ function rateOf(
   };
 }
 
+function spanText(ms: number): string {
+  return ms < dayMs ? `${printNumber(ms / 3_600_000)} h` : `${printNumber(ms / dayMs)} d`;
+}
+
 /** On the curve at the recording's speed or load; beyond its ends the outermost value holds. */
 function curveAt(
   { over, values }: Extract<LimitRule, { readonly by: 'curve' }>,
   limit: Limit,
   level: number,
   { speedHz, loadPercent }: LimitSituation,
-  display: DisplayUnit,
 ): Thresholds | NoThresholds {
   const at = over === 'speed' ? speedHz : loadPercent;
   if (at === null) return { unknown: `the recording has no measured ${over}` };
   const shown = over === 'speed' ? `${printNumber(at * 60, 4)} rpm` : `${printNumber(at)} % load`;
   const reckon = (severity: 'alert' | 'danger'): Value | null => {
     const value = between(values, at, severity);
-    return value === null ? null : { value, why: `${printLevel(value, display)} at ${shown} of its curve` };
+    return value === null ? null : { value, why: `${shown} of its curve` };
   };
   return {
     value: level,

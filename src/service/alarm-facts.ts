@@ -1,5 +1,5 @@
 import type { AlarmFacts, LevelFacts, LimitFacts, RecordingFacts, StandingFacts } from '../advisory/facts.ts';
-import type { LimitReasons, Machine, Point } from '../config/site.ts';
+import type { Limit, Machine, Point } from '../config/site.ts';
 import { normalState } from '../detection/alarm.ts';
 import { alarmByNumber, loadAlarms, type StandingLife, type StoredAlarm } from '../store/alarms.ts';
 import { type JournalRow, readJournal } from '../store/journal.ts';
@@ -18,13 +18,14 @@ import {
   bandFacts,
   findMachine,
   type LimitSubject,
-  limitFacts,
-  limitOf,
+  limitOf as limitInSite,
   limitOfKey,
   machineFacts,
   pointFacts,
 } from './fact-names.ts';
 import { levelFacts, levelsBefore, linesFacts, otherPoints, recordingFacts } from './level-facts.ts';
+import { limitOfLife, limitOfRow } from './limit-of-journal.ts';
+import { limitFactsNow, limitsInForce } from './limits-in-force.ts';
 import type { SiteView } from './site-view.ts';
 import { standingFacts } from './standing-facts.ts';
 import { alarmZone } from './zone-facts.ts';
@@ -53,7 +54,7 @@ interface Measured {
 export async function alarmFacts(reader: Reader, view: SiteView, event: UntoldEvent): Promise<AlarmFacts> {
   const known = await knownOf(reader, view, event);
   const { subject, point, machine, row } = known;
-  const limit = limitOf(point, subject.limitId);
+  const limit = limitInSite(point, subject.limitId);
   const measured = await measuredFor(reader, known);
   const seriesId = measured?.level?.seriesId;
   const series =
@@ -76,7 +77,7 @@ export async function alarmFacts(reader: Reader, view: SiteView, event: UntoldEv
       series,
       machine,
     ),
-    limit: limit === undefined ? await limitFromJournal(reader, event, subject.limitId) : limitFacts(limit),
+    limit: await limitOf(reader, view, known, measured, limit),
     level: levelOf(known, measured, usedMs),
     dangerUnconfirmed: state?.pending?.to === 'danger',
     evidence: measured === null ? [] : await evidenceFacts(reader, measured.measurement.id),
@@ -162,8 +163,8 @@ async function before(
   if (pointId === null || bandId === null || level === undefined)
     return { last: [], dayBefore: null, weekBefore: null, baseline: null };
   const everyMs = point?.recordings.expectedEveryMs ?? 3_600_000;
-  const { seriesId, usedMs } = level;
-  return levelsBefore(reader, { pointId, bandId, seriesId, usedMs, everyMs });
+  const { seriesId, conditionId, usedMs } = level;
+  return levelsBefore(reader, { pointId, bandId, seriesId, conditionId, usedMs, everyMs });
 }
 
 async function standingOf(
@@ -213,16 +214,25 @@ async function recordingOf(
   };
 }
 
-/** A limit that has left the site file, as the journal remembers it from its decisions. */
-async function limitFromJournal(reader: Reader, event: UntoldEvent, id: string): Promise<LimitFacts> {
-  const rows = event.number === null ? [] : await readJournal(reader, { number: event.number, limit: 100 });
-  const reason = rows.find((row) => 'alert' in row.reason || 'danger' in row.reason)?.reason ?? {};
-  const number = (value: unknown) => (typeof value === 'number' ? value : null);
-  return {
-    id,
-    side: reason.side === 'lower' ? 'lower' : 'upper',
-    alert: number(reason.alert),
-    danger: number(reason.danger),
-    ...(reason.why == null ? {} : { reasons: reason.why as LimitReasons }),
-  };
+/**
+ * The limit as it stood when the event was decided, which the journal has. An event that was none of a recording (a shelf's
+ * end) has the limit as it stands now, and where it has left the site file, as it stood last.
+ */
+async function limitOf(
+  reader: Reader,
+  view: SiteView,
+  { event, row, subject, point }: Known,
+  measured: Measured | null,
+  limit: Limit | undefined,
+): Promise<LimitFacts> {
+  const { limitId } = subject;
+  const decided = limitOfRow(row?.reason ?? {}, limitId);
+  if (decided !== null) return { reasons: limit?.reasons ?? null, ...decided };
+  if (limit !== undefined && point !== undefined) {
+    const all = await limitsInForce(reader, view, point, measured?.measurement ?? null);
+    const own = all.find((one) => one.limit.id === limitId);
+    if (own !== undefined && !('unknown' in own.now)) return limitFactsNow(own);
+  }
+  const last = await limitOfLife(reader, event.number, limitId);
+  return last ?? { id: limitId, side: limit?.side ?? 'upper', alert: null, danger: null };
 }

@@ -1,12 +1,13 @@
 import type { AlarmFacts, AlarmMailFacts } from '../advisory/facts.ts';
 import { shareOfAlert } from '../advisory/ranking.ts';
-import type { Limit, Machine, Point } from '../config/site.ts';
+import type { Machine, Point } from '../config/site.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { newestMeasurement, type StoredMeasurement } from '../store/read-measurements.ts';
 import { seriesOfPoint, type TrendPoint } from '../store/read-trends.ts';
 import { evidenceFacts } from './evidence-now.ts';
-import { bandFacts, limitFacts, machineFacts, pointFacts, siteFacts } from './fact-names.ts';
+import { bandFacts, machineFacts, pointFacts, siteFacts } from './fact-names.ts';
 import { levelFacts, levelsBefore, linesFacts, otherPoints, recordingFacts } from './level-facts.ts';
+import { type LimitInForce, limitFactsNow, limitsInForce } from './limits-in-force.ts';
 import type { SiteView } from './site-view.ts';
 import { alarmZone } from './zone-facts.ts';
 
@@ -25,12 +26,14 @@ export async function asAlarm(
   if (point.limits.length === 0)
     return { refused: `${machine.id}/${point.id} has no limit in the site file, so it can never alarm` };
   const measurement = await newestMeasurement(reader, pointId, { evaluated: true });
-  const chosen = measurement === null ? null : mostUsed(view, point, measurement);
-  if (measurement === null || chosen === null) {
+  if (measurement === null || measurement.levels.length === 0) {
     return {
       refused: `there is no level of ${machine.id}/${point.id} yet; put a recording into the drop folder`,
     };
   }
+  const limits = await limitsInForce(reader, view, point, measurement);
+  const chosen = mostUsed(view, point, measurement, limits);
+  if (chosen === null) return { refused: `${machine.id}/${point.id}: ${whyNone(limits)}` };
   return {
     site: siteFacts(view),
     machine: machineFacts(view, machine.id),
@@ -43,17 +46,28 @@ export async function asAlarm(
 }
 
 interface Chosen {
-  readonly limit: Limit;
+  readonly inForce: LimitInForce;
   readonly level: TrendPoint;
 }
 
-function mostUsed(view: SiteView, point: Point, measurement: StoredMeasurement): Chosen | null {
-  const used = point.limits.flatMap((limit) => {
-    const bandId = view.ids.bandId(point.machineId, point.id, limit.bandId);
+/** Why no limit of a point can be shown in an alarm. */
+export function whyNone(limits: readonly LimitInForce[]): string {
+  const why = limits.flatMap(({ limit, now }) => ('unknown' in now ? [`${limit.id}: ${now.unknown}`] : []));
+  return why.length === 0 ? 'the newest recording has no level of a band with a limit' : why.join('; ');
+}
+
+function mostUsed(
+  view: SiteView,
+  point: Point,
+  measurement: StoredMeasurement,
+  limits: readonly LimitInForce[],
+): Chosen | null {
+  const used = limits.flatMap((inForce) => {
+    const bandId = view.ids.bandId(point.machineId, point.id, inForce.limit.bandId);
     const level = measurement.levels.find((one) => one.bandId === bandId);
-    return level === undefined
+    return level === undefined || 'unknown' in inForce.now
       ? []
-      : [{ limit, level, share: shareOfAlert(level.level, limitFacts(limit)) ?? 0 }];
+      : [{ inForce, level, share: shareOfAlert(level.level, limitFactsNow(inForce)) ?? 0 }];
   });
   return used.sort((a, b) => b.share - a.share)[0] ?? null;
 }
@@ -66,12 +80,14 @@ interface Subject extends Chosen {
 }
 
 async function alarmOf(reader: Reader, view: SiteView, subject: Subject): Promise<AlarmFacts> {
-  const { machine, point, pointId, measurement, limit, level } = subject;
-  const { bandId, seriesId, usedMs } = level;
+  const { machine, point, pointId, measurement, inForce, level } = subject;
+  const { limit } = inForce;
+  const facts = limitFactsNow(inForce);
+  const { bandId, seriesId, conditionId, usedMs } = level;
   const series = (await seriesOfPoint(reader, pointId)).find(({ id }) => id === seriesId);
   const band = point.bands.find(({ id }) => id === limit.bandId);
   const everyMs = point.recordings.expectedEveryMs;
-  const before = await levelsBefore(reader, { pointId, bandId, seriesId, usedMs, everyMs });
+  const before = await levelsBefore(reader, { pointId, bandId, seriesId, conditionId, usedMs, everyMs });
   return {
     kind: 'alarm',
     number: 0,
@@ -82,12 +98,12 @@ async function alarmOf(reader: Reader, view: SiteView, subject: Subject): Promis
     acknowledgedBy: null,
     acknowledgedMs: null,
     suppressedUntilMs: null,
-    severity: limit.alert === null ? 'danger' : 'alert',
+    severity: facts.alert === null ? 'danger' : 'alert',
     event: 'raised',
     machine: machineFacts(view, machine.id),
     point: pointFacts(view, machine.id, point.id),
     band: bandFacts(limit.bandId, band, series, machine),
-    limit: limitFacts(limit),
+    limit: facts,
     level: levelFacts(measurement, level),
     dangerUnconfirmed: false,
     evidence: await evidenceFacts(reader, measurement.id),

@@ -9,12 +9,16 @@ import { compareLines } from '../advisory/line-changes.ts';
 import { largestShare } from '../advisory/ranking.ts';
 import type { Machine, Point } from '../config/site.ts';
 import { usualDisplayUnit } from '../config/units.ts';
+import { isUsable } from '../detection/baseline.ts';
+import { baselinesOf } from '../store/baselines.ts';
 import type { Reader } from '../store/lent-connection.ts';
+import { lastBreak, type NoteKind } from '../store/notes.ts';
 import { peaksBetween } from '../store/past-levels.ts';
 import { newestMeasurement, type StoredMeasurement } from '../store/read-measurements.ts';
 import { peaksOf, readLevels, seriesOfPoint, type TrendPoint } from '../store/read-trends.ts';
 import { recordingById } from '../store/recordings.ts';
-import { bandFacts, limitFacts, pointFacts } from './fact-names.ts';
+import { bandFacts, pointFacts } from './fact-names.ts';
+import { limitFactsNow, limitsInForce } from './limits-in-force.ts';
 import type { SiteView } from './site-view.ts';
 
 /** Numbers around an alarm: the levels before, the lines that rose, the machine's other points, the recording. */
@@ -35,17 +39,34 @@ export interface SeriesPlace {
   readonly pointId: number;
   readonly bandId: number;
   readonly seriesId: number;
+  readonly conditionId: number;
   /** Of the recording whose past is asked for. */
   readonly usedMs: number;
   /** How often a recording is expected: 'a day ago' is the newest one that is half of this short of a day old, or older. */
   readonly everyMs: number;
 }
 
-/** The last four of the same series, the one of a day before and of a week before, each with half a day's grace. */
+/** How far back the levels before reach. */
+const pastMs = 60 * dayMs;
+
+/**
+ * The last four of the same series and operating condition, the one of a day before and of a week before, each with half a
+ * day's grace, and what is usual. None from before a repair or a change of sensor: that was another machine.
+ */
 export async function levelsBefore(reader: Reader, place: SeriesPlace): Promise<AlarmFacts['before']> {
-  const { pointId, bandId, seriesId, usedMs } = place;
+  const { pointId, bandId, seriesId, conditionId, usedMs } = place;
+  const last = await lastBreak(reader, { pointId, toMs: usedMs });
+  const broken = last !== null && last.atMs > usedMs - pastMs ? last : null;
   const newest = async (fromMs: number, toMs: number, limit: number) => {
-    const levels = await readLevels(reader, { pointId, bandId, seriesId, fromMs, toMs, limit });
+    const levels = await readLevels(reader, {
+      pointId,
+      bandId,
+      seriesId,
+      conditionId,
+      fromMs: Math.max(fromMs, broken?.atMs ?? fromMs),
+      toMs,
+      limit,
+    });
     return levels.map(({ usedMs: at, level }) => ({ usedMs: at, level })).reverse();
   };
   const ago = async (ms: number) => {
@@ -53,16 +74,28 @@ export async function levelsBefore(reader: Reader, place: SeriesPlace): Promise<
     return (await newest(about - dayMs / 2, about + Math.min(place.everyMs, dayMs) / 2, 1))[0] ?? null;
   };
   return {
-    last: await newest(usedMs - 60 * dayMs, usedMs, 4),
+    last: await newest(usedMs - pastMs, usedMs, 4),
     dayBefore: await ago(dayMs),
     weekBefore: await ago(7 * dayMs),
-    baseline: null,
+    baseline: await usualLevel(reader, place),
+    ...(broken === null ? {} : { broken: { kind: breakingKind(broken.kind), atMs: broken.atMs } }),
   };
+}
+
+/** Median of the baseline, SI r.m.s.; null where there is none to go by. */
+async function usualLevel(reader: Reader, { seriesId, conditionId }: SeriesPlace): Promise<number | null> {
+  const baselines = await baselinesOf(reader, [seriesId]);
+  const own = baselines.find((one) => one.conditionId === conditionId) ?? null;
+  return isUsable(own) ? Math.exp(own.medianLog) : null;
+}
+
+function breakingKind(kind: NoteKind): 'repair' | 'sensor-changed' {
+  return kind === 'repair' ? 'repair' : 'sensor-changed';
 }
 
 /**
  * The lines of a measurement against those of about a week before: the newest spectrum that is a week old, or the
- * oldest day at hand where the watch has not lasted so long.
+ * oldest day at hand where the watch, or the machine since its repair, has not lasted so long.
  */
 export async function linesFacts(
   reader: Reader,
@@ -71,8 +104,9 @@ export async function linesFacts(
 ): Promise<LinesFacts | null> {
   const { pointId, usedMs, averaging } = measurement;
   if (averaging === null) return null;
+  const brokenMs = (await lastBreak(reader, { pointId, toMs: usedMs }))?.atMs ?? Number.NEGATIVE_INFINITY;
   const spans = [7, 3, 1].map((days) => ({
-    fromMs: usedMs - (days === 7 ? 14 : 7) * dayMs,
+    fromMs: Math.max(usedMs - (days === 7 ? 14 : 7) * dayMs, brokenMs),
     toMs: usedMs - days * dayMs + hourMs,
   }));
   let before: Awaited<ReturnType<typeof peaksBetween>> = null;
@@ -118,11 +152,12 @@ async function otherPoint(
   const old = measurement !== null && usedMs - measurement.usedMs > overdueAfterMs + settleMs;
   if (measurement === null || old) return { point: named, band: null, level: null, share: null };
   const series = new Map((await seriesOfPoint(reader, pointId)).map((one) => [one.id, one]));
+  const inForce = await limitsInForce(reader, view, point, measurement);
   const bands = point.bands.flatMap((band) => {
     const bandId = view.ids.bandId(point.machineId, point.id, band.id);
     const level = measurement.levels.find((one) => one.bandId === bandId);
     if (level === undefined) return [];
-    const limits = point.limits.filter((limit) => limit.bandId === band.id).map(limitFacts);
+    const limits = inForce.filter(({ limit }) => limit.bandId === band.id).map(limitFactsNow);
     const share = largestShare(level.level, limits);
     return [{ band: bandFacts(band.id, band, series.get(level.seriesId), machine), level, share }];
   });

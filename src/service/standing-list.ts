@@ -1,16 +1,23 @@
-import type { Band, Limit, Severity, Site } from '../config/site.ts';
+import type { LimitFacts } from '../advisory/facts.ts';
+import type { Band, Point, Severity, Site } from '../config/site.ts';
 import type { AlarmStanding } from '../detection/alarm.ts';
 import { standing } from '../detection/alarm-state.ts';
 import { type StandingLife, standingAlarms } from '../store/alarms.ts';
 import { readJournal } from '../store/journal.ts';
 import type { Reader } from '../store/lent-connection.ts';
+import { newestInTrend } from '../store/past-levels.ts';
+import { measurementById } from '../store/read-measurements.ts';
 import { readLevels, type TrendPoint } from '../store/read-trends.ts';
+import { limitOfLife } from './limit-of-journal.ts';
+import { limitFactsNow, limitsInForce } from './limits-in-force.ts';
+import { readersView } from './readers-view.ts';
+import type { SiteView } from './site-view.ts';
 
 /** One alarm or trouble that stands, is latched or waits to be acknowledged, with what the site file says of it. */
 export interface StandingNow extends StandingLife {
   readonly standing: AlarmStanding;
-  /** Null where the limit or its band has left the site file, and for trouble. */
-  readonly limit: Limit | null;
+  /** As it stands for the newest recording. Null where it or its band has left the site file, and for trouble. */
+  readonly limit: LimitFacts | null;
   readonly band: Band | null;
   /** Newest level of the band that belongs to the trend. */
   readonly newest: TrendPoint | null;
@@ -21,7 +28,9 @@ export interface StandingNow extends StandingLife {
 /** Everything that stands, by number. */
 export async function listStanding(reader: Reader, site: Site): Promise<StandingNow[]> {
   const found: StandingNow[] = [];
-  for (const { alarm, life } of await standingAlarms(reader)) {
+  const view = await readersView(reader, site);
+  for (const one of await standingAlarms(reader)) {
+    const { alarm, life } = one;
     const { subject } = alarm;
     const point = site.machines
       .find(({ id }) => id === subject.machineId)
@@ -31,13 +40,33 @@ export async function listStanding(reader: Reader, site: Site): Promise<Standing
       alarm,
       life,
       standing: standing(alarm.state),
-      limit: point?.limits.find(({ id }) => id === ofLimit?.limitId) ?? null,
+      limit: point === undefined || ofLimit === null ? null : await limitNow(reader, view, point, one),
       band: point?.bands.find(({ id }) => id === ofLimit?.bandId) ?? null,
       newest: await newestLevel(reader, alarm),
       detail: ofLimit === null ? await detailOf(reader, life.number) : null,
     });
   }
   return found;
+}
+
+async function limitNow(
+  reader: Reader,
+  view: SiteView | null,
+  point: Point,
+  { alarm, life }: StandingLife,
+): Promise<LimitFacts | null> {
+  const { subject, pointId } = alarm;
+  const limitId = subject.kind === 'limit' ? subject.limitId : null;
+  const limit = point.limits.find(({ id }) => id === limitId);
+  if (limit === undefined) return null;
+  const newest = view === null || pointId === null ? null : await newestInTrend(reader, pointId, 0);
+  if (view !== null && newest !== null) {
+    const all = await limitsInForce(reader, view, point, await measurementById(reader, newest));
+    const own = all.find((one) => one.limit.id === limitId);
+    if (own !== undefined) return limitFactsNow(own);
+  }
+  const { id, side, alert, danger } = limit;
+  return (await limitOfLife(reader, life.number, id)) ?? { id, side, alert, danger };
 }
 
 async function newestLevel(reader: Reader, alarm: StandingLife['alarm']): Promise<TrendPoint | null> {

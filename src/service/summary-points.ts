@@ -5,12 +5,15 @@ import type { TroubleKind } from '../detection/alarm.ts';
 import type { MachineMemory } from '../detection/machine-state.ts';
 import type { StoredAlarm } from '../store/alarms.ts';
 import type { Reader } from '../store/lent-connection.ts';
+import { lastBreak } from '../store/notes.ts';
 import { type BareLevel, bareLevels, newestInTrend } from '../store/past-levels.ts';
 import { measurementById, newestMeasurement } from '../store/read-measurements.ts';
 import { seriesOfPoint } from '../store/read-trends.ts';
 import type { PointArrivals } from '../store/sources.ts';
-import { bandFacts, limitFacts, machineFacts, pointFacts } from './fact-names.ts';
+import { baselinesNow } from './baselines-now.ts';
+import { bandFacts, machineFacts, pointFacts } from './fact-names.ts';
 import { levelFacts } from './level-facts.ts';
+import { limitFactsNow, limitsInForce } from './limits-in-force.ts';
 import type { SiteView } from './site-view.ts';
 import { zoneFacts, zoneReading } from './zone-facts.ts';
 
@@ -66,7 +69,9 @@ async function judgingOf(reader: Reader, known: PointKnown): Promise<Judging> {
   const pointId = view.ids.pointId(point.machineId, point.id);
   const newest = await newestMeasurement(reader, pointId, { evaluated: true });
   if (newest?.machineState === 'stopped') return 'stopped';
-  return point.limits.length === 0 ? 'no-limit' : 'judged';
+  if (point.limits.length === 0) return 'no-limit';
+  const limits = await limitsInForce(reader, view, point, newest);
+  return limits.every(({ now }) => 'unknown' in now) ? 'not-judged' : 'judged';
 }
 
 async function bandsNow(reader: Reader, { view, machine, point, nowMs }: PointKnown): Promise<BandNow[]> {
@@ -75,32 +80,46 @@ async function bandsNow(reader: Reader, { view, machine, point, nowMs }: PointKn
   const measurement = measurementId === null ? null : await measurementById(reader, measurementId);
   const series = new Map((await seriesOfPoint(reader, pointId)).map((one) => [one.id, one]));
   const { expectedEveryMs } = point.recordings;
-  const range = { pointId, fromMs: nowMs - 8 * dayMs, toMs: nowMs + 1 };
+  const brokenMs = (await lastBreak(reader, { pointId, toMs: nowMs }))?.atMs ?? Number.NEGATIVE_INFINITY;
+  const range = { pointId, fromMs: Math.max(nowMs - 8 * dayMs, brokenMs), toMs: nowMs + 1 };
   const past = await bareLevels(reader, { ...range, everyMs: expectedEveryMs, mostTimes: mostLevels });
-  const bySeries = new Map<number, BareLevel[]>();
-  for (const level of past) {
-    const levels = bySeries.get(level.seriesId);
-    if (levels === undefined) bySeries.set(level.seriesId, [level]);
-    else levels.push(level);
-  }
+  const compared = gather(past, comparable);
+  const inForce = await limitsInForce(reader, view, point, measurement);
+  const baselines = await baselinesNow(reader, view, point);
   const reading = measurement === null ? null : zoneReading(view, machine, point, measurement, series);
   return point.bands.map((band): BandNow => {
     const bandId = view.ids.bandId(machine.id, point.id, band.id);
     const level = measurement?.levels.find((one) => one.bandId === bandId);
-    const limits = point.limits.filter((limit) => limit.bandId === band.id);
-    const onlyLower = limits.length > 0 && limits.every(({ side }) => side === 'lower');
-    const levels = level === undefined ? [] : (bySeries.get(level.seriesId) ?? []);
+    const limits = inForce.filter(({ limit }) => limit.bandId === band.id);
+    const onlyLower = limits.length > 0 && limits.every(({ limit }) => limit.side === 'lower');
+    const levels = level === undefined ? [] : (compared.get(comparable(level)) ?? []);
     const medians = mediansOf(levels, nowMs);
-    const compared =
+    const onTheWeek =
       medians === null ? null : { level: medians.day, reference: medians.week, since: 'week' as const };
     return {
       band: bandFacts(band.id, band, level === undefined ? undefined : series.get(level.seriesId), machine),
       level: level === undefined || measurement === null ? null : levelFacts(measurement, level),
-      limits: limits.map(limitFacts),
+      limits: limits.map(limitFactsNow),
       change: changeOf(levels, nowMs, onlyLower ? 'lower' : 'upper'),
-      zone: reading === null ? null : zoneFacts(machine, reading, band.id, compared),
+      zone: reading === null ? null : zoneFacts(machine, reading, band.id, onTheWeek),
+      baselines: baselines.get(band.id) ?? [],
     };
   });
+}
+
+/** Levels are compared within one series and one operating condition. */
+function comparable({ seriesId, conditionId }: Pick<BareLevel, 'seriesId' | 'conditionId'>): string {
+  return `${seriesId} ${conditionId}`;
+}
+
+function gather(levels: readonly BareLevel[], keyOf: (level: BareLevel) => string): Map<string, BareLevel[]> {
+  const groups = new Map<string, BareLevel[]>();
+  for (const level of levels) {
+    const group = groups.get(keyOf(level));
+    if (group === undefined) groups.set(keyOf(level), [level]);
+    else group.push(level);
+  }
+  return groups;
 }
 
 /** Alarm records by the point they are about. */

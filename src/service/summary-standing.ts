@@ -4,7 +4,8 @@ import type { StandingLife } from '../store/alarms.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { askedSinceMs } from '../store/period-counts.ts';
 import { newestEvidence } from './evidence-now.ts';
-import { bandFacts, findMachine, limitFacts, limitOf, machineFacts, pointFacts } from './fact-names.ts';
+import { bandFacts, findMachine, limitOf, machineFacts, pointFacts } from './fact-names.ts';
+import { limitOfLife } from './limit-of-journal.ts';
 import type { SiteView } from './site-view.ts';
 import { standingFacts } from './standing-facts.ts';
 import { troubleFacts } from './trouble-facts.ts';
@@ -63,8 +64,13 @@ async function standingAlarm(
         undefined,
         findMachine(view, machineId),
       ),
-    limit:
-      limit === undefined ? { id: limitId, side: 'upper', alert: null, danger: null } : limitFacts(limit),
+    limit: now?.limits.find(({ id }) => id === limitId) ??
+      (await limitOfLife(reader, one.life.number, limitId)) ?? {
+        id: limitId,
+        side: limit?.side ?? 'upper',
+        alert: null,
+        danger: null,
+      },
     level: now?.level ?? null,
     dangerUnconfirmed: state.pending?.to === 'danger',
     evidence: one.alarm.pointId === null ? [] : await newestEvidence(reader, one.alarm.pointId),

@@ -86,6 +86,25 @@ export async function lastBreakMs(
   return row?.at_ms ?? null;
 }
 
+/** The newest repair or change of sensor of a point, or of its machine, up to a time; null: there is none. */
+export async function lastBreak(
+  reader: Reader,
+  { pointId, toMs }: { readonly pointId: number; readonly toMs: number },
+): Promise<StoredNote | null> {
+  const row = await reader
+    .selectFrom('notes')
+    .innerJoin('points', 'points.machine_id', 'notes.machine_id')
+    .selectAll('notes')
+    .where('points.id', '=', pointId)
+    .where((is) => is.or([is('notes.point_id', 'is', null), is('notes.point_id', '=', pointId)]))
+    .where('notes.kind', 'in', breakingKinds)
+    .where('notes.at_ms', '<=', toMs)
+    .orderBy('notes.at_ms', 'desc')
+    .limit(1)
+    .executeTakeFirst();
+  return row === undefined ? null : storedNote(row);
+}
+
 function storedNote(row: Selectable<NotesTable>): StoredNote {
   return {
     id: row.id,

@@ -6,6 +6,7 @@ export interface BareLevel {
   readonly usedMs: number;
   readonly bandId: number;
   readonly seriesId: number;
+  readonly conditionId: number;
   readonly level: number;
 }
 
@@ -28,7 +29,13 @@ export async function bareLevels(
   const nth = Math.ceil((range.toMs - range.fromMs) / everyMs / range.mostTimes);
   let query = reader
     .selectFrom('levels')
-    .select(['used_ms as usedMs', 'band_id as bandId', 'series_id as seriesId', 'level'])
+    .select([
+      'used_ms as usedMs',
+      'band_id as bandId',
+      'series_id as seriesId',
+      'condition_id as conditionId',
+      'level',
+    ])
     .where('point_id', '=', range.pointId)
     .where('used_ms', '>=', range.fromMs)
     .where('used_ms', '<', range.toMs)

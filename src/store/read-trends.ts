@@ -25,6 +25,7 @@ export interface TrendRange {
   /** One band; without it all bands of the point. */
   readonly bandId?: number;
   readonly seriesId?: number;
+  readonly conditionId?: number;
   /** Used time from and including. */
   readonly fromMs: number;
   /** Up to, not including. */
@@ -45,6 +46,7 @@ export async function readLevels(reader: Reader, range: TrendRange): Promise<Tre
     .where('used_ms', '<', range.toMs);
   if (range.bandId !== undefined) query = query.where('band_id', '=', range.bandId);
   if (range.seriesId !== undefined) query = query.where('series_id', '=', range.seriesId);
+  if (range.conditionId !== undefined) query = query.where('condition_id', '=', range.conditionId);
   if (range.outOfTrendToo !== true) query = query.where('in_trend', '=', 1);
   const rows = await query
     .orderBy('used_ms', 'desc')

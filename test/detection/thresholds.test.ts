@@ -49,7 +49,7 @@ describe('a limit that is learned', () => {
     const found = at(limit, 3);
     expect(found.alert).toBeCloseTo(2 * Math.exp(0.45), 12);
     expect(found.danger).toBe(7.1);
-    expect(found.why.alert).toBe('above 2 mm/s, the median of 40 running days, by 4.5 spreads of 11 %');
+    expect(found.why.alert).toBe('4.5 spreads of 11 % above 2 mm/s, the median of 40 running days');
     expect(at(ruled({ by: 'spread', alert: 2, danger: null }, { side: 'lower' }), 3).alert).toBeCloseTo(
       2 * Math.exp(-0.2),
       12,
@@ -78,9 +78,9 @@ describe('a limit that is learned', () => {
 
   it('cannot be reckoned without a usable baseline, and says why', () => {
     const limit = ruled({ by: 'spread', alert: 4.5, danger: null });
-    expect(unknown(limit, nothingKnown)).toBe('there is no baseline yet');
+    expect(unknown(limit, nothingKnown)).toBe('no baseline yet: 0 of 7 running days');
     expect(unknown(limit, { ...known, baseline: { ...baseline, state: 'learning', runningDays: 3 } })).toBe(
-      'the baseline has 3 running days so far',
+      'no baseline yet: 3 of 7 running days',
     );
     const refused: Baseline = { ...baseline, state: 'refused', refused: 'it lies in zone C or D' };
     expect(unknown(limit, { ...known, baseline: refused })).toBe(
@@ -110,7 +110,7 @@ describe('a limit on growth', () => {
     const found = at(limit, 3, { ...nothingKnown, past: past(1.6) });
     expect(found.value).toBeCloseTo(3.2, 1);
     expect(found.alert).toBeCloseTo(3, 1);
-    expect(found.why.alert).toMatch(/^1\.5 times 2(\.\d+)? mm\/s before$/);
+    expect(found.why.alert).toMatch(/^1\.5 times 2(\.\d+)? mm\/s, its line 7 d before$/);
     const judge = (growth: number) =>
       judgeLevel(
         limit,

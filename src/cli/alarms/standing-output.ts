@@ -1,4 +1,6 @@
 import { bareLevel, distanceText, levelText } from '../../advisory/level-words.ts';
+import { reasonsText } from '../../advisory/limit-words.ts';
+import { comparedWith, firstLimit } from '../../advisory/ranking.ts';
 import { acknowledgeCommand, shortAdvice, troubleName } from '../../advisory/wording.ts';
 import { inDisplayUnit } from '../../config/print-value.ts';
 import type { Severity } from '../../config/site.ts';
@@ -38,6 +40,11 @@ export function standingJson(now: StandingNow): Record<string, unknown> {
     side: limit?.side ?? null,
     alert: limitOf(limit?.alert),
     danger: limitOf(limit?.danger),
+    alert_because: limit?.reasons?.alert ?? null,
+    danger_because: limit?.reasons?.danger ?? null,
+    provisional_baseline: limit?.provisional ?? false,
+    baseline_confirmed_by: limit?.confirmedBy ?? null,
+    not_reckoned: limit?.unknown ?? null,
     since: isoOrNull(state.sinceMs ?? life.raisedUsedMs),
     raised: isoOrNull(life.raisedWallMs),
     recordings: state.count,
@@ -93,7 +100,8 @@ function beneath(now: StandingNow, timeZone: string): string[] {
     const name = troubleName[trouble];
     return [now.detail === null ? name : `${name}: ${now.detail}`, shortAdvice(trouble), ...acknowledged];
   }
-  return [levelLine(now, timeZone), ...acknowledged];
+  const reasons = now.limit === null ? null : reasonsText(now.limit);
+  return [levelLine(now, timeZone), ...(reasons === null ? [] : [`limit from: ${reasons}`]), ...acknowledged];
 }
 
 function levelLine(now: StandingNow, timeZone: string): string {
@@ -102,9 +110,11 @@ function levelLine(now: StandingNow, timeZone: string): string {
   if (newest === null) return 'no level is kept';
   const level = `${newest.atLeast ? 'at least ' : ''}${levelText(newest.level, band.display)}`;
   const severity = alarm.state.condition === 'danger' ? 'danger' : 'alert';
-  const value = limit[severity] ?? limit.alert ?? limit.danger;
+  const value = limit[severity] ?? firstLimit(limit);
   const against =
-    value === null ? '' : `, limit ${bareLevel(value, band.display)} (${distanceText(newest.level, value)})`;
+    value === null
+      ? `, limit not reckoned now: ${limit.unknown ?? 'it has no value'}`
+      : `, limit ${bareLevel(value, band.display)} (${distanceText(comparedWith(limit, newest.level), value)})`;
   const count = alarm.state.count;
   return `${level} on ${timeText(newest.usedMs, timeZone)}${against}; ${count} ${count === 1 ? 'recording' : 'recordings'}`;
 }
