@@ -133,12 +133,18 @@ export function askedEnvelope(
       inOrders ? to * (situation.runningSpeedHz ?? usualSpeedHz) : to,
     ),
   );
+  const { bearingShafts, runningSpeedHz } = situation;
+  const fastest = Math.max(0, ...bearingShafts) * (runningSpeedHz ?? usualSpeedHz);
+  const faults = bearingShafts.length === 0 ? {} : { faultsToHz: ordersOfFaults * fastest };
   const isWanted = written !== null || ofEnvelope.length > 0;
-  return fitted(build, { ...envelope, highestHz }, isWanted, {
+  return fitted(build, { ...envelope, highestHz, ...faults }, isWanted, {
     ...situation,
     at: written?.at ?? situation.at,
   });
 }
+
+/** Three harmonics of an inner ring's passing frequency, which is about half of 8 to 14 elements times the shaft speed. */
+const ordersOfFaults = 20;
 
 /** For bands in orders of a machine whose speed only its sidecars say: 3000 rpm. */
 const usualSpeedHz = 50;

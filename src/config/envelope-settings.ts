@@ -12,6 +12,8 @@ export interface PointEnvelope {
   readonly lineSpacingHz: number;
   /** Highest frequency of the envelope for which a band asks; 0 without such bands. */
   readonly highestHz: number;
+  /** Up to here harmonics of bearing faults are looked for; left out: the point hears no rolling bearing. */
+  readonly faultsToHz?: number;
 }
 
 export interface DemodulationBand {

@@ -58,18 +58,19 @@ const narrowestHz = 800;
 /** Below, the shaft's own harmonics are what stands out. */
 const lowestHz = 500;
 
-/** Where a band is looked for: wide enough for every band of the envelope that the site file names. */
+/** Where a band is looked for: wide enough for every band of the envelope, and for the faults of the bearings. */
 export function searchSettings(
   envelope: PointEnvelope,
   sampleRateHz: number,
   mounting: Point['mounting'],
 ): KurtogramSettings {
   const highestHz = highestDemodulatedHz(sampleRateHz, mounting);
+  const forFaultsHz = Math.min(2 * (envelope.faultsToHz ?? 0), highestHz / 2);
   return {
     sampleRateHz,
     lowestHz: Math.min(lowestHz, highestHz / 16),
     highestHz,
-    narrowestHz: Math.max(2 * envelope.highestHz, Math.min(narrowestHz, highestHz / 8)),
+    narrowestHz: Math.max(2 * envelope.highestHz, forFaultsHz, Math.min(narrowestHz, highestHz / 8)),
   };
 }
 

@@ -65,6 +65,7 @@ describe('an envelope is made where the site file asks for it', () => {
     const [deH, ndeH] = siteOf(exampleWith(bearing)).machines[0].points;
     expect(deH.envelope).toBeUndefined();
     expect(ndeH.envelope?.lineSpacingHz).toBeCloseTo((0.5 * 49.5) / 25, 12);
+    expect(ndeH.envelope?.faultsToHz).toBeCloseTo(20 * 0.5 * 49.5, 9);
   });
 
   test('not of a quantity that does not ring', () => {

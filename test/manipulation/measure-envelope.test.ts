@@ -175,6 +175,8 @@ describe('choice by kurtosis', () => {
       highestHz: 10_000,
       narrowestHz: 1400,
     });
+    const heard: PointEnvelope = { ...envelope, faultsToHz: 1000 };
+    expect(searchSettings(heard, sampleRateHz, 'stud').narrowestHz).toBe(2000);
     expect(searchSettings(usual, sampleRateHz, 'magnet')).toMatchObject({
       lowestHz: 125,
       highestHz: 2000,

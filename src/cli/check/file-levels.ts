@@ -2,6 +2,7 @@ import { siteFiles } from '../../acquisition/file-pattern.ts';
 import { nothingSaid } from '../../config/sample-layout.ts';
 import { type Machine, type Point, pointPath, type Site } from '../../config/site.ts';
 import { usualSpeed } from '../../config/speed-settings.ts';
+import { chosenBand, type EnvelopeChoice } from '../../manipulation/envelope-choice.ts';
 import { analyseFile, type FileAnalysis } from '../../service/analyse-file.ts';
 
 /** Files that are analysed for want of a ledger; each takes up to a second or two. */
@@ -12,12 +13,15 @@ export type FileAnswer = FileAnalysis | { readonly reason: string };
 /** Analyses recordings on the spot, each file once for all its points, in the way in which the service measures them. */
 export class FileLevels {
   readonly #site: Site;
+  readonly #choiceOf: (point: Point) => EnvelopeChoice | null;
   readonly #machines: ReadonlyMap<string, Machine>;
   readonly #takes: (path: string) => readonly Point[];
   readonly #done = new Map<string, FileAnswer>();
 
-  constructor(site: Site) {
+  /** `choiceOf`: what recordings of a point have agreed on. */
+  constructor(site: Site, choiceOf: (point: Point) => EnvelopeChoice | null = () => null) {
     this.#site = site;
+    this.#choiceOf = choiceOf;
     this.#machines = new Map(site.machines.map((machine) => [machine.id, machine]));
     this.#takes = siteFiles(site).pointsFor;
   }
@@ -32,12 +36,17 @@ export class FileLevels {
     const points = taking.some((one) => pointPath(one) === pointPath(point)) ? taking : [point];
     const answer = await analyseFile(path, this.#site.largestFileBytes, {
       layout: points[0]?.recordings.layout ?? nothingSaid,
-      planFor: (_, sidecar) => ({
+      planFor: (header, sidecar) => ({
         points: points.map((one) => ({
           point: one,
           nominalHz: this.#machines.get(one.machineId)?.runningSpeedHz ?? null,
           speed: this.#machines.get(one.machineId)?.speed ?? usualSpeed,
           parts: this.#machines.get(one.machineId)?.parts,
+          chosenBand: chosenBand(
+            this.#choiceOf(one),
+            one,
+            header.sampleRateHz ?? one.recordings.sampleRateHz,
+          ),
         })),
         sidecar,
         clock: point.recordings.clock,

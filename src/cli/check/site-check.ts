@@ -42,7 +42,7 @@ export async function checkSite(
   const hindrances = drop.problem === null ? [] : [drop.problem];
   const read = await readLedger(siteFile, nowMs, monotonicMs);
   if (read.refusal !== null) hindrances.push(read.refusal);
-  const files = new FileLevels(site);
+  const files = new FileLevels(site, (point) => read.points.get(point)?.choice ?? null);
   const adviser = new RecordingAdviser();
   const points: PointCheck[] = [];
   for (const point of site.machines.flatMap((machine) => machine.points))
