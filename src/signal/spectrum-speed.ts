@@ -74,17 +74,34 @@ export function findSpeed(
   if ('refused' in family) return family;
   const { speedHz, uncertaintyHz, harmonics } = family;
   const score = familyScore(tones, speedHz, mostHarmonics);
-  const own = new Set(matchesOf(tones, speedHz, mostHarmonics, 1).map(({ tone }) => tone));
-  const next = bestSpeed(
-    tones.filter((tone) => !own.has(tone)),
-    range,
-  );
+  const next = rival(without(tones, speedHz, mostHarmonics), range);
   const nextScore = (next?.score ?? 0) / score;
   if (next !== null && nextScore > mostNextScore)
     return {
       refused: `${rpm(next.speedHz)} fits other lines nearly as well as ${rpm(speedHz)} fits its own`,
     };
   return { speedHz, uncertaintyHz, score, nextScore, harmonics };
+}
+
+/**
+ * The speed of the highest score that one could take for the shaft's. One at none of whose first multiples a line stands
+ * would be refused itself: the harmonics of a damaged bearing, strong as they are, meet every seventh multiple of some
+ * speed in the range.
+ */
+function rival(others: readonly FamilyTone[], range: SpeedRange): ReturnType<typeof bestSpeed> {
+  for (let left = others; left.length > 0; ) {
+    const best = bestSpeed(left, range);
+    if (best === null || matchesOf(left, best.speedHz, firstHarmonics, 1).length > 0) return best;
+    const fewer = without(left, best.speedHz, mostHarmonics);
+    if (fewer.length === left.length) return null;
+    left = fewer;
+  }
+  return null;
+}
+
+function without(tones: readonly FamilyTone[], speedHz: number, harmonics: number): FamilyTone[] {
+  const own = new Set(matchesOf(tones, speedHz, harmonics, 1).map(({ tone }) => tone));
+  return tones.filter((tone) => !own.has(tone));
 }
 
 interface SpeedRange {

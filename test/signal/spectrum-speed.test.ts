@@ -64,6 +64,13 @@ describe('the speed found in a spectrum', () => {
     expect(Math.abs(speed.speedHz / 24.63 - 1)).toBeLessThan(1e-3);
   });
 
+  it('is found beside the strong harmonics of a bearing, which meet only high multiples of another speed', () => {
+    const bearing = harmonics(3.572 * 24.63, [2, 2, 2, 1.5, 1]);
+    const tones = [...harmonics(24.63, [0.8, 0.7, 0.7, 0.6]), ...bearing];
+    const speed = found(speedOf({ speedHz: 24.63, nominalHz: 24.7, tones }, seededRandom(7)));
+    expect(Math.abs(speed.speedHz / 24.63 - 1)).toBeLessThan(1e-3);
+  });
+
   it('is refused where the lines are too coarse for the shaft', () => {
     const { trial, random } = usualMachine(1);
     const spectrum = speedSpectrum(trial, random);

@@ -88,7 +88,9 @@ function channelText(
 function evidenceFacts(evidence: Measurement['evidence']): [string, string][] {
   if (evidence.length === 0) return [];
   const said = evidence.map(({ grade, words }): [string, string] => ['', `${grade}: ${plain(words)}`]);
-  const told: [string, string][] = evidence.some(isFaultEvidence) ? [['', evidenceCaution]] : [];
+  const told: [string, string][] = evidence.some(isFaultEvidence)
+    ? [['', `Evidence, never a verdict. ${evidenceCaution}`]]
+    : [];
   return [...said, ...told].map(([, text], n) => [n === 0 ? 'evidence' : '', text]);
 }
 
@@ -177,7 +179,7 @@ function peakTable(what: string, peaks: readonly SpectralPeak[], { unit, averagi
         { title: 'order', right: true },
         { title: `level, ${unit} r.m.s.`, right: true },
         { title: 'dB over the floor', right: true },
-        { title: '' },
+        { title: '', wraps: true },
       ],
       rows,
       78,
