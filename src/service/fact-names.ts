@@ -1,4 +1,4 @@
-import type { BandFacts, LimitFacts, MachineFacts, PointFacts, SiteFacts } from '../advisory/facts.ts';
+import type { BandFacts, MachineFacts, PointFacts, SiteFacts } from '../advisory/facts.ts';
 import type { Band, Limit, Machine, Point } from '../config/site.ts';
 import { usualDisplayUnit } from '../config/units.ts';
 import { type AlarmSubject, subjectKey } from '../detection/alarm.ts';
@@ -28,10 +28,6 @@ export function machineFacts(view: SiteView, id: string): MachineFacts {
 export function pointFacts(view: SiteView, machineId: string, id: string): PointFacts {
   const point = view.point(`${machineId}/${id}`);
   return { id, name: point?.name ?? id, direction: point?.direction ?? null };
-}
-
-export function limitFacts({ id, side, alert, danger, reasons }: Limit): LimitFacts {
-  return { id, side, alert, danger, ...(reasons == null ? {} : { reasons }) };
 }
 
 /** Edges as evaluated, where a level has been; else as the site file has them, orders at the nominal speed. */

@@ -1,6 +1,6 @@
 import type { LimitFacts } from '../advisory/facts.ts';
 import type { DisplayUnit, Limit, Machine, Point } from '../config/site.ts';
-import { anyCondition } from '../detection/condition.ts';
+import { anyCondition, conditionOf } from '../detection/condition.ts';
 import {
   type LimitSituation,
   type NoThresholds,
@@ -8,6 +8,7 @@ import {
   type Thresholds,
   thresholdsOf,
 } from '../detection/thresholds.ts';
+import type { Measurement } from '../manipulation/measurement.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { newestInTrend } from '../store/past-levels.ts';
 import { measurementById, type StoredMeasurement } from '../store/read-measurements.ts';
@@ -119,6 +120,17 @@ export async function limitsOfStored(
     condition,
     levelOf: (bandId) => levels.find((one) => one.bandId === bandId)?.level ?? null,
     situationOf: (bandId) => situations.get(bandId) ?? nothingKnown,
+  });
+}
+
+/** For a recording that was analysed on the spot, without a past: a limit that is learned has none yet. */
+export function limitsOfMeasured(machine: Machine, point: Point, measurement: Measurement): LimitInForce[] {
+  const { speed, loadPercent, levels } = measurement;
+  const speedHz = speed === null || speed.origin === 'nominal' ? null : speed.rpm / 60;
+  return pointLimits(point, {
+    condition: conditionOf(machine.conditions ?? [], measurement),
+    levelOf: (bandId) => levels.find((one) => one.bandId === bandId)?.level ?? null,
+    situationOf: () => ({ ...nothingKnown, speedHz, loadPercent }),
   });
 }
 

@@ -231,7 +231,12 @@ describe('check', () => {
       site.file,
       '--json',
     ]);
-    expect(JSON.parse(stdout).counts).toEqual({ points: 3, limits: 3, recipients: 0 });
+    expect(JSON.parse(stdout).counts).toEqual({
+      points: 3,
+      limits: 3,
+      limits_not_reckoned: 0,
+      recipients: 0,
+    });
   });
 });
 

@@ -6,7 +6,8 @@ import { inDisplayUnit } from '../../config/print-value.ts';
 import type { Severity } from '../../config/site.ts';
 import type { AlarmSubject } from '../../detection/alarm.ts';
 import { type StandingNow, severityNow } from '../../service/standing-list.ts';
-import { bareUnit, limitJson } from '../level-json.ts';
+import { bareUnit } from '../level-json.ts';
+import { limitFactsJson } from '../limit-json.ts';
 import { type Row, table } from '../output.ts';
 import { timeText } from '../when.ts';
 
@@ -16,8 +17,6 @@ export function standingJson(now: StandingNow): Record<string, unknown> {
   const { subject, state } = alarm;
   const inUnit = (level: number | null | undefined) =>
     level == null || band === null ? null : inDisplayUnit(level, band.display);
-  const limitOf = (value: number | null | undefined) =>
-    band === null ? null : limitJson(value ?? null, band.display);
   return {
     number: life.number,
     kind: subject.kind === 'limit' ? 'alarm' : 'trouble',
@@ -37,14 +36,7 @@ export function standingJson(now: StandingNow): Record<string, unknown> {
     level: inUnit(newest?.level),
     level_time: newest === null ? null : new Date(newest.usedMs).toISOString(),
     at_least: newest?.atLeast ?? null,
-    side: limit?.side ?? null,
-    alert: limitOf(limit?.alert),
-    danger: limitOf(limit?.danger),
-    alert_because: limit?.reasons?.alert ?? null,
-    danger_because: limit?.reasons?.danger ?? null,
-    provisional_baseline: limit?.provisional ?? false,
-    baseline_confirmed_by: limit?.confirmedBy ?? null,
-    not_reckoned: limit?.unknown ?? null,
+    ...limitFactsJson(limit, band?.display ?? null),
     since: isoOrNull(state.sinceMs ?? life.raisedUsedMs),
     raised: isoOrNull(life.raisedWallMs),
     recordings: state.count,

@@ -1,8 +1,10 @@
+import type { LimitFacts } from '../../advisory/facts.ts';
 import { shareOfAlert } from '../../advisory/ranking.ts';
 import { type MachineZones, zonesName } from '../../config/machine-zones.ts';
-import type { Limit, Machine } from '../../config/site.ts';
-import { limitFacts } from '../../service/fact-names.ts';
+import type { Machine } from '../../config/site.ts';
+import { limitFactsNow } from '../../service/limits-in-force.ts';
 import { bareUnit, levelJson, limitJson } from '../level-json.ts';
+import { limitFactsJson } from '../limit-json.ts';
 import { adviceJson, reachJson } from '../recording-plan/plan-json.ts';
 import { envelopeCheckJson } from './envelope-check.ts';
 import { type PartCheck, partChecks } from './part-check.ts';
@@ -19,7 +21,12 @@ export function checkJson(check: SiteCheck): Record<string, unknown> {
     config_version: site.configVersion,
     ready: check.hindrances.length === 0,
     missing: [...check.hindrances, ...check.lacks],
-    counts: { points: check.points.length, limits: check.limits, recipients: check.recipients.length },
+    counts: {
+      points: check.points.length,
+      limits: check.limits,
+      limits_not_reckoned: check.notReckoned,
+      recipients: check.recipients.length,
+    },
     machines: site.machines.map((machine) => ({
       machine: machine.id,
       name: machine.name,
@@ -107,17 +114,16 @@ function bandJson({ band, now, limits, judged }: BandCheck) {
       confidence_percent: now.confidencePercent,
       at_least: now.atLeast,
     },
-    limits: limits.map((limit) => ({
-      limit: limit.id,
-      kind: limit.kind,
-      side: limit.side,
-      alert: limitJson(limit.alert, band.display),
-      danger: limitJson(limit.danger, band.display),
-      alert_because: limit.reasons?.alert ?? null,
-      danger_because: limit.reasons?.danger ?? null,
-      share_of_alert: shareOf(limit, limit.alert, judged ? now : null),
-      share_of_danger: shareOf(limit, limit.danger, judged ? now : null),
-    })),
+    limits: limits.map((inForce) => {
+      const facts = limitFactsNow(inForce);
+      return {
+        limit: facts.id,
+        kind: inForce.limit.kind,
+        ...limitFactsJson(facts, band.display),
+        share_of_alert: shareOf(facts, facts.alert, judged ? now : null),
+        share_of_danger: shareOf(facts, facts.danger, judged ? now : null),
+      };
+    }),
   };
 }
 
@@ -150,8 +156,8 @@ function zoneJson(check: ZoneCheck | null, { band }: BandCheck) {
 }
 
 /** 1 at the limit; null without a level or a limit, or beyond all numbers. */
-function shareOf(limit: Limit, at: Limit['alert'], now: LevelNow | null): number | null {
+function shareOf(limit: LimitFacts, at: number | null, now: LevelNow | null): number | null {
   if (at === null || now === null) return null;
-  const share = shareOfAlert(now.level, { ...limitFacts(limit), alert: at, danger: null });
+  const share = shareOfAlert(now.level, { ...limit, alert: at, danger: null });
   return share === null || !Number.isFinite(share) ? null : share;
 }

@@ -102,9 +102,10 @@ function summaryText({ summary, mail, timeZone }: SiteCheck['site']): string {
   return `${at}, ${to.length === 0 ? 'as a file in the data folder, mailed to nobody' : `to ${to.join(', ')}`}`;
 }
 
-function lastLine({ points, limits, recipients, hindrances, lacks }: SiteCheck): string {
+function lastLine({ points, limits, notReckoned, recipients, hindrances, lacks }: SiteCheck): string {
   const missing = [...hindrances, ...lacks];
-  const counts = `${counted(points.length, 'point')}, ${counted(limits, 'limit')}, ${counted(recipients.length, 'recipient')}`;
+  const yet = notReckoned === 0 ? '' : ` (${notReckoned} not reckoned now)`;
+  const counts = `${counted(points.length, 'point')}, ${counted(limits, 'limit')}${yet}, ${counted(recipients.length, 'recipient')}`;
   const [only] = missing;
   if (only === undefined) return `${counts}; ready to run\n`;
   const line = `${counts}; ${only}`;

@@ -3,6 +3,7 @@ import type { Point, Site } from '../../config/site.ts';
 import { chosenBand, type EnvelopeChoice } from '../../manipulation/envelope-choice.ts';
 import { envelopePlan } from '../../manipulation/envelope-plan.ts';
 import { settingsFingerprint } from '../../manipulation/fingerprint.ts';
+import { type LimitInForce, limitsOfStored } from '../../service/limits-in-force.ts';
 import { type Archived, archivedOfPoint } from '../../store/archived.ts';
 import { envelopeChoices } from '../../store/envelope-choices.ts';
 import type { Reader } from '../../store/lent-connection.ts';
@@ -18,6 +19,8 @@ export interface LedgerPoint {
   readonly measurement: StoredMeasurement | null;
   /** Ids of the site file by the ledger's, for the bands it has of this point. */
   readonly bandIds: ReadonlyMap<number, string>;
+  /** Its limits for the newest measurement. */
+  readonly limits: readonly LimitInForce[];
   /** The newest levels were made under other settings than those in the site file now. */
   readonly otherSettings: boolean;
   /** What its recordings have agreed on; null: nothing, or they have no choice. */
@@ -54,6 +57,16 @@ export async function lookUpPoint(
     archived: await archivedOfPoint(reader, pointId),
     measurement,
     bandIds,
+    limits:
+      machine === undefined
+        ? []
+        : await limitsOfStored(reader, {
+            machine,
+            point,
+            measurement,
+            bandIds,
+            machineLedgerId: ids.machineId(known.machineId),
+          }),
     otherSettings: measurement !== null && hasOtherSettings(measurement, point, choice),
     choice,
   };

@@ -1,5 +1,7 @@
 import { plain } from '../../advisory/escape.ts';
+import type { LimitFacts } from '../../advisory/facts.ts';
 import { bareLevel, counted, percentText } from '../../advisory/level-words.ts';
+import { reasonsText } from '../../advisory/limit-words.ts';
 import { gather, shareOfAlert } from '../../advisory/ranking.ts';
 import {
   inDisplayUnit,
@@ -8,8 +10,8 @@ import {
   printSeconds,
   printSpeed,
 } from '../../config/print-value.ts';
-import type { Band, Limit, Machine } from '../../config/site.ts';
-import { limitFacts } from '../../service/fact-names.ts';
+import type { Band, Machine } from '../../config/site.ts';
+import { limitFactsNow } from '../../service/limits-in-force.ts';
 import { lineWidth, listing, type Row, table, wrapText } from '../output.ts';
 import { timeText } from '../when.ts';
 import { envelopeCheckText } from './envelope-check.ts';
@@ -76,8 +78,9 @@ function bandRows({ band, now, limits, judged }: BandCheck): string[][] {
       ? ''
       : `${bareLevel(now.intervalLow, band.display)} to ${bareLevel(now.intervalHigh, band.display)}`;
   if (limits.length === 0) return [[band.id, level, interval, 'no limit', '']];
-  return limits.map((limit, n) => {
+  return limits.map((inForce, n) => {
     const against = judged ? now : null;
+    const limit = limitFactsNow(inForce);
     const cells = [
       limitCell(limit, limit.alert, band, against),
       limitCell(limit, limit.danger, band, against),
@@ -91,11 +94,11 @@ function levelWithUnit(level: number, band: Band): string {
 }
 
 /** '55 % of 2.8'; beyond it '116 % of 2.8 !'. */
-function limitCell(limit: Limit, at: number | null, band: Band, now: LevelNow | null): string {
-  if (at === null) return '-';
+function limitCell(limit: LimitFacts, at: number | null, band: Band, now: LevelNow | null): string {
+  if (at === null) return limit.unknown === undefined ? '-' : 'not yet';
   const value = `${limit.side === 'lower' ? 'least ' : ''}${printNumber(inDisplayUnit(at, band.display), 4)}`;
   if (now === null) return value;
-  const share = shareOfAlert(now.level, { ...limitFacts(limit), alert: at, danger: null });
+  const share = shareOfAlert(now.level, { ...limit, alert: at, danger: null });
   if (share === null) return value;
   return `${percentText(share)} of ${value}${share > 1 ? ' !' : ''}`;
 }
@@ -188,18 +191,17 @@ function machineZones(machine: Machine, points: readonly PointCheck[]): [string,
   ];
 }
 
-/** Each point's zone, and where its limits come from that are not the site's own numbers. */
+/** Each point's zone, and where its limits come from that are not the site's own numbers, or why they judge nothing yet. */
 function zoneRemarks(machine: Machine, one: PointCheck): Remark[] {
-  const { id, limits } = one.point;
+  const { id } = one.point;
   const check = zoneCheck(machine, one);
   const texts = check === null ? [] : pointZoneTexts(machine, one.point, check);
-  const reasons = limits.flatMap((limit) => {
-    const said = (['alert', 'danger'] as const).flatMap((severity) => {
-      const why = limit.reasons?.[severity] ?? null;
-      return why === null ? [] : [`${severity} at ${why}`];
-    });
-    return said.length === 0 ? [] : [`${limit.bandId}, ${said.join('; ')}`];
-  });
+  const reasons = one.bands.flatMap(({ band, limits }) =>
+    limits.flatMap((inForce) => {
+      const said = reasonsText(limitFactsNow(inForce));
+      return said === null ? [] : [`${band.id}, ${said}`];
+    }),
+  );
   return [
     ...texts.map((text) => ({ id, title: 'zone', text })),
     ...reasons.map((text) => ({ id, title: 'limits', text })),

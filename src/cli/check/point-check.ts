@@ -1,9 +1,12 @@
 import { join } from 'node:path';
 import type { QualityFinding } from '../../acquisition/recording.ts';
 import { pointMeaning } from '../../config/meaning.ts';
-import { type Band, type Limit, type Point, pointPath, type Site } from '../../config/site.ts';
+import { type Band, type Machine, type Point, pointPath, type Site } from '../../config/site.ts';
+import { anyCondition } from '../../detection/condition.ts';
 import { readingOf } from '../../detection/machine-state.ts';
+import { nothingKnown } from '../../detection/thresholds.ts';
 import type { Averaging, BandLevel } from '../../manipulation/measurement.ts';
+import { type LimitInForce, limitsOfMeasured, pointLimits } from '../../service/limits-in-force.ts';
 import type { DropLook, Waiting } from './drop-look.ts';
 import type { FileLevels } from './file-levels.ts';
 import type { LedgerPoint } from './ledger-look.ts';
@@ -18,7 +21,8 @@ export type LevelNow = Pick<
 export interface BandCheck {
   readonly band: Band;
   readonly now: LevelNow | null;
-  readonly limits: readonly Limit[];
+  /** Where they stand for that level. */
+  readonly limits: readonly LimitInForce[];
   /** False: the machine stood still, and a level of standstill says nothing of its limits. */
   readonly judged: boolean;
 }
@@ -61,6 +65,7 @@ interface Found {
   readonly from: PointCheck['from'];
   readonly usedMs: number | null;
   readonly levels: ReadonlyMap<string, LevelNow>;
+  readonly limits: readonly LimitInForce[];
   readonly averaging: AveragingCheck | null;
   readonly quality: readonly QualityFinding[];
   readonly remark: string | null;
@@ -81,21 +86,21 @@ export async function checkPoint(
   },
 ): Promise<PointCheck> {
   const { ledger } = known;
+  const machine = site.machines.find(({ id }) => id === point.machineId);
   const waiting = known.drop.waiting.get(pointPath(point)) ?? null;
   const stored = ledger === null ? null : fromLedger(ledger, point);
   const found =
     stored !== null && ledger?.otherSettings === false
       ? stored
-      : newest(await fromFile(site, point, waiting, ledger, known.files), stored);
+      : newest(await fromFile(site, { machine, point }, waiting, ledger, known.files), stored);
   const bands = point.bands.map((band) => ({
     band,
     now: found.levels.get(band.id) ?? null,
-    limits: point.limits.filter(({ bandId }) => bandId === band.id),
+    limits: found.limits.filter(({ limit }) => limit.bandId === band.id),
     judged: !found.stopped,
   }));
   const { from, usedMs } = found;
   const averaging = found.averaging ?? configured(point);
-  const machine = site.machines.find(({ id }) => id === point.machineId);
   const advice = machine === undefined ? null : known.adviser.adviseOn(machine, { point, averaging });
   const { quality, remark } = found.stopped ? ofStandstill(found) : found;
   return { point, waiting, ledger, from, usedMs, bands, averaging, quality, remark, advice };
@@ -132,7 +137,7 @@ function newest(file: Found, stored: Found | null): Found {
   return { ...stored, remark: 'measured under earlier settings; the next recording is measured under these' };
 }
 
-function fromLedger({ measurement, bandIds }: LedgerPoint, point: Point): Found | null {
+function fromLedger({ measurement, bandIds, limits }: LedgerPoint, point: Point): Found | null {
   if (measurement === null) return null;
   const levels = new Map<string, LevelNow>();
   for (const level of measurement.levels) {
@@ -144,6 +149,7 @@ function fromLedger({ measurement, bandIds }: LedgerPoint, point: Point): Found 
     from: 'ledger',
     usedMs: measurement.usedMs,
     levels,
+    limits,
     averaging: ofRecording(measurement.averaging, measurement.sampleRateHz),
     quality: measurement.quality,
     remark: null,
@@ -153,7 +159,7 @@ function fromLedger({ measurement, bandIds }: LedgerPoint, point: Point): Found 
 
 async function fromFile(
   site: Site,
-  point: Point,
+  { machine, point }: { readonly machine: Machine | undefined; readonly point: Point },
   waiting: Waiting | null,
   ledger: LedgerPoint | null,
   files: FileLevels,
@@ -162,6 +168,7 @@ async function fromFile(
     from: null,
     usedMs: null,
     levels: new Map(),
+    limits: nothingMeasured(point, machine),
     averaging: null,
     quality: [],
     remark: null,
@@ -185,12 +192,13 @@ async function fromFile(
     };
   }
   const quality = [...answer.quality, ...measurement.quality];
-  const rule = site.machines.find(({ id }) => id === point.machineId)?.running ?? null;
+  const rule = machine?.running ?? null;
   return {
     from: 'file',
     // Filed away, a recording has lost the subfolders that its name may need to tell its start.
     usedMs: waiting === null ? (ledger?.measurement?.usedMs ?? null) : answer.start.startMs,
     levels: new Map(measurement.levels.map((level) => [level.bandId, level])),
+    limits: machine === undefined ? [] : limitsOfMeasured(machine, point, measurement),
     averaging: ofRecording(measurement.averaging, measurement.sampleRateHz),
     quality,
     // A finding says more than this.
@@ -200,6 +208,12 @@ async function fromFile(
         : null,
     stopped: readingOf(rule, measurement) === false,
   };
+}
+
+/** Of limits that stand the values are known all the same. */
+function nothingMeasured(point: Point, machine: Machine | undefined): readonly LimitInForce[] {
+  const condition = (machine?.conditions ?? []).length === 0 ? anyCondition : null;
+  return pointLimits(point, { condition, levelOf: () => null, situationOf: () => nothingKnown });
 }
 
 function ofRecording(averaging: Averaging | null, sampleRateHz: number): AveragingCheck | null {

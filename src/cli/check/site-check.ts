@@ -24,6 +24,8 @@ export interface SiteCheck {
   readonly firstTime: boolean;
   readonly recipients: readonly string[];
   readonly limits: number;
+  /** Of them, those that cannot be reckoned yet. */
+  readonly notReckoned: number;
   /** What keeps the service from doing its work; each in words, with what to do. */
   readonly hindrances: readonly string[];
   /** What it does without: nobody is told, nothing can alarm. */
@@ -51,6 +53,9 @@ export async function checkSite(
     );
   hindrances.push(...passwordProblems(site));
   const limits = points.reduce((sum, { point }) => sum + point.limits.length, 0);
+  const notReckoned = points
+    .flatMap(({ bands }) => bands.flatMap((band) => band.limits))
+    .filter(({ now }) => 'unknown' in now).length;
   const recipients = recipientsOf(site);
   const lacks = [
     ...(limits === 0 ? ['no limit: nothing can ever alarm'] : []),
@@ -64,7 +69,19 @@ export async function checkSite(
     ? ['the service runs with an earlier text of this file: send it SIGHUP, or restart it']
     : [];
   const { retired, firstTime } = read;
-  return { site, drop, points, retired, firstTime, recipients, limits, hindrances, lacks, remarks };
+  return {
+    site,
+    drop,
+    points,
+    retired,
+    firstTime,
+    recipients,
+    limits,
+    notReckoned,
+    hindrances,
+    lacks,
+    remarks,
+  };
 }
 
 interface LedgerRead {

@@ -7,8 +7,9 @@ import { type Machine, type MailSettings, type Point, pointPath, type Site } fro
 import { usualDisplayUnit } from '../../config/units.ts';
 import { isFaultEvidence } from '../../manipulation/evidence.ts';
 import type { BandLevel, Measurement } from '../../manipulation/measurement.ts';
-import { asAlarm } from '../../service/as-alarm.ts';
-import { bandFacts, limitFacts } from '../../service/fact-names.ts';
+import { asAlarm, whyNone } from '../../service/as-alarm.ts';
+import { bandFacts } from '../../service/fact-names.ts';
+import { type LimitInForce, limitFactsNow, limitsOfMeasured } from '../../service/limits-in-force.ts';
 import { readersView } from '../../service/readers-view.ts';
 import { measuredReading, zoneFacts } from '../../service/zone-facts.ts';
 import type { Ledger } from '../../store/ledger.ts';
@@ -88,9 +89,11 @@ async function fromFile(
   const measurement = answer.measurements.find(
     (one) => one.machineId === point.machineId && one.pointId === point.id,
   );
-  const chosen = measurement === undefined ? null : mostUsed(point, measurement.levels);
-  if (measurement === undefined || chosen === null)
+  if (measurement === undefined || measurement.levels.length === 0)
     return { refused: `${newest} gives no level of ${path}; humledger check says why` };
+  const limits = limitsOfMeasured(machine, point, measurement);
+  const chosen = mostUsed(limits, measurement.levels);
+  if (chosen === null) return { refused: `${path}: ${whyNone(limits)}` };
   const times = { startMs: answer.start.startMs, arrivedMs: nowMs };
   return {
     site: { name: site.name, timeZone: site.timeZone },
@@ -105,15 +108,15 @@ async function fromFile(
 
 interface Chosen {
   readonly level: BandLevel;
-  readonly limit: Point['limits'][number];
+  readonly inForce: LimitInForce;
 }
 
-function mostUsed(point: Point, levels: readonly BandLevel[]): Chosen | null {
-  const used = point.limits.flatMap((limit) => {
-    const level = levels.find(({ bandId }) => bandId === limit.bandId);
-    return level === undefined
+function mostUsed(limits: readonly LimitInForce[], levels: readonly BandLevel[]): Chosen | null {
+  const used = limits.flatMap((inForce) => {
+    const level = levels.find(({ bandId }) => bandId === inForce.limit.bandId);
+    return level === undefined || 'unknown' in inForce.now
       ? []
-      : [{ level, limit, share: shareOfAlert(level.level, limitFacts(limit)) ?? 0 }];
+      : [{ level, inForce, share: shareOfAlert(level.level, limitFactsNow(inForce)) ?? 0 }];
   });
   return used.sort((a, b) => b.share - a.share)[0] ?? null;
 }
@@ -128,7 +131,9 @@ function alarmOf(
     readonly arrivedMs: number;
   },
 ): AlarmFacts {
-  const { level, limit, measurement, fileName, startMs, arrivedMs } = about;
+  const { level, inForce, measurement, fileName, startMs, arrivedMs } = about;
+  const { limit } = inForce;
+  const facts = limitFactsNow(inForce);
   const { averaging, durationS, speed, loadPercent, quality } = measurement;
   const band = point.bands.find(({ id }) => id === limit.bandId);
   const now = { peaks: measurement.peaks, lineSpacingHz: averaging?.lineSpacingHz ?? 0 };
@@ -142,7 +147,7 @@ function alarmOf(
     acknowledgedBy: null,
     acknowledgedMs: null,
     suppressedUntilMs: null,
-    severity: limit.alert === null ? 'danger' : 'alert',
+    severity: facts.alert === null ? 'danger' : 'alert',
     event: 'raised',
     machine: { id: machine.id, name: machine.name, criticality: machine.criticality },
     point: { id: point.id, name: point.name, direction: point.direction },
@@ -151,7 +156,7 @@ function alarmOf(
       fromHz: level.fromHz,
       toHz: level.toHz,
     },
-    limit: limitFacts(limit),
+    limit: facts,
     level: { ...level, usedMs: startMs },
     dangerUnconfirmed: false,
     evidence: measurement.evidence.filter(isFaultEvidence).map(({ grade, words }) => ({ grade, words })),
