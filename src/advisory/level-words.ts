@@ -1,4 +1,4 @@
-import { inDisplayUnit, printNumber } from '../config/print-value.ts';
+import { inDisplayUnit, levelFigures, printNumber } from '../config/print-value.ts';
 import type { DisplayUnit } from '../config/site.ts';
 import type { LevelFacts } from './facts.ts';
 
@@ -6,13 +6,15 @@ import type { LevelFacts } from './facts.ts';
 
 /** 'mm/s r.m.s.', 'mil peak to peak (derived)': in a message the unit never stands without its detector. */
 export function unitText(display: DisplayUnit): string {
-  if (display.detector !== 'rms' || display.text.includes('r.m.s.')) return display.text;
+  const saysIt = display.detector !== 'rms' || display.text.includes('r.m.s.');
+  // A level in decibels is that of an r.m.s. value by the standard of its reference.
+  if (saysIt || display.decibelReference !== undefined) return display.text;
   return `${display.text} r.m.s.`.trimStart();
 }
 
 /** '5.21': for lists where the unit has been said. `level` in SI r.m.s. */
 export function bareLevel(level: number, display: DisplayUnit): string {
-  return printNumber(inDisplayUnit(level, display));
+  return printNumber(inDisplayUnit(level, display), levelFigures(display));
 }
 
 /** '5.21 mm/s r.m.s.'; also for limits. */

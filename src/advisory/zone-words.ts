@@ -1,3 +1,4 @@
+import { differenceUnit } from '../config/print-value.ts';
 import type { DisplayUnit } from '../config/site.ts';
 import { worstZone, type ZoneLetter } from '../config/zone-tables.ts';
 import type { MachineFacts, PointFacts, ZoneFacts } from './facts.ts';
@@ -50,9 +51,10 @@ export function allBoundaries(
 /** What ISO 10816-1 and -3 call significant (5.3); null where it is not, or nothing is there to compare with. */
 export function zoneChangeText({ change }: Pick<ZoneFacts, 'change'>, display: DisplayUnit): string | null {
   if (change === null || !change.significant) return null;
-  const by = `${bareLevel(Math.abs(change.by), display)} ${change.by > 0 ? 'more' : 'less'}`;
+  const unit = differenceUnit(display);
+  const by = unit === display ? bareLevel(Math.abs(change.by), unit) : levelText(Math.abs(change.by), unit);
   const than = change.since === 'baseline' ? 'than the baseline' : 'than a week ago';
-  return `${by} ${than} (${bareLevel(change.reference, display)}), over 25 % of B/C (${bareLevel(change.threshold, display)}): significant, up or down`;
+  return `${by} ${change.by > 0 ? 'more' : 'less'} ${than} (${bareLevel(change.reference, unit)}), over 25 % of B/C (${bareLevel(change.threshold, unit)}): significant, up or down`;
 }
 
 /** The machine's zone in the summary: the worst of its points of today, with the one that is in it. */

@@ -21,7 +21,8 @@ export function limitJson(limit: number | null, display: DisplayUnit): number | 
   return limit === null ? null : Number(inDisplayUnit(limit, display).toPrecision(15));
 }
 
-/** 'in/s' of 'in/s peak (derived)': the detector stands beside it. */
-export function bareUnit({ text, quantity, inSi }: DisplayUnit): string {
+/** 'in/s' of 'in/s peak (derived)': the detector stands beside it. Decibels keep their reference. */
+export function bareUnit({ text, quantity, inSi, decibelReference }: DisplayUnit): string {
+  if (decibelReference !== undefined) return text;
   return units.find((unit) => unit.dimension === quantity && unit.inSi === inSi)?.text ?? text;
 }

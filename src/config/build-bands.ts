@@ -1,12 +1,14 @@
 import { integrationsBetween } from '../signal/integration.ts';
 import { type BandCase, judgeBand } from './bands.ts';
+import { decibelsKnown, decibelUnit } from './decibel.ts';
 import { judgeEnvelopeBand } from './envelope-bands.ts';
 import { hasEnvelope } from './envelope-settings.ts';
-import { type Build, tellDoubledIds, valueOr, valuesOf } from './layers.ts';
-import type { bandKeys } from './schema-machines.ts';
+import { type Build, tellDoubledIds, valuesOf } from './layers.ts';
+import type { Decibels } from './level.ts';
+import type { bandKeys } from './schema-bands.ts';
 import type { Written } from './shape.ts';
 import type { ReadMap } from './shape-map.ts';
-import type { Band, Quantity, SignalSettings } from './site.ts';
+import type { Band, DisplayUnit, Quantity, SignalSettings } from './site.ts';
 import { asYaml } from './site-text.ts';
 import { usualDisplayUnit } from './units.ts';
 
@@ -74,18 +76,10 @@ function buildBand(
   const { id, from, to, unit, quantity: asked, formerly } = written.value.keys;
   if (id === null || from === null || to === null) return null;
   if (refusedKey(written, 'unit') || refusedKey(written, 'quantity')) return null;
-  const quantity = asked?.value ?? unit?.value.quantity ?? point.quantity;
+  const quantity = asked?.value ?? unitQuantity(unit?.value) ?? point.quantity;
   const ofEnvelope = written.value.keys.of?.value === 'envelope';
-  if (unit !== null && unit.value.quantity !== quantity) {
-    const what = `band '${id.value}' is ${quantity}, its unit ${unit.value.text} is ${unit.value.quantity}`;
-    build.reading.problem(
-      unit.at,
-      what,
-      build.reading.write(unit.at, usualDisplayUnit(quantity).text),
-      'unit',
-    );
-    return null;
-  }
+  const display = displayOf(build, id.value, quantity, unit, point);
+  if (display === null) return null;
   if (!edgesAgree(build, id.value, from, to)) return null;
   if (
     !canBeGiven(
@@ -96,7 +90,6 @@ function buildBand(
     )
   )
     return null;
-  const usual = usualDisplayUnit(quantity, point.signal?.samplesIn.text);
   return {
     id: id.value,
     formerly: valuesOf(formerly),
@@ -105,8 +98,40 @@ function buildBand(
     from: from.value.value,
     to: to.value.value,
     inOrders: from.value.inOrders,
-    display: valueOr(unit, usual),
+    display,
   };
+}
+
+type AskedUnit = DisplayUnit | Decibels;
+
+function unitQuantity(unit: AskedUnit | undefined): Quantity | null {
+  return unit === undefined ? null : 'decibelsOf' in unit ? unit.decibelsOf : unit.quantity;
+}
+
+/** How people see the band; null where its unit is of another quantity, or of none that has decibels. */
+function displayOf(
+  { reading }: Build,
+  id: string,
+  quantity: Quantity,
+  unit: Written<AskedUnit> | null,
+  { signal }: Pick<Parameters<typeof buildBands>[2], 'signal'>,
+): DisplayUnit | null {
+  if (unit === null) return usualDisplayUnit(quantity, signal?.samplesIn.text);
+  const { value, at } = unit;
+  const usual = reading.write(at, usualDisplayUnit(quantity).text);
+  const isOf = unitQuantity(value);
+  if (isOf !== null && isOf !== quantity) {
+    const written = 'decibelsOf' in value ? decibelUnit(isOf)?.text : value.text;
+    reading.problem(at, `band '${id}' is ${quantity}, its unit ${written} is ${isOf}`, usual, 'unit');
+    return null;
+  }
+  if (!('decibelsOf' in value)) return value;
+  const display = decibelUnit(quantity);
+  if (display === null) {
+    const what = `band '${id}' is ${quantity}, of which there are no decibels (${decibelsKnown()})`;
+    reading.problem(at, what, usual, 'unit');
+  }
+  return display;
 }
 
 type WrittenEdge = Written<{ readonly value: number; readonly inOrders: boolean }>;
@@ -176,8 +201,17 @@ function tellFindings({ reading }: Build, { band, written }: BuiltBand, situatio
   const judge = band.of === 'envelope' ? judgeEnvelopeBand : judgeBand;
   for (const { refused, edge, rule, what, right, instead } of judge(band, situation)) {
     const at = written.value.keys[edge]?.at ?? written.at;
-    if (refused)
+    if (refused && written.value.has.has('octaves'))
+      reading.problem(at, what, octaveRemedy(edge, rule, right), rule);
+    else if (refused)
       reading.problem(at, what, instead === null ? right : reading.write(at, asYaml(instead)), rule);
     else reading.warn(at, what, rule);
   }
+}
+
+/** The edges of an octave band are the standard's; only the range of bands can be another one. */
+function octaveRemedy(edge: 'from' | 'to', rule: string, right: string): string {
+  if (edge === 'to' && rule === 'above range') return 'end the octave bands lower';
+  const finer = right.replace(/,? ?(or )?write: (from|to): .*$/, '');
+  return finer === '' ? 'begin the octave bands higher' : `${finer}, or begin the octave bands higher`;
 }

@@ -1,3 +1,4 @@
+import { decibelUnit, isDecibel, parseDecibels, parseDecibelUnit } from './decibel.ts';
 import {
   type Parsed,
   parsePhysical,
@@ -52,6 +53,7 @@ function detectorOf(word: string): Detector | '' | null {
  */
 export function parseLevel(text: string, quantity: Quantity | null = null, otherUnit = ''): Parsed<Level> {
   if (quantity === 'other') return parseOtherLevel(text, otherUnit);
+  if (saysDecibels(text)) return parseLevelInDecibels(text, quantity);
   const wanted: readonly Dimension[] = quantity === null ? quantities : [quantity];
   const parsed = parsePhysical(text, wanted, usualUnit(quantity), { words: true });
   if (!parsed.ok) return parsed;
@@ -62,6 +64,21 @@ export function parseLevel(text: string, quantity: Quantity | null = null, other
     return ambiguous(`${number} ${unit.text}`, unit, `${shorten(text)}`);
   const display = displayUnit(sampleUnit(unit), detector === '' ? 'rms' : detector, unit.detectorNeeded);
   return understood({ value: value / detectorFactor[display.detector], display });
+}
+
+function saysDecibels(text: string): boolean {
+  const split = splitNumber(text);
+  return split.ok && isDecibel(split.value.rest);
+}
+
+function parseLevelInDecibels(text: string, quantity: Quantity | null): Parsed<Level> {
+  if (quantity === null) return refused(`'${shorten(text)}' in decibels does not say of which quantity`);
+  const parsed = parseDecibels(text, quantity);
+  const display = decibelUnit(quantity);
+  if (!parsed.ok) return parsed;
+  return display === null
+    ? refused(`no decibels of ${quantity}`)
+    : understood({ value: parsed.value, display });
 }
 
 function parseOtherLevel(text: string, otherUnit: string): Parsed<Level> {
@@ -77,8 +94,17 @@ function parseOtherLevel(text: string, otherUnit: string): Parsed<Level> {
   return understood({ value: split.value.number, display });
 }
 
-/** A band's `unit:` such as 'mm/s', 'g', 'in/s peak', 'mil pp'. */
-export function parseDisplayUnit(text: string): Parsed<DisplayUnit> {
+/** Decibels, of the quantity that the reference behind them names; null: of whatever the band is of. */
+export interface Decibels {
+  readonly decibelsOf: Quantity | null;
+}
+
+/** A band's `unit:` such as 'mm/s', 'g', 'in/s peak', 'mil pp', 'dB'. */
+export function parseDisplayUnit(text: string): Parsed<DisplayUnit | Decibels> {
+  if (isDecibel(text)) {
+    const parsed = parseDecibelUnit(text);
+    return parsed.ok ? understood({ decibelsOf: parsed.value }) : parsed;
+  }
   const found = unitAtStart(text.trim());
   if (found === null || !isQuantity(found.unit.dimension)) {
     const meant = unitInOtherCase(text);

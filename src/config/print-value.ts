@@ -1,5 +1,5 @@
 import type { DisplayUnit } from './site.ts';
-import { detectorFactor } from './units.ts';
+import { detectorFactor, usualDisplayUnit } from './units.ts';
 
 /**
  * A number for people, with so many significant figures (three unless asked otherwise), never with an exponent
@@ -17,14 +17,25 @@ export function printNumber(value: number, figures = 3): string {
   return text.includes('.') ? text.replace(/\.?0+$/, '') : text;
 }
 
-/** The number that stands before a display unit: SI r.m.s. to the unit and its detector. */
+/** The number that stands before a display unit: SI r.m.s. to the unit and its detector, or to decibels. */
 export function inDisplayUnit(siRms: number, display: DisplayUnit): number {
+  if (display.decibelReference !== undefined) return 20 * Math.log10(siRms / display.decibelReference);
   return (siRms / display.inSi) * detectorFactor[display.detector];
 }
 
 /** 0.0028 m/s in mm/s -> '2.8 mm/s'; 0.005388154 m/s in in/s peak -> '0.3 in/s peak (derived)'. */
-export function printLevel(siRms: number, display: DisplayUnit, figures = 3): string {
+export function printLevel(siRms: number, display: DisplayUnit, figures = levelFigures(display)): string {
   return `${printNumber(inDisplayUnit(siRms, display), figures)} ${display.text}`.trimEnd();
+}
+
+/** A decibel more is 12 %, so levels in decibels have their tenths. */
+export function levelFigures({ decibelReference }: DisplayUnit): number {
+  return decibelReference === undefined ? 3 : 4;
+}
+
+/** The unit for a difference of two levels, which has no decibels: the SI unit, where the levels are in decibels. */
+export function differenceUnit(display: DisplayUnit): DisplayUnit {
+  return display.decibelReference === undefined ? display : usualDisplayUnit(display.quantity);
 }
 
 /** '950 Hz', '2 kHz', '25.6 kHz'. */

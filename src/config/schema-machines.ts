@@ -1,7 +1,6 @@
-import { parseDisplayUnit } from './level.ts';
 import { conditions } from './operating-conditions.ts';
-import { parseEdge } from './quantity.ts';
 import { parseRunning } from './running-rule.ts';
+import { bands, quantities } from './schema-bands.ts';
 import { limits } from './schema-limits.ts';
 import { parts } from './schema-parts.ts';
 import { analysis, areaName, recordings } from './schema-recordings.ts';
@@ -9,51 +8,11 @@ import { speedKeys } from './schema-speed.ts';
 import { channel, duration, formerIds, frequency, id } from './schema-values.ts';
 import { sensorPlaces, zoneKeys } from './schema-zones.ts';
 import { parseSensitivity } from './sensitivity.ts';
-import { choice, list, ruled, scalar, words } from './shape.ts';
+import { choice, list, scalar, words } from './shape.ts';
 import { key, map, mapById } from './shape-map.ts';
-import type { Quantity } from './site.ts';
 import { suppressedWhileKey } from './suppressed-while.ts';
 
 const day = 86_400_000;
-
-const quantities = [
-  'acceleration',
-  'velocity',
-  'displacement',
-  'sound-pressure',
-  'voltage',
-  'current',
-  'other',
-] as const satisfies readonly Quantity[];
-
-const edge = scalar(
-  ruled(parseEdge, ({ value }) =>
-    value >= 0 && value <= 5e6 ? null : { what: 'is not from 0 to 5 MHz', instead: null },
-  ),
-  { example: '10 Hz', pattern: '^[0-9.]+\\s*(Hz|kHz|rpm|r/min|1/min|x)$' },
-);
-
-export const bandKeys = {
-  id: key(id('overall'), 'Names the band in limits, trends and mails.', { required: true }),
-  formerly: key(formerIds, 'Earlier ids: the series are carried over.'),
-  of: key(choice(['spectrum', 'envelope'], 'envelope'), 'envelope: a band of the envelope spectrum.', {
-    fallback: 'spectrum',
-  }),
-  quantity: key(choice(quantities, 'velocity'), 'What the level is of.', {
-    fallback: "the unit's quantity, else the point's",
-  }),
-  from: key(edge, 'Lower edge: Hz, kHz, rpm, or orders of the running speed (0.5x).', { required: true }),
-  to: key(edge, 'Upper edge.', { required: true }),
-  unit: key(
-    scalar(parseDisplayUnit, { example: 'mm/s' }),
-    'How people read it: mm/s, m/s2, g are r.m.s.; in/s, mil, um, mm take rms, peak or pp.',
-    {
-      fallback: 'm/s², mm/s or µm, r.m.s.',
-    },
-  ),
-};
-
-const bands = list(map(bandKeys), 200);
 
 export const pointKeys = {
   id: key(id('de-h'), 'Names the point; as written, never as a number.', { required: true }),

@@ -36,6 +36,8 @@ export interface SampleUnit {
 /** A unit with the detector in which a band is shown: `text` is e.g. 'mm/s' or 'mil peak to peak (derived)'. */
 export interface DisplayUnit extends SampleUnit {
   readonly detector: Detector;
+  /** Shown in decibels re this, in SI; left out: as a number of the unit. */
+  readonly decibelReference?: number;
 }
 
 export type { AnalysisSettings, WindowName };
