@@ -6,9 +6,10 @@ import {
   type PointEnvelope,
 } from '../config/envelope-settings.ts';
 import type { Point } from '../config/site.ts';
-import type { AveragedDensity } from '../signal/averaging.ts';
+import { type AveragedDensity, type AveragingSettings, hopSamples } from '../signal/averaging.ts';
 import { EnvelopeAverager, type EnvelopeAveraging, envelopeAveraging } from '../signal/envelope.ts';
 import { Kurtogram, type KurtogramResult, type KurtogramSettings } from '../signal/kurtogram.ts';
+import { MedianAverage, type MedianDensity, medianStride } from '../signal/median-average.ts';
 import { SegmentSpectra } from '../signal/segment-spectra.ts';
 import { seriesRate } from './fingerprint.ts';
 
@@ -19,6 +20,8 @@ export interface EnvelopePlan extends EnvelopeAveraging {
   readonly chosen: 'fixed' | 'kurtosis';
   /** Where a band is still looked for; null: it is fixed, or chosen. */
   readonly search: KurtogramSettings | null;
+  /** Peaks are looked for in the median over the segments; left out: in their mean. */
+  readonly median?: true;
 }
 
 /**
@@ -45,6 +48,7 @@ export function envelopePlan(
     band,
     chosen: usesChoice ? 'kurtosis' : 'fixed',
     search: envelope.choose === 'fixed' || usesChoice ? null : searchSettings(envelope, rateHz, mounting),
+    ...(analysis.averaging === 'median' ? { median: true as const } : {}),
   };
 }
 
@@ -81,6 +85,8 @@ export interface EnvelopeResult {
   /** Densities of segments or groups of them. */
   readonly segments: SegmentSpectra;
   readonly kurtogram: KurtogramResult | null;
+  /** Null where it was not asked for. */
+  readonly median: MedianDensity | null;
 }
 
 const mostGroups = 128;
@@ -91,11 +97,16 @@ export class EnvelopeRun {
   readonly #averager: EnvelopeAverager;
   readonly #segments: SegmentSpectra;
   readonly #kurtogram: Kurtogram | null;
+  readonly #median: MedianAverage | null;
 
   constructor(plan: EnvelopePlan) {
     this.#plan = plan;
     this.#segments = new SegmentSpectra(plan.averaging.segmentSamples / 2 + 1, mostGroups);
-    this.#averager = new EnvelopeAverager(plan, (density) => this.#segments.add(density));
+    this.#averager = new EnvelopeAverager(plan, (density) => {
+      this.#segments.add(density);
+      this.#median?.add(density);
+    });
+    this.#median = plan.median === true ? medianAverage(plan.averaging) : null;
     this.#kurtogram = plan.search === null ? null : new Kurtogram(plan.search);
   }
 
@@ -110,6 +121,12 @@ export class EnvelopeRun {
       density: this.#averager.finish(),
       segments: this.#segments,
       kurtogram: this.#kurtogram?.finish() ?? null,
+      median: this.#median?.finish() ?? null,
     };
   }
+}
+
+function medianAverage({ window, segmentSamples, overlapPercent }: AveragingSettings): MedianAverage {
+  const hop = hopSamples(segmentSamples, overlapPercent);
+  return new MedianAverage(segmentSamples / 2 + 1, medianStride(window, segmentSamples, hop));
 }

@@ -1,6 +1,7 @@
 import type { Band, Point } from '../config/site.ts';
 import type { AveragedDensity } from '../signal/averaging.ts';
 import type { KurtogramResult } from '../signal/kurtogram.ts';
+import type { MedianDensity } from '../signal/median-average.ts';
 import type { Segments } from '../signal/pooled-segments.ts';
 import type { SegmentSpectra } from '../signal/segment-spectra.ts';
 import type { EnvelopeCandidate, EnvelopeMeasured } from './envelope-measured.ts';
@@ -19,6 +20,8 @@ export interface EnvelopeQuestion {
   /** Null: no single segment is judged. */
   readonly segments: SegmentSpectra | null;
   readonly kurtogram: KurtogramResult | null;
+  /** Where peaks are looked for; null: in `density`. */
+  readonly median: MedianDensity | null;
   readonly speedHz: number | null;
   readonly atLeast: boolean;
   /** Fingerprint of a band's series. */
@@ -37,7 +40,8 @@ export function measureEnvelope(question: EnvelopeQuestion): MeasuredEnvelope | 
   if (density.averages === 0) return null;
   const { averaging, band, chosen } = plan;
   const { falsePeaksPerSpectrum } = point.analysis;
-  const searched = searchPeaks(density, averaging, { falsePeaksPerSpectrum, averages });
+  const searchIn = question.median === null ? {} : { searchIn: question.median };
+  const searched = searchPeaks(density, averaging, { falsePeaksPerSpectrum, averages, ...searchIn });
   const highestHz = halfWidthHz(band);
   const { laid, unlaid } = layEnvelopeBands(point, gridOf(averaging), speedHz, highestHz);
   const measured = levelsOf({

@@ -68,7 +68,7 @@ function pooledEnvelope(
 ): MeasuredEnvelope | null {
   if (envelope === null) return null;
   const { plan, density, segments: averages } = envelope;
-  const shape = { point, plan, density, averages, segments: null, kurtogram: null };
+  const shape = { point, plan, density, averages, segments: null, kurtogram: null, median: null };
   const measured = measureEnvelope({ ...shape, speedHz, atLeast: false, seriesOf });
   if (measured === null) return null;
   const recordings = averages.length;
