@@ -84,14 +84,16 @@ export function findSpeed(
 }
 
 /**
- * The speed of the highest score that one could take for the shaft's. One at none of whose first multiples a line stands
- * would be refused itself: the harmonics of a damaged bearing, strong as they are, meet every seventh multiple of some
- * speed in the range.
+ * The speed of the highest score that one could take for the shaft's. One that only every fourth multiple or fewer speak
+ * for would be refused itself: the harmonics of a damaged bearing, strong as they are, meet every seventh multiple of
+ * some speed in the range.
  */
 function rival(others: readonly FamilyTone[], range: SpeedRange): ReturnType<typeof bestSpeed> {
   for (let left = others; left.length > 0; ) {
     const best = bestSpeed(left, range);
-    if (best === null || matchesOf(left, best.speedHz, firstHarmonics, 1).length > 0) return best;
+    if (best === null) return null;
+    const multiples = matchesOf(left, best.speedHz, mostHarmonics, 1).map(({ harmonic }) => harmonic);
+    if (multiples.length === 0 || multiples.reduce(greatestDivisor) <= firstHarmonics) return best;
     const fewer = without(left, best.speedHz, mostHarmonics);
     if (fewer.length === left.length) return null;
     left = fewer;
