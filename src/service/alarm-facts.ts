@@ -1,4 +1,5 @@
 import type { AlarmFacts, LevelFacts, LimitFacts, RecordingFacts, StandingFacts } from '../advisory/facts.ts';
+import { levelEveryMs } from '../config/meaning.ts';
 import type { Limit, Machine, Point } from '../config/site.ts';
 import { normalState } from '../detection/alarm.ts';
 import { alarmByNumber, loadAlarms, type StandingLife, type StoredAlarm } from '../store/alarms.ts';
@@ -162,7 +163,7 @@ async function before(
   const level = measured?.level;
   if (pointId === null || bandId === null || level === undefined)
     return { last: [], dayBefore: null, weekBefore: null, baseline: null };
-  const everyMs = point?.recordings.expectedEveryMs ?? 3_600_000;
+  const everyMs = point === undefined ? 3_600_000 : levelEveryMs(point);
   const { seriesId, conditionId, usedMs } = level;
   return levelsBefore(reader, { pointId, bandId, seriesId, conditionId, usedMs, everyMs });
 }

@@ -1,5 +1,6 @@
 import type { AlarmFacts, AlarmMailFacts } from '../advisory/facts.ts';
 import { shareOfAlert } from '../advisory/ranking.ts';
+import { levelEveryMs } from '../config/meaning.ts';
 import type { Machine, Point } from '../config/site.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { newestMeasurement, type StoredMeasurement } from '../store/read-measurements.ts';
@@ -86,7 +87,7 @@ async function alarmOf(reader: Reader, view: SiteView, subject: Subject): Promis
   const { bandId, seriesId, conditionId, usedMs } = level;
   const series = (await seriesOfPoint(reader, pointId)).find(({ id }) => id === seriesId);
   const band = point.bands.find(({ id }) => id === limit.bandId);
-  const everyMs = point.recordings.expectedEveryMs;
+  const everyMs = levelEveryMs(point);
   const before = await levelsBefore(reader, { pointId, bandId, seriesId, conditionId, usedMs, everyMs });
   return {
     kind: 'alarm',

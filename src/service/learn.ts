@@ -1,4 +1,5 @@
 import { localDay } from '../config/local-time.ts';
+import { levelEveryMs } from '../config/meaning.ts';
 import type { Point } from '../config/site.ts';
 import { baselineOf, baselineRules, isOpen } from '../detection/baseline.ts';
 import { baselinesOf, goodLevels, type StoredBaseline, saveBaseline } from '../store/baselines.ts';
@@ -64,7 +65,7 @@ export async function relearn(
   );
   const baseline = baselineOf({
     levels,
-    expectedADay: Math.max(1, 86_400_000 / point.recordings.expectedEveryMs),
+    expectedADay: Math.max(1, 86_400_000 / levelEveryMs(point)),
     zoneC: null,
     confirmed: before?.confirmed ?? null,
   });

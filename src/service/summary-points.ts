@@ -1,5 +1,6 @@
 import { changeOf, mediansOf } from '../advisory/ranking.ts';
 import type { BandNow, Judging, PointNow } from '../advisory/summary-facts.ts';
+import { levelEveryMs } from '../config/meaning.ts';
 import { type Machine, type Point, pointPath } from '../config/site.ts';
 import type { TroubleKind } from '../detection/alarm.ts';
 import type { MachineMemory } from '../detection/machine-state.ts';
@@ -79,10 +80,9 @@ async function bandsNow(reader: Reader, { view, machine, point, nowMs }: PointKn
   const measurementId = await newestInTrend(reader, pointId, nowMs - oldestLevelMs);
   const measurement = measurementId === null ? null : await measurementById(reader, measurementId);
   const series = new Map((await seriesOfPoint(reader, pointId)).map((one) => [one.id, one]));
-  const { expectedEveryMs } = point.recordings;
   const brokenMs = (await lastBreak(reader, { pointId, toMs: nowMs }))?.atMs ?? Number.NEGATIVE_INFINITY;
   const range = { pointId, fromMs: Math.max(nowMs - 8 * dayMs, brokenMs), toMs: nowMs + 1 };
-  const past = await bareLevels(reader, { ...range, everyMs: expectedEveryMs, mostTimes: mostLevels });
+  const past = await bareLevels(reader, { ...range, everyMs: levelEveryMs(point), mostTimes: mostLevels });
   const compared = gather(past, comparable);
   const inForce = await limitsInForce(reader, view, point, measurement);
   const baselines = await baselinesNow(reader, view, point);
