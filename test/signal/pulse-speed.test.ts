@@ -44,6 +44,25 @@ describe('the speed from a pulse channel', () => {
     }
   });
 
+  it('times a rise between two samples: of a sine at 20 samples a period to 2 % of a sample', () => {
+    const samples = Float64Array.from({ length: 40_000 }, (_, n) =>
+      Math.sin((2 * Math.PI * (n - 3.3)) / 20.37),
+    );
+    for (const [turn, time] of speedOf(samples).turnTimes.entries())
+      expect(Math.abs(time - 20.37 * turn - 3.3)).toBeLessThan(0.02);
+  });
+
+  it('counts slow rises once in spite of noise that goes to and fro across the threshold', () => {
+    const random = seededRandom(6);
+    const samples = Float64Array.from(
+      { length: 100_000 },
+      (_, n) => Math.sin((2 * Math.PI * n) / 1000) + 0.05 * random.gaussian(),
+    );
+    const speed = speedOf(samples);
+    expect(speed).toMatchObject({ missed: 0, doubled: 0 });
+    expect(Math.abs(speed.meanHz / 25.6 - 1)).toBeLessThan(5e-4);
+  });
+
   it('times the turns of a shaft that speeds up by a fifth, and says from where to where', () => {
     // 20 to 24 Hz within 4 s, evenly.
     const speed = speedOf(channel({ turnsAt: (t) => 20 * t + 0.5 * t * t }));
