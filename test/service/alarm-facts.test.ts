@@ -1,6 +1,7 @@
 /** What an alarm mail is made from, read from a real ledger. */
 import { describe, expect, it } from 'vitest';
 import { alarmMail } from '../../src/advisory/alarm-mail.ts';
+import type { Evidence } from '../../src/manipulation/evidence.ts';
 import type { SpectralPeak } from '../../src/manipulation/measurement.ts';
 import { asAlarm } from '../../src/service/as-alarm.ts';
 import { alarmMailFacts } from '../../src/service/draft.ts';
@@ -66,6 +67,40 @@ describe('the facts of an alarm', () => {
     b.clock.advance(8 * dayMs);
     await b.record('blower/de', { overall: 5 }, { more: { peaks: [peak(163.4, 0.4)] } });
     expect((await untold(b)).alarms[0]?.lines?.comparedWithMs).toBe(b.clock.wallMs() - 8 * dayMs);
+  });
+
+  it('tell the names of the lines and what they say of a part, which is never a verdict', async () => {
+    const b = await bench();
+    const bearing = { partId: 'bearing', fault: 'outer race', frequency: 'BPFO', expectedHz: 163 };
+    const evidence: Evidence[] = [
+      {
+        ...bearing,
+        spectrum: 'envelope',
+        grade: 'clear',
+        observedHz: 163.4,
+        harmonics: 3,
+        sidebands: 0,
+        aboveFloorDb: 14,
+        chance: 1e-6,
+        words: 'three harmonics of BPFO of the bearing in the envelope (163.4 Hz), 14 dB over the floor',
+      },
+      {
+        ...bearing,
+        spectrum: 'plain',
+        grade: 'not separable',
+        neededLineSpacingHz: 0.1,
+        words: 'BPFO of the bearing cannot be told from 3x',
+      },
+    ];
+    const peaks = [{ ...peak(163.4, 0.2), names: ['BPFO, bearing'] }];
+    await b.record('blower/de', { overall: 3 }, { more: { peaks, evidence } });
+    const facts = await untold(b);
+    expect(facts.alarms[0]?.evidence).toEqual([{ grade: 'clear', words: evidence[0]?.words }]);
+    const text = alarmMail(facts).text.replace(/\s+/g, ' ');
+    expect(text).toContain('163.4 Hz [BPFO, bearing] 0.2');
+    expect(text).toContain('clear evidence, never a verdict: three harmonics of BPFO of the bearing');
+    expect(text).toContain('something else may make such lines');
+    expect(text).not.toContain('cannot be told from 3x');
   });
 
   it('show the other points of the machine, the band that is used most, nothing that is old', async () => {
