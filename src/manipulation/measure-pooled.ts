@@ -102,5 +102,6 @@ export function waitingMeasurement({ share: _, ...measurement }: Measurement): M
     orders: null,
     envelope: null,
     evidence: [],
+    waits: true,
   };
 }

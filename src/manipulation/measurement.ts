@@ -44,6 +44,8 @@ export interface Measurement {
   readonly seriesBeside?: readonly SeriesBeside[];
   /** What it brings into the average over several recordings; left out where its point does not pool. */
   readonly share?: PoolShare;
+  /** It says nothing by itself: its spectrum is in a pool that is still open. */
+  readonly waits?: true;
 }
 
 /** The mean density of a recording's segments, (SI unit)²/Hz in full precision, for an average over several recordings. */

@@ -68,10 +68,11 @@ async function judgingOf(reader: Reader, known: PointKnown): Promise<Judging> {
   const evaluatedMs = arrivals?.newestEvaluatedUsedMs ?? null;
   if (isBlind || evaluatedMs === null || nowMs - evaluatedMs > overdueAfterMs + settleMs) return 'blind';
   const pointId = view.ids.pointId(point.machineId, point.id);
-  const newest = await newestMeasurement(reader, pointId, { evaluated: true });
+  const newest = await newestMeasurement(reader, pointId, { evaluated: true, waiting: true });
   if (newest?.machineState === 'stopped') return 'stopped';
   if (point.limits.length === 0) return 'no-limit';
-  const limits = await limitsInForce(reader, view, point, newest);
+  const judged = await newestMeasurement(reader, pointId, { evaluated: true });
+  const limits = await limitsInForce(reader, view, point, judged);
   return limits.every(({ now }) => 'unknown' in now) ? 'not-judged' : 'judged';
 }
 

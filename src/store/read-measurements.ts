@@ -35,17 +35,21 @@ export interface StoredMeasurement {
   readonly levels: readonly TrendPoint[];
 }
 
-/** The current measurement of a point with the newest used time, with its levels; null where there is none. */
+/**
+ * The current measurement of a point with the newest used time, with its levels; null where there is none. Recordings
+ * that only waited in a pool are passed over unless they are asked for.
+ */
 export async function newestMeasurement(
   reader: Reader,
   pointId: number,
-  only: { readonly evaluated?: boolean; readonly beforeMs?: number } = {},
+  only: { readonly evaluated?: boolean; readonly beforeMs?: number; readonly waiting?: boolean } = {},
 ): Promise<StoredMeasurement | null> {
   let query = reader
     .selectFrom('measurements')
     .selectAll()
     .where('point_id', '=', pointId)
     .where('is_current', '=', 1);
+  if (only.waiting !== true) query = query.where('waits', 'is', null);
   if (only.evaluated === true) query = query.where('evaluated', '=', 1);
   if (only.beforeMs !== undefined) query = query.where('used_ms', '<', only.beforeMs);
   const row = await query.orderBy('used_ms', 'desc').orderBy('id', 'desc').limit(1).executeTakeFirst();

@@ -181,6 +181,8 @@ export interface MeasurementsTable {
   averages: number | null;
   /** Recordings pooled in these averages; null: the one. */
   pooled_recordings: number | null;
+  /** 1: its spectrum is in a pool, whose levels a later recording has; else null. */
+  waits: number | null;
   effective_averages: number | null;
   used_percent: number | null;
   segment_spread: number | null;

@@ -198,6 +198,7 @@ function measurementRow(entry: NewMeasurement, pointId: number): Insertable<Meas
     line_spacing_hz: averaging?.lineSpacingHz ?? null,
     averages: averaging?.averages ?? null,
     pooled_recordings: averaging?.recordings ?? null,
+    waits: measurement.waits === true ? 1 : null,
     effective_averages: averaging?.effectiveAverages ?? null,
     used_percent: averaging?.usedPercent ?? null,
     segment_spread: averaging?.segmentSpread ?? null,

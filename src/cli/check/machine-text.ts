@@ -3,14 +3,16 @@ import type { LimitFacts } from '../../advisory/facts.ts';
 import { bareLevel, counted, percentText } from '../../advisory/level-words.ts';
 import { reasonsText } from '../../advisory/limit-words.ts';
 import { gather, shareOfAlert } from '../../advisory/ranking.ts';
+import { levelEveryMs, poolSizeOf } from '../../config/meaning.ts';
 import {
   inDisplayUnit,
+  printDuration,
   printFrequency,
   printNumber,
   printSeconds,
   printSpeed,
 } from '../../config/print-value.ts';
-import type { Band, Machine } from '../../config/site.ts';
+import type { Band, Machine, Point } from '../../config/site.ts';
 import { limitFactsNow } from '../../service/limits-in-force.ts';
 import { lineWidth, listing, type Row, table, wrapText } from '../output.ts';
 import { timeText } from '../when.ts';
@@ -214,7 +216,7 @@ interface Remark {
   readonly text: string;
 }
 
-export function averagingText({ averaging }: PointCheck): string {
+export function averagingText({ averaging, point }: PointCheck): string {
   if (averaging === null) return 'not known: say sample_rate and duration, or let a recording come';
   const { window, overlapPercent, segmentSamples, lineSpacingHz, averages, usedPercent } = averaging;
   return [
@@ -222,7 +224,16 @@ export function averagingText({ averaging }: PointCheck): string {
     `a line every ${printFrequency(lineSpacingHz)}`,
     `${counted(averages, 'average')}, worth ${printNumber(averaging.effectiveAverages)} independent`,
     `${printNumber(usedPercent)} % of the recording used`,
+    ...poolText(point),
   ].join('; ');
+}
+
+function poolText(point: Point): string[] {
+  const { expectedEveryMs } = point.recordings;
+  const size = poolSizeOf(point.analysis, expectedEveryMs);
+  if (size === 1) return [];
+  const every = printDuration(levelEveryMs(point));
+  return [`pooled over ${size} recordings: a level every ${every}, which on-delays count as one recording`];
 }
 
 function indented(text: string): string {

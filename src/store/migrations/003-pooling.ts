@@ -11,6 +11,7 @@ export const pooling: Migration = {
       recordings integer not null, newest_used_ms integer not null, facts text not null,
       density blob not null, envelope_density blob) strict;
     alter table measurements add column pooled_recordings integer;
+    alter table measurements add column waits integer check (waits = 1);
     alter table spectra add column averaging text;`,
   ],
 };
