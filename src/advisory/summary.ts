@@ -6,6 +6,7 @@ import { bearingOf, byUrgency, gather, largestShare, shareOfAlert } from './rank
 import { historyLines, recordingLines, serviceLines } from './summary-counts.ts';
 import type { BandNow, PointNow, SummaryFacts } from './summary-facts.ts';
 import { type Finding, knownFinding, needFinding, worseFinding } from './summary-findings.ts';
+import { learnedLines } from './summary-limits.ts';
 import { isReturned, placeText, troubleName } from './wording.ts';
 
 /** The morning as data: what needs a person first, in ordered sections, before it becomes text or HTML. */
@@ -16,7 +17,7 @@ export interface Morning {
 }
 
 export interface Section {
-  readonly name: 'needs' | 'worse' | 'known' | 'steady' | 'recordings' | 'history' | 'service';
+  readonly name: 'needs' | 'worse' | 'known' | 'steady' | 'limits' | 'recordings' | 'history' | 'service';
   readonly title: string;
   /** Every finding, the most urgent first; a screen shows `mostShown` of them, then 'and n more'. */
   readonly findings: readonly Finding[];
@@ -81,11 +82,18 @@ export function morningOf(facts: SummaryFacts): Morning {
       findings: [],
       lines: [`${steadyCount(facts, standing, worse)} of ${counted(facts.points.length, 'point')}.`],
     },
+    ...learnedSection(facts),
     { name: 'recordings', title: 'Recordings', findings: [], lines: recordingLines(facts) },
     { name: 'history', title: 'Alarms', findings: [], lines: historyLines(facts) },
     { name: 'service', title: 'The service', findings: [], lines: serviceLines(facts) },
   ];
   return { first: firstLine(facts, needs.flat()), sections };
+}
+
+/** Only where there is something to say of limits that are learned. */
+function learnedSection(facts: SummaryFacts): Section[] {
+  const lines = learnedLines(facts);
+  return lines.length === 0 ? [] : [{ name: 'limits', title: 'Learned limits', findings: [], lines }];
 }
 
 /** Alarms and troubles of one bearing make one finding; the most urgent first, in and between the groups. */
@@ -174,7 +182,7 @@ function judgingText({ points, standing }: SummaryFacts): string {
   const counts = [`${of('judged').length} of ${counted(points.length, 'point')} judged`];
   const others = [
     ['stopped', 'stopped'],
-    ['not-judged', 'outside every operating condition'],
+    ['not-judged', 'not judged'],
     ['no-limit', 'without a limit'],
     ['out-of-service', 'out of service'],
   ] as const;

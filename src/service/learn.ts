@@ -1,6 +1,7 @@
 import { localDay } from '../config/local-time.ts';
 import { levelEveryMs } from '../config/meaning.ts';
 import type { Point } from '../config/site.ts';
+import { zonesOfBand } from '../config/zone-limits.ts';
 import { baselineOf, baselineRules, isOpen } from '../detection/baseline.ts';
 import { baselinesOf, goodLevels, type StoredBaseline, saveBaseline } from '../store/baselines.ts';
 import { keepDailyLevels } from '../store/daily-levels.ts';
@@ -66,8 +67,18 @@ export async function relearn(
   const baseline = baselineOf({
     levels,
     expectedADay: Math.max(1, 86_400_000 / levelEveryMs(point)),
-    zoneC: null,
+    zoneC: zoneCOf(view, point, bandId),
     confirmed: before?.confirmed ?? null,
   });
   await saveBaseline(writer, { ...baseline, seriesId, conditionId, learnFromMs });
+}
+
+/** Where zone C begins for a band at the machine's nominal speed, SI r.m.s.; null: no table judges it. */
+function zoneCOf(view: SiteView, point: Point, bandLedgerId: number): number | null {
+  const { id: machineId, zones = null, runningSpeedHz } = view.machine(point.machineId);
+  const band = point.bands.find(({ id }) => view.ids.bandId(machineId, point.id, id) === bandLedgerId);
+  if (zones === null || band === undefined) return null;
+  const { quantity, sensorOn = null } = point;
+  const answer = zonesOfBand({ machineId, zones, runningSpeedHz, point: { quantity, sensorOn } }, band);
+  return answer.ok ? answer.boundaries.bc : null;
 }

@@ -13,6 +13,8 @@ import { arrivalsOf } from '../store/sources.ts';
 import { readSummary } from '../store/summaries.ts';
 import { waitingMail } from '../store/waiting-mail.ts';
 import { type Health, stuckAfterMs } from './health.ts';
+import { type UnwatchedLimit, unwatchedLimits } from './limits-in-force.ts';
+import { readersView } from './readers-view.ts';
 import { severityNow } from './standing-list.ts';
 
 export interface OverduePoint {
@@ -38,6 +40,8 @@ export interface Status {
   readonly newest: StoredRecording | null;
   readonly overdue: readonly OverduePoint[];
   readonly standing: { readonly danger: number; readonly alert: number; readonly trouble: number };
+  /** Limits that cannot be reckoned now; null: the ledger has not taken over this text of the site file. */
+  readonly unwatched: readonly UnwatchedLimit[] | null;
   readonly mailsWaiting: number;
   readonly eventsGathered: number;
   readonly lastMail: LastMailAnswer | null;
@@ -57,6 +61,7 @@ export async function statusOf(
     health === null || (startedMs !== null && health.roundMs < startedMs) ? null : health.roundMs;
   const living = Math.max(roundMs ?? 0, startedMs ?? 0);
   const summary = await readSummary(reader);
+  const view = await readersView(reader, site);
   const lives = await standingAlarms(reader);
   const count = (severity: string) => lives.filter((one) => severityNow(one) === severity).length;
   return {
@@ -70,6 +75,7 @@ export async function statusOf(
     newest: await newestTaken(reader),
     overdue: await overduePoints(reader, lives),
     standing: { danger: count('danger'), alert: count('alert'), trouble: count('trouble') },
+    unwatched: view === null ? null : await unwatchedLimits(reader, view, nowMs),
     mailsWaiting: (await waitingMail(reader)).count,
     eventsGathered: await countUntold(reader),
     lastMail: await lastMailAnswer(reader),

@@ -1,7 +1,11 @@
-import { type Band, type Point, pointPath } from '../config/site.ts';
+import { type Band, type Machine, type Point, pointPath } from '../config/site.ts';
 import type { Reader } from '../store/lent-connection.ts';
+import { notesOf, type StoredNote } from '../store/notes.ts';
+import { measurementById } from '../store/read-measurements.ts';
 import { readLevels, type Series, seriesOfPoint, type TrendPoint } from '../store/read-trends.ts';
 import { type TrendMarks, trendMarks } from '../store/trend-marks.ts';
+import { type LimitInForce, limitsOfStored } from './limits-in-force.ts';
+import { limitsOverTime } from './limits-over-time.ts';
 
 /** One level of a band's trend, with what stands beside it. */
 export interface TrendRow extends TrendPoint, TrendMarks {
@@ -13,6 +17,12 @@ export interface BandTrend {
   readonly rows: readonly TrendRow[];
   /** Series that have a row. */
   readonly series: readonly Series[];
+  /** Notes of the point and of its machine within these rows, oldest first. */
+  readonly notes: readonly StoredNote[];
+  /** The band's limits as they stand for the newest row of the trend. */
+  readonly limits: readonly LimitInForce[];
+  /** The same for any row, but for rates, which judge the line through many. */
+  readonly limitsAt: (row: TrendRow) => readonly LimitInForce[];
   /** There are older rows than `limit` allowed. */
   readonly cut: boolean;
 }
@@ -20,6 +30,7 @@ export interface BandTrend {
 /** The levels of a band in [fromMs, toMs), also those outside the trend (stopped, transient); the newest `limit`. */
 export async function trendOfBand(
   reader: Reader,
+  machine: Machine,
   point: Point,
   band: Band,
   range: { readonly fromMs: number; readonly toMs: number; readonly limit: number },
@@ -44,7 +55,24 @@ export async function trendOfBand(
   });
   const used = new Set(rows.map(({ seriesId }) => seriesId));
   const series = (await seriesOfPoint(reader, ids.pointId)).filter(({ id }) => used.has(id));
-  return { rows, series, cut: found.length > range.limit };
+  const fromMs = found.length > range.limit ? (rows[0]?.usedMs ?? range.fromMs) : range.fromMs;
+  const notes = await notesOf(reader, {
+    machineId: ids.machineId,
+    pointId: ids.pointId,
+    fromMs,
+    toMs: range.toMs,
+  });
+  const limitsAt = await limitsOverTime(reader, { machine, point, band, seriesIds: [...used] });
+  const newest = rows.findLast(({ inTrend }) => inTrend);
+  const all = await limitsOfStored(reader, {
+    machine,
+    point,
+    measurement: newest === undefined ? null : await measurementById(reader, newest.measurementId),
+    bandIds: new Map([[ids.bandId, band.id]]),
+    machineLedgerId: ids.machineId,
+  });
+  const limits = all.filter(({ limit }) => limit.bandId === band.id);
+  return { rows, series, notes, limits, limitsAt, cut: found.length > range.limit };
 }
 
 /** Null where the ledger has not taken over a site file with that band. */
@@ -52,12 +80,12 @@ async function idsOf(
   reader: Reader,
   { machineId, id }: Point,
   band: Band,
-): Promise<{ readonly pointId: number; readonly bandId: number } | null> {
+): Promise<{ readonly machineId: number; readonly pointId: number; readonly bandId: number } | null> {
   const row = await reader
     .selectFrom('bands')
     .innerJoin('points', 'points.id', 'bands.point_id')
     .innerJoin('machines', 'machines.id', 'points.machine_id')
-    .select(['points.id as pointId', 'bands.id as bandId'])
+    .select(['machines.id as machineId', 'points.id as pointId', 'bands.id as bandId'])
     .where('machines.id_in_site', '=', machineId)
     .where('points.id_in_site', '=', id)
     .where('bands.id_in_site', '=', band.id)

@@ -8,6 +8,9 @@ export interface TrendMarks {
   readonly flags: readonly QualityFlag[];
   readonly machineState: MachineStateName;
   readonly speedRpm: number | null;
+  /** Measured, not the nominal one. */
+  readonly speedMeasured: boolean;
+  readonly condition: string | null;
   readonly loadPercent: number | null;
   readonly confidencePercent: number | null;
 }
@@ -28,6 +31,8 @@ export async function trendMarks(
         'measurements.id',
         'machine_state',
         'speed_rpm',
+        'speed_origin',
+        'condition',
         'load_percent',
         'confidence_percent',
         'measurements.quality',
@@ -44,6 +49,8 @@ export async function trendMarks(
         flags: [...new Set(findings.map(({ flag }) => flag))],
         machineState: row.machine_state as MachineStateName,
         speedRpm: row.speed_rpm,
+        speedMeasured: row.speed_rpm !== null && row.speed_origin !== 'nominal',
+        condition: row.condition,
         loadPercent: row.load_percent,
         confidencePercent: row.confidence_percent,
       });

@@ -13,7 +13,7 @@ export function journalJson(row: JournalRow): Record<string, unknown> {
     recorded: row.usedMs === null ? null : new Date(row.usedMs).toISOString(),
     event: row.event,
     number: row.number,
-    about: row.key,
+    about: row.key ?? placeOf(row),
     before: row.before,
     after: row.after,
     by: row.actor,
@@ -53,8 +53,9 @@ export function journalText(rows: readonly JournalRow[], timeZone: string): stri
 }
 
 /** 'pump-2/de-v overall' of 'limit:pump-2/de-v/overall/overall-fixed-upper'; 'overdue pump-2/de-v' of a trouble. */
-function aboutText({ key }: JournalRow): string {
-  if (key === null) return 'the service';
+function aboutText(row: JournalRow): string {
+  const { key } = row;
+  if (key === null) return placeOf(row) ?? 'the service';
   const limit = /^limit:([^/]+\/[^/]+)\/([^/]+)\//.exec(key);
   if (limit !== null) return `${limit[1]} ${limit[2]}`;
   const trouble = /^trouble:([^:]+):(.*)$/s.exec(key);
@@ -71,7 +72,14 @@ function levelOf({ reason }: JournalRow): string | null {
   return levelText(level, usualDisplayUnit(quantity as Quantity));
 }
 
+/** What a note or an order about baselines is about: a machine or `machine/point`. */
+function placeOf({ reason }: JournalRow): string | null {
+  return typeof reason.place === 'string' ? reason.place : null;
+}
+
 function detailOf({ reason }: JournalRow): string | null {
+  if (typeof reason.note === 'string')
+    return typeof reason.found === 'string' ? `${reason.note}, found: ${reason.found}` : reason.note;
   const detail = reason.detail ?? reason.file;
   return typeof detail === 'string' ? detail : null;
 }

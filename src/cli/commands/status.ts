@@ -2,7 +2,7 @@ import { statSync } from 'node:fs';
 import { printableName } from '../../acquisition/file-name.ts';
 import { durationText } from '../../advisory/time-words.ts';
 import { printNumber } from '../../config/print-value.ts';
-import type { Site } from '../../config/site.ts';
+import { pointPath, type Site } from '../../config/site.ts';
 import { readHealth } from '../../service/health.ts';
 import { type Status, statusOf } from '../../service/status.ts';
 import { isOwned } from '../../store/owner-lock.ts';
@@ -77,6 +77,13 @@ function statusJson(status: Status, site: Site, sizes: Sizes): Record<string, un
       last_arrived: iso(lastArrivedMs),
     })),
     standing: status.standing,
+    limits_not_reckoned: (status.unwatched ?? []).map(({ point, limit, why }) => ({
+      machine: point.machineId,
+      point: point.id,
+      band: limit.bandId,
+      limit: limit.id,
+      why,
+    })),
     drop_folder: health?.dropFolder ?? null,
     files_waiting: health?.filesWaiting ?? null,
     files_unfiled: health?.filesUnfiled ?? null,
@@ -104,6 +111,7 @@ function statusText(status: Status, site: Site, sizes: Sizes, nowMs: number): st
     ['newest recording', newestText(status, ago)],
     ...overdueLines(status, ago),
     ['standing', standingText(status)],
+    ...unwatchedLines(status),
     ...fileLines(status),
     ...mailLines(status, site, ago),
     ['last summary', status.lastSummary === null ? 'none yet' : ago(status.lastSummary.createdMs)],
@@ -152,6 +160,16 @@ function standingText({ standing }: Status): string {
   return danger + alert + trouble === 0
     ? 'nothing'
     : `danger ${danger}, alert ${alert}, trouble ${trouble}; see humledger alarms`;
+}
+
+/** Limits that judge nothing now, so that nobody believes a band is watched that is not. */
+function unwatchedLines({ unwatched }: Status): [string, string][] {
+  const all = unwatched ?? [];
+  const [first] = all;
+  if (first === undefined) return [];
+  const more = all.length === 1 ? '' : `; and ${all.length - 1} more, see humledger check`;
+  const { point, limit, why } = first;
+  return [['not reckoned', `limit ${limit.id} of ${pointPath(point)}: ${why}${more}`]];
 }
 
 function fileLines({ health }: Status): [string, string][] {

@@ -57,7 +57,9 @@ function trend(path: string, bandId: string, options: TrendOptions, io: CommandI
     };
     if (range.fromMs >= range.toMs) return misused(io, '--since does not lie before --until');
     return withLedger(io, site, 'reader', async (ledger) => {
-      const answer = await ledger.read((reader) => trendOfBand(reader, found.point, band, range));
+      const answer = await ledger.read((reader) =>
+        trendOfBand(reader, found.machine, found.point, band, range),
+      );
       if ('unknown' in answer) return fail(io, answer.unknown);
       const shown: ShownTrend = { site, point: found.point, band, trend: answer };
       if (options.json === true) writeJson(io.out, trendJson(shown));

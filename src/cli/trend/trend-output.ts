@@ -1,12 +1,17 @@
 import type { Writable } from 'node:stream';
 import { plain } from '../../advisory/escape.ts';
 import { bareLevel, distanceText, levelText, unitText } from '../../advisory/level-words.ts';
+import { reasonsText } from '../../advisory/limit-words.ts';
 import { printFrequency, printNumber } from '../../config/print-value.ts';
-import { type Band, type Limit, type Point, pointPath, type Site } from '../../config/site.ts';
+import { type Band, type Point, pointPath, type Site } from '../../config/site.ts';
+import { type LimitInForce, limitFactsNow } from '../../service/limits-in-force.ts';
 import type { BandTrend, TrendRow } from '../../service/trend-of-band.ts';
-import { bareUnit, levelJson, limitJson } from '../level-json.ts';
+import type { StoredNote } from '../../store/notes.ts';
+import { bareUnit, levelJson } from '../level-json.ts';
+import { limitFactsJson } from '../limit-json.ts';
 import { csvLine, lineWidth, type Row, table } from '../output.ts';
 import { timeText } from '../when.ts';
+import { noteJson, noteText } from './trend-notes.ts';
 import { type TrendZones, trendZones } from './trend-zones.ts';
 
 /** A band's trend with what it belongs to. */
@@ -15,10 +20,6 @@ export interface ShownTrend {
   readonly point: Point;
   readonly band: Band;
   readonly trend: BandTrend;
-}
-
-function limitsOf({ point, band }: ShownTrend): readonly Limit[] {
-  return point.limits.filter(({ bandId }) => bandId === band.id);
 }
 
 export function trendJson(shown: ShownTrend): Record<string, unknown> {
@@ -30,12 +31,10 @@ export function trendJson(shown: ShownTrend): Record<string, unknown> {
     quantity: band.quantity,
     unit: bareUnit(band.display),
     detector: band.display.detector,
-    limits: limitsOf(shown).map(({ id, kind, side, alert, danger }) => ({
-      limit: id,
-      kind,
-      side,
-      alert: limitJson(alert, band.display),
-      danger: limitJson(danger, band.display),
+    limits: trend.limits.map((inForce) => ({
+      limit: inForce.limit.id,
+      kind: inForce.limit.kind,
+      ...limitFactsJson(limitFactsNow(inForce), band.display),
     })),
     series: trend.series.map(({ id, fromHz, toHz, beganMs, fingerprint }) => ({
       series: id,
@@ -44,6 +43,7 @@ export function trendJson(shown: ShownTrend): Record<string, unknown> {
       to_hz: toHz,
       fingerprint,
     })),
+    notes: trend.notes.map(noteJson),
     levels: trend.rows.map((row) => {
       const { level, interval_low, interval_high } = levelJson(row, band.display);
       return {
@@ -57,6 +57,7 @@ export function trendJson(shown: ShownTrend): Record<string, unknown> {
         machine_state: row.machineState,
         speed_rpm: row.speedRpm,
         load_percent: row.loadPercent,
+        condition: row.condition === '' ? null : row.condition,
         flags: row.flags,
         series: row.seriesId,
       };
@@ -110,7 +111,7 @@ export function writeTrendCsv(out: Writable, { point, band, trend }: ShownTrend)
 export function trendText(shown: ShownTrend): string {
   const { site, point, band, trend } = shown;
   const { display } = band;
-  const limits = limitsOf(shown).map((limit) => limitLine(limit, band));
+  const limits = trend.limits.map((limit) => limitLine(limit, band));
   const zones = trendZones(shown);
   const head = [
     `${pointPath(point)} ${band.id}, ${unitText(display)}; times of ${site.timeZone}`,
@@ -138,31 +139,41 @@ export function trendText(shown: ShownTrend): string {
   ].join('');
 }
 
-function limitLine(limit: Limit, band: Band): string {
+function limitLine(inForce: LimitInForce, band: Band): string {
+  const limit = limitFactsNow(inForce);
+  if (limit.unknown !== undefined) return `${limit.id}: ${reasonsText(limit)}`;
   const parts = (['alert', 'danger'] as const).flatMap((severity) => {
     const value = limit[severity];
     return value === null
       ? []
       : [`${severity} ${limit.side === 'upper' ? 'above' : 'below'} ${levelText(value, band.display)}`];
   });
-  return `${parts.join(', ')} (${limit.id})`;
+  const because = reasonsText(limit);
+  return `${parts.join(', ')} (${limit.id})${because === null ? '' : `: ${because}`}`;
 }
 
 function rowsOf(shown: ShownTrend, zones: TrendZones | null): Row[] {
   const { site, band, trend } = shown;
-  const limits = limitsOf(shown);
-  return trend.rows.flatMap((row) => {
+  const notes = [...trend.notes];
+  const until = (toMs: number): Row[] => {
+    const rows: Row[] = [];
+    while (notes[0] !== undefined && notes[0].atMs <= toMs)
+      rows.push({ beneath: noteText(notes.shift() as StoredNote, site.timeZone) });
+    return rows;
+  };
+  const rows = trend.rows.flatMap((row) => {
     const series: Row[] = row.seriesBreak ? [{ beneath: seriesText(row, trend) }] : [];
     const cells = [
       timeText(row.usedMs, site.timeZone),
       `${row.atLeast ? '>= ' : ''}${bareLevel(row.level, band.display)}`,
       `${bareLevel(row.intervalLow, band.display)} to ${bareLevel(row.intervalHigh, band.display)}`,
-      passedText(row, limits),
+      passedText(row, trend.limitsAt(row)),
       ...(zones === null ? [] : [zones.letterOf(row)]),
       remarksOf(row),
     ];
-    return [...series, cells];
+    return [...until(row.usedMs), ...series, cells];
   });
+  return [...rows, ...until(Number.POSITIVE_INFINITY)];
 }
 
 function seriesText(row: TrendRow, { series }: BandTrend): string {
@@ -172,12 +183,12 @@ function seriesText(row: TrendRow, { series }: BandTrend): string {
 }
 
 /** The most severe limit that the level passes, whatever its delays. */
-function passedText(row: TrendRow, limits: readonly Limit[]): string {
+function passedText(row: TrendRow, limits: readonly LimitInForce[]): string {
   for (const severity of ['danger', 'alert'] as const) {
-    for (const limit of limits) {
-      const value = limit[severity];
-      if (value === null) continue;
-      if (limit.side === 'upper' ? row.level > value : row.level < value)
+    for (const { now } of limits) {
+      const value = 'unknown' in now ? null : now[severity];
+      if ('unknown' in now || value === null) continue;
+      if (now.side === 'upper' ? row.level > value : row.level < value)
         return `${severity}, ${distanceText(row.level, value)}`;
     }
   }
