@@ -33,6 +33,14 @@ function damaged(seed: number, aboveNoiseDb = -3): Uint8Array {
   return wav([hiddenImpacts(seededRandom(seed), { ...impacts, aboveNoiseDb, slip: 0.01 })], 1, rateHz);
 }
 
+/** The largest sample over and over at the top of every tenth of a second, as an overdriven input gives. */
+function clipped(bytes: Uint8Array): Uint8Array {
+  const view = new DataView(bytes.buffer, bytes.byteOffset);
+  const samples = (bytes.length - 44) / 2;
+  for (let n = 0; n < samples; n++) if (n % 2560 < 40) view.setInt16(44 + 2 * n, 32_767, true);
+  return bytes;
+}
+
 async function send(service: TrialService, hour: number, bytes: Uint8Array): Promise<void> {
   service.toHour(hour);
   service.drop(`pump-2_${stamp(beginMs + hour * hourMs)}.wav`, bytes);
@@ -96,5 +104,16 @@ describe('a band chosen by kurtosis', () => {
     expect(winners).toHaveLength(2);
     expect(winners[0]).not.toBeNull();
     expect(winners[1]).toBeNull();
+  });
+
+  it('is not decided while the machine stands still, nor by a clipped recording', async () => {
+    const still = await serviceOn(site({ pump: `running: sidecar\n${choosing}` }));
+    await send(still, 1, damaged(1));
+    expect(await choice(still)).toEqual(expect.objectContaining({ winners: [expect.anything()] }));
+    still.toHour(2);
+    still.drop(`pump-2_${stamp(beginMs + 2 * hourMs)}.json`, '{"running": false}');
+    await send(still, 2, damaged(2));
+    await send(still, 3, clipped(damaged(3)));
+    expect((await choice(still)).winners).toHaveLength(1);
   });
 });
