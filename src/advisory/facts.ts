@@ -108,6 +108,9 @@ export interface StandingFacts {
   readonly acknowledgedMs: number | null;
   /** Shelved or out of service until. */
   readonly suppressedUntilMs: number | null;
+  /** Who shelved it or took it out of service, and why; by design: the condition of the site file that holds. */
+  readonly suppressedBy?: string | null;
+  readonly suppressedWhy?: string | null;
 }
 
 /** An alarm as every list of alarms shows it. */

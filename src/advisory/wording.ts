@@ -113,8 +113,7 @@ const events: Readonly<Partial<Record<JournalEventName, string>>> = {
 
 /** 'unacknowledged', 'acknowledged by K. Example, Tue 1 Dec 2026, 06:30', 'shelved until ...'. */
 export function standingText(facts: StandingFacts, timeZone: string): string {
-  const until =
-    facts.suppressedUntilMs === null ? '' : ` until ${momentText(facts.suppressedUntilMs, timeZone)}`;
+  const held = heldText(facts, timeZone);
   switch (facts.standing) {
     case 'acknowledged':
     case 'latched-acknowledged': {
@@ -127,14 +126,25 @@ export function standingText(facts: StandingFacts, timeZone: string): string {
     case 'latched-unacknowledged':
       return 'back to normal but latched, unacknowledged';
     case 'shelved':
-      return `shelved${until}`;
+      return `shelved${held}`;
     case 'suppressed':
-      return 'suppressed by design';
+      return `suppressed by design${held}`;
     case 'out-of-service':
-      return `out of service${until}`;
+      return `out of service${held}`;
     default:
       return facts.standing;
   }
+}
+
+/** ' until Tue 1 Dec 2026, 06:30, by K. Example: new seal'; ': trouble of pump-2/de-v'. */
+function heldText(
+  { suppressedUntilMs, suppressedBy, suppressedWhy }: StandingFacts,
+  timeZone: string,
+): string {
+  const until = suppressedUntilMs === null ? '' : ` until ${momentText(suppressedUntilMs, timeZone)}`;
+  const by = suppressedBy == null ? '' : `, by ${clip(suppressedBy, longestName)}`;
+  const why = suppressedWhy == null ? '' : `: ${clip(suppressedWhy, 80)}`;
+  return `${until}${by}${why}`;
 }
 
 /** For alarms that no longer exceed and still wait for a person. */

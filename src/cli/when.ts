@@ -20,6 +20,18 @@ export function parseWhen(text: string, nowMs: number, siteZone: string): Parsed
   );
 }
 
+/** A moment to come: a date or time as above, or in how long (`8 h`, `3 d`). */
+export function parseUntil(text: string, nowMs: number, siteZone: string): Parsed<number> {
+  const written = text.trim();
+  const duration = /^\d{4}-/.test(written) ? null : parseDuration(written);
+  const until = duration?.ok ? understood(nowMs + duration.value) : parseWhen(written, nowMs, siteZone);
+  if (!until.ok)
+    return refused(
+      `'${shorten(text)}' is neither a date or time (2026-03-02, 2026-03-02T06:30) nor a time from now (3 d)`,
+    );
+  return until.value > nowMs ? until : refused(`'${shorten(text)}' lies in the past`);
+}
+
 /** '2026-03-02 06:30' in the zone, for tables; what `parseWhen` understands but for its space. */
 export function timeText(ms: number, timeZone: string): string {
   const { year, month, day, hour, minute } = localTime(ms, timeZone);

@@ -4,7 +4,7 @@ import { readMark } from '../store/intake-marks.ts';
 import type { Ledger } from '../store/ledger.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { appendLines, readLines } from '../store/line-log.ts';
-import { type CommandAnswer, commandAlarm, type Person } from './alarm-command.ts';
+import { type AlarmOrder, type CommandAnswer, commandAlarm, type Person } from './alarm-command.ts';
 
 /**
  * What people did to alarms and machines, one line each, beside the ledger and forced to the disk: `data/acts.log`. A
@@ -30,22 +30,27 @@ const mostBytes = 4 * 1024 * 1024;
 /** The answer of `commandAlarm`; `note`: it is done, but could not be written down beside the ledger. */
 export type ActAnswer = CommandAnswer & { readonly note?: string };
 
-const eventOf = { acknowledge: 'acknowledged', reset: 'reset' } as const;
+const eventOf = {
+  acknowledge: 'acknowledged',
+  reset: 'reset',
+  shelve: 'shelved',
+  unshelve: 'unshelved',
+} as const satisfies Readonly<Record<AlarmOrder['kind'], JournalEventName>>;
 
 /** What a person does to an alarm: one transaction, then its line. */
 export async function actOnAlarm(
   ledger: Ledger,
   number: number,
-  command: { readonly kind: keyof typeof eventOf; readonly comment: string | null },
+  order: AlarmOrder,
   person: Person,
 ): Promise<ActAnswer> {
-  const answer = await ledger.transact((writer) => commandAlarm(writer, number, command, person));
+  const answer = await ledger.transact((writer) => commandAlarm(writer, number, order, person));
   if ('refused' in answer) return answer;
   const note = writeAct(ledger, person, {
-    command: `${command.kind} ${number}`,
-    event: eventOf[command.kind],
+    command: `${order.kind} ${number}`,
+    event: eventOf[order.kind],
     key: subjectKey(answer.subject as AlarmSubject),
-    comment: command.comment,
+    comment: order.comment,
   });
   return note === null ? answer : { ...answer, note };
 }

@@ -25,6 +25,7 @@ import {
   type TakenFile,
 } from './taken-file.ts';
 import type { ReadyRecording } from './verdicts.ts';
+import { followAll } from './watch-suppressions.ts';
 
 /**
  * The one transaction of a recording: what it is (identity, version, repeat), when it counts (the logger's clock),
@@ -96,6 +97,8 @@ export async function decide(
     await noteEnvelopeChoices(writer, view, { measurements, evaluated, usedMs: Math.round(time.usedMs) });
   for (const change of await troublesOf(writer, taken, time, source))
     await saveAlarmChange(writer, change, context);
+  if (answer.measurements.some(({ machineId }) => view.namedInSuppressions.has(machineId)))
+    await followAll(writer, view, { ...context, recordingId: null });
   await noteArrivals(writer, view, taken, time, judged);
   await saveSource(writer, sourceAfter(source, taken, time, judged));
   await keepInPlace(writer, view, taken, recordingId);

@@ -5,6 +5,7 @@ import { conditionOf } from '../detection/condition.ts';
 import { subjectsOf } from '../detection/detect.ts';
 import { lowSignal } from '../detection/low-signal.ts';
 import { type MachineMemory, type MachineState, machineStep, readingOf } from '../detection/machine-state.ts';
+import { statesUnder, withBrought } from '../detection/suppression.ts';
 import { type TroubleLook, type TroubleSubject, troubleStep } from '../detection/trouble.ts';
 import type { Measurement } from '../manipulation/measurement.ts';
 import { loadAlarms } from '../store/alarms.ts';
@@ -13,6 +14,7 @@ import type { Reader, Writer } from '../store/lent-connection.ts';
 import { loadMachine, saveMachine } from '../store/sources.ts';
 import { judgePoint, type PointJudged } from './judge-point.ts';
 import type { SiteView } from './site-view.ts';
+import { suppressionsDue } from './suppressions-due.ts';
 
 /**
  * Detection of one recording inside its transaction: earlier states are read here, the pure blocks decide, what they
@@ -75,7 +77,9 @@ async function evaluateMachine(
     const findings = await findingsOfState(writer, view, measured, own.state);
     const measurement =
       findings.length === 0 ? measured : { ...measured, quality: [...measured.quality, ...findings] };
-    const earlier = await statesOf(writer, subjectsOf(point));
+    const subjects = subjectsOf(point);
+    const dueOf = await suppressionsDue(writer, view, [point]);
+    const under = statesUnder(subjects, await statesOf(writer, subjects), dueOf);
     const condition = own.state === 'running' ? conditionOf(machine.conditions ?? [], measured) : null;
     const judged = await judgePoint(writer, {
       ...input,
@@ -84,10 +88,14 @@ async function evaluateMachine(
       machineState: own.state,
       readsStopped: own.readsStopped,
       condition,
-      earlier,
+      earlier: under.states,
     });
+    const { ended } = judged;
+    const [endedChanges, changes] = withBrought(under, ended?.changes ?? [], judged.changes);
     evaluated.push({
       ...judged,
+      ended: ended === null ? null : { ...ended, changes: endedChanges },
+      changes,
       point,
       machineState: own.state,
       condition,

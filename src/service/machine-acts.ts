@@ -15,6 +15,9 @@ import type { Person } from './alarm-command.ts';
  * What people do to a machine or one of its points, not to an alarm: notes, and orders about baselines. One transaction
  * each, with its row in the journal; then its line beside the ledger.
  */
+/** Why nothing can be done to a place. */
+export const siteFileUnknown = 'the ledger knows no site file yet: start the service once';
+
 export interface Place {
   readonly machine: Machine;
   /** Null: the machine with all its points. */
@@ -59,7 +62,7 @@ export async function addNote(
       by: person.by,
       comment: note.comment,
     });
-    await journal(writer, ids, place, person, {
+    await journalPlace(writer, ids, place, person, {
       event: 'note',
       comment: note.comment,
       usedMs: note.atMs,
@@ -67,7 +70,7 @@ export async function addNote(
     });
     return breaks ? learnAgain(writer, ids, place, note.atMs) : 0;
   });
-  if (baselines === null) return { refused: 'the ledger knows no site file yet: start the service once' };
+  if (baselines === null) return { refused: siteFileUnknown };
   const line = { command: `note ${pathOf(place)} ${note.kind}`, event: 'note', key: null } as const;
   return { baselines, note: writeAct(ledger, person, { ...line, comment: note.comment }) };
 }
@@ -100,7 +103,7 @@ export async function orderBaseline(
     if (count === 0) return 0;
     const { comment } = person;
     const usedMs = order.kind === 'learn-again' ? order.fromMs : null;
-    await journal(writer, ids, place, person, {
+    await journalPlace(writer, ids, place, person, {
       event: orders[order.kind],
       comment,
       usedMs,
@@ -108,7 +111,7 @@ export async function orderBaseline(
     });
     return count;
   });
-  if (touched === null) return { refused: 'the ledger knows no site file yet: start the service once' };
+  if (touched === null) return { refused: siteFileUnknown };
   if (touched === 0) return { refused: nothingTo[order.kind] };
   const line = { command: `baseline ${pathOf(place)} --${order.kind}`, event: orders[order.kind], key: null };
   return { baselines: touched, note: writeAct(ledger, person, { ...line, comment: person.comment }) };
@@ -121,7 +124,12 @@ const nothingTo: Readonly<Record<BaselineOrder['kind'], string>> = {
 };
 
 /** All baselines of the place, learned from a time on; returns how many. One that is begun later minds the notes. */
-async function learnAgain(writer: Writer, ids: SiteIds, place: Place, fromMs: number): Promise<number> {
+export async function learnAgain(
+  writer: Writer,
+  ids: SiteIds,
+  place: Place,
+  fromMs: number,
+): Promise<number> {
   const known = await baselinesOf(writer, await seriesOf(writer, ids, place));
   const learnFromMs = Math.round(fromMs);
   for (const { seriesId, conditionId } of known)
@@ -165,7 +173,8 @@ async function seriesOf(writer: Writer, ids: SiteIds, { machine, point }: Place)
   return rows.map(({ id }) => id);
 }
 
-async function journal(
+/** A row of the journal about a place. */
+export async function journalPlace(
   writer: Writer,
   ids: SiteIds,
   place: Place,

@@ -19,7 +19,7 @@ import { needsRestart, putInForce, readSiteFile, type SiteFile, tellWrongSiteFil
 import type { SiteView } from './site-view.ts';
 import { noStep, type Step } from './steps.ts';
 import { WallSteps } from './wall-steps.ts';
-import { watchSilence } from './watch-silence.ts';
+import { Watches } from './watches.ts';
 
 /**
  * The service: the only place that wires the blocks together. It does everything in rounds, so that the daemon
@@ -56,7 +56,7 @@ export class Service {
   readonly #mail: MailRounds;
   readonly #housekeeping: Housekeeping;
   readonly #health: HealthFile;
-  readonly #wallSteps: WallSteps;
+  readonly #watches: Watches;
   #view: SiteView;
 
   /** Opens the ledger as its owner and puts the site file in force; in words why not. */
@@ -135,7 +135,7 @@ export class Service {
       this.#health.alive();
     };
     const tools = { ledger, clock, view, log, complaints: this.#complaints, step };
-    this.#wallSteps = new WallSteps(tools);
+    this.#watches = new Watches({ ...tools, wallSteps: new WallSteps(tools) });
     this.#intake = new Intake({ ...tools, dropFolder: this.#dropFolder, pool: this.#pool, kept, beyond });
     this.#mail = new MailRounds({
       ...tools,
@@ -153,22 +153,10 @@ export class Service {
 
   /** Takes what is ready, looks for silence, keeps house. `holdBacklog` false: what lies there is all there is. */
   async intakeRound(holdBacklog = true): Promise<Round> {
-    await this.#wallSteps.look();
+    await this.#watches.before();
     const round = await this.#intake.round(holdBacklog);
     this.#writeHealth(round);
-    try {
-      await watchSilence(this.ledger, this.#view, {
-        wallMs: Math.round(this.#options.clock.wallMs()),
-        startedMs: this.#wallSteps.startedMs,
-        waitingFor: round.waitingFor,
-        dropFolderReadable: round.dropFolder === 'read',
-      });
-      if (round.waiting === 0 || round.taken === 0) await this.#housekeeping.whenIdle();
-    } catch (error) {
-      if (!(error instanceof LedgerError)) throw error;
-      this.#complaints.say('ledger', error.message);
-    }
-    return round;
+    return this.#watches.after(round, () => this.#housekeeping.whenIdle());
   }
 
   /** A round under way ends soon, with what it has begun; rounds that follow begin nothing. */

@@ -3,6 +3,7 @@ import type { StatedStart } from '../acquisition/recording.ts';
 import { type NamePattern, namePattern, startInName } from '../acquisition/start-in-name.ts';
 import { type Machine, type Point, pointPath, type Site } from '../config/site.ts';
 import type { SiteIds } from '../store/site-ids.ts';
+import { namedBy } from './suppressions-due.ts';
 
 /**
  * The site file in force, with what is looked up for every file worked out once. A reload makes a new one; a decision
@@ -13,6 +14,8 @@ export interface SiteView {
   readonly ids: SiteIds;
   readonly files: SiteFiles;
   readonly points: readonly Point[];
+  /** Machines on whose state or troubles `suppressed_while` of some limit depends. */
+  readonly namedInSuppressions: ReadonlySet<string>;
   machine(id: string): Machine;
   point(path: string): Point | undefined;
   /** The start that the name of a file states, by the pattern of the points that take it. */
@@ -33,6 +36,7 @@ export function siteView(site: Site, ids: SiteIds): SiteView {
     ids,
     files: siteFiles(site),
     points,
+    namedInSuppressions: namedBy(points),
     machine(id) {
       const machine = machines.get(id);
       if (machine === undefined) throw new Error(`no machine ${id} in the site file`);

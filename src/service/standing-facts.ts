@@ -2,8 +2,9 @@ import type { StandingFacts } from '../advisory/facts.ts';
 import { type AlarmStanding, normalState } from '../detection/alarm.ts';
 import { standing } from '../detection/alarm-state.ts';
 import type { StandingLife } from '../store/alarms.ts';
-import { readJournal } from '../store/journal.ts';
 import type { Reader } from '../store/lent-connection.ts';
+import { placesOutOfService } from '../store/suppressions.ts';
+import { suppressionNow } from './suppression-now.ts';
 
 /** What alarms and troubles share: number, state, since when, who took it in hand, by when somebody should respond. */
 
@@ -26,7 +27,8 @@ export async function standingFacts(
   const { alarm, life } = of;
   const state = alarm.number === life.number ? alarm.state : normalState;
   const now = standingOfLife(of);
-  const suppressed = now === 'shelved' || now === 'out-of-service';
+  const held =
+    now === 'normal' ? null : await suppressionNow(reader, alarm, await placesOutOfService(reader));
   return {
     number: life.number,
     standing: now,
@@ -36,17 +38,8 @@ export async function standingFacts(
       told.askedMs === null || told.respondWithinMs === null ? null : told.askedMs + told.respondWithinMs,
     acknowledgedBy: life.acknowledgedBy,
     acknowledgedMs: life.acknowledgedWallMs,
-    suppressedUntilMs: suppressed ? await suppressedUntil(reader, alarm.key, now) : null,
+    suppressedUntilMs: held?.untilMs ?? null,
+    suppressedBy: held?.by ?? null,
+    suppressedWhy: held?.while ?? held?.comment ?? null,
   };
-}
-
-/** The newest journal entry that shelved it or took it out of service says until when: `untilMs` of its reason. */
-async function suppressedUntil(
-  reader: Reader,
-  key: string,
-  event: 'shelved' | 'out-of-service',
-): Promise<number | null> {
-  const rows = await readJournal(reader, { key, limit: 50 });
-  const until = rows.find((row) => row.event === event)?.reason.untilMs;
-  return typeof until === 'number' ? until : null;
 }

@@ -1,6 +1,7 @@
 import type { Ledger } from '../store/ledger.ts';
 import { LedgerError } from '../store/ledger-error.ts';
 import { carryArrivals, noArrivalAfter } from '../store/sources.ts';
+import { carryShelves, noShelfAfter } from '../store/suppressions.ts';
 import type { Clock } from './clock.ts';
 import type { Complaints, Logger } from './log.ts';
 
@@ -8,7 +9,8 @@ import type { Complaints, Logger } from './log.ts';
  * Notices that somebody set the machine's clock while the service runs (or that the machine slept): wall time has gone
  * on by another amount than monotonic time. The arrivals in the ledger, by which silence is judged, are carried over
  * to what the clock shows now. Otherwise a step forward would call every point overdue at once, and after a step back
- * no silence would be noticed before the clock has caught up.
+ * no silence would be noticed before the clock has caught up. Shelves are carried over with them: eight hours stay eight
+ * hours. What is out of service ends at the time that a person named, as the clock shows it.
  *
  * What happens to the clock while the service is off cannot be seen; but no arrival can be one to come.
  */
@@ -59,8 +61,14 @@ export class WallSteps {
     try {
       const carriedMs = this.#uncarriedMs;
       await ledger.transact(async (writer) => {
-        if (carriedMs !== 0) await carryArrivals(writer, carriedMs);
-        if (this.#isFirst) await noArrivalAfter(writer, Math.round(wallMs));
+        if (carriedMs !== 0) {
+          await carryArrivals(writer, carriedMs);
+          await carryShelves(writer, carriedMs);
+        }
+        if (this.#isFirst) {
+          await noArrivalAfter(writer, Math.round(wallMs));
+          await noShelfAfter(writer, Math.round(wallMs));
+        }
       });
       this.#uncarriedMs = 0;
       this.#isFirst = false;

@@ -1,12 +1,14 @@
 import { pointPath } from '../config/site.ts';
 import { subjectKey } from '../detection/alarm.ts';
 import { dropFolderSubject, overdue, overdueSubject } from '../detection/overdue.ts';
+import { statesUnder, withBrought } from '../detection/suppression.ts';
 import type { Ledger } from '../store/ledger.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { saveAlarmChange } from '../store/save-alarm.ts';
 import { arrivalsOf } from '../store/sources.ts';
 import { statesOf } from './evaluate.ts';
 import type { SiteView } from './site-view.ts';
+import { suppressionsDue } from './suppressions-due.ts';
 
 export interface SilenceLook {
   readonly wallMs: number;
@@ -47,7 +49,9 @@ async function changesOf(reader: Reader, view: SiteView, look: SilenceLook) {
     const arrival = arrivals.get(view.ids.pointId(point.machineId, point.id));
     if (arrival !== undefined) lastArrivedMs.set(pointPath(point), arrival.lastArrivedMs);
   }
-  const earlier = await statesOf(reader, [dropFolderSubject, ...view.points.map(overdueSubject)]);
+  const subjects = [dropFolderSubject, ...view.points.map(overdueSubject)];
+  const earlier = await statesOf(reader, subjects);
+  const under = statesUnder(subjects, earlier, await suppressionsDue(reader, view, []));
   const changes = overdue({
     points: view.points,
     lastArrivedMs,
@@ -55,11 +59,12 @@ async function changesOf(reader: Reader, view: SiteView, look: SilenceLook) {
     startedMs: look.startedMs,
     waitingFor: look.waitingFor,
     dropFolderReadable: look.dropFolderReadable,
-    earlier,
+    earlier: under.states,
   });
   // A look that finds the same standing trouble again only counts it; that is not worth a write every few seconds.
-  return changes.filter(({ subject, state, journal }) => {
+  const news = changes.filter(({ subject, state, journal }) => {
     const before = earlier.get(subjectKey(subject));
     return journal.length > 0 || before === undefined || before.condition !== state.condition;
   });
+  return withBrought(under, news).flat();
 }

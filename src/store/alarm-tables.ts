@@ -14,6 +14,24 @@ export interface AlarmStatesTable {
   /** JSON of the whole AlarmState. */
   state: string;
   version: number;
+  /** 1: under a suppression of whatever kind. */
+  suppressed: Generated<number>;
+  /** When it was shelved, until when, by whom and why; null where it is not. */
+  shelved_ms: number | null;
+  shelved_until_ms: number | null;
+  shelved_by: string | null;
+  shelved_comment: string | null;
+}
+
+/** Machines (point_id null) and points taken out of service; a row goes when its time is over. */
+export interface OutOfServiceTable {
+  id: Generated<number>;
+  machine_id: number;
+  point_id: number | null;
+  from_ms: number;
+  until_ms: number;
+  by_name: string;
+  comment: string;
 }
 
 /** One life of an alarm or trouble: from raised to normal again (and acknowledged). */

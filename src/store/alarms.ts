@@ -3,6 +3,7 @@ import type { Severity } from '../config/site.ts';
 import { type AlarmState, type AlarmSubject, normalState } from '../detection/alarm.ts';
 import type { AlarmStatesTable, AlarmsTable } from './alarm-tables.ts';
 import type { Reader } from './lent-connection.ts';
+import type { Shelf } from './suppressions.ts';
 
 /** The record of one limit or one kind of trouble as it is stored. `number`: the life that stands or last stood. */
 export interface StoredAlarm {
@@ -13,6 +14,8 @@ export interface StoredAlarm {
   readonly limitId: number | null;
   readonly number: number | null;
   readonly state: AlarmState;
+  /** Null where it is not shelved. */
+  readonly shelf: Shelf | null;
 }
 
 /** One life of an alarm or trouble. `severity`: the highest it has had. */
@@ -128,7 +131,7 @@ export async function standingOfRetired(reader: Reader): Promise<StoredAlarm[]> 
   return rows.map(storedAlarm);
 }
 
-function storedAlarm(row: Selectable<AlarmStatesTable>): StoredAlarm {
+export function storedAlarm(row: Selectable<AlarmStatesTable>): StoredAlarm {
   return {
     key: row.key,
     subject: JSON.parse(row.subject) as AlarmSubject,
@@ -138,6 +141,15 @@ function storedAlarm(row: Selectable<AlarmStatesTable>): StoredAlarm {
     number: row.number,
     // What a state of an older program lacks is as in the beginning.
     state: { ...normalState, ...(JSON.parse(row.state) as Partial<AlarmState>) },
+    shelf:
+      row.shelved_until_ms === null
+        ? null
+        : {
+            sinceMs: row.shelved_ms ?? row.shelved_until_ms,
+            untilMs: row.shelved_until_ms,
+            by: row.shelved_by ?? '',
+            comment: row.shelved_comment,
+          },
   };
 }
 

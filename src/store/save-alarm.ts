@@ -95,6 +95,8 @@ async function keepLife(
   return { current: number, latest: number };
 }
 
+const noShelf = { shelved_ms: null, shelved_until_ms: null, shelved_by: null, shelved_comment: null };
+
 type SubjectIds = Pick<StoredAlarm, 'machineId' | 'pointId' | 'limitId'>;
 
 async function keepState(
@@ -109,6 +111,8 @@ async function keepState(
     condition: change.state.condition,
     state: jsonOfFinite(change.state),
     version: change.state.version,
+    suppressed: change.state.suppressions.length > 0 ? 1 : 0,
+    ...(change.state.suppressions.includes('shelved') ? {} : noShelf),
   };
   await writer
     .insertInto('alarm_states')

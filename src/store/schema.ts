@@ -5,6 +5,7 @@ import type {
   DeliveriesTable,
   JournalTable,
   MessagesTable,
+  OutOfServiceTable,
   ThreadsTable,
   ToTellTable,
 } from './alarm-tables.ts';
@@ -62,6 +63,7 @@ export interface LedgerTables {
   machine_states: { machine_id: number; state: string; used_ms: number | null; version: number };
   alarm_states: AlarmStatesTable;
   alarms: AlarmsTable;
+  out_of_service: OutOfServiceTable;
   journal: JournalTable;
   to_tell: ToTellTable;
   threads: ThreadsTable;

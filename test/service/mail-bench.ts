@@ -17,6 +17,7 @@ import { insertRecording } from '../../src/store/recordings.ts';
 import { type ChangeContext, saveAlarmChange } from '../../src/store/save-alarm.ts';
 import { syncSite } from '../../src/store/site-ids.ts';
 import { noteArrival } from '../../src/store/sources.ts';
+import { putOutOfService, setShelf } from '../../src/store/suppressions.ts';
 import { insertMeasurement } from '../../src/store/trends.ts';
 import { recordingOf } from '../store/new-recording.ts';
 import { measurementOf, smallSite, type Tree } from '../store/small-site.ts';
@@ -189,6 +190,13 @@ export class MailBench {
       const change = changeOf(subject, state, alarmStep(state, { kind, comment: null, reason }, rule));
       if (change === null) throw new Error(`${kind} changes nothing`);
       await saveAlarmChange(writer, change, { ...this.context(), actor: 'K. Example', via: 'command' });
+      const { key, machineId, pointId } = found.alarm;
+      const { untilMs } = reason;
+      if (typeof untilMs !== 'number') return;
+      const held = { untilMs, by: 'K. Example', comment: 'until the repair' };
+      const fromMs = this.clock.wallMs();
+      if (kind === 'shelve') await setShelf(writer, key, { ...held, sinceMs: fromMs });
+      else await putOutOfService(writer, { ...held, fromMs, machineId: machineId ?? 0, pointId });
     });
   }
 

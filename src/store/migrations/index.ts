@@ -5,6 +5,7 @@ import { baselines } from './002-baselines.ts';
 import { pooling } from './003-pooling.ts';
 import { evidence } from './004-evidence.ts';
 import { envelope } from './005-envelope.ts';
+import { suppressions } from './006-suppressions.ts';
 
 /** One step of the ledger's tables; `number` counts from 1 without gaps, in the order of `migrations`. */
 export interface Migration {
@@ -14,7 +15,7 @@ export interface Migration {
 }
 
 /** In this order; who adds one takes the next number. */
-export const migrations: readonly Migration[] = [first, baselines, pooling, evidence, envelope];
+export const migrations: readonly Migration[] = [first, baselines, pooling, evidence, envelope, suppressions];
 
 interface Now {
   readonly wallMs: number;
