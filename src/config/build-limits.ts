@@ -154,6 +154,19 @@ function buildLimit(
     sayAgainPercent: keys.say_again_at === null ? 25 : keys.say_again_at.value,
     action: keys.action === null ? null : keys.action.value,
     respondWithinMs: keys.respond_within === null ? null : keys.respond_within.value,
+    ...againAndAgain(written),
+  };
+}
+
+/** What is told again without a change of level, where the limit says something of it. */
+function againAndAgain({
+  value: { keys },
+}: WrittenLimit): Pick<Limit, 'sayAgainAfterMs' | 'remindAfterMs' | 'thenTo'> {
+  const { say_again_after: again, remind_after: remind, then_to: next } = keys;
+  return {
+    ...(again === null ? {} : { sayAgainAfterMs: again.value }),
+    ...(remind === null ? {} : { remindAfterMs: remind.value }),
+    ...(next === null ? {} : { thenTo: valuesOf(next) }),
   };
 }
 
@@ -196,6 +209,7 @@ function conditionsOf(
       at,
       `the machine of ${shown} has no operating condition '${value}'`,
       meant === null ? all : reading.write(at, meant),
+      'unknown operating condition',
     );
   }
   return valuesOf(keys.conditions);

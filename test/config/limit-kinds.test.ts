@@ -1,0 +1,97 @@
+/** Kinds of limits in the site file: what each takes, what is refused with its remedy, what the values become. */
+import { describe, expect, it } from 'vitest';
+import { complaints, exampleWith, listedCases, readList, siteOf } from './site-parts.ts';
+
+describe('a kind of limit', () => {
+  const cases = listedCases(readList('limit-kinds.txt'));
+
+  it.each(
+    cases.map(
+      (one) => [one.remark, one.changes[0][1].trim().split('\n').slice(0, 3).join(', '), one] as const,
+    ),
+  )('%s (%s)', (_remark, _text, { changes, expected }) => {
+    expect(complaints(exampleWith(...changes))).toEqual(expected);
+  });
+});
+
+const typed = '        alert: 2.8 mm/s\n        danger: 4.5 mm/s\n        on_delay: 2 recordings';
+const limitOf = (lines: readonly string[], machine = 0) => {
+  const text = exampleWith([typed, lines.map((line) => `        ${line}`).join('\n')]);
+  return siteOf(text).machines[machine]?.points[0]?.limits[0];
+};
+
+describe('the values of a limit', () => {
+  it('are multiples of the baseline, decibels as 20 lg', () => {
+    const limit = limitOf(['kind: baseline', 'alert: +6 dB', 'danger: 4x'], 1);
+    expect(limit).toMatchObject({ id: 'overall-baseline-upper', alert: null, danger: null });
+    expect(limit?.rule).toEqual({ by: 'baseline', alert: expect.closeTo(1.99526, 5), danger: 4 });
+  });
+
+  it('are 4.5 spreads and three recordings in a row unless the site says otherwise', () => {
+    expect(limitOf(['kind: statistical', 'danger: 4.5 mm/s'])).toMatchObject({
+      alert: null,
+      danger: 0.0045,
+      rule: { by: 'spread', alert: 4.5, danger: null },
+      onDelay: { recordings: 3 },
+    });
+  });
+
+  it('may not pass what the standard of the machine advises, else the fixed limit of the band', () => {
+    const learned = limitOf(['kind: statistical']);
+    expect(learned?.ceilings).toMatchObject({
+      alert: { value: 0.0035, why: 'the most that ISO 20816-3 (group 2, rigid) advises (1.25 x B/C)' },
+      danger: { value: 0.005625 },
+    });
+    const both = ['kind: statistical', '', 'danger: 4.5 mm/s'].filter((line) => line !== '');
+    const text = exampleWith([
+      typed,
+      `${both.map((line) => `        ${line}`).join('\n')}\n      - band: overall\n${typed}`,
+    ]);
+    const [, second] = siteOf(text).machines;
+    expect(second?.points[0]?.limits[0]?.ceilings).toEqual({
+      alert: { value: 0.0028, why: "the site's fixed limit" },
+      danger: { value: 0.0045, why: "the site's fixed limit" },
+    });
+    expect(limitOf(['kind: statistical'], 1)?.ceilings).toBeUndefined();
+  });
+
+  it('of a change are 25 % of B/C where the machine has zones', () => {
+    const zones = exampleWith([
+      '    like: [blower-1]',
+      '    zones:\n      standard: iso-20816-3\n      power: 110 kW\n      support: rigid\n    like: [blower-1]',
+    ]).replace(typed, '        kind: change');
+    expect(siteOf(zones).machines[1]?.points[0]?.limits[0]?.rule).toEqual({ by: 'change', alert: 0.0007 });
+  });
+
+  it('of a curve are kept in Hz or percent, in order', () => {
+    const curve = [
+      'kind: curve',
+      'curve:',
+      '  - speed: 1500 rpm',
+      '    alert: 1.8 mm/s',
+      '  - speed: 50 Hz',
+      '    danger: 4.5 mm/s',
+    ];
+    expect(limitOf(curve)?.rule).toEqual({
+      by: 'curve',
+      over: 'speed',
+      values: [
+        { at: 25, alert: 0.0018, danger: null },
+        { at: 50, alert: null, danger: 0.0045 },
+      ],
+    });
+  });
+});
+
+describe('operating conditions', () => {
+  it('are read in order, in Hz and percent, and limits name them', () => {
+    const text = exampleWith([
+      '    criticality: A                  # A | B | C',
+      '    criticality: A\n    conditions:\n      - id: full\n        speed: 2800 rpm..3000 rpm\n      - id: part\n        load: 0 %..60 %',
+    ]);
+    expect(siteOf(text).machines[0]?.conditions).toEqual([
+      { id: 'full', speedHz: { from: expect.closeTo(46.667, 3), to: 50 }, loadPercent: null },
+      { id: 'part', speedHz: null, loadPercent: { from: 0, to: 60 } },
+    ]);
+  });
+});
