@@ -93,6 +93,7 @@ export function levelsOf(question: LevelQuestion): MeasuredLevels {
       averages,
       effectiveAverages: effective,
       usedPercent: density.usedPercent,
+      ...(averaging.detrend === 'linear' ? { detrend: 'linear' as const } : {}),
       segmentSpread: steady?.segmentSpread ?? null,
     },
     levels: question.bands.map((band) => levelOf(question, band, kernel, tones)),

@@ -112,7 +112,8 @@ export class Measurer {
 
   /**
    * The measurement, after `end`, with the running speed of its machine and what is to be said of it. `onDensity` is
-   * shown the density, (SI unit)²/Hz, as the levels were made from it; a measurement keeps it in single precision.
+   * shown the density, (SI unit)²/Hz, as the levels were made from it, or the highest of all segments where people are to
+   * see that; a measurement keeps it in single precision.
    * `angles`: as `overAngles` gave it, fed; its levels take the place of those that a moving speed smears.
    */
   finish(
@@ -135,7 +136,7 @@ export class Measurer {
     const envelope = searched && this.#measureEnvelope(speedHz, atLeast);
     const turned = angles?.finish(atLeast) ?? null;
     const all = [...(levels?.levels ?? []), ...(envelope?.levels ?? []), ...(turned?.levels ?? [])];
-    if (spectrum !== null) onDensity(spectrum.density);
+    if (spectrum !== null) onDensity(result?.highest ?? spectrum.density);
     const own = measureFindings({
       point,
       sampleRateHz,

@@ -109,6 +109,8 @@ export interface Averaging {
   readonly recordings?: number;
   readonly effectiveAverages: number;
   readonly usedPercent: number;
+  /** What was taken off each segment; left out: its mean. */
+  readonly detrend?: 'linear';
   /** Larger of the two steadiness figures as a ratio to its flag's threshold; null below four averages. */
   readonly segmentSpread: number | null;
 }

@@ -69,6 +69,7 @@ function channelJson(
       effective_averages: averaging.effectiveAverages,
       used_percent: averaging.usedPercent,
       segment_spread: averaging.segmentSpread,
+      detrend: averaging.detrend ?? 'mean',
     },
     bands: measurement.levels.map((level) => bandJson(level, displayOf(level, bands))),
     peaks: measurement.peaks.map((peak) => peakJson(peak, measurement.unit)),
@@ -131,6 +132,7 @@ function spectrumJson(measurement: Measurement, density: Float64Array | null) {
   return {
     line_spacing_hz: measurement.averaging.lineSpacingHz,
     unit: `(${measurement.unit})²/Hz`,
+    averaging: measurement.spectrum?.averaging ?? 'power',
     density: Array.from(density),
   };
 }

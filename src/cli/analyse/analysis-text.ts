@@ -102,6 +102,7 @@ function averagingText(averaging: Averaging): string {
     `a line every ${printFrequency(lineSpacingHz)}`,
     `${averages} ${averages === 1 ? 'average' : 'averages'}, worth ${printNumber(effectiveAverages)} independent`,
     `${printNumber(averaging.usedPercent)} % of the recording used`,
+    ...(averaging.detrend === 'linear' ? ['a straight line taken off each segment'] : []),
   ].join('; ');
 }
 
@@ -187,15 +188,16 @@ function peakTable(what: string, peaks: readonly SpectralPeak[], { unit, averagi
   )}${more}`;
 }
 
-function spectrumText({ averaging, unit }: Measurement, density: Float64Array | null): string {
+function spectrumText({ averaging, unit, spectrum }: Measurement, density: Float64Array | null): string {
   if (density === null || averaging === null) return '\n  no spectrum\n';
   const rows = Array.from(density, (value, line) => [
     printNumber(line * averaging.lineSpacingHz, 7),
     printNumber(value, 4),
   ]);
+  const held = spectrum?.averaging === 'peak-hold' ? 'highest density of all segments' : 'density';
   const columns = [
     { title: 'Hz', right: true },
-    { title: `density, (${unit})²/Hz`, right: true },
+    { title: `${held}, (${unit})²/Hz`, right: true },
   ];
   return `\n${indented(table(columns, rows, 78))}`;
 }
