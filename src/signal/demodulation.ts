@@ -38,8 +38,10 @@ export function narrowestBandHz(sampleRateHz: number): number {
 
 /**
  * Block, ends and rate of a demodulation. The square of the envelope of a band of width B reaches up to B; at a rate of
- * at least B + `highestHz` nothing of it folds back below `highestHz`. Of the envelope itself a twelfth reaches further: in
- * noise, folding may add 1 to 2 % to a level there (measured against the envelope at the full rate). Throws a RangeError on a band that cannot be demodulated.
+ * at least B + `highestHz` nothing of it folds back below `highestHz`. Of the envelope itself a twelfth reaches further:
+ * in noise, folding may add 1 to 2 % to a level there (measured against the envelope at the full rate).
+ *
+ * Throws a RangeError on a band that cannot be demodulated.
  */
 export function demodulationOf({
   sampleRateHz,
