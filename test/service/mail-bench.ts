@@ -6,6 +6,7 @@ import { changeOf, type TroubleLook, type TroubleSubject, troubleRule } from '..
 import type { Measurement } from '../../src/manipulation/measurement.ts';
 import { SteppedClock } from '../../src/service/clock.ts';
 import { evaluate, lookAtTrouble } from '../../src/service/evaluate.ts';
+import { learn } from '../../src/service/learn.ts';
 import { Complaints, createLog } from '../../src/service/log.ts';
 import { MailRounds } from '../../src/service/mail-rounds.ts';
 import type { MailTools } from '../../src/service/mail-tools.ts';
@@ -135,14 +136,15 @@ export class MailBench {
           recordingId,
           usedMs,
           machineState: one.machineState,
-          condition: '',
-          runningHours: null,
+          condition: one.condition,
+          runningHours: one.runningHours,
           evaluated: !late,
           inTrend: one.machineState === 'running',
           atAlarm: false,
         });
         for (const change of one.changes)
           await saveAlarmChange(writer, change, this.context(how.fromBacklog ?? false, recordingId));
+        await learn(writer, view, one.point, usedMs);
       }
       const arrival = { arrivedMs: wallMs, usedMs, evaluated: !late };
       await noteArrival(writer, view.ids.pointId(machineId, pointId), arrival);
