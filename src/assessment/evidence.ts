@@ -64,11 +64,13 @@ export function findFaults(
   const findings: Finding[] = [];
   let left = suspects;
   let lines = spectrum.lines;
+  let free: FreeLines | null = null;
   while (left.length > 0) {
-    const free = new FreeLines({ ...spectrum, lines }, shafts);
+    const standing: FreeLines = new FreeLines({ ...spectrum, lines }, shafts, free);
+    free = standing;
     const ranked = left
       .flatMap((suspect) => {
-        const family = findFamily(free, suspect);
+        const family = findFamily(standing, suspect);
         if (family === null) return [];
         return [{ suspect, family, chance: Math.min(1, family.chance * suspects.length * spectra) }];
       })
@@ -78,7 +80,7 @@ export function findFaults(
     if (best === null) break;
     left = left.filter((one) => one !== best.suspect);
     const own = ownFrequencies(best.suspect.part, speed);
-    if (finerComb(free, best.family.hz, best.suspect.sidebandHz, own) !== null) continue;
+    if (finerComb(standing, best.family.hz, best.suspect.sidebandHz, own) !== null) continue;
     const taken = new Set(best.family.lines.map(({ line }) => line));
     lines = lines.filter((line) => !taken.has(line));
     findings.push({

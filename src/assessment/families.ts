@@ -29,6 +29,8 @@ export interface Family {
 /** Harmonics that are looked at; families are tried as their first 2, 3, 5 and 8. */
 const mostHarmonics = 8;
 const spans = [2, 3, 5, 8];
+/** Fundamentals nearer than the tolerance by so many times are one. */
+const sameFundamental = 200;
 /**
  * Families are tried with several spans, at several heights, with and without sidebands, and the best counts. The tries
  * overlap: by trials with lines at random places the best of all is so many times likelier than one (see the tests).
@@ -46,7 +48,14 @@ const triesFactor = 1.5;
  */
 export function findFamily(free: FreeLines, comb: Comb): Family | null {
   let best: Family | null = null;
-  for (const hz of candidates(free, comb)) {
+  const toleranceHz = toleranceLines * free.lineSpacingHz;
+  const tried = new Set<number>();
+  for (const candidateHz of candidates(free, comb)) {
+    const hz = refined(free, candidateHz, toleranceHz);
+    // Each line of a family leads to the same fundamental.
+    const place = Math.round((hz / toleranceHz) * sameFundamental);
+    if (tried.has(place)) continue;
+    tried.add(place);
     const family = scoreFamily(free, comb, hz);
     if (family !== null && (best === null || family.chance < best.chance)) best = family;
   }
@@ -74,9 +83,8 @@ interface Place {
   readonly rank: number;
 }
 
-function scoreFamily(free: FreeLines, comb: Comb, candidateHz: number): Family | null {
+function scoreFamily(free: FreeLines, comb: Comb, hz: number): Family | null {
   const toleranceHz = toleranceLines * free.lineSpacingHz;
-  const hz = refined(free, candidateHz, toleranceHz);
   const places = placesOf(free, hz, comb.sidebandHz, toleranceHz);
   const first = places.find(({ harmonic, sideband }) => harmonic === 1 && sideband === 0);
   if (first !== undefined && first.rank < 0) return null;

@@ -45,8 +45,10 @@ export class FreeLines {
   readonly #shafts: readonly SeenShaft[];
   readonly #byFrequency: readonly number[];
   readonly #crowd: readonly Float64Array[];
+  readonly #free: Float64Array;
 
-  constructor(spectrum: SearchedSpectrum, shafts: readonly SeenShaft[]) {
+  /** `before`: of the same spectrum with more lines; what of the range is free need not be worked out again. */
+  constructor(spectrum: SearchedSpectrum, shafts: readonly SeenShaft[], before: FreeLines | null = null) {
     const { lineSpacingHz, fromHz, toHz } = spectrum;
     this.lineSpacingHz = lineSpacingHz;
     this.fromHz = fromHz;
@@ -60,8 +62,9 @@ export class FreeLines {
       .sort((a, b) => this.lines[a].frequencyHz - this.lines[b].frequencyHz);
     const useful = rungs.filter((rung) => rung < this.lines.length);
     this.rungs = this.lines.length === 0 ? [] : [...useful, this.lines.length];
-    const free = this.#freeWidths();
-    this.#crowd = this.rungs.map((rung) => this.#crowdOf(rung, free));
+    if (before !== null) this.#free = before.#free;
+    else this.#free = this.lines.length === 0 ? new Float64Array(0) : this.#freeWidths();
+    this.#crowd = this.rungs.map((rung) => this.#crowdOf(rung, this.#free));
   }
 
   /** In the range, and told from every harmonic of the shafts. */
