@@ -15,7 +15,10 @@ export function measurementOf(parts: readonly string[]): Measurement {
     const number = Number(/[\d.]+(?!.*\d)/.exec(part)?.[0]);
     const flag = qualityFlags.find((one) => part === `flag ${one}`);
     if (part.startsWith('level ')) level = { ...level, level: number };
-    else if (part.startsWith('80 % over ')) level = { ...level, exceededBy80Percent: number };
+    else if (part.startsWith('interval ')) {
+      const [low, high] = part.slice(9).split(' to ').map(Number);
+      level = { ...level, intervalLow: low, intervalHigh: high };
+    } else if (part.startsWith('80 % over ')) level = { ...level, exceededBy80Percent: number };
     else if (part.startsWith('averages ')) averages = number;
     else if (part === 'at least') level = { ...level, atLeast: true };
     else if (part.startsWith('speed '))
@@ -37,6 +40,11 @@ export function limitOf(parts: readonly string[]): Limit {
       limit = { ...limit, ...zoneLimit(zone[1] ?? '', zone[2] ?? '', zone[3] ?? null) };
       continue;
     }
+    const ruled = ruledLimit(part);
+    if (ruled !== null) {
+      limit = { ...limit, ...ruled };
+      continue;
+    }
     const [, key, number, unit] = /^([a-z -]+?)(?: ([\d.]+) ?(\S+)?)?$/.exec(part) ?? [];
     const value = Number(number);
     const delay: Delay = unit?.startsWith('recording') ? { recordings: value } : { ms: value * hourMs };
@@ -54,6 +62,22 @@ export function limitOf(parts: readonly string[]): Limit {
     limit = { ...limit, ...found };
   }
   return limit;
+}
+
+/** Kinds whose values are learned, confidence, operating conditions; null where the part says none of them. */
+function ruledLimit(part: string): Partial<Limit> | null {
+  const spreads = /^([\d.]+) spreads$/.exec(part);
+  const multiple = /^([\d.]+) times what is usual$/.exec(part);
+  const change = /^change ([\d.]+)$/.exec(part);
+  const conditions = /^in (\S+)$/.exec(part);
+  if (part === 'statistical')
+    return { kind: 'statistical', rule: { by: 'spread', alert: 4.5, danger: null } };
+  if (spreads !== null) return { rule: { by: 'spread', alert: Number(spreads[1]), danger: null } };
+  if (multiple !== null)
+    return { kind: 'baseline', rule: { by: 'baseline', alert: Number(multiple[1]), danger: null } };
+  if (change !== null) return { kind: 'change', rule: { by: 'change', alert: Number(change[1]) } };
+  if (part === 'with confidence') return { confident: true };
+  return conditions === null ? null : { conditions: [conditions[1] ?? ''] };
 }
 
 /** Out of a site file with a limit of kind zone, as the program reads it; here in mm/s like all levels of a story. */
