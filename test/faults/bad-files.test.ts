@@ -102,7 +102,7 @@ describe('a file that is not all there', () => {
     service.drop(pump(0), new Uint8Array(0));
     await service.take();
     await service.after(10 * minuteMs);
-    expect((await service.outcomes())[pump(0)]).toMatch(/^quarantined: .*empty for 600 s/);
+    expect((await service.outcomes())[pump(0)]).toMatch(/^quarantined: .*empty for 10 min/);
   });
 });
 
