@@ -17,6 +17,7 @@ import {
   levelOf,
   morning,
   overall,
+  overallLimit,
   summaryFacts,
   zoneOf,
 } from './sample-facts.ts';
@@ -93,6 +94,9 @@ export const alarm: fc.Arbitrary<AlarmFacts> = fc
     point: p,
     band: { ...overall, id: random.name },
     level: levelOf(2.8e-3 * random.ratio, morning - hour, clipped),
+    limit: clipped
+      ? { ...overallLimit, alert: null, danger: null, unknown: random.text }
+      : { ...overallLimit, reasons: { alert: random.text, danger: null }, confirmedBy: random.name },
     change: random.change,
     action: random.text,
     trend: random.text,
@@ -154,9 +158,18 @@ const pointNow: fc.Arbitrary<PointNow> = fc
     bands: bands.map(([id, level, changed]) => ({
       band: { ...overall, id },
       level: levelOf(level * 1e-3),
-      limits: [danger.limit],
+      limits: [level > 5 ? { ...danger.limit, alert: null, danger: null, unknown: id } : danger.limit],
       change: changed,
       zone: level > 5 ? null : zoneOf('B'),
+      baselines: [
+        {
+          condition: id,
+          state: level > 5 ? ('refused' as const) : ('provisional' as const),
+          runningDays: 9,
+          refused: level > 5 ? id : null,
+          confirmedBy: changed === null ? null : id,
+        },
+      ],
     })),
   }));
 
