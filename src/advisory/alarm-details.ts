@@ -1,6 +1,7 @@
 import { printFrequency, printNumber, printSeconds } from '../config/print-value.ts';
 import { evidenceCaution, evidenceLines } from './evidence-facts.ts';
 import type { AlarmFacts, LineFacts, LinesFacts, OtherPointFacts, RecordingFacts } from './facts.ts';
+import { chatteringSaid } from './history-words.ts';
 import type { Said } from './letter.ts';
 import {
   bareLevel,
@@ -16,6 +17,7 @@ import { reasonsText } from './limit-words.ts';
 import { lineCourse } from './line-changes.ts';
 import { comparedWith } from './ranking.ts';
 import { durationText, momentText } from './time-words.ts';
+import { trendSentence } from './trend-words.ts';
 import { foreign, idText, nameOf, speedOrigin, standingText } from './wording.ts';
 import { zoneSaid } from './zone-words.ts';
 
@@ -37,8 +39,9 @@ export function alarmDetails(alarm: AlarmFacts, timeZone: string, writtenMs: num
       'Since',
       `${momentText(alarm.sinceMs, timeZone)} (${durationText(writtenMs - alarm.sinceMs)}), ${counted(alarm.recordings, 'recording')} beyond the limit`,
     ],
+    ...(alarm.chattering == null ? [] : [['Comes and goes', chatteringSaid(alarm.chattering)] as const]),
     ['Before', beforeDetail(alarm, timeZone)],
-    ...(alarm.trend === null ? [] : [['Trend', foreign(alarm.trend)] as const]),
+    ...trendDetail(alarm, timeZone),
     ...(alarm.lines === null ? [] : linesDetails(withSureOrders(alarm.lines, alarm.recording), timeZone)),
     ...evidenceDetail(alarm),
     ...otherPointsDetail(alarm.otherPoints),
@@ -46,6 +49,12 @@ export function alarmDetails(alarm: AlarmFacts, timeZone: string, writtenMs: num
     ...flagsDetail(alarm.recording),
     ['State', standingText(alarm, timeZone)],
   ];
+}
+
+function trendDetail({ trend, band }: AlarmFacts, timeZone: string): Detail[] {
+  if (trend === null) return [];
+  const said = trendSentence(trend, band.display, timeZone);
+  return [['Trend', `${said.charAt(0).toUpperCase()}${said.slice(1)}`]];
 }
 
 function bandText({ band }: AlarmFacts): string {

@@ -5,7 +5,9 @@ import type { ZoneBoundaries, ZoneLetter } from '../config/zone-tables.ts';
 import type { AlarmStanding, JournalEventName, TroubleKind } from '../detection/alarm.ts';
 import type { Averaging, RunningSpeed } from '../manipulation/measurement.ts';
 import type { EvidenceFacts } from './evidence-facts.ts';
+import type { ChatterFacts } from './history-words.ts';
 import type { Change } from './ranking.ts';
+import type { TrendFacts } from './trend-words.ts';
 
 /**
  * What messages are made from: plain data, read from the ledger by the service and turned into words here.
@@ -113,6 +115,16 @@ export interface StandingFacts {
   readonly suppressedWhy?: string | null;
 }
 
+/** A mail that asks once more for an acknowledgement. */
+export interface ReminderFacts {
+  /** Counts from 1. */
+  readonly number: number;
+  /** When a server took the mail that is not acknowledged. */
+  readonly toldMs: number;
+  /** Who is told as well by now, because reminders have not helped. */
+  readonly thenTo: readonly string[];
+}
+
 /** An alarm as every list of alarms shows it. */
 export interface StandingAlarm extends StandingFacts {
   readonly kind: 'alarm';
@@ -148,6 +160,7 @@ export interface TroubleFacts extends StandingFacts {
   readonly expectedEveryMs: number | null;
   /** 'returned' where the mail tells that it is over. */
   readonly event: JournalEventName;
+  readonly reminder?: ReminderFacts;
 }
 
 /** Everything the alarm mail says of one alarm. */
@@ -155,6 +168,9 @@ export interface AlarmFacts extends StandingAlarm {
   readonly level: LevelFacts;
   /** What this mail tells: raised, rose, said-again, exceeded-came-late, limit-removed, ... */
   readonly event: JournalEventName;
+  readonly reminder?: ReminderFacts;
+  /** Told again because it still stands: who had acknowledged it, and when. */
+  readonly wasAcknowledged?: { readonly by: string; readonly ms: number };
   /** Where the machine has a zone table and the band is of a quantity that it may judge. */
   readonly zone: ZoneFacts | null;
   readonly before: {
@@ -167,8 +183,10 @@ export interface AlarmFacts extends StandingAlarm {
     /** A repair or another sensor, before which no level is compared with this one. */
     readonly broken?: { readonly kind: 'repair' | 'sensor-changed'; readonly atMs: number } | null;
   };
-  /** A sentence of the prognosis, already worded; never a promise. */
-  readonly trend: string | null;
+  /** Set in the one mail that tells that it comes and goes. */
+  readonly chattering?: ChatterFacts | null;
+  /** What the daily levels before say; null: there is no level that it could be of. */
+  readonly trend: TrendFacts | null;
   readonly lines: LinesFacts | null;
   readonly otherPoints: readonly OtherPointFacts[];
   readonly recording: RecordingFacts;

@@ -108,13 +108,14 @@ export interface StatesUnder {
 export function statesUnder(
   subjects: readonly AlarmSubject[],
   earlier: ReadonlyMap<string, AlarmState>,
-  dueOf: (subject: AlarmSubject) => SuppressionsDue,
+  dueOf: (subject: AlarmSubject, state: AlarmState) => SuppressionsDue,
 ): StatesUnder {
   const states = new Map(earlier);
   const brought = new Map<string, readonly AlarmChange[]>();
   for (const subject of subjects) {
     const key = subjectKey(subject);
-    const changes = followSuppressions(subject, earlier.get(key) ?? normalState, dueOf(subject));
+    const before = earlier.get(key) ?? normalState;
+    const changes = followSuppressions(subject, before, dueOf(subject, before));
     const last = changes.at(-1);
     if (last === undefined) continue;
     states.set(key, last.state);

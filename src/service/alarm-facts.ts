@@ -14,6 +14,7 @@ import {
   type StoredMeasurement,
 } from '../store/read-measurements.ts';
 import { seriesOfPoint, type TrendPoint } from '../store/read-trends.ts';
+import { chatterFacts } from './chattering.ts';
 import { evidenceFacts } from './evidence-now.ts';
 import {
   bandFacts,
@@ -29,6 +30,7 @@ import { limitOfLife, limitOfRow } from './limit-of-journal.ts';
 import { limitFactsNow, limitsInForce } from './limits-in-force.ts';
 import type { SiteView } from './site-view.ts';
 import { standingFacts } from './standing-facts.ts';
+import { trendOfLevel } from './trend-facts.ts';
 import { alarmZone } from './zone-facts.ts';
 
 /** From one event of a limit, due to be told, to everything that its mail says. */
@@ -95,7 +97,8 @@ export async function alarmFacts(reader: Reader, view: SiteView, event: UntoldEv
             before: past,
           }),
     before: past,
-    trend: null,
+    chattering: chatterFacts(row?.reason.chattering, limit),
+    trend: await trendOf(reader, view, known, measured),
     lines: measured === null ? null : await linesFacts(reader, point, measured.measurement),
     otherPoints: await otherPoints(reader, view, machine, { pointId: subject.pointId, usedMs }),
     recording: await recordingOf(reader, known, measured, usedMs),
@@ -166,6 +169,19 @@ async function before(
   const everyMs = point === undefined ? 3_600_000 : levelEveryMs(point);
   const { seriesId, conditionId, usedMs } = level;
   return levelsBefore(reader, { pointId, bandId, seriesId, conditionId, usedMs, everyMs });
+}
+
+async function trendOf(
+  reader: Reader,
+  view: SiteView,
+  { point, event }: Known,
+  measured: Measured | null,
+): Promise<AlarmFacts['trend']> {
+  const level = measured?.level;
+  if (point === undefined || measured === null || level === undefined) return null;
+  const { measurement } = measured;
+  const knownUntilMs = Math.max(measurement.usedMs, event.wallMs);
+  return trendOfLevel(reader, view, { point, measurement, level, knownUntilMs });
 }
 
 async function standingOf(

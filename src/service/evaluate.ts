@@ -2,19 +2,17 @@ import type { QualityFinding, QualityFlag } from '../acquisition/recording.ts';
 import type { Point } from '../config/site.ts';
 import { type AlarmChange, type AlarmState, type AlarmSubject, subjectKey } from '../detection/alarm.ts';
 import { conditionOf } from '../detection/condition.ts';
-import { subjectsOf } from '../detection/detect.ts';
 import { lowSignal } from '../detection/low-signal.ts';
 import { type MachineMemory, type MachineState, machineStep, readingOf } from '../detection/machine-state.ts';
-import { statesUnder, withBrought } from '../detection/suppression.ts';
 import { type TroubleLook, type TroubleSubject, troubleStep } from '../detection/trouble.ts';
 import type { Measurement } from '../manipulation/measurement.ts';
 import { loadAlarms } from '../store/alarms.ts';
 import { lastGoodRms } from '../store/good-signals.ts';
 import type { Reader, Writer } from '../store/lent-connection.ts';
 import { loadMachine, saveMachine } from '../store/sources.ts';
-import { judgePoint, type PointJudged } from './judge-point.ts';
+import { judgeHeld } from './judge-held.ts';
+import type { PointJudged } from './judge-point.ts';
 import type { SiteView } from './site-view.ts';
-import { suppressionsDue } from './suppressions-due.ts';
 
 /**
  * Detection of one recording inside its transaction: earlier states are read here, the pure blocks decide, what they
@@ -77,25 +75,17 @@ async function evaluateMachine(
     const findings = await findingsOfState(writer, view, measured, own.state);
     const measurement =
       findings.length === 0 ? measured : { ...measured, quality: [...measured.quality, ...findings] };
-    const subjects = subjectsOf(point);
-    const dueOf = await suppressionsDue(writer, view, [point]);
-    const under = statesUnder(subjects, await statesOf(writer, subjects), dueOf);
     const condition = own.state === 'running' ? conditionOf(machine.conditions ?? [], measured) : null;
-    const judged = await judgePoint(writer, {
+    const judged = await judgeHeld(writer, {
       ...input,
       point,
       measurement,
       machineState: own.state,
       readsStopped: own.readsStopped,
       condition,
-      earlier: under.states,
     });
-    const { ended } = judged;
-    const [endedChanges, changes] = withBrought(under, ended?.changes ?? [], judged.changes);
     evaluated.push({
       ...judged,
-      ended: ended === null ? null : { ...ended, changes: endedChanges },
-      changes,
       point,
       machineState: own.state,
       condition,

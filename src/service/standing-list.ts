@@ -1,19 +1,27 @@
 import type { LimitFacts } from '../advisory/facts.ts';
+import type { ChatterFacts } from '../advisory/history-words.ts';
 import type { Band, Point, Severity, Site } from '../config/site.ts';
 import type { AlarmStanding } from '../detection/alarm.ts';
+import { isLongStanding } from '../detection/alarm-history.ts';
 import { standing } from '../detection/alarm-state.ts';
-import { type StandingLife, standingAlarms } from '../store/alarms.ts';
+import { alarmByNumber, type StandingLife, standingAlarms } from '../store/alarms.ts';
 import { readJournal } from '../store/journal.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { newestInTrend } from '../store/past-levels.ts';
 import { measurementById } from '../store/read-measurements.ts';
 import { readLevels, type TrendPoint } from '../store/read-trends.ts';
+import { placesOutOfService, suppressedAlarms } from '../store/suppressions.ts';
+import { chatterFactsNow } from './chattering.ts';
 import { limitOfLife } from './limit-of-journal.ts';
 import { limitFactsNow, limitsInForce } from './limits-in-force.ts';
 import { readersView } from './readers-view.ts';
 import type { SiteView } from './site-view.ts';
+import { type SuppressionNow, suppressionNow } from './suppression-now.ts';
 
-/** One alarm or trouble that stands, is latched or waits to be acknowledged, with what the site file says of it. */
+/**
+ * One alarm or trouble that stands, is latched, waits to be acknowledged or lies on a shelf, with what the site file says
+ * of it.
+ */
 export interface StandingNow extends StandingLife {
   readonly standing: AlarmStanding;
   /** As it stands for the newest recording. Null where it or its band has left the site file, and for trouble. */
@@ -21,15 +29,21 @@ export interface StandingNow extends StandingLife {
   readonly band: Band | null;
   /** Newest level of the band that belongs to the trend. */
   readonly newest: TrendPoint | null;
+  /** What holds it back. */
+  readonly suppression: SuppressionNow | null;
+  /** It comes and goes. */
+  readonly chattering: ChatterFacts | null;
+  readonly longStanding: boolean;
   /** What was found, of a trouble that says it. */
   readonly detail: string | null;
 }
 
-/** Everything that stands, by number. */
-export async function listStanding(reader: Reader, site: Site): Promise<StandingNow[]> {
+/** Everything that stands, by number; with it what is shelved, also where it has come back meanwhile. */
+export async function listStanding(reader: Reader, site: Site, nowMs: number): Promise<StandingNow[]> {
   const found: StandingNow[] = [];
   const view = await readersView(reader, site);
-  for (const one of await standingAlarms(reader)) {
+  const places = await placesOutOfService(reader);
+  for (const one of await standingOrShelved(reader)) {
     const { alarm, life } = one;
     const { subject } = alarm;
     const point = site.machines
@@ -43,10 +57,27 @@ export async function listStanding(reader: Reader, site: Site): Promise<Standing
       limit: point === undefined || ofLimit === null ? null : await limitNow(reader, view, point, one),
       band: point?.bands.find(({ id }) => id === ofLimit?.bandId) ?? null,
       newest: await newestLevel(reader, alarm),
+      suppression: await suppressionNow(reader, alarm, places),
+      chattering: await chatterFactsNow(
+        reader,
+        alarm,
+        point?.limits.find(({ id }) => id === ofLimit?.limitId),
+      ),
+      longStanding: isLongStanding(alarm.state, nowMs),
       detail: ofLimit === null ? await detailOf(reader, life.number) : null,
     });
   }
   return found;
+}
+
+async function standingOrShelved(reader: Reader): Promise<StandingLife[]> {
+  const lives = await standingAlarms(reader);
+  for (const { number, state } of await suppressedAlarms(reader)) {
+    if (number === null || state.highest !== null || !state.suppressions.includes('shelved')) continue;
+    const found = await alarmByNumber(reader, number);
+    if (found !== null) lives.push(found);
+  }
+  return lives.sort((a, b) => a.life.number - b.life.number);
 }
 
 async function limitNow(

@@ -1,4 +1,6 @@
 import type { Site } from '../config/site.ts';
+import type { AlarmStanding } from '../detection/alarm.ts';
+import { standing } from '../detection/alarm-state.ts';
 import { standingAlarms } from '../store/alarms.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import type { StoredRecording } from '../store/recordings.ts';
@@ -11,6 +13,7 @@ import {
 } from '../store/service-state.ts';
 import { arrivalsOf } from '../store/sources.ts';
 import { readSummary } from '../store/summaries.ts';
+import { type OutOfService, placesOutOfService, suppressedAlarms } from '../store/suppressions.ts';
 import { waitingMail } from '../store/waiting-mail.ts';
 import { type Health, stuckAfterMs } from './health.ts';
 import { type UnwatchedLimit, unwatchedLimits } from './limits-in-force.ts';
@@ -40,6 +43,9 @@ export interface Status {
   readonly newest: StoredRecording | null;
   readonly overdue: readonly OverduePoint[];
   readonly standing: { readonly danger: number; readonly alert: number; readonly trouble: number };
+  /** Of these and of what has come back: how many are held back, by what. */
+  readonly held: { readonly shelved: number; readonly byDesign: number; readonly outOfService: number };
+  readonly outOfService: readonly OutOfService[];
   /** Limits that cannot be reckoned now; null: the ledger has not taken over this text of the site file. */
   readonly unwatched: readonly UnwatchedLimit[] | null;
   readonly mailsWaiting: number;
@@ -63,6 +69,8 @@ export async function statusOf(
   const summary = await readSummary(reader);
   const view = await readersView(reader, site);
   const lives = await standingAlarms(reader);
+  const held = (await suppressedAlarms(reader)).map(({ state }) => standing(state));
+  const heldBy = (what: AlarmStanding) => held.filter((one) => one === what).length;
   const count = (severity: string) => lives.filter((one) => severityNow(one) === severity).length;
   return {
     running,
@@ -75,6 +83,12 @@ export async function statusOf(
     newest: await newestTaken(reader),
     overdue: await overduePoints(reader, lives),
     standing: { danger: count('danger'), alert: count('alert'), trouble: count('trouble') },
+    held: {
+      shelved: heldBy('shelved'),
+      byDesign: heldBy('suppressed'),
+      outOfService: heldBy('out-of-service'),
+    },
+    outOfService: await placesOutOfService(reader),
     unwatched: view === null ? null : await unwatchedLimits(reader, view, nowMs),
     mailsWaiting: (await waitingMail(reader)).count,
     eventsGathered: await countUntold(reader),

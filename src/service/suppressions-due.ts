@@ -1,20 +1,15 @@
 import { type Point, pointPath } from '../config/site.ts';
-import type { AlarmSubject } from '../detection/alarm.ts';
+import type { AlarmState, AlarmSubject } from '../detection/alarm.ts';
+import { type Chatter, heldAsChattering } from '../detection/alarm-history.ts';
 import type { MachineMemory } from '../detection/machine-state.ts';
-import {
-  type Because,
-  heldByDesign,
-  nothingDue,
-  type PlantNow,
-  type SuppressionsDue,
-} from '../detection/suppression.ts';
+import { type Because, heldByDesign, type PlantNow, type SuppressionsDue } from '../detection/suppression.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { loadMachine } from '../store/sources.ts';
 import { type OutOfService, placeOf, placesOutOfService, standingTroubles } from '../store/suppressions.ts';
 import type { SiteView } from './site-view.ts';
 
 /** From the ledger and the site file in force to what holds alarms back at this moment. */
-export type DueOf = (subject: AlarmSubject) => SuppressionsDue;
+export type DueOf = (subject: AlarmSubject, state: AlarmState, chatter?: Chatter | null) => SuppressionsDue;
 
 /** Of all subjects of these points. */
 export async function suppressionsDue(
@@ -31,15 +26,16 @@ export async function suppressionsDue(
       ),
     ),
   );
-  if (places.length === 0 && byLimit.size === 0) return () => nothingDue;
-  return (subject) => {
+  return (subject, state, chatter = null) => {
     const conditions =
       subject.kind === 'limit'
         ? byLimit.get(`${subject.machineId}/${subject.pointId} ${subject.limitId}`)
         : undefined;
     return {
       outOfService: outOfServiceNow(places, subject),
-      byDesign: conditions === undefined ? null : heldByDesign(conditions, plant),
+      byDesign:
+        (conditions === undefined ? null : heldByDesign(conditions, plant)) ??
+        (subject.kind === 'limit' ? heldAsChattering(chatter, state) : null),
     };
   };
 }

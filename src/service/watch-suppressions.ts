@@ -1,3 +1,4 @@
+import type { AlarmChange } from '../detection/alarm.ts';
 import { alarmStep } from '../detection/alarm-state.ts';
 import { followSuppressions, ruleOfCommands } from '../detection/suppression.ts';
 import { changeOf } from '../detection/trouble.ts';
@@ -16,6 +17,7 @@ import {
   shelvesOver,
   suppressedAlarms,
 } from '../store/suppressions.ts';
+import { chatteringAlarms } from './chattering.ts';
 import type { SiteView } from './site-view.ts';
 import { suppressionsDue } from './suppressions-due.ts';
 
@@ -33,7 +35,7 @@ export async function watchSuppressions(
 ): Promise<number | null> {
   const { over, follows, nextMs } = await ledger.read(async (reader) => ({
     over: await isOver(reader, wallMs),
-    follows: await somethingToFollow(reader, view),
+    follows: (await changesDue(reader, view)).length > 0,
     nextMs: await nextEndMs(reader),
   }));
   if (!over && !follows) return nextMs;
@@ -47,11 +49,7 @@ export async function watchSuppressions(
 
 /** Every alarm that stands or is held back comes under what holds now. */
 export async function followAll(writer: Writer, view: SiteView, context: ChangeContext): Promise<void> {
-  const dueOf = await suppressionsDue(writer, view, view.points);
-  for (const { subject, state } of await concerned(writer)) {
-    for (const change of followSuppressions(subject, state, dueOf(subject)))
-      await saveAlarmChange(writer, change, context);
-  }
+  for (const change of await changesDue(writer, view)) await saveAlarmChange(writer, change, context);
 }
 
 async function isOver(reader: Reader, wallMs: number): Promise<boolean> {
@@ -59,11 +57,15 @@ async function isOver(reader: Reader, wallMs: number): Promise<boolean> {
   return nextMs !== null && nextMs <= wallMs;
 }
 
-async function somethingToFollow(reader: Reader, view: SiteView): Promise<boolean> {
+async function changesDue(reader: Reader, view: SiteView): Promise<AlarmChange[]> {
   const alarms = await concerned(reader);
-  if (alarms.length === 0) return false;
+  if (alarms.length === 0) return [];
   const dueOf = await suppressionsDue(reader, view, view.points);
-  return alarms.some(({ subject, state }) => followSuppressions(subject, state, dueOf(subject)).length > 0);
+  const held = alarms.filter(({ state }) => state.suppressions.includes('by-design'));
+  const chattering = await chatteringAlarms(reader, held);
+  return alarms.flatMap(({ key, subject, state }) =>
+    followSuppressions(subject, state, dueOf(subject, state, chattering.get(key))),
+  );
 }
 
 async function concerned(reader: Reader): Promise<StoredAlarm[]> {

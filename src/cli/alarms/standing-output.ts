@@ -1,3 +1,4 @@
+import { chatterAdvice, chatterText, longStandingText } from '../../advisory/history-words.ts';
 import { bareLevel, distanceText, levelText } from '../../advisory/level-words.ts';
 import { reasonsText } from '../../advisory/limit-words.ts';
 import { comparedWith, firstLimit } from '../../advisory/ranking.ts';
@@ -6,6 +7,8 @@ import { inDisplayUnit } from '../../config/print-value.ts';
 import type { Severity } from '../../config/site.ts';
 import type { AlarmSubject } from '../../detection/alarm.ts';
 import { type StandingNow, severityNow } from '../../service/standing-list.ts';
+import type { SuppressionNow } from '../../service/suppression-now.ts';
+import { type OutOfService, placePath } from '../../store/suppressions.ts';
 import { bareUnit } from '../level-json.ts';
 import { limitFactsJson } from '../limit-json.ts';
 import { type Row, table } from '../output.ts';
@@ -24,6 +27,11 @@ export function standingJson(now: StandingNow): Record<string, unknown> {
     condition: state.condition,
     standing: now.standing,
     suppressions: state.suppressions,
+    suppressed_until: isoOrNull(now.suppression?.untilMs ?? null),
+    suppressed_by: now.suppression?.by ?? null,
+    suppressed_why: now.suppression?.while ?? now.suppression?.comment ?? null,
+    chattering: now.chattering !== null,
+    long_standing: now.longStanding,
     machine: subject.machineId,
     point: subject.pointId,
     band: subject.kind === 'limit' ? subject.bandId : null,
@@ -46,7 +54,7 @@ export function standingJson(now: StandingNow): Record<string, unknown> {
 }
 
 /** Danger first, then alert, then trouble, each by number. */
-export function standingText(all: readonly StandingNow[], timeZone: string): string {
+export function standingText(all: readonly StandingNow[], timeZone: string, nowMs: number): string {
   if (all.length === 0) return 'nothing stands\n';
   const order: readonly Severity[] = ['danger', 'alert', 'trouble'];
   const sorted = [...all].sort(
@@ -60,7 +68,7 @@ export function standingText(all: readonly StandingNow[], timeZone: string): str
       timeText(now.alarm.state.sinceMs ?? now.life.raisedWallMs, timeZone),
       now.standing,
     ],
-    ...beneath(now, timeZone).map((text) => ({ beneath: text })),
+    ...[...beneath(now, timeZone), ...beside(now, timeZone, nowMs)].map((text) => ({ beneath: text })),
   ]);
   const columns = [
     { title: 'no', right: true },
@@ -94,6 +102,41 @@ function beneath(now: StandingNow, timeZone: string): string[] {
   }
   const reasons = now.limit === null ? null : reasonsText(now.limit);
   return [levelLine(now, timeZone), ...(reasons === null ? [] : [`limit from: ${reasons}`]), ...acknowledged];
+}
+
+/** What holds it back, and what is wrong with it as an alarm. */
+function beside(
+  { alarm, suppression, chattering, longStanding }: StandingNow,
+  timeZone: string,
+  nowMs: number,
+): string[] {
+  const said: string[] = [];
+  if (suppression !== null) said.push(heldLine(suppression, timeZone));
+  if (chattering !== null) said.push(`${chatterText(chattering)}; ${chatterAdvice(chattering)}`);
+  if (longStanding) said.push(longStandingText(alarm.state.sinceMs ?? nowMs, nowMs));
+  return said;
+}
+
+function heldLine({ untilMs, by, comment, while: condition }: SuppressionNow, timeZone: string): string {
+  if (condition !== null) return `held back by design: ${condition}`;
+  const until = untilMs === null ? '' : ` until ${timeText(untilMs, timeZone)}`;
+  return `held back${until}${by === null ? '' : ` by ${by}`}${comment === null ? '' : `: ${comment}`}`;
+}
+
+/** Machines and points that are out of service, whatever stands there. */
+export function placesText(places: readonly OutOfService[], timeZone: string): string {
+  if (places.length === 0) return '';
+  const rows = places.map((place): Row => {
+    const { untilMs, by, comment } = place;
+    return [placePath(place), timeText(untilMs, timeZone), by, comment];
+  });
+  const columns = [
+    { title: 'out of service', wraps: true },
+    { title: 'until' },
+    { title: 'by', wraps: true },
+    { title: 'why', wraps: true },
+  ];
+  return `\n${table(columns, rows)}`.trimEnd().concat('\n');
 }
 
 function levelLine(now: StandingNow, timeZone: string): string {

@@ -1,9 +1,10 @@
 import { listStanding } from '../../service/standing-list.ts';
 import { readJournal } from '../../store/journal.ts';
+import { placesOutOfService } from '../../store/suppressions.ts';
 import { addActs, wholeNumber } from '../alarms/act-commands.ts';
 import { journalJson, journalText } from '../alarms/journal-output.ts';
 import { addServiceCommands } from '../alarms/service-commands.ts';
-import { standingJson, standingText } from '../alarms/standing-output.ts';
+import { placesText, standingJson, standingText } from '../alarms/standing-output.ts';
 import type { AddCommand, CommandIo, ExitStatus } from '../command.ts';
 import { misused, wallMs, withLedger, withSite } from '../open.ts';
 import { writeJson } from '../output.ts';
@@ -49,9 +50,13 @@ function standing(options: AlarmsOptions, io: CommandIo): Promise<ExitStatus> {
   }
   return withSite(io, options.site, ({ site }) =>
     withLedger(io, site, 'reader', async (ledger) => {
-      const all = await ledger.read((reader) => listStanding(reader, site));
+      const nowMs = wallMs(io);
+      const { all, places } = await ledger.read(async (reader) => ({
+        all: await listStanding(reader, site, nowMs),
+        places: await placesOutOfService(reader),
+      }));
       if (options.json === true) writeJson(io.out, all.map(standingJson));
-      else io.out.write(standingText(all, site.timeZone));
+      else io.out.write(standingText(all, site.timeZone, nowMs) + placesText(places, site.timeZone));
       return 0;
     }),
   );

@@ -6,6 +6,7 @@ import { pointPath, type Site } from '../../config/site.ts';
 import { readHealth } from '../../service/health.ts';
 import { type Status, statusOf } from '../../service/status.ts';
 import { isOwned } from '../../store/owner-lock.ts';
+import { placePath } from '../../store/suppressions.ts';
 import type { AddCommand, CommandIo, ExitStatus } from '../command.ts';
 import { wallMs, withLedger, withSite } from '../open.ts';
 import { listing, writeJson } from '../output.ts';
@@ -77,6 +78,18 @@ function statusJson(status: Status, site: Site, sizes: Sizes): Record<string, un
       last_arrived: iso(lastArrivedMs),
     })),
     standing: status.standing,
+    held_back: {
+      shelved: status.held.shelved,
+      suppressed: status.held.byDesign,
+      out_of_service: status.held.outOfService,
+    },
+    out_of_service: status.outOfService.map(({ machine, point, untilMs, by, comment }) => ({
+      machine,
+      point,
+      until: iso(untilMs),
+      by,
+      comment,
+    })),
     limits_not_reckoned: (status.unwatched ?? []).map(({ point, limit, why }) => ({
       machine: point.machineId,
       point: point.id,
@@ -111,6 +124,7 @@ function statusText(status: Status, site: Site, sizes: Sizes, nowMs: number): st
     ['newest recording', newestText(status, ago)],
     ...overdueLines(status, ago),
     ['standing', standingText(status)],
+    ...outOfServiceLines(status, site),
     ...unwatchedLines(status),
     ...fileLines(status),
     ...mailLines(status, site, ago),
@@ -155,11 +169,18 @@ function overdueLines({ overdue }: Status, ago: Ago): [string, string][] {
   ]);
 }
 
-function standingText({ standing }: Status): string {
+function standingText({ standing, held }: Status): string {
   const { danger, alert, trouble } = standing;
-  return danger + alert + trouble === 0
-    ? 'nothing'
-    : `danger ${danger}, alert ${alert}, trouble ${trouble}; see humledger alarms`;
+  const heldBack = [
+    [held.shelved, 'shelved'],
+    [held.byDesign, 'by design'],
+    [held.outOfService, 'out of service'],
+  ] as const;
+  const beside = heldBack.filter(([count]) => count > 0).map(([count, words]) => `${count} ${words}`);
+  const counts =
+    danger + alert + trouble === 0 ? [] : [`danger ${danger}, alert ${alert}, trouble ${trouble}`];
+  const said = [...counts, ...(beside.length === 0 ? [] : [`held back ${beside.join(', ')}`])];
+  return said.length === 0 ? 'nothing' : `${said.join('; ')}; see humledger alarms`;
 }
 
 /** Limits that judge nothing now, so that nobody believes a band is watched that is not. */
@@ -170,6 +191,13 @@ function unwatchedLines({ unwatched }: Status): [string, string][] {
   const more = all.length === 1 ? '' : `; and ${all.length - 1} more, see humledger check`;
   const { point, limit, why } = first;
   return [['not reckoned', `limit ${limit.id} of ${pointPath(point)}: ${why}${more}`]];
+}
+
+function outOfServiceLines({ outOfService }: Status, site: Site): [string, string][] {
+  return outOfService.map((place, n) => [
+    n === 0 ? 'out of service' : '',
+    `${placePath(place)} until ${timeText(place.untilMs, site.timeZone)}, by ${place.by}: ${place.comment}`,
+  ]);
 }
 
 function fileLines({ health }: Status): [string, string][] {
