@@ -98,7 +98,14 @@ export async function alarmFacts(reader: Reader, view: SiteView, event: UntoldEv
           }),
     before: past,
     chattering: chatterFacts(row?.reason.chattering, limit),
-    trend: await trendOf(reader, view, known, measured),
+    trend:
+      point === undefined || measured === null
+        ? null
+        : await trendOfLevel(reader, view, {
+            point,
+            ...measured,
+            knownUntilMs: Math.max(usedMs, event.wallMs),
+          }),
     lines: measured === null ? null : await linesFacts(reader, point, measured.measurement),
     otherPoints: await otherPoints(reader, view, machine, { pointId: subject.pointId, usedMs }),
     recording: await recordingOf(reader, known, measured, usedMs),
@@ -169,19 +176,6 @@ async function before(
   const everyMs = point === undefined ? 3_600_000 : levelEveryMs(point);
   const { seriesId, conditionId, usedMs } = level;
   return levelsBefore(reader, { pointId, bandId, seriesId, conditionId, usedMs, everyMs });
-}
-
-async function trendOf(
-  reader: Reader,
-  view: SiteView,
-  { point, event }: Known,
-  measured: Measured | null,
-): Promise<AlarmFacts['trend']> {
-  const level = measured?.level;
-  if (point === undefined || measured === null || level === undefined) return null;
-  const { measurement } = measured;
-  const knownUntilMs = Math.max(measurement.usedMs, event.wallMs);
-  return trendOfLevel(reader, view, { point, measurement, level, knownUntilMs });
 }
 
 async function standingOf(

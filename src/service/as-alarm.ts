@@ -10,6 +10,7 @@ import { bandFacts, machineFacts, pointFacts, siteFacts } from './fact-names.ts'
 import { levelFacts, levelsBefore, linesFacts, otherPoints, recordingFacts } from './level-facts.ts';
 import { type LimitInForce, limitFactsNow, limitsInForce } from './limits-in-force.ts';
 import type { SiteView } from './site-view.ts';
+import { trendOfLevel } from './trend-facts.ts';
 import { alarmZone } from './zone-facts.ts';
 
 /**
@@ -112,7 +113,7 @@ async function alarmOf(reader: Reader, view: SiteView, subject: Subject): Promis
     action: limit.action,
     zone: await alarmZone(reader, view, { machine, point, bandId: limit.bandId, measurement, before }),
     before,
-    trend: null,
+    trend: await trendOfLevel(reader, view, { point, measurement, level, knownUntilMs: usedMs }),
     lines: await linesFacts(reader, point, measurement),
     otherPoints: await otherPoints(reader, view, machine, { pointId: point.id, usedMs }),
     recording: await recordingFacts(reader, measurement, { late: false, fromBacklog: false }),

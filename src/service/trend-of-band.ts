@@ -1,11 +1,13 @@
+import type { TrendFacts } from '../advisory/trend-words.ts';
 import { type Band, type Machine, type Point, pointPath } from '../config/site.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { notesOf, type StoredNote } from '../store/notes.ts';
-import { measurementById } from '../store/read-measurements.ts';
+import { measurementById, type StoredMeasurement } from '../store/read-measurements.ts';
 import { readLevels, type Series, seriesOfPoint, type TrendPoint } from '../store/read-trends.ts';
 import { type TrendMarks, trendMarks } from '../store/trend-marks.ts';
-import { type LimitInForce, limitsOfStored } from './limits-in-force.ts';
+import { type LimitInForce, limitFactsNow, limitsOfStored } from './limits-in-force.ts';
 import { limitsOverTime } from './limits-over-time.ts';
+import { daysOfPoint, trendsOfBands } from './trend-facts.ts';
 
 /** One level of a band's trend, with what stands beside it. */
 export interface TrendRow extends TrendPoint, TrendMarks {
@@ -21,6 +23,8 @@ export interface BandTrend {
   readonly notes: readonly StoredNote[];
   /** The band's limits as they stand for the newest row of the trend. */
   readonly limits: readonly LimitInForce[];
+  /** What the days up to the newest row say; null: no row is in the trend. */
+  readonly trend: TrendFacts | null;
   /** The same for any row, but for rates, which judge the line through many. */
   readonly limitsAt: (row: TrendRow) => readonly LimitInForce[];
   /** There are older rows than `limit` allowed. */
@@ -33,7 +37,12 @@ export async function trendOfBand(
   machine: Machine,
   point: Point,
   band: Band,
-  range: { readonly fromMs: number; readonly toMs: number; readonly limit: number },
+  range: {
+    readonly fromMs: number;
+    readonly toMs: number;
+    readonly limit: number;
+    readonly timeZone: string;
+  },
 ): Promise<BandTrend | { readonly unknown: string }> {
   const ids = await idsOf(reader, point, band);
   if (ids === null) {
@@ -64,15 +73,28 @@ export async function trendOfBand(
   });
   const limitsAt = await limitsOverTime(reader, { machine, point, band, seriesIds: [...used] });
   const newest = rows.findLast(({ inTrend }) => inTrend);
+  const measurement = newest === undefined ? null : await measurementById(reader, newest.measurementId);
   const all = await limitsOfStored(reader, {
     machine,
     point,
-    measurement: newest === undefined ? null : await measurementById(reader, newest.measurementId),
+    measurement,
     bandIds: new Map([[ids.bandId, band.id]]),
     machineLedgerId: ids.machineId,
   });
   const limits = all.filter(({ limit }) => limit.bandId === band.id);
-  return { rows, series, notes, limits, limitsAt, cut: found.length > range.limit };
+  return {
+    rows,
+    series,
+    notes,
+    limits,
+    trend: await trendBehind(reader, measurement, newest, {
+      limits,
+      toMs: range.toMs,
+      timeZone: range.timeZone,
+    }),
+    limitsAt,
+    cut: found.length > range.limit,
+  };
 }
 
 /** Null where the ledger has not taken over a site file with that band. */
@@ -94,4 +116,23 @@ async function idsOf(
     .where('bands.retired_ms', 'is', null)
     .executeTakeFirst();
   return row ?? null;
+}
+
+async function trendBehind(
+  reader: Reader,
+  measurement: StoredMeasurement | null,
+  row: TrendRow | undefined,
+  about: {
+    readonly limits: readonly LimitInForce[];
+    readonly toMs: number;
+    readonly timeZone: string;
+  },
+): Promise<TrendFacts | null> {
+  if (measurement === null || row === undefined) return null;
+  const { usedMs, runningHours, pointId } = measurement;
+  const newest = { usedMs, runningHours, levels: [row] };
+  const { timeZone } = about;
+  const days = await daysOfPoint(reader, { pointId, newest, knownUntilMs: about.toMs, timeZone });
+  const trends = await trendsOfBands(reader, days, newest, () => about.limits.map(limitFactsNow));
+  return trends.get(row.bandId) ?? null;
 }

@@ -1,3 +1,4 @@
+import { sql } from 'kysely';
 import type { DailyLevelsTable } from './baseline-tables.ts';
 import type { Reader, Writer } from './lent-connection.ts';
 import { insertRows } from './many-rows.ts';
@@ -171,4 +172,50 @@ export async function dailyLevels(
     median: row.median,
     greatest: row.greatest,
   }));
+}
+
+/** The middle of a day of one band, series and operating condition. SI r.m.s. */
+export type DayMedian = Pick<
+  DailyLevel,
+  'bandId' | 'seriesId' | 'conditionId' | 'day' | 'usedMs' | 'runningHours' | 'median'
+>;
+
+/**
+ * Days of some series of a point in [fromDay, toDay), in all operating conditions, oldest first. One query: every series
+ * and condition is found by its key, so that the years before cost nothing.
+ */
+export async function mediansOfPoint(
+  reader: Reader,
+  range: {
+    readonly pointId: number;
+    readonly series: readonly { readonly bandId: number; readonly seriesId: number }[];
+    readonly fromDay: number;
+    readonly toDay: number;
+  },
+): Promise<DayMedian[]> {
+  const { pointId, series, fromDay, toDay } = range;
+  if (series.length === 0) return [];
+  const bandIds = [...new Set(series.map(({ bandId }) => bandId))];
+  const seriesIds = [...new Set(series.map(({ seriesId }) => seriesId))];
+  const conditionIds = sql<number>`(select 0 union all select conditions.id from conditions
+    join points on points.machine_id = conditions.machine_id where points.id = ${pointId})`;
+  return reader
+    .selectFrom('daily_levels')
+    .select([
+      'band_id as bandId',
+      'series_id as seriesId',
+      'condition_id as conditionId',
+      'day',
+      'used_ms as usedMs',
+      'running_hours as runningHours',
+      'median',
+    ])
+    .where('point_id', '=', pointId)
+    .where('band_id', 'in', bandIds)
+    .where('series_id', 'in', seriesIds)
+    .where('condition_id', 'in', conditionIds)
+    .where('day', '>=', fromDay)
+    .where('day', '<', toDay)
+    .orderBy('day')
+    .execute();
 }

@@ -18,6 +18,7 @@ import {
   morning,
   overall,
   overallLimit,
+  rising,
   summaryFacts,
   zoneOf,
 } from './sample-facts.ts';
@@ -99,7 +100,7 @@ export const alarm: fc.Arbitrary<AlarmFacts> = fc
       : { ...overallLimit, reasons: { alert: random.text, danger: null }, confirmedBy: random.name },
     change: random.change,
     action: random.text,
-    trend: random.text,
+    trend: { ...rising, condition: random.text },
     evidence: [
       { grade: 'weak', words: random.name },
       { grade: 'strong', words: random.text },

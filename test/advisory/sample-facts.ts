@@ -10,6 +10,7 @@ import type {
   ZoneFacts,
 } from '../../src/advisory/facts.ts';
 import type { BandNow, PointNow, SummaryFacts } from '../../src/advisory/summary-facts.ts';
+import type { TrendFacts } from '../../src/advisory/trend-words.ts';
 import { displayUnit, usualDisplayUnit } from '../../src/config/units.ts';
 
 /** An invented site on an invented morning, as facts. */
@@ -91,6 +92,34 @@ export function levelOf(level: number, usedMs = morning - hour / 2, atLeast = fa
     atLeast,
   };
 }
+
+/** A level that has grown for a month and would go on to its danger limit. */
+export const rising: TrendFacts = {
+  trend: {
+    kind: 'rising',
+    days: 30,
+    fromMs: morning - 30.5 * day,
+    toMs: morning - 0.5 * day,
+    p: 2.1e-7,
+    growth: 1.64,
+    growthPerDay: 1.017,
+    growthPerDayLow: 1.012,
+    growthPerDayHigh: 1.022,
+    levelNow: 3.1e-3,
+    confidencePercent: 90,
+    line: { x: 360, y: -6.03, slope: 7e-4, yVariance: 4e-4, slopeVariance: 1e-8 },
+    runningHoursNow: 720,
+  },
+  time: 'running',
+  condition: '',
+  broken: null,
+  ahead: {
+    limit: 'overall-fixed-upper',
+    severity: 'danger',
+    at: 4.5e-3,
+    time: { days: 9.2, earliestDays: 6.1, latestDays: 15.6, confidencePercent: 90 },
+  },
+};
 
 const unacknowledged = {
   standing: 'unacknowledged',
@@ -195,7 +224,7 @@ export const alert: AlarmFacts = {
   sinceMs: morning - 5 * hour,
   change: null,
   before: { last: [], dayBefore: null, weekBefore: null, baseline: null },
-  trend: 'Grew by 4 % a day over 30 days; if that went on, danger would be reached in 9 to 15 days.',
+  trend: rising,
   lines: null,
   otherPoints: [],
   recording: {

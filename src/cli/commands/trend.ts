@@ -53,6 +53,7 @@ function trend(path: string, bandId: string, options: TrendOptions, io: CommandI
     const range = {
       fromMs: since?.value ?? Number.MIN_SAFE_INTEGER,
       toMs: until?.value ?? Number.MAX_SAFE_INTEGER,
+      timeZone: site.timeZone,
       limit: forPeople && since === null ? usualRows : mostRows,
     };
     if (range.fromMs >= range.toMs) return misused(io, '--since does not lie before --until');

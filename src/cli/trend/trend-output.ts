@@ -11,6 +11,7 @@ import { bareUnit, levelJson } from '../level-json.ts';
 import { limitFactsJson } from '../limit-json.ts';
 import { csvLine, lineWidth, type Row, table } from '../output.ts';
 import { timeText } from '../when.ts';
+import { trendLineJson, trendLineText } from './trend-line.ts';
 import { noteJson, noteText } from './trend-notes.ts';
 import { type TrendZones, trendZones } from './trend-zones.ts';
 
@@ -43,6 +44,7 @@ export function trendJson(shown: ShownTrend): Record<string, unknown> {
       to_hz: toHz,
       fingerprint,
     })),
+    trend: trendLineJson(trend.trend, band.display),
     notes: trend.notes.map(noteJson),
     levels: trend.rows.map((row) => {
       const { level, interval_low, interval_high } = levelJson(row, band.display);
@@ -117,6 +119,7 @@ export function trendText(shown: ShownTrend): string {
     `${pointPath(point)} ${band.id}, ${unitText(display)}; times of ${site.timeZone}`,
     ...(limits.length === 0 ? ['no limit: this band can never alarm'] : limits),
     ...(zones === null ? [] : [zones.headline]),
+    ...(trend.trend === null ? [] : trendLineText(trend.trend, display, site.timeZone)),
   ];
   const lines = head.map((line) => `${plain(line)}\n`);
   if (trend.rows.length === 0) return `${lines.join('')}no level in this time\n`;
