@@ -154,7 +154,7 @@ function otherPointsDetail(points: readonly OtherPointFacts[]): Detail[] {
   const ranked = [...points].sort((a, b) => (b.share ?? -1) - (a.share ?? -1));
   const said = ranked.slice(0, mostPoints).map(({ point, band, level, share }) => {
     if (band === null || level === null) return `${nameOf(point)}: no level`;
-    const used = share === null ? 'no limit' : `${percentText(share)} of alert`;
+    const used = share === null ? 'no limit in force' : `${percentText(share)} of alert`;
     return `${nameOf(point)}: ${idText(band.id)} ${measuredText(level, band.display)}, ${used}`;
   });
   const rest = points.length - mostPoints;

@@ -72,7 +72,7 @@ function worseText({ now }: Worse): string {
   const usual = now.change === null ? '' : ` (ordinary spread ${percentText(now.change.ordinaryRatio - 1)})`;
   if (now.level === null) return `${idText(now.band.id)} ${change}${usual}`;
   const share = largestShare(now.level.level, now.limits);
-  const used = share === null ? 'no limit' : `${percentText(share)} of the alert limit`;
+  const used = share === null ? 'no limit in force' : `${percentText(share)} of the alert limit`;
   const significant = now.zone === null ? null : zoneChangeText(now.zone, now.band.display);
   const byStandard = significant === null ? '' : `; ${significant}`;
   return `${idText(now.band.id)} ${change} on the week${usual}, now ${measuredText(now.level, now.band.display)}, ${used}${byStandard}`;

@@ -158,7 +158,8 @@ function bandCells({ band, level, limits, change, zone }: BandNow, from: string)
     const used = limits
       .filter((limit) => limit[severity] !== null)
       .map((limit) => shareOfAlert(level.level, { ...limit, alert: limit[severity] }) ?? 0);
-    return used.length === 0 ? 'none' : percentText(Math.max(...used));
+    if (used.length > 0) return percentText(Math.max(...used));
+    return limits.some(({ unknown }) => unknown !== undefined) ? 'not reckoned' : 'none';
   });
   const changed = change === null ? '' : `${changeText(change.ratio)}${change.worse ? ', worse' : ''}`;
   const said = `${value} ${interval}`;

@@ -5,6 +5,7 @@ import { reasonsText } from '../../src/advisory/limit-words.ts';
 import { largestShare, shareOfAlert } from '../../src/advisory/ranking.ts';
 import type { BaselineNow, PointNow, SummaryFacts } from '../../src/advisory/summary-facts.ts';
 import { learnedLines } from '../../src/advisory/summary-limits.ts';
+import { summaryMail } from '../../src/advisory/summary-mail.ts';
 import {
   bearing,
   blower,
@@ -129,6 +130,13 @@ describe('learned limits in the summary', () => {
       "Baselines refused, no limit is reckoned from them: Aeration blower 1, drive end, vertical (bearing, full): it lies in zone C or D. See 'humledger baseline blower-1'; confirm, or have it learned again.",
       'Baseline confirmed by M. Example: Aeration blower 1, drive end, vertical (bearing, part).',
     ]);
+  });
+
+  it('stand as not reckoned in the table, where a band without limits has none', () => {
+    const facts = { ...summaryFacts, points: [at(driveH, [unknown], []), at(driveV, [], [])] };
+    const table = summaryMail(facts as SummaryFacts).text.split('\n');
+    expect(table.find((line) => line.includes('horizontal, overall'))).toMatch(/not reckoned +not reckoned/);
+    expect(table.find((line) => line.includes('vertical, bearing'))).toMatch(/none +none/);
   });
 
   it('of a whole site that is new take a line a reason, not a line a band', () => {
