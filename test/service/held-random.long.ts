@@ -1,0 +1,1 @@
+import './held-random.test.ts';
