@@ -1,5 +1,6 @@
 /** Short recordings that are averaged together, from the drop folder to the alarm. */
 import { describe, expect, it } from 'vitest';
+import { newestMeasurement } from '../../src/store/read-measurements.ts';
 import {
   beginMs,
   fullScale,
@@ -79,6 +80,16 @@ describe('three recordings averaged together', () => {
     ]);
     expect(rows.every(({ rms }) => Number(rms) > 0.9)).toBe(true);
     expect(await service.rows('spectra', 'used_ms')).toHaveLength(1);
+  });
+
+  it('leave the newest levels of the point in sight while the next recordings wait', async () => {
+    const service = await trial(three);
+    for (let n = 0; n < 5; n++) await hour(service, n, 1);
+    const [{ point_id }] = await service.rows('levels', 'point_id');
+    const newest = (only: { readonly waiting?: boolean }) =>
+      service.service.ledger.read((reader) => newestMeasurement(reader, Number(point_id), only));
+    expect(await newest({})).toMatchObject({ usedMs: beginMs + 2 * hourMs, averaging: { recordings: 3 } });
+    expect(await newest({ waiting: true })).toMatchObject({ usedMs: beginMs + 4 * hourMs, averaging: null });
   });
 
   it('raise an alarm by the level of the pool, each pool counting as one for the on-delay', async () => {
