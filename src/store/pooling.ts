@@ -1,6 +1,5 @@
 import type { Measurement } from '../manipulation/measurement.ts';
 import type { Pool, PooledEnvelope } from '../manipulation/pooling.ts';
-import type { AveragedDensity } from '../signal/averaging.ts';
 import { jsonOfFinite } from './journal.ts';
 import type { Reader, Writer } from './lent-connection.ts';
 import { doubleBytes, doublesOf } from './spectra.ts';
@@ -16,7 +15,7 @@ export interface OpenPool {
 }
 
 /** A density without its lines, which are kept in double precision beside the facts. */
-type Lines = Omit<AveragedDensity, 'density'>;
+type Lines = Omit<Pool['density'], 'density'>;
 
 /** The newest recording of a pool, as the pool is judged by it when it ends early. */
 export interface PoolNewest {
@@ -96,7 +95,7 @@ export async function savePool(writer: Writer, pointId: number, open: OpenPool):
     .execute();
 }
 
-function withoutLines({ density: _, ...lines }: AveragedDensity): Lines {
+function withoutLines({ density: _, ...lines }: Pool['density']): Lines {
   return lines;
 }
 
