@@ -82,9 +82,9 @@ export function subjectLine(text: string): string {
   return clip(plain(text).replace(/ {2,}/g, ' ').trim(), longestSubject);
 }
 
-type Item = AlarmFacts | TroubleFacts;
+export type Item = AlarmFacts | TroubleFacts;
 
-function severityOf(item: Item): Severity {
+export function severityOf(item: Item): Severity {
   return item.kind === 'alarm' ? item.severity : 'trouble';
 }
 
@@ -100,7 +100,7 @@ function inOrder(facts: AlarmMailFacts): Item[] {
 }
 
 /** What is over needs nobody and stands last. A level that came late, and a removed limit, never stand and are news. */
-function isOver(item: Item): boolean {
+export function isOver(item: Item): boolean {
   if (item.event === 'exceeded-came-late' || item.event === 'limit-removed') return false;
   return item.event === 'returned' || item.standing === 'normal';
 }
@@ -110,15 +110,18 @@ export function alarmLetter(facts: AlarmMailFacts): Letter {
   const { timeZone } = facts.site;
   const blocks: Block[] = [];
   const first = items[0];
-  const lead = first === undefined ? 'Nothing to do.' : `${whatToDo(first)}${respondText(first, facts)}`;
+  const lead =
+    first === undefined
+      ? 'Nothing to do.'
+      : `${remindText(first)}${whatToDo(first)}${respondText(first, facts)}`;
   if (items.length > 1) {
-    blocks.push(...items.map((item) => findingOf(item, facts.test)), {
+    blocks.push(...items.map((item) => findingOf(item, timeZone, facts.test)), {
       kind: 'heading',
       text: 'Each by itself',
     });
   }
   items.forEach((item, index) => {
-    blocks.push(findingOf(item, facts.test));
+    blocks.push(findingOf(item, timeZone, facts.test));
     const details: Detail[] =
       item.kind === 'alarm'
         ? alarmDetails(item, timeZone, facts.writtenMs)
@@ -142,8 +145,8 @@ export function alarmLetter(facts: AlarmMailFacts): Letter {
   };
 }
 
-function findingOf(item: Item, test: boolean): Block {
-  const happened = eventText(item.event);
+export function findingOf(item: Item, timeZone: string, test = false): Extract<Block, { kind: 'finding' }> {
+  const happened = happenedText(item, timeZone);
   return {
     kind: 'finding',
     mark: severityOf(item),
@@ -154,6 +157,26 @@ function findingOf(item: Item, test: boolean): Block {
         : `${whereText(item)}: ${troubleName[item.trouble]}`,
     more: happened === null ? [] : [happened],
   };
+}
+
+/** What this mail tells of it, where the severity alone does not say so. */
+function happenedText(item: Item, timeZone: string): string | null {
+  const { reminder } = item;
+  if (reminder !== undefined) {
+    const told = momentText(reminder.toldMs, timeZone);
+    const also =
+      reminder.thenTo.length === 0 ? '' : ` Now told as well: ${reminder.thenTo.map(foreign).join(', ')}.`;
+    return `Reminder ${reminder.number}: told ${told}, and nobody has acknowledged it.${also}`;
+  }
+  if (item.kind === 'alarm' && item.wasAcknowledged !== undefined) {
+    const { by, ms } = item.wasAcknowledged;
+    return `Told again: ${foreign(by)} acknowledged it ${momentText(ms, timeZone)}, and it still stands.`;
+  }
+  return eventText(item.event);
+}
+
+function remindText(item: Item): string {
+  return item.reminder === undefined ? '' : 'Nobody has acknowledged this yet. ';
 }
 
 /** Where a trouble is: machine and point, or the logger's files, or the site as a whole. */
@@ -182,7 +205,10 @@ export function actionText(action: string | null, machine: MachineFacts): string
   return /[.!?…]$/.test(said) ? said : `${said}.`;
 }
 
-function respondText(item: Item, { writtenMs, site }: AlarmMailFacts): string {
+export function respondText(
+  item: Item,
+  { writtenMs, site }: Pick<AlarmMailFacts, 'writtenMs' | 'site'>,
+): string {
   return item.respondByMs === null || isOver(item)
     ? ''
     : ` ${respondByText(item.respondByMs, writtenMs, site.timeZone)}`;

@@ -7,6 +7,7 @@ import type { Averaging, RunningSpeed } from '../manipulation/measurement.ts';
 import type { EvidenceFacts } from './evidence-facts.ts';
 import type { ChatterFacts } from './history-words.ts';
 import type { Change } from './ranking.ts';
+import type { ReminderFacts, WasAcknowledged } from './reminder-facts.ts';
 import type { TrendFacts } from './trend-words.ts';
 
 /**
@@ -115,16 +116,6 @@ export interface StandingFacts {
   readonly suppressedWhy?: string | null;
 }
 
-/** A mail that asks once more for an acknowledgement. */
-export interface ReminderFacts {
-  /** Counts from 1. */
-  readonly number: number;
-  /** When a server took the mail that is not acknowledged. */
-  readonly toldMs: number;
-  /** Who is told as well by now, because reminders have not helped. */
-  readonly thenTo: readonly string[];
-}
-
 /** An alarm as every list of alarms shows it. */
 export interface StandingAlarm extends StandingFacts {
   readonly kind: 'alarm';
@@ -169,8 +160,7 @@ export interface AlarmFacts extends StandingAlarm {
   /** What this mail tells: raised, rose, said-again, exceeded-came-late, limit-removed, ... */
   readonly event: JournalEventName;
   readonly reminder?: ReminderFacts;
-  /** Told again because it still stands: who had acknowledged it, and when. */
-  readonly wasAcknowledged?: { readonly by: string; readonly ms: number };
+  readonly wasAcknowledged?: WasAcknowledged;
   /** Where the machine has a zone table and the band is of a quantity that it may judge. */
   readonly zone: ZoneFacts | null;
   readonly before: {

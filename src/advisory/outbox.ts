@@ -1,5 +1,5 @@
 import { createHash } from 'node:crypto';
-import type { Machine, Recipient, Severity } from '../config/site.ts';
+import type { Severity } from '../config/site.ts';
 
 /**
  * Theory of operation of the outbox.
@@ -7,7 +7,8 @@ import type { Machine, Recipient, Severity } from '../config/site.ts';
  *   event committed ──gathered──> message stored ──attempt──> accepted
  *   (due to be told)              one delivery      │  4xx, no connection: waiting, tried again
  *                                 a recipient       │  5xx: failed, told
- *                                                   └─ a newer summary: superseded
+ *                                                   └─ a newer summary, or the acknowledgement that a
+ *                                                      reminder asks for: superseded
  *
  * 1. Nothing is sent that is not stored first, bytes and Message-ID included; so a repeat after a kill between the
  *    server's answer and its storing carries the same Message-ID.
@@ -16,13 +17,21 @@ import type { Machine, Recipient, Severity } from '../config/site.ts';
  *    never touches another's.
  * 4. The pause before the next try is the message's age between a least and a greatest value, so it doubles without
  *    a counter; for danger both are small.
- * 5. Nothing is dropped in silence: 'failed' is journalled and told, 'superseded' names the newer message.
+ * 5. Nothing is dropped in silence: 'failed' is journalled and told, 'superseded' names the newer message or says that
+ *    the alarm was acknowledged.
+ * 6. An event is part of one message: its machine's, that of the flood in whose time it came, or the catch-up. What waits
+ *    for somebody's hours or for the morning goes on being gathered; a danger waits for neither.
  */
 export interface EventDue {
   readonly id: number;
-  readonly machineId: string | null;
+  /** What it travels with: its machine's events, or the flood's that it is part of; null: the site's own. */
+  readonly group: string | null;
   readonly severity: Severity;
   readonly wallMs: number;
+  /** Gathering time of its group, where that is not the usual one. */
+  readonly gatherMs?: number;
+  /** Before this it does not make its group due; it travels with one that leaves. Null: nothing holds it. */
+  readonly heldUntilMs?: number | null;
 }
 
 export interface GatherTimes {
@@ -30,9 +39,9 @@ export interface GatherTimes {
   readonly gatherDangerMs: number;
 }
 
-/** Events that travel together: one machine's (or the site's own). */
+/** Events that travel together. */
 export interface EventGroup<E extends EventDue> {
-  readonly machineId: string | null;
+  readonly group: string | null;
   readonly severity: Severity;
   readonly events: readonly E[];
 }
@@ -47,36 +56,34 @@ export function isWorse(a: Severity, than: Severity): boolean {
   return rank[a] > rank[than];
 }
 
+/** When an event makes its group due. A wall clock that was set back does not hold it: one from the future is due. */
+function dueMs(event: EventDue, times: GatherTimes, nowMs = Number.POSITIVE_INFINITY): number {
+  const gatherMs = event.gatherMs ?? times.gatherMs;
+  const waitMs = event.severity === 'danger' ? Math.min(times.gatherDangerMs, gatherMs) : gatherMs;
+  return Math.max(event.wallMs > nowMs ? nowMs : event.wallMs + waitMs, event.heldUntilMs ?? 0);
+}
+
 /**
- * The groups whose time has come: the oldest event has waited `gatherMs`, or a danger among them `gatherDangerMs`.
- * A wall clock that was set back does not hold an event: one from the future counts as due.
- * Most urgent group first, then the one that waits longest.
+ * The groups whose time has come: the oldest event that nothing holds has waited `gatherMs`, or a danger among them
+ * `gatherDangerMs`. Most urgent group first, then the one that waits longest.
  */
 export function groupsDue<E extends EventDue>(
   events: readonly E[],
   nowMs: number,
   times: GatherTimes,
 ): EventGroup<E>[] {
-  const byMachine = new Map<string | null, E[]>();
+  const groups = new Map<string | null, E[]>();
   for (const event of events) {
-    const group = byMachine.get(event.machineId);
-    if (group === undefined) byMachine.set(event.machineId, [event]);
+    const group = groups.get(event.group);
+    if (group === undefined) groups.set(event.group, [event]);
     else group.push(event);
   }
-  const waited = (event: E, least: number) => event.wallMs > nowMs || nowMs - event.wallMs >= least;
-  return [...byMachine]
-    .filter(([, group]) =>
-      group.some((event) =>
-        waited(
-          event,
-          event.severity === 'danger' ? Math.min(times.gatherDangerMs, times.gatherMs) : times.gatherMs,
-        ),
-      ),
-    )
-    .map(([machineId, group]) => ({
-      machineId,
-      severity: group.map((event) => event.severity).reduce(worseSeverity),
-      events: [...group].sort((a, b) => a.id - b.id),
+  return [...groups]
+    .filter(([, all]) => all.some((event) => dueMs(event, times, nowMs) <= nowMs))
+    .map(([group, all]) => ({
+      group,
+      severity: all.map((event) => event.severity).reduce(worseSeverity),
+      events: [...all].sort((a, b) => a.id - b.id),
     }))
     .sort(
       (a, b) =>
@@ -86,29 +93,7 @@ export function groupsDue<E extends EventDue>(
 
 /** Wall time at which the next group will be due; null without events. */
 export function nextGroupDueMs(events: readonly EventDue[], times: GatherTimes): number | null {
-  const waits = events.map(
-    (event) =>
-      event.wallMs +
-      Math.min(times.gatherMs, event.severity === 'danger' ? times.gatherDangerMs : times.gatherMs),
-  );
-  return waits.length === 0 ? null : Math.min(...waits);
-}
-
-/** Whom a group of events concerns. Site-wide events (machine null) go to everyone who takes their severity. */
-export function recipientsFor(
-  recipients: readonly Recipient[],
-  machine: Machine | null,
-  severity: Severity,
-): string[] {
-  const addresses = recipients
-    .filter(({ machines }) => machine === null || machines === null || machines.includes(machine.id))
-    .filter(
-      ({ areas }) =>
-        machine === null || areas === null || (machine.area !== null && areas.includes(machine.area)),
-    )
-    .filter(({ severities }) => severities === null || severities.includes(severity))
-    .map(({ address }) => address);
-  return [...new Set(addresses)];
+  return events.length === 0 ? null : Math.min(...events.map((event) => dueMs(event, times)));
 }
 
 /** Names a message for ever: of the same events, whoever composes it and whenever. */
@@ -177,7 +162,7 @@ export function pauseMs(delivery: Pick<Delivery, 'createdMs' | 'danger'>, nowMs:
 /** Order in which messages leave: danger, trouble and alert alarms, then the rest. Smaller leaves first. */
 export function priorityOf(kind: string, severity: Severity | null): number {
   if (severity === 'danger') return 0;
-  if (kind === 'alarm') return 1;
+  if (kind === 'alarm' || kind === 'flood') return 1;
   if (kind === 'catch-up' || kind === 'service') return 2;
   return 3;
 }

@@ -103,6 +103,8 @@ const events: Readonly<Partial<Record<JournalEventName, string>>> = {
   fell: 'Fallen from danger to alert.',
   returned: 'Back to normal.',
   'said-again': 'Told again: the level has gone on growing since it was last told.',
+  'still-stands': 'Told again: it was acknowledged, and it still stands.',
+  reminded: 'Reminder: nobody has acknowledged this yet.',
   'danger-unconfirmed': 'Over the danger limit, not yet confirmed by a further recording.',
   'exceeded-came-late':
     'Found in a recording that came late; the state of the alarm follows newer recordings and is unchanged.',

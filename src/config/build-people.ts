@@ -1,10 +1,12 @@
-import { type Build, valueOr } from './layers.ts';
+import { type Hours, parseHours } from './hours.ts';
+import { type Build, valueOr, valuesOf } from './layers.ts';
 import { nearest } from './nearest.ts';
+import { tellUncovered } from './recipient-cover.ts';
 import type { mailKeys, serverKeys, WrittenSite } from './schema.ts';
 import type { recipientKeys } from './schema-values.ts';
 import type { Written } from './shape.ts';
 import type { ReadMap } from './shape-map.ts';
-import type { Machine, MailServer, MailSettings, Recipient, Site } from './site.ts';
+import type { Machine, MailServer, MailSettings, Recipient, ReminderSettings, Site } from './site.ts';
 
 type WrittenServer = Written<ReadMap<typeof serverKeys>>;
 type WrittenRecipients = Written<readonly Written<ReadMap<typeof recipientKeys>>[]>;
@@ -22,6 +24,8 @@ export function buildMail(
   const server = keys.server === null ? null : buildServer(build, keys.server);
   const second = keys.second_server === null ? null : buildServer(build, keys.second_server);
   const to = buildRecipients(build, keys.to, machines);
+  if (keys.to !== null) tellUncovered(build.reading, keys.to.at, to, machines);
+  const holdDuring = buildNight(build, keys);
   if (keys.from === null || server === null) return null;
   return {
     from: keys.from.value,
@@ -30,7 +34,36 @@ export function buildMail(
     gatherMs: valueOr(keys.gather_for, 300_000),
     gatherDangerMs: valueOr(keys.gather_danger_for, 10_000),
     catchUpAfterMs: valueOr(keys.catch_up_after, 86_400_000),
+    ...(holdDuring === null ? {} : { holdDuring }),
+    reminders: buildReminders(build, keys, machines),
     to,
+  };
+}
+
+type MailMap = ReadMap<typeof mailKeys>['keys'];
+
+/** The night in which alerts and troubles are held; null: they are not. */
+function buildNight({ reading }: Build, keys: MailMap): Hours | null {
+  const usual = parseHours('22:00..06:00');
+  const night = keys.night?.value ?? (usual.ok ? usual.value : null);
+  if (valueOr(keys.hold_overnight, false)) return night;
+  if (keys.night !== null)
+    reading.warn(keys.night.at, 'night without hold_overnight: true holds nothing back');
+  return null;
+}
+
+function buildReminders({ reading }: Build, keys: MailMap, machines: readonly Machine[]): ReminderSettings {
+  const { remind_after: after, then_to: thenTo, then_after: thenAfter } = keys;
+  const limits = machines.flatMap(({ points }) => points.flatMap((point) => point.limits));
+  const joins = thenTo !== null || limits.some((limit) => (limit.thenTo ?? []).length > 0);
+  if (thenAfter !== null && !joins) reading.warn(thenAfter.at, 'then_after without then_to tells nobody');
+  const reminded = limits.some((limit) => (limit.remindAfterMs ?? null) !== null);
+  if (thenTo !== null && after !== null && after.value === null && !reminded)
+    reading.warn(thenTo.at, 'then_to with remind_after: never tells nobody: they join a reminder');
+  return {
+    ...(after === null ? {} : { afterMs: after.value }),
+    thenTo: valuesOf(thenTo),
+    thenAfter: valueOr(thenAfter, { reminders: 2 }),
   };
 }
 
@@ -97,7 +130,8 @@ export function buildRecipients(
     };
     if (keys.address === null) return [];
     const severities = keys.severities === null ? null : keys.severities.value.map(({ value }) => value);
-    return [{ address: keys.address.value, ...concerned, severities }];
+    const hours = keys.hours === null ? {} : { hours: keys.hours.value };
+    return [{ address: keys.address.value, ...concerned, severities, ...hours }];
   });
 }
 
@@ -114,6 +148,13 @@ export function buildSummary(
     build.reading.warn(
       keys.to.at,
       'without mail: the summary is written to the data folder and sent to nobody',
+    );
+  }
+  for (const { value, at } of keys?.to?.value ?? []) {
+    if (value.keys.hours === null) continue;
+    build.reading.warn(
+      value.keys.hours.at ?? at,
+      'hours say nothing here: the summary is sent at its own time',
     );
   }
   return { at: keys?.at?.value ?? { hour: 6, minute: 30 }, to };

@@ -40,6 +40,12 @@ export interface Limit {
   readonly sayAgainPercent: number | null;
   readonly action: string | null;
   readonly respondWithinMs: number | null;
+  /** An acknowledged alarm that still stands so long afterwards is told again; null or left out: never. */
+  readonly sayAgainAfterMs?: number | null;
+  /** First reminder while nobody has acknowledged it; null: none; left out: as `mail` says. */
+  readonly remindAfterMs?: number | null;
+  /** Who joins when reminders have not helped; left out: as `mail` says. */
+  readonly thenTo?: readonly string[];
 }
 
 export type Delay = { readonly recordings: number } | { readonly ms: number };

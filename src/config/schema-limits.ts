@@ -1,7 +1,7 @@
 import { isScalar, type Node } from 'yaml';
 import { type Parsed, parseDelay, parsePercent, refused, shorten, understood } from './quantity.ts';
 import type { Reading } from './reading.ts';
-import { duration, formerIds, frequency, id, percent } from './schema-values.ts';
+import { addresses, duration, durationOrNever, formerIds, frequency, id, percent } from './schema-values.ts';
 import { choice, list, plainNumber, type Shape, scalar, trueOrFalse, type Written, words } from './shape.ts';
 import { key, map, type ReadMap } from './shape-map.ts';
 import type { LimitKind } from './site.ts';
@@ -97,6 +97,19 @@ export const limitKeys = {
       fallback: '+25 %',
     },
   ),
+  say_again_after: key(
+    durationOrNever(hour, 365 * day, '7 d'),
+    'An acknowledged alarm that still stands so long afterwards is told again; or never.',
+    { fallback: 'never' },
+  ),
+  remind_after: key(
+    durationOrNever(5 * 60_000, 30 * day, '4 h'),
+    'Reminder while nobody has acknowledged the alarm, repeated after growing pauses; or never.',
+    { fallback: 'remind_after of mail' },
+  ),
+  then_to: key(addresses, 'Who is told as well when reminders have not helped, in this order.', {
+    fallback: 'then_to of mail',
+  }),
   action: key(
     words(1000, 'Check base bolts and coupling', { lines: true }),
     'What to do first, in the words of the site.',

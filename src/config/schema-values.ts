@@ -1,3 +1,4 @@
+import { parseHours } from './hours.ts';
 import { printDuration, printFrequency } from './print-value.ts';
 import {
   type Parsed,
@@ -34,15 +35,29 @@ export function id(example: string): Shape<string> {
 export const formerIds = list(id('old-id'), 20);
 
 export function duration(leastMs: number, mostMs: number, example: string): Shape<number> {
+  return scalar(durationParser(leastMs, mostMs, example), { example, pattern: durationPattern });
+}
+
+const durationPattern = `${numberPattern}(ms|s|min|h|d|days?)$`;
+
+function durationParser(leastMs: number, mostMs: number, example: string): (text: string) => Parsed<number> {
   const unit = example.split(' ')[1];
-  const parse = ruled(
+  return ruled(
     (text: string) => parseDuration(text, unit),
     (ms) =>
       ms >= leastMs && ms <= mostMs
         ? null
         : { what: `is not from ${printDuration(leastMs)} to ${printDuration(mostMs)}`, instead: null },
   );
-  return scalar(parse, { example, pattern: `${numberPattern}(ms|s|min|h|d|days?)$` });
+}
+
+/** A duration, or 'never' (null). */
+export function durationOrNever(leastMs: number, mostMs: number, example: string): Shape<number | null> {
+  const parse = durationParser(leastMs, mostMs, example);
+  return scalar<number | null>((text) => (text.trim() === 'never' ? understood(null) : parse(text)), {
+    example,
+    pattern: `^never$|${durationPattern}`,
+  });
 }
 
 export function frequency(leastHz: number, mostHz: number, example: string): Shape<number> {
@@ -101,6 +116,9 @@ export const senderAddress = scalar<string>(
   { example: 'humledger@larkfen.example', free: true },
 );
 
+/** Addresses, each told one after the other. */
+export const addresses = list(address, 10);
+
 const severities = ['trouble', 'alert', 'danger'] as const satisfies readonly Severity[];
 
 export const recipientKeys = {
@@ -108,6 +126,11 @@ export const recipientKeys = {
   machines: key(list(id('blower-1'), 2000), 'Only what concerns these machines.'),
   areas: key(list(words(80, 'aeration'), 200), 'Only what concerns machines of these areas.'),
   severities: key(list(choice(severities), 3), 'Only these: trouble, alert, danger.'),
+  hours: key(
+    scalar(parseHours, { example: 'mon..fri 06:00..18:00', free: true, most: 40 }),
+    "Only in these hours, in the site's time zone. Where nobody's hours fit, alert and trouble wait; danger goes to all.",
+    { fallback: 'at any hour' },
+  ),
 };
 
 export const recipients = list(map(recipientKeys), 200);

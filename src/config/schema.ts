@@ -1,9 +1,11 @@
+import { parseHours } from './hours.ts';
 import { type Parsed, parsePhysical, refused, shorten, understood } from './quantity.ts';
 import { machines, machineTypes } from './schema-machines.ts';
 import { analysis, siteRecordings } from './schema-recordings.ts';
-import { duration, recipients, senderAddress } from './schema-values.ts';
+import { addresses, duration, durationOrNever, recipients, senderAddress } from './schema-values.ts';
 import { choice, type JsonSchema, plainNumber, scalar, trueOrFalse, words } from './shape.ts';
 import { key, keyHomes, map, type ReadMap, type ReadOf } from './shape-map.ts';
+import { parseThenAfter } from './then-after.ts';
 import { parseTimeOfDay, parseTimeZone } from './time-zone.ts';
 
 const day = 86_400_000;
@@ -79,6 +81,29 @@ export const mailKeys = {
     duration(60_000, 30 * day, '24 h'),
     'Alarms older than this that came and went are told in one mail.',
     { fallback: '24 h' },
+  ),
+  hold_overnight: key(
+    trueOrFalse,
+    'Alerts and troubles of the night are mailed in the morning. Danger never waits.',
+    {
+      fallback: 'false',
+    },
+  ),
+  night: key(
+    scalar(parseHours, { example: '22:00..06:00', free: true, most: 40 }),
+    "The night of hold_overnight, in the site's time zone.",
+    { fallback: '22:00..06:00' },
+  ),
+  remind_after: key(
+    durationOrNever(5 * 60_000, 30 * day, '4 h'),
+    'Reminder of what was told and nobody has acknowledged, repeated after growing pauses; or never. Limits may have their own.',
+    { fallback: '1 h for danger, never for alert and trouble' },
+  ),
+  then_to: key(addresses, 'Who is told as well when reminders have not helped, in this order.'),
+  then_after: key(
+    scalar(parseThenAfter, { example: '2 reminders' }),
+    'Reminders, or time since the first mail, after which the first of then_to is told; then one after the other.',
+    { fallback: '2 reminders' },
   ),
   to: key(recipients, 'Who gets alarm mails.', { required: true }),
 };

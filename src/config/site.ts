@@ -3,6 +3,7 @@ import type { AnalysisSettings } from './analysis-settings.ts';
 import type { PointEnvelope } from './envelope-settings.ts';
 import type { Delay, Limit, LimitKind, LimitReasons } from './limit.ts';
 import type { MachineZones, SensorPlace } from './machine-zones.ts';
+import type { MailServer, MailSettings, Recipient, ReminderSettings } from './mail-settings.ts';
 import type { Part } from './parts.ts';
 import type { SampleLayout } from './sample-layout.ts';
 import type { SpeedSettings } from './speed-settings.ts';
@@ -191,34 +192,7 @@ export interface Band {
   readonly display: DisplayUnit;
 }
 
-export type { Delay, Limit, LimitKind, LimitReasons };
-
-export interface MailSettings {
-  readonly from: string;
-  readonly server: MailServer;
-  readonly secondServer: MailServer | null;
-  readonly gatherMs: number;
-  readonly gatherDangerMs: number;
-  readonly catchUpAfterMs: number;
-  readonly to: readonly Recipient[];
-}
-
-export interface MailServer {
-  readonly host: string;
-  readonly port: number;
-  readonly security: 'starttls' | 'tls' | 'none';
-  readonly user: string | null;
-  /** Absolute path; read at each attempt, refused when others can read it. */
-  readonly passwordFile: string | null;
-}
-
-/** null in a field: no restriction. */
-export interface Recipient {
-  readonly address: string;
-  readonly machines: readonly string[] | null;
-  readonly areas: readonly string[] | null;
-  readonly severities: readonly Severity[] | null;
-}
+export type { Delay, Limit, LimitKind, LimitReasons, MailServer, MailSettings, Recipient, ReminderSettings };
 
 export type Severity = 'trouble' | 'alert' | 'danger';
 

@@ -30,6 +30,19 @@ export const acknowledge: Act = (state, command) =>
 export const acknowledgeAndEnd: Act = (state, command) =>
   changed(state, lifeOver, [journalled('acknowledged', state, command)]);
 
+/** C -> B by time: who acknowledged it has had his time, and it still stands. Under a suppression nothing is told. */
+export const sayAgainInTime: Act = (state, command) => {
+  const { condition, suppressions } = state;
+  if (suppressions.length > 0 || condition === 'normal') return unchanged(state, 'it is under a suppression');
+  const tell: Telling = {
+    severity: condition,
+    event: 'still-stands',
+    level: state.knownLevel ?? state.toldLevel,
+  };
+  const fields = { acknowledged: false, told: higher(state.told, condition) };
+  return changed(state, fields, [journalled('still-stands', state, command)], tell);
+};
+
 /** E -> D; -> A where nobody was told, so that nobody owes an acknowledgement. */
 export const release: Act = (state, command) => {
   const fields = state.told === null ? lifeOver : { latched: false, heldBack: false };

@@ -24,6 +24,7 @@ export interface Judged {
 export const alarmCommands = [
   'acknowledge',
   'reset',
+  'say-again',
   'shelve',
   'unshelve',
   'shelf-expired',

@@ -8,6 +8,7 @@ import {
   release,
   releaseAndEnd,
   removeLimit,
+  sayAgainInTime,
   suppressAs,
 } from './alarm-commands.ts';
 import type { AlarmCommandName, AlarmEvent, AlarmRule, AlarmStep, Judged } from './alarm-event.ts';
@@ -49,8 +50,9 @@ import { judge } from './alarm-judged.ts';
  * A life of an alarm lasts from leaving A until it is in A again; the ledger gives it its number. It exists exactly
  * while `highest` is set. Choices that the standard leaves to a site's philosophy:
  *
- * - A rise in severity and a worsening by `sayAgainPercent` clear the acknowledgement and are told. A fall is neither
- *   told nor to be acknowledged. A return to normal is not told by itself; the summary tells it.
+ * - A rise in severity, a worsening by `sayAgainPercent` and the end of `sayAgainAfterMs` (a re-alarm by time, from C
+ *   to B) clear the acknowledgement and are told. A fall is neither told nor to be acknowledged. A return to normal is
+ *   not told by itself; the summary tells it.
  * - G, H, I -> D, not A, where people were told before and nobody acknowledged. What came and went under a
  *   suppression without being told ends by itself; the journal has it.
  * - Acknowledging under a suppression is allowed; what was held back is told nevertheless.
@@ -96,16 +98,27 @@ const everywhere = {
 const nothingStands = nothing('nothing stands that could be acknowledged');
 const alreadyDone = nothing('it is acknowledged already');
 const notHeld = nothing('nothing is held that could be reset');
+const notInHand = nothing('nothing stands that somebody has acknowledged');
 const stillThere = nothing('its condition still stands; it can be reset when the level has come back');
 
 /** The total table: state by event. */
 const transitions: Readonly<Record<HeldStanding, Row>> = {
-  normal: { ...everywhere, acknowledge: nothingStands, reset: notHeld },
-  unacknowledged: { ...everywhere, acknowledge, reset: stillThere },
-  acknowledged: { ...everywhere, acknowledge: alreadyDone, reset: stillThere },
-  'returned-unacknowledged': { ...everywhere, acknowledge: acknowledgeAndEnd, reset: notHeld },
-  'latched-unacknowledged': { ...everywhere, acknowledge, reset: release },
-  'latched-acknowledged': { ...everywhere, acknowledge: alreadyDone, reset: releaseAndEnd },
+  normal: { ...everywhere, acknowledge: nothingStands, reset: notHeld, 'say-again': notInHand },
+  unacknowledged: { ...everywhere, acknowledge, reset: stillThere, 'say-again': notInHand },
+  acknowledged: { ...everywhere, acknowledge: alreadyDone, reset: stillThere, 'say-again': sayAgainInTime },
+  'returned-unacknowledged': {
+    ...everywhere,
+    acknowledge: acknowledgeAndEnd,
+    reset: notHeld,
+    'say-again': notInHand,
+  },
+  'latched-unacknowledged': { ...everywhere, acknowledge, reset: release, 'say-again': notInHand },
+  'latched-acknowledged': {
+    ...everywhere,
+    acknowledge: alreadyDone,
+    reset: releaseAndEnd,
+    'say-again': notInHand,
+  },
 };
 
 /**

@@ -1,6 +1,7 @@
 import type { ServiceStartFacts } from '../advisory/notice-facts.ts';
 import { serviceMail } from '../advisory/notices.ts';
-import { messageIdentity, priorityOf, recipientsFor } from '../advisory/outbox.ts';
+import { messageIdentity, priorityOf } from '../advisory/outbox.ts';
+import { reachOf, recipientsAt } from '../advisory/recipients.ts';
 import { pointPath } from '../config/site.ts';
 import { readMark, writeMark } from '../store/intake-marks.ts';
 import { insertMessage } from '../store/messages.ts';
@@ -41,7 +42,8 @@ export async function announceStart(tools: MailTools, how: StartKind, beyond: Be
   const words = serviceMail(facts);
   // A start has no other name than its time; it is in the ledger, so a repeat has the same.
   const identity = messageIdentity(ledger.id, 'service', [facts.kind, String(tools.startedMs)]);
-  const recipients = recipientsFor(mail.to, null, 'trouble');
+  const at = { ms: nowMs, timeZone: view.site.timeZone };
+  const recipients = reachOf(recipientsAt(mail.to, at), null, 'trouble').addresses;
   const everyone = recipients.length > 0 ? recipients : mail.to.map(({ address }) => address);
   const draft: Draft = {
     kind: 'service',

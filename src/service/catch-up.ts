@@ -1,6 +1,7 @@
 import type { CatchUpFacts, PassedAlarm } from '../advisory/notice-facts.ts';
-import { recipientsFor, worseSeverity } from '../advisory/outbox.ts';
-import type { Recipient, Severity } from '../config/site.ts';
+import { worseSeverity } from '../advisory/outbox.ts';
+import { type RecipientNow, reachOf } from '../advisory/recipients.ts';
+import type { Severity } from '../config/site.ts';
 import { alarmByNumber, type StandingLife } from '../store/alarms.ts';
 import { readJournal } from '../store/journal.ts';
 import { isLedgersOwn } from '../store/ledger-error.ts';
@@ -136,26 +137,28 @@ async function passedAlarm(
 /** By address: the passed alarms that concern it; nobody gets an empty mail. */
 export function passedFor(
   view: SiteView,
-  recipients: readonly Recipient[],
+  recipients: readonly RecipientNow[],
   passed: readonly PassedAlarm[],
 ): Map<string, PassedAlarm[]> {
   const byAddress = new Map<string, PassedAlarm[]>();
   for (const one of passed) {
     const machine = one.machine === null ? null : (findMachine(view, one.machine.id) ?? null);
-    for (const address of recipientsFor(recipients, machine, one.severity))
+    for (const address of reachOf(recipients, machine, one.severity, true).addresses)
       byAddress.set(address, [...(byAddress.get(address) ?? []), one]);
   }
   return byAddress;
 }
 
-/** Everybody who takes the severity of any of the events. */
+/** Everybody who takes the severity of any of the events at this hour. */
 export function addressesFor(
   view: SiteView,
-  recipients: readonly Recipient[],
+  recipients: readonly RecipientNow[],
   machineId: number | null,
   events: readonly { readonly severity: Severity }[],
 ): string[] {
   const machine = machineId === null ? null : (machineOfId(view, machineId) ?? null);
   const severities = new Set(events.map(({ severity }) => severity));
-  return [...new Set([...severities].flatMap((severity) => recipientsFor(recipients, machine, severity)))];
+  return [
+    ...new Set([...severities].flatMap((severity) => reachOf(recipients, machine, severity).addresses)),
+  ];
 }

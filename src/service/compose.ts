@@ -1,4 +1,5 @@
 import { groupsDue, nextGroupDueMs } from '../advisory/outbox.ts';
+import { recipientsAt } from '../advisory/recipients.ts';
 import type { MailSettings } from '../config/site.ts';
 import { isLedgersOwn } from '../store/ledger-error.ts';
 import type { Reader } from '../store/lent-connection.ts';
@@ -7,9 +8,14 @@ import { hasUntold, openThreads, standsFor } from '../store/thread-ends.ts';
 import { closeThread, type Thread } from '../store/threads.ts';
 import { sortEvents } from './catch-up.ts';
 import { type Draft, type DraftFrom, draftAlarmMail, draftCatchUp } from './draft.ts';
+import { draftFlood } from './draft-flood.ts';
+import { leavingNow, leavingTogether } from './leaving.ts';
 import { type MailTools, wallMsOf } from './mail-tools.ts';
 import { plainDraft, stackOf } from './plain-draft.ts';
 import { deliveriesFor, storeDraft } from './store-draft.ts';
+import { watchAcknowledged } from './watch-acknowledged.ts';
+import { watchFlood } from './watch-flood.ts';
+import { watchReminders, withdrawIn, withdrawReminders } from './watch-reminders.ts';
 
 /**
  * From events due to be told to messages in the outbox. Read the facts in one reading of the ledger, make words and
@@ -39,8 +45,8 @@ interface Look {
   readonly nextDueMs: number | null;
 }
 
-/** Events that are looked at in one go; what is beyond them waits its turn. */
-const eventsAtOnce = 500;
+/** Events that are looked at in one go: more only where these all wait for somebody's hours or for the morning. */
+const eventsAtOnce = [500, 8_000];
 /** How often a draft is made again because the ledger moved on under it, before it is left to the next round. */
 const mostTries = 5;
 
@@ -48,6 +54,7 @@ export async function composeDue(tools: MailTools, mail: MailSettings, how: Comp
   let messages = 0;
   for (let failed = 0; failed < mostTries; ) {
     const nowMs = wallMsOf(tools.clock);
+    await watch(tools, mail, nowMs);
     const look = await tools.ledger.read((reader) => lookForDue(reader, tools, mail, how, nowMs));
     if (look.draft === null) return { messages, heldBack: look.heldBack, nextDueMs: look.nextDueMs };
     if (await store(tools, mail, look, look.draft, nowMs)) messages++;
@@ -55,6 +62,17 @@ export async function composeDue(tools: MailTools, mail: MailSettings, how: Comp
   }
   tools.complaints.say('compose', 'the ledger kept changing while a message was composed; tried again soon');
   return { messages, heldBack: false, nextDueMs: wallMsOf(tools.clock) };
+}
+
+/** What time alone brings about: reminders and their withdrawal, alarms told again, the beginning and end of a flood. */
+async function watch(tools: MailTools, mail: MailSettings, nowMs: number): Promise<void> {
+  const { ledger } = tools;
+  const view = tools.view();
+  const recipients = recipientsAt(mail.to, { ms: nowMs, timeZone: view.site.timeZone });
+  await withdrawReminders(ledger, nowMs);
+  await watchAcknowledged(ledger, view, nowMs);
+  await watchReminders(ledger, { view, mail, recipients, nowMs });
+  await watchFlood(ledger, view, nowMs);
 }
 
 async function store(
@@ -70,7 +88,10 @@ async function store(
     draft = plain(error);
     return deliveriesFor(draft, mail.from, nowMs);
   });
-  const stored = await tools.ledger.transact((writer) => storeDraft(writer, draft, deliveries, nowMs));
+  const stored = await tools.ledger.transact(async (writer) => {
+    await withdrawIn(writer, nowMs);
+    return storeDraft(writer, draft, deliveries, nowMs);
+  });
   if (!stored) return false;
   tools.step('delivery: message stored');
   const { kind, subject } = draft;
@@ -88,32 +109,52 @@ async function lookForDue(
   how: ComposeHow,
   nowMs: number,
 ): Promise<Look> {
-  const backlogRuns = !how.flush && (tools.backlogRuns?.() ?? false);
-  const events = await untoldEvents(reader, eventsAtOnce, { withoutBacklog: backlogRuns });
-  if (events.length === 0) return { draft: null, heldBack: false, nextDueMs: null };
+  const withoutBacklog = !how.flush && (tools.backlogRuns?.() ?? false);
+  let look: Look = { draft: null, heldBack: false, nextDueMs: null };
+  for (const limit of eventsAtOnce) {
+    const events = await untoldEvents(reader, limit, { withoutBacklog });
+    if (events.length === 0) return look;
+    look = await lookAmong(reader, tools, mail, how, { events, nowMs });
+    if (look.draft !== null || look.heldBack || events.length < limit) return look;
+  }
+  return look;
+}
+
+async function lookAmong(
+  reader: Reader,
+  tools: MailTools,
+  mail: MailSettings,
+  how: ComposeHow,
+  { events, nowMs }: { readonly events: readonly UntoldEvent[]; readonly nowMs: number },
+): Promise<Look> {
   const times = how.flush ? { gatherMs: 0, gatherDangerMs: 0 } : mail;
   const sorted = await sortEvents(reader, events, nowMs, mail.catchUpAfterMs);
-  const from: DraftFrom = { view: tools.view(), mail, ledgerId: tools.ledger.id, nowMs };
-  const due = groupsDue(sorted.toTell.map(grouped), nowMs, times);
+  const view = tools.view();
+  const recipients = recipientsAt(mail.to, { ms: nowMs, timeZone: view.site.timeZone });
+  const from: DraftFrom = { view, mail, recipients, ledgerId: tools.ledger.id, nowMs };
+  const now = await leavingNow(reader, from, sorted.toTell);
+  const due = groupsDue(now.leaving, nowMs, times);
   const first = due.find(({ severity }) => severity === 'danger' || !how.onlyDanger);
   if (first !== undefined) {
     const told = first.events.map(({ event }) => event);
-    const machineId = told[0]?.machineId ?? null;
+    const { group } = first;
     const drafted = await draftOrPlain(tools, from, told, () =>
-      draftAlarmMail(reader, from, machineId, told),
+      group?.startsWith('flood:')
+        ? draftFlood(reader, from, group, told)
+        : draftAlarmMail(reader, from, told[0]?.machineId ?? null, told),
     );
     return { ...drafted, heldBack: false, nextDueMs: nowMs };
   }
-  const passed = [sorted.backlog, sorted.waitedLong].find(
-    (group) => groupsDue(group.map(together), nowMs, times).length > 0,
-  );
+  const together = [sorted.backlog, sorted.waitedLong].map((group) => leavingTogether(from, group));
+  const passed = together.find(({ leaving }) => groupsDue(leaving, nowMs, times).length > 0);
   const heldBack = how.onlyDanger && (due.length > 0 || passed !== undefined);
   if (passed !== undefined && !heldBack) {
-    const drafted = await draftOrPlain(tools, from, passed, () => draftCatchUp(reader, from, passed));
+    const told = passed.leaving.map(({ event }) => event);
+    const drafted = await draftOrPlain(tools, from, told, () => draftCatchUp(reader, from, told));
     return { ...drafted, heldBack, nextDueMs: nowMs };
   }
-  const waiting = [...sorted.toTell.map(grouped), ...[...sorted.backlog, ...sorted.waitedLong].map(together)];
-  return { draft: null, heldBack, nextDueMs: nextGroupDueMs(waiting, times) };
+  const all = [now, ...together].flatMap(({ leaving, waiting }) => [...leaving, ...waiting]);
+  return { draft: null, heldBack, nextDueMs: nextGroupDueMs(all, times) };
 }
 
 /** One message that cannot be composed is told in plain words and logged, and keeps no other. */
@@ -137,17 +178,6 @@ async function draftOrPlain(
     if (isLedgersOwn(error)) throw error;
     return { draft: plain(error), plain };
   }
-}
-
-/** Events of one machine travel together. */
-function grouped(event: UntoldEvent) {
-  const machineId = event.machineId === null ? null : String(event.machineId);
-  return { id: event.id, machineId, severity: event.severity, wallMs: event.wallMs, event };
-}
-
-/** What came and went is gathered over all machines, and is no longer urgent. */
-function together(event: UntoldEvent) {
-  return { ...grouped(event), machineId: null, severity: 'trouble' as const };
 }
 
 /** Ends the conversations of machines of which nothing stands, waits for a person, or is still to be told. */

@@ -2,6 +2,7 @@ import { alarmMail, mailSeverity, numberOfSubject } from '../advisory/alarm-mail
 import type { AlarmFacts, AlarmMailFacts, Mail, TroubleFacts } from '../advisory/facts.ts';
 import { catchUpMail } from '../advisory/notices.ts';
 import { isWorse, messageIdentity, priorityOf, worseSeverity } from '../advisory/outbox.ts';
+import type { RecipientNow } from '../advisory/recipients.ts';
 import type { MailSettings, Severity } from '../config/site.ts';
 import { alarmByNumber } from '../store/alarms.ts';
 import type { Reader } from '../store/lent-connection.ts';
@@ -12,6 +13,7 @@ import { alarmFacts } from './alarm-facts.ts';
 import { addressesFor, catchUpFacts, passedFor } from './catch-up.ts';
 import { machineFacts, machineOfId, siteFacts } from './fact-names.ts';
 import type { SiteView } from './site-view.ts';
+import { toldAgain } from './told-again.ts';
 import { troubleFacts } from './trouble-facts.ts';
 
 /** A message as it will be stored, but for its bytes; made inside one reading of the ledger. */
@@ -46,6 +48,8 @@ export interface DraftThread {
 export interface DraftFrom {
   readonly view: SiteView;
   readonly mail: MailSettings;
+  /** Of alarm mails, at this moment. */
+  readonly recipients: readonly RecipientNow[];
   readonly ledgerId: string;
   readonly nowMs: number;
 }
@@ -66,7 +70,9 @@ export async function draftAlarmMail(
     goesOn && open !== null ? await subjectBefore(reader, open.id, facts, severity) : null;
   const mail = alarmMail({ ...facts, threadSubject });
   const mails: MailTo[] = [];
-  for (const recipient of addressesFor(view, from.mail.to, machineId, events)) {
+  const next = [...facts.alarms, ...facts.troubles].flatMap(({ reminder }) => reminder?.thenTo ?? []);
+  const addresses = [...addressesFor(view, from.recipients, machineId, events), ...next];
+  for (const recipient of new Set(addresses)) {
     const earlier = goesOn && open !== null ? await mailIdsOfThread(reader, open.id, recipient, 500) : [];
     mails.push({ recipient, mail, earlier });
   }
@@ -115,11 +121,15 @@ export async function alarmMailFacts(
   const alarms: AlarmFacts[] = [];
   const troubles: TroubleFacts[] = [];
   for (const event of newestOfEach(events)) {
-    if (event.key?.startsWith('limit:')) alarms.push(await alarmFacts(reader, view, event));
+    if (event.key?.startsWith('limit:'))
+      alarms.push({ ...(await alarmFacts(reader, view, event)), ...(await toldAgain(reader, event)) });
     else {
       const life = event.number === null ? null : await alarmByNumber(reader, event.number);
       if (life?.alarm.subject.kind === 'trouble')
-        troubles.push(await troubleFacts(reader, view, life, event.event));
+        troubles.push({
+          ...(await troubleFacts(reader, view, life, event.event)),
+          ...(await toldAgain(reader, event)),
+        });
     }
   }
   const machine = machineId === null ? undefined : machineOfId(view, machineId);
@@ -135,7 +145,7 @@ export async function alarmMailFacts(
 }
 
 /** What happened to one alarm within the gathering time is told by its newest event; of late levels by the highest. */
-function newestOfEach(events: readonly UntoldEvent[]): UntoldEvent[] {
+export function newestOfEach(events: readonly UntoldEvent[]): UntoldEvent[] {
   const chosen = new Map<string, UntoldEvent>();
   for (const event of events) {
     const about = `${event.key} ${event.number}`;
@@ -166,9 +176,9 @@ export async function draftCatchUp(
   from: DraftFrom,
   events: readonly UntoldEvent[],
 ): Promise<Draft> {
-  const { view, mail, nowMs } = from;
+  const { view, recipients, nowMs } = from;
   const facts = await catchUpFacts(reader, view, events, nowMs);
-  const mails = [...passedFor(view, mail.to, facts.passed)].map(([recipient, passed]) => ({
+  const mails = [...passedFor(view, recipients, facts.passed)].map(([recipient, passed]) => ({
     recipient,
     mail: catchUpMail({ ...facts, passed }),
     earlier: [],
@@ -186,10 +196,10 @@ export async function draftCatchUp(
 }
 
 /** Named by its events alone, in whatever order they were read. */
-function identityOf({ ledgerId }: DraftFrom, kind: string, events: readonly UntoldEvent[]): string {
+export function identityOf({ ledgerId }: DraftFrom, kind: string, events: readonly UntoldEvent[]): string {
   return messageIdentity(ledgerId, kind, events.map(({ identity }) => identity).sort());
 }
 
-function worstOf(events: readonly UntoldEvent[]): Severity {
+export function worstOf(events: readonly UntoldEvent[]): Severity {
   return events.map(({ severity }) => severity).reduce(worseSeverity, 'trouble');
 }

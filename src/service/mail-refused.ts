@@ -71,7 +71,10 @@ export async function noteAccepted(
   const state = (await statesOf(writer, [mailRefusedSubject])).get(subjectKey(mailRefusedSubject));
   if (state?.condition !== 'trouble') return;
   const { mail, summary } = view.site;
-  const recipients = [...(mail?.to ?? []), ...(summary?.to ?? [])].map(({ address }) => address);
+  const recipients = [
+    ...[...(mail?.to ?? []), ...(summary?.to ?? [])].map(({ address }) => address),
+    ...nextRecipients(view),
+  ];
   if ((await refusedRecipients(writer, [...new Set(recipients)])).length === 0) {
     const look = { present: false, usedMs: wallMs, reason: {} };
     const change = await lookAtTrouble(writer, mailRefusedSubject, look);
@@ -82,6 +85,12 @@ export async function noteAccepted(
   if (again.length > 0) await waitAgain(writer, again, wallMs);
 }
 
+/** Who is told when reminders have not helped. */
+function nextRecipients({ site, points }: SiteView): string[] {
+  const ofLimits = points.flatMap(({ limits }) => limits.flatMap(({ thenTo }) => thenTo ?? []));
+  return [...new Set([...(site.mail?.reminders?.thenTo ?? []), ...ofLimits])];
+}
+
 /** Mails by Message-ID. Of one alarm the newest to that recipient: where it was accepted, he has been told. */
 async function toTellAgain(
   reader: Reader,
@@ -89,7 +98,8 @@ async function toTellAgain(
   recipient: string,
   wallMs: number,
 ): Promise<string[]> {
-  if (!view.site.mail?.to.some(({ address }) => address === recipient)) return [];
+  const isKnown = view.site.mail?.to.some(({ address }) => address === recipient) === true;
+  if (!isKnown && !nextRecipients(view).includes(recipient)) return [];
   const refusals = await refusalsByMail(reader);
   const again = new Set<string>();
   for (const standing of await standingAlarms(reader)) {

@@ -16,10 +16,10 @@ export function stackOf(error: unknown): string {
 
 /** Each recipient gets the events that concern him. Stands in no thread. */
 export function plainDraft(from: DraftFrom, events: readonly UntoldEvent[], error: unknown): Draft {
-  const { view, mail, ledgerId } = from;
+  const { view, recipients, ledgerId } = from;
   const byAddress = new Map<string, UntoldEvent[]>();
   for (const event of events) {
-    for (const address of addressesFor(view, mail.to, event.machineId, [event]))
+    for (const address of addressesFor(view, recipients, event.machineId, [event]))
       byAddress.set(address, [...(byAddress.get(address) ?? []), event]);
   }
   const written = (told: readonly UntoldEvent[]) =>

@@ -44,6 +44,7 @@ async function rename(writer: Writer, from: string, to: string): Promise<void> {
     .set({ key: to })
     .where('key', '=', from)
     .where('message_id', 'is', null)
+    .where('withdrawn_ms', 'is', null)
     .execute();
 }
 

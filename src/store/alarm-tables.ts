@@ -82,8 +82,18 @@ export interface ToTellTable {
   identity: string;
   wall_ms: number;
   message_id: number | null;
+  /** A reminder that was overtaken by an acknowledgement before its mail was made; null: it was not. */
+  withdrawn_ms: Generated<number | null>;
   /** 1: belongs to a backlog and is told in one catch-up mail if it is over by then. */
   from_backlog: number;
+}
+
+/** Times in which more alarms came than a person can take in one by one; at most one stands. */
+export interface FloodsTable {
+  id: Generated<number>;
+  from_ms: number;
+  begun_ms: number;
+  ended_ms: number | null;
 }
 
 /** One conversation a machine, from its first alarm until all are normal. machine_id null: the site's own. */

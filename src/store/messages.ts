@@ -4,7 +4,7 @@ import type { JournalEventName } from '../detection/alarm.ts';
 import type { MessagesTable, ToTellTable } from './alarm-tables.ts';
 import type { Reader, Writer } from './lent-connection.ts';
 
-export type MessageKind = 'alarm' | 'catch-up' | 'summary' | 'service' | 'test';
+export type MessageKind = 'alarm' | 'flood' | 'catch-up' | 'summary' | 'service' | 'test';
 
 /** An event that is still to be put into a message. */
 export interface UntoldEvent {
@@ -59,7 +59,11 @@ export async function untoldEvents(
   limit: number,
   { withoutBacklog = false } = {},
 ): Promise<UntoldEvent[]> {
-  const untold = reader.selectFrom('to_tell').selectAll().where('message_id', 'is', null);
+  const untold = reader
+    .selectFrom('to_tell')
+    .selectAll()
+    .where('message_id', 'is', null)
+    .where('withdrawn_ms', 'is', null);
   const rows = await (withoutBacklog ? untold.where('from_backlog', '=', 0) : untold)
     .orderBy(({ case: when }) => when().when('severity', '=', 'danger').then(0).else(1).end())
     .orderBy('id')
@@ -76,6 +80,7 @@ export async function areUntold(reader: Reader, ids: readonly number[]): Promise
     .select(({ fn }) => fn.countAll<number>().as('count'))
     .where('id', 'in', ids)
     .where('message_id', 'is', null)
+    .where('withdrawn_ms', 'is', null)
     .executeTakeFirstOrThrow();
   return row.count === new Set(ids).size;
 }
@@ -126,6 +131,7 @@ export async function insertMessage(
       .set({ message_id: id })
       .where('id', 'in', message.tells)
       .where('message_id', 'is', null)
+      .where('withdrawn_ms', 'is', null)
       .execute();
   }
   return { id, isNew: made !== undefined };

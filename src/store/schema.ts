@@ -3,6 +3,7 @@ import type {
   AlarmStatesTable,
   AlarmsTable,
   DeliveriesTable,
+  FloodsTable,
   JournalTable,
   MessagesTable,
   OutOfServiceTable,
@@ -66,6 +67,7 @@ export interface LedgerTables {
   out_of_service: OutOfServiceTable;
   journal: JournalTable;
   to_tell: ToTellTable;
+  floods: FloodsTable;
   threads: ThreadsTable;
   messages: MessagesTable;
   deliveries: DeliveriesTable;

@@ -37,6 +37,7 @@ export async function countUntold(reader: Reader): Promise<number> {
     .selectFrom('to_tell')
     .select(({ fn }) => fn.countAll<number>().as('count'))
     .where('message_id', 'is', null)
+    .where('withdrawn_ms', 'is', null)
     .executeTakeFirstOrThrow();
   return row.count;
 }

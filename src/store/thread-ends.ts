@@ -62,6 +62,7 @@ export async function hasUntold(reader: Reader, machineId: number | null): Promi
     .selectFrom('to_tell')
     .select('id')
     .where('message_id', 'is', null)
+    .where('withdrawn_ms', 'is', null)
     .where('machine_id', machineId === null ? 'is' : '=', machineId)
     .limit(1)
     .executeTakeFirst();

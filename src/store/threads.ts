@@ -122,6 +122,7 @@ export async function outboxCounts(reader: Reader): Promise<OutboxCounts> {
     .selectFrom('to_tell')
     .select(({ fn }) => fn.countAll<number>().as('count'))
     .where('message_id', 'is', null)
+    .where('withdrawn_ms', 'is', null)
     .executeTakeFirstOrThrow();
   const oldest = await reader
     .selectFrom('deliveries')

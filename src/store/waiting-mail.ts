@@ -75,7 +75,7 @@ export async function lastTold(reader: Reader, number: number): Promise<LastTold
     .innerJoin('deliveries', 'deliveries.message_id', 'messages.id')
     .select(['recipient', 'mail_id', 'state', 'last_try_ms'])
     .where('to_tell.number', '=', number)
-    .where('messages.kind', '=', 'alarm')
+    .where('messages.kind', 'in', ['alarm', 'flood'])
     .orderBy('messages.id')
     .execute();
   const newest = new Map<string, LastTold>();

@@ -255,6 +255,8 @@ function benchSite(options: BenchOptions, folder: string): Site {
       gatherMs: 5 * minuteMs,
       gatherDangerMs: 10_000,
       catchUpAfterMs: dayMs,
+      // Off, so that a story is about one thing.
+      reminders: { afterMs: null, thenTo: [], thenAfter: { reminders: 2 } },
       to: recipients,
       ...options.mail,
     },

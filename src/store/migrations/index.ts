@@ -6,6 +6,7 @@ import { pooling } from './003-pooling.ts';
 import { evidence } from './004-evidence.ts';
 import { envelope } from './005-envelope.ts';
 import { suppressions } from './006-suppressions.ts';
+import { messages } from './007-messages.ts';
 
 /** One step of the ledger's tables; `number` counts from 1 without gaps, in the order of `migrations`. */
 export interface Migration {
@@ -15,7 +16,15 @@ export interface Migration {
 }
 
 /** In this order; who adds one takes the next number. */
-export const migrations: readonly Migration[] = [first, baselines, pooling, evidence, envelope, suppressions];
+export const migrations: readonly Migration[] = [
+  first,
+  baselines,
+  pooling,
+  evidence,
+  envelope,
+  suppressions,
+  messages,
+];
 
 interface Now {
   readonly wallMs: number;
