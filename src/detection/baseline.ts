@@ -1,5 +1,5 @@
 import { dependenceFactor, mannKendall, theilSen } from '../signal/rank-trend.ts';
-import { madToDeviation, median, medianAbsoluteDeviation } from '../signal/statistics.ts';
+import { madToDeviation, median, medianAbsoluteDeviation, quantile } from '../signal/statistics.ts';
 
 /**
  * What is usual for one level in one operating condition: median and spread of its logarithms over a reference period.
@@ -47,7 +47,7 @@ export const baselineRules = {
   provisionalDays: 7,
   learnedDays: 30,
   refinedDays: 60,
-  /** Readings of a day below which it does not count as a running day of the baseline: a quarter of those expected. */
+  /** Share of a full day's readings below which a day does not count as a running day of the baseline. */
   leastOfDay: 0.25,
   /** ln: day to day 10 % and hour to hour 4 % together. */
   leastSpread: 0.11,
@@ -132,7 +132,12 @@ function runningDays({ levels, expectedADay }: BaselineQuestion): GoodLevel[][] 
     if (day === undefined) days.set(level.day, [level]);
     else day.push(level);
   }
-  const least = Math.max(1, Math.ceil(baselineRules.leastOfDay * expectedADay));
+  // A condition that a machine runs in for three hours a day is learned from those: a full day there has three.
+  const usual = quantile(
+    [...days.values()].map((day) => day.length),
+    0.9,
+  );
+  const least = Math.max(1, Math.ceil(baselineRules.leastOfDay * Math.min(expectedADay, usual)));
   return [...days.values()].filter((day) => day.length >= least);
 }
 

@@ -66,6 +66,12 @@ describe('a baseline', () => {
     expect(baselineOf({ ...all, levels }).runningDays).toBe(20);
   });
 
+  it('is learned in a condition that the machine runs in for a few hours of each day', () => {
+    const all = question(40);
+    const levels = all.levels.filter(({ usedMs }) => (usedMs / hour) % 24 < 3);
+    expect(baselineOf({ ...all, levels })).toMatchObject({ runningDays: 40, state: 'learned' });
+  });
+
   it('is refused where it lies in zone C, and where it rose while it was learned', () => {
     expect(baselineOf(question(30, { zoneC: 0.0009 }))).toMatchObject({
       state: 'refused',
