@@ -11,6 +11,7 @@ import type {
   ZoneFacts,
 } from './facts.ts';
 import type { Change } from './ranking.ts';
+import type { ChatteringFacts, OutOfServiceFacts } from './summary-held.ts';
 
 /** What the morning summary is made from; conventions as in facts.ts. */
 
@@ -64,6 +65,9 @@ export interface SummaryFacts {
   readonly points: readonly PointNow[];
   /** Everything that stands or waits to be acknowledged. */
   readonly standing: readonly (StandingAlarm | TroubleFacts)[];
+  /** Left out: none. */
+  readonly outOfService?: readonly OutOfServiceFacts[];
+  readonly chattering?: readonly ChatteringFacts[];
   /** Machines stopped for longer than `stopped_expected`. */
   readonly longStopped: readonly { readonly machine: MachineFacts; readonly sinceMs: number }[];
   /** Alarms closed since the last summary because their limit left the site file. */

@@ -6,6 +6,7 @@ import { bearingOf, byUrgency, gather, largestShare, shareOfAlert } from './rank
 import { historyLines, recordingLines, serviceLines } from './summary-counts.ts';
 import type { BandNow, PointNow, SummaryFacts } from './summary-facts.ts';
 import { type Finding, knownFinding, needFinding, worseFinding } from './summary-findings.ts';
+import { outOfServiceLines, planLines } from './summary-held.ts';
 import { learnedLines } from './summary-limits.ts';
 import { isReturned, placeText, troubleName } from './wording.ts';
 
@@ -74,7 +75,7 @@ export function morningOf(facts: SummaryFacts): Morning {
       name: 'known',
       title: 'Already known',
       findings: known.map((group) => knownFinding(group, facts.site.timeZone)),
-      lines: known.length === 0 ? ['Nothing.'] : [],
+      lines: knownLines(facts, known.length),
     },
     {
       name: 'steady',
@@ -84,10 +85,15 @@ export function morningOf(facts: SummaryFacts): Morning {
     },
     ...learnedSection(facts),
     { name: 'recordings', title: 'Recordings', findings: [], lines: recordingLines(facts) },
-    { name: 'history', title: 'Alarms', findings: [], lines: historyLines(facts) },
+    { name: 'history', title: 'Alarms', findings: [], lines: [...historyLines(facts), ...planLines(facts)] },
     { name: 'service', title: 'The service', findings: [], lines: serviceLines(facts) },
   ];
   return { first: firstLine(facts, needs.flat()), sections };
+}
+
+function knownLines(facts: SummaryFacts, findings: number): string[] {
+  const out = outOfServiceLines(facts);
+  return findings + out.length === 0 ? ['Nothing.'] : out;
 }
 
 /** Only where there is something to say of limits that are learned. */

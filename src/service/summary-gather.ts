@@ -8,10 +8,12 @@ import type { Ledger } from '../store/ledger.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { arrivalsOf, loadMachine } from '../store/sources.ts';
 import { lastSummary } from '../store/summaries.ts';
+import { placesOutOfService } from '../store/suppressions.ts';
 import { diskRoom, freeBytes, ledgerBytes } from './disk-room.ts';
 import { machineFacts, siteFacts } from './fact-names.ts';
 import { readHealth } from './health.ts';
 import type { SiteView } from './site-view.ts';
+import { heldNow, isOutOfService } from './summary-held.ts';
 import {
   type Day,
   historyOf,
@@ -61,6 +63,7 @@ export async function gatherSummary(question: SummaryQuestion): Promise<SummaryF
     sinceMs: day.sinceMs,
     points,
     standing: await standingNow(reader, view, await standingAlarms(reader), points),
+    ...(await heldNow(reader, view, known.places, nowMs)),
     longStopped,
     limitsRemoved: await limitsRemovedSince(reader, known.lastSummaryMs ?? day.sinceMs),
     recordings: {
@@ -85,6 +88,7 @@ async function readKnown(reader: Reader, view: SiteView, nowMs: number) {
     alarms: alarmsByPoint(await loadAllAlarms(reader)),
     arrivals: await arrivalsOf(reader),
     memories,
+    places: await placesOutOfService(reader),
     /** The journal begins with the first start. */
     watchedFromMs: first?.wallMs ?? null,
     lastSummaryMs: (await lastSummary(reader, localDate(nowMs, view.site.timeZone)))?.createdMs ?? null,
@@ -103,6 +107,7 @@ async function gatherPoints({ ledger, view, nowMs }: SummaryQuestion, known: Kno
         alarms: known.alarms.get(pointPath(point)) ?? [],
         arrivals: known.arrivals.get(pointId),
         memory: known.memories.get(machine.id) ?? null,
+        outOfService: isOutOfService(known.places, machine.id, point.id),
         nowMs,
       };
       points.push(await ledger.read((reader) => pointNow(reader, about)));

@@ -27,6 +27,8 @@ export interface PointKnown {
   readonly alarms: readonly StoredAlarm[];
   readonly arrivals: PointArrivals | undefined;
   readonly memory: MachineMemory | null;
+  /** It, or its machine. */
+  readonly outOfService: boolean;
   readonly nowMs: number;
 }
 
@@ -59,7 +61,7 @@ const blinding: readonly TroubleKind[] = [
 
 async function judgingOf(reader: Reader, known: PointKnown): Promise<Judging> {
   const { view, point, alarms, arrivals, nowMs } = known;
-  if (alarms.some(({ state }) => state.suppressions.includes('out-of-service'))) return 'out-of-service';
+  if (known.outOfService) return 'out-of-service';
   const isBlind = alarms.some(
     ({ subject, state }) =>
       subject.kind === 'trouble' && state.condition === 'trouble' && blinding.includes(subject.trouble),

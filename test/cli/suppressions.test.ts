@@ -99,6 +99,12 @@ describe('out of service', () => {
     expect(ofPump.length).toBeGreaterThanOrEqual(1);
     expect((await alarms()).out).toMatch(/pump-2 +2026-03-04 12:00 +A\. Fitter +tank cleaning beside it/);
     expect(await status()).toMatch(/out of service +pump-2 until 2026-03-04 12:00, by A\. Fitter/);
+    const { out: summary } = await run(['summary', '--text', '--site', site.file], { clock: site.clock });
+    const said = summary.replace(/\s+/g, ' ');
+    expect(said).toContain(
+      'Out of service: Raw water pump 2 until Wed 4 Mar 2026, 12:00, by A. Fitter: tank cleaning beside it.',
+    );
+    expect(said).toContain('1 out of service');
   });
 
   test('cannot be ended for a point that is out with its machine, nor where it is not', async () => {

@@ -26,7 +26,8 @@ type Deed =
       readonly nth: number;
       readonly hours: number;
     }
-  | { readonly does: 'out' | 'in'; readonly place: 'machine' | 'point'; readonly hours: number }
+  | { readonly does: 'out'; readonly place: 'machine' | 'point'; readonly hours: number }
+  | { readonly does: 'in'; readonly place: 'machine' | 'point'; readonly hours: number }
   | { readonly does: 'trouble'; readonly present: boolean }
   | { readonly does: 'pass'; readonly ms: number }
   | { readonly does: 'restart' };
