@@ -69,7 +69,7 @@ function channelJson(
       effective_averages: averaging.effectiveAverages,
       used_percent: averaging.usedPercent,
       segment_spread: averaging.segmentSpread,
-      detrend: averaging.detrend ?? 'mean',
+      ...(averaging.detrend === undefined ? {} : { detrend: averaging.detrend }),
     },
     bands: measurement.levels.map((level) => bandJson(level, displayOf(level, bands))),
     peaks: measurement.peaks.map((peak) => peakJson(peak, measurement.unit)),
@@ -132,7 +132,7 @@ function spectrumJson(measurement: Measurement, density: Float64Array | null) {
   return {
     line_spacing_hz: measurement.averaging.lineSpacingHz,
     unit: `(${measurement.unit})²/Hz`,
-    averaging: measurement.spectrum?.averaging ?? 'power',
+    ...(measurement.spectrum?.averaging === 'peak-hold' ? { averaging: 'peak-hold' } : {}),
     density: Array.from(density),
   };
 }
