@@ -100,6 +100,7 @@ function buildSite(build: Build, keys: WrittenSite, file: string, text: string):
     page: keys.page?.value.keys.listen?.value ?? null,
     timings: buildTimings(keys),
     shelveAtMostMs: valueOr(keys.shelve_at_most, 7 * 86_400_000),
+    ...(keys.alarm_budget === null ? {} : { alarmBudget: keys.alarm_budget.value }),
     largestFileBytes: folders.largestFileBytes,
     warnings: [],
   };

@@ -1,4 +1,5 @@
 import { parseHours } from './hours.ts';
+import { parseHowOften } from './how-often.ts';
 import { type Parsed, parsePhysical, refused, shorten, understood } from './quantity.ts';
 import { machines, machineTypes } from './schema-machines.ts';
 import { analysis, siteRecordings } from './schema-recordings.ts';
@@ -153,6 +154,14 @@ export const siteKeys = {
     duration(60_000, 90 * day, '7 d'),
     'An alarm can be shelved for at most this long; then it speaks again by itself.',
     { fallback: '7 d' },
+  ),
+  alarm_budget: key(
+    scalar(parseHowOften, {
+      example: '5 a week',
+      pattern: '^[0-9.]+\\s*(an?|per|/)\\s*(day|week|month|year)$',
+    }),
+    'New alarms that one person can see to; rehearse holds a site file against it. So often a day, week, month or year.',
+    { fallback: '5 a week' },
   ),
   mail: key(map(mailKeys), 'Alarm mails. Without it nobody is told.'),
   summary: key(map(summaryKeys), "The morning's report.", {

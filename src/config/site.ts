@@ -1,6 +1,7 @@
 import type { WindowName } from '../signal/window.ts';
 import type { AnalysisSettings } from './analysis-settings.ts';
 import type { PointEnvelope } from './envelope-settings.ts';
+import type { HowOften } from './how-often.ts';
 import type { Delay, Limit, LimitKind, LimitReasons } from './limit.ts';
 import type { MachineZones, SensorPlace } from './machine-zones.ts';
 import type { MailServer, MailSettings, Recipient, ReminderSettings } from './mail-settings.ts';
@@ -62,6 +63,8 @@ export interface Site {
   readonly timings: IntakeTimings;
   /** The longest time for which a person can shelve an alarm. */
   readonly shelveAtMostMs: number;
+  /** New alarms that one person can see to; left out: five a week. */
+  readonly alarmBudget?: HowOften;
   /** Largest file that intake accepts. */
   readonly largestFileBytes: number;
   /** Problems that do not stop the service (an overlap above 75 %, a band above the mounting's range). */

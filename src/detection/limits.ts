@@ -43,7 +43,23 @@ export interface JudgedLevel {
 export function judgeLevel(limit: Limit, judged: JudgedLevel, present: Condition): Judgement | null {
   const { level, display, averages, situation } = judged;
   const at = thresholdsOf(limit, level.level, situation, display);
-  if ('unknown' in at || !Number.isFinite(at.value)) return null;
+  return 'unknown' in at ? null : judgeAt(limit, at, { level, averages }, present);
+}
+
+/** What of a level counts beside its limit. */
+export type ComparedLevel = Pick<
+  BandLevel,
+  'intervalLow' | 'intervalHigh' | 'exceededBy80Percent' | 'atLeast'
+>;
+
+/** The same where it is known where the limit stands. */
+export function judgeAt(
+  limit: Limit,
+  at: Thresholds,
+  { level, averages }: { readonly level: ComparedLevel; readonly averages: number },
+  present: Condition,
+): Judgement | null {
+  if (!Number.isFinite(at.value)) return null;
   if (at.side === 'lower' && level.atLeast) return null;
   const passes = (severity: Severity, threshold: number | null): boolean => {
     if (threshold === null) return false;
@@ -60,7 +76,7 @@ export function judgeLevel(limit: Limit, judged: JudgedLevel, present: Condition
 }
 
 /** The whole interval of the level lies past the threshold. */
-function isCertain({ side }: Thresholds, level: BandLevel, threshold: number): boolean {
+function isCertain({ side }: Thresholds, level: ComparedLevel, threshold: number): boolean {
   return side === 'upper' ? level.intervalLow > threshold : level.intervalHigh < threshold;
 }
 
@@ -75,7 +91,7 @@ function isPassed(
 }
 
 /** Known for the upper side only: what 80 % of the segments exceed says nothing of what they stay under. */
-function provesDanger({ side, danger }: Thresholds, level: BandLevel, averages: number): boolean {
+function provesDanger({ side, danger }: Thresholds, level: ComparedLevel, averages: number): boolean {
   const exceeded = level.exceededBy80Percent;
   return (
     side === 'upper' &&

@@ -1,6 +1,6 @@
 import { localDay } from '../config/local-time.ts';
 import { levelEveryMs } from '../config/meaning.ts';
-import type { Point } from '../config/site.ts';
+import type { Band, Machine, Point } from '../config/site.ts';
 import { zonesOfBand } from '../config/zone-limits.ts';
 import { baselineOf, baselineRules, isOpen } from '../detection/baseline.ts';
 import { baselinesOf, goodLevels, type StoredBaseline, saveBaseline } from '../store/baselines.ts';
@@ -64,20 +64,20 @@ export async function relearn(
     { pointId, bandId, seriesId, conditionId, fromMs: learnFromMs },
     { dayOf: (ms) => localDay(ms, timeZone), mostDays: 2 * baselineRules.refinedDays },
   );
+  const band = point.bands.find(({ id }) => view.ids.bandId(point.machineId, point.id, id) === bandId);
   const baseline = baselineOf({
     levels,
     expectedADay: Math.max(1, 86_400_000 / levelEveryMs(point)),
-    zoneC: zoneCOf(view, point, bandId),
+    zoneC: band === undefined ? null : zoneCOf(view.machine(point.machineId), point, band),
     confirmed: before?.confirmed ?? null,
   });
   await saveBaseline(writer, { ...baseline, seriesId, conditionId, learnFromMs });
 }
 
 /** Where zone C begins for a band at the machine's nominal speed, SI r.m.s.; null: no table judges it. */
-function zoneCOf(view: SiteView, point: Point, bandLedgerId: number): number | null {
-  const { id: machineId, zones = null, runningSpeedHz } = view.machine(point.machineId);
-  const band = point.bands.find(({ id }) => view.ids.bandId(machineId, point.id, id) === bandLedgerId);
-  if (zones === null || band === undefined) return null;
+export function zoneCOf(machine: Machine, point: Point, band: Band): number | null {
+  const { id: machineId, zones = null, runningSpeedHz } = machine;
+  if (zones === null) return null;
   const { quantity, sensorOn = null } = point;
   const answer = zonesOfBand({ machineId, zones, runningSpeedHz, point: { quantity, sensorOn } }, band);
   return answer.ok ? answer.boundaries.bc : null;
