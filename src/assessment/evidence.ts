@@ -1,6 +1,7 @@
 import type { Part, RollingBearing } from '../config/parts.ts';
-import { type Comb, type Family, findFamily, finerComb } from './families.ts';
+import { type Comb, type Family, findFamily } from './families.ts';
 import { bearingMultiples, slipAllowance } from './fault-frequencies.ts';
+import { finerComb } from './finer-comb.ts';
 import {
   FreeLines,
   isSeparable,

@@ -37,9 +37,13 @@ const sameFundamental = 200;
  */
 const triesFactor = 1.5;
 
+/** Lines of one side may be stronger than those between by chance, in power by about a decibel. */
+const strongerSide = 1.26;
+
 /**
- * The family of a comb that is least likely by accident; null where fewer than two of its lines stand out, or where its
- * fundamental could be told from the shaft and does not stand out.
+ * The family of a comb that is least likely by accident; null where fewer than two of its lines stand out, where its
+ * fundamental could be told from the shaft and does not stand out, or where another family explains its lines: its
+ * harmonics lead out of the window, only every second or third of them stands, or one of its sides is the middle.
  *
  * The chance of accident: `lines` lines stand anywhere. A place of the family is met by one of them with the probability
  * p = lines x width of the place / width in which lines can stand (an octave around, or the whole range, whichever is
@@ -89,7 +93,11 @@ function scoreFamily(free: FreeLines, comb: Comb, hz: number): Family | null {
   const first = places.find(({ harmonic, sideband }) => harmonic === 1 && sideband === 0);
   if (first !== undefined && first.rank < 0) return null;
   const met = places.filter(({ rank }) => rank >= 0);
-  if (met.filter(({ sideband }) => sideband === 0).length === 0 || met.length < 2) return null;
+  const harmonics = met.filter(({ sideband }) => sideband === 0).map(({ harmonic }) => harmonic);
+  if (harmonics.length === 0 || met.length < 2) return null;
+  const top = harmonics[harmonics.length - 1];
+  if (Math.abs(hz - comb.hz) > comb.window * comb.hz + toleranceHz / top) return null;
+  if (isOfCoarserComb(places, harmonics) || isBesideItsMiddle(free, places)) return null;
   let least = 1;
   for (const span of spans) {
     const harmonics = places.filter(({ harmonic, sideband }) => harmonic <= span && sideband === 0);
@@ -104,6 +112,44 @@ function scoreFamily(free: FreeLines, comb: Comb, hz: number): Family | null {
   }
   const lines = met.map(({ rank, harmonic, sideband }) => ({ line: free.lines[rank], harmonic, sideband }));
   return { hz, lines, chance: Math.min(1, triesFactor * least) };
+}
+
+/**
+ * Whether only multiples of a multiple stand, though others could be seen: shocks twice or three times as fast, of
+ * something else, make no more.
+ */
+function isOfCoarserComb(places: readonly Place[], harmonics: readonly number[]): boolean {
+  if (harmonics.length < 2) return false;
+  const step = harmonics.reduce(greatestDivisor);
+  const top = harmonics[harmonics.length - 1];
+  return (
+    step > 1 &&
+    places.some(({ harmonic, sideband }) => sideband === 0 && harmonic < top && harmonic % step > 0)
+  );
+}
+
+function greatestDivisor(a: number, b: number): number {
+  return b === 0 ? a : greatestDivisor(b, a % b);
+}
+
+/**
+ * Whether the sidebands of one side carry more than the harmonics that they stand beside: what passes the load zone once
+ * a turn is strongest in the middle (amplitude modulation by m makes sidebands m / 2 as strong), so the middle is there.
+ */
+function isBesideItsMiddle(free: FreeLines, places: readonly Place[]): boolean {
+  const power = ({ rank }: Place) => (rank < 0 ? 0 : free.lines[rank].level ** 2);
+  return ([-1, 1] as const).some((side) => {
+    let middle = 0;
+    let beside = 0;
+    for (const place of places) {
+      if (place.sideband !== side) continue;
+      const own = places.find(({ harmonic, sideband }) => harmonic === place.harmonic && sideband === 0);
+      if (own === undefined) continue;
+      middle += power(own);
+      beside += power(place);
+    }
+    return beside > strongerSide * middle;
+  });
 }
 
 /** Higher harmonics tell the fundamental better; each is looked for where the lower ones put it. */
@@ -156,49 +202,4 @@ export function atLeast(probabilities: readonly number[], count: number): number
   let tail = 0;
   for (let k = probabilities.length; k >= count; k--) tail += distribution[k];
   return Math.min(1, tail);
-}
-
-/**
- * A finer comb of which the family is only a part: the harmonics of something that turns more slowly (a shaft that
- * nobody listed, or this one at another speed than was thought). Its fundamental in Hz; null where there is none.
- * `own`: frequencies of the same part, which are no foreign ones.
- */
-export function finerComb(
-  free: FreeLines,
-  hz: number,
-  sidebandHz: number | null,
-  own: readonly number[] = [],
-): number | null {
-  const toleranceHz = toleranceLines * free.lineSpacingHz;
-  const rung = free.rungs.length - 1;
-  for (let part = 2; part <= finestPart; part++) {
-    const step = hz / part;
-    if (step < 8 * free.lineSpacingHz) return null;
-    if (own.some((known) => Math.abs(known - step) < ownTolerance * known)) continue;
-    const chances: number[] = [];
-    let met = 0;
-    for (let harmonic = 1; harmonic < 3 * part; harmonic++) {
-      const at = harmonic * step;
-      if (isOfFamily(at, hz, sidebandHz, 2 * toleranceHz) || !free.isFree(at)) continue;
-      chances.push(free.chanceAt(rung, at, toleranceHz));
-      if (free.rankAt(at, toleranceHz) >= 0) met++;
-    }
-    if (met >= 3 && met >= 0.4 * chances.length && atLeast(chances, met) < 0.001) return step;
-  }
-  return null;
-}
-
-/** A family may be every second to every sixteenth line of a finer comb. */
-const finestPart = 16;
-const ownTolerance = 0.03;
-
-/** Whether a harmonic of the family, or one of its first three sidebands on either side, lies there. */
-function isOfFamily(at: number, hz: number, sidebandHz: number | null, toleranceHz: number): boolean {
-  const distance = Math.abs(at - Math.round(at / hz) * hz);
-  if (distance <= toleranceHz) return true;
-  if (sidebandHz === null) return false;
-  return [distance, hz - distance].some((one) => {
-    const nearest = Math.round(one / sidebandHz);
-    return nearest <= 3 && Math.abs(one - nearest * sidebandHz) <= toleranceHz;
-  });
 }

