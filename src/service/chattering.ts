@@ -1,9 +1,15 @@
 import type { ChatterFacts } from '../advisory/history-words.ts';
 import type { Limit } from '../config/site.ts';
 import type { AlarmChange } from '../detection/alarm.ts';
-import { type Chatter, chatteringRecordings, chatterOf, chatterReason } from '../detection/alarm-history.ts';
+import {
+  type Chatter,
+  chatteringRecordings,
+  chatteringReturns,
+  chatterOf,
+  chatterReason,
+  type PastEvent,
+} from '../detection/alarm-history.ts';
 import type { StoredAlarm } from '../store/alarms.ts';
-import { readJournal } from '../store/journal.ts';
 import type { Reader } from '../store/lent-connection.ts';
 
 /** From what the journal says beside 'raised', and the limit as it is now. */
@@ -14,9 +20,6 @@ export function chatterFacts(said: unknown, limit: Limit | undefined): ChatterFa
   const { deadbandPercent = null, onDelay = null } = limit ?? {};
   return { returns, recordings, deadbandPercent, onDelay };
 }
-
-/** Rows of the journal an alarm that are looked through: it can have a few for each recording. */
-const mostRows = 200;
 
 /**
  * Which of these alarms come and go, by key. `besides`: recordings that are being judged and are not in the ledger yet.
@@ -30,13 +33,38 @@ export async function chatteringAlarms(
   const from = new Map<number, number>();
   for (const { key, pointId, number } of alarms) {
     if (pointId === null || number === null) continue;
+    const returned = await newestOf(reader, key, 'returned', chatteringRecordings);
+    if (returned.length < chatteringReturns) continue;
     const fromMs =
       from.get(pointId) ?? (await oldestThatCounts(reader, pointId, chatteringRecordings - besides));
     from.set(pointId, fromMs);
-    const chatter = chatterOf(await readJournal(reader, { key, limit: mostRows }), fromMs);
+    if (chatterOf(returned, fromMs) === null) continue;
+    const chatter = chatterOf([...returned, ...(await newestOf(reader, key, 'raised', 1))], fromMs);
     if (chatter !== null) found.set(key, chatter);
   }
   return found;
+}
+
+/** Of one alarm: the newest rows of one event, without going through the others. */
+async function newestOf(
+  reader: Reader,
+  key: string,
+  event: 'raised' | 'returned',
+  limit: number,
+): Promise<PastEvent[]> {
+  const rows = await reader
+    .selectFrom('journal')
+    .select(['used_ms', 'reason'])
+    .where('key', '=', key)
+    .where('event', '=', event)
+    .orderBy('sequence', 'desc')
+    .limit(limit)
+    .execute();
+  return rows.map(({ used_ms, reason }) => ({
+    event,
+    usedMs: used_ms,
+    reason: event === 'raised' ? (JSON.parse(reason) as PastEvent['reason']) : {},
+  }));
 }
 
 /** Used time of the point's nth newest recording of the running machine; before all time where there are fewer. */

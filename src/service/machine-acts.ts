@@ -16,7 +16,8 @@ import type { Person } from './alarm-command.ts';
  * each, with its row in the journal; then its line beside the ledger.
  */
 /** Why nothing can be done to a place. */
-export const siteFileUnknown = 'the ledger knows no site file yet: start the service once';
+export const siteFileUnknown =
+  'the ledger does not know this site file yet: start the service, or have it read the file (SIGHUP)';
 
 export interface Place {
   readonly machine: Machine;

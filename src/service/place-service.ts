@@ -46,7 +46,7 @@ export async function takeOutOfService(
   const { by, comment, wallMs } = person;
   const alarms = await ledger.transact(async (writer) => {
     const ids = await readSiteIds(writer);
-    if (ids === null) return null;
+    if (ids === null || !knows(ids, place)) return null;
     await putOutOfService(writer, { ...idsOf(ids, place), fromMs: wallMs, untilMs, by, comment });
     const entry = { event: 'out-of-service', comment, usedMs: null, reason: { untilMs, by } } as const;
     await journalPlace(writer, ids, place, person, entry);
@@ -68,7 +68,7 @@ export async function putInService(
   const { comment, wallMs } = person;
   const answer = await ledger.transact<Done | { readonly refused: string }>(async (writer) => {
     const ids = await readSiteIds(writer);
-    if (ids === null) return { refused: siteFileUnknown };
+    if (ids === null || !knows(ids, place)) return { refused: siteFileUnknown };
     const before = await placesOutOfService(writer);
     if (!(await removeOutOfService(writer, idsOf(ids, place)))) {
       return { refused: notOut(before, place) };
@@ -113,6 +113,16 @@ async function follow(writer: Writer, ids: SiteIds, place: Place, person: Commen
     if (changes.length > 0 && state.highest !== null) touched++;
   }
   return touched;
+}
+
+/** False where this site file was not put in force yet, and the ledger has another. */
+function knows(ids: SiteIds, place: Place): boolean {
+  try {
+    idsOf(ids, place);
+    return true;
+  } catch {
+    return false;
+  }
 }
 
 function idsOf(
