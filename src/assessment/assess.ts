@@ -49,9 +49,11 @@ export function assess(
 ): Assessed {
   const observed = observedSpeed(speed);
   const evidence: Evidence[] = [];
-  const peaks = spectra.map((spectrum) => {
-    const findings =
-      observed === null ? [] : faultsIn(spectrum, observed, heard, partsOfMachine, spectra.length);
+  const found = spectra.map((spectrum) =>
+    observed === null ? [] : faultsIn(spectrum, observed, heard, partsOfMachine, spectra.length),
+  );
+  const peaks = spectra.map((spectrum, n) => {
+    const findings = found[n].filter((finding) => !isToldBetter(finding, found.flat()));
     evidence.push(...findings.map((finding) => evidenceOf(finding, spectrum.kind, heard)));
     if (observed !== null) evidence.push(...notSeparable(spectrum, observed, heard, findings));
     return named(spectrum, findings, new LineNames(heard, observed, spectrum.lineSpacingHz), heard);
@@ -85,6 +87,14 @@ function faultsIn(
   );
   const searched = { lines: peaks, lineSpacingHz, fromHz: 4 * lineSpacingHz, toHz };
   return findFaults(searched, fine, speed, shafts, spectra);
+}
+
+/** Whether another spectrum says more surely what the lines may be as well: two names for one fault help nobody. */
+function isToldBetter({ orElse, chance }: Finding, all: readonly Finding[]): boolean {
+  return all.some(
+    (one) =>
+      one.chance < chance && orElse.some((other) => other.partId === one.partId && other.fault === one.fault),
+  );
 }
 
 function evidenceOf(finding: Finding, spectrum: AssessedSpectrum['kind'], parts: readonly Part[]): Evidence {
@@ -156,11 +166,16 @@ function named(
 ): SpectralPeak[] {
   const ofFamilies = new Map<unknown, string[]>();
   for (const finding of findings) {
-    const part = parts.find(({ id }) => id === finding.partId)?.name ?? finding.partId;
-    for (const { line, harmonic, sideband } of finding.family.lines) {
-      const beside = sideband === 0 ? '' : ` ${sideband < 0 ? '-' : '+'} ${sidebandOf(finding)}`;
-      const name = `${lineOfFault(finding.fault, harmonic)}${beside}, ${part}`;
-      ofFamilies.set(line, [...(ofFamilies.get(line) ?? []), name]);
+    const own = new Set(finding.family.lines.map(({ line }) => line));
+    // A line that might be another part's as well has both names.
+    for (const { partId, fault, family } of [finding, ...finding.orElse]) {
+      const part = parts.find(({ id }) => id === partId)?.name ?? partId;
+      for (const { line, harmonic, sideband } of family.lines) {
+        if (!own.has(line)) continue;
+        const beside = sideband === 0 ? '' : ` ${sideband < 0 ? '-' : '+'} ${sidebandOf(fault)}`;
+        const name = `${lineOfFault(fault, harmonic)}${beside}, ${part}`;
+        ofFamilies.set(line, [...(ofFamilies.get(line) ?? []), name]);
+      }
     }
   }
   return peaks.map((peak) => ({

@@ -21,7 +21,7 @@ export function findingWords(
   const lines = harmonics === 1 ? 'one line' : `${counts[harmonics] ?? harmonics} harmonics`;
   const where = names.spectrum === 'envelope' ? 'in the envelope' : 'in the spectrum';
   const highest = printNumber(strongestDb(finding), 2);
-  const sidebands = family.lines.length > harmonics ? `, sidebands at ${sidebandOf(finding)}` : '';
+  const sidebands = family.lines.length > harmonics ? `, sidebands at ${sidebandOf(fault)}` : '';
   const other = orElse.map(
     (one) => `; ${frequencyOfFault[one.fault]} of ${names.part(one.partId)} would lie there as well`,
   );
@@ -36,7 +36,7 @@ export function strongestDb({ family }: Finding): number {
 }
 
 /** What carries a defect through the load zone, and so stands beside its lines. */
-export function sidebandOf({ fault }: Finding): string {
+export function sidebandOf(fault: BearingFault): string {
   return fault === 'rolling element' ? 'FTF' : '1x';
 }
 

@@ -28,7 +28,13 @@ export interface Finding {
   readonly expectedHz: number;
   readonly family: Family;
   /** Other faults whose lines could lie in the same place; the nearest explanation is `fault`. */
-  readonly orElse: readonly { readonly partId: string; readonly fault: BearingFault }[];
+  readonly orElse: readonly OtherFault[];
+}
+
+export interface OtherFault {
+  readonly partId: string;
+  readonly fault: BearingFault;
+  readonly family: Family;
 }
 
 /** More than this chance of accident is no finding. */
@@ -94,8 +100,9 @@ export function findFaults(
       family: best.family,
       orElse: ranked
         .filter((one) => left.includes(one.suspect) && sharesMost(one.family, taken) && rivals(one, best))
-        .map(({ suspect }) => ({ partId: suspect.part.id, fault: suspect.fault })),
+        .map(({ suspect, family }) => ({ partId: suspect.part.id, fault: suspect.fault, family })),
     });
+    left = left.filter((one) => !isExplained(one, best));
   }
   return findings;
 }
@@ -125,6 +132,16 @@ function likeness({ suspect, family }: Explained): number {
   const beside = (family.hz / suspect.hz - 1) / usualSlip;
   const bare = suspect.sidebandHz !== null && family.lines.every(({ sideband }) => sideband === 0);
   return Math.exp(-0.5 * beside * beside) * (bare ? withoutSidebands : 1);
+}
+
+/** A damaged element passes the load zone with its cage, which so makes lines at its own frequency. */
+function isExplained({ part, fault }: Suspect, { suspect, family }: Explained): boolean {
+  return (
+    fault === 'cage' &&
+    part === suspect.part &&
+    suspect.fault === 'rolling element' &&
+    family.lines.some(({ sideband }) => sideband !== 0)
+  );
 }
 
 /** Within so much of each other two explanations of the same lines are not told apart. */

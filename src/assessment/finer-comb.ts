@@ -45,8 +45,8 @@ function standsAsComb(
   return met >= 3 && met >= 0.4 * chances.length && atLeast(chances, met) < 0.001;
 }
 
-/** A family may be every second to every sixteenth line of a finer comb. */
-const finestPart = 16;
+/** A family may be every second to every twenty-fourth line of a finer comb: eight turns, in thirds. */
+const finestPart = 24;
 const ownTolerance = 0.03;
 
 /** Whether a harmonic of the family, or one of its first three sidebands on either side, lies there. */

@@ -112,4 +112,40 @@ describe('what is said of a family', () => {
     expect(peaks[0]?.map(({ names }) => names)).toEqual([['3x'], ['6x'], ['9x']]);
     expect(assess([envelope(0.4, 75, 150, 225)], sure, [near], [near]).evidence).toEqual([]);
   });
+
+  // Two bearings of 3.572 and 3.58 turns: the same lines, and no way to tell whose.
+  it('by both names, where two parts would make the same lines', () => {
+    const maker = { geometry: null, multiples: { ftf: null, bsf: null, bpfo: 3.58, bpfi: null } };
+    const far = { ...driveEnd, ...maker, id: 'nde-bearing', name: 'far bearing' };
+    const heard = [driveEnd, far];
+    const { evidence, peaks } = assess([envelope(0.5, outer, 2 * outer, 3 * outer)], speed(), heard, heard);
+    expect(evidence).toHaveLength(1);
+    expect(evidence[0]?.words).toContain('would lie there as well');
+    expect([...(peaks[0]?.[1]?.names ?? [])].sort()).toEqual([
+      'BPFO x2, drive-end bearing',
+      'BPFO x2, far bearing',
+    ]);
+  });
+
+  it('once, by the spectrum that shows it better, where the other would fit another part too', () => {
+    const maker = { geometry: null, multiples: { ftf: null, bsf: null, bpfo: 3.55, bpfi: null } };
+    const far = { ...driveEnd, ...maker, id: 'nde-bearing', name: 'far bearing' };
+    const heard = [driveEnd, far];
+    const seen = 3.572 * 25 * 0.999;
+    const many = envelope(0.5, ...[1, 2, 3, 4, 5, 6, 7].map((k) => k * seen));
+    const few = { ...envelope(0.5, ...[1, 2, 3].map((k) => k * 3.551 * 25)), kind: 'plain' as const };
+    const { evidence, peaks } = assess([few, many], speed(), heard, heard);
+    expect(evidence.map(({ partId, spectrum }) => [partId, spectrum])).toEqual([['de-bearing', 'envelope']]);
+    expect(peaks[0]?.[0]?.names).toEqual([]);
+  });
+
+  // An element that is damaged passes the load zone with the cage, which makes lines at the cage's own frequency.
+  it('of no cage, where an element explains its lines', () => {
+    const cage = 0.3969 * 25;
+    const element = 2 * 2.3221 * 25;
+    const lines = [1, 2, 3, 4].flatMap((k) => [k * element, k * element - cage, k * element + cage]);
+    const shocks = envelope(0.25, ...lines, cage, 2 * cage, 3 * cage, 4 * cage);
+    const { evidence } = assess([shocks], speed(), [driveEnd], [driveEnd]);
+    expect(evidence.map(({ fault }) => fault)).toEqual(['rolling element']);
+  });
 });

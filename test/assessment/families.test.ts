@@ -101,6 +101,9 @@ describe('a family of lines', () => {
     const lines = Array.from({ length: 16 }, (_, k) => line((k + 1) * foreign));
     expect(finerComb(free(lines), bpfo, null)).not.toBeNull();
     expect(finerComb(free([1, 2, 3, 4].map((k) => line(k * bpfo))), bpfo, null)).toBeNull();
+    // Thirds of a turn, of which BPFI at 19/3 turns is the nineteenth.
+    const thirds = Array.from({ length: 60 }, (_, k) => line(((k + 1) * 25) / 3));
+    expect(finerComb(free(thirds), (19 * 25) / 3, 25)).not.toBeNull();
     // The cage of the same bearing is no stranger.
     expect(finerComb(free(lines), bpfo, null, [foreign, 2 * foreign])).toBeNull();
   });
