@@ -11,7 +11,10 @@ import type {
   ZoneFacts,
 } from './facts.ts';
 import type { Change } from './ranking.ts';
+import type { RepairFacts } from './repair-words.ts';
+import type { SisterFacts } from './sister-words.ts';
 import type { ChatteringFacts, OutOfServiceFacts } from './summary-held.ts';
+import type { TrendFacts } from './trend-words.ts';
 
 /** What the morning summary is made from; conventions as in facts.ts. */
 
@@ -24,6 +27,10 @@ export interface BandNow {
   readonly zone: ZoneFacts | null;
   /** Of bands with a limit that is reckoned from them, one an operating condition. */
   readonly baselines?: readonly BaselineNow[];
+  /** Null or left out: there is no level that it could be of. */
+  readonly trend?: TrendFacts | null;
+  /** Null or left out: it lies among its sister machines, or has none. */
+  readonly sister?: SisterFacts | null;
 }
 
 /** What is usual for a band in one operating condition, as far as limits depend on it. */
@@ -68,6 +75,8 @@ export interface SummaryFacts {
   /** Left out: none. */
   readonly outOfService?: readonly OutOfServiceFacts[];
   readonly chattering?: readonly ChatteringFacts[];
+  /** Repairs and changed sensors whose days before and after are compared, the newest first; left out: none. */
+  readonly repairs?: readonly RepairFacts[];
   /** Machines stopped for longer than `stopped_expected`. */
   readonly longStopped: readonly { readonly machine: MachineFacts; readonly sinceMs: number }[];
   /** Alarms closed since the last summary because their limit left the site file. */

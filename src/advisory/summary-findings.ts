@@ -6,9 +6,12 @@ import type { StandingAlarm } from './facts.ts';
 import { markWord } from './letter.ts';
 import { changeText, distanceText, levelText, measuredText, percentText } from './level-words.ts';
 import { bearingOf, comparedWith, firstLimit, largestShare } from './ranking.ts';
-import type { Standing, Worse } from './summary.ts';
-import type { SummaryFacts } from './summary-facts.ts';
+import { sisterText } from './sister-words.ts';
+import type { Standing } from './summary.ts';
+import type { BandNow, SummaryFacts } from './summary-facts.ts';
+import type { Worse } from './summary-worse.ts';
 import { durationText, shortMomentText } from './time-words.ts';
+import { trendInShort } from './trend-words.ts';
 import { idText, isReturned, nameOf, placeText, shortAdvice, standingText, troubleName } from './wording.ts';
 import { zoneChangeText } from './zone-words.ts';
 
@@ -34,35 +37,41 @@ export function needFinding(group: readonly Standing[], facts: SummaryFacts): Fi
   return {
     mark: severityOf(first),
     number: first.number,
-    text: findingText(first),
+    text: findingText(first, facts),
     todo: `${todoText(first)}${respond}`,
-    also: [...alsoLines(group), ...evidenceOf(group)],
+    also: [...alsoLines(group, facts), ...sisterLines(group, facts), ...evidenceOf(group)],
     since: `${sinceText(first, facts)}, ${standingText(first, timeZone)}.`,
   };
 }
 
 /** What somebody has already taken in hand: one line each. */
-export function knownFinding(group: readonly Standing[], timeZone: string): Finding {
+export function knownFinding(group: readonly Standing[], facts: SummaryFacts): Finding {
   const first = group[0] as Standing;
   return {
     mark: severityOf(first),
     number: first.number,
-    text: `${findingText(first)}; ${standingText(first, timeZone)}`,
+    text: `${findingText(first, facts)}; ${standingText(first, facts.site.timeZone)}`,
     todo: null,
-    also: alsoLines(group),
+    also: alsoLines(group, facts),
     since: null,
   };
 }
 
-export function worseFinding(group: readonly Worse[]): Finding {
+export function worseFinding(group: readonly Worse[], timeZone: string): Finding {
   const first = group[0] as Worse;
-  const others = group.slice(1).map((worse) => `${directionOf(worse)} ${worseText(worse)}`);
+  const others = group.slice(1).map((worse) => {
+    const said = [worseText(worse), ...besideText(worse, timeZone)];
+    return `${directionOf(worse)} ${said.join('; ')}`;
+  });
   return {
     mark: null,
     number: null,
     text: `${placeText(first.machine, first.point)}: ${worseText(first)}`,
     todo: null,
-    also: others.length === 0 ? [] : [`Also ${others.join('; ')}`],
+    also: [
+      ...besideText(first, timeZone).map(sentence),
+      ...(others.length === 0 ? [] : [`Also ${others.join('; ')}`]),
+    ],
     since: null,
   };
 }
@@ -72,10 +81,21 @@ function worseText({ now }: Worse): string {
   const usual = now.change === null ? '' : ` (ordinary spread ${percentText(now.change.ordinaryRatio - 1)})`;
   if (now.level === null) return `${idText(now.band.id)} ${change}${usual}`;
   const share = largestShare(now.level.level, now.limits);
-  const used = share === null ? 'no limit in force' : `${percentText(share)} of the alert limit`;
+  const used = share === null ? 'no limit' : `${percentText(share)} of the alert limit`;
   const significant = now.zone === null ? null : zoneChangeText(now.zone, now.band.display);
   const byStandard = significant === null ? '' : `; ${significant}`;
   return `${idText(now.band.id)} ${change} on the week${usual}, now ${measuredText(now.level, now.band.display)}, ${used}${byStandard}`;
+}
+
+/** What the days say, and the sister machines. */
+function besideText({ now }: Worse, timeZone: string): string[] {
+  const trend = now.trend == null ? null : trendInShort(now.trend, now.band.display, timeZone);
+  const sister = now.sister?.leaves === true ? sisterText(now.sister) : null;
+  return [trend, sister].filter((said) => said !== null);
+}
+
+function sentence(said: string): string {
+  return said.charAt(0).toUpperCase() + said.slice(1);
 }
 
 /** The direction where the bearing has been named, else the point. */
@@ -89,18 +109,30 @@ function severityOf(item: Standing): Severity {
   return item.kind === 'alarm' ? item.severity : 'trouble';
 }
 
-function findingText(item: Standing): string {
-  if (item.kind === 'trouble') return `${whereText(item)}: ${whatText(item)}`;
-  return `${placeText(item.machine, item.point)}: ${whatText(item)}`;
+function findingText(item: Standing, facts: SummaryFacts): string {
+  if (item.kind === 'trouble') return `${whereText(item)}: ${whatText(item, facts)}`;
+  return `${placeText(item.machine, item.point)}: ${whatText(item, facts)}`;
 }
 
-function whatText(item: Standing): string {
+function whatText(item: Standing, facts: SummaryFacts): string {
   if (item.kind === 'trouble') {
     return item.detail === null
       ? troubleName[item.trouble]
       : `${troubleName[item.trouble]} (${clip(item.detail, 120)})`;
   }
-  return alarmText(item);
+  const trend = bandNowOf(item, facts)?.trend;
+  const said = trend == null ? null : trendInShort(trend, item.band.display, facts.site.timeZone);
+  return `${alarmText(item)}${said === null ? '' : `; ${said}`}`;
+}
+
+/** The band of an alarm as it is now. */
+export function bandNowOf(
+  { machine, point, band }: StandingAlarm,
+  { points }: SummaryFacts,
+): BandNow | undefined {
+  return points
+    .find((one) => one.machine.id === machine.id && one.point.id === point.id)
+    ?.bands.find((one) => one.band.id === band.id);
 }
 
 function alarmText({ band, level, limit, severity, change, dangerUnconfirmed }: StandingAlarm): string {
@@ -117,17 +149,26 @@ function alarmText({ band, level, limit, severity, change, dangerUnconfirmed }: 
 }
 
 /** 'Also ALERT 18 vertical: ...': every further number of the group, so that none is hidden. */
-function alsoLines(group: readonly Standing[]): string[] {
+function alsoLines(group: readonly Standing[], facts: SummaryFacts): string[] {
   return group.slice(1).map((item) => {
     const where = item.point === null ? 'the same' : directionOf({ point: item.point });
-    return `Also ${markWord[severityOf(item)]} ${item.number}, ${where}: ${whatText(item)}`;
+    return `Also ${markWord[severityOf(item)]} ${item.number}, ${where}: ${whatText(item, facts)}`;
+  });
+}
+
+/** Which of the group's bands leave their sister machines. */
+function sisterLines(group: readonly Standing[], facts: SummaryFacts): string[] {
+  return group.flatMap((item) => {
+    const sister = item.kind === 'alarm' ? bandNowOf(item, facts)?.sister : null;
+    if (item.kind !== 'alarm' || sister?.leaves !== true) return [];
+    return [sentence(`${idText(item.band.id)} ${sisterText(sister)}`)];
   });
 }
 
 /** What the lines of the bearing's directions say of its parts, each sentence once. */
 function evidenceOf(group: readonly Standing[]): string[] {
   const said = group.flatMap((item) => (item.kind === 'alarm' ? evidenceLines(item.evidence) : []));
-  return [...new Set(said)].slice(0, 2).map((line) => line.charAt(0).toUpperCase() + line.slice(1));
+  return [...new Set(said)].slice(0, 2).map(sentence);
 }
 
 function sinceText(item: Standing, { site, writtenMs }: SummaryFacts): string {

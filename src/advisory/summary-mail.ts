@@ -5,6 +5,7 @@ import { letterHtml } from './letter-html.ts';
 import { letterText } from './letter-text.ts';
 import { bareLevel, changeText, counted, percentText, unitText } from './level-words.ts';
 import { gather, shareOfAlert } from './ranking.ts';
+import { repairHeads, repairRows, repairTitle } from './repair-words.ts';
 import { type Morning, morningOf, mostShown, type Section } from './summary.ts';
 import type { BandNow, PointNow, SummaryFacts } from './summary-facts.ts';
 import { dateText, momentText, shortMomentText } from './time-words.ts';
@@ -13,6 +14,8 @@ import { machineZoneNow } from './zone-words.ts';
 
 /** Rows of the full tables that a mail carries at most; the file has them all. */
 const mostTableRows = 800;
+const projection =
+  'When a limit would be reached goes by the daily medians of the last 30 days and the same growth, percent for percent. A projection, not a promise.';
 /** Bytes of HTML that mail programs still show without cutting or complaint. */
 const mostHtmlBytes = 300_000;
 
@@ -46,8 +49,10 @@ export function summaryLetter(facts: SummaryFacts, morning: Morning, mostRows: n
   const blocks: Block[] = [
     ...morning.sections.flatMap(screenBlocks),
     { kind: 'closing', text: `${zoneText(timeZone)} Change: the last 24 hours against the 7 days before.` },
+    ...(morning.projects ? [{ kind: 'closing', text: projection } as const] : []),
     { kind: 'closing', text: caution },
     ...morning.sections.flatMap(restBlocks),
+    ...repairBlocks(facts),
     ...tableBlocks(facts, mostRows),
   ];
   return {
@@ -56,6 +61,16 @@ export function summaryLetter(facts: SummaryFacts, morning: Morning, mostRows: n
     test: false,
     blocks,
   };
+}
+
+/** Every band that a repair is judged by. */
+function repairBlocks({ repairs = [], site }: SummaryFacts): Block[] {
+  return repairs
+    .filter(({ bands }) => bands.length > 0)
+    .flatMap((repair): Block[] => [
+      { kind: 'heading', text: `Before and after, ${repairTitle(repair, site.timeZone)}` },
+      { kind: 'table', heads: repairHeads, rows: repairRows(repair) },
+    ]);
 }
 
 /** A section as the first screen shows it: five findings, then how many more. */

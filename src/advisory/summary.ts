@@ -2,12 +2,16 @@ import type { Severity } from '../config/site.ts';
 import { needsAcknowledging } from './alarm-mail.ts';
 import type { MachineFacts, PointFacts, StandingAlarm, TroubleFacts } from './facts.ts';
 import { counted } from './level-words.ts';
-import { bearingOf, byUrgency, gather, largestShare, shareOfAlert } from './ranking.ts';
+import { bearingOf, byUrgency, gather, shareOfAlert } from './ranking.ts';
+import { repairFinding } from './repair-words.ts';
+import { apartLines } from './sister-words.ts';
 import { historyLines, recordingLines, serviceLines } from './summary-counts.ts';
-import type { BandNow, PointNow, SummaryFacts } from './summary-facts.ts';
-import { type Finding, knownFinding, needFinding, worseFinding } from './summary-findings.ts';
+import type { PointNow, SummaryFacts } from './summary-facts.ts';
+import { bandNowOf, type Finding, knownFinding, needFinding, worseFinding } from './summary-findings.ts';
 import { outOfServiceLines, planLines } from './summary-held.ts';
 import { learnedLines } from './summary-limits.ts';
+import { nothingWorse, type Worse, worseOf } from './summary-worse.ts';
+import { isProjected } from './trend-words.ts';
 import { isReturned, placeText, troubleName } from './wording.ts';
 
 /** The morning as data: what needs a person first, in ordered sections, before it becomes text or HTML. */
@@ -15,10 +19,21 @@ export interface Morning {
   /** '2 machines need a person today; 58 of 60 points judged, 1 stopped, 1 blind: ...'. */
   readonly first: string;
   readonly sections: readonly Section[];
+  /** Something is said of when a limit would be reached, which needs its caution. */
+  readonly projects: boolean;
 }
 
 export interface Section {
-  readonly name: 'needs' | 'worse' | 'known' | 'steady' | 'limits' | 'recordings' | 'history' | 'service';
+  readonly name:
+    | 'needs'
+    | 'worse'
+    | 'known'
+    | 'steady'
+    | 'repairs'
+    | 'limits'
+    | 'recordings'
+    | 'history'
+    | 'service';
   readonly title: string;
   /** Every finding, the most urgent first; a screen shows `mostShown` of them, then 'and n more'. */
   readonly findings: readonly Finding[];
@@ -29,13 +44,6 @@ export interface Section {
 export const mostShown = 5;
 
 export type Standing = StandingAlarm | TroubleFacts;
-
-/** A band that got worse without passing a limit. */
-export interface Worse {
-  readonly machine: MachineFacts;
-  readonly point: PointFacts;
-  readonly now: BandNow;
-}
 
 /**
  * Whether a standing alarm or trouble needs somebody today: not acknowledged, or the time to respond has passed, or
@@ -68,32 +76,51 @@ export function morningOf(facts: SummaryFacts): Morning {
     {
       name: 'worse',
       title: 'Worse, no limit passed',
-      findings: worseGroups.map((group) => worseFinding(group)),
+      findings: worseGroups.map((group) => worseFinding(group, facts.site.timeZone)),
       lines: worse.length === 0 ? [nothingWorse(facts)] : [],
     },
     {
       name: 'known',
       title: 'Already known',
-      findings: known.map((group) => knownFinding(group, facts.site.timeZone)),
+      findings: known.map((group) => knownFinding(group, facts)),
       lines: knownLines(facts, known.length),
     },
     {
       name: 'steady',
       title: 'Steady or better',
       findings: [],
-      lines: [`${steadyCount(facts, standing, worse)} of ${counted(facts.points.length, 'point')}.`],
+      lines: [
+        `${steadyCount(facts, standing, worse)} of ${counted(facts.points.length, 'point')}.`,
+        ...apartLines(facts),
+      ],
     },
+    ...repairSection(facts),
     ...learnedSection(facts),
     { name: 'recordings', title: 'Recordings', findings: [], lines: recordingLines(facts) },
     { name: 'history', title: 'Alarms', findings: [], lines: [...historyLines(facts), ...planLines(facts)] },
     { name: 'service', title: 'The service', findings: [], lines: serviceLines(facts) },
   ];
-  return { first: firstLine(facts, needs.flat()), sections };
+  const shown = [
+    ...worse.map(({ now }) => now),
+    ...standing.map((item) => (item.kind === 'alarm' ? bandNowOf(item, facts) : undefined)),
+  ];
+  return {
+    first: firstLine(facts, needs.flat()),
+    sections,
+    projects: shown.some((now) => isProjected(now?.trend)),
+  };
 }
 
 function knownLines(facts: SummaryFacts, findings: number): string[] {
   const out = outOfServiceLines(facts);
   return findings + out.length === 0 ? ['Nothing.'] : out;
+}
+
+/** Only while the fourteen days after a repair last. */
+function repairSection({ repairs = [], site }: SummaryFacts): Section[] {
+  if (repairs.length === 0) return [];
+  const findings = repairs.map((repair) => repairFinding(repair, site.timeZone));
+  return [{ name: 'repairs', title: 'After repairs', findings, lines: [] }];
 }
 
 /** Only where there is something to say of limits that are learned. */
@@ -117,46 +144,8 @@ function rankOf(item: Standing): { machine: MachineFacts | null; severity: Sever
   return { machine: item.machine, severity: item.severity, share };
 }
 
-/**
- * Bands whose change is for the worse, or significant by the standard of their zones (up or down), and that no limit
- * speaks of; by criticality, then share of the alert limit.
- */
-function worseOf(facts: SummaryFacts, standing: readonly Standing[]): Worse[] {
-  const told = new Set(
-    standing
-      .filter((item) => item.kind === 'alarm')
-      .map((item) => bandKey(item.machine, item.point, item.band)),
-  );
-  const found: Worse[] = facts.points
-    .filter(({ judging }) => judging === 'judged' || judging === 'no-limit')
-    .flatMap(({ machine, point, bands }) => bands.map((now) => ({ machine, point, now })))
-    .filter(
-      ({ machine, point, now }) =>
-        (now.change?.worse === true || now.zone?.change?.significant === true) &&
-        !told.has(bandKey(machine, point, now.band)),
-    );
-  const rank = ({ machine, now }: Worse) => ({
-    machine,
-    severity: null,
-    share: now.level === null ? null : largestShare(now.level.level, now.limits),
-  });
-  return found.sort(
-    (a, b) => byUrgency(rank(a), rank(b)) || (b.now.change?.ratio ?? 0) - (a.now.change?.ratio ?? 0),
-  );
-}
-
-function bandKey(machine: MachineFacts, point: PointFacts, band: { readonly id: string }): string {
-  return `${machine.id}\n${point.id}\n${band.id}`;
-}
-
 function pointKey(machine: MachineFacts | null, point: PointFacts | null): string {
   return `${machine?.id}\n${point?.id}`;
-}
-
-/** Of what nobody measured no one can say that it did not rise. */
-function nothingWorse({ points }: SummaryFacts): string {
-  const compared = points.some(({ bands }) => bands.some(({ change }) => change !== null));
-  return compared ? 'Nothing rose by more than its ordinary spread.' : 'There is nothing to compare yet.';
 }
 
 /** Judged points of which nothing stands and nothing got worse. */

@@ -1,7 +1,7 @@
 import { printNumber } from '../config/print-value.ts';
 import type { DisplayUnit } from '../config/site.ts';
 import type { TimeToLimit, Trend, TrendLine, TrendStep } from '../prognosis/trend.ts';
-import { levelText, percentText } from './level-words.ts';
+import { counted, levelText, percentText } from './level-words.ts';
 import { dateText } from './time-words.ts';
 import { idText } from './wording.ts';
 
@@ -58,15 +58,14 @@ export function trendInShort(facts: TrendFacts, display: DisplayUnit, timeZone: 
   const { trend, ahead } = facts;
   if (trend.kind === 'step') return stepText(facts, trend, timeZone);
   if (trend.kind !== 'rising' && trend.kind !== 'falling') return null;
-  if (ahead === null || ahead.time.days > farthestDays) return courseText(facts, trend);
+  if (ahead === null || !isProjected(facts)) return courseText(facts, trend);
   const { time } = ahead;
-  const inDays = `${about(time.days)} ${facts.time === 'running' ? 'running days' : 'days'}`;
-  return `${courseText(facts, trend)}, ${ahead.severity} (${levelText(ahead.at, display)}) in ${inDays} if it went on so (${rangeText(time)})`;
+  return `${courseText(facts, trend)}, ${ahead.severity} (${levelText(ahead.at, display)}) in ${aheadDays(facts, time.days)}, ${rangeText(time)}, if it went on so`;
 }
 
-/** Whether a message tells how things would go on, which needs its caution. */
+/** Whether its line of the summary tells how things would go on, which needs its caution. */
 export function isProjected(facts: TrendFacts | null | undefined): boolean {
-  return facts?.ahead != null;
+  return facts?.ahead != null && facts.ahead.time.days <= farthestDays;
 }
 
 function courseText(facts: TrendFacts, { kind, growth, days }: TrendLine): string {
@@ -81,13 +80,19 @@ function stepText(facts: TrendFacts, { factor, dayMs }: TrendStep, timeZone: str
 
 function aheadText(facts: TrendFacts, { severity, at, time }: LimitAhead, display: DisplayUnit): string {
   const limit = `the ${severity} limit (${levelText(at, display)})`;
-  const days = facts.time === 'running' ? 'days of running' : 'days';
-  if (time.days > farthestDays) return `at this rate ${limit} is more than ${farthestDays} ${days} away`;
-  return `if it went on so, it would reach ${limit} in ${about(time.days)} ${days}, ${rangeText(time)}`;
+  if (time.days > farthestDays)
+    return `at this rate ${limit} is more than ${farthestDays} days${ofRunning(facts)} away`;
+  return `if it went on so, it would reach ${limit} in ${aheadDays(facts, time.days)}, ${rangeText(time)}`;
 }
 
-function about(days: number): string {
-  return days < 1 ? 'less than 1' : `about ${wholeDays(days)}`;
+/** 'about 9 days of running'; the time in which a machine stands still does not count. */
+function aheadDays(facts: TrendFacts, days: number): string {
+  const said = days < 1 ? 'less than a day' : `about ${counted(Math.round(days), 'day')}`;
+  return `${said}${ofRunning(facts)}`;
+}
+
+function ofRunning({ time }: TrendFacts): string {
+  return time === 'running' ? ' of running' : '';
 }
 
 /** 'between 6 and 16 (90 %)'; 'from 6 on, perhaps never (90 %)'. */

@@ -1,8 +1,9 @@
-import type { SummaryFacts } from '../advisory/summary-facts.ts';
-import { localDate } from '../config/local-time.ts';
+import type { PointNow, SummaryFacts } from '../advisory/summary-facts.ts';
+import { localDate, localDay } from '../config/local-time.ts';
 import { pointPath } from '../config/site.ts';
 import type { MachineMemory } from '../detection/machine-state.ts';
 import { loadAllAlarms, standingAlarms } from '../store/alarms.ts';
+import { conditionNames } from '../store/conditions.ts';
 import { readJournal } from '../store/journal.ts';
 import type { Ledger } from '../store/ledger.ts';
 import type { Reader } from '../store/lent-connection.ts';
@@ -12,6 +13,8 @@ import { placesOutOfService } from '../store/suppressions.ts';
 import { diskRoom, freeBytes, ledgerBytes } from './disk-room.ts';
 import { machineFacts, siteFacts } from './fact-names.ts';
 import { readHealth } from './health.ts';
+import { repairsNow } from './repair-facts.ts';
+import { besideTheirSisters, sisterKey, sistersOf } from './sister-facts.ts';
 import type { SiteView } from './site-view.ts';
 import { heldNow, isOutOfService } from './summary-held.ts';
 import {
@@ -22,7 +25,7 @@ import {
   receivedOfExpected,
   serviceNow,
 } from './summary-periods.ts';
-import { alarmsByPoint, pointNow } from './summary-points.ts';
+import { alarmsByPoint, type PointGathered, pointNow } from './summary-points.ts';
 import { standingNow } from './summary-standing.ts';
 
 /**
@@ -44,7 +47,8 @@ export async function gatherSummary(question: SummaryQuestion): Promise<SummaryF
   const { site } = view;
   const known = await ledger.read((reader) => readKnown(reader, view, nowMs));
   const day: Day = { view, nowMs, sinceMs: nowMs - dayMs, watchedFromMs: known.watchedFromMs ?? nowMs };
-  const points = await gatherPoints(question, known);
+  const gathered = await gatherPoints(question, known);
+  const points = withSisters(question, gathered);
   const disk = {
     ms: nowMs,
     freeBytes: await freeBytes(site.folders.data),
@@ -64,6 +68,7 @@ export async function gatherSummary(question: SummaryQuestion): Promise<SummaryF
     points,
     standing: await standingNow(reader, view, await standingAlarms(reader), points),
     ...(await heldNow(reader, view, known.places, nowMs)),
+    repairs: await repairsNow(reader, view, nowMs),
     longStopped,
     limitsRemoved: await limitsRemovedSince(reader, known.lastSummaryMs ?? day.sinceMs),
     recordings: {
@@ -88,6 +93,7 @@ async function readKnown(reader: Reader, view: SiteView, nowMs: number) {
     alarms: alarmsByPoint(await loadAllAlarms(reader)),
     arrivals: await arrivalsOf(reader),
     memories,
+    conditions: await conditionNames(reader),
     places: await placesOutOfService(reader),
     /** The journal begins with the first start. */
     watchedFromMs: first?.wallMs ?? null,
@@ -96,7 +102,8 @@ async function readKnown(reader: Reader, view: SiteView, nowMs: number) {
 }
 
 async function gatherPoints({ ledger, view, nowMs }: SummaryQuestion, known: Known) {
-  const points: SummaryFacts['points'][number][] = [];
+  const points: PointGathered[] = [];
+  const sisters = sistersOf(view.site.machines);
   for (const machine of view.site.machines) {
     for (const point of machine.points) {
       const pointId = view.ids.pointId(machine.id, point.id);
@@ -109,10 +116,25 @@ async function gatherPoints({ ledger, view, nowMs }: SummaryQuestion, known: Kno
         memory: known.memories.get(machine.id) ?? null,
         outOfService: isOutOfService(known.places, machine.id, point.id),
         nowMs,
+        hasSisters: (sisters.get(machine.id)?.length ?? 0) > 0,
+        conditions: known.conditions,
       };
       points.push(await ledger.read((reader) => pointNow(reader, about)));
       await new Promise<void>((resolve) => setImmediate(resolve));
     }
   }
   return points;
+}
+
+/** Once all points are known: each band with what its sister machines say of it. */
+function withSisters({ view, nowMs }: SummaryQuestion, gathered: readonly PointGathered[]): PointNow[] {
+  const behind = gathered.flatMap((one) => one.behind ?? []);
+  const beside = besideTheirSisters(view, behind, localDay(nowMs, view.site.timeZone));
+  return gathered.map(({ now }) => ({
+    ...now,
+    bands: now.bands.map((one) => {
+      const sister = beside.get(sisterKey(now.machine.id, now.point.id, one.band.id));
+      return sister === undefined ? one : { ...one, sister };
+    }),
+  }));
 }

@@ -1,10 +1,13 @@
 import { changeOf, mediansOf } from '../advisory/ranking.ts';
 import type { BandNow, Judging, PointNow } from '../advisory/summary-facts.ts';
+import type { TrendFacts } from '../advisory/trend-words.ts';
+import type { MachineDay } from '../assessment/sisters.ts';
 import { levelEveryMs } from '../config/meaning.ts';
 import { type Machine, type Point, pointPath } from '../config/site.ts';
 import type { TroubleKind } from '../detection/alarm.ts';
 import type { MachineMemory } from '../detection/machine-state.ts';
 import type { StoredAlarm } from '../store/alarms.ts';
+import type { DayMedian } from '../store/daily-levels.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { lastBreak } from '../store/notes.ts';
 import { type BareLevel, bareLevels, newestInTrend } from '../store/past-levels.ts';
@@ -15,7 +18,9 @@ import { baselinesNow } from './baselines-now.ts';
 import { bandFacts, machineFacts, pointFacts } from './fact-names.ts';
 import { levelFacts } from './level-facts.ts';
 import { limitFactsNow, limitsInForce } from './limits-in-force.ts';
+import type { PointBehind } from './sister-facts.ts';
 import type { SiteView } from './site-view.ts';
+import { daysOfPoint, type Newest, trendsOfBands } from './trend-facts.ts';
 import { zoneFacts, zoneReading } from './zone-facts.ts';
 
 /** One point as the summary sees it: can it be judged, and what do its bands say. */
@@ -30,6 +35,15 @@ export interface PointKnown {
   /** It, or its machine. */
   readonly outOfService: boolean;
   readonly nowMs: number;
+  readonly hasSisters: boolean;
+  /** Operating conditions of the ledger by its id. */
+  readonly conditions: ReadonlyMap<number, string>;
+}
+
+/** A point, and for its sisters the days behind its levels. */
+export interface PointGathered {
+  readonly now: PointNow;
+  readonly behind: PointBehind | null;
 }
 
 const dayMs = 86_400_000;
@@ -38,14 +52,18 @@ const oldestLevelMs = 60 * dayMs;
 /** Levels a band from which a change is reckoned, at most: hourly ones over eight days are 192. */
 const mostLevels = 400;
 
-export async function pointNow(reader: Reader, known: PointKnown): Promise<PointNow> {
-  const { view, machine, point, arrivals } = known;
+export async function pointNow(reader: Reader, known: PointKnown): Promise<PointGathered> {
+  const { view, machine, point, arrivals, hasSisters } = known;
+  const { bands, newest, days } = await bandsNow(reader, known);
   return {
-    machine: machineFacts(view, machine.id),
-    point: pointFacts(view, machine.id, point.id),
-    judging: await judgingOf(reader, known),
-    lastMs: arrivals?.newestUsedMs ?? null,
-    bands: await bandsNow(reader, known),
+    now: {
+      machine: machineFacts(view, machine.id),
+      point: pointFacts(view, machine.id, point.id),
+      judging: await judgingOf(reader, known),
+      lastMs: arrivals?.newestUsedMs ?? null,
+      bands,
+    },
+    behind: hasSisters && newest !== null ? behindOf(known, newest, days) : null,
   };
 }
 
@@ -78,7 +96,16 @@ async function judgingOf(reader: Reader, known: PointKnown): Promise<Judging> {
   return limits.every(({ now }) => 'unknown' in now) ? 'not-judged' : 'judged';
 }
 
-async function bandsNow(reader: Reader, { view, machine, point, nowMs }: PointKnown): Promise<BandNow[]> {
+interface BandsNow {
+  readonly bands: readonly BandNow[];
+  readonly newest: Newest | null;
+  readonly days: readonly DayMedian[];
+}
+
+async function bandsNow(
+  reader: Reader,
+  { view, machine, point, nowMs, conditions }: PointKnown,
+): Promise<BandsNow> {
   const pointId = view.ids.pointId(machine.id, point.id);
   const measurementId = await newestInTrend(reader, pointId, nowMs - oldestLevelMs);
   const measurement = measurementId === null ? null : await measurementById(reader, measurementId);
@@ -90,7 +117,20 @@ async function bandsNow(reader: Reader, { view, machine, point, nowMs }: PointKn
   const inForce = await limitsInForce(reader, view, point, measurement);
   const baselines = await baselinesNow(reader, view, point);
   const reading = measurement === null ? null : zoneReading(view, machine, point, measurement, series);
-  return point.bands.map((band): BandNow => {
+  const limitsOf = (bandId: number) =>
+    inForce
+      .filter(({ limit }) => view.ids.bandId(machine.id, point.id, limit.bandId) === bandId)
+      .map(limitFactsNow);
+  const { timeZone } = view.site;
+  const behind =
+    measurement === null
+      ? null
+      : await daysOfPoint(reader, { pointId, newest: measurement, knownUntilMs: nowMs, timeZone });
+  const trends =
+    measurement === null || behind === null
+      ? new Map<number, TrendFacts>()
+      : trendsOfBands(behind, measurement, { limitsOf, conditions });
+  const bands = point.bands.map((band): BandNow => {
     const bandId = view.ids.bandId(machine.id, point.id, band.id);
     const level = measurement?.levels.find((one) => one.bandId === bandId);
     const limits = inForce.filter(({ limit }) => limit.bandId === band.id);
@@ -106,8 +146,38 @@ async function bandsNow(reader: Reader, { view, machine, point, nowMs }: PointKn
       change: changeOf(levels, nowMs, onlyLower ? 'lower' : 'upper'),
       zone: reading === null ? null : zoneFacts(machine, reading, band.id, onTheWeek),
       baselines: baselines.get(band.id) ?? [],
+      trend: trends.get(bandId) ?? null,
+      sister: null,
     };
   });
+  return { bands, newest: measurement, days: behind?.days ?? [] };
+}
+
+/** The days behind the levels, as a sister machine is held against them. */
+function behindOf(
+  { view, machine, point, conditions }: PointKnown,
+  newest: Newest,
+  days: readonly DayMedian[],
+): PointBehind {
+  const bandIds = new Map(point.bands.map(({ id }) => [view.ids.bandId(machine.id, point.id, id), id]));
+  const groups = new Map<string, { bandId: string; condition: string; days: MachineDay[] }>();
+  for (const { bandId: ledgerId, seriesId, conditionId, day, median } of days) {
+    const bandId = bandIds.get(ledgerId);
+    // A level that was turned aside by another series of the same band is no day of this one.
+    const isOwn = newest.levels.some((one) => one.bandId === ledgerId && one.seriesId === seriesId);
+    if (bandId === undefined || !isOwn) continue;
+    const condition = conditions.get(conditionId) ?? '';
+    const group = groups.get(`${bandId} ${condition}`) ?? { bandId, condition, days: [] };
+    groups.set(`${bandId} ${condition}`, group);
+    group.days.push({ day, level: median });
+  }
+  const conditionNow = new Map(
+    newest.levels.flatMap(({ bandId, conditionId }) => {
+      const id = bandIds.get(bandId);
+      return id === undefined ? [] : [[id, conditions.get(conditionId) ?? ''] as const];
+    }),
+  );
+  return { machine, point, conditionNow, bands: [...groups.values()] };
 }
 
 /** Levels are compared within one series and one operating condition. */

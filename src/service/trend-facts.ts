@@ -64,13 +64,15 @@ export async function daysOfPoint(
 }
 
 /** The trend of each band of a recording by its ledger id, with the next of its limits. */
-export async function trendsOfBands(
-  reader: Reader,
+export function trendsOfBands(
   { days, broken }: PointDays,
   newest: Newest,
-  limitsOf: (bandId: number) => readonly LimitFacts[],
-): Promise<Map<number, TrendFacts>> {
-  const names = days.some(({ conditionId }) => conditionId !== 0) ? await conditionNames(reader) : null;
+  known: {
+    readonly limitsOf: (bandId: number) => readonly LimitFacts[];
+    /** Operating conditions of the ledger by its id. */
+    readonly conditions: ReadonlyMap<number, string>;
+  },
+): Map<number, TrendFacts> {
   const bySeries = new Map<string, DayMedian[]>();
   for (const day of days) {
     const key = `${day.bandId} ${day.seriesId}`;
@@ -90,9 +92,12 @@ export async function trendsOfBands(
       const isOwn = conditionId === level.conditionId;
       const ahead =
         isOwn && (trend.kind === 'rising' || trend.kind === 'falling')
-          ? limitAhead(trend, { level: level.level, nowHours }, limitsOf(level.bandId))
+          ? limitAhead(trend, { level: level.level, nowHours }, known.limitsOf(level.bandId))
           : null;
-      return [level.bandId, { trend, time, condition: names?.get(conditionId) ?? '', broken, ahead }];
+      return [
+        level.bandId,
+        { trend, time, condition: known.conditions.get(conditionId) ?? '', broken, ahead },
+      ];
     }),
   );
 }
@@ -183,6 +188,9 @@ export async function trendOfLevel(
   const limits = inForce.filter(
     ({ limit }) => view.ids.bandId(point.machineId, point.id, limit.bandId) === level.bandId,
   );
-  const trends = await trendsOfBands(reader, days, newest, () => limits.map(limitFactsNow));
+  const trends = trendsOfBands(days, newest, {
+    limitsOf: () => limits.map(limitFactsNow),
+    conditions: await conditionNames(reader),
+  });
   return trends.get(level.bandId) ?? null;
 }

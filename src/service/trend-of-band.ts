@@ -1,5 +1,6 @@
 import type { TrendFacts } from '../advisory/trend-words.ts';
 import { type Band, type Machine, type Point, pointPath } from '../config/site.ts';
+import { conditionNames } from '../store/conditions.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { notesOf, type StoredNote } from '../store/notes.ts';
 import { measurementById, type StoredMeasurement } from '../store/read-measurements.ts';
@@ -133,6 +134,9 @@ async function trendBehind(
   const newest = { usedMs, runningHours, levels: [row] };
   const { timeZone } = about;
   const days = await daysOfPoint(reader, { pointId, newest, knownUntilMs: about.toMs, timeZone });
-  const trends = await trendsOfBands(reader, days, newest, () => about.limits.map(limitFactsNow));
+  const trends = trendsOfBands(days, newest, {
+    limitsOf: () => about.limits.map(limitFactsNow),
+    conditions: await conditionNames(reader),
+  });
   return trends.get(row.bandId) ?? null;
 }

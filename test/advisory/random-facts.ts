@@ -6,6 +6,7 @@ import type {
   StandingFacts,
   TroubleFacts,
 } from '../../src/advisory/facts.ts';
+import type { RepairFacts } from '../../src/advisory/repair-words.ts';
 import type { PointNow, SummaryFacts } from '../../src/advisory/summary-facts.ts';
 import { troubleName } from '../../src/advisory/wording.ts';
 import type { TroubleKind } from '../../src/detection/alarm.ts';
@@ -18,6 +19,7 @@ import {
   morning,
   overall,
   overallLimit,
+  repair,
   rising,
   summaryFacts,
   zoneOf,
@@ -162,6 +164,8 @@ const pointNow: fc.Arbitrary<PointNow> = fc
       limits: [level > 5 ? { ...danger.limit, alert: null, danger: null, unknown: id } : danger.limit],
       change: changed,
       zone: level > 5 ? null : zoneOf('B'),
+      trend: level > 3 ? { ...rising, condition: id } : null,
+      sister: level > 2 ? { ratio: level, usualRatio: 1, sisters: [m, m], leaves: level < 4 } : null,
       baselines: [
         {
           condition: id,
@@ -174,17 +178,29 @@ const pointNow: fc.Arbitrary<PointNow> = fc
     })),
   }));
 
+const repairOf: fc.Arbitrary<RepairFacts> = fc
+  .tuple(machine, point, name, fc.array(name, { maxLength: 8 }))
+  .map(([m, p, by, ids]) => ({
+    ...repair,
+    machine: m,
+    point: p,
+    by,
+    bands: ids.flatMap((id) => repair.bands.map((band) => ({ ...band, condition: id }))),
+  }));
+
 export const summary: fc.Arbitrary<SummaryFacts> = fc
   .tuple(
     fc.array(alarm, { maxLength: 20 }),
     fc.array(trouble, { maxLength: 12 }),
     fc.array(pointNow, { maxLength: 12 }),
     name,
+    fc.array(repairOf, { maxLength: 7 }),
   )
-  .map(([alarms, troubles, points, siteName]) => ({
+  .map(([alarms, troubles, points, siteName, repairs]) => ({
     ...summaryFacts,
     site: { name: siteName, timeZone: 'Europe/Dublin' },
     points,
     standing: numbered<(typeof alarms)[number] | (typeof troubles)[number]>([...alarms, ...troubles], 70_001),
+    repairs: repairs.map((repair) => ({ ...repair, comment: siteName })),
     limitsRemoved: [{ number: 69_999, what: siteName }],
   }));

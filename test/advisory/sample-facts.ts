@@ -9,6 +9,7 @@ import type {
   TroubleFacts,
   ZoneFacts,
 } from '../../src/advisory/facts.ts';
+import type { RepairFacts } from '../../src/advisory/repair-words.ts';
 import type { BandNow, PointNow, SummaryFacts } from '../../src/advisory/summary-facts.ts';
 import type { TrendFacts } from '../../src/advisory/trend-words.ts';
 import { displayUnit, usualDisplayUnit } from '../../src/config/units.ts';
@@ -321,6 +322,32 @@ const pointNow = (
   judging: PointNow['judging'] = 'judged',
 ): PointNow => ({ machine, point, judging, lastMs: morning - hour / 2, bands });
 
+export const repair: RepairFacts = {
+  kind: 'repair',
+  atMs: morning - 6 * day - 14 * hour,
+  by: 'A. Fitter',
+  comment: 'drive end bearing replaced',
+  machine: fan,
+  point: null,
+  daysSince: 5,
+  bands: [
+    {
+      point: driveV,
+      band: overall,
+      condition: '',
+      before: { level: 5.21e-3, days: 14 },
+      after: { level: 1.4e-3, days: 5 },
+    },
+    {
+      point: driveV,
+      band: shaft,
+      condition: 'full-load',
+      before: { level: 12.1e-6, days: 9 },
+      after: { level: 12.4e-6, days: 4 },
+    },
+  ],
+};
+
 export const summaryFacts: SummaryFacts = {
   site,
   writtenMs: morning,
@@ -342,7 +369,11 @@ export const summaryFacts: SummaryFacts = {
     pointNow(
       pump,
       otherH,
-      bandsOf(1.8e-3, 2.2, { change: { ratio: 1.42, ordinaryRatio: 1.16, worse: true } }),
+      bandsOf(1.8e-3, 2.2, {
+        change: { ratio: 1.42, ordinaryRatio: 1.16, worse: true },
+        trend: rising.ahead && { ...rising, ahead: { ...rising.ahead, severity: 'alert', at: 2.8e-3 } },
+        sister: { ratio: 2.14, usualRatio: 1.12, sisters: [blower, fan], leaves: true },
+      }),
     ),
     { ...pointNow(fan, driveH, [], 'no-limit') },
     {
@@ -381,6 +412,7 @@ export const summaryFacts: SummaryFacts = {
       detail: 'configured 25.6 kHz, file 12.8 kHz',
     },
   ],
+  repairs: [repair],
   longStopped: [],
   limitsRemoved: [],
   recordings: { received: 165, expected: 168, repeats: 1, late: 0, quarantined: 2, unassigned: 0 },
@@ -405,6 +437,7 @@ export const quietFacts: SummaryFacts = {
     pointNow(blower, otherH, bandsOf(1.44e-3, 4.4, { zone: zoneOf('B') })),
   ],
   standing: [],
+  repairs: [],
   recordings: { received: 48, expected: 48, repeats: 0, late: 0, quarantined: 0, unassigned: 0 },
   history: { yesterday: 0, week: 0, frequent: [] },
 };
