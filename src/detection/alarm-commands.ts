@@ -63,14 +63,15 @@ export function suppressAs(suppression: Suppression, event: JournalEventName): A
 
 /**
  * G, H or I -> what the condition is now. A person's suppression (shelved, out of service) was a promise to look
- * again: an alarm that stands is told anew and needs a new acknowledgement. After suppression by design only what
- * was held back is told.
+ * again: an alarm that stands is told anew and needs a new acknowledgement, and so is a latched one that nobody has
+ * acknowledged. After suppression by design only what was held back is told.
  */
 export function lift(suppression: Suppression, event: JournalEventName): Act {
   return (state, command) => {
     if (!state.suppressions.includes(suppression)) return unchanged(state, `it is not ${words[suppression]}`);
     const suppressions = state.suppressions.filter((one) => one !== suppression);
-    const anew = suppression !== 'by-design' && state.condition !== 'normal';
+    const calls = state.condition !== 'normal' || (state.latched && !state.acknowledged);
+    const anew = suppression !== 'by-design' && calls;
     const owed = state.heldBack || anew;
     const severity = state.condition === 'normal' ? state.highest : state.condition;
     const journal = [journalled(event, state, command)];
