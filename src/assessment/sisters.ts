@@ -81,14 +81,16 @@ export function besideSisters(
   const [before, last] = [levels.slice(0, -rules.newestDays), levels.slice(-rules.newestDays)];
   const risen = Math.min(...last.map(({ log }) => log)) - median(before.map(({ log }) => log));
   const least = Math.log(rules.leastFactor);
-  const { moves, differs } = amongThemselves(others);
   const growth = Math.log(others.length > 1 ? rules.leastGrowth : rules.leastGrowthOfTwo);
   const hasRisen = now > least && risen > least;
+  const grew = hasRisen && now - usual > growth;
+  // What costs most is asked for last: most machines are where they were.
+  const { moves, differs } = grew || now > growth ? amongThemselves(others) : { moves: 0, differs: 0 };
   return {
     ratio: Math.exp(ratios.at(-1)?.log ?? Number.NaN),
     usualRatio: Math.exp(usual),
-    isApart: now > Math.max(growth, rules.spreads * differs),
-    hasMoved: hasRisen && now - usual > Math.max(growth, rules.spreads * moves),
+    isApart: now > growth && now > rules.spreads * differs,
+    hasMoved: grew && now - usual > rules.spreads * moves,
     hasRisen,
     ratios: ratios.map(({ day, log }) => ({ day, level: Math.exp(log) })),
   };

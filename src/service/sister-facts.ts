@@ -44,26 +44,34 @@ export function sistersOf(machines: readonly Machine[]): Map<string, readonly Ma
 
 /** A day so long ago says nothing of this morning. */
 const oldestDays = 2;
+/** A dozen tell what is usual; each is held against every other. */
+const mostSisters = 12;
 
 /**
- * By point path and band id, bands that leave their sisters or lie apart from them as before.
+ * By point path and band id, bands that leave their sisters or lie apart from them as before. Takes turns with what else
+ * the service does.
  *
  * @param today local day of the morning
  */
-export function besideTheirSisters(
+export async function besideTheirSisters(
   view: SiteView,
   points: readonly PointBehind[],
   today: number,
-): Map<string, SisterFacts> {
+): Promise<Map<string, SisterFacts>> {
   const sisters = sistersOf(view.site.machines);
+  const byMachine = new Map<string, PointBehind[]>();
+  for (const one of points) byMachine.set(one.machine.id, [...(byMachine.get(one.machine.id) ?? []), one]);
   const found = new Map<string, SisterFacts>();
   for (const own of points) {
     const machines = sisters.get(own.machine.id) ?? [];
-    const others = machines.flatMap((machine) => {
-      const there = points.find((one) => one.machine.id === machine.id && isSamePlace(one.point, own.point));
-      return there === undefined ? [] : [there];
-    });
+    const others = machines
+      .flatMap((machine) => {
+        const there = byMachine.get(machine.id)?.find(({ point }) => isSamePlace(point, own.point));
+        return there === undefined ? [] : [there];
+      })
+      .slice(0, mostSisters);
     if (others.length === 0) continue;
+    await new Promise<void>((resolve) => setImmediate(resolve));
     for (const band of own.point.bands) {
       const facts = bandBeside(view, own, band, others, today);
       if (facts !== null) found.set(sisterKey(own.machine.id, own.point.id, band.id), facts);

@@ -48,7 +48,7 @@ export async function gatherSummary(question: SummaryQuestion): Promise<SummaryF
   const known = await ledger.read((reader) => readKnown(reader, view, nowMs));
   const day: Day = { view, nowMs, sinceMs: nowMs - dayMs, watchedFromMs: known.watchedFromMs ?? nowMs };
   const gathered = await gatherPoints(question, known);
-  const points = withSisters(question, gathered);
+  const points = await withSisters(question, gathered);
   const disk = {
     ms: nowMs,
     freeBytes: await freeBytes(site.folders.data),
@@ -127,9 +127,12 @@ async function gatherPoints({ ledger, view, nowMs }: SummaryQuestion, known: Kno
 }
 
 /** Once all points are known: each band with what its sister machines say of it. */
-function withSisters({ view, nowMs }: SummaryQuestion, gathered: readonly PointGathered[]): PointNow[] {
+async function withSisters(
+  { view, nowMs }: SummaryQuestion,
+  gathered: readonly PointGathered[],
+): Promise<PointNow[]> {
   const behind = gathered.flatMap((one) => one.behind ?? []);
-  const beside = besideTheirSisters(view, behind, localDay(nowMs, view.site.timeZone));
+  const beside = await besideTheirSisters(view, behind, localDay(nowMs, view.site.timeZone));
   return gathered.map(({ now }) => ({
     ...now,
     bands: now.bands.map((one) => {
