@@ -17,7 +17,7 @@ import { letterText } from './letter-text.ts';
 import { bareLevel, counted, measuredText } from './level-words.ts';
 import { byUrgency, firstLimit, shareOfAlert } from './ranking.ts';
 import { clockText, durationText, momentText } from './time-words.ts';
-import { acknowledgeCommand, caution, foreign, nameOf, zoneText } from './wording.ts';
+import { acknowledgeCommand, caution, foreign, nameOf, troubleName, zoneText } from './wording.ts';
 
 /** What one mail of a flood is made from; conventions as in facts.ts. */
 export interface FloodFacts {
@@ -131,15 +131,21 @@ function courseText({ site, fromMs, endedMs, alarmsInAll, goesOn }: FloodFacts):
   );
 }
 
+/** '1 danger, 12 trouble (9 dead sensor, 3 overdue)': a cause that they share shows in the kinds of trouble. */
 function countsText(items: readonly Item[]): string {
-  const of = (severity: string) =>
-    items.filter((item) => severityOf(item) === severity && !isOver(item)).length;
-  const over = items.filter(isOver).length;
+  const open = items.filter((item) => !isOver(item));
+  const of = (severity: string) => open.filter((item) => severityOf(item) === severity).length;
+  const kinds = new Map<string, number>();
+  for (const item of open) {
+    if (item.kind === 'trouble')
+      kinds.set(troubleName[item.trouble], (kinds.get(troubleName[item.trouble]) ?? 0) + 1);
+  }
+  const named = [...kinds].sort(([, a], [, b]) => b - a).map(([name, count]) => `${count} ${name}`);
   const said = [
     [of('danger'), 'danger'],
     [of('alert'), 'alert'],
-    [of('trouble'), 'trouble'],
-    [over, 'over already'],
+    [of('trouble'), `trouble (${named.join(', ')})`],
+    [items.length - open.length, 'over already'],
   ] as const;
   return said
     .filter(([count]) => count > 0)

@@ -1,4 +1,5 @@
 import { alarmMail, mailSeverity, numberOfSubject } from '../advisory/alarm-mail.ts';
+import { mostPictures } from '../advisory/alarm-pictures.ts';
 import type { AlarmFacts, AlarmMailFacts, Mail, TroubleFacts } from '../advisory/facts.ts';
 import { catchUpMail } from '../advisory/notices.ts';
 import { isWorse, messageIdentity, priorityOf, worseSeverity } from '../advisory/outbox.ts';
@@ -9,6 +10,7 @@ import type { Reader } from '../store/lent-connection.ts';
 import type { MessageKind, UntoldEvent } from '../store/messages.ts';
 import { stoodAt } from '../store/thread-ends.ts';
 import { mailIdsOfThread, openThreadOf, subjectsOfThread, type Thread } from '../store/threads.ts';
+import { alarmChart } from './alarm-chart.ts';
 import { alarmFacts } from './alarm-facts.ts';
 import { addressesFor, catchUpFacts, passedFor } from './catch-up.ts';
 import { machineFacts, machineOfId, siteFacts } from './fact-names.ts';
@@ -121,9 +123,11 @@ export async function alarmMailFacts(
   const alarms: AlarmFacts[] = [];
   const troubles: TroubleFacts[] = [];
   for (const event of newestOfEach(events)) {
-    if (event.key?.startsWith('limit:'))
-      alarms.push({ ...(await alarmFacts(reader, view, event)), ...(await toldAgain(reader, event)) });
-    else {
+    if (event.key?.startsWith('limit:')) {
+      const alarm = await alarmFacts(reader, view, event);
+      const chart = alarms.length < mostPictures ? await alarmChart(reader, view, alarm) : null;
+      alarms.push({ ...alarm, chart, ...(await toldAgain(reader, event)) });
+    } else {
       const life = event.number === null ? null : await alarmByNumber(reader, event.number);
       if (life?.alarm.subject.kind === 'trouble')
         troubles.push({
@@ -145,7 +149,7 @@ export async function alarmMailFacts(
 }
 
 /** What happened to one alarm within the gathering time is told by its newest event; of late levels by the highest. */
-export function newestOfEach(events: readonly UntoldEvent[]): UntoldEvent[] {
+function newestOfEach(events: readonly UntoldEvent[]): UntoldEvent[] {
   const chosen = new Map<string, UntoldEvent>();
   for (const event of events) {
     const about = `${event.key} ${event.number}`;

@@ -1,7 +1,7 @@
 import { type Flood, floodKey, floodOf, floodRule } from '../advisory/flood.ts';
 import { endOfWithinMs, isWithin } from '../advisory/hours.ts';
 import type { EventDue } from '../advisory/outbox.ts';
-import { type RecipientNow, reachOf } from '../advisory/recipients.ts';
+import { type RecipientNow, reachOf, recipientsFor } from '../advisory/recipients.ts';
 import type { MailSettings } from '../config/site.ts';
 import { floodsSince, hasMessages } from '../store/floods.ts';
 import type { Reader } from '../store/lent-connection.ts';
@@ -53,6 +53,17 @@ export async function leavingNow(
     if (event.event === 'flood-ended') ends.push(about);
     else if (waitsUntilMs === null) leaving.push(about);
     else waiting.push({ ...about, heldUntilMs: Math.max(waitsUntilMs, about.heldUntilMs ?? 0) });
+  }
+  // Who is told of a rise has no use for the mail of what it rose from.
+  for (const rise of leaving.filter(({ severity }) => severity === 'danger')) {
+    const told = new Set(reachNow(rise.event, from).addresses);
+    for (const early of waiting.filter(
+      ({ event }) => event.number !== null && event.number === rise.event.number,
+    )) {
+      if (takers(early.event, from).some((address) => !told.has(address))) continue;
+      waiting.splice(waiting.indexOf(early), 1);
+      leaving.push(early);
+    }
   }
   // That a flood is over is told with what is left of it, to whom it concerns.
   for (const end of ends) {
@@ -108,6 +119,12 @@ function grouped(event: UntoldEvent, flood: FloodNow | null, from: LeavingFrom):
 function reachNow(event: UntoldEvent, { view, recipients }: LeavingFrom, isOver = false) {
   const machine = event.machineId === null ? null : (machineOfId(view, event.machineId) ?? null);
   return reachOf(recipients, machine, event.severity, isOver);
+}
+
+/** Whom it concerns at whatever hour. */
+function takers(event: UntoldEvent, { view, recipients }: LeavingFrom): string[] {
+  const machine = event.machineId === null ? null : (machineOfId(view, event.machineId) ?? null);
+  return recipientsFor(recipients, machine, event.severity);
 }
 
 /** The end of the night, for what is held in it; a danger never is. */

@@ -3,6 +3,7 @@ import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
 import { alarmMail, mailSeverity } from '../../src/advisory/alarm-mail.ts';
 import type { Mail } from '../../src/advisory/facts.ts';
+import { floodMail } from '../../src/advisory/flood-mail.ts';
 import { catchUpMail, serviceMail, testMail } from '../../src/advisory/notices.ts';
 import { morningOf, mostShown, needsPerson } from '../../src/advisory/summary.ts';
 import type { SummaryFacts } from '../../src/advisory/summary-facts.ts';
@@ -105,6 +106,44 @@ describe('an alarm mail', () => {
         const others = alarmMail(mailFacts({ alarms: [first, { ...first, number: 70_002 }] })).subject;
         expect(others.endsWith(' mm/s r.m.s. (and 1 more)')).toBe(true);
       }),
+      runs,
+    );
+  });
+
+  it('of a flood is harmless, names every alarm and trouble, and begins with a danger where one stands', () => {
+    fc.assert(
+      fc.property(
+        fc.array(alarm, { maxLength: 6 }),
+        fc.array(trouble, { maxLength: 6 }),
+        name,
+        fc.record({ goesOn: fc.boolean(), over: fc.boolean() }),
+        (randomAlarms, randomTroubles, siteName, { goesOn, over }) => {
+          const alarms = numbered(randomAlarms, 70_001).map((one, index) => ({
+            ...one,
+            reminder: index === 1 ? { number: 2, toldMs: morning - hour, thenTo: [siteName] } : undefined,
+          }));
+          const troubles = numbered(randomTroubles, 80_001);
+          const mail = floodMail({
+            site: { ...site, name: siteName },
+            writtenMs: morning,
+            fromMs: morning - hour,
+            endedMs: over ? morning : null,
+            alarmsInAll: 12,
+            goesOn,
+            alarms,
+            troubles,
+          });
+          expectHarmless(mail);
+          for (const { severity, number } of alarms)
+            for (const text of [unwrapped(mail.text), shownBy(mail.html)])
+              expect(text).toContain(`${severity.toUpperCase()} ${number}`);
+          for (const { number } of troubles) expect(unwrapped(mail.text)).toContain(`TROUBLE ${number}`);
+          const dangers = alarms.filter(({ severity }) => severity === 'danger');
+          expect(mail.subject.startsWith('DANGER')).toBe(dangers.length > 0);
+          const first = /(DANGER|ALERT|TROUBLE) [78]\d{4}/.exec(unwrapped(mail.text))?.[1];
+          if (dangers.length > 0) expect(first).toBe('DANGER');
+        },
+      ),
       runs,
     );
   });

@@ -7,6 +7,7 @@ import { join } from 'node:path';
 import { describe, expect, it } from 'vitest';
 import { alarmMail } from '../../src/advisory/alarm-mail.ts';
 import type { Mail } from '../../src/advisory/facts.ts';
+import { type FloodFacts, floodMail } from '../../src/advisory/flood-mail.ts';
 import { catchUpMail, serviceMail, testMail } from '../../src/advisory/notices.ts';
 import { summaryFile, summaryMail } from '../../src/advisory/summary-mail.ts';
 import {
@@ -56,6 +57,23 @@ const start = {
   lostActs: [],
 };
 
+/** A cable duct under water: a danger among alerts and loggers that fell silent. */
+const flood: FloodFacts = {
+  site,
+  writtenMs: morning,
+  fromMs: morning - 0.15 * hour,
+  endedMs: null,
+  alarmsInAll: 14,
+  goesOn: false,
+  alarms: [alert, danger],
+  troubles: Array.from({ length: 12 }, (_, index) => ({
+    ...(index % 4 === 3 ? overdue : deadSensor),
+    number: 30 + index,
+    machine: index % 4 === 3 ? null : pump,
+    sinceMs: morning - 0.1 * hour,
+  })),
+};
+
 const mails: Record<string, () => Mail> = {
   'alarm-danger': () => alarmMail(mailFacts({ alarms: [danger] })),
   'alarm-gathered': () => alarmMail(mailFacts({ alarms: [alert, danger], troubles: [deadSensor] })),
@@ -68,6 +86,38 @@ const mails: Record<string, () => Mail> = {
         ],
       }),
     ),
+  'alarm-reminder': () =>
+    alarmMail(
+      mailFacts({
+        alarms: [
+          {
+            ...danger,
+            event: 'reminded',
+            reminder: { number: 3, toldMs: morning - 9 * hour, thenTo: ['chief@larkfen.example'] },
+          },
+        ],
+        threadSubject: 'DANGER 17: Aeration blower 1, drive end, horizontal, overall 4.71 mm/s r.m.s.',
+      }),
+    ),
+  'alarm-still-stands': () =>
+    alarmMail(
+      mailFacts({
+        alarms: [
+          { ...alert, event: 'still-stands', wasAcknowledged: { by: 'A. Fitter', ms: morning - 7 * day } },
+        ],
+      }),
+    ),
+  flood: () => floodMail(flood),
+  'flood-over': () =>
+    floodMail({
+      ...flood,
+      fromMs: morning - hour,
+      endedMs: morning - hour / 6,
+      goesOn: true,
+      alarmsInAll: 17,
+      alarms: [alert],
+      troubles: [],
+    }),
   'trouble-overdue': () => alarmMail(mailFacts({ machine: null, troubles: [overdue] })),
   'trouble-unreadable': () => alarmMail(mailFacts({ machine: null, troubles: [unreadable] })),
   summary: () => summaryMail(summaryFacts),
