@@ -1,5 +1,6 @@
 import type { Severity } from '../config/site.ts';
 import { alarmDetails, type Detail } from './alarm-details.ts';
+import { alarmPicture } from './alarm-pictures.ts';
 import { clip, plain } from './escape.ts';
 import type { AlarmFacts, AlarmMailFacts, MachineFacts, Mail, StandingFacts, TroubleFacts } from './facts.ts';
 import type { Block, Letter } from './letter.ts';
@@ -31,7 +32,8 @@ export const longestSubject = 150;
 export function alarmMail(facts: AlarmMailFacts): Mail {
   const subject = facts.threadSubject === null ? alarmSubject(facts) : subjectLine(facts.threadSubject);
   const letter = alarmLetter(facts);
-  return { subject, text: letterText(letter), html: letterHtml(letter) };
+  const pictures = inOrder(facts).flatMap((item, place) => alarmPicture(item, place)?.picture ?? []);
+  return { subject, text: letterText(letter), html: letterHtml(letter), pictures };
 }
 
 /**
@@ -129,6 +131,8 @@ export function alarmLetter(facts: AlarmMailFacts): Letter {
     const todo: Detail[] = index === 0 ? [] : [['To do', `${whatToDo(item)}${respondText(item, facts)}`]];
     const rows = [...todo, ...details].filter(([name]) => !(facts.test && name === 'State'));
     blocks.push({ kind: 'pairs', rows });
+    const picture = alarmPicture(item, index);
+    if (picture !== null) blocks.push(picture.block);
     if (!facts.test && needsAcknowledging(item)) {
       blocks.push({ kind: 'command', text: acknowledgeCommand(item.number) });
     }

@@ -4,6 +4,8 @@ import type { DisplayUnit, LimitReasons, Machine, Severity } from '../config/sit
 import type { ZoneBoundaries, ZoneLetter } from '../config/zone-tables.ts';
 import type { AlarmStanding, JournalEventName, TroubleKind } from '../detection/alarm.ts';
 import type { Averaging, RunningSpeed } from '../manipulation/measurement.ts';
+import type { Picture } from './charts/picture.ts';
+import type { TrendChartFacts } from './charts/trend-chart.ts';
 import type { EvidenceFacts } from './evidence-facts.ts';
 import type { ChatterFacts } from './history-words.ts';
 import type { Change } from './ranking.ts';
@@ -177,6 +179,7 @@ export interface AlarmFacts extends StandingAlarm {
   readonly chattering?: ChatterFacts | null;
   /** What the daily levels before say; null: there is no level that it could be of. */
   readonly trend: TrendFacts | null;
+  readonly chart?: TrendChartFacts | null;
   readonly lines: LinesFacts | null;
   readonly otherPoints: readonly OtherPointFacts[];
   readonly recording: RecordingFacts;
@@ -243,4 +246,5 @@ export interface Mail {
   readonly subject: string;
   readonly text: string;
   readonly html: string;
+  readonly pictures?: readonly Picture[];
 }

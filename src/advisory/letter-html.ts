@@ -3,6 +3,7 @@ import type { ZoneLetter } from '../config/zone-tables.ts';
 import { html, type Markup } from './escape.ts';
 import type { Block, Letter } from './letter.ts';
 import { markWord, type Said, saidText } from './letter.ts';
+import { pictureId } from './mail-bytes.ts';
 
 /**
  * A letter as HTML: one column, text first, nothing from elsewhere. Styles stand inline, because some mail programs
@@ -66,6 +67,9 @@ function blockHtml(block: Block): Markup {
 `;
     case 'closing':
       return html`<p class="soft" style="margin:10px 0 0;color:#4c5157;font-size:13px">${block.text}</p>
+`;
+    case 'picture':
+      return html`<p style="margin:0 0 12px"><img src="cid:${pictureId(block.name)}" alt="${block.alt}" width="${block.size.widthPx}" style="display:block;width:100%;max-width:${block.size.widthPx}px;height:auto;background:#fff"></p>
 `;
     case 'finding':
       return findingHtml(block);

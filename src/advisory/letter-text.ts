@@ -11,8 +11,9 @@ const square = { danger: '■', alert: '□', trouble: '⬚' } as const;
 export function letterText(letter: Letter): string {
   const test = letter.test ? 'TEST: this is a test message, nothing has happened.\n\n' : '';
   const head = `${wrap(plain(letter.lead), '', '')}\n${wrap(plain(letter.head), '', '')}\n`;
-  const parts = letter.blocks.map((block, index) => {
-    const before = letter.blocks[index - 1];
+  const blocks = letter.blocks.filter(({ kind }) => kind !== 'picture');
+  const parts = blocks.map((block, index) => {
+    const before = blocks[index - 1];
     const close = before?.kind === 'heading' || (before?.kind === 'finding' && block.kind === 'finding');
     return `${close ? '' : '\n'}${blockText(block)}\n`;
   });
@@ -35,6 +36,8 @@ function blockText(block: Block): string {
       for (const line of block.more) lines.push(wrap(plain(line), '  ', '  '));
       return lines.join('\n');
     }
+    case 'picture':
+      return '';
     case 'pairs':
       return pairsText(block.rows);
     case 'table':

@@ -48,6 +48,13 @@ export type Block =
       readonly rows: readonly (readonly Said[])[];
     }
   | { readonly kind: 'command'; readonly text: string }
+  /** Carried by the mail itself under this name. What it shows is said in words as well. */
+  | {
+      readonly kind: 'picture';
+      readonly name: string;
+      readonly alt: string;
+      readonly size: { readonly widthPx: number; readonly heightPx: number };
+    }
   /** Caution and other words that stand last. */
   | { readonly kind: 'closing'; readonly text: string };
 

@@ -1,5 +1,15 @@
 import MailComposer from 'nodemailer/lib/mail-composer';
 
+export interface MailPicture {
+  readonly name: string;
+  readonly png: Uint8Array;
+}
+
+/** Content-ID by which the HTML part shows a picture that the mail carries (RFC 2392). */
+export function pictureId(name: string): string {
+  return `${name}@humledger.invalid`;
+}
+
 /** One mail to one recipient, as it will be stored and sent. */
 export interface MailParts {
   readonly mailId: string;
@@ -9,6 +19,8 @@ export interface MailParts {
   readonly dateMs: number;
   readonly text: string;
   readonly html: string;
+  /** Shown within the HTML part by `cid:`. */
+  readonly pictures?: readonly MailPicture[];
   /** Message-ID of the first mail of the thread to this recipient; null: this is the first. */
   readonly firstOfThread: string | null;
   readonly lastOfThread: string | null;
@@ -28,6 +40,13 @@ export function mailBytes(parts: MailParts): Promise<Uint8Array> {
     date: new Date(parts.dateMs),
     text: parts.text,
     html: parts.html,
+    attachments: (parts.pictures ?? []).map(({ name, png }) => ({
+      cid: pictureId(name),
+      filename: `${name}.png`,
+      content: Buffer.from(png),
+      contentType: 'image/png',
+      contentDisposition: 'inline' as const,
+    })),
     headers: { 'Auto-Submitted': 'auto-generated' },
     baseBoundary: parts.mailId.replace(/[^A-Za-z0-9]/g, '').slice(0, 24),
     newline: '\r\n',

@@ -3,6 +3,7 @@ import { mailBytes } from '../advisory/mail-bytes.ts';
 import { createMailer } from '../advisory/mailer.ts';
 import { type AttemptAnswer, mailId, messageIdentity } from '../advisory/outbox.ts';
 import type { MailSettings } from '../config/site.ts';
+import { mailPictures } from './mail-pictures.ts';
 import type { MailerFor } from './mail-tools.ts';
 
 export interface SentNow {
@@ -29,6 +30,7 @@ export async function sendNow(
   const identity = messageIdentity('asked for', to.about, [String(to.nowMs)]);
   const mailer = (to.mailerFor ?? createMailer)(server);
   const sent: SentNow[] = [];
+  const pictures = mailPictures(mail);
   for (const recipient of new Set(to.recipients)) {
     const bytes = await mailBytes({
       mailId: mailId(identity, recipient, from),
@@ -38,6 +40,7 @@ export async function sendNow(
       dateMs: to.nowMs,
       text: mail.text,
       html: mail.html,
+      pictures,
       firstOfThread: null,
       lastOfThread: null,
     });

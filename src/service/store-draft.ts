@@ -1,9 +1,11 @@
-import { mailBytes } from '../advisory/mail-bytes.ts';
+import type { Mail } from '../advisory/facts.ts';
+import { type MailPicture, mailBytes } from '../advisory/mail-bytes.ts';
 import { isWorse, mailId } from '../advisory/outbox.ts';
 import type { Writer } from '../store/lent-connection.ts';
 import { areUntold, insertMessage, type NewDelivery } from '../store/messages.ts';
 import { changeThread, closeThread, openThread, openThreadOf } from '../store/threads.ts';
 import type { Draft, DraftThread } from './draft.ts';
+import { mailPictures } from './mail-pictures.ts';
 
 /**
  * The bytes of a draft's mails. The mail library builds them over several turns of the event loop, so this is done
@@ -11,7 +13,9 @@ import type { Draft, DraftThread } from './draft.ts';
  */
 export async function deliveriesFor(draft: Draft, from: string, dateMs: number): Promise<NewDelivery[]> {
   const deliveries: NewDelivery[] = [];
+  const drawn = new Map<Mail, MailPicture[]>();
   for (const { recipient, mail, earlier } of draft.mails) {
+    if (!drawn.has(mail)) drawn.set(mail, mailPictures(mail));
     const id = mailId(draft.identity, recipient, from);
     const bytes = await mailBytes({
       mailId: id,
@@ -21,6 +25,7 @@ export async function deliveriesFor(draft: Draft, from: string, dateMs: number):
       dateMs,
       text: mail.text,
       html: mail.html,
+      pictures: drawn.get(mail) ?? [],
       firstOfThread: earlier[0] ?? null,
       lastOfThread: earlier.at(-1) ?? null,
     });

@@ -56,6 +56,23 @@ describe('the mails of an alarm', () => {
     expect(server.got.length).toBe(2);
   });
 
+  it('carry the picture of the trend, within 300 kB, where there are levels enough for one', async () => {
+    const { server, bench: b } = await bench({ to: [{ address: ann }] });
+    for (let hour = 0; hour < 30; hour++) {
+      await b.record('blower/de', { overall: 2 + 0.01 * hour });
+      await b.pass(hourMs);
+    }
+    await b.record('blower/de', { overall: 3.1 });
+    await b.pass(hourMs);
+    const [mail] = server.to(ann) as [ParsedMail];
+    const [picture] = mail.attachments;
+    expect(picture).toMatchObject({ contentType: 'image/png', cid: 'trend-1@humledger.invalid' });
+    expect(picture.related).toBe(true);
+    expect(mail.html).toContain('Trend of overall, blower, de; its figures stand above.');
+    expect(mail.text).not.toContain('trend-1');
+    expect(picture.size).toBeLessThan(100_000);
+  });
+
   it('begin a new thread when everything of the machine had returned to normal', async () => {
     const { server, bench: b } = await bench({ to: [{ address: ann }] });
     await b.record('blower/de', { overall: 3 });
