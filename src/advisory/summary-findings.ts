@@ -37,9 +37,14 @@ export function needFinding(group: readonly Standing[], facts: SummaryFacts): Fi
   return {
     mark: severityOf(first),
     number: first.number,
-    text: findingText(first, facts),
+    text: findingText(first),
     todo: `${todoText(first)}${respond}`,
-    also: [...alsoLines(group, facts), ...sisterLines(group, facts), ...evidenceOf(group)],
+    also: [
+      ...trendLine(first, facts),
+      ...alsoLines(group, facts),
+      ...sisterLines(group, facts),
+      ...evidenceOf(group),
+    ],
     since: `${sinceText(first, facts)}, ${standingText(first, timeZone)}.`,
   };
 }
@@ -50,9 +55,9 @@ export function knownFinding(group: readonly Standing[], facts: SummaryFacts): F
   return {
     mark: severityOf(first),
     number: first.number,
-    text: `${findingText(first, facts)}; ${standingText(first, facts.site.timeZone)}`,
+    text: `${findingText(first)}; ${standingText(first, facts.site.timeZone)}`,
     todo: null,
-    also: alsoLines(group, facts),
+    also: [...trendLine(first, facts), ...alsoLines(group, facts)],
     since: null,
   };
 }
@@ -109,20 +114,30 @@ function severityOf(item: Standing): Severity {
   return item.kind === 'alarm' ? item.severity : 'trouble';
 }
 
-function findingText(item: Standing, facts: SummaryFacts): string {
-  if (item.kind === 'trouble') return `${whereText(item)}: ${whatText(item, facts)}`;
-  return `${placeText(item.machine, item.point)}: ${whatText(item, facts)}`;
+function findingText(item: Standing): string {
+  if (item.kind === 'trouble') return `${whereText(item)}: ${whatText(item)}`;
+  return `${placeText(item.machine, item.point)}: ${whatText(item)}`;
 }
 
-function whatText(item: Standing, facts: SummaryFacts): string {
+function whatText(item: Standing): string {
   if (item.kind === 'trouble') {
     return item.detail === null
       ? troubleName[item.trouble]
       : `${troubleName[item.trouble]} (${clip(item.detail, 120)})`;
   }
+  return alarmText(item);
+}
+
+function trendLine(item: Standing, facts: SummaryFacts): string[] {
+  return trendSaid(item, facts).map(sentence);
+}
+
+/** What the days say of an alarm's band, where they say something. */
+function trendSaid(item: Standing, facts: SummaryFacts): string[] {
+  if (item.kind !== 'alarm') return [];
   const trend = bandNowOf(item, facts)?.trend;
   const said = trend == null ? null : trendInShort(trend, item.band.display, facts.site.timeZone);
-  return `${alarmText(item)}${said === null ? '' : `; ${said}`}`;
+  return said === null ? [] : [said];
 }
 
 /** The band of an alarm as it is now. */
@@ -152,7 +167,8 @@ function alarmText({ band, level, limit, severity, change, dangerUnconfirmed }: 
 function alsoLines(group: readonly Standing[], facts: SummaryFacts): string[] {
   return group.slice(1).map((item) => {
     const where = item.point === null ? 'the same' : directionOf({ point: item.point });
-    return `Also ${markWord[severityOf(item)]} ${item.number}, ${where}: ${whatText(item, facts)}`;
+    const said = [whatText(item), ...trendSaid(item, facts)].join('; ');
+    return `Also ${markWord[severityOf(item)]} ${item.number}, ${where}: ${said}`;
   });
 }
 

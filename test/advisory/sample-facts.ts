@@ -353,8 +353,12 @@ export const summaryFacts: SummaryFacts = {
   writtenMs: morning,
   sinceMs: morning - day,
   points: [
-    pointNow(blower, driveH, bandsOf(5.21e-3, 4.1, { change: danger.change, zone: danger.zone })),
-    pointNow(blower, driveV, bandsOf(3.1e-3, 3.9, { zone: zoneOf('C', { atLeast: true }) })),
+    pointNow(
+      blower,
+      driveH,
+      bandsOf(5.21e-3, 4.1, { change: danger.change, zone: danger.zone, trend: { ...rising, ahead: null } }),
+    ),
+    pointNow(blower, driveV, bandsOf(3.1e-3, 3.9, { zone: zoneOf('C', { atLeast: true }), trend: rising })),
     pointNow(
       blower,
       otherH,
