@@ -1,3 +1,4 @@
+import { judgeBearing } from './bearing-check.ts';
 import { type Build, tellDoubledIds, valueOr } from './layers.ts';
 import { nearest } from './nearest.ts';
 import type { BearingGeometry, BearingMultiples, Part, PartKind, PartPlace } from './parts.ts';
@@ -154,12 +155,18 @@ function rollingBearing(build: Build, part: WrittenPart, place: PartPlace): Part
   }
   const geometry = given.length === 0 ? null : geometryOf(build, keys);
   if (geometry === null && given.length > 0) return null;
+  const turningRing = valueOr(keys.turning_ring, 'inner');
+  const wrong = judgeBearing(multiples, geometry, turningRing);
+  if (wrong !== null) {
+    build.reading.problem(keys[wrong.key]?.at ?? part.at, wrong.what, wrong.right);
+    return null;
+  }
   return {
     ...place,
     kind: 'rolling-bearing',
     geometry,
     multiples,
-    turningRing: valueOr(keys.turning_ring, 'inner'),
+    turningRing,
   };
 }
 

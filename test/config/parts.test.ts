@@ -146,8 +146,51 @@ describe('what is wrong with a part is told with what would be right', () => {
       ['kind: rolling-bearing', 'bpfo: 3.585'],
       "bpfo: '3.585' has no unit; write: bpfo: 3.585 x",
     ],
+    // What a wrong number names is the wrong bearing.
+    [
+      'races that are mixed up',
+      ['kind: rolling-bearing', 'bpfo: 5.415x', 'bpfi: 3.585x'],
+      'bpfo of 5.415x is not below bpfi of 3.585x, and an outer race is passed less often; write: bpfo: 3.585x and bpfi: 5.415x',
+    ],
+    [
+      'races of two bearings',
+      ['kind: rolling-bearing', 'bpfo: 3.585x', 'bpfi: 4.947x'],
+      "bpfo and bpfi add up to 8.53x, which is no number of elements; compare both with the maker's list",
+    ],
+    [
+      'the strikes of an element for its spin',
+      ['kind: rolling-bearing', 'bpfo: 3.5848x', 'bpfi: 5.4152x', 'ftf: 0.3983x', 'bsf: 4.7135x'],
+      'bsf of 4.713x is twice what an element of this bearing spins; write: bsf: 2.35675x',
+    ],
+    [
+      'a cage that outruns its shaft',
+      ['kind: rolling-bearing', 'ftf: 0.602x', 'bpfo: 3.585x'],
+      'ftf of 0.602x is that of a bearing whose outer ring turns; add turning_ring: outer, or write: ftf: 0.398x',
+    ],
+    [
+      'a multiple that its own sizes contradict',
+      [
+        'kind: rolling-bearing',
+        'rolling_elements: 9',
+        'element_diameter: 7.94 mm',
+        'pitch_diameter: 38.5 mm',
+        'bpfo: 5.428x',
+      ],
+      'bpfo of 5.428x is not what the sizes give, 3.572x; leave bpfo out, or the sizes',
+    ],
   ])('%s', (_name, lines, complaint) => {
     expect(told(...lines)).toEqual([complaint]);
+  });
+
+  // Drive and fan end of the CWRU test rig, XJTU-SY, IMS; with the outer ring turning; with angles of contact of up to 40 degrees.
+  it.each([
+    ['ftf: 0.39828x', 'bsf: 2.35672x', 'bpfo: 3.5848x', 'bpfi: 5.4152x'],
+    ['ftf: 0.3817x', 'bsf: 1.9937x', 'bpfo: 3.0530x', 'bpfi: 4.9469x'],
+    ['ftf: 0.44325x', 'bsf: 4.1975x', 'bpfo: 7.0921x', 'bpfi: 8.9079x'],
+    ['turning_ring: outer', 'ftf: 0.60169x', 'bpfo: 3.5848x', 'bpfi: 5.4152x'],
+    ['ftf: 0.404x', 'bsf: 1.93x', 'bpfo: 5.25x', 'bpfi: 7.75x'],
+  ])("a maker's multiples are taken: %s %s", (...lines) => {
+    expect(told('kind: rolling-bearing', ...lines)).toEqual([]);
   });
 
   it('an id twice', () => {
