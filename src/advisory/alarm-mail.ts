@@ -1,6 +1,6 @@
 import type { Severity } from '../config/site.ts';
 import { alarmDetails, type Detail } from './alarm-details.ts';
-import { alarmPicture } from './alarm-pictures.ts';
+import { alarmPictures } from './alarm-pictures.ts';
 import { clip, plain } from './escape.ts';
 import type { AlarmFacts, AlarmMailFacts, MachineFacts, Mail, StandingFacts, TroubleFacts } from './facts.ts';
 import type { Block, Letter } from './letter.ts';
@@ -32,7 +32,9 @@ export const longestSubject = 150;
 export function alarmMail(facts: AlarmMailFacts): Mail {
   const subject = facts.threadSubject === null ? alarmSubject(facts) : subjectLine(facts.threadSubject);
   const letter = alarmLetter(facts);
-  const pictures = inOrder(facts).flatMap((item, place) => alarmPicture(item, place)?.picture ?? []);
+  const pictures = inOrder(facts).flatMap((item, place) =>
+    alarmPictures(item, place).map(({ picture }) => picture),
+  );
   return { subject, text: letterText(letter), html: letterHtml(letter), pictures };
 }
 
@@ -131,8 +133,7 @@ export function alarmLetter(facts: AlarmMailFacts): Letter {
     const todo: Detail[] = index === 0 ? [] : [['To do', `${whatToDo(item)}${respondText(item, facts)}`]];
     const rows = [...todo, ...details].filter(([name]) => !(facts.test && name === 'State'));
     blocks.push({ kind: 'pairs', rows });
-    const picture = alarmPicture(item, index);
-    if (picture !== null) blocks.push(picture.block);
+    blocks.push(...alarmPictures(item, index).map(({ block }) => block));
     if (!facts.test && needsAcknowledging(item)) {
       blocks.push({ kind: 'command', text: acknowledgeCommand(item.number) });
     }

@@ -4,8 +4,8 @@ import type { DisplayUnit, LimitReasons, Machine, Severity } from '../config/sit
 import type { ZoneBoundaries, ZoneLetter } from '../config/zone-tables.ts';
 import type { AlarmStanding, JournalEventName, TroubleKind } from '../detection/alarm.ts';
 import type { Averaging, RunningSpeed } from '../manipulation/measurement.ts';
+import type { AlarmCharts } from './alarm-pictures.ts';
 import type { Picture } from './charts/picture.ts';
-import type { TrendChartFacts } from './charts/trend-chart.ts';
 import type { EvidenceFacts } from './evidence-facts.ts';
 import type { ChatterFacts } from './history-words.ts';
 import type { Change } from './ranking.ts';
@@ -179,7 +179,7 @@ export interface AlarmFacts extends StandingAlarm {
   readonly chattering?: ChatterFacts | null;
   /** What the daily levels before say; null: there is no level that it could be of. */
   readonly trend: TrendFacts | null;
-  readonly chart?: TrendChartFacts | null;
+  readonly charts?: AlarmCharts;
   readonly lines: LinesFacts | null;
   readonly otherPoints: readonly OtherPointFacts[];
   readonly recording: RecordingFacts;

@@ -1,5 +1,5 @@
 import { alarmMail, mailSeverity, numberOfSubject } from '../advisory/alarm-mail.ts';
-import { mostPictures } from '../advisory/alarm-pictures.ts';
+import { mostWithSpectrum, mostWithTrend } from '../advisory/alarm-pictures.ts';
 import type { AlarmFacts, AlarmMailFacts, Mail, TroubleFacts } from '../advisory/facts.ts';
 import { catchUpMail } from '../advisory/notices.ts';
 import { isWorse, messageIdentity, priorityOf, worseSeverity } from '../advisory/outbox.ts';
@@ -12,6 +12,7 @@ import { stoodAt } from '../store/thread-ends.ts';
 import { mailIdsOfThread, openThreadOf, subjectsOfThread, type Thread } from '../store/threads.ts';
 import { alarmChart } from './alarm-chart.ts';
 import { alarmFacts } from './alarm-facts.ts';
+import { alarmSpectrum } from './alarm-spectrum.ts';
 import { addressesFor, catchUpFacts, passedFor } from './catch-up.ts';
 import { machineFacts, machineOfId, siteFacts } from './fact-names.ts';
 import type { SiteView } from './site-view.ts';
@@ -125,8 +126,11 @@ export async function alarmMailFacts(
   for (const event of newestOfEach(events)) {
     if (event.key?.startsWith('limit:')) {
       const alarm = await alarmFacts(reader, view, event);
-      const chart = alarms.length < mostPictures ? await alarmChart(reader, view, alarm) : null;
-      alarms.push({ ...alarm, chart, ...(await toldAgain(reader, event)) });
+      const charts = {
+        trend: alarms.length < mostWithTrend ? await alarmChart(reader, view, alarm) : null,
+        spectrum: alarms.length < mostWithSpectrum ? await alarmSpectrum(reader, view, alarm) : null,
+      };
+      alarms.push({ ...alarm, charts, ...(await toldAgain(reader, event)) });
     } else {
       const life = event.number === null ? null : await alarmByNumber(reader, event.number);
       if (life?.alarm.subject.kind === 'trouble')
