@@ -1,10 +1,13 @@
 import { integrationsBetween } from '../signal/integration.ts';
+import { octaveBands } from '../signal/octaves.ts';
 import { type BandCase, judgeBand } from './bands.ts';
 import { decibelsKnown, decibelUnit } from './decibel.ts';
 import { judgeEnvelopeBand } from './envelope-bands.ts';
 import { hasEnvelope } from './envelope-settings.ts';
 import { type Build, tellDoubledIds, valuesOf } from './layers.ts';
 import type { Decibels } from './level.ts';
+import { printFrequency } from './print-value.ts';
+import { parseFrequency } from './quantity.ts';
 import type { bandKeys } from './schema-bands.ts';
 import type { Written } from './shape.ts';
 import type { ReadMap } from './shape-map.ts';
@@ -202,7 +205,7 @@ function tellFindings({ reading }: Build, { band, written }: BuiltBand, situatio
   for (const { refused, edge, rule, what, right, instead } of judge(band, situation)) {
     const at = written.value.keys[edge]?.at ?? written.at;
     if (refused && written.value.has.has('octaves'))
-      reading.problem(at, what, octaveRemedy(edge, rule, right), rule);
+      reading.problem(at, what, rule === 'above range' ? lowerEnd(band, instead) : octaveRemedy(right), rule);
     else if (refused)
       reading.problem(at, what, instead === null ? right : reading.write(at, asYaml(instead)), rule);
     else reading.warn(at, what, rule);
@@ -210,8 +213,20 @@ function tellFindings({ reading }: Build, { band, written }: BuiltBand, situatio
 }
 
 /** The edges of an octave band are the standard's; only the range of bands can be another one. */
-function octaveRemedy(edge: 'from' | 'to', rule: string, right: string): string {
-  if (edge === 'to' && rule === 'above range') return 'end the octave bands lower';
+function octaveRemedy(right: string): string {
   const finer = right.replace(/,? ?(or )?write: (from|to): .*$/, '');
   return finer === '' ? 'begin the octave bands higher' : `${finer}, or begin the octave bands higher`;
+}
+
+/** The highest mid-band of which the rate leaves the whole band. `highest`: edge that may not be passed. */
+function lowerEnd({ from, to }: Band, highest: string | null): string {
+  const limit = highest === null ? null : parseFrequency(highest);
+  if (limit?.ok !== true) return 'end the octave bands lower';
+  const within = octaveBands(to / from > 1.5 ? 1 : 3, 0, limit.value).filter(
+    ({ toHz }) => toHz <= limit.value,
+  );
+  const last = within[within.length - 1];
+  return last === undefined
+    ? 'end the octave bands lower'
+    : `end the octave bands at ${printFrequency(last.nominalHz)}`;
 }

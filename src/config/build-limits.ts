@@ -129,6 +129,8 @@ function buildLimit(
     if (!absent.has(bandId)) tellUnknownBand(build, keys.band, bands, shown);
     return null;
   }
+  // A kind that was refused has been told; what its limit lacks or has too much, nobody knows.
+  if (keys.kind === null && written.value.has.has('kind')) return null;
   const kind = valueOr(keys.kind, 'fixed');
   if (!keysFit(build, written, kind)) return null;
   const parts = kinds[kind](build, written, { band, zoneCase, shown });

@@ -17,9 +17,11 @@ function parseRange(text: string, parseEnd: (end: string) => Parsed<number>, exa
   const ends = text.split('..');
   if (ends.length !== 2) return refused(`'${shorten(text)}' is no range such as ${example}`);
   const [from, to] = ends.map((end) => parseEnd(end.trim()));
-  if (!from.ok)
-    return refused(from.what, from.instead === null ? null : `${from.instead}..${ends[1].trim()}`);
-  if (!to.ok) return refused(to.what, to.instead === null ? null : `${ends[0].trim()}..${to.instead}`);
+  const written = (end: Parsed<number>, n: number) => (end.ok ? ends[n].trim() : end.instead);
+  const [lower, upper] = [written(from, 0), written(to, 1)];
+  const instead = lower === null || upper === null ? null : `${lower}..${upper}`;
+  if (!from.ok) return refused(from.what, instead);
+  if (!to.ok) return refused(to.what, instead);
   if (from.value > to.value)
     return refused(`'${shorten(text)}' begins above its end`, `${ends[1].trim()}..${ends[0].trim()}`);
   return from.value < to.value

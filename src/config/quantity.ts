@@ -139,7 +139,9 @@ export function parseDuration(text: string, example = 's'): Parsed<number> {
 
 /** Hz from '10 Hz', '2 kHz', '2970 rpm'. */
 export function parseFrequency(text: string, example = 'Hz'): Parsed<number> {
-  const parsed = parsePhysical(text, ['frequency'], example);
+  // Whoever leaves the unit out of a large number means hertz: 2000 is no 2000 kHz.
+  const meant = example === 'kHz' && Number(text) >= 100 ? 'Hz' : example;
+  const parsed = parsePhysical(text, ['frequency'], meant);
   return parsed.ok ? understood(parsed.value.value) : parsed;
 }
 

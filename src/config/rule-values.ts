@@ -184,6 +184,12 @@ function multipleOrLevel(
   if (written === null) return { multiple: null, level: null };
   const multiple = parse(written.value);
   if (multiple.ok) return { multiple: multiple.value, level: null };
+  const times = `${written.value.trim()}x`;
+  if (Number.isFinite(Number(written.value)) && parse(times).ok) {
+    const what = `${name}: '${shorten(written.value)}' has no unit`;
+    build.reading.problem(written.at, what, build.reading.write(written.at, times), name);
+    return null;
+  }
   const level = levelOf(build, name, written, limit.band);
   return level === null ? null : { multiple: null, level };
 }

@@ -132,8 +132,11 @@ describe('octave bands', () => {
     expect(asked('- octaves: 1/3', '  from: 10 Hz', '  to: 100 Hz')).toMatch(
       /band 'third-10Hz' .* is 1.48 lines .* or begin the octave bands higher$/,
     );
-    expect(asked('- octaves: 1/3', '  from: 10 kHz', '  to: 12.5 kHz')).toContain(
-      'end the octave bands lower',
+    expect(asked('- octaves: 1/3', '  from: 5 kHz', '  to: 12.5 kHz')).toMatch(
+      /above the sample rate \/ 2.56 = 10 kHz; end the octave bands at 8 kHz$/,
+    );
+    expect(asked('- octaves: 1/1', '  from: 1 kHz', '  to: 8 kHz')).toMatch(
+      /; end the octave bands at 4 kHz$/,
     );
     expect(asked('- octaves: 1/3', '  to: 1 kHz')).toContain('from');
     expect(

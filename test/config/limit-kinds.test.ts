@@ -20,6 +20,32 @@ const limitOf = (lines: readonly string[], machine = 0) => {
   return siteOf(text).machines[machine]?.points[0]?.limits[0];
 };
 
+describe('a slip of the pen is told with what was meant, once', () => {
+  const told = (...lines: string[]) =>
+    complaints(exampleWith([typed, lines.map((line) => `        ${line}`).join('\n')]));
+
+  it('a multiple without its x', () => {
+    expect(told('kind: baseline', 'alert: 2.5')).toEqual([
+      "site.yaml:48:16: alert: '2.5' has no unit; write: alert: 2.5x",
+    ]);
+    expect(told('kind: fixed', 'alert: 2.5')).toEqual([
+      "site.yaml:48:16: alert: '2.5' has no unit; write: alert: 2.5 mm/s",
+    ]);
+  });
+
+  it('a kind that is not known, whatever it would have taken', () => {
+    expect(told('kind: statistic')).toEqual([expect.stringMatching(/; write: kind: statistical$/)]);
+  });
+
+  it('a range without units', () => {
+    const criticality = '    criticality: A                  # A | B | C';
+    const conditions = '\n    conditions:\n      - id: full\n        speed: 2800..3000';
+    expect(complaints(exampleWith([criticality, `    criticality: A${conditions}`]))).toEqual([
+      "site.yaml:66:16: speed: '2800' has no unit; write: speed: 2800 rpm..3000 rpm",
+    ]);
+  });
+});
+
 describe('the values of a limit', () => {
   it('are multiples of the baseline, decibels as 20 lg', () => {
     const limit = limitOf(['kind: baseline', 'alert: +6 dB', 'danger: 4x'], 1);

@@ -33,6 +33,11 @@ function rows(name: string): (readonly [string, string, string])[] {
     .map((line) => line.split(' | ') as unknown as readonly [string, string, string]);
 }
 
+it('a bare number of a hundred or more is hertz, whatever the example is in', () => {
+  expect(parseFrequency('2000', 'kHz')).toMatchObject({ ok: false, instead: '2000 Hz' });
+  expect(parseFrequency('25.6', 'kHz')).toMatchObject({ ok: false, instead: '25.6 kHz' });
+});
+
 function levelOf(text: string): number {
   const parsed = parseLevel(text);
   if (!parsed.ok) throw new Error(parsed.what);
