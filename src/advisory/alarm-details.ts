@@ -66,7 +66,8 @@ function limitDetail(alarm: AlarmFacts): string {
   const other = alarm.severity === 'danger' ? 'alert' : 'danger';
   const said = ([alarm.severity, other] as const).map((severity) => {
     const at = limit[severity];
-    if (at === null) return `no ${severity} limit`;
+    if (at === null)
+      return limit.unknown === undefined ? `no ${severity} limit` : `${severity} not reckoned now`;
     return `${severity} ${levelText(at, band.display)}: ${distanceText(comparedWith(limit, level.level), at)}`;
   });
   const line =

@@ -106,6 +106,7 @@ function detectLimit(limit: Limit, flags: readonly QualityFlag[], input: Detecti
     why: at.why,
     provisional: at.provisional,
     confirmedBy: at.confirmedBy,
+    ...(at.missing === undefined ? {} : { missing: at.missing }),
     condition: input.condition,
     deadbandPercent: limit.deadbandPercent,
     onDelay: limit.onDelay,

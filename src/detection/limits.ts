@@ -67,12 +67,20 @@ export function judgeAt(
     if (!isPassed(limit, at, threshold, held)) return false;
     return severity === 'danger' || held || limit.confident !== true || isCertain(at, level, threshold);
   };
-  const severity = passes('danger', at.danger) ? 'danger' : passes('alert', at.alert) ? 'alert' : 'normal';
+  const passed = passes('danger', at.danger) ? 'danger' : passes('alert', at.alert) ? 'alert' : 'normal';
+  const severity = heldByMissing(at, passed, present);
   return {
     severity,
     at,
     dangerAtOnce: severity === 'danger' && provesDanger(at, level, averages),
   };
+}
+
+/** What stands does not come back past a value that nobody knows now; it can only rise to the one that is known. */
+function heldByMissing({ missing }: Thresholds, passed: Condition, present: Condition): Condition {
+  if (missing === undefined || present === 'normal') return passed;
+  if (missing.severity === 'alert') return passed === 'normal' ? 'alert' : passed;
+  return passed === 'alert' ? present : passed;
 }
 
 /** The whole interval of the level lies past the threshold. */

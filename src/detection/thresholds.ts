@@ -29,6 +29,8 @@ export interface Thresholds {
   readonly provisional: boolean;
   /** A person stands for the baseline, which had been refused or was frozen. */
   readonly confirmedBy: string | null;
+  /** The learned one of the two values cannot be reckoned now (it is null above), and why; the site's own one counts. */
+  readonly missing?: { readonly severity: 'alert' | 'danger'; readonly why: string };
 }
 
 /** Why a limit cannot be reckoned now. */
@@ -78,7 +80,7 @@ function learned(
   baseline: Baseline | null,
   display: DisplayUnit,
 ): Thresholds | NoThresholds {
-  if (!isUsable(baseline)) return { unknown: whyUnusable(baseline) };
+  if (!isUsable(baseline)) return ownLevels(rule, limit, level, whyUnusable(baseline));
   const usual = Math.exp(baseline.medianLog);
   const said = `${printLevel(usual, display)}, the median of ${baseline.runningDays} running days`;
   const side = rule.by === 'change' ? (level >= usual ? 'upper' : 'lower') : limit.side;
@@ -104,6 +106,23 @@ function learned(
     ...valuesOf(limit, alert, danger),
     provisional: baseline.state === 'provisional',
     confirmedBy: baseline.confirmed?.by ?? null,
+  };
+}
+
+/** A level that the site gave beside a learned value is known from the first recording on. */
+function ownLevels(rule: LearnedRule, limit: Limit, level: number, why: string): Thresholds | NoThresholds {
+  const { alert, danger, side } = limit;
+  if (alert === null && danger === null) return { unknown: why };
+  const isMissing = rule.alert === null || alert !== null ? 'danger' : 'alert';
+  return {
+    value: level,
+    side,
+    alert,
+    danger,
+    why: limit.reasons ?? { alert: null, danger: null },
+    provisional: false,
+    confirmedBy: null,
+    missing: { severity: isMissing, why },
   };
 }
 

@@ -45,16 +45,22 @@ export function limitInForce(
   if (limit.rule === undefined)
     return { limit, now: thresholdsOf(limit, level ?? Number.NaN, situation, display) };
   if (level === null) return { limit, now: { unknown: 'there is no level yet' } };
-  return { limit, now: thresholdsOf(limit, level, situation, display) };
+  const now = thresholdsOf(limit, level, situation, display);
+  const isElsewhere = condition === null && !('unknown' in now) && now.missing !== undefined;
+  if (!isElsewhere) return { limit, now };
+  return { limit, now: { ...now, missing: { ...now.missing, why: ranElsewhere } } };
 }
+
+const ranElsewhere = 'the machine ran in none of its operating conditions';
 
 const learned = ['baseline', 'spread', 'change', 'rate'];
 
-function whyElsewhere({ conditions, rule }: Limit, condition: string | null): string | null {
+function whyElsewhere({ conditions, rule, alert, danger }: Limit, condition: string | null): string | null {
   const within = conditions ?? null;
   if (condition === null) {
-    const asks = within !== null || (rule !== undefined && learned.includes(rule.by));
-    return asks ? 'the machine ran in none of its operating conditions' : null;
+    const isLearned = rule !== undefined && learned.includes(rule.by) && alert === null && danger === null;
+    const asks = within !== null || isLearned;
+    return asks ? ranElsewhere : null;
   }
   if (within === null || within.includes(condition)) return null;
   return `it holds in ${within.join(', ')} only; the machine ran in ${condition}`;
@@ -157,7 +163,7 @@ export function pointLimits(
 export function limitFactsNow({ limit, now }: LimitInForce): LimitFacts {
   const { id, side } = limit;
   if ('unknown' in now) return { id, side, alert: null, danger: null, unknown: now.unknown };
-  const { alert, danger, why, provisional, confirmedBy, value } = now;
+  const { alert, danger, why, provisional, confirmedBy, value, missing } = now;
   return {
     id,
     side: now.side,
@@ -167,10 +173,16 @@ export function limitFactsNow({ limit, now }: LimitInForce): LimitFacts {
     ...(limit.rule?.by === 'rate' ? { compared: value } : {}),
     ...(provisional ? { provisional } : {}),
     ...(confirmedBy === null ? {} : { confirmedBy }),
+    ...(missing === undefined ? {} : { unknown: missingText(missing) }),
   };
 }
 
-/** A limit of the site file that judges nothing now. */
+/** 'alert: no baseline yet: 3 of 7 running days'. */
+export function missingText({ severity, why }: NonNullable<Thresholds['missing']>): string {
+  return `${severity}: ${why}`;
+}
+
+/** A limit of the site file that judges nothing now, or one of its two values. */
 export interface UnwatchedLimit {
   readonly point: Point;
   readonly limit: Limit;
@@ -193,7 +205,9 @@ export async function unwatchedLimits(
     const newest = await newestInTrend(reader, pointId, nowMs - oldestMs);
     const measurement = newest === null ? null : await measurementById(reader, newest);
     for (const { limit, now } of await limitsInForce(reader, view, point, measurement)) {
-      if (limit.rule !== undefined && 'unknown' in now) found.push({ point, limit, why: now.unknown });
+      if (limit.rule === undefined) continue;
+      if ('unknown' in now) found.push({ point, limit, why: now.unknown });
+      else if (now.missing !== undefined) found.push({ point, limit, why: missingText(now.missing) });
     }
   }
   return found;

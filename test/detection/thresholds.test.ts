@@ -1,6 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import type { LimitRule } from '../../src/config/limit-rules.ts';
 import type { Limit } from '../../src/config/site.ts';
+import type { Condition } from '../../src/detection/alarm.ts';
 import type { Baseline } from '../../src/detection/baseline.ts';
 import { noBaseline } from '../../src/detection/baseline.ts';
 import { judgeLevel } from '../../src/detection/limits.ts';
@@ -86,6 +87,32 @@ describe('a limit that is learned', () => {
     expect(unknown(limit, { ...known, baseline: refused })).toBe(
       'the baseline is refused: it lies in zone C or D',
     );
+  });
+
+  it('counts by the level that the site gave beside it while what is learned is not known', () => {
+    const limit = ruled({ by: 'spread', alert: 4.5, danger: null }, { danger: 7.1 });
+    const refused: Baseline = { ...baseline, state: 'refused', refused: 'it lies in zone C or D' };
+    const judge = (level: number, present: Condition, own = limit) => {
+      const judged = {
+        level: levelOf(level),
+        averages: 31,
+        display,
+        situation: { ...known, baseline: refused },
+      };
+      return judgeLevel(own, judged, present)?.severity;
+    };
+    expect([7, 7.2].map((level) => judge(level, 'normal'))).toEqual(['normal', 'danger']);
+    expect(at(limit, 3, nothingKnown)).toMatchObject({
+      alert: null,
+      danger: 7.1,
+      missing: { severity: 'alert', why: 'no baseline yet: 0 of 7 running days' },
+    });
+    // What stands does not come back past a value that nobody knows.
+    expect([2, 7.2].map((level) => judge(level, 'alert'))).toEqual(['alert', 'danger']);
+    expect([2, 6.6].map((level) => judge(level, 'danger'))).toEqual(['alert', 'danger']);
+    const dangerLearned = ruled({ by: 'baseline', alert: null, danger: 4 }, { alert: 3 });
+    expect([2, 3.1].map((level) => judge(level, 'normal', dangerLearned))).toEqual(['normal', 'alert']);
+    expect([2, 3.1].map((level) => judge(level, 'danger', dangerLearned))).toEqual(['normal', 'danger']);
   });
 
   it('is marked where the baseline is provisional, or stands by the word of a person', () => {

@@ -121,7 +121,7 @@ describe('a statistical limit', () => {
       { kind: 'repair', atMs: b.clock.wallMs(), found: null, comment: null },
       person(b),
     );
-    expect((await limitNow(b)).unknown).toBe('no baseline yet: 0 of 7 running days');
+    expect((await limitNow(b)).unknown).toBe('alert: no baseline yet: 0 of 7 running days');
     expect((await untold(b)).alarms[0]?.limit).toEqual(before);
     expect(before?.alert).toBeGreaterThan(0.0016);
   });
@@ -133,7 +133,7 @@ describe('a statistical limit', () => {
     const b = await bench(statistical, { zones, runningSpeedHz: 49.5 });
     // Group 2, rigid: zone C begins at 2.8 mm/s.
     await days(b, 8, 3);
-    expect((await limitNow(b)).unknown).toBe('the baseline is refused: it lies in zone C or D');
+    expect((await limitNow(b)).unknown).toBe('alert: the baseline is refused: it lies in zone C or D');
     expect(words(summaryMail(await summary(b)).text)).toContain(
       "Baselines refused, no limit is reckoned from them: blower, de (overall): it lies in zone C or D. See 'humledger baseline blower'",
     );
@@ -224,7 +224,7 @@ describe('operating conditions', () => {
     ]);
     // Outside both nobody can say what is usual.
     await b.record('blower/de', { overall: 2 }, { more: { loadPercent: null } });
-    expect((await limitNow(b)).unknown).toBe('the machine ran in none of its operating conditions');
+    expect((await limitNow(b)).unknown).toBe('alert: the machine ran in none of its operating conditions');
   });
 
   it('hold a limit to those that it names', async () => {

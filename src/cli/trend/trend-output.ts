@@ -144,7 +144,6 @@ export function trendText(shown: ShownTrend): string {
 
 function limitLine(inForce: LimitInForce, band: Band): string {
   const limit = limitFactsNow(inForce);
-  if (limit.unknown !== undefined) return `${limit.id}: ${reasonsText(limit)}`;
   const parts = (['alert', 'danger'] as const).flatMap((severity) => {
     const value = limit[severity];
     return value === null
@@ -152,6 +151,7 @@ function limitLine(inForce: LimitInForce, band: Band): string {
       : [`${severity} ${limit.side === 'upper' ? 'above' : 'below'} ${levelText(value, band.display)}`];
   });
   const because = reasonsText(limit);
+  if (parts.length === 0 && limit.unknown !== undefined) return `${limit.id}: ${because}`;
   return `${parts.join(', ')} (${limit.id})${because === null ? '' : `: ${because}`}`;
 }
 
