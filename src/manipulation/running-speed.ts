@@ -64,7 +64,11 @@ export function runningSpeed(question: SpeedQuestion): SpeedAnswer {
     const speed = { ...plain(turning.meanHz, turning.uncertaintyHz), origin: 'pulses' } as const;
     return { speed: { ...speed, rangeRpm: rangeOf(turning) }, findings };
   }
-  return nominalHz === null ? { speed: null, findings } : withoutMeasured(nominalHz, question, findings);
+  if (nominalHz === null) return { speed: null, findings };
+  const { speed, ...told } = withoutMeasured(nominalHz, question, findings);
+  // Where somebody counts pulses and they tell nothing, the shaft may stand still, or turn at any speed.
+  const isGuess = pulses !== null && speed?.origin === 'nominal';
+  return { ...told, speed: isGuess ? { ...speed, usableForNames: false } : speed };
 }
 
 function fromSidecar(

@@ -113,6 +113,9 @@ describe('a declared speed', () => {
       speed: { rpm: 1440, usableForNames: false },
       findings: [{ flag: 'speed-doubtful', detail: expect.stringContaining('its pulses show 2880 rpm') }],
     });
+    // A machine that has a pulse channel need not turn at its nominal speed.
+    const silent = answer({ nominalHz: 24, pulses: { refused: 'no pulses' }, spectra: noSpectra });
+    expect(silent.speed).toMatchObject({ rpm: 1440, origin: 'nominal', usableForNames: false });
     const blind = answer({ nominalHz: 24, pulses: { refused: 'no pulses' }, spectra: spectraAt(24) });
     expect(blind.speed?.origin).toBe('spectrum');
     expect(blind.findings).toEqual([
