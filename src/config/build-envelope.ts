@@ -182,7 +182,7 @@ function fitted(
   }
   reading.warn(
     at,
-    `${needs}; ${printFrequency(wider)} is used, at which no fault is named`,
+    `${needs}; lines at most ${printFrequency(wider)} apart are used, at which no fault is named`,
     'envelope length',
   );
   return { ...envelope, lineSpacingHz: wider };
