@@ -91,10 +91,17 @@ function withCeilings(
   const band = bands.find((one) => one.band.id === limit.bandId);
   if (band === undefined || (limit.rule?.by !== 'baseline' && limit.rule?.by !== 'spread')) return limit;
   const fixed = all.find(
-    ({ bandId, kind, side }) => bandId === limit.bandId && kind === 'fixed' && side === 'upper',
+    (one) =>
+      one.bandId === limit.bandId && one.kind === 'fixed' && one.side === 'upper' && holdsWith(one, limit),
   );
   const ceilings = ceilingsOf({ band, zoneCase, shown }, fixed ?? null);
   return ceilings === undefined ? limit : { ...limit, ceilings };
+}
+
+/** What a fixed limit says of some operating conditions is no ceiling in the others. */
+function holdsWith(fixed: Limit, learned: Limit): boolean {
+  const [within, asked] = [fixed.conditions ?? null, learned.conditions ?? null];
+  return within === null || asked?.every((condition) => within.includes(condition)) === true;
 }
 
 export function tellDoubledLimits({ reading }: Build, layer: LimitLayers[number]): void {

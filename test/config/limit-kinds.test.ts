@@ -81,6 +81,27 @@ describe('the values of a limit', () => {
     expect(limitOf(['kind: statistical'], 1)?.ceilings).toBeUndefined();
   });
 
+  it('may pass a fixed limit that holds in other operating conditions only', () => {
+    const ceilingsWith = (learnedIn: string, fixedIn: string) => {
+      const within = (ids: string) => (ids === '' ? '' : `\n        conditions: [${ids}]`);
+      const text = exampleWith(
+        [
+          '    like: [blower-1]',
+          '    conditions:\n      - id: full\n        load: 60 %..100 %\n      - id: part\n        load: 0 %..50 %',
+        ],
+        [typed, `        kind: statistical`],
+      );
+      const own = `    limits:\n      - id: learned\n        band: overall\n        kind: statistical${within(learnedIn)}\n      - band: overall\n        alert: 1 mm/s${within(fixedIn)}\n    conditions:`;
+      const [, second] = siteOf(text.replace('    conditions:', own)).machines;
+      return second?.points[0]?.limits.find(({ id }) => id === 'learned')?.ceilings?.alert?.value;
+    };
+    expect(ceilingsWith('', 'part')).toBeUndefined();
+    expect(ceilingsWith('full', 'part')).toBeUndefined();
+    expect(ceilingsWith('full, part', 'part')).toBeUndefined();
+    expect(ceilingsWith('part', 'full, part')).toBe(0.001);
+    expect(ceilingsWith('part', '')).toBe(0.001);
+  });
+
   it('of a change are 25 % of B/C where the machine has zones', () => {
     const zones = exampleWith([
       '    like: [blower-1]',
