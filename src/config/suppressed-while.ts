@@ -58,19 +58,21 @@ export const suppressedWhileKey = key(
 
 export type WrittenSuppressions = Written<readonly Written<SuppressedWhile>[]> | null;
 
-/** Limit, point and machine added up, without what would let a point's own trouble hide its levels. */
+/** Limit, point and machine added up, without what would let a point's own trouble, or its running, hide its levels. */
 export function suppressionsOf(
   place: string,
   ...layers: readonly WrittenSuppressions[]
 ): readonly SuppressedWhile[] {
   const all = layers.flatMap((layer) => (layer?.value ?? []).map(({ value }) => value));
   const texts = all.map(suppressedWhileText);
-  return all.filter((one, n) => !isOwnTrouble(one, place) && texts.indexOf(texts[n]) === n);
+  return all.filter((one, n) => !hidesOwn(one, place) && texts.indexOf(texts[n]) === n);
 }
 
-/** `place`: 'pump-2/de-v'. */
-function isOwnTrouble(one: SuppressedWhile, place: string): boolean {
-  return one.by === 'trouble' && `${one.machineId}/${one.pointId}` === place;
+/** `place`: 'pump-2/de-v'; of a machine with all its points, 'pump-2/'. */
+function hidesOwn(one: SuppressedWhile, place: string): boolean {
+  const isOwnMachine = place.startsWith(`${one.machineId}/`);
+  if (one.by === 'machine') return isOwnMachine && one.state === 'running';
+  return one.pointId === null ? isOwnMachine : place === `${one.machineId}/${one.pointId}`;
 }
 
 /** Names that are not in the site file, and conditions that could never hold. */
@@ -91,10 +93,12 @@ export function tellWrongSuppressions(
   for (const { value } of site.machine_types?.value.values() ?? [])
     for (const limit of value.keys.limits?.value.list ?? []) check(limit.value.keys.suppressed_while, null);
   for (const { value: machine } of site.machines?.value ?? []) {
-    check(machine.keys.suppressed_while, null);
-    for (const limit of machine.keys.limits?.value.list ?? []) check(limit.value.keys.suppressed_while, null);
+    const ownMachine = `${machine.keys.id?.value}/`;
+    check(machine.keys.suppressed_while, ownMachine);
+    for (const limit of machine.keys.limits?.value.list ?? [])
+      check(limit.value.keys.suppressed_while, ownMachine);
     for (const { value: point } of machine.keys.points?.value ?? []) {
-      const own = `${machine.keys.id?.value}/${point.keys.id?.value}`;
+      const own = `${ownMachine}${point.keys.id?.value}`;
       check(point.keys.suppressed_while, own);
       for (const limit of point.keys.limits?.value.list ?? []) check(limit.value.keys.suppressed_while, own);
     }
@@ -140,9 +144,9 @@ function wrongReference(
       right: `known are ${ids.slice(0, 20).join(', ')}`,
     };
   }
-  if (one.by === 'machine') return of.machine === null ? null : neverHolds(one.state, of.machine);
-  if (one.pointId === null) return null;
-  if (!of.pointIds.includes(one.pointId)) {
+  if (own !== null && hidesOwn(one, own)) return ownReference(one, own);
+  if (one.by === 'machine') return of.machine === null ? null : neverChanges(one.state, of.machine);
+  if (one.pointId !== null && !of.pointIds.includes(one.pointId)) {
     const near = nearest(one.pointId, of.pointIds);
     return {
       what: `suppressed_while names point '${one.pointId}', which ${of.id} has not`,
@@ -150,19 +154,25 @@ function wrongReference(
       right: `its points are ${of.pointIds.slice(0, 20).join(', ')}`,
     };
   }
-  if (own === null || !isOwnTrouble(one, own)) return null;
-  return {
-    what: `the trouble of ${own} is its own: what is wrong with a point never hides its levels`,
-    meant: null,
-    right: 'name another point, or leave it out',
-  };
+  return null;
 }
 
-function neverHolds(state: SuppressingState, machine: Machine): WrongReference | null {
+function ownReference(one: SuppressedWhile, own: string): WrongReference {
+  const what =
+    one.by === 'machine'
+      ? `limits of ${one.machineId} are judged while it runs: held back then, they could never alarm`
+      : one.pointId === null
+        ? `the trouble of ${one.machineId} is that of its own points: what is wrong with a point never hides its levels`
+        : `the trouble of ${own} is its own: what is wrong with a point never hides its levels`;
+  const another = one.by === 'machine' ? 'machine' : 'point';
+  return { what, meant: null, right: `name another ${another}, or leave it out` };
+}
+
+function neverChanges(state: SuppressingState, machine: Machine): WrongReference | null {
   const { id, running, afterStartMs } = machine;
-  if (running === null && state !== 'running')
+  if (running === null)
     return {
-      what: `${id} has no running:, so it never counts as ${state}`,
+      what: `${id} has no running:, so it ${state === 'running' ? 'always counts as running' : `never counts as ${state}`}`,
       meant: null,
       right: `add to ${id}: running: speed above 300 rpm`,
     };

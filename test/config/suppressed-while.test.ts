@@ -97,6 +97,18 @@ describe('suppressed_while', () => {
     expect(all['pump-1/nde-v overall-fixed-upper']).toEqual(['trouble of pump-1/de-v']);
   });
 
+  test('of a machine type hold for the other machines: none hides its own levels', () => {
+    const all = suppressions(
+      site({ typeLimit: 'suppressed_while: [trouble of pump-2, pump-2 running, pump-2 stopped]' }),
+    );
+    expect(all['pump-1/de-v overall-fixed-upper']).toEqual([
+      'trouble of pump-2',
+      'pump-2 running',
+      'pump-2 stopped',
+    ]);
+    expect(all['pump-2/de-v overall-fixed-upper']).toEqual(['pump-2 stopped']);
+  });
+
   test.each([
     [
       { point: 'suppressed_while: [trouble of pump-1/nde-v]' },
@@ -110,6 +122,14 @@ describe('suppressed_while', () => {
       'pump-1 has no running:, so it never counts as stopped',
     ],
     [{ pump1: 'suppressed_while: [pump-2 transient]' }, 'pump-2 has no after_start:'],
+    [
+      { pump2: 'suppressed_while: [pump-1 running]' },
+      'pump-1 has no running:, so it always counts as running',
+    ],
+    [{ pump2: 'suppressed_while: [pump-2 running]' }, 'held back then, they could never alarm'],
+    [{ limit: 'suppressed_while: [pump-1 running]' }, 'held back then, they could never alarm'],
+    [{ pump1: 'suppressed_while: [trouble of pump-1]' }, 'the trouble of pump-1 is that of its own points'],
+    [{ point: 'suppressed_while: [trouble of pump-1]' }, 'the trouble of pump-1 is that of its own points'],
     [{ pump1: 'suppressed_while: pump-2 stopped' }, 'suppressed_while is a list'],
   ])('%j is refused at its line', (where, message) => {
     const told = complaints(site(where)).filter((line) => !line.startsWith('warning'));
