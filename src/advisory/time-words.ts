@@ -2,7 +2,7 @@ import { localTime } from '../config/local-time.ts';
 
 /** Times and durations as people say them. Month and day names are our own, so that no version of ICU moves a byte. */
 
-const months = ['Jan', 'Feb', 'Mar', 'Apr', 'May', 'Jun', 'Jul', 'Aug', 'Sep', 'Oct', 'Nov', 'Dec'];
+export const months = ['Jan', 'Feb', 'Mar', 'Apr', 'May', 'Jun', 'Jul', 'Aug', 'Sep', 'Oct', 'Nov', 'Dec'];
 const days = ['Sun', 'Mon', 'Tue', 'Wed', 'Thu', 'Fri', 'Sat'];
 
 const two = (value: number): string => String(value).padStart(2, '0');
@@ -11,6 +11,12 @@ const two = (value: number): string => String(value).padStart(2, '0');
 export function dateText(ms: number, timeZone: string): string {
   const { year, month, day } = localTime(ms, timeZone);
   return `${days[new Date(Date.UTC(year, month - 1, day)).getUTCDay()]} ${day} ${months[month - 1]} ${year}`;
+}
+
+/** '1 Dec' in the zone, where the year stands beside it. */
+export function dayText(ms: number, timeZone: string): string {
+  const { month, day } = localTime(ms, timeZone);
+  return `${day} ${months[month - 1]}`;
 }
 
 /** '06:30' in the zone. */

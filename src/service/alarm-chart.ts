@@ -71,10 +71,11 @@ export async function alarmChart(
   };
 }
 
-/** As far ahead as a quarter of the picture, where a trend is claimed; as though the machine ran on without a stop. */
+/** A quarter of the picture ahead, where the words speak of a limit ahead; as though the machine ran on without a stop. */
 function projectionOf({ trend, level }: AlarmFacts): TrendChartFacts['projection'] {
   const line = trend?.trend;
-  if (line === undefined || (line.kind !== 'rising' && line.kind !== 'falling')) return null;
+  if (trend?.ahead == null || line === undefined || (line.kind !== 'rising' && line.kind !== 'falling'))
+    return null;
   const points = Array.from({ length: daysAhead + 1 }, (_, days) => ({
     atMs: level.usedMs + days * dayMs,
     level: line.levelNow * line.growthPerDay ** days,

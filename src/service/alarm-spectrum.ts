@@ -1,7 +1,6 @@
 import type { ChartedSpectrum, SpectrumChartFacts } from '../advisory/charts/spectrum-chart.ts';
 import type { AlarmFacts } from '../advisory/facts.ts';
-import { dateText } from '../advisory/time-words.ts';
-import { nameOf } from '../advisory/wording.ts';
+import { dayText } from '../advisory/time-words.ts';
 import type { Point } from '../config/site.ts';
 import { usualDisplayUnit } from '../config/units.ts';
 import type { SpectralPeak } from '../manipulation/measurement.ts';
@@ -39,10 +38,10 @@ export async function alarmSpectrum(
   const agoMs = usedMs - daysBefore * dayMs + dayMs / 24;
   const before = await spectrumBefore(reader, view, point, agoMs, ofEnvelope);
   const highest = (now.density.length - 1) * now.lineSpacingHz;
-  const on = (ms: number) => dateText(ms, view.site.timeZone);
-  const compared = before === null ? '' : `, on ${on(before.usedMs)} in grey`;
+  const on = (ms: number) => dayText(ms, view.site.timeZone);
+  const compared = before === null ? '' : `, and on ${on(before.usedMs)} in grey`;
   return {
-    title: `${nameOf(alarm.point)}: lines${ofEnvelope ? ' of the envelope' : ''} on ${on(usedMs)}${compared}`,
+    title: `Lines${ofEnvelope ? ' of the envelope' : ''} on ${on(usedMs)}${compared}`,
     display: usualDisplayUnit(point.quantity, point.signal.samplesIn.text),
     now,
     before,

@@ -40,8 +40,8 @@ export interface ChartedFamily {
   readonly multiples: number;
 }
 
-/** Room that a peak's word takes; more words would lie over each other. */
-const wordPx = 90;
+/** Room that a peak's word takes: of peaks within it the strongest is named. */
+const wordPx = 56;
 
 export function spectrumChart(facts: SpectrumChartFacts, size: ChartSize): ChartOption {
   const perUnit = facts.ordersOfHz ?? 1;
@@ -135,7 +135,12 @@ function linesOf(
 
 function namesOf(facts: SpectrumChartFacts, at: (hz: number) => number, size: ChartSize) {
   const shown = facts.peaks.filter(({ frequencyHz }) => frequencyHz <= facts.toHz);
-  const strongest = [...shown].sort((a, b) => b.level - a.level).slice(0, Math.floor(size.widthPx / wordPx));
+  const apartHz = (wordPx / size.widthPx) * facts.toHz;
+  const strongest: ChartedPeak[] = [];
+  for (const peak of [...shown].sort((a, b) => b.level - a.level)) {
+    if (strongest.every((one) => Math.abs(one.frequencyHz - peak.frequencyHz) >= apartHz))
+      strongest.push(peak);
+  }
   return {
     symbol: 'circle',
     symbolSize: 4,

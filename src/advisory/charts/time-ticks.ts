@@ -1,4 +1,5 @@
 import { instantsOf, localTime, readingMs } from '../../config/local-time.ts';
+import { dayText, months } from '../time-words.ts';
 
 /** Ticks of a time axis at round readings of the site's clocks: hours, midnights, first days of months and years. */
 export interface TimeTicks {
@@ -13,8 +14,6 @@ const day = 24 * hour;
 const hourSteps = [1, 2, 3, 6, 12];
 const daySteps = [1, 2, 3, 5, 7, 14];
 const monthSteps = [1, 2, 3, 6];
-
-const months = ['Jan', 'Feb', 'Mar', 'Apr', 'May', 'Jun', 'Jul', 'Aug', 'Sep', 'Oct', 'Nov', 'Dec'];
 
 /**
  * At most `most` ticks. A reading that no clock shows (in spring) has no tick, one that comes twice (in autumn) has one.
@@ -61,11 +60,6 @@ function firstDays(first: number, last: number, step: number): number[] {
 function hourText(ms: number, timeZone: string): string {
   const { hour: at, minute } = localTime(ms, timeZone);
   return at === 0 && minute === 0 ? dayText(ms, timeZone) : `${two(at)}:${two(minute)}`;
-}
-
-function dayText(ms: number, timeZone: string): string {
-  const { day: date, month } = localTime(ms, timeZone);
-  return `${date} ${months[month - 1]}`;
 }
 
 function monthText(ms: number, timeZone: string, step: number): string {
