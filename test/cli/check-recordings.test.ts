@@ -61,7 +61,7 @@ describe('what recordings show', () => {
     expect(out).not.toContain('cannot show');
     // 2 s at 2.56 kHz in segments of 1024: lines 2.5 Hz apart, hann.
     expect(words(out)).toContain('two tones from 7.5 Hz apart on (8.75 Hz where one is 20 dB weaker)');
-    expect(words(out)).toContain('names of peaks for shafts from 3750 rpm on');
+    expect(words(out)).toContain('faults named in the spectrum of shafts from 3750 rpm on');
   });
 
   it('names what they cannot, with settings that would do, and these do', async () => {
@@ -70,7 +70,7 @@ describe('what recordings show', () => {
     const [names] = pump?.cannot_show ?? [];
     expect(names).toMatchObject({ rule: 'names', line_spacing_hz: 0.98, duration_s: 5 });
     const { out } = await run(['check', '--site', siteOf(text)]);
-    expect(words(out)).toContain('pump-2/de-v: no peak of the spectrum gets a name at 1480 rpm');
+    expect(words(out)).toContain('pump-2/de-v: the spectrum names no fault at 1480 rpm');
     expect(words(out)).toContain('line_spacing: 0.98 Hz and duration: 5 s would do');
     // Only the point that hears the bearing is spoken of.
     expect(out).not.toMatch(/blower-1\/de-h: no peak/);
@@ -151,7 +151,7 @@ describe('what recordings show', () => {
     const section = out.slice(out.indexOf('What recordings cannot show'), out.indexOf('Averaging'));
     expect(section.trimEnd().split('\n').length).toBeLessThanOrEqual(6);
     expect(words(section)).toContain(
-      'fan-0/de, fan-0/nde and 198 more: no peak of the spectrum gets a name at 1000 rpm',
+      'fan-0/de, fan-0/nde and 198 more: the spectrum names no fault at 1000 rpm',
     );
     expect(out.match(/^Shows/gm)).toHaveLength(1);
   }, 60_000);

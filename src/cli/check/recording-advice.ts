@@ -77,7 +77,7 @@ export function showsText({ reach }: PointAdvice): string {
     `up to ${printFrequency(highestHz)}`,
     tones,
     ...level,
-    `names of peaks for shafts from ${printSpeed(leastNamedHz)} on`,
+    `faults named in the spectrum of shafts from ${printSpeed(leastNamedHz)} on`,
   ].join('; ');
 }
 

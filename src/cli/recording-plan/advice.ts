@@ -30,7 +30,7 @@ const leastUsedPercent = 80;
 
 /**
  * What recordings cannot show of a machine that turns as slowly as `slowestHz`, and what would do. `named`: whether its
- * site file lists parts, after which peaks could be named.
+ * site file lists parts, whose faults could be named.
  */
 export function adviceOn(
   recording: RecordingKind,
@@ -56,7 +56,7 @@ function names(recording: RecordingKind, reach: RecordingReach, slowestHz: numbe
   return {
     rule: 'names',
     band: null,
-    what: `no peak of the spectrum gets a name at ${printSpeed(slowestHz)}: a line every ${printFrequency(reach.layout.lineSpacingHz)} names from ${printSpeed(reach.leastNamedHz)} on`,
+    what: `the spectrum names no fault at ${printSpeed(slowestHz)}: a line every ${printFrequency(reach.layout.lineSpacingHz)} does from ${printSpeed(reach.leastNamedHz)} on`,
     ...finerLines(recording, needs),
   };
 }

@@ -76,7 +76,7 @@ const reasons: Readonly<Record<SpacingReason, string>> = {
   asked: 'asked for',
   separate: 'for the two tones',
   band: 'for the narrowest or lowest band',
-  names: 'to name peaks of the slowest shaft',
+  names: 'to name faults at the slowest shaft',
   usual: 'usual; nothing finer is asked for',
 };
 

@@ -90,13 +90,13 @@ function speedEntries(
   { slowestHz, fastestHz }: { readonly slowestHz: number | null; readonly fastestHz: number | null },
 ): Entry[] {
   if (slowestHz === null || turns === null) {
-    return [['names', `for peaks of shafts from ${printSpeed(leastNamedHz)} on (25 lines to the speed)`]];
+    return [['names', `of faults on shafts from ${printSpeed(leastNamedHz)} on (25 lines to the speed)`]];
   }
   const enough = turns < 10 ? ', 10 are the least' : '';
   const named =
     turns >= 25 * (1 - 1e-9)
-      ? 'enough to name peaks (25)'
-      : `too few to name peaks (25; from ${printSpeed(leastNamedHz)} on)`;
+      ? 'enough to name faults (25)'
+      : `too few to name faults (25; from ${printSpeed(leastNamedHz)} on)`;
   const lineHz = layout.lineSpacingHz;
   const entries: Entry[] = [
     [
