@@ -77,7 +77,8 @@ async function dueOf(reader: Reader, look: ReminderLook, life: LifeTold): Promis
   if (nowMs - newest.wallMs < fewestPauseMs && nowMs >= newest.wallMs) return null;
   const standing = await alarmByNumber(reader, life.number);
   if (standing === null || !waitsForPerson(standing)) return null;
-  const severity = standing.alarm.state.told ?? life.first.severity;
+  // Of what was told last: an alert that came again after a danger is not told as a danger.
+  const { severity } = life.first;
   const rule = ruleFor(look, standing, severity);
   if (rule === null) return null;
   const number = life.reminders.length + 1;

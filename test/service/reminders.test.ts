@@ -123,6 +123,27 @@ describe('a danger that nobody acknowledges', () => {
 });
 
 describe('reminders', () => {
+  it('are of what was told last: an alert that came again after a danger is no danger, and one that is, has its own subject', async () => {
+    const { server, bench: b } = await bench({ mail: { reminders: { ...usual, afterMs: 2 * hourMs } } });
+    const record = async (...levels: number[]) => {
+      for (const overall of levels) {
+        await b.record('blower/de', { overall });
+        await b.pass(10 * minuteMs);
+      }
+    };
+    // A danger that nobody acknowledges, back to normal, then an alert: one life of one alarm.
+    await record(6, 6, 1, 3, 3);
+    await b.pass(3 * hourMs, 10 * minuteMs);
+    await record(9, 9);
+    expect(server.to(ann).map(({ subject }) => subject?.replace(/: .* overall /, ' '))).toEqual([
+      'DANGER 1 6 mm/s r.m.s.',
+      'ALERT 1 3 mm/s r.m.s.',
+      'ALERT 1 3 mm/s r.m.s.',
+      'DANGER 1 9 mm/s r.m.s.',
+    ]);
+    expect(flat(server.to(ann)[2])).toContain('Reminder 1: told ');
+  });
+
   it('of alerts and troubles there are none unless the site file asks for them', async () => {
     const { server, bench: b } = await bench();
     await b.record('blower/de', { overall: 3 });
