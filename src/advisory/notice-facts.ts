@@ -8,7 +8,7 @@ import type { BandFacts, MachineFacts, PointFacts, SiteFacts } from './facts.ts'
 export interface CatchUpFacts {
   readonly site: SiteFacts;
   readonly writtenMs: number;
-  /** backlog: recordings came together after a pause; mail-waited: the mail server took nothing for long. */
+  /** backlog: recordings came together after a pause; mail-waited: no mail left for long, or none was to. */
   readonly reason: 'backlog' | 'mail-waited';
   readonly fromMs: number;
   readonly toMs: number;

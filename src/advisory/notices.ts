@@ -27,7 +27,7 @@ export function catchUpMail(facts: CatchUpFacts): Mail {
   const why =
     facts.reason === 'backlog'
       ? `${counted(facts.recordings, 'recording')} came together after a pause and were judged in their order.`
-      : 'The mail server took nothing for a long time; what it missed is gathered here.';
+      : "This waited for the mail server, for somebody's hours or for the morning, and is over by now.";
   const still = standing === 0 ? '' : ` What still stands (${standing}) is mailed by itself.`;
   const lead = over === 0 ? `Nothing to do: ${what}.` : `Look at what happened meanwhile: ${what}.`;
   const blocks: Block[] = [
