@@ -64,11 +64,20 @@ mail:
     - address: bench@bench.example
 `;
 
-/** Writes the site into a folder and reads it as the service does. */
-export function makeSite(folder: string): SiteFile {
+/** A bearing that the point hears: its envelope is made, faults are looked for in both spectra. */
+const partsText = `    parts:
+      - id: de-bearing
+        kind: rolling-bearing
+        rolling_elements: 9
+        element_diameter: 7.94 mm
+        pitch_diameter: 38.5 mm
+`;
+
+/** Writes the site into a folder and reads it as the service does. `parts`: with envelope and evidence. */
+export function makeSite(folder: string, parts = false): SiteFile {
   mkdirSync(join(folder, 'drop'), { recursive: true });
   const path = join(folder, 'site.yaml');
-  writeFileSync(path, siteText);
+  writeFileSync(path, parts ? siteText.replace('mail:\n', `${partsText}mail:\n`) : siteText);
   const read = readSiteFile(path);
   if ('problems' in read) throw new Error(read.problems.join('\n'));
   return read;

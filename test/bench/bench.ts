@@ -29,6 +29,7 @@ async function bench(): Promise<Bench> {
   const files = Array.from({ length: differentFiles }, (_, index) => recordingBytes(index));
   const service: ServiceSpeed[] = [];
   for (const threads of [1, 2]) service.push(await throughService(threads, recordings, files));
+  service.push(await throughService(1, recordings, files, true));
   const mostResidentBytes = 1024 * process.resourceUsage().maxRSS;
   const stagesMs = await stageTimes(files);
   const averaging = segments.map((segmentSamples) => ({
@@ -70,7 +71,7 @@ function text({ averaging, stagesMs, service, mostResidentBytes }: Bench): strin
         'resident MB',
       ],
       ...service.map((run) => [
-        `${run.threads}`,
+        `${run.threads}${run.evidence ? ', with envelope and evidence' : ''}`,
         ((1000 * run.recordings) / run.wallMs).toFixed(1),
         ((1000 * run.recordings) / run.cpuMs).toFixed(1),
         (run.cpuMs / run.recordings).toFixed(1),

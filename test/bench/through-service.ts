@@ -8,6 +8,8 @@ import { makeSite, recordingName } from './bench-site.ts';
 
 export interface ServiceSpeed {
   readonly threads: number;
+  /** Whether a rolling bearing is heard, so that an envelope is made and evidence looked for. */
+  readonly evidence: boolean;
   readonly recordings: number;
   readonly wallMs: number;
   /** Of all threads. */
@@ -28,11 +30,12 @@ export async function throughService(
   threads: number,
   recordings: number,
   bytes: readonly Uint8Array[],
+  evidence = false,
 ): Promise<ServiceSpeed> {
   const folder = mkdtempSync(join(tmpdir(), 'humledger-bench-'));
   const beginMs = Date.UTC(2026, 2, 2);
   const clock = new SteppedClock(beginMs);
-  const siteFile = makeSite(folder);
+  const siteFile = makeSite(folder, evidence);
   const decisions = new Stopwatch();
   let lastDecisionMs = 0;
   let lastFilingMs = 0;
@@ -72,6 +75,7 @@ export async function throughService(
       throw new Error(`${taken} of ${recordings} recordings were taken`);
     return {
       threads,
+      evidence,
       recordings,
       wallMs,
       cpuMs: (user + system) / 1000,
