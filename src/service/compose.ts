@@ -1,3 +1,4 @@
+import { floodRule } from '../advisory/flood.ts';
 import { groupsDue, nextGroupDueMs } from '../advisory/outbox.ts';
 import { recipientsAt } from '../advisory/recipients.ts';
 import type { MailSettings } from '../config/site.ts';
@@ -13,9 +14,9 @@ import { leavingNow, leavingTogether } from './leaving.ts';
 import { type MailTools, wallMsOf } from './mail-tools.ts';
 import { plainDraft, stackOf } from './plain-draft.ts';
 import { deliveriesFor, storeDraft } from './store-draft.ts';
-import { watchAcknowledged } from './watch-acknowledged.ts';
-import { watchFlood } from './watch-flood.ts';
-import { watchReminders, withdrawIn, withdrawReminders } from './watch-reminders.ts';
+import { standingTooLong, tellStanding } from './watch-acknowledged.ts';
+import { floodTurns, turnFlood } from './watch-flood.ts';
+import { makeReminders, needlessReminders, toRemindOf, withdrawReminders } from './watch-reminders.ts';
 
 /**
  * From events due to be told to messages in the outbox. Read the facts in one reading of the ledger, make words and
@@ -69,10 +70,19 @@ async function watch(tools: MailTools, mail: MailSettings, nowMs: number): Promi
   const { ledger } = tools;
   const view = tools.view();
   const recipients = recipientsAt(mail.to, { ms: nowMs, timeZone: view.site.timeZone });
-  await withdrawReminders(ledger, nowMs);
-  await watchAcknowledged(ledger, view, nowMs);
-  await watchReminders(ledger, { view, mail, recipients, nowMs });
-  await watchFlood(ledger, view, nowMs);
+  const look = { view, mail, recipients, nowMs };
+  const due = await ledger.read(async (reader) => ({
+    needless: await needlessReminders(reader),
+    standing: await standingTooLong(reader, view, nowMs),
+    remind: await toRemindOf(reader, look),
+    flood: await floodTurns(reader, nowMs),
+  }));
+  const { events, messages } = due.needless;
+  if (events.length + messages.length > 0)
+    await ledger.transact((writer) => withdrawReminders(writer, nowMs));
+  await tellStanding(ledger, view, nowMs, due.standing);
+  const made = await makeReminders(ledger, look, due.remind);
+  if (due.flood || made > floodRule.endsBelow) await turnFlood(ledger, view, nowMs);
 }
 
 async function store(
@@ -89,7 +99,7 @@ async function store(
     return deliveriesFor(draft, mail.from, nowMs);
   });
   const stored = await tools.ledger.transact(async (writer) => {
-    await withdrawIn(writer, nowMs);
+    await withdrawReminders(writer, nowMs);
     return storeDraft(writer, draft, deliveries, nowMs);
   });
   if (!stored) return false;

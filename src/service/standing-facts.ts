@@ -1,7 +1,8 @@
 import type { StandingFacts } from '../advisory/facts.ts';
 import { type AlarmStanding, normalState } from '../detection/alarm.ts';
 import { standing } from '../detection/alarm-state.ts';
-import type { StandingLife } from '../store/alarms.ts';
+import { alarmByNumber, type StandingLife } from '../store/alarms.ts';
+import { isLedgersOwn } from '../store/ledger-error.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { placesOutOfService } from '../store/suppressions.ts';
 import { suppressionNow } from './suppression-now.ts';
@@ -17,6 +18,16 @@ export function standingOfLife({ alarm, life }: StandingLife): AlarmStanding {
 export function stillStands(of: StandingLife): boolean {
   if (standingOfLife(of) === 'normal') return false;
   return of.alarm.state.condition !== 'normal' || of.alarm.state.latched;
+}
+
+/** Null also where its record cannot be read: one that is broken must keep no other. */
+export async function readableLife(reader: Reader, number: number): Promise<StandingLife | null> {
+  try {
+    return await alarmByNumber(reader, number);
+  } catch (error) {
+    if (isLedgersOwn(error)) throw error;
+    return null;
+  }
 }
 
 export async function standingFacts(

@@ -5,9 +5,13 @@ import type { Ledger } from '../store/ledger.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import type { SiteView } from './site-view.ts';
 
-/** Looks whether a flood of alarms begins or ends; a change is one transaction, in which it is decided anew. */
-export async function watchFlood(ledger: Ledger, view: SiteView, nowMs: number): Promise<boolean> {
-  if ((await ledger.read((reader) => lookAt(reader, nowMs))).step === null) return false;
+/** Whether a flood of alarms begins or ends now. */
+export async function floodTurns(reader: Reader, nowMs: number): Promise<boolean> {
+  return (await lookAt(reader, nowMs)).step !== null;
+}
+
+/** Its beginning or end, where one is still due: one transaction, in which it is decided anew. */
+export async function turnFlood(ledger: Ledger, view: SiteView, nowMs: number): Promise<boolean> {
   return ledger.transact(async (writer) => {
     const { step, flood, count, firstMs } = await lookAt(writer, nowMs);
     if (step === null) return false;

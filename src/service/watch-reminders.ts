@@ -8,7 +8,7 @@ import {
 } from '../advisory/reminders.ts';
 import type { MailSettings, Severity } from '../config/site.ts';
 import { heldStanding } from '../detection/alarm-state.ts';
-import { alarmByNumber, type StandingLife } from '../store/alarms.ts';
+import type { StandingLife } from '../store/alarms.ts';
 import { appendJournal, appendTelling, tellingIdentity } from '../store/journal.ts';
 import type { Ledger } from '../store/ledger.ts';
 import type { Reader, Writer } from '../store/lent-connection.ts';
@@ -24,6 +24,7 @@ import {
 import { limitOf, machineOfId } from './fact-names.ts';
 import { overnightMs } from './leaving.ts';
 import type { SiteView } from './site-view.ts';
+import { readableLife } from './standing-facts.ts';
 
 /**
  * Reminders of what nobody has acknowledged. Each is one transaction: it is read there whether it is still due, journalled,
@@ -44,13 +45,16 @@ interface Due extends ReminderDue {
   readonly level: number | null;
 }
 
-/** Returns how many reminders were decided on. */
-export async function watchReminders(ledger: Ledger, look: ReminderLook): Promise<number> {
-  const foreseen = await ledger.read((reader) => remindersDue(reader, look));
+/** Decides on the reminders of these lives, as far as they are due still; returns how many. */
+export async function makeReminders(
+  ledger: Ledger,
+  look: ReminderLook,
+  numbers: readonly number[],
+): Promise<number> {
   let reminded = 0;
-  for (const { life } of foreseen) {
+  for (const number of numbers) {
     const done = await ledger.transact(async (writer) => {
-      const [due] = await remindersDue(writer, look, life.number);
+      const [due] = await remindersDue(writer, look, number);
       if (due === undefined) return false;
       await remind(writer, look, due);
       return true;
@@ -58,6 +62,11 @@ export async function watchReminders(ledger: Ledger, look: ReminderLook): Promis
     if (done) reminded++;
   }
   return reminded;
+}
+
+/** Numbers of the lives that somebody is to be reminded of. */
+export async function toRemindOf(reader: Reader, look: ReminderLook): Promise<number[]> {
+  return (await remindersDue(reader, look)).map(({ life }) => life.number);
 }
 
 async function remindersDue(reader: Reader, look: ReminderLook, number?: number): Promise<Due[]> {
@@ -75,7 +84,7 @@ async function dueOf(reader: Reader, look: ReminderLook, life: LifeTold): Promis
   if (newest.messageId === null || life.first.messageId === null) return null;
   // Nothing is due so soon, whatever its rule says: no look into the ledger is worth it.
   if (nowMs - newest.wallMs < fewestPauseMs && nowMs >= newest.wallMs) return null;
-  const standing = await alarmByNumber(reader, life.number);
+  const standing = await readableLife(reader, life.number);
   if (standing === null || !waitsForPerson(standing)) return null;
   // Of what was told last: an alert that came again after a danger is not told as a danger.
   const { severity } = life.first;
@@ -132,7 +141,7 @@ function mayLeave(look: ReminderLook, { machineId }: LifeTold, severity: Severit
 async function remind(writer: Writer, { view, nowMs }: ReminderLook, due: Due): Promise<void> {
   const { life, severity, number, thenTo, firstMs } = due;
   const { first } = life;
-  const condition = (await alarmByNumber(writer, life.number))?.alarm.state.condition ?? null;
+  const condition = (await readableLife(writer, life.number))?.alarm.state.condition ?? null;
   const sequence = await appendJournal(writer, {
     key: life.key,
     number: life.number,
@@ -164,24 +173,19 @@ async function remind(writer: Writer, { view, nowMs }: ReminderLook, due: Due): 
 
 const overtaken = 'not sent: acknowledged, or over, before it left';
 
-/** Reminders that nobody needs any more, whether their mail is made or not. */
-export async function withdrawReminders(ledger: Ledger, nowMs: number): Promise<number> {
-  const foreseen = await ledger.read(needless);
-  if (foreseen.events.length + foreseen.messages.length === 0) return 0;
-  return ledger.transact((writer) => withdrawIn(writer, nowMs));
-}
-
-/** The same as part of a transaction that makes a mail. */
-export async function withdrawIn(writer: Writer, nowMs: number): Promise<number> {
-  const { events, messages } = await needless(writer);
+/** Reminders that nobody needs any more give way, whether their mail is made or not; returns how many. */
+export async function withdrawReminders(writer: Writer, nowMs: number): Promise<number> {
+  const { events, messages } = await needlessReminders(writer);
   if (events.length > 0) await withdrawEvents(writer, events, nowMs);
   for (const messageId of messages) await giveUpWaiting(writer, messageId, overtaken);
   return events.length + messages.length;
 }
 
-async function needless(reader: Reader): Promise<{ readonly events: number[]; readonly messages: number[] }> {
+export async function needlessReminders(
+  reader: Reader,
+): Promise<{ readonly events: number[]; readonly messages: number[] }> {
   const stillWaits = async (number: number | null) => {
-    const life = number === null ? null : await alarmByNumber(reader, number);
+    const life = number === null ? null : await readableLife(reader, number);
     return life !== null && waitsForPerson(life);
   };
   const events: number[] = [];

@@ -39,15 +39,16 @@ export async function standingFlood(reader: Reader): Promise<StoredFlood | null>
   return row === undefined ? null : storedFlood(row);
 }
 
-/** The one that stands and those that ended at or after `sinceMs`, oldest first. */
+/** Those that ended at or after `sinceMs`, oldest first, and the one that stands. */
 export async function floodsSince(reader: Reader, sinceMs: number): Promise<StoredFlood[]> {
-  const rows = await reader
+  const ended = await reader
     .selectFrom('floods')
     .selectAll()
-    .where((where) => where.or([where('ended_ms', 'is', null), where('ended_ms', '>=', sinceMs)]))
-    .orderBy('id')
+    .where('ended_ms', '>=', sinceMs)
+    .orderBy('ended_ms')
     .execute();
-  return rows.map(storedFlood);
+  const standing = await standingFlood(reader);
+  return [...ended.map(storedFlood), ...(standing === null ? [] : [standing])];
 }
 
 export async function beginFlood(

@@ -5,13 +5,21 @@ import { join } from 'node:path';
 import Database from 'better-sqlite3';
 import { expect, it, onTestFinished, vi } from 'vitest';
 import { missingOf } from '../../src/service/beyond-ledger.ts';
+import { alarmsArrived, floodsSince, hasMessages, standingFlood } from '../../src/store/floods.ts';
 import { lastGoodRms } from '../../src/store/good-signals.ts';
 import type { Ledger } from '../../src/store/ledger.ts';
 import { isLedgerRefusal } from '../../src/store/ledger-error.ts';
 import { PreparedConnection, type Reader } from '../../src/store/lent-connection.ts';
+import { untoldEvents } from '../../src/store/messages.ts';
 import { openLedger } from '../../src/store/open-ledger.ts';
 import { lastUnflaggedMs } from '../../src/store/past-levels.ts';
 import { findTakenByContent } from '../../src/store/recordings.ts';
+import {
+  acknowledgedLives,
+  unacknowledgedTold,
+  untoldReminders,
+  waitingReminders,
+} from '../../src/store/tellings.ts';
 import { openThreads } from '../../src/store/thread-ends.ts';
 import { countRefusedSince, lastAcceptedMs, refusedRecipients } from '../../src/store/waiting-mail.ts';
 
@@ -88,6 +96,51 @@ it.each<[string, Ask, string]>([
     'which threads are open',
     reading((reader) => openThreads(reader)),
     'SCAN threads USING INDEX thread_open; USE TEMP B-TREE FOR ORDER BY',
+  ],
+  [
+    'how many alarms came lately',
+    reading((reader) => alarmsArrived(reader, { afterMs: 0, toMs: 1 })),
+    'USE TEMP B-TREE FOR count(DISTINCT); SEARCH to_tell USING INDEX event_by_wall (wall_ms>? AND wall_ms<?)',
+  ],
+  [
+    'whether a flood stands',
+    reading((reader) => standingFlood(reader)),
+    'SEARCH floods USING INDEX flood_by_end (ended_ms=?)',
+  ],
+  [
+    'floods that may concern what waits',
+    reading((reader) => floodsSince(reader, 1)),
+    'SEARCH floods USING INDEX flood_by_end (ended_ms>?)',
+  ],
+  [
+    'whether a mail of a flood was made',
+    reading((reader) => hasMessages(reader, 'flood:1')),
+    'SEARCH messages USING COVERING INDEX message_by_group (group_key=?)',
+  ],
+  [
+    'what nobody has acknowledged',
+    reading((reader) => unacknowledgedTold(reader)),
+    'SCAN life USING INDEX alarm_unended; SEARCH event USING INDEX event_by_number (number=?)',
+  ],
+  [
+    'what somebody has acknowledged',
+    reading((reader) => acknowledgedLives(reader)),
+    'SCAN alarms USING INDEX alarm_unended',
+  ],
+  [
+    'reminders that wait to be told',
+    reading((reader) => untoldReminders(reader)),
+    'SCAN to_tell USING INDEX event_untold',
+  ],
+  [
+    'reminders that wait for the server',
+    reading((reader) => waitingReminders(reader)),
+    'SEARCH deliveries USING INDEX delivery_by_state (state=?); SEARCH event USING INDEX event_by_message (message_id=?); USE TEMP B-TREE FOR ORDER BY',
+  ],
+  [
+    'what is to be told',
+    reading((reader) => untoldEvents(reader, 5)),
+    'SCAN to_tell USING INDEX event_untold; USE TEMP B-TREE FOR ORDER BY',
   ],
 ])('%s is looked up, not searched for', async (_what, ask, plan) => {
   expect(await planOf(ask)).toBe(plan);

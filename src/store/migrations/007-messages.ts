@@ -11,7 +11,8 @@ export const messages: Migration = {
     create unique index flood_stands on floods (ifnull(ended_ms, 0)) where ended_ms is null;
     create index flood_by_end on floods (ended_ms);
     create index message_by_group on messages (group_key, id);
-    create index event_by_wall on to_tell (wall_ms);`,
+    create index event_by_wall on to_tell (wall_ms);
+    create index event_by_message on to_tell (message_id) where message_id is not null;`,
     `
     alter table to_tell add column withdrawn_ms integer;
     drop index event_untold;
