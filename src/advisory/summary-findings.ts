@@ -167,7 +167,8 @@ function alarmText({ band, level, limit, severity, change, dangerUnconfirmed }: 
 function alsoLines(group: readonly Standing[], facts: SummaryFacts): string[] {
   return group.slice(1).map((item) => {
     const where = item.point === null ? 'the same' : directionOf({ point: item.point });
-    const said = [whatText(item), ...trendSaid(item, facts)].join('; ');
+    const over = isReturned(item) ? ['back to normal, unacknowledged'] : [];
+    const said = [whatText(item), ...over, ...trendSaid(item, facts)].join('; ');
     return `Also ${markWord[severityOf(item)]} ${item.number}, ${where}: ${said}`;
   });
 }

@@ -48,10 +48,12 @@ export type Standing = StandingAlarm | TroubleFacts;
 /**
  * Whether a standing alarm or trouble needs somebody today: not acknowledged, or the time to respond has passed, or
  * worse in spite of the acknowledgement, or over the danger limit and not yet confirmed. What a person has shelved or
- * taken out of service does not.
+ * taken out of service does not; a danger that only the site file holds back does, for nobody has seen it.
  */
 export function needsPerson(standing: Standing, nowMs: number): boolean {
-  if (['shelved', 'suppressed', 'out-of-service', 'normal'].includes(standing.standing)) return false;
+  if (['shelved', 'out-of-service', 'normal'].includes(standing.standing)) return false;
+  if (standing.standing === 'suppressed')
+    return standing.kind === 'alarm' && standing.severity === 'danger' && standing.acknowledgedMs === null;
   // Nothing is left to do about a trouble that is over: being told here acknowledges it.
   if (standing.kind === 'trouble' && isReturned(standing)) return false;
   if (needsAcknowledging(standing)) return true;
@@ -129,13 +131,14 @@ function learnedSection(facts: SummaryFacts): Section[] {
   return lines.length === 0 ? [] : [{ name: 'limits', title: 'Learned limits', findings: [], lines }];
 }
 
-/** Alarms and troubles of one bearing make one finding; the most urgent first, in and between the groups. */
+/** Alarms and troubles of one bearing make one finding; the most urgent first. In a finding, what is over stands last. */
 function inGroups(items: readonly Standing[]): Standing[][] {
   const ordered = [...items].sort((a, b) => byUrgency(rankOf(a), rankOf(b)) || a.number - b.number);
-  return gather(ordered, (item) => {
+  const groups = gather(ordered, (item) => {
     if (item.machine === null || item.point === null) return `number ${item.number}`;
     return `${item.machine.id}\n${bearingOf(item.point)}`;
   });
+  return groups.map((group) => [...group].sort((a, b) => Number(isReturned(a)) - Number(isReturned(b))));
 }
 
 function rankOf(item: Standing): { machine: MachineFacts | null; severity: Severity; share: number | null } {
