@@ -76,6 +76,19 @@ describe('the trend of a band', () => {
     expect(facts.ahead?.time.latestDays).toBeGreaterThan(14);
   });
 
+  it('falls towards a lower limit; one that guards the other side lies not ahead', async () => {
+    const lower = { side: 'lower', alert: 0.0004, danger: 0.0002 } as const;
+    const falling = await bench({ limit: lower });
+    await live(falling, 25, (day) => 2 ** (-day / 20));
+    expect(await trend(falling)).toMatchObject({
+      trend: { kind: 'falling' },
+      ahead: { severity: 'alert', at: 0.0004 },
+    });
+    const away = await bench({ limit: { ...lower, alert: 0.0028 } });
+    await live(away, 25, doubling);
+    expect(await trend(away)).toMatchObject({ trend: { kind: 'rising' }, ahead: null });
+  });
+
   it('is told in the alarm mail, with the time to danger once the alert is passed', async () => {
     const b = await bench();
     await live(b, 46, doubling);
@@ -152,21 +165,28 @@ describe('the trend of a band', () => {
     expect((await trend(b)).broken?.kind).toBe('sensor-changed');
   });
 
-  it('is of one operating condition: more hours at full load are no rise', async () => {
+  it('is of one operating condition: from part load to full load is no step and no rise', async () => {
     const conditions = [
       { id: 'part', speedHz: null, loadPercent: { from: 0, to: 50 } },
       { id: 'full', speedHz: null, loadPercent: { from: 50, to: 100 } },
     ];
     const b = await bench({ machine: { conditions } });
-    // Of twelve recordings a day more and more are at full load, where the level is twice that of part load.
-    const isFull = (step: number) => step % 12 <= step / 36 || step % 12 === 11;
-    await live(
-      b,
-      31,
-      (_, step) => (isFull(step) ? 2 : 1),
-      (step) => ({ more: { loadPercent: isFull(step) ? 80 : 30 } }),
-    );
-    expect(await trend(b)).toMatchObject({ condition: 'full', trend: { kind: 'none', days: 30 } });
+    for (const [days, load] of [
+      [10, 80],
+      [12, 30],
+      [12, 80],
+    ] as const) {
+      const level = load / 40;
+      await live(
+        b,
+        days,
+        () => level,
+        () => ({ more: { loadPercent: load } }),
+      );
+    }
+    const facts = await trend(b);
+    expect(facts.condition).toBe('full');
+    expect(facts.trend).toMatchObject({ kind: 'none', days: 23 });
   });
 
   it('of a recording in a seldom condition is that of the condition with the days, without a limit ahead', async () => {
