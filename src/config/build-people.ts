@@ -1,4 +1,4 @@
-import { type Hours, parseHours } from './hours.ts';
+import { type Hours, minutesOfWeek, parseHours } from './hours.ts';
 import { type Build, valueOr, valuesOf } from './layers.ts';
 import { nearest } from './nearest.ts';
 import { tellUncovered } from './recipient-cover.ts';
@@ -46,7 +46,11 @@ type MailMap = ReadMap<typeof mailKeys>['keys'];
 function buildNight({ reading }: Build, keys: MailMap): Hours | null {
   const usual = parseHours('22:00..06:00');
   const night = keys.night?.value ?? (usual.ok ? usual.value : null);
-  if (valueOr(keys.hold_overnight, false)) return night;
+  if (valueOr(keys.hold_overnight, false)) {
+    if (keys.night !== null && night !== null && minutesOfWeek(night).every((within) => within === 1))
+      reading.warn(keys.night.at, 'a night without a morning holds nothing back');
+    return night;
+  }
   if (keys.night !== null)
     reading.warn(keys.night.at, 'night without hold_overnight: true holds nothing back');
   return null;

@@ -50,6 +50,24 @@ export const conditionKeys = {
 
 export const conditions = list(map(conditionKeys), 50);
 
+/** The first condition that fits holds; one that lies wholly within an earlier one never does. */
+function tellUnreachable({ reading }: Build, entries: WrittenConditions['value']): void {
+  entries.forEach(({ value: { keys }, at }, n) => {
+    const before = entries.slice(0, n).find(({ value: { keys: outer } }) => {
+      const isWritten = outer.speed !== null || outer.load !== null;
+      return isWritten && covers(outer.speed, keys.speed) && covers(outer.load, keys.load);
+    });
+    if (before === undefined || keys.id === null || keys.id.value === before.value.keys.id?.value) return;
+    const what = `condition '${keys.id.value}' never holds: '${before.value.keys.id?.value}' stands before it and fits all that it fits`;
+    reading.warn(keys.id.at ?? at, what);
+  });
+}
+
+function covers(outer: Written<Range> | null, inner: Written<Range> | null): boolean {
+  if (outer === null) return true;
+  return inner !== null && outer.value.from <= inner.value.from && outer.value.to >= inner.value.to;
+}
+
 type WrittenConditions = Written<readonly Written<ReadMap<typeof conditionKeys>>[]>;
 
 export function buildConditions(
@@ -65,6 +83,7 @@ export function buildConditions(
     ids,
     (name, line) => `condition '${name}' stands twice, first in line ${line}`,
   );
+  tellUnreachable(build, entries);
   return entries.flatMap(({ value: { keys, has }, at }) => {
     if (keys.id === null) return [];
     if (!has.has('speed') && !has.has('load')) {

@@ -20,6 +20,23 @@ const limitOf = (lines: readonly string[], machine = 0) => {
   return siteOf(text).machines[machine]?.points[0]?.limits[0];
 };
 
+describe('operating conditions in their order', () => {
+  const warned = (...conditions: string[]) => {
+    const lines = conditions.map((one, n) => `      - id: c${n + 1}\n        ${one}`).join('\n');
+    const text = exampleWith(['    like: [blower-1]', `    conditions:\n${lines}\n    like: [blower-1]`]);
+    return complaints(text).filter((line) => line.includes('condition'));
+  };
+
+  it('that can never hold are warned of: an earlier one fits all that they fit', () => {
+    expect(warned('load: 60 %..100 %', 'load: 70 %..90 %')).toEqual([
+      expect.stringContaining("condition 'c2' never holds: 'c1' stands before it and fits all that it fits"),
+    ]);
+    expect(warned('load: 60 %..100 %', 'load: 60 %..90 %\n        speed: 500 rpm..900 rpm')).toHaveLength(1);
+    expect(warned('load: 70 %..90 %', 'load: 60 %..100 %')).toEqual([]);
+    expect(warned('load: 60 %..100 %\n        speed: 500 rpm..900 rpm', 'load: 70 %..90 %')).toEqual([]);
+  });
+});
+
 describe('a slip of the pen is told with what was meant, once', () => {
   const told = (...lines: string[]) =>
     complaints(exampleWith([typed, lines.map((line) => `        ${line}`).join('\n')]));

@@ -80,6 +80,9 @@ describe('a warning', () => {
     expect(warnings(mail('  night: 22:00..06:00\n'))).toEqual([
       'night without hold_overnight: true holds nothing back',
     ]);
+    expect(warnings(mail('  hold_overnight: true\n  night: mon..sun\n'))).toEqual([
+      'a night without a morning holds nothing back',
+    ]);
     expect(warnings(mail('  then_after: 3 reminders\n'))).toEqual([
       'then_after without then_to tells nobody',
     ]);

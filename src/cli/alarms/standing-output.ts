@@ -100,7 +100,9 @@ function beneath(now: StandingNow, timeZone: string): string[] {
     const name = troubleName[trouble];
     return [now.detail === null ? name : `${name}: ${now.detail}`, shortAdvice(trouble), ...acknowledged];
   }
-  const reasons = now.limit === null ? null : reasonsText(now.limit);
+  // The line of the level says it where the limit has no value at all.
+  const isReckoned = now.limit !== null && firstLimit(now.limit) !== null;
+  const reasons = now.limit === null || !isReckoned ? null : reasonsText(now.limit);
   return [levelLine(now, timeZone), ...(reasons === null ? [] : [`limit from: ${reasons}`]), ...acknowledged];
 }
 
