@@ -9,8 +9,9 @@ import { madToDeviation, median, medianAbsoluteDeviation } from '../signal/stati
  * ratios to each other moved in thirty days, when it lies above them, and when its own level has risen: a sister that fell
  * makes nobody else worse. It is *apart* where it lies above them by more than they differ, whether it came there or always was.
  *
- * Simulated (levels that spread by 10 % from day to day, machines of one kind that differ for good by 20 %): see the
- * figures beside the test.
+ * Simulated (levels that spread by 10 % from day to day, machines of one kind that differ for good by 20 %; 12,000 bands):
+ * none named of which nothing is the matter, beside one, two or three sisters; of levels that doubled five days ago 60, 90 and
+ * 93 %, of those that doubled over thirty days 39, 59 and 60 %.
  */
 export interface MachineDay {
   /** Local day. */
