@@ -1,18 +1,14 @@
 import type { Part } from '../config/parts.ts';
 import type { Evidence } from '../manipulation/evidence.ts';
 import type { MeasuredSpeed, SpectralPeak } from '../manipulation/measurement.ts';
+import { bearingEvidence, type FoundIn, type InseparableIn } from './bearing-evidence.ts';
 import { type BearingFault, type Finding, findFaults, inseparable, type ObservedSpeed } from './evidence.ts';
-import {
-  findingWords,
-  frequencyOfFault,
-  notSeparableWords,
-  partInSentence,
-  sidebandOf,
-  strongestDb,
-} from './evidence-words.ts';
+import { frequencyOfFault, sidebandOf } from './evidence-words.ts';
 import { shaftsOf } from './fault-frequencies.ts';
 import { harmonicName, LineNames } from './line-names.ts';
-import type { SeenShaft } from './standing-lines.ts';
+import { supplies } from './ordinary-lines.ts';
+import { type PartsShown, partsShown } from './part-evidence.ts';
+import type { SearchedSpectrum, SeenShaft } from './standing-lines.ts';
 
 /** One spectrum of a measuring point: its plain one, or that of its envelope. */
 export interface AssessedSpectrum {
@@ -48,17 +44,26 @@ export function assess(
   partsOfMachine: readonly Part[],
 ): Assessed {
   const observed = observedSpeed(speed);
-  const evidence: Evidence[] = [];
-  const found = spectra.map((spectrum) =>
-    observed === null ? [] : faultsIn(spectrum, observed, heard, partsOfMachine, spectra.length),
-  );
+  if (observed === null) {
+    const names = (spectrum: AssessedSpectrum) => new LineNames(heard, null, spectrum.lineSpacingHz);
+    return { peaks: spectra.map((one) => named(one, [], null, names(one), heard)), evidence: [] };
+  }
+  const inEach = spectra.map((one) => faultsIn(one, observed, heard, partsOfMachine, spectra.length));
+  const found: FoundIn[] = [];
+  const untold: InseparableIn[] = [];
+  const ofParts: Evidence[] = [];
   const peaks = spectra.map((spectrum, n) => {
-    const findings = found[n].filter((finding) => !isToldBetter(finding, found.flat()));
-    evidence.push(...findings.map((finding) => evidenceOf(finding, spectrum.kind, heard)));
-    if (observed !== null) evidence.push(...notSeparable(spectrum, observed, heard, findings));
-    return named(spectrum, findings, new LineNames(heard, observed, spectrum.lineSpacingHz), heard);
+    const { kind, lineSpacingHz } = spectrum;
+    const findings = inEach[n].filter((finding) => !isToldBetter(finding, inEach.flat()));
+    found.push(...findings.map((finding) => ({ finding, spectrum: kind })));
+    untold.push(
+      ...notSeparable(spectrum, observed, heard).map((one) => ({ inseparable: one, spectrum: kind })),
+    );
+    const parts = kind === 'plain' ? partsIn(spectrum, observed, heard, partsOfMachine, inEach[n]) : null;
+    ofParts.push(...(parts?.evidence ?? []));
+    return named(spectrum, findings, parts, new LineNames(heard, observed, lineSpacingHz), heard);
   });
-  return { peaks, evidence };
+  return { peaks, evidence: [...bearingEvidence(found, untold, heard, observed.hz), ...ofParts] };
 }
 
 /** The speed by which lines may be named: as the spectra show it, else as it was declared or measured. */
@@ -75,9 +80,8 @@ function faultsIn(
   partsOfMachine: readonly Part[],
   spectra: number,
 ): Finding[] {
-  const { lineSpacingHz, peaks, toHz } = spectrum;
-  const fine = heard.filter(({ shaft }) => lineSpacingHz <= widestSpacing * shaft * speed.hz);
-  if (fine.length === 0) return [];
+  const parts = heard.filter((part) => isFine(spectrum, part, speed));
+  if (parts.length === 0) return [];
   const shafts = shaftsOf(partsOfMachine).map(
     (turns, n): SeenShaft => ({
       hz: turns * speed.hz,
@@ -85,8 +89,7 @@ function faultsIn(
       harmonics: n === 0 ? Number.POSITIVE_INFINITY : harmonicsOfOtherShafts,
     }),
   );
-  const searched = { lines: peaks, lineSpacingHz, fromHz: 4 * lineSpacingHz, toHz };
-  return findFaults(searched, fine, speed, shafts, spectra);
+  return findFaults(searched(spectrum), parts, speed, [...shafts, ...supplies(partsOfMachine)], spectra);
 }
 
 /** Whether another spectrum says more surely what the lines may be as well: two names for one fault help nobody. */
@@ -97,58 +100,37 @@ function isToldBetter({ orElse, chance }: Finding, all: readonly Finding[]): boo
   );
 }
 
-function evidenceOf(finding: Finding, spectrum: AssessedSpectrum['kind'], parts: readonly Part[]): Evidence {
-  const { partId, fault, grade, family, expectedHz, observedHz, chance } = finding;
-  const harmonics = family.lines.filter(({ sideband }) => sideband === 0).length;
-  const nameOf = (id: string) => partInSentence(parts.find((part) => part.id === id)?.name ?? id);
-  return {
-    partId,
-    fault,
-    frequency: frequencyOfFault[fault],
-    spectrum,
-    grade,
-    expectedHz,
-    observedHz,
-    harmonics,
-    sidebands: family.lines.length - harmonics,
-    aboveFloorDb: strongestDb(finding),
-    chance,
-    words: findingWords(finding, { part: nameOf, spectrum }),
-  };
+/** What the plain spectrum says of the other parts; lines that a bearing makes are none of theirs. */
+function partsIn(
+  spectrum: AssessedSpectrum,
+  speed: ObservedSpeed,
+  heard: readonly Part[],
+  partsOfMachine: readonly Part[],
+  findings: readonly Finding[],
+): PartsShown {
+  const taken = new Set<unknown>(findings.flatMap(({ family }) => family.lines.map(({ line }) => line)));
+  const all = searched(spectrum);
+  const free = { ...all, lines: all.lines.filter((line) => !taken.has(line)) };
+  return partsShown(free, speed, heard, (part) => isFine(spectrum, part, speed), partsOfMachine);
+}
+
+function isFine({ lineSpacingHz }: AssessedSpectrum, { shaft }: Part, speed: ObservedSpeed): boolean {
+  return lineSpacingHz <= widestSpacing * shaft * speed.hz;
+}
+
+function searched({ lineSpacingHz, peaks, toHz }: AssessedSpectrum): SearchedSpectrum {
+  return { lines: peaks, lineSpacingHz, fromHz: 4 * lineSpacingHz, toHz };
 }
 
 /** Lines where a fault's fundamental would be told from a harmonic of the shaft by no means. */
 function notSeparable(
-  { kind, peaks, lineSpacingHz }: AssessedSpectrum,
+  { peaks, lineSpacingHz }: AssessedSpectrum,
   speed: ObservedSpeed,
   heard: readonly Part[],
-  findings: readonly Finding[],
-): Evidence[] {
-  return inseparable(heard, speed, lineSpacingHz)
-    .filter(({ suspect: { hz } }) =>
-      peaks.some((peak) => Math.abs(peak.frequencyHz - hz) <= 2 * lineSpacingHz),
-    )
-    .filter(
-      ({ suspect }) => !findings.some((one) => one.partId === suspect.part.id && one.fault === suspect.fault),
-    )
-    .map(({ suspect, harmonic, neededHz }) => ({
-      partId: suspect.part.id,
-      fault: suspect.fault,
-      frequency: frequencyOfFault[suspect.fault],
-      spectrum: kind,
-      grade: 'not separable',
-      expectedHz: suspect.hz,
-      neededLineSpacingHz: neededHz ?? 0,
-      words: notSeparableWords({
-        frequency: frequencyOfFault[suspect.fault],
-        part: partInSentence(suspect.part.name),
-        expectedHz: suspect.hz,
-        harmonic,
-        shaftHz: speed.hz,
-        spectrum: kind,
-        neededHz,
-      }),
-    }));
+) {
+  return inseparable(heard, speed, lineSpacingHz).filter(({ suspect: { hz } }) =>
+    peaks.some((peak) => Math.abs(peak.frequencyHz - hz) <= 2 * lineSpacingHz),
+  );
 }
 
 /** 'BPFO x2'; an element that strikes both races makes the even multiples of its spin. */
@@ -161,6 +143,7 @@ function lineOfFault(fault: BearingFault, harmonic: number): string {
 function named(
   { peaks }: AssessedSpectrum,
   findings: readonly Finding[],
+  others: PartsShown | null,
   names: LineNames,
   parts: readonly Part[],
 ): SpectralPeak[] {
@@ -178,8 +161,11 @@ function named(
       }
     }
   }
-  return peaks.map((peak) => ({
-    ...peak,
-    names: ofFamilies.get(peak) ?? (peak.kind === 'tone' ? names.namesOf(peak.frequencyHz) : []),
-  }));
+  const namesOf = (peak: SpectralPeak): readonly string[] => {
+    const ofFamily = ofFamilies.get(peak);
+    if (ofFamily !== undefined) return ofFamily;
+    const known = peak.kind === 'tone' ? names.namesOf(peak.frequencyHz) : [];
+    return [...new Set([...known, ...(others?.names.get(peak) ?? [])])];
+  };
+  return peaks.map((peak) => ({ ...peak, names: namesOf(peak) }));
 }

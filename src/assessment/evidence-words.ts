@@ -18,8 +18,8 @@ export function findingWords(
 ): string {
   const { fault, partId, family, observedHz, orElse } = finding;
   const harmonics = family.lines.filter(({ sideband }) => sideband === 0).length;
-  const lines = harmonics === 1 ? 'one line' : `${counts[harmonics] ?? harmonics} harmonics`;
-  const where = names.spectrum === 'envelope' ? 'in the envelope' : 'in the spectrum';
+  const lines = linesWord(harmonics);
+  const where = inSpectrum(names.spectrum);
   const highest = printNumber(strongestDb(finding), 2);
   const sidebands = family.lines.length > harmonics ? `, sidebands at ${sidebandOf(fault)}` : '';
   const other = orElse.map(
@@ -29,6 +29,20 @@ export function findingWords(
     `${lines} of ${frequencyOfFault[fault]} of ${names.part(partId)} ${where} ` +
     `(${printFrequency(observedHz)}), ${highest} dB over the floor${sidebands}${other.join('')}`
   );
+}
+
+/** Of the same fault in the point's other spectrum: 'two harmonics in the spectrum as well, 9 dB over the floor'. */
+export function alsoWords(finding: Finding, spectrum: 'envelope' | 'plain'): string {
+  const harmonics = finding.family.lines.filter(({ sideband }) => sideband === 0).length;
+  return `${linesWord(harmonics)} ${inSpectrum(spectrum)} as well, ${printNumber(strongestDb(finding), 2)} dB over the floor`;
+}
+
+function linesWord(harmonics: number): string {
+  return harmonics === 1 ? 'one line' : `${counts[harmonics] ?? harmonics} harmonics`;
+}
+
+function inSpectrum(spectrum: 'envelope' | 'plain'): string {
+  return spectrum === 'envelope' ? 'in the envelope' : 'in the spectrum';
 }
 
 export function strongestDb({ family }: Finding): number {
@@ -51,11 +65,11 @@ export function notSeparableWords(about: {
   readonly expectedHz: number;
   readonly harmonic: number;
   readonly shaftHz: number;
-  readonly spectrum: 'envelope' | 'plain';
+  readonly spectra: readonly ('envelope' | 'plain')[];
   readonly neededHz: number | null;
 }): string {
   const { frequency, part, expectedHz, harmonic, shaftHz, neededHz } = about;
-  const where = about.spectrum === 'envelope' ? 'in the envelope' : 'in the spectrum';
+  const where = about.spectra.map(inSpectrum).join(' and ');
   const remedy =
     neededHz === null
       ? 'no line spacing would'

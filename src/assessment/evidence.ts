@@ -194,7 +194,12 @@ function ownFrequencies(part: RollingBearing, speed: ObservedSpeed): number[] {
 function gradeOf({ lines }: Family, chance: number): Grade {
   const harmonics = lines.filter(({ sideband }) => sideband === 0);
   const highest = Math.max(...lines.map(({ line }) => line.aboveFloorDb));
-  if (chance <= strongChance && harmonics.length >= 3 && highest >= strongDb) return 'strong';
+  return gradeOfChance(chance, harmonics.length, highest);
+}
+
+/** By the chance of accident; strong evidence takes three lines as well, one of them 10 dB over the floor. */
+export function gradeOfChance(chance: number, lines: number, highestDb: number): Grade {
+  if (chance <= strongChance && lines >= 3 && highestDb >= strongDb) return 'strong';
   return chance <= clearChance ? 'clear' : 'weak';
 }
 

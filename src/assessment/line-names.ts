@@ -1,6 +1,7 @@
 import type { Part } from '../config/parts.ts';
 import type { ObservedSpeed } from './evidence.ts';
 import { type CharacteristicFrequency, characteristicFrequencies, frequencyHz } from './fault-frequencies.ts';
+import { gridUncertainty } from './ordinary-lines.ts';
 import { separationLines } from './standing-lines.ts';
 
 /** A place where a line has a name: what excites it, and how well the place is known. */
@@ -12,8 +13,6 @@ interface NamedPlace {
   readonly perTurn: number | null;
 }
 
-/** Line frequencies stay within 0.2 % of their rated value (EN 50160, 99.5 % of the year: 1 %; as a rule far nearer). */
-const gridUncertainty = 0.002;
 const mostHarmonics = 4;
 /** Harmonics of the running speed that are named, as long as the speed is known well enough. */
 const mostOrders = 20;

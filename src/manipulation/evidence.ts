@@ -22,6 +22,10 @@ interface AboutPart {
 /** A family of lines stands out where a fault of the part would make it. */
 export interface FaultEvidence extends AboutPart {
   readonly grade: EvidenceGrade;
+  /** Sound machines may show it as well: it is told, and names no fault. Left out: it speaks for a fault. */
+  readonly isObservation?: true;
+  /** The other spectrum of the point, where the same family stands as well. */
+  readonly alsoIn?: 'envelope' | 'plain';
   readonly observedHz: number;
   /** Harmonics that stand out, the fundamental included, and sidebands. */
   readonly harmonics: number;
@@ -39,6 +43,12 @@ export interface NotSeparable extends AboutPart {
   readonly neededLineSpacingHz: number;
 }
 
+/** Lines that stand out where a part makes them; whether for a fault, `isObservation` says. */
 export function isFaultEvidence(evidence: Evidence): evidence is FaultEvidence {
   return evidence.grade !== 'not separable';
+}
+
+/** Whether it speaks for a fault, and so has a place in a message. */
+export function speaksForFault(evidence: Evidence): evidence is FaultEvidence {
+  return isFaultEvidence(evidence) && evidence.isObservation !== true;
 }

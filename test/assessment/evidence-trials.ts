@@ -19,21 +19,21 @@ import {
 const band = { fromHz: 2000, toHz: 8000, highestHz: 3000 };
 const overlapPercent = 50;
 
-interface Searched {
+export interface Searched {
   readonly search: PeakSearch;
   readonly averages: number;
   readonly lineSpacingHz: number;
   readonly segmentSamples: number;
 }
 
-function searched(samples: Float64Array, rateHz: number, segmentSamples: number): Searched {
+export function searched(samples: Float64Array, rateHz: number, segmentSamples: number): Searched {
   const averaging = { window: 'hann', segmentSamples, overlapPercent, sampleRateHz: rateHz } as const;
   const { density, hopSamples, averages, lineSpacingHz } = averageDensity(samples, averaging);
   const search = findPeaks(density, { ...averaging, hopSamples, averages });
   return { search, averages, lineSpacingHz, segmentSamples };
 }
 
-function spectrumOf(
+export function spectrumOf(
   kind: AssessedSpectrum['kind'],
   { search, lineSpacingHz }: Searched,
   toHz: number,
@@ -70,9 +70,13 @@ export function assessMachine(machine: BearingMachine): Assessed {
 }
 
 /** As it was declared, and as the spectrum shows it where it does. */
-function speedOf({ search, averages, segmentSamples }: Searched, declaredHz: number): MeasuredSpeed {
+export function speedOf(
+  { search, averages, segmentSamples }: Searched,
+  declaredHz: number,
+  rateHz = sampleRateHz,
+): MeasuredSpeed {
   const found = findSpeed(
-    [{ search, averages, settings: { sampleRateHz, segmentSamples } }],
+    [{ search, averages, settings: { sampleRateHz: rateHz, segmentSamples } }],
     declaredHz,
     0.02,
   );
