@@ -21,8 +21,7 @@ import type { TrendFacts } from './trend-words.ts';
 
 export interface SiteFacts {
   readonly name: string;
-  /** IANA name. */
-  readonly timeZone: string;
+  readonly timeZone: string; // IANA name
 }
 
 export interface MachineFacts {
@@ -116,6 +115,7 @@ export interface StandingFacts {
   /** Who shelved it or took it out of service, and why; by design: the condition of the site file that holds. */
   readonly suppressedBy?: string | null;
   readonly suppressedWhy?: string | null;
+  readonly untoldDanger?: boolean; // it rose to danger while it was held back
 }
 
 /** An alarm as every list of alarms shows it. */

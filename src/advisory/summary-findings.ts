@@ -45,7 +45,7 @@ export function needFinding(group: readonly Standing[], facts: SummaryFacts): Fi
       ...sisterLines(group, facts),
       ...evidenceOf(group),
     ],
-    since: `${sinceText(first, facts)}, ${standingText(first, timeZone)}.`,
+    since: `${sinceText(first, facts)}, ${first.untoldDanger === true ? 'rose to danger while ' : ''}${standingText(first, timeZone)}.`,
   };
 }
 

@@ -48,10 +48,12 @@ export type Standing = StandingAlarm | TroubleFacts;
 /**
  * Whether a standing alarm or trouble needs somebody today: not acknowledged, or the time to respond has passed, or
  * worse in spite of the acknowledgement, or over the danger limit and not yet confirmed. What a person has shelved or
- * taken out of service does not; a danger that only the site file holds back does, for nobody has seen it.
+ * taken out of service does not, unless it rose to danger on the shelf; a danger that only the site file holds back does,
+ * for nobody has seen it.
  */
 export function needsPerson(standing: Standing, nowMs: number): boolean {
-  if (['shelved', 'out-of-service', 'normal'].includes(standing.standing)) return false;
+  if (standing.standing === 'shelved') return standing.untoldDanger === true;
+  if (standing.standing === 'out-of-service' || standing.standing === 'normal') return false;
   if (standing.standing === 'suppressed')
     return standing.kind === 'alarm' && standing.severity === 'danger' && standing.acknowledgedMs === null;
   // Nothing is left to do about a trouble that is over: being told here acknowledges it.

@@ -52,5 +52,8 @@ export async function standingFacts(
     suppressedUntilMs: held?.untilMs ?? null,
     suppressedBy: held?.by ?? null,
     suppressedWhy: held?.while ?? held?.comment ?? null,
+    ...(now !== 'normal' && state.heldBack && state.condition === 'danger' && state.told !== 'danger'
+      ? { untoldDanger: true }
+      : {}),
   };
 }

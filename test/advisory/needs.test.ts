@@ -20,6 +20,19 @@ describe('needs a person today', () => {
     expect(needsPerson({ ...held, standing: 'shelved' }, nowMs)).toBe(false);
   });
 
+  it('what rose to danger on its shelf, but not what was shelved as a danger', () => {
+    const shelved = {
+      ...danger,
+      standing: 'shelved',
+      suppressedBy: 'A. Fitter',
+      suppressedWhy: 'tank cleaning',
+    } as const;
+    expect(needsPerson(shelved, nowMs)).toBe(false);
+    expect(needs([{ ...shelved, untoldDanger: true }])[0]?.since).toMatch(
+      /, rose to danger while shelved, by A\. Fitter: tank cleaning\.$/,
+    );
+  });
+
   it('begins with what stands, not with the danger that is over', () => {
     const over = { ...danger, number: 1, standing: 'returned-unacknowledged' } as const;
     const stands = { ...alert, number: 2, machine: danger.machine, point: danger.point };

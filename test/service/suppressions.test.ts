@@ -1,6 +1,9 @@
 /** Shelves, places out of service, suppression by design and chattering, through the whole service with its own ledger. */
+
 import { describe, expect, it } from 'vitest';
+import { needsPerson } from '../../src/advisory/summary.ts';
 import { actOnAlarm } from '../../src/service/acts-log.ts';
+import { gatherSummary } from '../../src/service/summary-gather.ts';
 import { beginMs, hourMs, stamp, type TrialService, wav } from './site-on-disk.ts';
 import { serviceOn, site, trial } from './trial.ts';
 
@@ -110,6 +113,25 @@ describe('a shelf', () => {
       expect(await journalled(t)).toEqual(['raised', 'shelved', 'shelf-expired']);
     },
   );
+
+  it('is no hiding place for what rises to danger: the summary puts that among what needs a person', async () => {
+    const t = await trial();
+    const ofAlarm = async () => {
+      const { ledger, view } = t.service;
+      const { standing } = await gatherSummary({ ledger, view, nowMs: t.clock.wallMs(), upSinceMs: 0 });
+      return standing.map((one) => [
+        one.standing,
+        one.untoldDanger ?? false,
+        needsPerson(one, t.clock.wallMs()),
+      ]);
+    };
+    for (const hour of [0, 1, 2]) await t.hour(hour, { pump: 4 });
+    await shelve(t, 8 * hourMs);
+    expect(await ofAlarm()).toEqual([['shelved', false, false]]);
+    for (const hour of [3, 4]) await t.hour(hour, { pump: 12 });
+    expect(await told(t)).toEqual(['raised alert']);
+    expect(await ofAlarm()).toEqual([['shelved', true, true]]);
+  });
 
   it('does not outlast its time when the clock was set back while the service was off', async () => {
     const on = site();
