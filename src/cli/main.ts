@@ -11,6 +11,7 @@ import { addDraft } from './commands/draft.ts';
 import { addFiles } from './commands/files.ts';
 import { addNoteCommand } from './commands/note.ts';
 import { addRecordingPlan } from './commands/recording-plan.ts';
+import { addRehearse } from './commands/rehearse.ts';
 import { addRun } from './commands/run.ts';
 import { addStatus } from './commands/status.ts';
 import { addSummary } from './commands/summary.ts';
@@ -29,6 +30,7 @@ const commands: readonly AddCommand[] = [
   addAlarms,
   addBaseline,
   addNoteCommand,
+  addRehearse,
   addRecordingPlan,
   addBackup,
   addDemo,

@@ -1,5 +1,5 @@
 import { dependenceFactor, mannKendall, theilSen } from '../signal/rank-trend.ts';
-import { madToDeviation, median, medianAbsoluteDeviation, quantile } from '../signal/statistics.ts';
+import { deviationOfSorted, madToDeviation, medianOfSorted, quantile } from '../signal/statistics.ts';
 
 /**
  * What is usual for one level in one operating condition: median and spread of its logarithms over a reference period.
@@ -66,29 +66,10 @@ export interface BaselineQuestion {
 }
 
 /** The baseline that these levels give. Levels beyond the last day that refines it take no part. */
-export function baselineOf(question: BaselineQuestion): Baseline {
-  const days = runningDays(question).slice(0, baselineRules.refinedDays);
-  const levels = days.flat();
-  const { confirmed } = question;
-  const [first, last] = [levels.at(0), levels.at(-1)];
-  if (first === undefined || last === undefined) return { ...noBaseline, confirmed };
-  const logs = Float64Array.from(levels, ({ level }) => Math.log(level));
-  const own = madToDeviation * medianAbsoluteDeviation(logs);
-  const state = stateOf(days.length);
-  const isShort = state === 'learning' || state === 'provisional';
-  const medianLog = median(logs);
-  const refused = confirmed === null ? refusalOf(days, medianLog, question.zoneC) : null;
-  return {
-    state: refused === null ? state : 'refused',
-    fromMs: first.usedMs,
-    toMs: last.usedMs,
-    runningDays: days.length,
-    recordings: levels.length,
-    medianLog,
-    spreadLog: isShort ? Math.max(own, baselineRules.leastSpread) : own,
-    refused,
-    confirmed,
-  };
+export function baselineOf({ levels, ...rules }: BaselineQuestion): Baseline {
+  const growing = new GrowingBaseline(rules);
+  for (const level of levels) growing.add(level);
+  return growing.now();
 }
 
 export const noBaseline: Baseline = {
@@ -123,28 +104,109 @@ function stateOf(days: number): BaselineState {
   return days < baselineRules.refinedDays ? 'learned' : 'refined';
 }
 
-/** Days with enough good recordings, each with its levels. */
-function runningDays({ levels, expectedADay }: BaselineQuestion): GoodLevel[][] {
-  const days = new Map<number, GoodLevel[]>();
-  for (const level of levels) {
-    if (!(level.level > 0)) continue;
-    const day = days.get(level.day);
-    if (day === undefined) days.set(level.day, [level]);
-    else day.push(level);
-  }
-  // A condition that a machine runs in for three hours a day is learned from those: a full day there has three.
-  const usual = quantile(
-    [...days.values()].map((day) => day.length),
-    0.9,
-  );
-  const least = Math.max(1, Math.ceil(baselineRules.leastOfDay * Math.min(expectedADay, usual)));
-  return [...days.values()].filter((day) => day.length >= least);
+/** A day with good recordings. */
+interface GoodDay {
+  readonly fromMs: number;
+  readonly toMs: number;
+  /** ln of the levels, ascending. */
+  readonly logs: Float64Array;
+  /** ln of their median. */
+  readonly log: number;
 }
 
-function refusalOf(days: readonly GoodLevel[][], medianLog: number, zoneC: number | null): string | null {
+/**
+ * A baseline level by level. What it is now is answered from the days as they ended, none of them reckoned anew: whoever
+ * goes through years asks every day.
+ */
+export class GrowingBaseline {
+  readonly #rules: Omit<BaselineQuestion, 'levels'>;
+  readonly #ended: GoodDay[] = [];
+  /** The newest day, to which levels may still come. */
+  #own: GoodLevel[] = [];
+  /** Of the days that count, which are those with so many levels. */
+  #least = Number.NaN;
+  #days: GoodDay[] = [];
+  #logs: Float64Array = new Float64Array(0);
+  #looked = 0;
+
+  constructor(rules: Omit<BaselineQuestion, 'levels'>) {
+    this.#rules = rules;
+  }
+
+  /** Oldest first. */
+  add(level: GoodLevel): void {
+    if (!(level.level > 0)) return;
+    if (this.#own.length > 0 && this.#own[0].day !== level.day) {
+      this.#ended.push(goodDay(this.#own));
+      this.#own = [];
+    }
+    this.#own.push(level);
+  }
+
+  now(): Baseline {
+    const { confirmed, zoneC } = this.#rules;
+    const { days, logs } = this.#running();
+    const [first, last] = [days.at(0), days.at(-1)];
+    if (first === undefined || last === undefined) return { ...noBaseline, confirmed };
+    const medianLog = medianOfSorted(logs);
+    const own = madToDeviation * deviationOfSorted(logs, medianLog);
+    const state = stateOf(days.length);
+    const isShort = state === 'learning' || state === 'provisional';
+    const refused = confirmed === null ? refusalOf(days, medianLog, zoneC) : null;
+    return {
+      state: refused === null ? state : 'refused',
+      fromMs: first.fromMs,
+      toMs: last.toMs,
+      runningDays: days.length,
+      recordings: logs.length,
+      medianLog,
+      spreadLog: isShort ? Math.max(own, baselineRules.leastSpread) : own,
+      refused,
+      confirmed,
+    };
+  }
+
+  /** Days with enough good recordings, up to the one that refines it, and all their levels. */
+  #running(): { readonly days: readonly GoodDay[]; readonly logs: Float64Array } {
+    const counts = this.#ended.map(({ logs }) => logs.length);
+    // A condition that a machine runs in for three hours a day is learned from those: a full day there has three.
+    const usual = quantile([...counts, ...(this.#own.length === 0 ? [] : [this.#own.length])], 0.9);
+    const expected = Math.min(this.#rules.expectedADay, usual);
+    const least = Math.max(1, Math.ceil(baselineRules.leastOfDay * expected));
+    if (least !== this.#least) {
+      [this.#least, this.#days, this.#logs, this.#looked] = [least, [], new Float64Array(0), 0];
+    }
+    for (; this.#looked < this.#ended.length && !this.#isFull(); this.#looked++) {
+      const day = this.#ended[this.#looked];
+      if (day.logs.length < least) continue;
+      this.#days.push(day);
+      this.#logs = merged(this.#logs, day.logs);
+    }
+    if (this.#own.length === 0 || this.#own.length < least || this.#isFull())
+      return { days: this.#days, logs: this.#logs };
+    const own = goodDay(this.#own);
+    return { days: [...this.#days, own], logs: merged(this.#logs, own.logs) };
+  }
+
+  #isFull(): boolean {
+    return this.#days.length >= baselineRules.refinedDays;
+  }
+}
+
+function goodDay(levels: readonly GoodLevel[]): GoodDay {
+  const sorted = Float64Array.from(levels, ({ level }) => level).sort();
+  return {
+    fromMs: levels[0].usedMs,
+    toMs: levels[levels.length - 1].usedMs,
+    logs: sorted.map((level) => Math.log(level)),
+    log: Math.log(medianOfSorted(sorted)),
+  };
+}
+
+function refusalOf(days: readonly GoodDay[], medianLog: number, zoneC: number | null): string | null {
   if (zoneC !== null && medianLog > Math.log(zoneC)) return 'it lies in zone C or D';
-  if (days.length < baselineRules.provisionalDays) return null;
-  const logs = days.map((day) => Math.log(median(day.map(({ level }) => level))));
+  const logs = days.map(({ log }) => log);
+  if (days.length < baselineRules.provisionalDays || !mayHaveGrown(logs)) return null;
   const at = logs.map((_, day) => day);
   const line = theilSen(at, logs, 1);
   if (line === null) return null;
@@ -154,4 +216,21 @@ function refusalOf(days: readonly GoodLevel[][], medianLog: number, zoneC: numbe
   const { p } = mannKendall(logs, dependenceFactor(beside));
   if (p >= baselineRules.significance) return null;
   return `it rose by ${Math.round(100 * (growth - 1))} % while it was learned`;
+}
+
+/** A median of all slopes is only so steep where half of them are; counting these needs no order. */
+function mayHaveGrown(logs: readonly number[]): boolean {
+  const days = logs.length;
+  const steep = (Math.log(baselineRules.growth) / (days - 1)) * (1 - 1e-9);
+  let count = 0;
+  for (let a = 0; a < days; a++) {
+    for (let b = a + 1; b < days; b++) if (logs[b] - logs[a] >= steep * (b - a)) count++;
+  }
+  return 2 * count >= (days * (days - 1)) / 2;
+}
+
+function merged(a: Float64Array, b: Float64Array): Float64Array {
+  const all = new Float64Array(a.length + b.length);
+  for (let n = 0, i = 0, j = 0; n < all.length; n++) all[n] = j >= b.length || a[i] <= b[j] ? a[i++] : b[j++];
+  return all;
 }

@@ -1,5 +1,5 @@
 import type { OperatingCondition } from '../config/site.ts';
-import type { Measurement } from '../manipulation/measurement.ts';
+import type { Measurement, RunningSpeed } from '../manipulation/measurement.ts';
 
 /** Name of the one condition of a machine whose site file lists none. */
 export const anyCondition = '';
@@ -13,7 +13,10 @@ export const anyCondition = '';
  */
 export function conditionOf(
   conditions: readonly OperatingCondition[],
-  { speed, loadPercent }: Pick<Measurement, 'speed' | 'loadPercent'>,
+  {
+    speed,
+    loadPercent,
+  }: Pick<Measurement, 'loadPercent'> & { readonly speed: Pick<RunningSpeed, 'rpm' | 'origin'> | null },
 ): string | null {
   if (conditions.length === 0) return anyCondition;
   const speedHz = speed === null || speed.origin === 'nominal' ? null : speed.rpm / 60;

@@ -14,6 +14,33 @@ export function medianAbsoluteDeviation(values: ArrayLike<number>): number {
   return median(Float64Array.from(values, (value) => Math.abs(value - middle)));
 }
 
+/** As `median`, of ascending values. */
+export function medianOfSorted(sorted: ArrayLike<number>): number {
+  const half = (sorted.length - 1) / 2;
+  const [below, above] = [sorted[Math.floor(half)], sorted[Math.ceil(half)]];
+  return sorted.length === 0 ? Number.NaN : below + 0.5 * (above - below);
+}
+
+/** Median of the distances from `middle`, of ascending values: they grow to both sides, so that half of them are passed. */
+export function deviationOfSorted(sorted: ArrayLike<number>, middle: number): number {
+  const count = sorted.length;
+  if (count === 0) return Number.NaN;
+  let above = 0;
+  for (let step = count; step > 0; step = Math.floor(step / 2))
+    while (above + step <= count && sorted[above + step - 1] < middle) above += step;
+  let below = above - 1;
+  let [last, before] = [0, 0];
+  for (let passed = 0; passed <= Math.floor(count / 2); passed++) {
+    const down = below >= 0 ? middle - sorted[below] : Number.POSITIVE_INFINITY;
+    const up = above < count ? sorted[above] - middle : Number.POSITIVE_INFINITY;
+    before = last;
+    last = Math.min(down, up);
+    if (down <= up) below--;
+    else above++;
+  }
+  return count % 2 === 1 ? last : before + 0.5 * (last - before);
+}
+
 /**
  * Value below which the given share (0 to 1) lies, linear between neighbouring ranks (definition 7 of Hyndman & Fan
  * 1996, numpy's default); NaN of nothing or of values with a NaN among them. The values keep their order.
