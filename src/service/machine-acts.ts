@@ -119,7 +119,7 @@ export async function orderBaseline(
 }
 
 const nothingTo: Readonly<Record<BaselineOrder['kind'], string>> = {
-  'learn-again': 'there is no baseline to learn again: no recording has come yet',
+  'learn-again': 'there is no baseline to learn again: the first begins when a running day is over',
   freeze: 'there is no baseline to freeze: it has seen no running day yet, or is frozen already',
   confirm: 'there is no refused baseline to confirm',
 };

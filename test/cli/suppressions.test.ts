@@ -56,7 +56,11 @@ describe('a shelf', () => {
     });
     expect((await alarms('shelve', '1', '--for', '8 h', '--by', 'K')).status).toBe(2);
     expect((await alarms('shelve', '1', ...by)).status).toBe(2);
-    expect(await alarms('shelve', '1', '--for', 'soon', ...by)).toMatchObject({ status: 2 });
+    for (const [time, err] of [
+      ['soon', "--for: 'soon' does not begin with a number; write: --for '8 h'\n"],
+      ['3', "--for: '3' has no unit; write: --for '3 h'\n"],
+    ] as const)
+      expect(await alarms('shelve', '1', '--for', time, ...by)).toEqual({ status: 2, out: '', err });
     expect((await alarms('unshelve', '77', ...by)).err).toBe('there is no alarm or trouble number 77\n');
   });
 
@@ -122,7 +126,7 @@ describe('out of service', () => {
   test('ends by name, with baselines anew where that is asked for', async () => {
     const ran = await alarms('in-service', 'pump-2', '--new-baseline', ...by);
     expect(ran.out).toMatch(
-      /^pump-2: in service; \d standing alarms no longer held back; 0 baselines are learned anew\n$/,
+      /^pump-2: in service; \d standing alarms no longer held back; there is no baseline yet\n$/,
     );
     const told = await events();
     expect(told).toContain('baseline-begun-again');

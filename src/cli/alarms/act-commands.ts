@@ -108,9 +108,9 @@ function orderOf(
   { shelveAtMostMs }: Site,
 ): AlarmOrder | { readonly wrong: string } {
   if (kind !== 'shelve') return { kind, comment };
-  const time = parseDuration(options.for ?? '');
-  if (!time.ok) return { wrong: `--for: ${time.what}` };
-  if (time.value < 60_000) return { wrong: '--for: shorter than a minute' };
+  const time = parseDuration(options.for ?? '', 'h');
+  if (!time.ok) return { wrong: `--for: ${time.what}; write: --for '${time.instead ?? '8 h'}'` };
+  if (time.value < 60_000) return { wrong: "--for: shorter than a minute; write: --for '8 h'" };
   return { kind, comment: comment ?? '', forMs: time.value, atMostMs: shelveAtMostMs };
 }
 

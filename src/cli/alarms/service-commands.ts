@@ -85,7 +85,7 @@ function inService(
     run: (ledger) => putInService(ledger, place, { newBaseline }, person),
     words: ({ alarms, baselines, staying }) => {
       const learned = newBaseline
-        ? `; ${baselines === 1 ? '1 baseline is' : `${baselines} baselines are`} learned anew`
+        ? `; ${baselines === 0 ? 'there is no baseline yet' : baselines === 1 ? '1 baseline is learned anew' : `${baselines} baselines are learned anew`}`
         : '';
       const rest = staying.length === 0 ? '' : `; still out of service: ${staying.join(', ')}`;
       return `${path}: in service${standing(alarms, 'no longer held back')}${learned}${rest}`;

@@ -66,6 +66,7 @@ function note(path: string, kindText: string, options: NoteOptions, io: CommandI
 
 function ended(kind: NoteKind, baselines: number): string {
   if (!breakingKinds.includes(kind)) return '';
-  const count = baselines === 1 ? '1 baseline is' : `${baselines} baselines are`;
+  const count =
+    baselines === 0 ? 'what is usual is' : baselines === 1 ? '1 baseline is' : `${baselines} baselines are`;
   return `; ${count} learned anew from then on, and no trend reaches across`;
 }
