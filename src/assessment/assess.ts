@@ -66,11 +66,19 @@ export function assess(
   return { peaks, evidence: [...bearingEvidence(found, untold, heard, observed.hz), ...ofParts] };
 }
 
-/** The speed by which lines may be named: as the spectra show it, else as it was declared or measured. */
+/** A speed that moves by more within a recording, from slowest to fastest, leaves no line at its place. */
+const mostMoved = 0.05;
+
+/**
+ * The speed by which lines may be named: as the spectra show it, else as it was declared or measured. Where it moved,
+ * a line may lie anywhere between its slowest and its fastest place.
+ */
 export function observedSpeed(speed: MeasuredSpeed | null): ObservedSpeed | null {
   if (speed === null || !speed.usableForNames) return null;
   const { rpm, uncertaintyRpm } = speed.inSpectrum ?? speed;
-  return rpm > 0 ? { hz: rpm / 60, uncertaintyHz: uncertaintyRpm / 60 } : null;
+  const moved = speed.rangeRpm === null ? 0 : speed.rangeRpm.highest - speed.rangeRpm.lowest;
+  if (!(rpm > 0) || moved > mostMoved * rpm) return null;
+  return { hz: rpm / 60, uncertaintyHz: Math.max(uncertaintyRpm, moved / 2) / 60 };
 }
 
 function faultsIn(

@@ -101,6 +101,18 @@ describe('what is said of a family', () => {
     expect(observedSpeed(speed({ inSpectrum, usableForNames: false }))).toBeNull();
   });
 
+  it('by a speed no better than it held still, and not at all in a run-up', () => {
+    const moved = (lowest: number, highest: number) => speed({ rangeRpm: { lowest, highest } });
+    expect(observedSpeed(moved(1490, 1510))?.uncertaintyHz).toBeCloseTo(10 / 60, 12);
+    expect(observedSpeed(moved(1499.5, 1500.5))?.uncertaintyHz).toBeCloseTo(1 / 60, 12);
+    expect(observedSpeed(moved(1350, 1650))).toBeNull();
+    // A line of something else at 4x of the mean speed: 4x itself lies smeared over 1 Hz.
+    const named = (of: MeasuredSpeed) =>
+      assess([envelope(0.5, 100)], of, [driveEnd], [driveEnd]).peaks[0]?.[0]?.names;
+    expect(named(speed())).toEqual(['4x']);
+    expect(named(moved(1490, 1510))).toEqual([]);
+  });
+
   it('that it cannot be told from the shaft, and what spacing would tell it', () => {
     // BPFO at 3.04 turns: 1 Hz from 3x at 25 Hz.
     const near = { ...driveEnd, geometry: null, multiples: { ftf: null, bsf: null, bpfo: 3.04, bpfi: null } };
