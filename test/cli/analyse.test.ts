@@ -328,7 +328,7 @@ describe('with a site file', () => {
       rpm: expect.closeTo(1500, -1),
       origin: 'pulses',
       uncertainty_rpm: expect.any(Number),
-      names_lines: true,
+      names_lines: false,
       lowest_rpm: expect.closeTo(1357, -1),
       highest_rpm: expect.closeTo(1643, -1),
       in_spectrum: null,

@@ -1,4 +1,5 @@
 import { speedOrigin } from '../../advisory/wording.ts';
+import { observedSpeed } from '../../assessment/assess.ts';
 import { printNumber } from '../../config/print-value.ts';
 import type { MeasuredSpeed, OrderSpectrum, SpectralPeak } from '../../manipulation/measurement.ts';
 
@@ -8,7 +9,7 @@ export function speedJson(speed: MeasuredSpeed) {
     rpm: speed.rpm,
     origin: speed.origin,
     uncertainty_rpm: speed.uncertaintyRpm,
-    names_lines: speed.usableForNames,
+    names_lines: observedSpeed(speed) !== null,
     lowest_rpm: rangeRpm?.lowest ?? null,
     highest_rpm: rangeRpm?.highest ?? null,
     in_spectrum: inSpectrum && {
@@ -21,7 +22,7 @@ export function speedJson(speed: MeasuredSpeed) {
 
 /** The running speed for people: how well it is known, where from, what the recording says beside it. */
 export function speedText(speed: MeasuredSpeed): string {
-  const { rpm, uncertaintyRpm, origin, rangeRpm, inSpectrum, usableForNames } = speed;
+  const { rpm, uncertaintyRpm, origin, rangeRpm, inSpectrum } = speed;
   const words = [`${printNumber(rpm, 5)} rpm ± ${printNumber(uncertaintyRpm, 2)}, ${speedOrigin[origin]}`];
   if (rangeRpm !== null)
     words.push(`between ${printNumber(rangeRpm.lowest, 4)} and ${printNumber(rangeRpm.highest, 4)} rpm`);
@@ -29,7 +30,7 @@ export function speedText(speed: MeasuredSpeed): string {
     words.push(
       `the spectrum shows ${printNumber(inSpectrum.rpm, 5)} rpm ± ${printNumber(inSpectrum.uncertaintyRpm, 2)}`,
     );
-  if (!usableForNames) words.push('no line is named by it');
+  if (observedSpeed(speed) === null) words.push('no line is named by it');
   return words.join('; ');
 }
 
