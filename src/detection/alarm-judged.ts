@@ -51,9 +51,10 @@ function rise(
       acknowledged: false,
       latched: false,
       highest: higher(state.highest, to),
-      sinceMs: state.sinceMs ?? counted.begun?.sinceMs ?? judged.usedMs,
-      // Recordings of the on-delay belong to the life; in a standing alarm they were counted as they came.
-      count: state.count + (arises ? (counted.begun?.recordings ?? 1) : 1),
+      // What comes again before anybody acknowledged it stands since then, not since it came first.
+      sinceMs: (arises ? null : state.sinceMs) ?? counted.begun?.sinceMs ?? judged.usedMs,
+      // Recordings of the on-delay belong to it; in a standing alarm they were counted as they came.
+      count: arises ? (counted.begun?.recordings ?? 1) : state.count + 1,
       usedMs: newest(state, judged),
       ...call.fields,
     },

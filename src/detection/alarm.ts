@@ -29,9 +29,9 @@ export interface AlarmState {
    * Worsening is reckoned from this where it is the worse.
    */
   readonly knownLevel: number | null;
-  /** Used time of the first recording over the limit in this life of the alarm; null when normal. */
+  /** Used time of the first recording over the limit since the alarm last arose; null where there is no life. */
   readonly sinceMs: number | null;
-  /** Recordings over the limit in this life. */
+  /** Recordings over the limit since then. */
   readonly count: number;
   /** Used time of the newest recording that moved or confirmed this state. */
   readonly usedMs: number | null;

@@ -13,6 +13,7 @@ import {
   followSuppressions,
   heldByDesign,
   type PlantNow,
+  ruleOfCommands,
   type SuppressionsDue,
   statesUnder,
   withBrought,
@@ -152,4 +153,17 @@ test('an alarm stands for long after more than two weeks, in whatever state of a
   expect(isLongStanding(standing, longStandingMs)).toBe(false);
   expect(isLongStanding(standing, longStandingMs + 1)).toBe(true);
   expect(isLongStanding({ ...standing, condition: 'normal' }, 1e12)).toBe(false);
+});
+
+test('an alarm that comes again before anybody acknowledged it stands since then', () => {
+  const rule: AlarmRule = { ...ruleOfCommands, sayAgainPercent: null };
+  const hourMs = 3_600_000;
+  const state = [1, 0, 1, 1].reduce((before, over, n) => {
+    const usedMs = n < 2 ? n * hourMs : longStandingMs + n * hourMs;
+    const severity = over === 1 ? 'alert' : 'normal';
+    const judged = { kind: 'judged', severity, usedMs, level: 3, flagged: false, atOnce: false, reason: {} };
+    return alarmStep(before, judged as AlarmEvent, rule).state;
+  }, normalState);
+  expect(state).toMatchObject({ condition: 'alert', sinceMs: longStandingMs + 2 * hourMs, count: 2 });
+  expect(isLongStanding(state, longStandingMs + 4 * hourMs)).toBe(false);
 });
