@@ -118,7 +118,7 @@ function dayWord({ time }: TrendFacts): string {
 }
 
 function inCondition({ condition }: TrendFacts): string {
-  return condition === '' ? '' : ` in ${idText(condition)}`;
+  return condition === '' ? '' : ` in condition ${idText(condition)}`;
 }
 
 function sinceText({ broken }: TrendFacts, timeZone: string): string {

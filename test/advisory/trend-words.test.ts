@@ -30,7 +30,7 @@ describe('the words of a trend', () => {
       'fell by 40 % over 30 days (p < 0.001)',
     );
     expect(short({ ahead: null, condition: 'full-load' })).toBe(
-      'rose by 64 % over 30 running days in full-load',
+      'rose by 64 % over 30 running days in condition full-load',
     );
   });
 
