@@ -24,14 +24,14 @@ export function chatterAdvice({ deadbandPercent, onDelay }: ChatterFacts): strin
     `a wider deadband${deadbandPercent === null ? '' : ` (now ${deadbandPercent} %)`}`,
     `a longer on_delay${onDelay === null ? '' : ` (now ${delayText(onDelay)})`}`,
   ];
-  return `either the machine does this, or its limit stands too near to what is usual: ${now.join(' or ')} keeps it quiet`;
+  return `${now.join(' or ')}, unless the machine itself comes and goes`;
 }
 
 /** In its mail: what is meant, what follows from it, what to do. */
 export function chatteringSaid(chatter: ChatterFacts): string {
   const advice = chatterAdvice(chatter);
   return (
-    `this alarm ${chatterText(chatter)}. Until it has stopped coming and going it is not mailed each time; a danger always is. ` +
+    `it ${chatterText(chatter)}. Until that stops it is not mailed each time; a danger always is. ` +
     `It needs a plan: ${advice}.`
   );
 }

@@ -102,7 +102,7 @@ const events: Readonly<Partial<Record<JournalEventName, string>>> = {
   rose: 'Risen from alert to danger.',
   fell: 'Fallen from danger to alert.',
   returned: 'Back to normal.',
-  'said-again': 'Told again: the level has gone on growing since it was last told.',
+  'said-again': 'Told again: the level has got worse since it was last told.',
   'still-stands': 'Told again: it was acknowledged, and it still stands.',
   reminded: 'Reminder: nobody has acknowledged this yet.',
   'danger-unconfirmed': 'Over the danger limit, not yet confirmed by a further recording.',
@@ -111,6 +111,9 @@ const events: Readonly<Partial<Record<JournalEventName, string>>> = {
   'limit-removed':
     'The limit has been taken out of the site file: the alarm is closed, although nobody had acknowledged the danger.',
   'shelf-expired': 'The time on the shelf is over and the alarm still stands.',
+  unshelved: 'Taken off its shelf, and the alarm still stands.',
+  'in-service': 'Out of service until now, and the alarm still stands.',
+  unsuppressed: 'Held back by design until now, and the alarm still stands.',
 };
 
 /** 'unacknowledged', 'acknowledged by K. Example, Tue 1 Dec 2026, 06:30', 'shelved until ...'. */

@@ -23,7 +23,7 @@ it('the mail of a chattering alert says so, and what its limit could do about it
     'Until it has stopped coming and going it is not mailed each time; a danger always is.',
   );
   expect(texts[3]).toContain(
-    'a wider deadband (now 10 %) or a longer on_delay (now 1 recording) keeps it quiet.',
+    'a wider deadband (now 10 %) or a longer on_delay (now 1 recording), unless the machine itself comes and goes.',
   );
   await server.stop();
 });
