@@ -19,7 +19,7 @@ const leastPart = 0.03;
 const meshHarmonics = 3;
 const mostOrders = 5;
 
-interface Spacing {
+export interface Spacing {
   readonly fault: string;
   readonly hz: number;
   /** '1x', 'mating shaft 1x': of `times` of it. */
@@ -27,7 +27,7 @@ interface Spacing {
   readonly suggests: string;
 }
 
-interface Mesh {
+export interface Mesh {
   readonly hz: number;
   readonly spacings: readonly Spacing[];
   /** What passes a place of the ring beside the mesh of a sound planetary set, Hz; null: none. */
@@ -35,8 +35,7 @@ interface Mesh {
 }
 
 export function gearsSought(looked: Looked, part: GearPair | PlanetaryGear): Sought[] {
-  const mesh =
-    part.kind === 'gear-pair' ? meshOfPair(part, looked.speed.hz) : meshOfSet(part, looked.speed.hz);
+  const mesh = meshOf(part, looked.speed.hz);
   const { lineSpacingHz } = looked.spectrum;
   const ordinary = ordinaryLines(looked.partsOfMachine, part, looked.speed);
   return mesh.spacings
@@ -132,6 +131,10 @@ function carriersOf({ spectrum, speed }: Looked, mesh: Mesh, stepHz: number): Ca
     carriers.push({ hz: line?.frequencyHz ?? expected, level, harmonic });
   }
   return carriers;
+}
+
+export function meshOf(part: GearPair | PlanetaryGear, runningHz: number): Mesh {
+  return part.kind === 'gear-pair' ? meshOfPair(part, runningHz) : meshOfSet(part, runningHz);
 }
 
 function meshOfPair(part: GearPair, runningHz: number): Mesh {

@@ -52,7 +52,7 @@ export interface Shown {
 /** Counts of strongest lines at which pictures are tried. */
 const rungs = [2, 3, 5, 8, 13, 21, 34, 55, 89, 144];
 /** Pictures are tried at several heights and spans; by trials the best is so many times likelier than one (see the tests). */
-const triesFactor = 2;
+const triesFactor = 4;
 
 /**
  * A picture as far as it stands in a spectrum, at the step that is least likely by accident; null where too few of its
@@ -96,6 +96,7 @@ function shownAt(crowd: Crowd, picture: Picture, candidateHz: number): Shown | n
     .map(({ besideHz, times }) => besideHz + times * stepHz)
     .filter((hz) => crowd.isWithin(hz) && picture.counts(hz))
     .map((hz) => crowd.rankAt(hz, 0));
+  const between = crowd.between(picture, stepHz);
   let least = 1;
   for (const span of picture.spans) {
     const tried = placed.filter(({ place }) => Math.abs(place.times) <= span);
@@ -107,7 +108,8 @@ function shownAt(crowd: Crowd, picture: Picture, candidateHz: number): Shown | n
       // Where most of the comb stands beyond the picture, it is a comb throughout.
       const isComb = 2 * standing > beyond.length;
       const rate = isComb ? 1 : (standing + picture.compareFrom) / (beyond.length + 1);
-      const chances = tried.map(({ hz }) => Math.min(1, Math.max(crowd.chanceAt(hz, rung), rate)));
+      const near = crowd.chanceNear(between, stepHz, span, rung);
+      const chances = tried.map(({ hz }) => Math.min(1, Math.max(crowd.chanceAt(hz, rung), rate, near)));
       least = Math.min(least, steps * atLeast(chances, met));
     }
   }
@@ -149,6 +151,7 @@ class Crowd {
   readonly lines: readonly StandingLine[];
   readonly rungs: readonly number[];
   readonly toleranceHz: number;
+  readonly #carriers: readonly number[];
   readonly #rates = new Map<number, readonly number[]>();
   readonly #range: { readonly fromHz: number; readonly toHz: number };
   readonly #regions: readonly { readonly fromHz: number; readonly toHz: number; readonly width: number }[];
@@ -157,6 +160,7 @@ class Crowd {
     this.toleranceHz = toleranceLines * lineSpacingHz;
     this.#range = { fromHz, toHz };
     const carriers = [...new Set(picture.places.map(({ besideHz }) => besideHz))].filter((hz) => hz > 0);
+    this.#carriers = carriers;
     const isOwn = (hz: number) =>
       hz >= fromHz &&
       hz <= toHz &&
@@ -192,6 +196,27 @@ class Crowd {
     const rates = this.#rates.get(rung) ?? this.#ratesOf(rung);
     this.#rates.set(rung, rates);
     return 2 * this.toleranceHz * (rates[own] ?? 0);
+  }
+
+  /** Lines that stand at no place of the comb: their rank, and how far beside the next carrier. */
+  between(
+    { places, compare }: Picture,
+    stepHz: number,
+  ): readonly { readonly rank: number; readonly besideHz: number }[] {
+    const comb = [...places, ...compare].map(({ besideHz, times }) => besideHz + times * stepHz);
+    return this.lines.flatMap(({ frequencyHz }, rank) => {
+      if (comb.some((hz) => Math.abs(frequencyHz - hz) <= this.toleranceHz)) return [];
+      return [{ rank, besideHz: Math.min(...this.#carriers.map((hz) => Math.abs(frequencyHz - hz))) }];
+    });
+  }
+
+  /** The chance by the lines between the places, as near to the carriers: noise may gather beside a strong line. */
+  chanceNear(between: ReturnType<Crowd['between']>, stepHz: number, span: number, rung: number): number {
+    if (this.#carriers.length === 0) return 0;
+    const reachHz = (span + 0.5) * stepHz;
+    const count = between.filter((one) => one.rank < rung && one.besideHz <= reachHz).length;
+    const room = 2 * reachHz - (2 * separationLines + 4 * span) * this.toleranceHz;
+    return (2 * this.toleranceHz * (count + 1)) / (this.#carriers.length * Math.max(room, this.toleranceHz));
   }
 
   /** Lines a hertz in each region, or in all of them where that is more; the one that may be met is not of the crowd. */

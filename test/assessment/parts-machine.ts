@@ -1,5 +1,5 @@
 import { planetaryFrequencies, planetarySpeeds } from '../../src/assessment/planetary-frequencies.ts';
-import type { ElectricMotor, Part } from '../../src/config/parts.ts';
+import type { ElectricMotor, Part, PlanetaryGear } from '../../src/config/parts.ts';
 import type { SeededRandom } from '../signal/random.ts';
 import { belt, gearPair, motor, planetary, wheel } from './parts.ts';
 import { SampledMachine } from './sampled-machine.ts';
@@ -140,16 +140,24 @@ function gearMachine(random: SeededRandom, fault: string | null): PartsMachine {
   });
 }
 
+/** A set whose shafts and defects have spacings of their own: first and second orders 12 % of a turn off each other. */
+function separableSet(random: SeededRandom): PlanetaryGear {
+  for (;;) {
+    const sunTeeth = whole(random, 18, 30);
+    const planetTeeth = whole(random, sunTeeth, 2 * sunTeeth);
+    const ringTeeth = sunTeeth + 2 * planetTeeth;
+    const part = planetary({ sunTeeth, planetTeeth, ringTeeth, planets: whole(random, 3, 4) });
+    const turns = (kind: string) => planetaryFrequencies(part).find((one) => one.kind === kind)?.perTurn ?? 0;
+    const steps = [1, turns('planet defect'), turns('planet pass'), turns('sun defect')];
+    const apart = (a: number, b: number) =>
+      [1, 2].every((i) => [1, 2].every((j) => Math.abs(i * a - j * b) > 0.12));
+    if (steps.every((a, i) => steps.every((b, j) => i === j || apart(a, b)))) return part;
+  }
+}
+
 function planetaryMachine(random: SeededRandom, fault: string | null): PartsMachine {
   const shaftHz = between(random, 10, 50);
-  const sunTeeth = whole(random, 18, 30);
-  const planetTeeth = whole(random, sunTeeth, 2 * sunTeeth);
-  const part = planetary({
-    sunTeeth,
-    planetTeeth,
-    ringTeeth: sunTeeth + 2 * planetTeeth,
-    planets: whole(random, 3, 4),
-  });
+  const part = separableSet(random);
   const hzOf = (kind: string) =>
     (planetaryFrequencies(part).find((one) => one.kind === kind)?.perTurn ?? 0) * shaftHz;
   const carrierHz = planetarySpeeds(part).carrier * shaftHz;

@@ -26,14 +26,26 @@ export function partFaults(evidence: readonly Evidence[]): string[] {
 
 const ordinary = ['magnetic field', 'rotor bar pass'];
 
-/** Of so many machines with the fault: given it and no other, and given any. Without a fault: given any. */
-export function partTrials(kind: MachineOf, fault: string | null, machines: number, seed: number) {
+/** How many of so many machines with a fault are given it, and no other. */
+export function faultsFound(kind: MachineOf, fault: string, machines: number, seed: number): number {
   let right = 0;
-  let named = 0;
   for (let n = 0; n < machines; n++) {
     const found = partFaults(assessParts(partsMachine(seededRandom(seed + n), kind, fault)));
-    if (found.length > 0) named++;
     if (found.length === 1 && found[0] === fault) right++;
   }
-  return { right, named };
+  return right;
+}
+
+/** Of so many sound machines: every third shows harmonics of 1x throughout, every third lines of strangers. */
+export function soundNamed(kind: MachineOf, machines: number, seed: number): number {
+  let named = 0;
+  for (let n = 0; n < machines; n++) {
+    // Harmonics throughout are what is told of a coupling, and no mistake.
+    const beside = (['nothing', kind === 'coupling' ? 'strangers' : 'harmonics', 'strangers'] as const)[
+      n % 3
+    ];
+    const machine = partsMachine(seededRandom(seed + n), kind, null, beside);
+    if (partFaults(assessParts(machine)).length > 0) named++;
+  }
+  return named;
 }

@@ -14,6 +14,7 @@ describe('what check says of parts', () => {
       'de-bearing (drive-end bearing): FTF 19.65 Hz, BSF 114.9 Hz, BPFO 176.8 Hz, BPFI 268.7 Hz',
       "de-bearing at de-h: envelope lines 1.563 Hz apart tell it from the shaft's harmonics",
       'impeller: blade pass 544.5 Hz',
+      'impeller at de-h: lines 1.563 Hz apart can judge it',
     ]);
   });
 
@@ -31,6 +32,26 @@ describe('what check says of parts', () => {
     expect(textsOf(exampleWith([sizes, '        bpfo: 3x']))[1]).toBe(
       'de-bearing at de-h: envelope lines 1.563 Hz apart cannot tell BPFO from 3x (no line spacing would)',
     );
+  });
+
+  it('which of the other parts take finer lines than the point has', () => {
+    const motor = [
+      '      - id: motor',
+      '        kind: electric-motor',
+      '        line_frequency: 50 Hz',
+      '        poles: 2',
+      '      - id: gearbox',
+      '        kind: gear-pair',
+      '        teeth: 23',
+      '        mating_teeth: 67',
+      '      - id: impeller',
+    ].join('\n');
+    const texts = textsOf(exampleWith(['      - id: impeller', motor]));
+    // Pole pass 100 - 2 x 49.5 Hz, less 0.2 Hz for the grid; mating shaft 17 Hz and hunting tooth 0.739 Hz, of which four lines are wanted.
+    expect(texts.filter((text) => / at /.test(text)).slice(1, 3)).toEqual([
+      'motor at de-h: lines 1.563 Hz apart cannot judge sidebands at the pole pass (0.2 Hz would)',
+      'gearbox at de-h: lines 1.563 Hz apart cannot judge sidebands at hunting tooth (0.18 Hz would)',
+    ]);
   });
 
   it('multiples only where the machine has no nominal speed', () => {

@@ -3,7 +3,7 @@ import { evidenceCaution } from '../../advisory/evidence-facts.ts';
 import { bareLevel, unitText } from '../../advisory/level-words.ts';
 import { printFrequency, printNumber, printSeconds } from '../../config/print-value.ts';
 import type { Band } from '../../config/site.ts';
-import { isFaultEvidence } from '../../manipulation/evidence.ts';
+import { isFaultEvidence, speaksForFault } from '../../manipulation/evidence.ts';
 import type {
   Averaging,
   BandLevel,
@@ -87,8 +87,11 @@ function channelText(
 /** What the lines say of the parts, and that it is no verdict. */
 function evidenceFacts(evidence: Measurement['evidence']): [string, string][] {
   if (evidence.length === 0) return [];
-  const said = evidence.map(({ grade, words }): [string, string] => ['', `${grade}: ${plain(words)}`]);
-  const told: [string, string][] = evidence.some(isFaultEvidence)
+  const said = evidence.map((one): [string, string] => {
+    const grade = isFaultEvidence(one) && one.isObservation ? 'observed' : one.grade;
+    return ['', `${grade}: ${plain(one.words)}`];
+  });
+  const told: [string, string][] = evidence.some(speaksForFault)
     ? [['', `Evidence, never a verdict. ${evidenceCaution}`]]
     : [];
   return [...said, ...told].map(([, text], n) => [n === 0 ? 'evidence' : '', text]);

@@ -58,7 +58,7 @@ function partJson({ part, frequencies, points }: PartCheck) {
     name: part.name,
     kind: part.kind,
     frequencies: frequencies.map(({ one, hz }) => ({ frequency: one.kind, of: one.of, hz })),
-    points: points.map(({ point, spectrum, lineSpacingHz, notSeparable }) => ({
+    points: points.map(({ point, spectrum, lineSpacingHz, notJudged, notSeparable }) => ({
       point,
       spectrum,
       line_spacing_hz: lineSpacingHz,
@@ -67,6 +67,7 @@ function partJson({ part, frequencies, points }: PartCheck) {
         harmonic,
         line_spacing_needed_hz: neededHz,
       })),
+      not_judged: notJudged.map(({ what, neededHz }) => ({ what, line_spacing_needed_hz: neededHz })),
     })),
   };
 }

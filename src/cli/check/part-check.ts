@@ -5,6 +5,7 @@ import {
   characteristicFrequencies,
   frequencyHz,
 } from '../../assessment/fault-frequencies.ts';
+import { type NeededSpacing, neededSpacings } from '../../assessment/part-spacings.ts';
 import { pointMeaning } from '../../config/meaning.ts';
 import type { Part } from '../../config/parts.ts';
 import { printFrequency, printNumber } from '../../config/print-value.ts';
@@ -19,7 +20,7 @@ export interface PartCheck {
   readonly points: readonly PartAtPoint[];
 }
 
-/** Rolling bearings only: their frequencies lie beside the shaft's harmonics, other parts' lie on them. */
+/** Of rolling bearings what lies beside the shaft's harmonics; of other parts, which lie on them, what takes finer lines. */
 export interface PartAtPoint {
   readonly point: string;
   readonly spectrum: 'envelope' | 'plain';
@@ -30,7 +31,11 @@ export interface PartAtPoint {
     /** Null: no line spacing would. */
     readonly neededHz: number | null;
   }[];
+  readonly notJudged: readonly NeededSpacing[];
 }
+
+/** As the judgement itself allows: a shaft may differ from its nominal speed by some percent. */
+const withinNominal = 1.05;
 
 export function partChecks({ parts = [], points, runningSpeedHz }: Machine): PartCheck[] {
   return parts.map((part) => ({
@@ -39,14 +44,14 @@ export function partChecks({ parts = [], points, runningSpeedHz }: Machine): Par
       one,
       hz: runningSpeedHz !== null ? frequencyHz(one, runningSpeedHz) : one.perTurn === 0 ? one.fixedHz : null,
     })),
-    points:
-      part.kind === 'rolling-bearing' ? points.flatMap((point) => atPoint(part, point, runningSpeedHz)) : [],
+    points: points.flatMap((point) => atPoint(part, point, runningSpeedHz)),
   }));
 }
 
 function atPoint(part: Part, point: Point, runningSpeedHz: number | null): PartAtPoint[] {
   if (!part.at.includes(point.id) || runningSpeedHz === null) return [];
-  const envelope = envelopePlan(point, point.recordings.sampleRateHz, null);
+  const isBearing = part.kind === 'rolling-bearing';
+  const envelope = isBearing ? envelopePlan(point, point.recordings.sampleRateHz, null) : null;
   const lineSpacingHz =
     envelope === null
       ? (pointMeaning(point)?.lineSpacingHz ?? point.analysis.lineSpacingHz)
@@ -62,6 +67,9 @@ function atPoint(part: Part, point: Point, runningSpeedHz: number | null): PartA
         harmonic,
         neededHz,
       })),
+      notJudged: neededSpacings(part, runningSpeedHz).filter(
+        ({ neededHz }) => neededHz * withinNominal < lineSpacingHz,
+      ),
     },
   ];
 }
@@ -76,7 +84,7 @@ export function partTexts({ part, frequencies, points }: PartCheck): string[] {
   const first = `${name}: ${said.length === 0 ? 'no frequency of its own' : said.join(', ')}`;
   const byText = new Map<string, string[]>();
   for (const one of points) {
-    const text = separationText(one);
+    const text = part.kind === 'rolling-bearing' ? separationText(one) : judgementText(one);
     byText.set(text, [...(byText.get(text) ?? []), one.point]);
   }
   return [first, ...[...byText].map(([text, ids]) => `${part.id} at ${ids.join(', ')}: ${text}`)];
@@ -90,4 +98,14 @@ function separationText({ spectrum, lineSpacingHz, notSeparable }: PartAtPoint):
     return `${frequency} from ${harmonic}x (${remedy})`;
   });
   return `${lines} cannot tell ${each.join(', ')}`;
+}
+
+function judgementText({ lineSpacingHz, notJudged }: PartAtPoint): string {
+  const lines = `lines ${printFrequency(lineSpacingHz)} apart`;
+  if (notJudged.length === 0) return `${lines} can judge it`;
+  const each = notJudged.map(({ what, neededHz }) => {
+    const remedy = neededHz === 0 ? 'no line spacing would' : `${printFrequency(neededHz, 2)} would`;
+    return `${what} (${remedy})`;
+  });
+  return `${lines} cannot judge ${each.join(', ')}`;
 }
