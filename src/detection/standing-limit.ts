@@ -45,7 +45,8 @@ export class StandingLimit {
     const condition = recordings.condition[at];
     if (by === 'rate') return this.#rate(n, at, condition);
     this.#learn(at);
-    if (condition < 0) return null;
+    // Outside all conditions nothing is learned; what the site gave as a level counts there too.
+    if (condition < 0) return this.#once(-1, nothingKnown);
     const key = learnedKey(levels.series[n], condition);
     return this.#once(key, { ...nothingKnown, baseline: this.#baselines.get(key) ?? null });
   }
