@@ -18,7 +18,7 @@ export interface Carrier {
 export const mainLobesApartLines = 4;
 /** Sidebands beyond the picture with which it is compared, on either side. */
 const mostBeyond = 12;
-const lowestSpan = 1;
+const spans = [1, 2, 3, 5];
 
 export interface Sidebands {
   readonly carriers: readonly Carrier[];
@@ -58,7 +58,7 @@ export function sidebandPicture(of: Sidebands): Picture | null {
     places,
     compare,
     compareFrom: 0.5,
-    spans: [lowestSpan, 2, 3, 5].filter((span, n, all) => span <= orders || all[n - 1] < orders),
+    spans: spans.filter((span, n, all) => span <= orders || all[n - 1] < orders),
     regions: carriers.map(({ hz }) => ({ fromHz: hz - reachHz, toHz: hz + reachHz })),
     least: 3,
     inPairs: true,

@@ -85,6 +85,24 @@ describe('the facts of an alarm', () => {
         words: 'three harmonics of BPFO of the bearing in the envelope (163.4 Hz), 14 dB over the floor',
       },
       {
+        ...{
+          partId: 'impeller',
+          fault: 'vane pass',
+          frequency: 'vane pass',
+          spectrum: 'plain',
+          grade: 'strong',
+        },
+        ...{
+          isObservation: true,
+          expectedHz: 275,
+          observedHz: 275,
+          harmonics: 3,
+          sidebands: 6,
+          aboveFloorDb: 20,
+        },
+        ...{ chance: 1e-9, words: 'six sidebands at 1x around three harmonics of the vane pass' },
+      },
+      {
         ...bearing,
         spectrum: 'plain',
         grade: 'not separable',
