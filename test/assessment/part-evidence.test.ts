@@ -59,6 +59,23 @@ describe('what is said of gears', () => {
     expect(hunting.evidence.map(({ fault }) => fault)).toEqual(['two teeth that meet']);
   });
 
+  it('one gear only, where the sidebands of a slower shaft meet those of a faster one', () => {
+    // 38/67 teeth at 26.66 Hz: seven turns of the one shaft are four of the other, to less than a line.
+    const close = named(gearPair(38, 67), 'gears');
+    const [fastHz, slowHz] = [26.66, (38 * 26.66) / 67];
+    const around = (stepHz: number, orders: readonly number[], level: number) =>
+      [1, 2, 3].flatMap((m) =>
+        orders.flatMap((n) => [-n, n].map((k) => line(m * 38 * fastHz + k * stepHz, level / m))),
+      );
+    const meshes = [1, 2, 3].map((m) => line(m * 38 * fastHz, 10 / m, 30));
+    const slow = [...meshes, ...around(slowHz, [1, 2, 3, 4, 5, 6, 7, 8], 3)];
+    const faults = (lines: readonly SpectralPeak[]) =>
+      told(close, 60 * fastHz, 0.78, lines).evidence.map(({ fault }) => fault);
+    expect(faults([...slow, ...around(fastHz, [1], 0.5)])).toEqual(['mating gear']);
+    // Both are found where both stand: the lines of the one do not hide those of the other.
+    expect(faults([...slow, ...around(fastHz, [1, 2], 0.5)])).toEqual(['mating gear', 'gear on the shaft']);
+  });
+
   it('nothing where the harmonics of 1x stand throughout', () => {
     const comb = Array.from({ length: 90 }, (_, n) => line(29.5 * (n + 1), 3)).filter(
       ({ frequencyHz }) => frequencyHz % 678.5 > 1,
@@ -142,6 +159,15 @@ describe('what is said of belts, wheels and couplings', () => {
     expect(words[0]).toMatch(
       /^(weak|clear): three multiples of the belt frequency of the belt drive \(7\.502 Hz\), three of them below 1x, 15 dB over the floor; common practice: the belt, worn, uneven or loose$/,
     );
+  });
+
+  it('nothing where one multiple alone stands below 1x', () => {
+    // 9.6 Hz at 24 Hz: two multiples below it.
+    const short = belt({ length: (Math.PI * 0.2) / 0.4 });
+    const of = (...multiples: readonly number[]) =>
+      told(short, 1440, 0.4, [line(24, 5, 25), line(48, 2), ...multiples.map((n) => line(n * 9.6))]).evidence;
+    expect(of(1, 2, 3)).toHaveLength(1);
+    expect(of(1, 3, 4)).toEqual([]);
   });
 
   it('vane pass with sidebands is told and names no fault; without them it is nothing', () => {

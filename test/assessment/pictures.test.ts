@@ -58,6 +58,18 @@ describe('sidebands of a line', () => {
     expect(findPicture(spectrumOf([...carriers, ...comb]), picture())?.chance).toBeGreaterThan(0.1);
   });
 
+  it('say nothing where most of their comb goes on beyond them, as strong as they are', () => {
+    // Sixteen spacings from line to line: five orders either side are the picture, three more are beyond it.
+    const stepHz = meshHz / 16;
+    const at = (orders: readonly number[], dB: number) =>
+      mesh.flatMap(({ hz }) => orders.map((n) => line(hz + n * stepHz, 4, dB)));
+    const own = at([-5, -4, -3, -2, -1, 1, 2, 3, 4, 5], 12);
+    const found = (beyond: readonly number[]) =>
+      findPicture(spectrumOf([...carriers, ...own, ...at(beyond, 15)]), picture({ stepHz }))?.chance;
+    expect(found([-7])).toBeLessThan(1e-8);
+    expect(found([-7, -6, 6, 7])).toBe(1);
+  });
+
   it('have no room where their orders would meet those of the next line', () => {
     const of = { carriers: mesh, betweenHz: meshHz, windowHz: 0, mostOrders: 5, firstPart: 0, leastPart: 0 };
     expect(sidebandPicture({ ...of, stepHz: meshHz / 3, counts: () => true })).toBeNull();
