@@ -21,6 +21,16 @@ export interface RehearsalQuestion {
   readonly learned: readonly LearnedChange[];
   /** Used times from which levels are another machine's, oldest first. */
   readonly breaksMs: readonly number[];
+  /** It need not be gone through to its end once it is known to be worse than this; left out: it is. */
+  readonly unless?: WorseThan;
+}
+
+/** More than `most` alarms from `fromMs` on, or one that stands in that time for more than `longestMs`. */
+export interface WorseThan {
+  readonly fromMs: number;
+  /** A whole number. */
+  readonly most: number;
+  readonly longestMs: number;
 }
 
 export interface Rehearsal {
@@ -46,7 +56,7 @@ export interface RehearsedAlarm {
 }
 
 export function rehearse(question: RehearsalQuestion): Rehearsal {
-  const { limit, band, recordings, levels } = question;
+  const { limit, band, recordings, levels, unless } = question;
   const standing = new StandingLimit(question);
   const course = new AlarmCourse(limit, recordings);
   const holdsIn = conditionsOf(limit, recordings.conditions);
@@ -84,8 +94,17 @@ export function rehearse(question: RehearsalQuestion): Rehearsal {
     if (judgement === null || ((marks & recordingMarks.onlyAtOnce) !== 0 && !judgement.dangerAtOnce))
       continue;
     course.judge(at, judgement, (marks & flagBit) !== 0 || atLeast);
+    if (unless !== undefined && isWorse(course.alarms, recordings.usedMs[at], unless)) break;
   }
   return { alarms: course.alarms, compared, unknown };
+}
+
+function isWorse(alarms: readonly RehearsedAlarm[], nowMs: number, than: WorseThan): boolean {
+  const tooMany = alarms[alarms.length - 1 - than.most];
+  if (tooMany !== undefined && tooMany.raisedMs >= than.fromMs) return true;
+  const newest = alarms.at(-1);
+  if (newest === undefined || newest.returnedMs !== null) return false;
+  return nowMs - Math.max(newest.raisedMs, than.fromMs) > than.longestMs;
 }
 
 /** A limit without a list holds in every running recording. */

@@ -10,8 +10,8 @@ export interface WantedLimit {
   readonly now: number;
   /** The value nearest to what is usual that would not have come more often than wanted; null: none would. */
   readonly value: number | null;
-  /** Alarms with that value; with the last one tried where none would do. */
-  readonly count: number;
+  /** Alarms with that value. */
+  readonly count: number | null;
 }
 
 /** Steps of 5 % from the value as it is: an eighth of it, and twenty times as much. */
@@ -31,34 +31,41 @@ export interface Counted {
  * one that can be written into the site file as it is shown. A tighter one is answered only as long as the alarm does
  * not stand for longer than it does now or `oftenMs`: a limit below what is usual comes once and stays.
  *
+ * @param now how the limit did as it is; whoever rehearses another may end as soon as it is worse than wanted
  * @returns null where the limit has no single value to move: zones come from their table, a curve has many
  */
 export function wantedLimit(
   limit: Limit,
   display: DisplayUnit,
   wanted: { readonly most: number; readonly oftenMs: number },
-  rehearsed: (limit: Limit) => Counted,
+  now: Counted,
+  rehearsed: (limit: Limit, longestMs: number) => Counted,
 ): WantedLimit | null {
   const moved = movedBy(limit, display);
   if (moved === null) return null;
-  const known = new Map<number, Counted>();
+  const longestMs =
+    now.count <= wanted.most ? Math.max(wanted.oftenMs, now.inAlarmMs) : Number.POSITIVE_INFINITY;
+  const known = new Map<number, Counted>([[0, now]]);
   const at = (step: number): Counted => {
-    const counted = known.get(step) ?? rehearsed(moved.with(moved.step(step)));
+    const counted = known.get(step) ?? rehearsed(moved.with(moved.step(step)), longestMs);
     known.set(step, counted);
     return counted;
   };
-  const { moves, now } = moved;
-  const answer = (step: number) => ({ moves, now, value: moved.step(step), count: at(step).count });
-  const fits = (step: number) => at(step).count <= wanted.most;
+  const fits = (step: number) => at(step).count <= wanted.most && at(step).inAlarmMs <= longestMs;
+  const { moves } = moved;
+  const answer = (step: number) => ({
+    moves,
+    now: moved.now,
+    value: moved.step(step),
+    count: at(step).count,
+  });
   if (fits(0)) {
-    const longestMs = Math.max(wanted.oftenMs, at(0).inAlarmMs);
-    const stays = (step: number) => fits(step) && at(step).inAlarmMs <= longestMs;
     let tighter = 1;
-    while (tighter < stepsTighter && stays(-tighter)) tighter *= 2;
-    return answer(lastThatFits(0, -Math.min(tighter, stepsTighter), stays));
+    while (tighter < stepsTighter && fits(-tighter)) tighter *= 2;
+    return answer(lastThatFits(0, -Math.min(tighter, stepsTighter), fits));
   }
   const loosest = moved.loosest(stepsLooser);
-  if (!fits(loosest)) return { moves, now, value: null, count: at(loosest).count };
+  if (!fits(loosest)) return { moves, now: moved.now, value: null, count: null };
   return answer(lastThatFits(loosest, 0, fits));
 }
 

@@ -8,7 +8,6 @@ import {
   type PastRecordings,
   recordingMarks,
 } from '../detection/past-levels.ts';
-import type { SpeedOrigin } from '../manipulation/measurement.ts';
 import type { Ledger } from '../store/ledger.ts';
 import {
   type PastMeasurement,
@@ -105,10 +104,10 @@ class RecordingColumns {
 
   /** Its place. */
   add(one: PastMeasurement, day: number): number {
-    const runs = one.machineState === 'running';
+    const runs = one.runs === 1;
     const flags = flagsOf(one.quality).concat(flagsOf(one.recordingQuality));
     const plain = flags.some((flag) => flag !== 'speed-doubtful');
-    const good = one.quality === '[]';
+    const good = one.quality === null;
     const judged = runs && one.evaluated === 1;
     const { judged: j, flagged, flaggedInOrders, onlyAtOnce, good: g } = recordingMarks;
     this.#usedMs.push(one.usedMs);
@@ -121,11 +120,11 @@ class RecordingColumns {
         (good ? g : 0),
     );
     this.#averages.push(one.averages ?? 0);
-    const measured = one.speedRpm !== null && one.speedOrigin !== 'nominal';
+    const measured = one.speedRpm !== null && one.nominal !== 1;
     this.#speedHz.push(measured ? (one.speedRpm ?? 0) / 60 : Number.NaN);
     this.#loadPercent.push(one.loadPercent ?? Number.NaN);
     this.#condition.push(runs ? this.#conditionOf(one) : -1);
-    this.#wasOutside.push(judged && good && one.condition === null);
+    this.#wasOutside.push(judged && good && one.outside === 1);
     return this.#usedMs.length - 1;
   }
 
@@ -134,13 +133,10 @@ class RecordingColumns {
     return this.#condition[at] >= 0 && ((marks & levelMarks.inTrend) !== 0 || this.#wasOutside[at]);
   }
 
-  #conditionOf({ speedRpm, speedOrigin, loadPercent }: PastMeasurement): number {
-    const { conditions = [] } = this.#machine;
-    const speed =
-      speedRpm === null || speedOrigin === null
-        ? null
-        : { rpm: speedRpm, origin: speedOrigin as SpeedOrigin };
-    const found = conditionOf(conditions, { speed, loadPercent });
+  #conditionOf({ speedRpm: rpm, nominal, loadPercent }: PastMeasurement): number {
+    // That it was measured is what counts, not how.
+    const speed = rpm === null ? null : ({ rpm, origin: nominal === 1 ? 'nominal' : 'pulses' } as const);
+    const found = conditionOf(this.#machine.conditions ?? [], { speed, loadPercent });
     return found === null ? -1 : this.#names.indexOf(found);
   }
 
@@ -158,8 +154,8 @@ class RecordingColumns {
   }
 }
 
-function flagsOf(quality: string): string[] {
-  return quality === '[]' ? [] : (JSON.parse(quality) as QualityFinding[]).map(({ flag }) => flag);
+function flagsOf(quality: string | null): string[] {
+  return quality === null ? [] : (JSON.parse(quality) as QualityFinding[]).map(({ flag }) => flag);
 }
 
 class LevelColumns {

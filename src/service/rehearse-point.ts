@@ -3,7 +3,13 @@ import type { Band, Limit, Machine, Point } from '../config/site.ts';
 import { isOpen } from '../detection/baseline.ts';
 import { type KeptBaseline, type LearnedChange, learnedOverTime } from '../detection/learned-over-time.ts';
 import { learnedKey, type PastLevels } from '../detection/past-levels.ts';
-import { alarmsInTime, type InTime, type Rehearsal, rehearse } from '../detection/rehearsal.ts';
+import {
+  alarmsInTime,
+  type InTime,
+  type Rehearsal,
+  rehearse,
+  type WorseThan,
+} from '../detection/rehearsal.ts';
 import { type WantedLimit, wantedLimit } from '../detection/wanted-limit.ts';
 import { baselinesOf, type StoredBaseline } from '../store/baselines.ts';
 import { conditionNames } from '../store/conditions.ts';
@@ -58,8 +64,8 @@ export async function rehearsePoint(
   const learns = limits.some(({ limit }) => asksBaseline(limit));
   const kept = learns && of.sameConditions ? await keptBaselines(ledger, of) : [];
   const fromMs = readFrom(of, kept, time.fromMs);
-  const wanted = of.bands.flatMap((one) => wantedBand(one, limits));
-  const columns = await pointColumns(ledger, of, wanted, { ...time, fromMs });
+  const bands = of.bands.flatMap((one) => wantedBand(one, limits));
+  const columns = await pointColumns(ledger, of, bands, { ...time, fromMs });
   const breaksMs = await breaksOf(ledger, of, time.toMs);
   const learned = new Map<string, readonly LearnedChange[]>();
   return limits.map(({ limit, band }) => {
@@ -69,22 +75,42 @@ export async function rehearsePoint(
       learned.set(band.id, learnedOf(of, { band, levels, columns, kept, breaksMs }));
     const { recordings } = columns;
     const own = asksBaseline(limit) ? (learned.get(band.id) ?? []) : [];
-    const play = (one: Limit) => rehearse({ limit: one, band, recordings, levels, learned: own, breaksMs });
+    const play = (one: Limit, unless?: WorseThan) =>
+      rehearse({
+        limit: one,
+        band,
+        recordings,
+        levels,
+        learned: own,
+        breaksMs,
+        ...(unless === undefined ? {} : { unless }),
+      });
     const rehearsal = play(limit);
-    const often = { most: time.most ?? 0, oftenMs: longStandingShare * (time.toMs - time.fromMs) };
-    const suggested =
+    const inTime = alarmsInTime(rehearsal.alarms, time);
+    const wanted =
       time.most === null || rehearsal.compared === 0
         ? null
-        : wantedLimit(limit, band.display, often, (one) => counted(play(one), time));
-    return { limit, band, rehearsal, inTime: alarmsInTime(rehearsal.alarms, time), wanted: suggested };
+        : wantedHere(limit, band, { ...time, most: time.most }, inTime, play);
+    return { limit, band, rehearsal, inTime, wanted };
   });
 }
 
 /** A tighter limit may stand for this share of the time before it is one that is always passed. */
 const longStandingShare = 0.02;
 
-function counted(rehearsal: Rehearsal, time: RehearsedTime) {
-  return alarmsInTime(rehearsal.alarms, time);
+function wantedHere(
+  limit: Limit,
+  { display }: Band,
+  time: RehearsedTime & { readonly most: number },
+  now: InTime,
+  play: (limit: Limit, unless: WorseThan) => Rehearsal,
+): WantedLimit | null {
+  const { fromMs, toMs } = time;
+  const most = Math.floor(time.most);
+  const wanted = { most, oftenMs: longStandingShare * (toMs - fromMs) };
+  return wantedLimit(limit, display, wanted, now, (one, longestMs) =>
+    alarmsInTime(play(one, { fromMs, most, longestMs }).alarms, time),
+  );
 }
 
 function asksBaseline({ rule }: Limit): boolean {

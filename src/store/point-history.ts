@@ -8,19 +8,20 @@ import type { Reader } from './lent-connection.ts';
 export interface PastMeasurement {
   readonly id: number;
   readonly usedMs: number;
-  /** running | stopped | transient */
-  readonly machineState: string;
+  /** 1: the machine ran, and was not starting. */
+  readonly runs: number;
   readonly evaluated: number;
-  /** Operating condition as it was judged; null: outside all, or not running. */
-  readonly condition: string | null;
+  /** 1: in none of its operating conditions of that day, or not running. */
+  readonly outside: number;
   readonly speedRpm: number | null;
-  readonly speedOrigin: string | null;
+  /** 1: the speed is the nominal one. */
+  readonly nominal: number | null;
   readonly loadPercent: number | null;
   readonly averages: number | null;
   readonly pooledRecordings: number | null;
-  /** JSON lists of findings: its own, and those of the recording. */
-  readonly quality: string;
-  readonly recordingQuality: string;
+  /** JSON lists of findings, its own and those of the recording; null: none. Texts are what takes time here. */
+  readonly quality: string | null;
+  readonly recordingQuality: string | null;
 }
 
 /** Current measurements of a point in [fromMs, toMs), oldest first, at most `limit`. */
@@ -39,16 +40,16 @@ export async function pastMeasurements(
     .select([
       'm.id',
       'm.used_ms as usedMs',
-      'm.machine_state as machineState',
+      sql<number>`m.machine_state = 'running'`.as('runs'),
       'm.evaluated',
-      'm.condition',
+      sql<number>`m.condition is null`.as('outside'),
       'm.speed_rpm as speedRpm',
-      'm.speed_origin as speedOrigin',
+      sql<number | null>`m.speed_origin = 'nominal'`.as('nominal'),
       'm.load_percent as loadPercent',
       'm.averages',
       'm.pooled_recordings as pooledRecordings',
-      'm.quality',
-      'r.quality as recordingQuality',
+      sql<string | null>`nullif(m.quality, '[]')`.as('quality'),
+      sql<string | null>`nullif(r.quality, '[]')`.as('recordingQuality'),
     ])
     .where('m.point_id', '=', page.pointId)
     .where('m.used_ms', '>=', page.fromMs)

@@ -5,6 +5,7 @@
 import { parseArgs } from 'node:util';
 import { averagingSpeed } from './averaging-speed.ts';
 import { durationS, recordingBytes, sampleRateHz } from './bench-site.ts';
+import { type RehearseSpeed, rehearseSpeed } from './rehearse-speed.ts';
 import { type StageTimes, stageTimes } from './stages.ts';
 import { type ServiceSpeed, throughService } from './through-service.ts';
 
@@ -22,6 +23,7 @@ interface Bench {
   readonly averaging: readonly { readonly segmentSamples: number; readonly secondsASecond: number }[];
   readonly stagesMs: StageTimes;
   readonly service: readonly ServiceSpeed[];
+  readonly rehearsal: RehearseSpeed;
   readonly mostResidentBytes: number;
 }
 
@@ -36,10 +38,11 @@ async function bench(): Promise<Bench> {
     segmentSamples,
     secondsASecond: averagingSpeed(segmentSamples),
   }));
-  return { averaging, stagesMs, service, mostResidentBytes };
+  const rehearsal = await rehearseSpeed();
+  return { averaging, stagesMs, service, rehearsal, mostResidentBytes };
 }
 
-function text({ averaging, stagesMs, service, mostResidentBytes }: Bench): string {
+function text({ averaging, stagesMs, service, rehearsal, mostResidentBytes }: Bench): string {
   const [one, two] = service as [ServiceSpeed, ServiceSpeed];
   const whole = stagesMs['whole task of the thread'] as number;
   const wholeCpu = one.cpuMs / one.recordings;
@@ -79,6 +82,17 @@ function text({ averaging, stagesMs, service, mostResidentBytes }: Bench): strin
         run.filingMs.toFixed(2),
         megabytes(run.residentBytes),
       ]),
+    ]),
+    '',
+    `Rehearsing ${rehearsal.levels} levels of 12 bands, each with a limit`,
+    ...table([
+      ['us of CPU a level', 'only reading it', 'ratio', 'a year of 200 points, s'],
+      [
+        rehearsal.cpuUsALevel.toFixed(2),
+        rehearsal.readCpuUsALevel.toFixed(2),
+        (rehearsal.cpuUsALevel / rehearsal.readCpuUsALevel).toFixed(1),
+        rehearsal.yearOfLargeSiteS.toFixed(0),
+      ],
     ]),
     '',
     `Two threads against one: ${(one.wallMs / two.wallMs).toFixed(2)}. CPU through the service against the thread's task: ${(wholeCpu / whole).toFixed(2)}.`,

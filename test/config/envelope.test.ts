@@ -153,7 +153,9 @@ describe('check refuses', () => {
       ['from: 0.5x', 'from: 2x'],
     ];
     const warned = complaintsOf(burst, ...widths);
-    expect(warned[0]).toMatch(/^warning .* lines at most 7.92 Hz apart are used, at which no fault is named$/);
+    expect(warned[0]).toMatch(
+      /^warning .* lines at most 7.92 Hz apart are used, at which no fault is named$/,
+    );
     expect(envelopeOf(burst, ...widths)?.lineSpacingHz).toBeCloseTo(8 * 0.99, 9);
   });
 });

@@ -54,7 +54,9 @@ describe('mistakes in a site file', () => {
   it('are not seen where there are none: Windows line ends, a byte-order mark, long names in quotes', () => {
     expect(complaints(exampleText.replaceAll('\n', '\r\n'))).toEqual([]);
     expect(complaints(`\uFEFF${exampleText}`)).toEqual([]);
-    expect(complaints(exampleWith(['name: Aeration blower 1', "name: 'Blower #2: north, left'"]))).toEqual([]);
+    expect(complaints(exampleWith(['name: Aeration blower 1', "name: 'Blower #2: north, left'"]))).toEqual(
+      [],
+    );
     expect(complaints(exampleWith(['drop: ./drop', 'drop: "C:\\\\logger\\\\new"']))).toEqual([]);
     expect(
       complaints(exampleWith(['site: Larkfen Waterworks', 'site: Larkfen Waterworks #but really a comment'])),

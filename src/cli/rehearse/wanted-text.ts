@@ -18,14 +18,13 @@ export function wantedText(wanted: HowOften | null, rehearsal: SiteRehearsal): s
   if (found.length === 0) return wrapped('No limit has a value that could be moved.');
   const rows = found.slice(0, mostRows).map(({ one, found: { moves, now, value, count } }) => {
     const text = (shown: number) => valueText(moves, shown, one);
-    const why = `none: ${count} at the farthest`;
     return [
       nameOf(one),
       moves,
       text(now),
       String(one.inTime.count),
-      value === null ? why : text(value),
-      value === null ? '' : String(count),
+      value === null ? 'none' : text(value),
+      count === null ? '' : String(count),
     ];
   });
   const columns = [
