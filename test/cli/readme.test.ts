@@ -175,6 +175,7 @@ describe('JSON as README describes it', () => {
     ['alarms --journal', ['alarms', '--journal']],
     ['trend', ['trend', 'pump-2/de-v', 'overall']],
     ['baseline', ['baseline', 'blower-1']],
+    ['rehearse', ['rehearse', '--wanted', '1 a month']],
   ] as const)('%s: every key has its word', async (name, args) => {
     const { out } = await ledgerCommand(...args);
     expect(missing(JSON.parse(out), rowOf(name))).toEqual([]);
