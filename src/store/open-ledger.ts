@@ -32,10 +32,7 @@ export interface OpenOptions {
 
 /** Time that one try may hold the event loop; longer waits happen between tries (transaction.ts). */
 const busyTimeoutMs = 50;
-/**
- * A command that looks at years reads point by point what was written hour by hour: a year of one point touches some
- * 70 MB of pages, which those of its neighbours lie on too. Taken only as far as it is needed.
- */
+/** At most: a command that looks at years of a point reads pages on which its neighbours' rows lie too. */
 const readersCacheKib = 128 * 1024;
 /** The log is moved by `checkpoint` when idle; by itself only when it has grown to 64 MiB. */
 const automaticCheckpointPages = 16_384;
