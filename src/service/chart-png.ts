@@ -1,10 +1,11 @@
-import { createRequire } from 'node:module';
-import { dirname, join } from 'node:path';
+import { fileURLToPath } from 'node:url';
 import { Resvg } from '@resvg/resvg-js';
 
 /** Charts for mail as PNG: mail programs show no SVG, and a server has no fonts, so the shipped ones are used. */
-const fonts = join(dirname(createRequire(import.meta.url).resolve('dejavu-fonts-ttf/package.json')), 'ttf');
-const fontFiles = ['DejaVuSans.ttf', 'DejaVuSans-Bold.ttf'].map((name) => join(fonts, name));
+const fontFiles = [
+  import.meta.resolve('dejavu-fonts-ttf/ttf/DejaVuSans.ttf'),
+  import.meta.resolve('dejavu-fonts-ttf/ttf/DejaVuSans-Bold.ttf'),
+].map((url) => fileURLToPath(url));
 
 /** `scale` 2 for screens with fine dots: the picture has twice as many, and is shown at its own size. */
 export function chartPng(svg: string, scale = 2): Uint8Array {
