@@ -1,10 +1,16 @@
-import type { ChartedSpectrum, SpectrumChartFacts } from '../advisory/charts/spectrum-chart.ts';
+import type {
+  ChartedFamily,
+  ChartedSpectrum,
+  SpectrumChartFacts,
+} from '../advisory/charts/spectrum-chart.ts';
 import type { AlarmFacts } from '../advisory/facts.ts';
 import { dayText } from '../advisory/time-words.ts';
 import type { Point } from '../config/site.ts';
 import { usualDisplayUnit } from '../config/units.ts';
+import { type FaultEvidence, speaksForFault } from '../manipulation/evidence.ts';
 import type { SpectralPeak } from '../manipulation/measurement.ts';
 import { envelopeOf } from '../store/envelopes.ts';
+import { evidenceOf } from '../store/evidence.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { peaksOf } from '../store/read-trends.ts';
 import { newestSpectra } from '../store/spectra.ts';
@@ -18,6 +24,7 @@ const daysBefore = 7;
 const leastHz = 1000;
 
 interface Spectrum extends ChartedSpectrum {
+  readonly measurementId: number;
   readonly usedMs: number;
   readonly peaks: readonly SpectralPeak[];
 }
@@ -49,8 +56,24 @@ export async function alarmSpectrum(
     ordersOfHz: null,
     scale: 'linear',
     peaks: now.peaks.map(({ frequencyHz, level, names }) => ({ frequencyHz, level, name: names[0] ?? null })),
-    families: [],
+    families: await familiesOf(reader, now.measurementId, ofEnvelope ? 'envelope' : 'plain'),
   };
+}
+
+/** Multiples of the frequencies for which the recording gave evidence, in the spectrum that is shown. */
+async function familiesOf(
+  reader: Reader,
+  measurementId: number,
+  shown: FaultEvidence['spectrum'],
+): Promise<ChartedFamily[]> {
+  const evidence = (await evidenceOf(reader, measurementId)).filter(speaksForFault);
+  return evidence
+    .filter(({ spectrum, alsoIn }) => spectrum === shown || alsoIn === shown)
+    .map(({ frequency, observedHz, harmonics }) => ({
+      text: frequency,
+      hz: observedHz,
+      multiples: harmonics,
+    }));
 }
 
 async function spectrumBefore(
@@ -66,5 +89,7 @@ async function spectrumBefore(
   const { measurementId, usedMs } = plain;
   if (!ofEnvelope) return { ...plain, peaks: await peaksOf(reader, measurementId) };
   const envelope = await envelopeOf(reader, measurementId);
-  return envelope?.spectrum == null ? null : { ...envelope.spectrum, usedMs, peaks: envelope.peaks };
+  return envelope?.spectrum == null
+    ? null
+    : { ...envelope.spectrum, measurementId, usedMs, peaks: envelope.peaks };
 }

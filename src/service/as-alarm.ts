@@ -5,6 +5,7 @@ import type { Machine, Point } from '../config/site.ts';
 import type { Reader } from '../store/lent-connection.ts';
 import { newestMeasurement, type StoredMeasurement } from '../store/read-measurements.ts';
 import { seriesOfPoint, type TrendPoint } from '../store/read-trends.ts';
+import { alarmCharts } from './alarm-charts.ts';
 import { evidenceFacts } from './evidence-now.ts';
 import { bandFacts, machineFacts, pointFacts, siteFacts } from './fact-names.ts';
 import { levelFacts, levelsBefore, linesFacts, otherPoints, recordingFacts } from './level-facts.ts';
@@ -36,11 +37,12 @@ export async function asAlarm(
   const limits = await limitsInForce(reader, view, point, measurement);
   const chosen = mostUsed(view, point, measurement, limits);
   if (chosen === null) return { refused: `${machine.id}/${point.id}: ${whyNone(limits)}` };
+  const alarm = await alarmOf(reader, view, { machine, point, pointId, measurement, ...chosen });
   return {
     site: siteFacts(view),
     machine: machineFacts(view, machine.id),
     writtenMs: nowMs,
-    alarms: [await alarmOf(reader, view, { machine, point, pointId, measurement, ...chosen })],
+    alarms: [{ ...alarm, charts: await alarmCharts(reader, view, alarm, 0) }],
     troubles: [],
     threadSubject: null,
     test: true,

@@ -93,7 +93,9 @@ async function store(
   nowMs: number,
 ): Promise<boolean> {
   let draft = full;
-  const deliveries = await deliveriesFor(full, mail.from, nowMs).catch((error: unknown) => {
+  const undrawn = (picture: string, reason: string) =>
+    tools.log.warn({ subject: full.subject, picture, reason }, 'a mail leaves without one of its pictures');
+  const deliveries = await deliveriesFor(full, mail.from, nowMs, undrawn).catch((error: unknown) => {
     if (plain === undefined) throw error;
     draft = plain(error);
     return deliveriesFor(draft, mail.from, nowMs);

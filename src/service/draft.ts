@@ -1,5 +1,4 @@
 import { alarmMail, mailSeverity, numberOfSubject } from '../advisory/alarm-mail.ts';
-import { mostWithSpectrum, mostWithTrend } from '../advisory/alarm-pictures.ts';
 import type { AlarmFacts, AlarmMailFacts, Mail, TroubleFacts } from '../advisory/facts.ts';
 import { catchUpMail } from '../advisory/notices.ts';
 import { isWorse, messageIdentity, priorityOf, worseSeverity } from '../advisory/outbox.ts';
@@ -10,9 +9,8 @@ import type { Reader } from '../store/lent-connection.ts';
 import type { MessageKind, UntoldEvent } from '../store/messages.ts';
 import { stoodAt } from '../store/thread-ends.ts';
 import { mailIdsOfThread, openThreadOf, subjectsOfThread, type Thread } from '../store/threads.ts';
-import { alarmChart } from './alarm-chart.ts';
+import { alarmCharts } from './alarm-charts.ts';
 import { alarmFacts } from './alarm-facts.ts';
-import { alarmSpectrum } from './alarm-spectrum.ts';
 import { addressesFor, catchUpFacts, passedFor } from './catch-up.ts';
 import { machineFacts, machineOfId, siteFacts } from './fact-names.ts';
 import type { SiteView } from './site-view.ts';
@@ -126,10 +124,7 @@ export async function alarmMailFacts(
   for (const event of newestOfEach(events)) {
     if (event.key?.startsWith('limit:')) {
       const alarm = await alarmFacts(reader, view, event);
-      const charts = {
-        trend: alarms.length < mostWithTrend ? await alarmChart(reader, view, alarm) : null,
-        spectrum: alarms.length < mostWithSpectrum ? await alarmSpectrum(reader, view, alarm) : null,
-      };
+      const charts = await alarmCharts(reader, view, alarm, alarms.length);
       alarms.push({ ...alarm, charts, ...(await toldAgain(reader, event)) });
     } else {
       const life = event.number === null ? null : await alarmByNumber(reader, event.number);

@@ -7,14 +7,18 @@ import { chartPng } from './chart-png.ts';
 const scale = 1.5;
 
 /**
- * The pictures of a mail as PNG. One that cannot be drawn is left out: what it shows stands in the words as well, and no
- * alert waits for a picture.
+ * The pictures of a mail as PNG. One that cannot be drawn is left out and `undrawn` is told: what it shows stands in the
+ * words as well, and no alert waits for a picture.
  */
-export function mailPictures({ pictures = [] }: Mail): MailPicture[] {
+export function mailPictures(
+  { pictures = [] }: Mail,
+  undrawn: (name: string, reason: string) => void,
+): MailPicture[] {
   return pictures.flatMap(({ name, option, size }) => {
     try {
       return [{ name, png: chartPng(chartSvg(option, size), scale) }];
-    } catch {
+    } catch (error) {
+      undrawn(name, error instanceof Error ? error.message : String(error));
       return [];
     }
   });

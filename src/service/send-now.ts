@@ -24,13 +24,14 @@ export async function sendNow(
     readonly about: string;
     readonly nowMs: number;
     readonly mailerFor?: MailerFor;
+    readonly undrawn?: (name: string, reason: string) => void;
   },
 ): Promise<SentNow[]> {
   const { from, server } = to.settings;
   const identity = messageIdentity('asked for', to.about, [String(to.nowMs)]);
   const mailer = (to.mailerFor ?? createMailer)(server);
   const sent: SentNow[] = [];
-  const pictures = mailPictures(mail);
+  const pictures = mailPictures(mail, to.undrawn ?? (() => {}));
   for (const recipient of new Set(to.recipients)) {
     const bytes = await mailBytes({
       mailId: mailId(identity, recipient, from),

@@ -9,13 +9,18 @@ import { mailPictures } from './mail-pictures.ts';
 
 /**
  * The bytes of a draft's mails. The mail library builds them over several turns of the event loop, so this is done
- * between reading the ledger and writing to it, never inside a transaction.
+ * between reading the ledger and writing to it, never inside a transaction. `undrawn` hears of pictures left out.
  */
-export async function deliveriesFor(draft: Draft, from: string, dateMs: number): Promise<NewDelivery[]> {
+export async function deliveriesFor(
+  draft: Draft,
+  from: string,
+  dateMs: number,
+  undrawn: (name: string, reason: string) => void = () => {},
+): Promise<NewDelivery[]> {
   const deliveries: NewDelivery[] = [];
   const drawn = new Map<Mail, MailPicture[]>();
   for (const { recipient, mail, earlier } of draft.mails) {
-    if (!drawn.has(mail)) drawn.set(mail, mailPictures(mail));
+    if (!drawn.has(mail)) drawn.set(mail, mailPictures(mail, undrawn));
     const id = mailId(draft.identity, recipient, from);
     const bytes = await mailBytes({
       mailId: id,

@@ -380,5 +380,10 @@ describe('the way of a newcomer', () => {
     );
     const after = await run(['check'], at);
     expect(after.out).toMatch(/de-v +0 +3 +3 +2026-03-02 08:00\n/);
+
+    const again = await run(['check', '--mail', '--as-alarm', 'pump-2/de-v'], at);
+    expect(again).toMatchObject({ status: 0, err: '' });
+    const pictured = await simpleParser(server.got.at(-1)?.raw ?? '');
+    expect(pictured.attachments.map(({ filename }) => filename)).toEqual(['trend-1.png', 'spectrum-1.png']);
   }, 30_000);
 });

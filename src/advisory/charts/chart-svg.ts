@@ -1,13 +1,10 @@
-import { BarChart, CustomChart, HeatmapChart, LineChart, ScatterChart } from 'echarts/charts';
+import { LineChart, ScatterChart } from 'echarts/charts';
 import {
   GraphicComponent,
   GridComponent,
-  LegendComponent,
-  MarkAreaComponent,
   MarkLineComponent,
   MarkPointComponent,
   TitleComponent,
-  VisualMapComponent,
 } from 'echarts/components';
 import type { EChartsCoreOption } from 'echarts/core';
 import * as echarts from 'echarts/core';
@@ -15,19 +12,13 @@ import { SVGRenderer } from 'echarts/renderers';
 import type { ChartSize } from './chart-style.ts';
 
 echarts.use([
-  BarChart,
-  CustomChart,
-  HeatmapChart,
   LineChart,
   ScatterChart,
   GraphicComponent,
   GridComponent,
-  LegendComponent,
-  MarkAreaComponent,
   MarkLineComponent,
   MarkPointComponent,
   TitleComponent,
-  VisualMapComponent,
   SVGRenderer,
 ]);
 

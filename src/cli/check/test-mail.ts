@@ -5,7 +5,7 @@ import { testMail } from '../../advisory/notices.ts';
 import { shareOfAlert } from '../../advisory/ranking.ts';
 import { type Machine, type MailSettings, type Point, pointPath, type Site } from '../../config/site.ts';
 import { usualDisplayUnit } from '../../config/units.ts';
-import { isFaultEvidence } from '../../manipulation/evidence.ts';
+import { speaksForFault } from '../../manipulation/evidence.ts';
 import type { BandLevel, Measurement } from '../../manipulation/measurement.ts';
 import { asAlarm, whyNone } from '../../service/as-alarm.ts';
 import { bandFacts } from '../../service/fact-names.ts';
@@ -159,7 +159,7 @@ function alarmOf(
     limit: facts,
     level: { ...level, usedMs: startMs },
     dangerUnconfirmed: false,
-    evidence: measurement.evidence.filter(isFaultEvidence).map(({ grade, words }) => ({ grade, words })),
+    evidence: measurement.evidence.filter(speaksForFault).map(({ grade, words }) => ({ grade, words })),
     change: null,
     action: limit.action,
     zone: zoneFacts(machine, measuredReading(machine, point, measurement), limit.bandId, null),

@@ -74,7 +74,9 @@ async function tryMail(site: Site, options: CheckOptions, io: CommandIo): Promis
   const nowMs = wallMs(io);
   const made = await mailFor(site, options.asAlarm, recipients, nowMs, io);
   if ('status' in made) return made.status;
-  const sent = await sendNow(made.mail, { settings, recipients, about: options.asAlarm ?? 'test', nowMs });
+  const about = options.asAlarm ?? 'test';
+  const undrawn = (name: string, reason: string) => io.err.write(`picture ${name} is left out: ${reason}\n`);
+  const sent = await sendNow(made.mail, { settings, recipients, about, nowMs, undrawn });
   const accepted = sent.filter(({ answer }) => answer.kind === 'accepted').length;
   if (options.json === true) {
     writeJson(io.out, {
