@@ -41,7 +41,7 @@ export function trendSentence(facts: TrendFacts, display: DisplayUnit, timeZone:
     case 'too-few-days':
       return `no trend yet: ${trend.days} of ${trend.needed} ${dayWord(facts)}${inCondition(facts)}${sinceText(facts, timeZone)}`;
     case 'none':
-      return `no trend over ${trend.days} ${dayWord(facts)}${inCondition(facts)}`;
+      return noneText(facts, trend);
     case 'step':
       return stepText(facts, trend, timeZone);
     default: {
@@ -51,6 +51,14 @@ export function trendSentence(facts: TrendFacts, display: DisplayUnit, timeZone:
       return `${courseText(facts, trend)} (${p})${ahead}${caution}`;
     }
   }
+}
+
+/** A level that began to grow lately has no even trend; that it moved must be said all the same. */
+function noneText(facts: TrendFacts, { days, endsAt }: Extract<Trend, { kind: 'none' }>): string {
+  const over = `over ${days} ${dayWord(facts)}${inCondition(facts)}`;
+  if (endsAt === null) return `no trend ${over}`;
+  const moved = `${endsAt > 1 ? 'rose' : 'fell'} ${factorText(endsAt)}`;
+  return `no even trend ${over}, but from the first three to the last three of them it ${moved}`;
 }
 
 /** The same for a line of the summary; null where there is nothing that moved. */

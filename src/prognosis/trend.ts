@@ -38,7 +38,16 @@ export const trendRules = {
 /** What can be said of the days. Levels in the unit of the days, rates for a day of running. */
 export type Trend =
   | { readonly kind: 'too-few-days'; readonly days: number; readonly needed: number }
-  | { readonly kind: 'none'; readonly days: number; readonly p: number }
+  | {
+      readonly kind: 'none';
+      readonly days: number;
+      readonly p: number;
+      /**
+       * Median of the last three days over that of the first three, where they lie apart by as much as a trend would have
+       * to: 4 of a level that began to grow a week ago. Null where they do not.
+       */
+      readonly endsAt: number | null;
+    }
   | TrendStep
   | TrendLine;
 
@@ -80,7 +89,7 @@ export function trendOf(days: readonly DayLevel[], rules: typeof trendRules = tr
     return { kind: 'too-few-days', days: window.length, needed: rules.leastDays };
   }
   const line = robustLine(window, rules.confidencePercent);
-  if (line === null) return { kind: 'none', days: window.length, p: 1 };
+  if (line === null) return { kind: 'none', days: window.length, p: 1, endsAt: endsAt(window, rules) };
   const step = stepIn(line.logs, line.beside, Math.log(rules.leastGrowth));
   if (step !== null) {
     const after = window.slice(step.at);
@@ -96,7 +105,7 @@ function claim(window: readonly DayLevel[], line: RobustLine, rules: typeof tren
   const [first, last] = [window[0], window[window.length - 1]];
   const rise = line.slope * (last.runningHours - first.runningHours);
   if (p >= rules.significance || Math.abs(rise) < Math.log(rules.leastGrowth)) {
-    return { kind: 'none', days: window.length, p };
+    return { kind: 'none', days: window.length, p, endsAt: endsAt(window, rules) };
   }
   const perDay = (slope: number) => Math.exp(slope * hoursADay);
   return {
@@ -120,6 +129,14 @@ function claim(window: readonly DayLevel[], line: RobustLine, rules: typeof tren
     },
     runningHoursNow: last.runningHours,
   };
+}
+
+const daysOfAnEnd = 3;
+
+function endsAt(window: readonly DayLevel[], { leastGrowth }: typeof trendRules): number | null {
+  const levels = window.map(({ level }) => level);
+  const ratio = median(levels.slice(-daysOfAnEnd)) / median(levels.slice(0, daysOfAnEnd));
+  return Math.max(ratio, 1 / ratio) >= leastGrowth ? ratio : null;
 }
 
 interface RobustLine extends UncertainLine {

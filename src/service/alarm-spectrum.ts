@@ -55,9 +55,18 @@ export async function alarmSpectrum(
     toHz: Math.min(highest, Math.max(leastHz, 1.2 * alarm.band.toHz)),
     ordersOfHz: null,
     scale: 'linear',
-    peaks: now.peaks.map(({ frequencyHz, level, names }) => ({ frequencyHz, level, name: names[0] ?? null })),
+    peaks: now.peaks.map(({ frequencyHz, level, names }) => ({
+      frequencyHz,
+      level,
+      name: shortName(names[0]),
+    })),
     families: await familiesOf(reader, now.measurementId, ofEnvelope ? 'envelope' : 'plain'),
   };
+}
+
+/** 'BPFO x2' of 'BPFO x2, drive-end bearing': a picture has no room for more, and the words have it. */
+function shortName(name: string | undefined): string | null {
+  return name?.split(',')[0] ?? null;
 }
 
 /** Multiples of the frequencies for which the recording gave evidence, in the spectrum that is shown. */

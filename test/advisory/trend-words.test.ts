@@ -51,8 +51,11 @@ describe('the words of a trend', () => {
   });
 
   it('say that there is none, and of how few days; since a repair', () => {
-    expect(said({ trend: { kind: 'none', days: 30, p: 0.4 }, ahead: null })).toBe(
+    expect(said({ trend: { kind: 'none', days: 30, p: 0.4, endsAt: null }, ahead: null })).toBe(
       'no trend over 30 running days',
+    );
+    expect(said({ trend: { kind: 'none', days: 30, p: 0.4, endsAt: 4.3 }, ahead: null })).toBe(
+      'no even trend over 30 running days, but from the first three to the last three of them it rose to 4.3 times',
     );
     const few = { trend: { kind: 'too-few-days', days: 14, needed: 21 }, ahead: null } as const;
     expect(said(few)).toBe('no trend yet: 14 of 21 running days');

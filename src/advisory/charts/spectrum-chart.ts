@@ -41,7 +41,7 @@ export interface ChartedFamily {
 }
 
 /** Room that a peak's word takes: of peaks within it the strongest is named. */
-const wordPx = 56;
+const wordPx = 70;
 
 export function spectrumChart(facts: SpectrumChartFacts, size: ChartSize): ChartOption {
   const perUnit = facts.ordersOfHz ?? 1;
